@@ -1,0 +1,74 @@
+#include "core/base/distributions.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+#include <boost/math/distributions/fisher_f.hpp>
+#include <boost/math/distributions/normal.hpp>
+#include <boost/math/distributions/students_t.hpp>
+#include <boost/math/special_functions/beta.hpp>
+#include <boost/math/special_functions/trigamma.hpp>
+
+namespace agreed {
+namespace {
+namespace bm = boost::math;
+
+// The normal tail beyond this is no normal double (2.2e-308).
+constexpr double kLargestScore = 37.5;
+
+const bm::normal kNormal;
+}  // namespace
+
+double normal_cdf(double z) {
+  return bm::cdf(kNormal, z);
+}
+double normal_tail(double z) {
+  return bm::cdf(bm::complement(kNormal, z));
+}
+double normal_quantile(double p) {
+  return bm::quantile(kNormal, p);
+}
+double normal_quantile_of_tail(double p) {
+  return bm::quantile(bm::complement(kNormal, p));
+}
+
+double t_tail(double t, double df) {
+  return bm::cdf(bm::complement(bm::students_t(df), t));
+}
+double t_quantile(double p, double df) {
+  return bm::quantile(bm::students_t(df), p);
+}
+double t_quantile_of_tail(double p, double df) {
+  return bm::quantile(bm::complement(bm::students_t(df), p));
+}
+
+double f_tail(double f, double df1, double df2) {
+  return bm::cdf(bm::complement(bm::fisher_f(df1, df2), f));
+}
+double f_quantile(double p, double df1, double df2) {
+  return bm::quantile(bm::fisher_f(df1, df2), p);
+}
+
+double beta_quantile(double p, double a, double b) {
+  return bm::ibeta_inv(a, b, p);
+}
+double trigamma(double x) {
+  return bm::trigamma(x);
+}
+
+double normal_score_of_tail(double tail) {
+  if (tail < normal_tail(kLargestScore)) return kLargestScore;
+  if (tail > normal_cdf(kLargestScore)) return -kLargestScore;
+  return normal_quantile_of_tail(tail);
+}
+
+double normal_score_of_t(double t, double df) {
+  const double score = normal_score_of_tail(t_tail(std::abs(t), df));
+  return std::copysign(score, t);
+}
+
+double t_of_normal_score(double h, double df) {
+  return t_quantile_of_tail(normal_tail(h), df);
+}
+
+}  // namespace agreed

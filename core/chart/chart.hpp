@@ -1,0 +1,53 @@
+#pragma once
+// One control chart as a fold: readings and interventions in, findings out.
+#include <memory>
+#include <optional>
+#include <vector>
+
+#include "core/base/event.hpp"
+#include "core/base/finding.hpp"
+#include "core/base/settings.hpp"
+#include "core/chart/chart_view.hpp"
+#include "core/chart/repeatability.hpp"
+
+namespace agreed {
+
+class Chart {
+ public:
+  /// `settings` outlives the chart.
+  Chart(const Settings& settings, ChartIndex index);
+  ~Chart();
+  Chart(Chart&&) noexcept;
+  Chart& operator=(Chart&&) noexcept;
+  Chart(const Chart&);
+  Chart& operator=(const Chart&);
+
+  /// Takes the next reading; it is not earlier than any before it. Appends what it leads to.
+  void add(const CheckReading& reading, std::vector<Finding>& findings);
+
+  /// Takes an intervention on this chart's analyzer, not earlier than anything before it. One that does not
+  /// concern this chart (another standard or measurand, `noted`) changes nothing.
+  void add(const Intervention& intervention, std::vector<Finding>& findings);
+
+  /// The time of the newest event folded.
+  [[nodiscard]] std::optional<Instant> last_at() const;
+
+  /// Repeatability as it stands now.
+  [[nodiscard]] Repeatability repeatability() const;
+
+  /// Repeatability as it stood at `at` (after every event not later). Nothing if that is older than the
+  /// points kept (the newest 500) although older ones were folded; not known() if there was none yet.
+  [[nodiscard]] std::optional<Repeatability> repeatability_at(Instant at) const;
+
+  /// Appends the findings that hold now, as if just made: what the alert book is compared with after a fold.
+  void conditions(std::vector<Finding>& findings) const;
+
+  [[nodiscard]] ChartState state() const;
+  [[nodiscard]] ChartView view() const;
+
+ private:
+  struct State;
+  std::unique_ptr<State> state_;
+};
+
+}  // namespace agreed

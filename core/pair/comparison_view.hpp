@@ -1,0 +1,136 @@
+#pragma once
+// What a comparison shows to the outside at one moment: plain data, independent of the fold that made it.
+#include <array>
+#include <cstdint>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "core/base/finding.hpp"
+#include "core/base/index.hpp"
+#include "core/base/instant.hpp"
+
+namespace agreed {
+
+enum class Verdict { gathering, inconclusive, agreement_shown, disagreement_shown };
+enum class PairChartState { learning, stable, unstable };
+[[nodiscard]] const char* to_string(Verdict verdict);
+[[nodiscard]] const char* to_string(PairChartState state);
+
+using Interval = std::array<double, 2>;
+
+struct WindowView {
+  int pairs = 0;
+  int capacity = 0;
+  std::optional<Instant> from, to;
+  std::optional<Instant> since_intervention;  ///< start of the present stretch, when something began one
+};
+
+/// The error variances of single results, and lambda = var(x error) / var(y error) with its 95 % interval.
+struct ErrorView {
+  std::optional<double> lambda, low, high, sd_x, sd_y, df_x, df_y;
+  std::string source;  ///< check_standards, given_sds, given_lambda, replicates
+  std::string reason;  ///< why lambda is not known, when it is not
+};
+
+struct FitView {
+  double intercept = 0, slope = 1;
+  double se_intercept = 0, se_slope = 0, cov = 0;  ///< jackknife
+  double analytic_se_intercept = 0, analytic_se_slope = 0;
+  Interval intercept_interval{}, slope_interval{};
+  double confidence = 0.95;
+  double identity_p = 1;  ///< joint test of intercept 0 and slope 1
+  std::optional<double> slope_at_lambda_low, slope_at_lambda_high;
+};
+
+struct SingleResultView {
+  double share_within = 0, low = 0, high = 0;
+};
+
+struct LevelView {
+  double level = 0;
+  std::optional<double> bias, se, low, high;  ///< 90 % interval: two one-sided 5 % tests
+  std::optional<double> allowable;
+  Verdict verdict = Verdict::gathering;
+  std::string reason;
+  std::optional<SingleResultView> single_result;
+};
+
+struct DifferenceView {
+  double mean = 0, sd = 0;
+  Interval mean_interval{};
+  double lower_limit = 0, upper_limit = 0;
+  Interval lower_limit_interval{}, upper_limit_interval{};
+  std::optional<int> within_count, within_of;
+  std::optional<Interval> within_interval;
+  std::optional<double> paired_t_p;
+};
+
+struct ScatterView {
+  double observed_sd = 0, expected_sd = 0, variance_ratio = 0, p = 1;
+  bool excess = false;
+};
+
+struct RangeView {
+  double reliability_ratio = 0;
+  bool adequate = false;
+  bool covers_levels = false;
+};
+
+struct PairChartView {
+  PairChartState state = PairChartState::learning;
+  int pairs = 0;
+  std::optional<double> score;
+  double limit = 0, critical_limit = 0, in_control_run_length = 0;
+  bool extrapolated = false;
+  std::optional<Severity> severity;  ///< of the open signal
+  std::optional<Instant> started_at;
+  std::optional<Period> started_between;
+};
+
+struct OutlierView {
+  std::string sample;
+  Instant measured_at;
+  double residual = 0, p = 1;  ///< studentised, at arrival
+};
+
+struct PairView {
+  std::string sample;
+  Instant measured_at;
+  double x = 0, y = 0;
+  int x_replicates = 1, y_replicates = 1;
+  std::optional<double> residual;  ///< studentised, from the present line
+  bool in_window = false;
+  bool outlier = false;
+};
+
+/// The bias at each decision level as it stood at one pair, for the page's picture of bias over time.
+struct BiasPoint {
+  Instant at;
+  std::vector<std::array<double, 3>> levels;  ///< bias, low, high; one per decision level
+};
+
+struct ComparisonView {
+  ComparisonIndex index;
+  Verdict verdict = Verdict::gathering;
+  std::optional<Instant> verdict_since;
+  std::string verdict_reason;
+  std::optional<Instant> last_agreement;  ///< newest pair at which the verdict was agreement_shown
+  std::vector<std::string> warnings;
+  std::int64_t pairs_total = 0;
+  std::int64_t waiting = 0;  ///< halves without a partner
+  WindowView window;
+  ErrorView error;
+  std::optional<FitView> fit;
+  std::string fit_reason;  ///< why there is no fit, when there is none
+  std::vector<LevelView> levels;
+  std::optional<DifferenceView> difference;
+  std::optional<ScatterView> scatter;
+  std::optional<RangeView> range;
+  PairChartView pair_chart;
+  std::vector<OutlierView> outliers;
+  std::vector<BiasPoint> bias_history;  ///< oldest first, at most 500
+  std::vector<PairView> pairs;          ///< oldest first, at most the newest 500
+};
+
+}  // namespace agreed

@@ -1,0 +1,31 @@
+#pragma once
+// What the HTTP side may ask of the running service.
+#include <filesystem>
+#include <future>
+#include <memory>
+#include <optional>
+#include <string>
+
+#include "core/base/event.hpp"
+#include "daemon/engine/snapshot.hpp"
+
+namespace agreed {
+
+enum class AskOutcome { done, not_found, not_possible, unavailable };
+
+struct AskAnswer {
+  AskOutcome outcome = AskOutcome::done;
+  std::string words;  ///< why not
+};
+
+class Service {
+ public:
+  virtual ~Service() = default;
+  [[nodiscard]] virtual std::shared_ptr<const Snapshot> snapshot() const = 0;
+  /// The state folder, for a JournalReader.
+  [[nodiscard]] virtual std::filesystem::path state() const = 0;
+  /// Answered after COMMIT. Unknown alert: not_found; already resolved: not_possible.
+  virtual std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) = 0;
+};
+
+}  // namespace agreed

@@ -1,0 +1,41 @@
+#pragma once
+// What the outside sees between two batches: immutable, shared by readers, replaced whole by the engine.
+#include <cstdint>
+#include <map>
+#include <memory>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "core/base/instant.hpp"
+#include "core/base/settings.hpp"
+#include "core/chart/chart_view.hpp"
+#include "core/pair/comparison_view.hpp"
+#include "daemon/intake/sink.hpp"
+#include "daemon/journal/journal.hpp"
+
+namespace agreed {
+
+struct AnalyzerStatus {
+  InboxState inbox;
+  std::optional<Instant> last_reading_at;  ///< measured_at of its newest accepted reading
+};
+
+struct Snapshot {
+  Instant at{};
+  Instant started_at{};
+  std::string config_sha256;
+  bool ready = false;
+  std::vector<std::string> not_ready;  ///< why not, in words
+  std::shared_ptr<const Settings> settings;
+  IntakeTotals totals;
+  std::uint64_t pending_files = 0;
+  std::vector<AnalyzerStatus> analyzers;                              ///< by AnalyzerIndex
+  std::vector<std::shared_ptr<const ChartView>> charts;               ///< by ChartIndex
+  std::vector<std::shared_ptr<const ComparisonView>> comparisons;     ///< by ComparisonIndex
+  int alerts_open = 0, alerts_acknowledged = 0, alerts_critical = 0;  ///< critical: open or acknowledged
+  std::map<std::string, int> alerts_of_comparison;  ///< open and acknowledged, by comparison id
+  ChainHead chain;
+};
+
+}  // namespace agreed
