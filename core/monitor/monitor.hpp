@@ -1,0 +1,118 @@
+#pragma once
+// The monitor: a fold over events. Same settings and same set of events = same state, to the last bit, on
+// every machine, in whatever batches and order the events arrived.
+#include <cstdint>
+#include <memory>
+#include <optional>
+#include <set>
+#include <span>
+#include <vector>
+
+#include "core/base/event.hpp"
+#include "core/base/finding.hpp"
+#include "core/base/settings.hpp"
+#include "core/chart/chart.hpp"
+#include "core/monitor/history.hpp"
+#include "core/monitor/pairing.hpp"
+#include "core/pair/comparison.hpp"
+
+namespace agreed {
+
+/// What one batch led to.
+struct MonitorOutcome {
+  std::vector<Finding> findings;        ///< in fold order; none from streams that were folded again
+  std::set<ChartIndex> charts_changed;  ///< to be shown anew
+  std::set<ComparisonIndex> comparisons_changed;
+  std::set<ChartIndex> charts_refolded;  ///< their conditions must be compared with the alert book
+  std::set<ComparisonIndex> comparisons_refolded;
+};
+
+/// Whom a chart's or a comparison's alerts are about.
+[[nodiscard]] Subject subject_of(const Settings& settings, ChartIndex chart);
+[[nodiscard]] Subject subject_of(const Settings& settings, ComparisonIndex comparison);
+
+class Monitor {
+ public:
+  explicit Monitor(std::shared_ptr<const Settings> settings);
+
+  /// Folds a batch. Streams for which it comes too late, or from which something was taken back, are folded
+  /// again from `history`, which already holds the batch.
+  [[nodiscard]] MonitorOutcome apply(std::vector<Event> batch, History& history);
+
+  /// Says that something of a stream was taken back; takes effect with the next `apply`.
+  void take_back(AnalyzerIndex analyzer, StandardIndex standard, MeasurandIndex measurand);
+  void take_back_split(AnalyzerIndex analyzer, MeasurandIndex measurand);
+
+  /// Folds everything from the beginning (at start, after a failed batch, after a reload).
+  MonitorOutcome fold_all(History& history);
+
+  [[nodiscard]] std::vector<Finding> conditions(ChartIndex chart) const;
+  [[nodiscard]] std::vector<Finding> conditions(ComparisonIndex comparison) const;
+  [[nodiscard]] const Chart& chart(ChartIndex index) const { return charts_.at(index.value).fold; }
+  [[nodiscard]] const Comparison& comparison(ComparisonIndex index) const {
+    return comparisons_.at(index.value).fold;
+  }
+  [[nodiscard]] std::int64_t waiting(ComparisonIndex index) const {
+    return comparisons_.at(index.value).memory.waiting();
+  }
+  [[nodiscard]] std::optional<ChartIndex> find_chart(AnalyzerIndex analyzer, StandardIndex standard,
+                                                     MeasurandIndex measurand) const;
+
+ private:
+  struct ChartStream {
+    Chart fold;
+    std::optional<std::pair<Instant, std::int32_t>>
+        last;                              ///< time and replicate of the newest reading folded
+    std::vector<ComparisonIndex> read_by;  ///< comparisons that take lambda from it
+    bool stale = false;
+  };
+  struct ComparisonStream {
+    Comparison fold;
+    SampleMemory memory;
+    std::optional<std::pair<Instant, std::string>> last;  ///< time and sample of the newest pair folded
+    std::vector<ChartIndex> x_charts, y_charts;
+    std::optional<ErrorRatio> given;
+    bool stale = false;
+  };
+  struct DuePair {
+    Pair pair;
+    ComparisonIndex comparison;
+  };
+  using Trace = std::vector<Repeatability>;
+  using Traces = std::vector<std::optional<Trace>>;  ///< by ChartIndex
+
+  void mark_late(const std::vector<Event>& batch);
+  void mark_late(const CheckReading& reading);
+  void mark_late(const Intervention& intervention);
+  [[nodiscard]] std::vector<DuePair> pair_up(const std::vector<Event>& batch, History& history);
+  void pair_up(ComparisonIndex index, std::span<const SplitReading*> rows, History& history,
+               std::vector<DuePair>& due);
+  void pair_up_sample(ComparisonIndex index, std::span<const SplitReading* const> rows, History& history,
+                      std::vector<DuePair>& due);
+  [[nodiscard]] SampleRows forgotten_rows(ComparisonIndex index,
+                                          std::span<const SplitReading* const> in_batch,
+                                          History& history) const;
+  void fold(const Event& event, MonitorOutcome& outcome);
+  void fold(const DuePair& due, MonitorOutcome& outcome);
+  [[nodiscard]] bool of_refolded(const Subject& subject, const MonitorOutcome& outcome) const;
+  void refold_stale(History& history, MonitorOutcome& outcome);
+  void refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions);
+  /// The findings of pairs set aside that were not so in the fold before.
+  std::vector<Finding> refold(ComparisonIndex index, History& history,
+                              const std::vector<Intervention>& interventions);
+  [[nodiscard]] std::vector<Pair> pair_all(ComparisonStream& stream, ComparisonIndex index,
+                                           History& history) const;
+  [[nodiscard]] Trace trace_of(ChartIndex index, History& history,
+                               const std::vector<Intervention>& interventions) const;
+  [[nodiscard]] std::optional<ErrorRatio> ratio_at(const ComparisonStream& stream, ComparisonIndex index,
+                                                   Instant at, const Traces* traces) const;
+  [[nodiscard]] std::optional<ErrorVariance> variance_at(std::span<const ChartIndex> charts, Instant at,
+                                                         const Traces* traces) const;
+  [[nodiscard]] bool concerns(const Intervention& intervention, const ComparisonSettings& comparison) const;
+
+  std::shared_ptr<const Settings> settings_;
+  std::vector<ChartStream> charts_;
+  std::vector<ComparisonStream> comparisons_;
+};
+
+}  // namespace agreed

@@ -1,0 +1,159 @@
+// The part of the monitor that folds streams again from their history.
+#include <algorithm>
+#include <iterator>
+#include <tuple>
+
+#include "core/monitor/monitor.hpp"
+
+namespace agreed {
+namespace {
+
+/// True if the finding's sample is one of `samples`.
+bool names_one_of(const Finding& finding, const std::vector<std::string>& samples) {
+  for (const auto& [name, value] : finding.details)
+    if (name == "sample")
+      return std::find(samples.begin(), samples.end(), std::get<std::string>(value)) != samples.end();
+  return false;
+}
+
+}  // namespace
+
+void Monitor::refold_stale(History& history, MonitorOutcome& outcome) {
+  const auto is_stale = [](const auto& stream) { return stream.stale; };
+  if (std::none_of(charts_.begin(), charts_.end(), is_stale) &&
+      std::none_of(comparisons_.begin(), comparisons_.end(), is_stale))
+    return;
+  const auto interventions = history.interventions();
+  for (std::uint32_t i = 0; i < charts_.size(); ++i) {
+    if (!charts_[i].stale) continue;
+    refold(ChartIndex{i}, history, interventions);
+    outcome.charts_changed.insert({i});
+    outcome.charts_refolded.insert({i});
+  }
+  std::vector<Finding> newly_set_aside;
+  for (std::uint32_t i = 0; i < comparisons_.size(); ++i) {
+    if (!comparisons_[i].stale) continue;
+    for (Finding& finding : refold(ComparisonIndex{i}, history, interventions))
+      newly_set_aside.push_back(std::move(finding));
+    outcome.comparisons_changed.insert({i});
+    outcome.comparisons_refolded.insert({i});
+  }
+  // What a stream said before it turned out to be late is replaced by the conditions of its new fold.
+  std::erase_if(outcome.findings,
+                [&](const Finding& finding) { return of_refolded(finding.subject, outcome); });
+  std::move(newly_set_aside.begin(), newly_set_aside.end(), std::back_inserter(outcome.findings));
+}
+
+bool Monitor::of_refolded(const Subject& subject, const MonitorOutcome& outcome) const {
+  return std::any_of(outcome.charts_refolded.begin(), outcome.charts_refolded.end(),
+                     [&](ChartIndex index) { return subject == subject_of(*settings_, index); }) ||
+         std::any_of(outcome.comparisons_refolded.begin(), outcome.comparisons_refolded.end(),
+                     [&](ComparisonIndex index) { return subject == subject_of(*settings_, index); });
+}
+
+void Monitor::refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions) {
+  ChartStream& stream = charts_[index.value];
+  stream.fold = Chart(*settings_, index);
+  stream.last.reset();
+  std::vector<Finding> silent;
+  auto next = interventions.begin();
+  for (const CheckReading& reading : history.checks(index)) {
+    for (; next != interventions.end() && next->at <= reading.measured_at; ++next)
+      if (next->analyzer == reading.analyzer) stream.fold.add(*next, silent);
+    stream.fold.add(reading, silent);
+    stream.last = {reading.measured_at, reading.replicate};
+    silent.clear();
+  }
+  for (; next != interventions.end(); ++next)
+    if (next->analyzer == settings_->of(index).analyzer) stream.fold.add(*next, silent);
+  stream.stale = false;
+}
+
+Monitor::Trace Monitor::trace_of(ChartIndex index, History& history,
+                                 const std::vector<Intervention>& interventions) const {
+  Chart scratch(*settings_, index);
+  Trace trace;
+  std::vector<Finding> silent;
+  const auto add = [&](const auto& event, Instant at) {
+    scratch.add(event, silent);
+    silent.clear();
+    Repeatability now = scratch.repeatability();
+    now.at = at;
+    trace.push_back(now);
+  };
+  auto next = interventions.begin();
+  for (const CheckReading& reading : history.checks(index)) {
+    for (; next != interventions.end() && next->at <= reading.measured_at; ++next)
+      if (next->analyzer == reading.analyzer) add(*next, next->at);
+    add(reading, reading.measured_at);
+  }
+  return trace;
+}
+
+std::vector<Pair> Monitor::pair_all(ComparisonStream& stream, ComparisonIndex index, History& history) const {
+  const ComparisonSettings& settings = settings_->of(index);
+  const std::vector<SplitReading> rows = history.splits(index);
+  std::vector<Pair> pairs;
+  std::vector<std::pair<Instant, std::pair<std::string, SampleRows>>>
+      samples;  // by newest row, for the memory
+  for (auto first = rows.begin(); first != rows.end();) {
+    const auto last =
+        std::find_if(first, rows.end(), [&](const SplitReading& r) { return r.sample != first->sample; });
+    SampleRows sample;
+    Instant newest = first->measured_at;
+    for (auto row = first; row != last; ++row) {
+      sample.add(row->analyzer == settings.x, {row->measured_at, row->replicate, row->value});
+      newest = std::max(newest, row->measured_at);
+    }
+    for (Pair& pair : pairs_of(first->sample, sample, settings.pair_within)) pairs.push_back(std::move(pair));
+    samples.push_back({newest, {first->sample, std::move(sample)}});
+    first = last;
+  }
+  std::sort(pairs.begin(), pairs.end(),
+            [](const Pair& a, const Pair& b) { return std::tie(a.at, a.sample) < std::tie(b.at, b.sample); });
+  std::sort(samples.begin(), samples.end(), [](const auto& a, const auto& b) {
+    return std::tie(a.first, a.second.first) < std::tie(b.first, b.second.first);
+  });
+  stream.memory.clear();
+  for (auto& [newest, sample] : samples) {
+    const bool paired = !pairs_of(sample.first, sample.second, settings.pair_within).empty();
+    stream.memory.put(sample.first, std::move(sample.second), paired);
+  }
+  return pairs;
+}
+
+std::vector<Finding> Monitor::refold(ComparisonIndex index, History& history,
+                                     const std::vector<Intervention>& interventions) {
+  ComparisonStream& stream = comparisons_[index.value];
+  const auto set_aside_before = stream.fold.set_aside();
+  stream.fold = Comparison(*settings_, index);
+  stream.last.reset();
+  const std::vector<Pair> pairs = pair_all(stream, index, history);
+  // The charts still know the repeatability at the oldest pair, or they are folded on the side to find it.
+  Traces traces(charts_.size());
+  if (!stream.given && !pairs.empty())
+    for (const auto* charts : {&stream.x_charts, &stream.y_charts})
+      for (const ChartIndex chart : *charts)
+        if (!charts_[chart.value].fold.repeatability_at(pairs.front().at))
+          traces[chart.value] = trace_of(chart, history, interventions);
+  std::vector<Finding> findings, newly_set_aside;
+  auto next = interventions.begin();
+  const auto add_interventions_until = [&](std::optional<Instant> at) {
+    for (; next != interventions.end() && (!at || next->at <= *at); ++next)
+      if (concerns(*next, settings_->of(index))) stream.fold.add(*next, findings);
+  };
+  for (const Pair& pair : pairs) {
+    add_interventions_until(pair.at);
+    stream.fold.add(pair, *ratio_at(stream, index, pair.at, &traces), findings);
+    stream.last = {pair.at, pair.sample};
+    for (Finding& finding : findings)
+      if (finding.kind == AlertKind::pair_outlier && !names_one_of(finding, set_aside_before))
+        newly_set_aside.push_back(std::move(finding));
+    findings.clear();
+  }
+  add_interventions_until(std::nullopt);
+  stream.stale = false;
+  return newly_set_aside;
+}
+
+}  // namespace agreed
