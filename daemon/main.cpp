@@ -1,5 +1,38 @@
 #include <cstdio>
+#include <exception>
+#include <string>
+#include <vector>
 
-#include "daemon/version.hpp"
+#include "daemon/cli/check.hpp"
+#include "daemon/cli/command_line.hpp"
+#include "daemon/cli/example.hpp"
+#include "daemon/cli/run.hpp"
+#include "daemon/exit_codes.hpp"
 
-int main() { std::printf("agreed %s\n", agreed::version()); }
+namespace {
+
+struct Doer {
+  int operator()(const agreed::RunCommand& command) const { return agreed::run_service(command.config); }
+  int operator()(const agreed::CheckCommand& command) const {
+    return agreed::check_configuration(command.config, command.json);
+  }
+  int operator()(const agreed::ExampleCommand& command) const {
+    return agreed::write_example(command.folder);
+  }
+  int operator()(const agreed::Say& say) const {
+    std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
+    return say.code;
+  }
+};
+
+}  // namespace
+
+int main(int argc, char** argv) {
+  try {
+    const std::vector<std::string> arguments(argv + 1, argv + argc);
+    return std::visit(Doer{}, agreed::parse_command_line(arguments));
+  } catch (const std::exception& error) {
+    std::fprintf(stderr, "agreed: %s\n", error.what());
+    return agreed::kCouldNotDoIt;
+  }
+}

@@ -2,6 +2,8 @@
 
 namespace agreed {
 
-const char* version() { return AGREED_VERSION; }
+const char* version() {
+  return AGREED_VERSION;
+}
 
 }  // namespace agreed

@@ -40,7 +40,7 @@ enum class Severity { notice, warning, critical };
 
 /// Whom or what an alert is about, by ids; the parts that its kind has, the others empty.
 struct Subject {
-  std::string analyzer, standard, measurand, comparison, service;
+  std::string analyzer{}, standard{}, measurand{}, comparison{}, service{};
   auto operator<=>(const Subject&) const = default;
 };
 
@@ -55,14 +55,14 @@ struct Period {
 
 struct Finding {
   AlertKind kind{};
-  Subject subject;
+  Subject subject{};
   bool holds = true;  ///< false: the condition has ceased
   Severity severity = Severity::warning;
   Instant at{};  ///< measured_at of the reading, or the time of the happening, that led to it
-  std::optional<Instant> started_at;
-  std::optional<Period> started_between;
-  std::string resolved_reason;  ///< why it ceased, when it has
-  Details details;              ///< numbers and words for the text; see alert/wording
+  std::optional<Instant> started_at{};
+  std::optional<Period> started_between{};
+  std::string resolved_reason{};  ///< why it ceased, when it has
+  Details details{};              ///< numbers and words for the text; see alert/wording
 };
 
 }  // namespace agreed

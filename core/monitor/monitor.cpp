@@ -14,6 +14,11 @@ Instant time_of(const Event& event) {
   return std::get<Intervention>(event).at;
 }
 
+bool takes(const ComparisonSettings& comparison, const SplitReading& reading) {
+  return reading.measurand == comparison.measurand &&
+         (reading.analyzer == comparison.x || reading.analyzer == comparison.y);
+}
+
 }  // namespace
 
 Subject subject_of(const Settings& settings, ChartIndex chart) {
@@ -134,8 +139,7 @@ std::vector<Monitor::DuePair> Monitor::pair_up(const std::vector<Event>& batch, 
     rows.clear();
     for (const Event& event : batch)
       if (const auto* split = std::get_if<SplitReading>(&event);
-          split != nullptr && split->measurand == comparison.measurand &&
-          (split->analyzer == comparison.x || split->analyzer == comparison.y))
+          split != nullptr && takes(comparison, *split))
         rows.push_back(split);
     if (!rows.empty()) pair_up({i}, rows, history, due);
   }
@@ -219,8 +223,13 @@ void Monitor::fold(const Event& event, MonitorOutcome& outcome) {
     outcome.charts_changed.insert(*index);
     return;
   }
+  if (const auto* split = std::get_if<SplitReading>(&event)) {
+    // Its pair is folded at its own moment; here only a half may have begun to wait.
+    for (std::uint32_t i = 0; i < comparisons_.size(); ++i)
+      if (takes(settings_->comparisons[i], *split)) outcome.comparisons_changed.insert({i});
+    return;
+  }
   const auto* intervention = std::get_if<Intervention>(&event);
-  if (intervention == nullptr) return;
   for (std::uint32_t i = 0; i < charts_.size(); ++i) {
     if (charts_[i].stale || settings_->charts[i].analyzer != intervention->analyzer) continue;
     charts_[i].fold.add(*intervention, outcome.findings);

@@ -7,10 +7,12 @@
 #include <string>
 #include <vector>
 
+#include "core/alert/alert.hpp"
 #include "core/base/instant.hpp"
 #include "core/base/settings.hpp"
 #include "core/chart/chart_view.hpp"
 #include "core/pair/comparison_view.hpp"
+#include "daemon/engine/lazy_view.hpp"
 #include "daemon/intake/sink.hpp"
 #include "daemon/journal/journal.hpp"
 
@@ -30,9 +32,11 @@ struct Snapshot {
   std::shared_ptr<const Settings> settings;
   IntakeTotals totals;
   std::uint64_t pending_files = 0;
-  std::vector<AnalyzerStatus> analyzers;                              ///< by AnalyzerIndex
-  std::vector<std::shared_ptr<const ChartView>> charts;               ///< by ChartIndex
-  std::vector<std::shared_ptr<const ComparisonView>> comparisons;     ///< by ComparisonIndex
+  std::vector<AnalyzerStatus> analyzers;              ///< by AnalyzerIndex
+  std::vector<LazyView<ChartView>> charts;            ///< by ChartIndex
+  std::vector<ChartState> chart_states;               ///< by ChartIndex, without looking at the view
+  std::vector<LazyView<ComparisonView>> comparisons;  ///< by ComparisonIndex
+  std::shared_ptr<const std::vector<Alert>> alerts;   ///< open and acknowledged
   int alerts_open = 0, alerts_acknowledged = 0, alerts_critical = 0;  ///< critical: open or acknowledged
   std::map<std::string, int> alerts_of_comparison;  ///< open and acknowledged, by comparison id
   ChainHead chain;

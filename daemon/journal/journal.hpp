@@ -159,6 +159,8 @@ class Journal {
                      const std::function<void(Instant, std::int32_t replicate, double value)>& take);
   [[nodiscard]] std::vector<JournalIntervention> interventions();  ///< by time
   [[nodiscard]] std::vector<StoredTransition> last_transitions();
+  /// Of the newest configuration recorded; empty when there is none.
+  [[nodiscard]] std::string last_configuration_sha256();
   /// received_at of the newest row per analyzer.
   [[nodiscard]] std::optional<Instant> last_received(std::string_view analyzer);
   [[nodiscard]] std::optional<Instant> last_measured(std::string_view analyzer);

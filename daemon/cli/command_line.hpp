@@ -1,0 +1,31 @@
+#pragma once
+// The command line as a value: parsing never exits and never prints.
+#include <filesystem>
+#include <span>
+#include <string>
+#include <variant>
+
+namespace agreed {
+
+struct RunCommand {
+  std::filesystem::path config;
+};
+struct CheckCommand {
+  std::filesystem::path config;
+  bool json = false;
+};
+struct ExampleCommand {
+  std::filesystem::path folder;
+};
+/// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
+struct Say {
+  int code = 0;
+  std::string text;
+};
+
+using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, Say>;
+
+/// `arguments` without the program's name.
+[[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);
+
+}  // namespace agreed

@@ -1,0 +1,321 @@
+#include "daemon/engine/engine.hpp"
+
+#include <algorithm>
+
+#include "daemon/engine/clock.hpp"
+#include "daemon/engine/journal_history.hpp"
+#include "daemon/engine/log.hpp"
+#include "daemon/engine/random_id.hpp"
+#include "daemon/engine/sha256.hpp"
+#include "daemon/render/alert_json.hpp"
+#include "daemon/render/finding_json.hpp"
+#include "daemon/webhook/cloud_event.hpp"
+#include "daemon/webhook/routing.hpp"
+
+namespace agreed {
+namespace {
+
+// How long the engine sleeps when nothing comes: only a longstop, everything that happens wakes it.
+constexpr Duration kIdle = std::chrono::minutes(1);
+// While the journal cannot be used: how long until it is tried again.
+constexpr Duration kTryAgain = std::chrono::seconds(2);
+
+template <class Range>
+std::vector<Subject> subjects_of(const Settings& settings, const Range& indexes) {
+  std::vector<Subject> subjects;
+  for (const auto index : indexes) subjects.push_back(subject_of(settings, index));
+  return subjects;
+}
+
+}  // namespace
+
+Engine::Engine(const Config& config, std::unique_ptr<Journal> journal, std::string base_url,
+               std::function<void(const std::string&)> wake_sender)
+    : settings_(config.settings),
+      routes_(config.routes),
+      alert_policy_(config.alert_policy),
+      state_folder_(config.state),
+      base_url_(std::move(base_url)),
+      config_sha256_(sha256_hex(config.text)),
+      config_text_(config.text),
+      wake_sender_(std::move(wake_sender)),
+      queue_(settings_->analyzers.size()),
+      journal_(std::move(journal)),
+      monitor_(settings_),
+      ledger_(settings_) {
+  next_.started_at = now_utc();
+  next_.config_sha256 = config_sha256_;
+  next_.settings = settings_;
+  next_.alerts = std::make_shared<const std::vector<Alert>>();
+  for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
+    next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
+    next_.chart_states.push_back(ChartState::learning);
+  }
+  for (std::uint32_t i = 0; i < settings_->comparisons.size(); ++i)
+    next_.comparisons.emplace_back(std::make_shared<const ComparisonView>(monitor_.comparison({i}).view()));
+  next_.analyzers.resize(settings_->analyzers.size());
+  publish(next_.started_at);
+}
+
+Engine::~Engine() {
+  stop();
+}
+
+void Engine::start() {
+  thread_ = std::thread([this] { run(); });
+}
+
+void Engine::stop() {
+  queue_.stop();
+  if (thread_.joinable()) thread_.join();
+}
+
+std::shared_ptr<const Snapshot> Engine::snapshot() const {
+  const std::lock_guard lock(snapshot_mutex_);
+  return snapshot_;
+}
+
+std::future<AskAnswer> Engine::acknowledge(std::int64_t alert, std::string by, std::string note) {
+  auto promise = std::make_shared<std::promise<AskAnswer>>();
+  auto answer = std::make_shared<AskAnswer>();
+  auto future = promise->get_future();
+  Task task;
+  task.inside = [this, alert, by = std::move(by), note = std::move(note), answer](Instant now) {
+    try {
+      tell(book_->acknowledge(alert, by, note, now), now);
+    } catch (const std::out_of_range&) {
+      *answer = {AskOutcome::not_found, "there is no alert " + std::to_string(alert)};
+    } catch (const std::logic_error& error) {
+      *answer = {AskOutcome::not_possible, error.what()};
+    }
+  };
+  task.after = [promise, answer](const std::string& failure) {
+    if (!failure.empty()) *answer = {AskOutcome::unavailable, failure};
+    promise->set_value(*answer);
+  };
+  if (!queue_.put(std::move(task))) promise->set_value({AskOutcome::unavailable, "the service is stopping"});
+  return future;
+}
+
+std::future<void> Engine::record(DeliveryTry attempt) {
+  auto promise = std::make_shared<std::promise<void>>();
+  auto future = promise->get_future();
+  Task task;
+  task.inside = [this, attempt = std::move(attempt)](Instant) { journal_->add_try(attempt); };
+  task.after = [promise](const std::string& failure) {
+    if (failure.empty()) return promise->set_value();
+    promise->set_exception(std::make_exception_ptr(std::runtime_error(failure)));
+  };
+  if (!queue_.put(std::move(task)))
+    promise->set_exception(std::make_exception_ptr(std::runtime_error("the service is stopping")));
+  return future;
+}
+
+void Engine::run() noexcept {
+  try {
+    turn({.pieces = {}, .tasks = {}, .tick = true, .stop = false});
+    for (;;) {
+      Work work = queue_.take(trouble_.empty() ? kIdle : kTryAgain);
+      if (work.stop) return fail(work, "the service is stopping");
+      turn(std::move(work));
+    }
+  } catch (const std::exception& error) {
+    log_error("the engine ended: {}", error.what());
+    queue_.stop();
+  }
+}
+
+void Engine::turn(Work work) {
+  const Instant now = now_utc();
+  std::vector<std::function<void()>> answers;
+  try {
+    if (!folded_ && !fold_from_journal(now)) {
+      fail(work, trouble_);
+    } else {
+      take_batch(work, now, answers);
+      trouble_.clear();
+    }
+  } catch (const std::exception& error) {
+    log_error("a batch could not be committed and will be tried again: {}", error.what());
+    journal_->rollback();
+    folded_ = false;
+    ledger_.forget();
+    routes_with_news_.clear();
+    trouble_ = error.what();
+    answers.clear();
+    fail(work, trouble_);
+  }
+  publish(now);
+  for (const auto& answer : answers) answer();
+  for (const std::string& route : std::exchange(routes_with_news_, {})) wake_sender_(route);
+}
+
+void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers) {
+  const auto reminders = book_->tick(now);
+  if (work.pieces.empty() && work.tasks.empty() && reminders.empty()) return;
+  journal_->begin(now);
+  std::vector<Event> events;
+  std::vector<Finding> findings;
+  for (QueuedPiece& queued : work.pieces) {
+    try {
+      const PieceAnswer answer = ledger_.take(queued.piece, now, *journal_, monitor_, events, findings);
+      answers.emplace_back([&queued, answer] { queued.answer.set_value(answer); });
+    } catch (const PieceOutOfOrder&) {
+      answers.emplace_back(
+          [&queued, error = std::current_exception()] { queued.answer.set_exception(error); });
+    }
+  }
+  const MonitorOutcome outcome = conclude(std::move(events), findings, now);
+  for (const Task& task : work.tasks) task.inside(now);
+  tell(reminders, now);
+  journal_->commit();
+  refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  for (Task& task : work.tasks)
+    if (task.after) answers.emplace_back([&task] { task.after(""); });
+}
+
+MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
+                                Instant now) {
+  JournalHistory history(*journal_, *settings_);
+  MonitorOutcome outcome = monitor_.apply(std::move(events), history);
+  for (const auto* findings : {&outcome.findings, &intake_findings})
+    for (const Finding& finding : *findings) {
+      journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
+                            finding_json(finding));
+      tell(book_->apply(finding, now), now);
+    }
+  reconcile(outcome, "late_data", now);
+  return outcome;
+}
+
+void Engine::reconcile(const MonitorOutcome& outcome, const std::string& reason, Instant now) {
+  std::vector<Finding> conditions;
+  auto subjects = subjects_of(*settings_, outcome.charts_refolded);
+  for (const Subject& subject : subjects_of(*settings_, outcome.comparisons_refolded))
+    subjects.push_back(subject);
+  if (subjects.empty()) return;
+  const auto add = [&conditions](std::vector<Finding> more) {
+    conditions.insert(conditions.end(), std::make_move_iterator(more.begin()),
+                      std::make_move_iterator(more.end()));
+  };
+  for (const ChartIndex chart : outcome.charts_refolded) add(monitor_.conditions(chart));
+  for (const ComparisonIndex comparison : outcome.comparisons_refolded) {
+    add(monitor_.conditions(comparison));
+    tell(
+        book_->admit_outliers(settings_->of(comparison).id, monitor_.comparison(comparison).set_aside(), now),
+        now);
+  }
+  tell(book_->reconcile(conditions, subjects, reason, now), now);
+}
+
+void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) {
+  for (const AlertTransition& transition : transitions) {
+    const std::string body = alert_json(transition.alert, base_url_);
+    journal_->add_transition({transition.alert.id, transition.at, to_string(transition.change), body});
+    if (!transition.tell) continue;
+    for (const std::string& route : routes_for(transition, routes_, *settings_)) {
+      OutboxMessage message;
+      message.webhook_id = random_message_id();
+      message.route = route;
+      message.type = event_type(transition.change);
+      message.body = cloud_event(transition, journal_->source(), message.webhook_id, base_url_);
+      message.alert = transition.alert.id;
+      message.created_at = message.due_at = now;
+      journal_->add_message(message);
+      routes_with_news_.insert(route);
+    }
+  }
+}
+
+bool Engine::fold_from_journal(Instant now) {
+  try {
+    std::vector<Alert> restored;
+    for (const StoredTransition& transition : journal_->last_transitions())
+      restored.push_back(alert_from_json(transition.body));
+    book_ = std::make_unique<AlertBook>(alert_policy_, settings_, std::move(restored));
+    monitor_ = Monitor(settings_);
+    JournalHistory history(*journal_, *settings_);
+    const MonitorOutcome outcome = monitor_.fold_all(history);
+    journal_->begin(now);
+    const bool new_configuration = journal_->last_configuration_sha256() != config_sha256_;
+    if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
+    reconcile(outcome, new_configuration ? "configuration_changed" : "late_data", now);
+    journal_->commit();
+    refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  } catch (const std::exception& error) {
+    journal_->rollback();
+    if (trouble_ != error.what())
+      log_error("the journal cannot be used; it will be tried again: {}", error.what());
+    trouble_ = error.what();
+    return false;
+  }
+  configuration_recorded_ = folded_ = true;
+  trouble_.clear();
+  return true;
+}
+
+void Engine::fail(Work& work, const std::string& why) {
+  const auto error = std::make_exception_ptr(std::runtime_error(why));
+  for (QueuedPiece& queued : work.pieces) queued.answer.set_exception(error);
+  for (const Task& task : work.tasks)
+    if (task.after) task.after(why);
+}
+
+void Engine::refresh_views(const std::set<ChartIndex>& charts, const std::set<ComparisonIndex>& comparisons) {
+  for (const ChartIndex index : charts) {
+    const auto fold = std::make_shared<const Chart>(monitor_.chart(index));
+    next_.charts[index.value] = LazyView<ChartView>([fold, settings = settings_] { return fold->view(); });
+    next_.chart_states[index.value] = fold->state();
+  }
+  for (const ComparisonIndex index : comparisons) {
+    const auto fold = std::make_shared<const Comparison>(monitor_.comparison(index));
+    next_.comparisons[index.value] =
+        LazyView<ComparisonView>([fold, settings = settings_, waiting = monitor_.waiting(index)] {
+          ComparisonView view = fold->view();
+          view.waiting = waiting;
+          return view;
+        });
+  }
+}
+
+std::vector<std::string> Engine::not_ready(const std::vector<InboxState>& inboxes) const {
+  std::vector<std::string> reasons;
+  if (!trouble_.empty()) reasons.push_back("journal: " + trouble_);
+  if (!folded_ && trouble_.empty()) reasons.emplace_back("the journal is being read");
+  for (std::size_t i = 0; i < inboxes.size(); ++i)
+    if (!inboxes[i].scanned_once && inboxes[i].reason.empty())
+      reasons.push_back("the inbox of " + settings_->analyzers[i].id + " has not been looked at yet");
+  return reasons;
+}
+
+void Engine::publish(Instant now) {
+  next_.at = now;
+  const auto inboxes = queue_.inboxes();
+  next_.not_ready = not_ready(inboxes);
+  next_.ready = next_.not_ready.empty();
+  next_.pending_files = 0;
+  for (std::size_t i = 0; i < inboxes.size(); ++i) {
+    next_.analyzers[i].inbox = inboxes[i];
+    next_.pending_files += inboxes[i].pending;
+    next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
+  }
+  next_.totals = journal_->totals();
+  next_.chain = journal_->head();
+  if (book_) {
+    std::vector<Alert> current;
+    for (const Alert* alert : book_->current()) current.push_back(*alert);
+    next_.alerts_open = next_.alerts_acknowledged = next_.alerts_critical = 0;
+    next_.alerts_of_comparison.clear();
+    for (const Alert& alert : current) {
+      ++(alert.state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
+      if (alert.severity == Severity::critical) ++next_.alerts_critical;
+      if (!alert.subject.comparison.empty()) ++next_.alerts_of_comparison[alert.subject.comparison];
+    }
+    next_.alerts = std::make_shared<const std::vector<Alert>>(std::move(current));
+  }
+  auto snapshot = std::make_shared<const Snapshot>(next_);
+  const std::lock_guard lock(snapshot_mutex_);
+  snapshot_ = std::move(snapshot);
+}
+
+}  // namespace agreed

@@ -1,0 +1,82 @@
+#pragma once
+// The engine: one thread that owns the journal, the monitor and the alert book. Everything that happens
+// reaches it through one queue; everything anyone sees of it is an immutable snapshot.
+#include <atomic>
+#include <functional>
+#include <memory>
+#include <mutex>
+#include <set>
+#include <string>
+#include <thread>
+
+#include "config/config.hpp"
+#include "core/alert/alert_book.hpp"
+#include "core/monitor/monitor.hpp"
+#include "daemon/engine/file_ledger.hpp"
+#include "daemon/engine/service.hpp"
+#include "daemon/engine/work_queue.hpp"
+
+namespace agreed {
+
+class Engine final : public IntakeSink, public Service {
+ public:
+  /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were
+  /// committed.
+  Engine(const Config& config, std::unique_ptr<Journal> journal, std::string base_url,
+         std::function<void(const std::string& route)> wake_sender);
+  ~Engine() override;
+
+  void start();
+  /// Ends after the batch in hand; nothing is taken from then on.
+  void stop();
+
+  std::future<PieceAnswer> submit(FilePiece piece) override { return queue_.put(std::move(piece)); }
+  void report(AnalyzerIndex analyzer, const InboxState& state) override { queue_.report(analyzer, state); }
+
+  [[nodiscard]] std::shared_ptr<const Snapshot> snapshot() const override;
+  [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }
+  std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) override;
+  /// Journals a try to deliver a message; the future throws if it could not be committed.
+  std::future<void> record(DeliveryTry attempt);
+
+ private:
+  void run() noexcept;
+  void turn(Work work);
+  void take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers);
+  MonitorOutcome conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
+                          Instant now);
+  void reconcile(const MonitorOutcome& outcome, const std::string& reason, Instant now);
+  void tell(const std::vector<AlertTransition>& transitions, Instant now);
+  [[nodiscard]] bool fold_from_journal(Instant now);
+  void fail(Work& work, const std::string& why);
+
+  void publish(Instant now);
+  void refresh_views(const std::set<ChartIndex>& charts, const std::set<ComparisonIndex>& comparisons);
+  [[nodiscard]] std::vector<std::string> not_ready(const std::vector<InboxState>& inboxes) const;
+
+  const std::shared_ptr<const Settings> settings_;
+  const std::vector<Route> routes_;
+  const AlertPolicy alert_policy_;
+  const std::filesystem::path state_folder_;
+  const std::string base_url_;
+  const std::string config_sha256_;
+  const std::string config_text_;
+  const std::function<void(const std::string&)> wake_sender_;
+
+  WorkQueue queue_;
+  std::unique_ptr<Journal> journal_;
+  Monitor monitor_;
+  FileLedger ledger_;
+  std::unique_ptr<AlertBook> book_;
+  std::set<std::string> routes_with_news_;
+  std::string trouble_;  ///< why the journal cannot be used at present; empty when it can
+  bool folded_ = false;
+  bool configuration_recorded_ = false;
+
+  Snapshot next_;  ///< the snapshot in the making
+  mutable std::mutex snapshot_mutex_;
+  std::shared_ptr<const Snapshot> snapshot_;
+  std::thread thread_;
+};
+
+}  // namespace agreed

@@ -1,0 +1,183 @@
+#include "daemon/engine/file_ledger.hpp"
+
+#include <algorithm>
+#include <charconv>
+
+#include "core/base/rfc3339.hpp"
+#include "daemon/engine/journal_history.hpp"
+#include "daemon/render/printable.hpp"
+
+namespace agreed {
+namespace {
+
+constexpr std::int64_t kReasonsKept = 1'000;
+
+std::string number(double value) {
+  char text[32];
+  const auto end = std::to_chars(text, text + sizeof text, value).ptr;
+  return {text, end};
+}
+
+int censoring_of(Censoring censored) {
+  if (censored == Censoring::none) return 0;
+  return censored == Censoring::below ? -1 : 1;
+}
+
+Event event_of(const Row& row) {
+  if (row.kind == RowKind::check)
+    return CheckReading{row.measured_at, row.analyzer,  *row.standard,
+                        *row.measurand,  row.replicate, row.value};
+  return SplitReading{row.measured_at, row.analyzer, row.item, *row.measurand, row.replicate, row.value};
+}
+
+}  // namespace
+
+PieceAnswer FileLedger::take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor,
+                             std::vector<Event>& events, std::vector<Finding>& findings) {
+  const Hands hands{journal, monitor, events, findings, now};
+  const std::string& analyzer = settings_->of(piece.file.analyzer).id;
+  const Key key{piece.file.analyzer, piece.file.name, piece.file.sha256};
+  if (piece.piece == 0) {
+    const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
+                             piece.file.mtime_ns};
+    const bool known = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
+    OpenFile file;
+    file.id = journal.add_file(record);
+    if (known) {
+      journal.finish_file(file.id, "repeated", "");
+      open_.erase(key);
+      return {FileOutcome::repeated, now, ""};
+    }
+    open_[key] = std::move(file);
+  }
+  const auto found = open_.find(key);
+  if (found == open_.end() || found->second.next_piece != piece.piece)
+    throw PieceOutOfOrder("an earlier piece of this file was not taken; the file is read again");
+  OpenFile& file = found->second;
+  ++file.next_piece;
+  if (!piece.unusable.empty()) reject(file, {0, 0, "", piece.unusable}, hands);
+  for (const Row& row : piece.rows) take_row(row, file, hands);
+  for (const BadRow& bad : piece.bad) reject(file, bad, hands);
+  if (!piece.last) return {FileOutcome::more, now, ""};
+  PieceAnswer answer = finish(piece, file, hands);
+  open_.erase(found);
+  return answer;
+}
+
+JournalReading FileLedger::keyed(const Row& row) const {
+  JournalReading reading;
+  reading.analyzer = settings_->of(row.analyzer).id;
+  if (row.measurand) reading.measurand = settings_->of(*row.measurand).id;
+  reading.item = row.item;
+  reading.kind = row.kind == RowKind::check ? StoredKind::check : StoredKind::split;
+  reading.measured_at = row.measured_at;
+  reading.replicate = row.replicate;
+  reading.value = row.value;
+  reading.censored = censoring_of(row.censored);
+  reading.line = row.line;
+  reading.by = row.by;
+  reading.note = row.note;
+  reading.clock_ambiguous = row.clock_ambiguous;
+  return reading;
+}
+
+void FileLedger::take_row(const Row& row, OpenFile& file, const Hands& hands) {
+  switch (row.kind) {
+    case RowKind::check:
+    case RowKind::split:
+      return take_reading(row, file, hands);
+    case RowKind::void_:
+      return take_void(row, file, hands);
+    case RowKind::intervention:
+      return take_intervention(row, file, hands);
+  }
+}
+
+void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands) {
+  const JournalRowResult result = hands.journal.add_reading(file.id, keyed(row));
+  if (result.outcome == RowOutcome::conflict) {
+    const std::string stands = number(result.stored_value);
+    reject(file,
+           {row.line, 0, number(row.value),
+            "conflict: found " + number(row.value) + ", but " + stands +
+                " stands under the same key; take that back (kind void) first"},
+           hands);
+    hands.findings.push_back({.kind = AlertKind::readings_conflict,
+                              .subject = {.analyzer = settings_->of(row.analyzer).id},
+                              .severity = Severity::warning,
+                              .at = row.measured_at,
+                              .details = {{"item", row.item},
+                                          {"measurand", settings_->of(*row.measurand).id},
+                                          {"measured_at", to_rfc3339(row.measured_at)},
+                                          {"value", row.value},
+                                          {"stored_value", result.stored_value}}});
+    return;
+  }
+  ++file.good;
+  if (result.outcome == RowOutcome::accepted && row.censored == Censoring::none)
+    hands.events.push_back(event_of(row));
+}
+
+void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
+  ++file.good;
+  for (const VoidedReading& taken_back : hands.journal.add_void(file.id, keyed(row))) {
+    if (taken_back.kind == StoredKind::split) {
+      hands.monitor.take_back_split(row.analyzer, *row.measurand);
+      continue;
+    }
+    const auto standard = std::find_if(settings_->standards.begin(), settings_->standards.end(),
+                                       [&](const Standard& s) { return s.id == taken_back.item; });
+    if (standard == settings_->standards.end()) continue;
+    const StandardIndex index{static_cast<std::uint32_t>(standard - settings_->standards.begin())};
+    hands.monitor.take_back(row.analyzer, index, *row.measurand);
+  }
+}
+
+void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& hands) {
+  ++file.good;
+  JournalIntervention stored;
+  stored.analyzer = settings_->of(row.analyzer).id;
+  if (row.standard) stored.standard = settings_->of(*row.standard).id;
+  if (row.measurand) stored.measurand = settings_->of(*row.measurand).id;
+  stored.kind = to_string(row.intervention);
+  stored.by = row.by;
+  stored.note = row.note;
+  stored.at = row.measured_at;
+  if (!hands.journal.add_intervention(file.id, stored)) return;
+  hands.events.emplace_back(
+      Intervention{row.measured_at, row.analyzer, row.standard, row.measurand, row.intervention, row.note});
+}
+
+void FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {
+  hands.journal.add_rejected_row(file.id, bad.line, bad.column, bad.text, bad.reason);
+  if (file.rejected == 0) {
+    file.first_reason = bad.reason;
+    file.first_line = bad.line;
+    file.first_column = bad.column;
+  }
+  if (++file.rejected > kReasonsKept) return;
+  if (bad.line > 0) file.reasons += "line " + std::to_string(bad.line);
+  if (bad.column > 0) file.reasons += ", column " + std::to_string(bad.column);
+  if (bad.line > 0) file.reasons += ": ";
+  file.reasons += bad.reason + '\n';
+}
+
+PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const {
+  if (file.rejected > 0)
+    hands.findings.push_back({.kind = AlertKind::file_rejected,
+                              .subject = {.analyzer = settings_->of(piece.file.analyzer).id},
+                              .severity = Severity::warning,
+                              .at = hands.now,
+                              .details = {{"file", printable(piece.file.name)},
+                                          {"line", static_cast<double>(file.first_line)},
+                                          {"column", static_cast<double>(file.first_column)},
+                                          {"reason", file.first_reason},
+                                          {"rows", static_cast<double>(file.rejected)},
+                                          {"good_rows", static_cast<double>(file.good)}}});
+  const bool unusable = file.rejected > 0 && file.good == 0;
+  hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
+  if (unusable) return {FileOutcome::rejected, hands.now, file.reasons};
+  return {FileOutcome::done, hands.now, ""};
+}
+
+}  // namespace agreed

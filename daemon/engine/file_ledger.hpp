@@ -1,0 +1,68 @@
+#pragma once
+// Takes the pieces of drop files into the journal and says what became of each file.
+#include <map>
+#include <memory>
+#include <string>
+#include <tuple>
+#include <vector>
+
+#include "core/base/event.hpp"
+#include "core/base/finding.hpp"
+#include "core/base/settings.hpp"
+#include "core/monitor/monitor.hpp"
+#include "daemon/intake/row.hpp"
+#include "daemon/journal/journal.hpp"
+
+namespace agreed {
+
+/// A piece that cannot follow what is known of its file: an earlier one was not committed. The file must be
+/// read again.
+class PieceOutOfOrder : public std::runtime_error {
+ public:
+  using std::runtime_error::runtime_error;
+};
+
+class FileLedger {
+ public:
+  explicit FileLedger(std::shared_ptr<const Settings> settings) : settings_(std::move(settings)) {}
+
+  /// Writes one piece within the open batch. New readings are appended to `events`, what a person must know
+  /// of the file to `findings`; the monitor hears what was taken back. Throws JournalError and
+  /// PieceOutOfOrder.
+  PieceAnswer take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor,
+                   std::vector<Event>& events, std::vector<Finding>& findings);
+
+  /// Forgets every file that was begun and not finished (after a failed batch).
+  void forget() { open_.clear(); }
+
+ private:
+  struct OpenFile {
+    std::int64_t id = 0;
+    std::uint32_t next_piece = 0;
+    std::int64_t good = 0, rejected = 0;
+    std::string first_reason;  ///< of the first rejected row
+    std::uint32_t first_line = 0, first_column = 0;
+    std::string reasons;  ///< for NAME.reason.txt, the first thousand
+  };
+  using Key = std::tuple<AnalyzerIndex, std::string, std::string>;  ///< analyzer, name, content
+
+  struct Hands {
+    Journal& journal;
+    Monitor& monitor;
+    std::vector<Event>& events;
+    std::vector<Finding>& findings;
+    Instant now;
+  };
+  void take_row(const Row& row, OpenFile& file, const Hands& hands);
+  void take_reading(const Row& row, OpenFile& file, const Hands& hands);
+  void take_void(const Row& row, OpenFile& file, const Hands& hands);
+  void take_intervention(const Row& row, OpenFile& file, const Hands& hands);
+  static void reject(OpenFile& file, const BadRow& bad, const Hands& hands);
+  PieceAnswer finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const;
+  [[nodiscard]] JournalReading keyed(const Row& row) const;
+
+  std::shared_ptr<const Settings> settings_;
+  std::map<Key, OpenFile> open_;
+};
+
+}  // namespace agreed

@@ -1,0 +1,34 @@
+#pragma once
+// The monitor's view of the past, read from the journal.
+#include <memory>
+
+#include "core/base/settings.hpp"
+#include "core/monitor/history.hpp"
+#include "daemon/journal/journal.hpp"
+
+namespace agreed {
+
+class JournalHistory final : public History {
+ public:
+  /// Both outlive this.
+  JournalHistory(Journal& journal, const Settings& settings) : journal_(journal), settings_(settings) {}
+
+  std::vector<CheckReading> checks(ChartIndex chart) override;
+  std::vector<SplitReading> splits(ComparisonIndex comparison) override;
+  std::vector<SplitReading> splits_of(ComparisonIndex comparison, std::string_view sample) override;
+  std::vector<Intervention> interventions() override;
+
+ private:
+  Journal& journal_;
+  const Settings& settings_;
+};
+
+/// The kind of an intervention by its name; nothing for an unknown one.
+[[nodiscard]] std::optional<InterventionKind> intervention_kind_from(std::string_view name);
+[[nodiscard]] const char* to_string(InterventionKind kind);
+
+/// An intervention by the present settings; nothing if it concerns an analyzer that is no longer configured.
+[[nodiscard]] std::optional<Intervention> intervention_from(const JournalIntervention& stored,
+                                                            const Settings& settings);
+
+}  // namespace agreed

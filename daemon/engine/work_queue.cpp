@@ -1,0 +1,122 @@
+#include "daemon/engine/work_queue.hpp"
+
+#include <algorithm>
+#include <stdexcept>
+#include <utility>
+
+namespace agreed {
+namespace {
+
+constexpr std::size_t kLaneRows = 2 * WorkQueue::kBatchRows;
+constexpr std::size_t kLanePieces = 2 * WorkQueue::kBatchFiles;
+
+// From this many waiting rows or files on it is a backlog, in which analyzers should stay in step.
+constexpr std::size_t kBacklogRows = WorkQueue::kBatchRows / 2;
+constexpr std::size_t kBacklogFiles = WorkQueue::kBatchFiles / 2;
+constexpr std::chrono::milliseconds kPatienceWithLaggards{50};
+
+Instant oldest_of(const FilePiece& piece) {
+  Instant oldest{Duration::max()};
+  for (const Row& row : piece.rows) oldest = std::min(oldest, row.measured_at);
+  return piece.rows.empty() ? Instant{Duration::min()} : oldest;
+}
+
+}  // namespace
+
+WorkQueue::WorkQueue(std::size_t analyzers) : lanes_(analyzers) {}
+
+std::future<PieceAnswer> WorkQueue::put(FilePiece piece) {
+  std::unique_lock lock(mutex_);
+  Lane& lane = lanes_.at(piece.file.analyzer.value);
+  has_room_.wait(lock, [&] {
+    return stop_ || lane.waiting.empty() || (lane.rows < kLaneRows && lane.waiting.size() < kLanePieces);
+  });
+  if (stop_) throw std::runtime_error("the service is stopping");
+  lane.rows += piece.rows.size();
+  lane.waiting.push_back({std::move(piece), {}});
+  auto answer = lane.waiting.back().answer.get_future();
+  changed_.notify_one();
+  return answer;
+}
+
+bool WorkQueue::put(Task task) {
+  const std::lock_guard lock(mutex_);
+  if (stop_) return false;
+  tasks_.push_back(std::move(task));
+  changed_.notify_one();
+  return true;
+}
+
+void WorkQueue::report(AnalyzerIndex analyzer, const InboxState& state) {
+  const std::lock_guard lock(mutex_);
+  lanes_.at(analyzer.value).inbox = state;
+  tick_ = true;
+  changed_.notify_one();
+}
+
+void WorkQueue::stop() {
+  const std::lock_guard lock(mutex_);
+  stop_ = true;
+  changed_.notify_all();
+  has_room_.notify_all();
+}
+
+WorkQueue::Lane* WorkQueue::oldest_lane() {
+  Lane* oldest = nullptr;
+  Instant at{};
+  for (Lane& lane : lanes_) {
+    if (lane.waiting.empty()) continue;
+    const Instant lane_at = oldest_of(lane.waiting.front().piece);
+    if (oldest != nullptr && at <= lane_at) continue;
+    oldest = &lane;
+    at = lane_at;
+  }
+  return oldest;
+}
+
+void WorkQueue::wait_for_laggards(std::unique_lock<std::mutex>& lock) {
+  std::size_t rows = 0, files = 0;
+  for (const Lane& lane : lanes_) {
+    rows += lane.rows;
+    files += lane.waiting.size();
+  }
+  if (rows < kBacklogRows && files < kBacklogFiles) return;
+  changed_.wait_for(lock, kPatienceWithLaggards, [this] {
+    return stop_ || std::none_of(lanes_.begin(), lanes_.end(), [](const Lane& lane) {
+             return lane.waiting.empty() && lane.inbox.pending > 0;
+           });
+  });
+}
+
+Work WorkQueue::take(Duration patience) {
+  std::unique_lock lock(mutex_);
+  changed_.wait_for(lock, patience,
+                    [this] { return stop_ || tick_ || !tasks_.empty() || oldest_lane() != nullptr; });
+  wait_for_laggards(lock);
+  Work work;
+  work.tasks.swap(tasks_);
+  work.tick = std::exchange(tick_, false);
+  work.stop = stop_;
+  std::size_t rows = 0;
+  while (rows < kBatchRows && work.pieces.size() < kBatchFiles) {
+    Lane* lane = oldest_lane();
+    if (lane == nullptr) break;
+    const std::size_t more = lane->waiting.front().piece.rows.size();
+    if (!work.pieces.empty() && rows + more > kBatchRows) break;
+    rows += more;
+    lane->rows -= more;
+    work.pieces.push_back(std::move(lane->waiting.front()));
+    lane->waiting.pop_front();
+  }
+  has_room_.notify_all();
+  return work;
+}
+
+std::vector<InboxState> WorkQueue::inboxes() const {
+  const std::lock_guard lock(mutex_);
+  std::vector<InboxState> states;
+  for (const Lane& lane : lanes_) states.push_back(lane.inbox);
+  return states;
+}
+
+}  // namespace agreed

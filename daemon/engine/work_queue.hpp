@@ -1,0 +1,72 @@
+#pragma once
+// What waits for the engine: pieces of files, by analyzer, and other tasks. Bounded; filled by many threads,
+// emptied by one.
+#include <condition_variable>
+#include <deque>
+#include <functional>
+#include <future>
+#include <mutex>
+#include <string>
+#include <vector>
+
+#include "daemon/intake/row.hpp"
+#include "daemon/intake/sink.hpp"
+
+namespace agreed {
+
+struct QueuedPiece {
+  FilePiece piece;
+  std::promise<PieceAnswer> answer;
+};
+
+/// Something done inside a batch; `after` hears whether it was committed (nothing) or why not.
+struct Task {
+  std::function<void(Instant now)> inside;
+  std::function<void(const std::string& failure)> after;
+};
+
+struct Work {
+  std::vector<QueuedPiece> pieces;
+  std::vector<Task> tasks;
+  bool tick = false;  ///< an inbox was looked at: time to look at the clock
+  bool stop = false;
+};
+
+class WorkQueue {
+ public:
+  static constexpr std::size_t kBatchRows = 10'000;
+  static constexpr std::size_t kBatchFiles = 1'000;
+
+  explicit WorkQueue(std::size_t analyzers);
+
+  /// Blocks while the analyzer's part is full. Throws std::runtime_error once stopped.
+  std::future<PieceAnswer> put(FilePiece piece);
+  /// Never blocks. False once stopped.
+  bool put(Task task);
+  void report(AnalyzerIndex analyzer, const InboxState& state);
+  void stop();
+
+  /// Waits for something to do, at most `patience`; takes one batch, oldest measured_at first, so that the
+  /// analyzers stay in step.
+  [[nodiscard]] Work take(Duration patience);
+
+  [[nodiscard]] std::vector<InboxState> inboxes() const;
+
+ private:
+  struct Lane {
+    std::deque<QueuedPiece> waiting;
+    std::size_t rows = 0;
+    InboxState inbox;
+  };
+  [[nodiscard]] Lane* oldest_lane();
+  void wait_for_laggards(std::unique_lock<std::mutex>& lock);
+
+  mutable std::mutex mutex_;
+  std::condition_variable changed_, has_room_;
+  std::vector<Lane> lanes_;
+  std::vector<Task> tasks_;
+  bool tick_ = false;
+  bool stop_ = false;
+};
+
+}  // namespace agreed

@@ -1,0 +1,10 @@
+#!/bin/sh
+# Sets up, builds and runs all tests. AGREED_TESTS="quick e2e" runs only those labels (quick, e2e, slow).
+set -eu
+cd "$(dirname "$0")/.."
+sh deploy/setup.sh
+sh deploy/build.sh
+labels=${AGREED_TESTS:-quick e2e slow}
+pattern=$(printf '%s' "$labels" | sed 's/  */|/g')
+cd "${AGREED_BUILD_DIR:-build}"
+exec ctest --output-on-failure -j2 -L "^($pattern)\$"
