@@ -10,12 +10,15 @@ import pathlib
 import shutil
 import signal
 import subprocess
+import sys
 import tempfile
 import threading
 import time
 import unittest
 import urllib.error
 import urllib.request
+
+sys.path.insert(0, str(pathlib.Path(__file__).resolve().parents[2] / "examples"))
 
 AGREED = os.environ.get("AGREED", str(pathlib.Path(__file__).resolve().parents[2] / "build" / "agreed"))
 SECRET = "whsec_" + base64.b64encode(b"harrow mill test secret, 32 byte").decode()
@@ -210,20 +213,6 @@ class Site:
             left = [p for a in ("line1", "line2") for p in self.inbox(a).iterdir() if p.is_file() and not p.name.startswith(".")]
             return not left and self.get("/api/status")["intake"]["pending_files"] == 0
         wait_until(nothing_waits, what, seconds)
-
-
-HEADER = "kind,measured_at,measurand,item,value"
-
-
-def rfc3339(epoch_s):
-    """Seconds since 1970, to the millisecond."""
-    whole = int(epoch_s // 1)
-    ms = int(round((epoch_s - whole) * 1000))
-    return time.strftime("%Y-%m-%dT%H:%M:%S", time.gmtime(whole)) + f".{ms:03d}Z"
-
-
-def csv(rows):
-    return "\n".join([HEADER] + [",".join(str(c) for c in row) for row in rows]) + "\n"
 
 
 class SiteTest(unittest.TestCase):

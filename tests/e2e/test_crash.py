@@ -4,8 +4,8 @@ import random
 import threading
 import time
 
-from harness import Receiver, SiteTest, csv, wait_until
-from plant import Plant
+from harness import SiteTest, wait_until
+from plant import Plant, csv
 
 KILLS = int(os.environ.get("AGREED_KILLS", "30"))
 SEED = int(os.environ.get("AGREED_SEED", "20260105"))

@@ -1,8 +1,8 @@
 """What becomes of files: good, bad, repeated, half-written."""
 import time
 
-from harness import HEADER, SiteTest, csv, rfc3339, wait_until
-from plant import START, Plant
+from harness import SiteTest, wait_until
+from plant import HEADER, START, Plant, csv, rfc3339
 
 
 def check(i, value, standard="wheat-low"):

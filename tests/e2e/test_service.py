@@ -4,8 +4,8 @@ import pathlib
 import subprocess
 import tempfile
 
-from harness import AGREED, SiteTest, csv, wait_until
-from plant import Plant
+from harness import AGREED, SiteTest, wait_until
+from plant import Plant, csv
 
 
 def agreed(*arguments):

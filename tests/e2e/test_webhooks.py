@@ -2,8 +2,8 @@
 import hashlib
 import socket
 
-from harness import Receiver, SiteTest, csv, rfc3339, wait_until
-from plant import START, Plant
+from harness import SiteTest, wait_until
+from plant import START, Plant, csv, rfc3339
 
 
 def drop_history(site, plant, rounds, first=0):
