@@ -2,13 +2,12 @@
 
 #include <algorithm>
 
-#include "daemon/engine/clock.hpp"
+#include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
-#include "daemon/engine/log.hpp"
-#include "daemon/engine/random_id.hpp"
-#include "daemon/engine/sha256.hpp"
+#include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/render/finding_json.hpp"
+#include "daemon/sha256.hpp"
 #include "daemon/webhook/cloud_event.hpp"
 #include "daemon/webhook/routing.hpp"
 
@@ -213,12 +212,13 @@ void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) 
     const std::string body = alert_json(transition.alert, base_url_);
     journal_->add_transition({transition.alert.id, transition.at, to_string(transition.change), body});
     if (!transition.tell) continue;
-    for (const std::string& route : routes_for(transition, routes_, *settings_)) {
+    for (const std::size_t position : routes_for(transition, routes_, *settings_)) {
+      const std::string& route = routes_[position].name;
       OutboxMessage message;
-      message.webhook_id = random_message_id();
+      message.webhook_id = make_webhook_id();
       message.route = route;
       message.type = event_type(transition.change);
-      message.body = cloud_event(transition, journal_->source(), message.webhook_id, base_url_);
+      message.body = to_json(alert_event(transition, journal_->source(), message.webhook_id, body));
       message.alert = transition.alert.id;
       message.created_at = message.due_at = now;
       journal_->add_message(message);

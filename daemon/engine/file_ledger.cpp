@@ -5,7 +5,7 @@
 
 #include "core/base/rfc3339.hpp"
 #include "daemon/engine/journal_history.hpp"
-#include "daemon/render/printable.hpp"
+#include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {

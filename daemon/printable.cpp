@@ -1,4 +1,4 @@
-#include "daemon/render/printable.hpp"
+#include "daemon/printable.hpp"
 
 #include <array>
 #include <cstdio>

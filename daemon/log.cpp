@@ -1,4 +1,4 @@
-#include "daemon/engine/log.hpp"
+#include "daemon/log.hpp"
 
 #include <cstdlib>
 #include <memory>
@@ -6,7 +6,7 @@
 #include <spdlog/sinks/stdout_sinks.h>
 #include <spdlog/spdlog.h>
 
-#include "daemon/render/printable.hpp"
+#include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {

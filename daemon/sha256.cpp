@@ -1,4 +1,4 @@
-#include "daemon/engine/sha256.hpp"
+#include "daemon/sha256.hpp"
 
 #include <array>
 #include <stdexcept>

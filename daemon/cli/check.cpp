@@ -1,0 +1,38 @@
+#include "daemon/cli/check.hpp"
+
+#include <fmt/format.h>
+#include <nlohmann/json.hpp>
+
+#include "config/config.hpp"
+#include "config/describe.hpp"
+#include "daemon/exit_codes.hpp"
+
+namespace agreed {
+namespace {
+
+void print_json(const ConfigResult& result) {
+  nlohmann::ordered_json problems = nlohmann::ordered_json::array();
+  for (const ConfigProblem& problem : result.problems)
+    problems.push_back({{"line", problem.line},
+                        {"column", problem.column},
+                        {"key", problem.key},
+                        {"message", problem.message},
+                        {"warning", problem.warning}});
+  const nlohmann::ordered_json answer{{"valid", result.config.has_value()}, {"problems", problems}};
+  fmt::print("{}\n", answer.dump(2, ' ', false, nlohmann::ordered_json::error_handler_t::replace));
+}
+
+}  // namespace
+
+int check_configuration(const std::filesystem::path& file, bool json) {
+  const ConfigResult result = read_config(file);
+  if (json) {
+    print_json(result);
+  } else {
+    for (const ConfigProblem& problem : result.problems) fmt::print(stderr, "{}\n", to_string(problem, file));
+    if (result.config) fmt::print("{}", describe(*result.config));
+  }
+  return result.config ? kDone : kWrongUse;
+}
+
+}  // namespace agreed

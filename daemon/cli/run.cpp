@@ -1,0 +1,171 @@
+#include "daemon/cli/run.hpp"
+
+#include <atomic>
+#include <csignal>
+#include <cstdio>
+#include <filesystem>
+#include <memory>
+#include <thread>
+#include <vector>
+
+#include <fmt/format.h>
+#include <pthread.h>
+#include <systemd/sd-daemon.h>
+#include <unistd.h>
+
+#include "config/config.hpp"
+#include "daemon/clock.hpp"
+#include "daemon/engine/engine.hpp"
+#include "daemon/exit_codes.hpp"
+#include "daemon/http/access.hpp"
+#include "daemon/http/listener.hpp"
+#include "daemon/http/router.hpp"
+#include "daemon/http/server.hpp"
+#include "daemon/http/tokens.hpp"
+#include "daemon/intake/folder_watcher.hpp"
+#include "daemon/journal/journal.hpp"
+#include "daemon/log.hpp"
+#include "daemon/page_source.hpp"
+#include "daemon/version.hpp"
+#include "daemon/webhook/sender.hpp"
+
+namespace agreed {
+namespace {
+
+// SIGTERM has to end the service within two seconds, whatever a dead network mount holds on to.
+constexpr std::chrono::milliseconds kGrace{1'900};
+
+/// SIGTERM and SIGINT as something to wait for. Blocks them in this thread and all that it starts.
+class StopSignals {
+ public:
+  StopSignals() {
+    std::signal(SIGPIPE, SIG_IGN);
+    sigemptyset(&signals_);
+    sigaddset(&signals_, SIGTERM);
+    sigaddset(&signals_, SIGINT);
+    pthread_sigmask(SIG_BLOCK, &signals_, nullptr);
+  }
+
+  void wait() const {
+    int signal = 0;
+    sigwait(&signals_, &signal);
+  }
+
+ private:
+  sigset_t signals_{};
+};
+
+/// Ends the process if the orderly end takes too long. Everything that counts is committed at any moment.
+class Deadline {
+ public:
+  Deadline()
+      : thread_([this] {
+          for (auto waited = std::chrono::milliseconds(0); waited < kGrace && !done_; waited += kStep)
+            std::this_thread::sleep_for(kStep);
+          if (!done_) _exit(kDone);
+        }) {}
+  ~Deadline() {
+    done_ = true;
+    thread_.join();
+  }
+  Deadline(const Deadline&) = delete;
+  Deadline& operator=(const Deadline&) = delete;
+
+ private:
+  static constexpr std::chrono::milliseconds kStep{20};
+  std::atomic<bool> done_ = false;
+  std::thread thread_;
+};
+
+/// Each route thread reads the outbox over a connection of its own.
+WebhookSender::Next outbox_of(const std::filesystem::path& state) {
+  return [state](const std::string& route) {
+    thread_local std::unique_ptr<JournalReader> reader;
+    if (!reader) reader = std::make_unique<JournalReader>(state);
+    return reader->next_message(route);
+  };
+}
+
+std::vector<Endpoint> endpoints_of(const Config& config) {
+  std::vector<Endpoint> endpoints;
+  for (const Route& route : config.routes) endpoints.push_back(endpoint_of(route));
+  return endpoints;
+}
+
+std::string url_host(const std::string& address) {
+  if (address == "0.0.0.0" || address == "::") return "127.0.0.1";
+  return address.find(':') == std::string::npos ? address : '[' + address + ']';
+}
+
+/// The service from the first file descriptor to the last; destructors end it in the reverse order.
+int serve(const Config& config, const StopSignals& signals) {
+  std::filesystem::create_directories(config.state);
+  const StateLock lock(config.state);
+  auto journal = std::make_unique<Journal>(config.state);
+
+  // The listener comes before the engine, which needs the port for its links, and answers once there is an
+  // engine.
+  Tokens tokens(config.tokens_file);
+  if (reads_need_token(config.listen)) require_reader_token(config.listen, tokens);
+  std::unique_ptr<Router> router;
+  HttpServer server(
+      config.listen, [&router](const HttpRequest& request) { return router->answer(request); },
+      [](const std::string& trouble) { log_warning("http: {}", trouble); });
+  const std::string base_url = fmt::format("http://{}:{}", url_host(config.listen.address), server.port());
+
+  std::unique_ptr<WebhookSender> sender;
+  Engine engine(config, std::move(journal), base_url, [&sender](const std::string& route) {
+    if (sender) sender->wake(route);
+  });
+  sender = std::make_unique<WebhookSender>(
+      endpoints_of(config), outbox_of(config.state),
+      [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });
+  const AlertSource alerts = journal_alerts(config.state);
+  router = std::make_unique<Router>(RouterParts{engine, tokens, alerts, pages_of(engine, alerts),
+                                                reads_need_token(config.listen),
+                                                [&server] { return server.stopping(); }});
+  server.start();
+  fmt::print("agreed {} answers on {}\n", version(), base_url);
+  std::fflush(stdout);
+  log_info("agreed {} answers on {}, state in {}", version(), base_url, config.state.string());
+
+  engine.start();
+  std::vector<std::unique_ptr<FolderWatcher>> watchers;
+  for (std::uint32_t i = 0; i < config.intake.size(); ++i)
+    watchers.push_back(
+        std::make_unique<FolderWatcher>(config.intake[i], *config.settings, AnalyzerIndex{i}, engine));
+  for (const auto& watcher : watchers) watcher->start();
+  sender->start();
+  sd_notify(0, "READY=1");
+
+  signals.wait();
+  sd_notify(0, "STOPPING=1");
+  log_info("stopping");
+  const Deadline deadline;
+  server.stop();
+  sender->stop();
+  engine.stop();
+  watchers.clear();
+  return kDone;
+}
+
+}  // namespace
+
+int run_service(const std::filesystem::path& config_file) {
+  const ConfigResult result = read_config(config_file);
+  for (const ConfigProblem& problem : result.problems)
+    fmt::print(stderr, "{}\n", to_string(problem, config_file));
+  if (!result.config) return kWrongUse;
+  const StopSignals signals;
+  try {
+    const int code = serve(*result.config, signals);
+    log_info("stopped");
+    close_log();
+    return code;
+  } catch (const std::exception& error) {
+    fmt::print(stderr, "agreed: {}\n", error.what());
+    return kCouldNotDoIt;
+  }
+}
+
+}  // namespace agreed

@@ -1,0 +1,1 @@
+#include "daemon/render/finding_json.hpp"
