@@ -55,10 +55,23 @@ void WorkQueue::report(AnalyzerIndex analyzer, const InboxState& state) {
 }
 
 void WorkQueue::stop() {
-  const std::lock_guard lock(mutex_);
-  stop_ = true;
-  changed_.notify_all();
-  has_room_.notify_all();
+  std::vector<Lane> left(lanes_.size());
+  std::vector<Task> tasks;
+  {
+    const std::lock_guard lock(mutex_);
+    stop_ = true;
+    for (std::size_t i = 0; i < lanes_.size(); ++i) left[i].waiting.swap(lanes_[i].waiting);
+    tasks.swap(tasks_);
+    changed_.notify_all();
+    has_room_.notify_all();
+  }
+  // Whoever waits for an answer must not wait for ever.
+  const std::string why = "the service is stopping";
+  const auto error = std::make_exception_ptr(std::runtime_error(why));
+  for (Lane& lane : left)
+    for (QueuedPiece& queued : lane.waiting) queued.answer.set_exception(error);
+  for (const Task& task : tasks)
+    if (task.after) task.after(why);
 }
 
 WorkQueue::Lane* WorkQueue::oldest_lane() {

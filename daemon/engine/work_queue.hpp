@@ -44,6 +44,7 @@ class WorkQueue {
   /// Never blocks. False once stopped.
   bool put(Task task);
   void report(AnalyzerIndex analyzer, const InboxState& state);
+  /// Refuses whatever comes from now on, and what waits.
   void stop();
 
   /// Waits for something to do, at most `patience`; takes one batch, oldest measured_at first, so that the
