@@ -1,0 +1,170 @@
+#include "core/chart/aftermath.hpp"
+
+#include <cmath>
+#include <limits>
+
+#include "core/chart/explanation.hpp"
+#include "core/chart/level_score.hpp"
+#include "core/chart/precision_score.hpp"
+
+namespace agreed {
+namespace {
+// A score this far below its limit no longer confirms the signal.
+constexpr double kConfirmedWithin = 0.9;
+// Log-likelihood units within which lasting scatter explains as well as a shift that has ended.
+constexpr double kNearlyAsWell = 4;
+
+// The readings in three parts: before the start, the deviating part (B), and the return after it.
+struct Parts {
+  Sums before, deviating, returned;
+  [[nodiscard]] Sums normal() const { return before + returned; }  // (A)
+};
+
+// One way of cutting the readings for every end of the deviating part that leaves `clear_after` behind it,
+// and `cut(position, parts)` for each. Sums of the return run backwards from the newest reading, so that a
+// gross reading in the deviating part leaves no rounding error in the others.
+template <class Cut>
+Sums for_each_end(const Stretch& stretch, const Prefix& start, int clear_after, Cut cut) {
+  const double* deviation = stretch.deviation();
+  const std::size_t held = stretch.held();
+  const std::size_t from = stretch.first_split(start.sums.n);
+  // Readings since the start that are no longer held one by one.
+  Sums since = stretch.prefix(from).sums - start.sums;
+  const std::size_t first = since.n > 0 ? from : from + 1;
+
+  std::vector<Sums> returned(held - from + 1);
+  for (std::size_t j = held; j > from; --j) {
+    returned[j - 1 - from] = returned[j - from];
+    returned[j - 1 - from].add(deviation[j]);
+  }
+  for (std::size_t j = from; j <= held; ++j) {
+    if (j > from) since.add(deviation[j]);
+    if (j >= first && j + static_cast<std::size_t>(clear_after) <= held)
+      cut(j, Parts{start.sums, since, returned[j - from]});
+  }
+  return since;
+}
+
+double log_run(double run_length) {
+  return std::log(run_length);
+}
+
+struct Ended {
+  bool any = false;
+  std::size_t position = 0;
+  double value = 0;  // R_end or l_end
+};
+
+class LevelRule {
+ public:
+  LevelRule(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits)
+      : limits_(limits), n_(static_cast<double>(stretch.count())) {
+    floor_ = std::max((n_ - 2) * stretch.least_variance(), std::numeric_limits<double>::min());
+    const Sums since = for_each_end(stretch, start, limits.clear_after, [&](std::size_t j, const Parts& p) {
+      possible_ = true;
+      const double rest = held_up(p.normal().about_mean() + p.deviating.about_mean());
+      if (!ended_.any || rest < ended_.value) ended_ = {true, j, rest};
+    });
+    lasting_ = held_up(start.sums.about_mean() + since.about_mean());
+    whole_ = held_up((start.sums + since).about_mean());
+  }
+
+  /// Have enough readings come since the start for anything to have ended? Before that the score of a gross
+  /// reading falls without saying anything (unconfirmed), and lasting scatter would explain it best.
+  [[nodiscard]] bool can_end() const { return possible_; }
+  [[nodiscard]] bool has_ended() const {
+    return ended_.any && n_ / 2 * std::log(lasting_ / ended_.value) >= log_run(limits_.level_run_length);
+  }
+  /// Does the deviating part differ enough to be set aside?
+  [[nodiscard]] bool sets_aside() const {
+    if (!ended_.any) return false;
+    const double t = std::sqrt((n_ - 2) * std::max(0.0, whole_ - ended_.value) / ended_.value);
+    return level_score_exceeds(t, static_cast<std::int64_t>(n_), limits_.level_limit);
+  }
+  [[nodiscard]] double gain() const { return sets_aside() ? n_ / 2 * std::log(whole_ / ended_.value) : 0.0; }
+  [[nodiscard]] std::size_t position() const { return ended_.position; }
+
+ private:
+  [[nodiscard]] double held_up(double squares) const { return std::max(floor_, squares); }
+
+  AftermathLimits limits_;
+  double n_, floor_ = 0, lasting_ = 0, whole_ = 0;
+  bool possible_ = false;
+  Ended ended_;
+};
+
+class PrecisionRule {
+ public:
+  PrecisionRule(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits)
+      : limits_(limits), floor_(std::max(stretch.least_variance(), std::numeric_limits<double>::min())) {
+    const Sums since = for_each_end(stretch, start, limits.clear_after, [&](std::size_t j, const Parts& p) {
+      possible_ = true;
+      if (p.deviating.n < 2 || !(variance(p.deviating) > variance(p.normal()))) return;
+      const double likelihood = part(p.normal()) + part(p.deviating);
+      if (!ended_.any || likelihood > ended_.value) ended_ = {true, j, likelihood};
+    });
+    lasting_ = part(start.sums) + part(since);
+    whole_ = part(start.sums + since);
+  }
+
+  [[nodiscard]] bool can_end() const { return possible_; }
+  [[nodiscard]] bool has_ended() const {
+    return ended_.any && ended_.value - lasting_ >= log_run(limits_.precision_run_length);
+  }
+  [[nodiscard]] bool sets_aside() const {
+    const double h = limits_.precision_limit;
+    return ended_.any && ended_.value - whole_ >= h * h / 2;
+  }
+  [[nodiscard]] std::size_t position() const { return ended_.position; }
+
+ private:
+  [[nodiscard]] double variance(const Sums& sums) const {
+    return std::max(floor_, sums.about_mean() / static_cast<double>(sums.n));
+  }
+  [[nodiscard]] double part(const Sums& sums) const {
+    return -static_cast<double>(sums.n) / 2 * std::log(variance(sums));
+  }
+
+  AftermathLimits limits_;
+  double floor_, lasting_ = 0, whole_ = 0;
+  bool possible_ = false;
+  Ended ended_;
+};
+
+Aftermath judge_level(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits,
+                      std::vector<float>& scratch) {
+  const LevelRule rule(stretch, start, limits);
+  if (!rule.can_end()) return {};
+  const bool confirmed = level_score_exceeds(best_level_split(stretch).t, stretch.count(),
+                                             limits.level_limit - kConfirmedWithin);
+  if (confirmed && !rule.has_ended()) return {};
+
+  const Aftermath ends = rule.sets_aside() ? Aftermath{Outcome::ends_setting_aside, rule.position()}
+                                           : Aftermath{Outcome::ends, 0};
+  const Explanation scatter = explain_by_two_normals(stretch);
+  if (scatter.gain > rule.gain()) {
+    const PrecisionSplit precision = best_precision_split(stretch, scratch);
+    if (precision.score > limits.precision_limit) return {Outcome::becomes_scatter, scatter.position};
+  }
+  return scatter.gain > rule.gain() - kNearlyAsWell ? Aftermath{} : ends;
+}
+
+Aftermath judge_precision(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits,
+                          std::vector<float>& scratch) {
+  const PrecisionRule rule(stretch, start, limits);
+  if (!rule.can_end()) return {};
+  const bool confirmed =
+      best_precision_split(stretch, scratch).score >= limits.precision_limit - kConfirmedWithin;
+  if (confirmed && !rule.has_ended()) return {};
+  return rule.sets_aside() ? Aftermath{Outcome::ends_setting_aside, rule.position()}
+                           : Aftermath{Outcome::ends, 0};
+}
+}  // namespace
+
+Aftermath judge_aftermath(const Stretch& stretch, const Prefix& start, EndingRule rule,
+                          const AftermathLimits& limits, std::vector<float>& scratch) {
+  return rule == EndingRule::level ? judge_level(stretch, start, limits, scratch)
+                                   : judge_precision(stretch, start, limits, scratch);
+}
+
+}  // namespace agreed
