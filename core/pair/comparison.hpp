@@ -42,8 +42,9 @@ class Comparison {
   /// `waiting` of the view is left 0: halves are the monitor's.
   [[nodiscard]] ComparisonView view() const;
 
+  struct State;  ///< what is remembered; defined for core/pair only
+
  private:
-  struct State;
   std::unique_ptr<State> state_;
 };
 

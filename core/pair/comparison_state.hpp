@@ -1,0 +1,99 @@
+#pragma once
+// What a comparison remembers between two pairs: bounded, and determined by the events alone. Private to
+// core/pair.
+#include <cstdint>
+#include <deque>
+#include <optional>
+#include <string_view>
+#include <vector>
+
+#include "core/base/settings.hpp"
+#include "core/pair/comparison.hpp"
+#include "core/pair/drift_alarm.hpp"
+#include "core/pair/outlier.hpp"
+#include "core/pair/pair_chart.hpp"
+#include "core/pair/t_table.hpp"
+#include "core/pair/verdict.hpp"
+#include "core/pair/window_fit.hpp"
+
+namespace agreed {
+
+/// What one decision level says at the newest pair.
+struct LevelNow {
+  double level = 0;
+  double allowable = 0;
+  Bias bias;
+  Interval plain{};  ///< 90 %
+  Interval alert{};  ///< at alert_confidence
+  LevelStatement statement;
+};
+
+enum class PairOutcome { accepted, held, set_aside };
+
+/// One of the newest pairs and what became of it.
+struct RecentPair {
+  Pair pair;
+  std::int64_t serial = 0;
+  PairOutcome outcome = PairOutcome::accepted;
+  double residual = 0, p = 1;  ///< at arrival, of those held or set aside
+};
+
+struct Comparison::State {
+  State(const Settings& all_settings, ComparisonIndex comparison);
+
+  const Settings* settings;
+  ComparisonIndex index;
+  double resolution;  ///< of the results, 0 when not known
+  Window window;
+  PairChart chart;
+  DriftAlarm alarm;
+  OutlierPolicy outliers;
+  VerdictMachine verdict;
+  TTable t_plain, t_alert;
+  ErrorRatio ratio;
+  WindowFit fit;
+  std::vector<LevelNow> levels;  ///< empty without a fit or an allowable difference
+  bool scatter_excess = false;   ///< at the last full renewal of the window
+  std::deque<RecentPair> recent;
+  std::deque<BiasPoint> bias_history;
+  std::int64_t pairs_total = 0;
+  std::optional<Instant> last_at, stretch_from, last_agreement;
+  std::optional<Finding> lost, drifting;  ///< the conditions that hold, as last found
+
+  [[nodiscard]] const ComparisonSettings& config() const { return settings->of(index); }
+  [[nodiscard]] const Measurand& measurand() const { return settings->of(config().measurand); }
+  /// Why there can never be a verdict with these settings; empty: there can.
+  [[nodiscard]] std::string_view no_verdict() const;
+  [[nodiscard]] Deltas deltas() const;
+
+  void add(const Pair& pair, std::vector<Finding>& findings);
+  void begin_stretch(Instant at, std::vector<Finding>& findings);
+
+ private:
+  void accept(const Pair& pair, std::int64_t serial, int later);
+  void set_aside(const std::vector<HeldPair>& pairs, Instant at, std::vector<Finding>& findings);
+  RecentPair* recent_of(std::int64_t serial);
+  void evaluate(Instant at, std::vector<Finding>& findings);
+  void watch_for_change(Instant at, std::vector<Finding>& findings);
+  void test_scatter();
+  void judge_levels(Instant at);
+  void move_verdict(Instant at, std::vector<Finding>& findings);
+};
+
+/// The findings of a comparison. Their details, by name (values in the measurand's unit unless said):
+///   all            measurand, unit, x, y: ids and the unit
+///   agreement_lost level, bias (y - x), low, high (interval at `confidence`), confidence, allowable, slope,
+///                  intercept, pairs (in the window)
+///   agreement_drifting  score, limit (crossed), critical_limit (scores, in sd), shift (mean residual of y
+///   after
+///                  minus before), pairs_before, pairs_after
+///   pair_outlier   sample, x_value, y_value, measured_at (RFC 3339), residual (studentised), p
+[[nodiscard]] Finding agreement_lost_finding(const Comparison::State& state, Instant at);
+[[nodiscard]] Finding agreement_drifting_finding(const Comparison::State& state, Instant at);
+[[nodiscard]] Finding pair_outlier_finding(const Comparison::State& state, const RecentPair& pair,
+                                           Instant at);
+
+/// The view of a state.
+[[nodiscard]] ComparisonView show(const Comparison::State& state);
+
+}  // namespace agreed
