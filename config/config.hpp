@@ -54,6 +54,7 @@ struct Config {
   std::shared_ptr<const Settings> settings;
   std::filesystem::path state;
   Listen listen;
+  std::optional<std::string> page_url;  ///< where people open the page; none: made of the address listened on
   std::vector<IntakeSettings> intake;
   std::vector<Route> routes;
   AlertPolicy alert_policy;

@@ -1,0 +1,49 @@
+#pragma once
+// The alarm budget: one yearly number of false alerts, shared among charts and comparisons, and the
+// in-control run lengths that follow from the shares and the cadences. Pure arithmetic of the configuration;
+// a year has 365 days. Own policy, no published source.
+#include <optional>
+#include <vector>
+
+#include "core/base/instant.hpp"
+#include "core/base/settings.hpp"
+
+namespace agreed {
+
+/// A chart or a comparison as the budget sees it.
+struct BudgetEntry {
+  Duration every{};                  ///< mean time between its readings (pairs), > 0
+  std::optional<double> run_length;  ///< its own `in_control_run_length`, > 0, instead of a share
+};
+
+/// Readings between false signals of each score of a chart.
+struct ChartRunLengths {
+  double level = 0, precision = 0;
+};
+
+/// Pairs between false signals of each test of a comparison.
+struct ComparisonRunLengths {
+  double warning = 0, outlier = 0, scatter = 0;
+};
+
+struct BudgetShares {
+  AlarmBudget budget;  ///< expected_per_year and by_kind count own run lengths as well as shares
+  std::vector<ChartRunLengths> charts;            ///< in the order given
+  std::vector<ComparisonRunLengths> comparisons;  ///< in the order given
+  double taken_per_year = 0;                      ///< used up by own run lengths
+  double share_per_year = 0;  ///< of each chart and comparison without its own; 0 when there is none
+  /// Own run lengths use up more than is allowed, or all of it while others need a share. Those others then
+  /// have run lengths of 0 and the configuration is wrong.
+  bool overspent = false;
+};
+
+/// Own run lengths are taken off first; what is left is shared evenly. A chart's share: half to level, half
+/// to precision; an own run length holds for each of the two. A comparison's: half to the pair chart's
+/// warning, a quarter each to outliers and scatter; an own run length is the warning's, the other two get
+/// twice that each. Throws std::invalid_argument for an `every`, a run length or an allowance that is not
+/// positive and finite.
+[[nodiscard]] BudgetShares share_alarm_budget(double false_alerts_per_year,
+                                              const std::vector<BudgetEntry>& charts,
+                                              const std::vector<BudgetEntry>& comparisons);
+
+}  // namespace agreed
