@@ -27,6 +27,7 @@ struct ChartPoint {
   std::vector<ChartSignal> signals;
   bool set_aside = false;
   bool starts_stretch = false;  ///< first reading after an intervention or of a new lot
+  bool operator==(const ChartPoint&) const = default;
 };
 
 struct ChangeView {
@@ -37,6 +38,7 @@ struct ChangeView {
   std::optional<Instant> started_at;
   std::optional<Period> started_between;
   std::optional<double> shift;
+  bool operator==(const ChangeView&) const = default;
 };
 
 struct PrecisionView {
@@ -45,6 +47,7 @@ struct PrecisionView {
   double in_control_run_length = 0;
   bool extrapolated = false;
   std::optional<double> ratio_of_sd;
+  bool operator==(const PrecisionView&) const = default;
 };
 
 struct BaselineView {
@@ -53,6 +56,7 @@ struct BaselineView {
   std::optional<double> center, sd, sigma, sigma_degrees_of_freedom, moving_range_mean;
   std::optional<Instant> from, to;
   std::int64_t set_aside = 0;
+  bool operator==(const BaselineView&) const = default;
 };
 
 struct ReferenceView {
@@ -60,11 +64,13 @@ struct ReferenceView {
   std::optional<double> expanded_uncertainty;
   double coverage_factor = 2;
   std::optional<double> bias, normalised_error;
+  bool operator==(const ReferenceView&) const = default;
 };
 
 struct StretchMark {
   Instant at;
   std::string what;  ///< intervention kind, or "lot ID"
+  bool operator==(const StretchMark&) const = default;
 };
 
 struct ChartView {
@@ -81,6 +87,7 @@ struct ChartView {
   std::vector<std::string> warnings;
   std::vector<StretchMark> marks;
   std::vector<ChartPoint> points;  ///< oldest first, at most the newest 500
+  bool operator==(const ChartView&) const = default;
 };
 
 }  // namespace agreed

@@ -24,6 +24,7 @@ struct WindowView {
   int capacity = 0;
   std::optional<Instant> from, to;
   std::optional<Instant> since_intervention;  ///< start of the present stretch, when something began one
+  bool operator==(const WindowView&) const = default;
 };
 
 /// The error variances of single results, and lambda = var(x error) / var(y error) with its 95 % interval.
@@ -31,6 +32,7 @@ struct ErrorView {
   std::optional<double> lambda, low, high, sd_x, sd_y, df_x, df_y;
   std::string source;  ///< check_standards, given_sds, given_lambda, replicates
   std::string reason;  ///< why lambda is not known, when it is not
+  bool operator==(const ErrorView&) const = default;
 };
 
 struct FitView {
@@ -41,10 +43,12 @@ struct FitView {
   double confidence = 0.95;
   double identity_p = 1;  ///< joint test of intercept 0 and slope 1
   std::optional<double> slope_at_lambda_low, slope_at_lambda_high;
+  bool operator==(const FitView&) const = default;
 };
 
 struct SingleResultView {
   double share_within = 0, low = 0, high = 0;
+  bool operator==(const SingleResultView&) const = default;
 };
 
 struct LevelView {
@@ -54,6 +58,7 @@ struct LevelView {
   Verdict verdict = Verdict::gathering;
   std::string reason;
   std::optional<SingleResultView> single_result;
+  bool operator==(const LevelView&) const = default;
 };
 
 struct DifferenceView {
@@ -64,17 +69,20 @@ struct DifferenceView {
   std::optional<int> within_count, within_of;
   std::optional<Interval> within_interval;
   std::optional<double> paired_t_p;
+  bool operator==(const DifferenceView&) const = default;
 };
 
 struct ScatterView {
   double observed_sd = 0, expected_sd = 0, variance_ratio = 0, p = 1;
   bool excess = false;
+  bool operator==(const ScatterView&) const = default;
 };
 
 struct RangeView {
   double reliability_ratio = 0;
   bool adequate = false;
   bool covers_levels = false;
+  bool operator==(const RangeView&) const = default;
 };
 
 struct PairChartView {
@@ -86,12 +94,14 @@ struct PairChartView {
   std::optional<Severity> severity;  ///< of the open signal
   std::optional<Instant> started_at;
   std::optional<Period> started_between;
+  bool operator==(const PairChartView&) const = default;
 };
 
 struct OutlierView {
   std::string sample;
   Instant measured_at;
   double residual = 0, p = 1;  ///< studentised, at arrival
+  bool operator==(const OutlierView&) const = default;
 };
 
 struct PairView {
@@ -102,12 +112,14 @@ struct PairView {
   std::optional<double> residual;  ///< studentised, from the present line
   bool in_window = false;
   bool outlier = false;
+  bool operator==(const PairView&) const = default;
 };
 
 /// The bias at each decision level as it stood at one pair, for the page's picture of bias over time.
 struct BiasPoint {
   Instant at;
   std::vector<std::array<double, 3>> levels;  ///< bias, low, high; one per decision level
+  bool operator==(const BiasPoint&) const = default;
 };
 
 struct ComparisonView {
@@ -131,6 +143,7 @@ struct ComparisonView {
   std::vector<OutlierView> outliers;
   std::vector<BiasPoint> bias_history;  ///< oldest first, at most 500
   std::vector<PairView> pairs;          ///< oldest first, at most the newest 500
+  bool operator==(const ComparisonView&) const = default;
 };
 
 }  // namespace agreed
