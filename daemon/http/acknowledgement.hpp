@@ -1,0 +1,17 @@
+#pragma once
+// The body of POST /api/alerts/{id}/acknowledge.
+#include <string>
+
+namespace agreed {
+
+struct AcknowledgeBody {
+  std::string by;     ///< 1 to 100 bytes
+  std::string note;   ///< at most 1000 bytes
+  std::string error;  ///< what is wrong with the body; empty when nothing is
+};
+
+/// Reads {"by": text, "note": text}; `note` may be left out. Any other field is an error, so that a misspelt
+/// note is not lost unseen.
+[[nodiscard]] AcknowledgeBody read_acknowledge(const std::string& body);
+
+}  // namespace agreed

@@ -1,0 +1,170 @@
+#include "daemon/http/api.hpp"
+
+#include <algorithm>
+
+#include "daemon/http/acknowledgement.hpp"
+#include "daemon/http/etag.hpp"
+#include "daemon/http/parameters.hpp"
+#include "daemon/http/problem.hpp"
+#include "daemon/render/alert_record_json.hpp"
+#include "daemon/render/chart_json.hpp"
+#include "daemon/render/comparison_json.hpp"
+#include "daemon/render/health_json.hpp"
+#include "daemon/render/status_json.hpp"
+
+namespace agreed {
+namespace {
+
+constexpr auto kLongestWait = std::chrono::seconds(5);
+
+HttpAnswer json_answer(std::string body) {
+  HttpAnswer answer{200, "application/json", std::move(body), "", {}};
+  answer.etag = etag_of(answer.body);
+  return answer;
+}
+
+HttpAnswer no_such_alert(const HttpRequest& request, const std::string& id) {
+  return problem(404, "There is no alert " + id + ".", request.target);
+}
+
+HttpAnswer unavailable(const HttpRequest& request, const std::string& why) {
+  HttpAnswer answer = problem(503, why, request.target);
+  answer.headers.emplace_back("Retry-After", "5");
+  return answer;
+}
+
+std::optional<ChartIndex> find_chart(const Settings& settings, const Target& target) {
+  for (std::uint32_t i = 0; i < settings.charts.size(); ++i) {
+    const ChartSettings& chart = settings.charts[i];
+    if (settings.of(chart.analyzer).id == target.segments[2] &&
+        settings.of(chart.standard).id == target.segments[3] &&
+        settings.of(chart.measurand).id == target.segments[4])
+      return ChartIndex{i};
+  }
+  return std::nullopt;
+}
+
+std::optional<ComparisonIndex> find_comparison(const Settings& settings, const std::string& id) {
+  for (std::uint32_t i = 0; i < settings.comparisons.size(); ++i)
+    if (settings.comparisons[i].id == id) return ComparisonIndex{i};
+  return std::nullopt;
+}
+
+}  // namespace
+
+Api::Api(Service& service, AlertSource alerts, std::function<bool()> stopping)
+    : service_(service), alerts_(std::move(alerts)), stopping_(std::move(stopping)) {}
+
+HttpAnswer Api::status(const HttpRequest&, const Target&) {
+  const auto snapshot = service_.snapshot();
+  return cache_.get(snapshot, "status", [&] { return status_json(*snapshot); });
+}
+
+HttpAnswer Api::charts(const HttpRequest& request, const Target& target) {
+  const auto points = count_parameter(target, "points");
+  if (!points.error.empty()) return problem(400, points.error, request.target);
+  const auto snapshot = service_.snapshot();
+  return cache_.get(snapshot, "charts/" + std::to_string(points.value),
+                    [&] { return charts_json(*snapshot, points.value); });
+}
+
+HttpAnswer Api::chart(const HttpRequest& request, const Target& target) {
+  const auto points = count_parameter(target, "points");
+  if (!points.error.empty()) return problem(400, points.error, request.target);
+  const auto snapshot = service_.snapshot();
+  const auto index = find_chart(*snapshot->settings, target);
+  if (!index)
+    return problem(404, "There is no chart of this analyzer, check standard and measurand.", request.target);
+  return cache_.get(snapshot, "chart/" + std::to_string(index->value) + "/" + std::to_string(points.value),
+                    [&] { return chart_json(*snapshot, *index, points.value); });
+}
+
+HttpAnswer Api::comparisons(const HttpRequest& request, const Target& target) {
+  const auto pairs = count_parameter(target, "pairs");
+  if (!pairs.error.empty()) return problem(400, pairs.error, request.target);
+  const auto snapshot = service_.snapshot();
+  return cache_.get(snapshot, "comparisons/" + std::to_string(pairs.value),
+                    [&] { return comparisons_json(*snapshot, pairs.value); });
+}
+
+HttpAnswer Api::comparison(const HttpRequest& request, const Target& target) {
+  const auto pairs = count_parameter(target, "pairs");
+  if (!pairs.error.empty()) return problem(400, pairs.error, request.target);
+  const auto snapshot = service_.snapshot();
+  const auto index = find_comparison(*snapshot->settings, target.segments[2]);
+  if (!index) return problem(404, "There is no comparison of this name.", request.target);
+  return cache_.get(snapshot,
+                    "comparison/" + std::to_string(index->value) + "/" + std::to_string(pairs.value),
+                    [&] { return comparison_json(*snapshot, *index, pairs.value); });
+}
+
+HttpAnswer Api::alerts(const HttpRequest& request, const Target& target) {
+  auto query = alert_query(target);
+  if (!query.error.empty()) return problem(400, query.error, request.target);
+  const auto limit = static_cast<std::size_t>(query.value.limit);
+  ++query.value.limit;  // one more than asked for shows whether there is a next page
+  auto records = alerts_.alerts(query.value);
+  std::optional<std::int64_t> next;
+  if (records.size() > limit) {
+    records.resize(limit);
+    next = alert_record_id(records.back());
+  }
+  return json_answer(alert_records_json(records, next));
+}
+
+HttpAnswer Api::alert(const HttpRequest& request, const Target& target) {
+  const auto id = whole_number(target.segments[2]);
+  const auto record = id ? alerts_.alert(*id) : std::nullopt;
+  if (!record) return no_such_alert(request, target.segments[2]);
+  return json_answer(alert_record_json(*record));
+}
+
+HttpAnswer Api::acknowledge(const HttpRequest& request, const Target& target) {
+  AcknowledgeBody body = read_acknowledge(request.body);
+  if (!body.error.empty()) return problem(400, body.error, request.target);
+  const auto id = whole_number(target.segments[2]);
+  if (!id) return no_such_alert(request, target.segments[2]);
+  if (!waiting_places_.try_acquire())
+    return unavailable(request, "Other acknowledgements are still waiting to be stored; try again.");
+  std::optional<AskAnswer> asked;
+  try {
+    asked = wait_for(service_.acknowledge(*id, std::move(body.by), std::move(body.note)));
+  } catch (const std::exception&) {
+    asked = AskAnswer{AskOutcome::unavailable, "The acknowledgement could not be stored; try again."};
+  }
+  waiting_places_.release();
+  if (!asked)
+    return unavailable(request, "The acknowledgement is not stored yet and may still be; look again.");
+  switch (asked->outcome) {
+    case AskOutcome::done:
+      break;
+    case AskOutcome::not_found:
+      return no_such_alert(request, target.segments[2]);
+    case AskOutcome::not_possible:
+      return problem(409, asked->words, request.target);
+    case AskOutcome::unavailable:
+      return unavailable(request, asked->words);
+  }
+  HttpAnswer answer = alert(request, target);
+  answer.etag.clear();
+  return answer;
+}
+
+std::optional<AskAnswer> Api::wait_for(std::future<AskAnswer> asked) const {
+  const auto last = std::chrono::steady_clock::now() + kLongestWait;
+  while (asked.wait_for(std::chrono::milliseconds(50)) != std::future_status::ready)
+    if (stopping_() || std::chrono::steady_clock::now() > last) return std::nullopt;
+  return asked.get();
+}
+
+HttpAnswer Api::live(const HttpRequest&, const Target&) {
+  return json_answer(live_json());
+}
+
+HttpAnswer Api::ready(const HttpRequest& request, const Target&) {
+  const auto snapshot = service_.snapshot();
+  if (snapshot->ready) return json_answer(ready_json());
+  return {503, "application/problem+json", not_ready_json(snapshot->not_ready, request.target), "", {}};
+}
+
+}  // namespace agreed

@@ -1,0 +1,43 @@
+#pragma once
+// The endpoints: what each path answers once it is known that the asker may ask.
+#include <functional>
+#include <semaphore>
+
+#include "daemon/engine/service.hpp"
+#include "daemon/http/alert_source.hpp"
+#include "daemon/http/answer_cache.hpp"
+#include "daemon/http/message.hpp"
+#include "daemon/http/target.hpp"
+
+namespace agreed {
+
+/// Every function answers a problem document when the parameters are wrong or the thing does not exist; the
+/// parameters are looked at first. Thread-safe.
+class Api {
+ public:
+  /// `service` outlives the Api. `stopping` tells a waiting acknowledgement to give up.
+  Api(Service& service, AlertSource alerts, std::function<bool()> stopping);
+
+  [[nodiscard]] HttpAnswer status(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer charts(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer chart(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer comparisons(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer comparison(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer alerts(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer alert(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer acknowledge(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer live(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
+
+ private:
+  [[nodiscard]] std::optional<AskAnswer> wait_for(std::future<AskAnswer> asked) const;
+
+  Service& service_;
+  const AlertSource alerts_;
+  const std::function<bool()> stopping_;
+  AnswerCache cache_;
+  // A worker waits while the engine commits; some must stay free for those who only look.
+  std::counting_semaphore<4> waiting_places_{4};
+};
+
+}  // namespace agreed

@@ -1,0 +1,17 @@
+#pragma once
+// Entity tags (RFC 9110, 8.8.3 and 13.1.2).
+#include <string>
+#include <string_view>
+
+namespace agreed {
+
+/// SHA-256 of `bytes` as 64 lower-case hexadecimal digits.
+[[nodiscard]] std::string sha256_hex(std::string_view bytes);
+
+/// A strong tag of a body: the first 128 bits of its SHA-256, with the quotes.
+[[nodiscard]] std::string etag_of(std::string_view body);
+
+/// Whether the If-None-Match field `sent` names `etag`: a list of tags, weak or strong, or *.
+[[nodiscard]] bool etag_matches(std::string_view sent, std::string_view etag);
+
+}  // namespace agreed

@@ -1,0 +1,45 @@
+#pragma once
+// The small parts every JSON renderer shares. Included by the renderers' sources only, because it brings in
+// the whole JSON library.
+#include <cmath>
+#include <optional>
+#include <string>
+
+#include <nlohmann/json.hpp>
+
+#include "core/base/finding.hpp"
+#include "core/base/instant.hpp"
+#include "core/base/rfc3339.hpp"
+
+namespace agreed {
+
+/// Keeps the fields in the order they are written.
+using Json = nlohmann::ordered_json;
+
+/// A number, or null: no answer ever holds NaN or an infinity.
+[[nodiscard]] inline Json json_number(double value) {
+  return std::isfinite(value) ? Json(value) : Json(nullptr);
+}
+[[nodiscard]] inline Json json_number(const std::optional<double>& value) {
+  return value ? json_number(*value) : Json(nullptr);
+}
+
+[[nodiscard]] inline Json json_time(const std::optional<Instant>& at) {
+  return at ? Json(to_rfc3339(*at)) : Json(nullptr);
+}
+
+/// Text, or null when there is none.
+[[nodiscard]] inline Json json_words(const std::string& text) {
+  return text.empty() ? Json(nullptr) : Json(text);
+}
+
+[[nodiscard]] inline Json json_period(const std::optional<Period>& period) {
+  return period ? Json::array({to_rfc3339(period->first), to_rfc3339(period->last)}) : Json(nullptr);
+}
+
+/// The text of `json`; bytes that are not UTF-8 become the replacement character instead of an exception.
+[[nodiscard]] inline std::string json_text(const Json& json) {
+  return json.dump(-1, ' ', false, Json::error_handler_t::replace);
+}
+
+}  // namespace agreed
