@@ -1,0 +1,35 @@
+#pragma once
+// Reads the `plain` format as a stream: bytes in, rows and bad rows out, in bounded memory.
+#include <memory>
+#include <string>
+#include <string_view>
+
+#include "daemon/intake/row_format.hpp"
+#include "daemon/intake/row_maker.hpp"
+
+namespace agreed {
+
+enum class PlainSyntax { csv, json_lines, json_array };
+
+/// By the end of the name: .jsonl, .json, all else is CSV.
+[[nodiscard]] PlainSyntax plain_syntax_of(std::string_view file_name);
+
+class PlainReader {
+ public:
+  /// `taker` and the context's settings must outlive the reader. It may throw: what it throws passes through.
+  PlainReader(PlainContext context, PlainSyntax syntax, RowTaker& taker);
+
+  /// Takes the next bytes, cut anywhere; false once the file is known to be unusable.
+  bool feed(std::string_view block);
+  /// The end of the file. `closed`: its writer is known to have finished, so a last line without line end
+  /// counts; else that line is a bad row.
+  void finish(bool closed);
+  /// Why the file as a whole cannot be read; empty if it can. Never set once a row was given out.
+  [[nodiscard]] const std::string& unusable() const { return format_->unusable(); }
+
+ private:
+  RowMaker maker_;
+  std::unique_ptr<RowFormat> format_;
+};
+
+}  // namespace agreed
