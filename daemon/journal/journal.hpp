@@ -137,6 +137,9 @@ class Journal {
   /// Takes back what matches (analyzer, measurand, item, measured_at, replicate) whatever the kind; empty if
   /// nothing stands there. Repeating a void is harmless.
   std::vector<VoidedReading> add_void(std::int64_t file, const JournalReading& key);
+  /// True if a reading of that key was ever taken back: tells a void that is repeated from one that is
+  /// mistaken.
+  [[nodiscard]] bool was_voided(const JournalReading& key);
   /// False if the same one (analyzer, standard, measurand, kind, at) is known. `file` 0: it came by another
   /// way.
   bool add_intervention(std::int64_t file, const JournalIntervention& intervention);
@@ -146,6 +149,8 @@ class Journal {
   void add_transition(const StoredTransition& transition);
   std::int64_t add_message(const OutboxMessage& message);
   void add_try(const DeliveryTry& attempt);
+  /// Makes a message due again, whatever became of it; false if there is none with that webhook-id.
+  bool send_again(std::string_view webhook_id, Instant due_at);
   void add_configuration(std::string_view text, std::string_view sha256, Instant at);
 
   // Reading forward, voided and censored readings left out; within the open batch its rows are seen.

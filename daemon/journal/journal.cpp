@@ -1,0 +1,145 @@
+// Opening the journal, and the life of a batch.
+#include "daemon/journal/journal.hpp"
+
+#include "daemon/journal/chain.hpp"
+#include "daemon/journal/journal_impl.hpp"
+#include "daemon/journal/schema.hpp"
+
+namespace agreed::journal {
+namespace {
+
+std::unique_ptr<SQLite::Database> open_and_migrate(const std::filesystem::path& file) {
+  return translating(file, [&file] {
+    create_if_missing(file, std::chrono::time_point_cast<Duration>(std::chrono::system_clock::now()));
+    auto database = open_writer(file);
+    check_usable(*database, file);
+    migrate(*database, file, migrations());
+    return database;
+  });
+}
+
+}  // namespace
+
+Store::Store(const std::filesystem::path& folder)
+    : file(database_file(folder)),
+      database(open_and_migrate(file)),
+      names(*database),
+      history(*database),
+      tallies(load_tallies(*database)) {
+  load_identity();
+}
+
+void Store::load_identity() {
+  SQLite::Statement meta(*database, "SELECT source, created_at FROM meta");
+  meta.executeStep();
+  source = meta.getColumn(0).getString();
+  head.sha256 = chain_start(source, instant(meta.getColumn(1)));
+  SQLite::Statement newest(*database, "SELECT sequence, sha256 FROM batches ORDER BY sequence DESC LIMIT 1");
+  if (newest.executeStep()) head = {newest.getColumn(0).getInt64(), newest.getColumn(1).getString()};
+}
+
+void Store::begin(Instant at) {
+  if (in_batch) {
+    rollback();
+    throw JournalError("A batch was begun inside another (a fault of ours)", false);
+  }
+  // IMMEDIATE: another writer is met here and waited for, not in the middle of the batch.
+  translating(file, [this] { database->exec("BEGIN IMMEDIATE"); });
+  in_batch = true;
+  now = at;
+  committed = tallies;
+  names.begin_batch();
+  history.begin(head.sequence + 1, head.sha256, at);
+}
+
+void Store::commit() {
+  in_open_batch([this] {
+    write_arrivals();
+    ChainHead next = head;
+    if (!history.empty()) {
+      next = {head.sequence + 1, history.finish()};
+      write_batch(next);
+    }
+    database->exec("COMMIT");
+    head = next;
+    in_batch = false;
+    tallies.arrivals.clear();
+    tallies.took_in = false;
+  });
+}
+
+void Store::write_arrivals() {
+  for (const Arrival& a : tallies.arrivals) {
+    std::optional<std::int64_t> newest;
+    if (a.newest_measured_at) newest = milliseconds(*a.newest_measured_at);
+    history.start(Table::arrivals)
+        .integer(a.file)
+        .name(a.analyzer, names.text_of(a.analyzer))
+        .integer(a.accepted)
+        .integer(a.repeated)
+        .integer(a.rejected)
+        .integer(a.voided)
+        .integer(a.censored)
+        .optional_integer(newest)
+        .insert();
+  }
+  if (tallies.took_in) tallies.totals.last_commit_at = now;
+}
+
+void Store::write_batch(const ChainHead& next) {
+  Query row = query("INSERT INTO batches VALUES(?, ?, ?, ?)");
+  row->bind(1, next.sequence);
+  row->bind(2, head.sha256);
+  row->bind(3, next.sha256);
+  row->bind(4, milliseconds(now));
+  row->exec();
+}
+
+void Store::rollback() noexcept {
+  // SQLite may have rolled back by itself (disk full); then a ROLLBACK of ours would be an error.
+  if (sqlite3_get_autocommit(database->getHandle()) == 0) database->tryExec("ROLLBACK");
+  if (!in_batch) return;
+  in_batch = false;
+  tallies = std::move(committed);
+  names.forget_batch();
+  history.forget_batch();
+}
+
+Query Store::query(const char* sql) {
+  auto& statement = queries_[sql];
+  if (!statement) statement = std::make_unique<SQLite::Statement>(*database, sql);
+  return Query(*statement);
+}
+
+}  // namespace agreed::journal
+
+namespace agreed {
+
+Journal::Journal(const std::filesystem::path& folder) {
+  const auto file = journal::database_file(folder);
+  journal::translating(file, [&] { impl_ = std::make_unique<Impl>(folder); });
+}
+Journal::~Journal() {
+  impl_->rollback();
+}
+
+std::string Journal::source() const {
+  return impl_->source;
+}
+IntakeTotals Journal::totals() const {
+  return impl_->tallies.totals;
+}
+ChainHead Journal::head() const {
+  return impl_->head;
+}
+void Journal::begin(Instant now) {
+  impl_->begin(now);
+}
+void Journal::commit() {
+  impl_->commit();
+}
+void Journal::rollback() noexcept {
+  impl_->rollback();
+}
+
+}  // namespace agreed

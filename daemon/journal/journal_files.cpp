@@ -1,0 +1,85 @@
+// Files, their outcomes and rejected rows; interventions.
+#include "daemon/journal/journal_impl.hpp"
+
+namespace agreed {
+
+using journal::Query;
+using journal::Table;
+
+std::int64_t journal::Store::analyzer_of_file(std::int64_t id) {
+  if (last_file_.first == id) return last_file_.second;
+  Query row = query("SELECT analyzer FROM files WHERE id = ?");
+  row->bind(1, id);
+  if (!row->executeStep())
+    throw JournalError("File " + std::to_string(id) + " is not in the journal (a fault of ours)", false);
+  // Not kept when the batch is rolled back: its id may then go to another file.
+  if (id <= history.committed_id(Table::files)) last_file_ = {id, row->getColumn(0).getInt64()};
+  return row->getColumn(0).getInt64();
+}
+
+bool Journal::knows_content(std::string_view analyzer, std::string_view sha256) {
+  return journal::translating(impl_->file, [&] {
+    const auto id = impl_->names.find(analyzer);
+    if (!id) return false;
+    Query row = impl_->query(
+        "SELECT 1 FROM files f JOIN file_outcomes o ON o.file = f.id WHERE f.analyzer = ? AND f.sha256 = ? "
+        "AND o.outcome = 'done' AND NOT EXISTS (SELECT 1 FROM rejected_rows r WHERE r.file = f.id) LIMIT 1");
+    row->bind(1, *id);
+    row->bind(2, std::string(sha256));
+    return row->executeStep();
+  });
+}
+
+std::int64_t Journal::add_file(const JournalFile& file) {
+  return impl_->in_open_batch([&] {
+    const std::int64_t analyzer = impl_->names.id_of(file.analyzer);
+    impl_->tallies.begin_file();
+    return impl_->history.start(Table::files)
+        .name(analyzer, file.analyzer)
+        .bytes(file.name)
+        .text(file.sha256)
+        .integer(static_cast<std::int64_t>(file.size))
+        .integer(file.mtime_ns)
+        .insert()
+        .value();
+  });
+}
+
+void Journal::finish_file(std::int64_t file, std::string_view outcome, std::string_view reason) {
+  impl_->in_open_batch([&] {
+    impl_->history.start(Table::file_outcomes).integer(file).text(outcome).text(reason).insert();
+    impl_->tallies.finish_file(outcome);
+  });
+}
+
+void Journal::add_rejected_row(std::int64_t file, std::uint32_t line, std::uint32_t column,
+                               std::string_view text, std::string_view reason) {
+  impl_->in_open_batch([&] {
+    impl_->tallies.reject(file, impl_->analyzer_of_file(file));
+    impl_->history.start(Table::rejected_rows)
+        .integer(file)
+        .integer(line)
+        .integer(column)
+        .bytes(text)
+        .text(reason)
+        .insert();
+  });
+}
+
+bool Journal::add_intervention(std::int64_t file, const JournalIntervention& intervention) {
+  return impl_->in_open_batch([&] {
+    return impl_->history.start(Table::interventions)
+        .text(intervention.analyzer)
+        .text(intervention.standard)
+        .text(intervention.measurand)
+        .text(intervention.kind)
+        .time(intervention.at)
+        .text(intervention.by)
+        .text(intervention.note)
+        .optional_integer(file == 0 ? std::nullopt : std::optional(file))
+        .insert()
+        .has_value();
+  });
+}
+
+}  // namespace agreed

@@ -1,0 +1,200 @@
+// Read-only views of the journal for HTTP, the sender and the command line.
+#include "daemon/journal/connection.hpp"
+#include "daemon/journal/journal_impl.hpp"
+#include "daemon/journal/schema.hpp"
+
+namespace agreed {
+namespace {
+
+using journal::instant;
+using journal::milliseconds;
+
+/// One short read transaction: the queries in it see the same moment.
+class Moment {
+ public:
+  explicit Moment(SQLite::Database& database) : database_(database) { database_.exec("BEGIN"); }
+  ~Moment() { database_.tryExec("COMMIT"); }
+  Moment(const Moment&) = delete;
+  Moment& operator=(const Moment&) = delete;
+
+ private:
+  SQLite::Database& database_;
+};
+
+std::vector<StoredTransition> history_of(SQLite::Database& database, std::int64_t alert) {
+  std::vector<StoredTransition> history;
+  SQLite::Statement rows(database,
+                         "SELECT alert, at, change, body FROM alert_transitions WHERE alert = ? ORDER BY id");
+  rows.bind(1, alert);
+  while (rows.executeStep())
+    history.push_back({rows.getColumn(0).getInt64(), instant(rows.getColumn(1)),
+                       rows.getColumn(2).getString(), rows.getColumn(3).getString()});
+  return history;
+}
+
+DeliveryRow delivery(SQLite::Statement& row) {
+  DeliveryRow d;
+  d.message = row.getColumn(0).getString();
+  d.route = row.getColumn(1).getString();
+  d.type = row.getColumn(2).getString();
+  d.state = row.getColumn(3).getString();
+  d.created_at = instant(row.getColumn(4));
+  d.tries = row.getColumn(6).getInt();
+  d.last_status = row.getColumn(7).getInt();
+  d.last_error = row.getColumn(8).getString();
+  if (d.state == "waiting") d.next_try_at = instant(row.getColumn(5));
+  if (!row.getColumn(9).isNull()) d.delivered_at = instant(row.getColumn(9));
+  return d;
+}
+
+std::vector<DeliveryRow> deliveries_of(SQLite::Database& database, std::int64_t alert) {
+  std::vector<DeliveryRow> deliveries;
+  SQLite::Statement rows(
+      database,
+      "SELECT m.webhook_id, m.route, m.type, o.state, m.created_at, o.due_at, o.tries, l.status, l.error, "
+      "(SELECT max(at) FROM delivery_tries d WHERE d.message = m.id AND d.delivered = 1) "
+      "FROM messages m JOIN outbox o ON o.message = m.id LEFT JOIN delivery_tries l ON l.id = "
+      "(SELECT max(id) FROM delivery_tries t WHERE t.message = m.id) WHERE m.alert = ? ORDER BY m.id");
+  rows.bind(1, alert);
+  while (rows.executeStep()) deliveries.push_back(delivery(rows));
+  return deliveries;
+}
+
+AlertRecord record_of(SQLite::Database& database, std::int64_t alert, std::string body) {
+  return {std::move(body), history_of(database, alert), deliveries_of(database, alert)};
+}
+
+std::string places(std::size_t count) {
+  std::string text;
+  for (std::size_t i = 0; i < count; ++i) text += i == 0 ? "?" : ",?";
+  return text;
+}
+
+/// Alerts the query asks for, newest first, and the body of their newest transition.
+std::vector<std::pair<std::int64_t, std::string>> select_alerts(SQLite::Database& database,
+                                                                const AlertQuery& query) {
+  std::string sql =
+      "SELECT t.alert, t.body FROM alert_transitions t WHERE t.id = (SELECT max(u.id) FROM alert_transitions "
+      "u WHERE u.alert = t.alert) AND (? = 0 OR t.alert < ?) AND t.at >= ?";
+  if (!query.states.empty()) sql += " AND t.state IN (" + places(query.states.size()) + ")";
+  SQLite::Statement rows(database, sql + " ORDER BY t.alert DESC LIMIT ?");
+  int place = 0;
+  rows.bind(++place, query.before_id);
+  rows.bind(++place, query.before_id);
+  rows.bind(++place, milliseconds(query.since.value_or(Instant::min())));
+  for (const std::string& state : query.states) rows.bind(++place, state);
+  rows.bind(++place, query.limit);
+  std::vector<std::pair<std::int64_t, std::string>> found;
+  while (rows.executeStep()) found.emplace_back(rows.getColumn(0).getInt64(), rows.getColumn(1).getString());
+  return found;
+}
+
+std::vector<RejectedRow> rejected_rows_of(SQLite::Database& database, std::int64_t file) {
+  std::vector<RejectedRow> rejected;
+  SQLite::Statement rows(
+      database,
+      "SELECT file, line, field, text, reason FROM rejected_rows WHERE file = ? ORDER BY id LIMIT 20");
+  rows.bind(1, file);
+  while (rows.executeStep())
+    rejected.push_back({rows.getColumn(0).getInt64(), rows.getColumn(1).getUInt(),
+                        rows.getColumn(2).getUInt(), rows.getColumn(3).getString(),
+                        rows.getColumn(4).getString()});
+  return rejected;
+}
+
+FileRow file_row(SQLite::Database& database, SQLite::Statement& row) {
+  FileRow f;
+  f.id = row.getColumn(0).getInt64();
+  f.analyzer = row.getColumn(1).getString();
+  f.name = row.getColumn(2).getString();
+  f.sha256 = row.getColumn(3).getString();
+  f.outcome = row.getColumn(4).getString();
+  f.reason = row.getColumn(5).getString();
+  f.received_at = instant(row.getColumn(6));
+  f.accepted = row.getColumn(7).getInt64();
+  f.repeated = row.getColumn(8).getInt64();
+  f.rejected = row.getColumn(9).getInt64();
+  if (f.rejected > 0) f.rejected_rows = rejected_rows_of(database, f.id);
+  return f;
+}
+
+constexpr const char* kFiles =
+    "SELECT f.id, n.text, f.name, f.sha256, coalesce(o.outcome, ''), coalesce(o.reason, ''), b.committed_at, "
+    "(SELECT coalesce(sum(accepted), 0) FROM arrivals a WHERE a.file = f.id), "
+    "(SELECT coalesce(sum(repeated), 0) FROM arrivals a WHERE a.file = f.id), "
+    "(SELECT coalesce(sum(rejected), 0) FROM arrivals a WHERE a.file = f.id) "
+    "FROM files f JOIN names n ON n.id = f.analyzer JOIN batches b ON b.sequence = f.batch ";
+constexpr const char* kAnyOutcome = "LEFT JOIN file_outcomes o ON o.file = f.id WHERE (?1 = 0 OR f.id < ?1) ";
+constexpr const char* kOneOutcome =
+    "JOIN file_outcomes o ON o.file = f.id WHERE (?1 = 0 OR f.id < ?1) AND o.outcome = ?3 ";
+
+}  // namespace
+
+struct JournalReader::Impl {
+  explicit Impl(const std::filesystem::path& folder)
+      : file(journal::database_file(folder)), database(journal::open_reader(file)) {
+    journal::check_usable(*database, file);
+  }
+
+  std::filesystem::path file;
+  std::unique_ptr<SQLite::Database> database;
+};
+
+JournalReader::JournalReader(const std::filesystem::path& folder) {
+  journal::translating(journal::database_file(folder), [&] { impl_ = std::make_unique<Impl>(folder); });
+}
+JournalReader::~JournalReader() = default;
+JournalReader::JournalReader(JournalReader&&) noexcept = default;
+
+std::vector<AlertRecord> JournalReader::alerts(const AlertQuery& query) {
+  return journal::translating(impl_->file, [&] {
+    const Moment moment(*impl_->database);
+    std::vector<AlertRecord> records;
+    for (auto& [alert, body] : select_alerts(*impl_->database, query))
+      records.push_back(record_of(*impl_->database, alert, std::move(body)));
+    return records;
+  });
+}
+
+std::optional<AlertRecord> JournalReader::alert(std::int64_t id) {
+  return journal::translating(impl_->file, [&]() -> std::optional<AlertRecord> {
+    const Moment moment(*impl_->database);
+    SQLite::Statement row(*impl_->database,
+                          "SELECT body FROM alert_transitions WHERE alert = ? ORDER BY id DESC LIMIT 1");
+    row.bind(1, id);
+    if (!row.executeStep()) return std::nullopt;
+    return record_of(*impl_->database, id, row.getColumn(0).getString());
+  });
+}
+
+std::optional<OutboxMessage> JournalReader::next_message(std::string_view route) {
+  return journal::translating(impl_->file, [&]() -> std::optional<OutboxMessage> {
+    SQLite::Statement row(*impl_->database,
+                          "SELECT m.id, m.webhook_id, m.route, m.type, m.body, m.alert, m.created_at, "
+                          "o.due_at, o.tries FROM outbox o JOIN messages m ON m.id = o.message WHERE "
+                          "o.route = ? AND o.state = 'waiting' ORDER BY o.message LIMIT 1");
+    row.bind(1, std::string(route));
+    if (!row.executeStep()) return std::nullopt;
+    return OutboxMessage{
+        row.getColumn(0).getInt64(),  row.getColumn(1).getString(), row.getColumn(2).getString(),
+        row.getColumn(3).getString(), row.getColumn(4).getString(), row.getColumn(5).getInt64(),
+        instant(row.getColumn(6)),    instant(row.getColumn(7)),    row.getColumn(8).getInt()};
+  });
+}
+
+std::vector<FileRow> JournalReader::files(std::string_view outcome, int limit, std::int64_t before_id) {
+  return journal::translating(impl_->file, [&] {
+    const Moment moment(*impl_->database);
+    SQLite::Statement rows(
+        *impl_->database,
+        std::string(kFiles) + (outcome.empty() ? kAnyOutcome : kOneOutcome) + "ORDER BY f.id DESC LIMIT ?2");
+    rows.bind(1, before_id);
+    rows.bind(2, limit);
+    if (!outcome.empty()) rows.bind(3, std::string(outcome));
+    std::vector<FileRow> found;
+    while (rows.executeStep()) found.push_back(file_row(*impl_->database, rows));
+    return found;
+  });
+}
+
+}  // namespace agreed

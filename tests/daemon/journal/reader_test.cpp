@@ -1,0 +1,186 @@
+// What read-only connections see: alerts with their record, the outbox, files.
+#include <doctest/doctest.h>
+
+#include "scratch.hpp"
+
+using namespace agreed;
+using namespace agreed::testing;
+
+namespace {
+
+OutboxMessage message(std::string id, std::string route, std::int64_t alert = 0) {
+  return {0, std::move(id), std::move(route), "agreed.alert.opened", "{\"n\":1}", alert, at(1), at(2), 0};
+}
+
+template <class Work>
+void in_batch(Journal& journal, std::int64_t now, const Work& work) {
+  journal.begin(at(now));
+  work();
+  journal.commit();
+}
+
+}  // namespace
+
+TEST_CASE("an alert comes with its newest body, its history and its deliveries") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  in_batch(journal, 5, [&] {
+    journal.add_transition({17, at(5), "opened", R"({"state":"open"})"});
+    const auto first = journal.add_message(message("msg_1", "engineer", 17));
+    journal.add_message(message("msg_2", "shift", 17));
+    journal.add_message(message("msg_3", "shift", 18));
+    journal.add_try({first, at(6), 503, "503 Service Unavailable", false, false, at(7)});
+    journal.add_try({first, at(7), 204, "", true, false, std::nullopt});
+    journal.add_transition({17, at(8), "acknowledged", R"({"state":"acknowledged"})"});
+  });
+  CHECK_FALSE(reader.alert(18).has_value());
+  const auto alert = reader.alert(17);
+  REQUIRE(alert.has_value());
+  CHECK(alert->body == R"({"state":"acknowledged"})");
+  REQUIRE(alert->history.size() == 2);
+  CHECK(alert->history[0].change == "opened");
+  CHECK(alert->history[1].at == at(8));
+  REQUIRE(alert->deliveries.size() == 2);
+  const DeliveryRow& first = alert->deliveries[0];
+  CHECK(first.message == "msg_1");
+  CHECK(first.route == "engineer");
+  CHECK(first.state == "delivered");
+  CHECK(first.tries == 2);
+  CHECK(first.last_status == 204);
+  CHECK(first.delivered_at == at(7));
+  CHECK_FALSE(first.next_try_at.has_value());
+  CHECK(alert->deliveries[1].state == "waiting");
+  CHECK(alert->deliveries[1].next_try_at == at(2));
+  CHECK(alert->deliveries[1].tries == 0);
+}
+
+TEST_CASE("alerts are chosen by state, by time and by page, newest first") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  in_batch(journal, 0, [&] {
+    for (int id = 1; id <= 5; ++id) journal.add_transition({id, at(id), "opened", R"({"state":"open"})"});
+    journal.add_transition({2, at(20), "resolved", R"({"state":"resolved"})"});
+    // Bodies that do not tell: the change does, and one that implies nothing keeps what was.
+    journal.add_transition({3, at(21), "acknowledged", "not JSON"});
+    journal.add_transition({3, at(22), "changed", "{}"});
+  });
+  const auto ids = [&](const AlertQuery& query) {
+    std::vector<std::int64_t> found;
+    for (const auto& record : reader.alerts(query)) found.push_back(record.history.front().alert);
+    return found;
+  };
+  AlertQuery query;
+  CHECK(ids(query) == std::vector<std::int64_t>{5, 4, 3, 2, 1});
+  query.states = {"open"};
+  CHECK(ids(query) == std::vector<std::int64_t>{5, 4, 1});
+  query.states = {"acknowledged", "resolved"};
+  CHECK(ids(query) == std::vector<std::int64_t>{3, 2});
+  query.since = at(21);
+  CHECK(ids(query) == std::vector<std::int64_t>{3});
+  query = {};
+  query.limit = 2;
+  query.before_id = 4;
+  CHECK(ids(query) == std::vector<std::int64_t>{3, 2});
+}
+
+TEST_CASE("messages of a route keep their order: the oldest not settled one comes, due or not") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  std::int64_t a1 = 0, a2 = 0;
+  in_batch(journal, 0, [&] {
+    a1 = journal.add_message(message("a1", "a", 3));
+    journal.add_message(message("b1", "b"));
+    a2 = journal.add_message(message("a2", "a"));
+  });
+  CHECK_FALSE(reader.next_message("c").has_value());
+  const auto first = reader.next_message("a");
+  REQUIRE(first.has_value());
+  CHECK(first->id == a1);
+  CHECK(first->webhook_id == "a1");
+  CHECK(first->route == "a");
+  CHECK(first->type == "agreed.alert.opened");
+  CHECK(first->body == "{\"n\":1}");
+  CHECK(first->alert == 3);
+  CHECK(first->created_at == at(1));
+  CHECK(first->due_at == at(2));
+
+  in_batch(journal, 1, [&] { journal.add_try({a1, at(3), 0, "refused", false, false, at(600)}); });
+  CHECK(reader.next_message("a")->id == a1);
+  CHECK(reader.next_message("a")->due_at == at(600));
+  CHECK(reader.next_message("a")->tries == 1);
+  in_batch(journal, 2, [&] { journal.add_try({a1, at(600), 0, "refused", false, true, std::nullopt}); });
+  CHECK(reader.next_message("a")->id == a2);
+  in_batch(journal, 3, [&] { journal.add_try({a2, at(601), 200, "", true, false, std::nullopt}); });
+  CHECK_FALSE(reader.next_message("a").has_value());
+  CHECK(reader.next_message("b")->webhook_id == "b1");
+
+  in_batch(journal, 4, [&] {
+    CHECK(journal.send_again("a1", at(700)));
+    CHECK_FALSE(journal.send_again("nobody", at(700)));
+  });
+  CHECK(reader.next_message("a")->id == a1);
+  CHECK(reader.next_message("a")->due_at == at(700));
+}
+
+TEST_CASE("a message id is used once") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  journal.begin(at(0));
+  journal.add_message(message("same", "a"));
+  CHECK_THROWS_AS(journal.add_message(message("same", "a")), JournalError);
+}
+
+TEST_CASE("files come newest first, with their counts and at most 20 of their rejected rows") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  std::int64_t first = 0;
+  in_batch(journal, 10, [&] {
+    JournalFile file = file_of("s1");
+    file.name = std::string("odd\xff\nname.csv");
+    first = journal.add_file(file);
+    journal.add_reading(first, check("wheat-low", 0, 1));
+    for (std::uint32_t line = 2; line < 30; ++line)
+      journal.add_rejected_row(first, line, 3, std::string("a\0\xff", 3), "no number");
+  });
+  CHECK(reader.files("", 10, 0).at(0).outcome.empty());
+  in_batch(journal, 20, [&] {
+    journal.add_reading(first, check("wheat-low", 1, 1));
+    journal.add_reading(first, check("wheat-low", 1, 1));
+    journal.finish_file(first, "done", "");
+    journal.finish_file(journal.add_file(file_of("s2")), "rejected", "no header");
+  });
+  const auto files = reader.files("", 10, 0);
+  REQUIRE(files.size() == 2);
+  CHECK(files[0].outcome == "rejected");
+  CHECK(files[0].reason == "no header");
+  CHECK(files[1].id == first);
+  CHECK(files[1].name == "odd\xff\nname.csv");
+  CHECK(files[1].analyzer == "line1");
+  CHECK(files[1].received_at == at(10));
+  CHECK(files[1].accepted == 2);
+  CHECK(files[1].repeated == 1);
+  CHECK(files[1].rejected == 28);
+  REQUIRE(files[1].rejected_rows.size() == 20);
+  CHECK(files[1].rejected_rows[0].line == 2);
+  CHECK(files[1].rejected_rows[0].column == 3);
+  CHECK(files[1].rejected_rows[0].text == std::string("a\0\xff", 3));
+  CHECK(reader.files("done", 10, 0).size() == 1);
+  CHECK(reader.files("repeated", 10, 0).empty());
+  CHECK(reader.files("", 1, 0).at(0).outcome == "rejected");
+  CHECK(reader.files("", 10, files[0].id).at(0).id == first);
+}
+
+TEST_CASE("a reader sees no half batch and does not hold up the writer") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  journal.begin(at(0));
+  journal.add_message(message("m", "a"));
+  CHECK_FALSE(reader.next_message("a").has_value());
+  journal.commit();
+  CHECK(reader.next_message("a").has_value());
+}
