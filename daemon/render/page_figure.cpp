@@ -20,6 +20,13 @@ std::string legend_html(const std::vector<LegendEntry>& legend) {
 
 }  // namespace
 
+void keep_newest(DataTable& table, std::size_t most) {
+  if (table.rows.size() <= most) return;
+  table.caption += " (" + std::to_string(most) + " of " + std::to_string(table.rows.size()) +
+                   ", the others are on the page of their own)";
+  table.rows.resize(most);
+}
+
 std::string table_html(const DataTable& table) {
   // Tables that need more room than there is scroll by themselves; the focus lets the keyboard scroll them.
   std::string out = "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"" +

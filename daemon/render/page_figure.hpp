@@ -30,6 +30,8 @@ struct Figure {
 /// How much of a figure is shown: a small one among many, or a large one on a page of its own.
 enum class FigureDetail { small, full };
 
+/// Cuts a table that runs newest first to its first `most` rows and says so in its caption.
+void keep_newest(DataTable& table, std::size_t most);
 [[nodiscard]] std::string table_html(const DataTable& table);
 /// The table folded away under `words`; `id` keeps it open over a refresh.
 [[nodiscard]] std::string folded_table_html(const std::string& id, const std::string& words,

@@ -16,35 +16,37 @@ constexpr std::size_t kListedFrom = 2;
 
 std::string bias_cell(const ComparisonScene& scene) {
   const auto at = foremost_level(scene.view);
-  if (!at) return "<td>none yet</td>";
+  if (!at) return "none yet";
   const LevelView& level = scene.view.levels[*at];
   const double share = std::abs(*level.bias) / *level.allowable;
   const std::string words = shown_signed(*level.bias, scene.style.decimals) + " of \u00b1" +
                             with_unit(*level.allowable, scene.style) + " at " + shortest(level.level);
   // The track is the allowable difference; a bias beyond it fills the track and says so.
   const int width = static_cast<int>(std::lround(100 * std::min(share, 1.0)));
-  return "<td><svg class=\"share\" viewBox=\"0 0 100 8\" preserveAspectRatio=\"none\" aria-hidden=\"true\" "
+  return "<svg class=\"share\" viewBox=\"0 0 100 8\" preserveAspectRatio=\"none\" aria-hidden=\"true\" "
          "focusable=\"false\"><rect class=\"track\" width=\"100\" height=\"8\"/><rect class=\"" +
          std::string(share > 1 ? "filled beyond" : "filled") + "\" width=\"" + std::to_string(width) +
-         "\" height=\"8\"/></svg>" + escaped(words) + (share > 1 ? ", beyond it" : "") + "</td>";
+         "\" height=\"8\"/></svg>" + escaped(words) + (share > 1 ? ", beyond it" : "");
 }
 
+/// The roles are spelled out because narrow screens show the rows as blocks, which drops those of a table.
 std::string list_html(const PageInput& input) {
   const Settings& settings = *input.snapshot.settings;
+  const std::string head = "<th role=\"columnheader\" scope=\"col\">", cell = "<td role=\"cell\">";
   std::string out =
-      "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"All comparisons\"><table "
-      "class=\"list\">"
-      "<caption class=\"unseen\">All comparisons</caption><thead><tr><th scope=\"col\">comparison</th>"
-      "<th scope=\"col\">agrees?</th><th scope=\"col\">largest bias</th><th "
-      "scope=\"col\">since</th></tr></thead><tbody>";
+      "<table role=\"table\" class=\"list\"><caption class=\"unseen\">All comparisons</caption>"
+      "<thead role=\"rowgroup\"><tr role=\"row\">" +
+      head + "comparison</th>" + head + "agrees?</th>" + head + "largest bias</th>" + head +
+      "since</th></tr></thead><tbody role=\"rowgroup\">";
   for (std::uint32_t i = 0; i < settings.comparisons.size(); ++i) {
     const ComparisonScene scene = comparison_scene(input.snapshot, ComparisonIndex{i});
-    out += "<tr><th scope=\"row\">" + link_html(comparison_path(scene.asked), scene.name()) + "</th><td>" +
-           answer_badge_html(answer_for(scene)) + "</td>" + bias_cell(scene) + "<td>" +
+    out += "<tr role=\"row\"><th role=\"rowheader\" scope=\"row\">" +
+           link_html(comparison_path(scene.asked), scene.name()) + "</th>" + cell +
+           answer_badge_html(answer_for(scene)) + "</td>" + cell + bias_cell(scene) + "</td>" + cell +
            (scene.view.verdict_since ? time_html(*scene.view.verdict_since) : std::string("not yet")) +
            "</td></tr>";
   }
-  return out + "</tbody></table></div>";
+  return out + "</tbody></table>";
 }
 
 bool needs_a_look(const PageInput& input, const ComparisonScene& scene) {
@@ -150,7 +152,9 @@ std::string current_alerts_html(const PageInput& input) {
   std::stable_sort(sorted.begin(), sorted.end(),
                    [](const Alert* a, const Alert* b) { return a->severity > b->severity; });
   constexpr std::size_t kShown = 8;
+  out += "<div class=\"alerts\">";
   for (std::size_t i = 0; i < sorted.size() && i < kShown; ++i) out += alert_html(input, *sorted[i], 3);
+  out += "</div>";
   if (sorted.size() > kShown)
     out += "<p>" + link_html("/alerts", "All " + std::to_string(sorted.size()) + " current alerts") + "</p>";
   return out + "</section>";

@@ -2,7 +2,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <map>
 
 namespace agreed {
 namespace {
@@ -85,20 +84,50 @@ void add_more(Answer& answer, const ComparisonScene& scene) {
     answer.more.push_back(reason_words(view.verdict_reason));
 }
 
-/// Which of the levels carries the sentence: one that has the verdict, else the foremost.
-std::optional<std::size_t> speaking_level(const ComparisonView& view) {
+bool speaks(const LevelView& level) {
+  return level.bias && level.allowable && *level.allowable > 0;
+}
+
+/// How much of the allowable difference the bias takes; only of a level that speaks.
+double share_taken(const LevelView& level) {
+  return std::abs(*level.bias) / *level.allowable;
+}
+
+template <class Admit>
+std::optional<std::size_t> largest_share(const ComparisonView& view, Admit&& admit) {
   std::optional<std::size_t> best;
-  double most = -1;
   for (std::size_t i = 0; i < view.levels.size(); ++i) {
-    const LevelView& level = view.levels[i];
-    if (!level.bias || !level.allowable || !(*level.allowable > 0) || level.verdict != view.verdict) continue;
-    const double share = std::abs(*level.bias) / *level.allowable;
-    if (share > most) {
-      best = i;
-      most = share;
-    }
+    if (!speaks(view.levels[i]) || !admit(view.levels[i])) continue;
+    if (!best || share_taken(view.levels[i]) > share_taken(view.levels[*best])) best = i;
   }
-  return best ? best : foremost_level(view);
+  return best;
+}
+
+/// The level that carries the sentence: among those that have the comparison's verdict when it is not good,
+/// else among all.
+std::optional<std::size_t> speaking_level(const ComparisonView& view) {
+  if (view.verdict != Verdict::agreement_shown) {
+    const auto own =
+        largest_share(view, [&](const LevelView& level) { return level.verdict == view.verdict; });
+    if (own) return own;
+  }
+  return foremost_level(view);
+}
+
+/// What the level says now, which the confirmed verdict may not say yet, or no more.
+std::string sentence_of(const ComparisonScene& scene, const LevelView& level) {
+  if (level.verdict != Verdict::agreement_shown && level.verdict != Verdict::disagreement_shown)
+    return undecided(scene, level);
+  const std::string words =
+      level.verdict == Verdict::agreement_shown ? agreeing(scene, level) : disagreeing(scene, level);
+  return level.verdict == scene.view.verdict ? words : words + " That is not confirmed yet.";
+}
+
+/// The sentence with the comparison's name in front.
+std::string named(const ComparisonScene& scene, std::string sentence) {
+  if (!sentence.empty() && sentence[0] >= 'A' && sentence[0] <= 'Z')
+    sentence[0] = static_cast<char>(sentence[0] - 'A' + 'a');
+  return scene.name() + ": " + sentence;
 }
 
 std::string several_sentence(const std::vector<std::string>& names, std::size_t of, std::string_view what) {
@@ -114,18 +143,7 @@ std::string several_sentence(const std::vector<std::string>& names, std::size_t 
 }  // namespace
 
 std::optional<std::size_t> foremost_level(const ComparisonView& view) {
-  std::optional<std::size_t> best;
-  double most = -1;
-  for (std::size_t i = 0; i < view.levels.size(); ++i) {
-    const LevelView& level = view.levels[i];
-    if (!level.bias || !level.allowable || !(*level.allowable > 0)) continue;
-    const double share = std::abs(*level.bias) / *level.allowable;
-    if (share > most) {
-      best = i;
-      most = share;
-    }
-  }
-  return best;
+  return largest_share(view, [](const LevelView&) { return true; });
 }
 
 std::string bias_direction(const ComparisonScene& scene, double bias) {
@@ -176,16 +194,16 @@ Answer answer_for(const ComparisonScene& scene) {
     case Verdict::agreement_shown:
       answer.kind = AnswerKind::yes;
       answer.word = drifting(view) ? "Yes, but changing" : "Yes";
-      answer.sentence = level ? agreeing(scene, view.levels[*level]) : "Agreement is shown.";
+      answer.sentence = level ? sentence_of(scene, view.levels[*level]) : "Agreement is shown.";
       break;
     case Verdict::disagreement_shown:
       answer.kind = AnswerKind::no;
       answer.word = "No";
-      answer.sentence = level ? disagreeing(scene, view.levels[*level]) : "Disagreement is shown.";
+      answer.sentence = level ? sentence_of(scene, view.levels[*level]) : "Disagreement is shown.";
       break;
     case Verdict::inconclusive:
       answer.word = "Not shown";
-      answer.sentence = level ? undecided(scene, view.levels[*level]) : "The pairs do not decide it yet.";
+      answer.sentence = level ? sentence_of(scene, view.levels[*level]) : "The pairs do not decide it yet.";
       break;
     case Verdict::gathering:
       answer.word = "Not yet";
@@ -205,56 +223,56 @@ Answer starting_answer(const Snapshot& snapshot) {
   return answer;
 }
 
+/// What the comparisons of one verdict say together.
+struct Group {
+  std::vector<std::string> names;
+  std::optional<Instant> earliest, latest;
+  double most = -1;      ///< largest share of its allowable difference that a bias takes
+  std::string sentence;  ///< of that comparison
+};
+
+void add_to(Group& group, const ComparisonScene& scene) {
+  group.names.push_back(scene.name());
+  if (const auto since = scene.view.verdict_since) {
+    group.earliest = group.earliest ? std::min(*group.earliest, *since) : *since;
+    group.latest = group.latest ? std::max(*group.latest, *since) : *since;
+  }
+  const auto level = speaking_level(scene.view);
+  const double share = level ? share_taken(scene.view.levels[*level]) : -0.5;
+  if (share <= group.most) return;
+  group.most = share;
+  group.sentence = named(scene, answer_for(scene).sentence);
+}
+
 Answer answer_of_several(const Snapshot& snapshot) {
-  struct Group {
-    std::vector<std::string> names;
-    std::optional<Instant> earliest, latest;
-  };
-  std::map<Verdict, Group> groups;
-  Answer nearest;
-  double most = -1;
+  Group yes, no, waiting;
   bool changing = false;
   const std::size_t count = snapshot.settings->comparisons.size();
   for (std::uint32_t i = 0; i < count; ++i) {
     const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{i});
-    Group& group = groups[scene.view.verdict];
-    group.names.push_back(scene.name());
-    if (const auto since = scene.view.verdict_since) {
-      group.earliest = group.earliest ? std::min(*group.earliest, *since) : *since;
-      group.latest = group.latest ? std::max(*group.latest, *since) : *since;
-    }
+    const Verdict verdict = scene.view.verdict;
+    add_to(verdict == Verdict::agreement_shown      ? yes
+           : verdict == Verdict::disagreement_shown ? no
+                                                    : waiting,
+           scene);
     changing = changing || drifting(scene.view);
-    const auto level = foremost_level(scene.view);
-    const double share =
-        level ? std::abs(*scene.view.levels[*level].bias) / *scene.view.levels[*level].allowable : -0.5;
-    if (share <= most) continue;
-    most = share;
-    nearest = answer_for(scene);
-    nearest.sentence = scene.name() + ": " + nearest.sentence;
   }
   Answer answer;
-  const Group& no = groups[Verdict::disagreement_shown];
-  const Group& yes = groups[Verdict::agreement_shown];
   if (!no.names.empty()) {
-    answer = {AnswerKind::no, "No", "disagreement shown", since_words(no.earliest, snapshot.at), {}, {}};
+    answer = {AnswerKind::no, "No", "disagreement shown", since_words(no.earliest, snapshot.at),
+              no.sentence,    {}};
     answer.more.push_back(several_sentence(no.names, count, "disagree"));
-  } else if (yes.names.size() == count) {
-    answer = {AnswerKind::yes,
-              changing ? "Yes, but changing" : "Yes",
-              "agreement shown",
-              since_words(yes.latest, snapshot.at),
-              {},
-              {}};
+  } else if (waiting.names.empty()) {
+    answer = {AnswerKind::yes,   changing ? "Yes, but changing" : "Yes",
+              "agreement shown", since_words(yes.latest, snapshot.at),
+              yes.sentence,      {}};
     answer.more.push_back("Agreement is shown in all " + std::to_string(count) + " comparisons.");
   } else {
-    answer = {
-        AnswerKind::not_yet, yes.names.empty() ? "Not yet" : "Not all", "not shown everywhere", {}, {}, {}};
-    std::vector<std::string> waiting = groups[Verdict::inconclusive].names;
-    waiting.insert(waiting.end(), groups[Verdict::gathering].names.begin(),
-                   groups[Verdict::gathering].names.end());
-    answer.more.push_back(several_sentence(waiting, count, "do not show agreement"));
+    answer = {AnswerKind::not_yet,    yes.names.empty() ? "Not yet" : "Not all",
+              "not shown everywhere", {},
+              waiting.sentence,       {}};
+    answer.more.push_back(several_sentence(waiting.names, count, "do not show agreement"));
   }
-  answer.sentence = nearest.sentence;
   if (changing) answer.more.push_back("In at least one comparison a change is under way.");
   return answer;
 }
@@ -274,7 +292,7 @@ Answer overall_answer(const Snapshot& snapshot) {
   if (count > 1) return answer_of_several(snapshot);
   const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{0});
   Answer answer = answer_for(scene);
-  answer.sentence = scene.name() + ": " + answer.sentence;
+  answer.sentence = named(scene, answer.sentence);
   return answer;
 }
 

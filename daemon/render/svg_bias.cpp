@@ -51,6 +51,27 @@ std::string verdict_css(Verdict verdict) {
   return verdict == Verdict::disagreement_shown ? "mark no" : "mark notyet";
 }
 
+/// Two lines where the comparison began anew: what stood before does not lead into what stands after.
+void add_trend(Plot& plot, const std::vector<BiasRow>& rows, const std::optional<Instant>& anew) {
+  std::vector<PlotPoint> upper, lower, middle;
+  const auto flush = [&] {
+    plot.area(upper, lower, "interval");
+    plot.line(upper, "interval-edge");
+    plot.line(lower, "interval-edge");
+    plot.line(middle, "trend");
+    upper.clear();
+    lower.clear();
+    middle.clear();
+  };
+  for (const BiasRow& row : rows) {
+    if (anew && row.at >= on_axis(*anew) && !middle.empty() && middle.back().x < on_axis(*anew)) flush();
+    upper.push_back({row.at, row.high});
+    lower.push_back({row.at, row.low});
+    middle.push_back({row.at, row.bias});
+  }
+  flush();
+}
+
 std::string draw(const ComparisonScene& scene, const LevelView& level, const std::vector<BiasRow>& rows,
                  const Figure& figure, const std::string& id, FigureSize size) {
   ExtentOf times;
@@ -66,16 +87,7 @@ std::string draw(const ComparisonScene& scene, const LevelView& level, const std
     plot.across(-a, "allowed-edge", shown_signed(-a, decimals));
   }
   plot.across(0, "zero");
-  std::vector<PlotPoint> upper, lower, middle;
-  for (const BiasRow& row : rows) {
-    upper.push_back({row.at, row.high});
-    lower.push_back({row.at, row.low});
-    middle.push_back({row.at, row.bias});
-  }
-  plot.area(upper, lower, "interval");
-  plot.line(upper, "interval-edge");
-  plot.line(lower, "interval-edge");
-  plot.line(middle, "trend");
+  add_trend(plot, rows, scene.view.window.since_intervention);
   if (scene.view.window.since_intervention)
     plot.upright(on_axis(*scene.view.window.since_intervention), "event");
   if (scene.view.pair_chart.started_at) plot.upright(on_axis(*scene.view.pair_chart.started_at), "begun");
@@ -100,7 +112,7 @@ Figure bias_figure(const ComparisonScene& scene, std::size_t index, FigureDetail
   const bool full = detail == FigureDetail::full;
   const auto rows = rows_of(scene.view, index, full ? scene.view.bias_history.size() : kSmall);
   if (rows.empty()) return figure;
-  figure.drawing = draw(scene, level, rows, figure, figure.id, {480, full ? 260.0 : 210.0});
+  figure.drawing = draw(scene, level, rows, figure, figure.id, {360, full ? 220.0 : 180.0});
   if (full) figure.wide = draw(scene, level, rows, figure, figure.id + ".wide", {960, 300});
   figure.legend = {{legend_line("trend"), "bias"}, {legend_area("interval"), "90 % interval"}};
   if (level.allowable) figure.legend.push_back({legend_area("allowed"), "allowable"});
@@ -114,6 +126,7 @@ Figure bias_figure(const ComparisonScene& scene, std::size_t index, FigureDetail
     figure.table.rows.push_back({shown_time(Instant(Duration(static_cast<std::int64_t>(row->at)))),
                                  shown_signed(row->bias, decimals), shown_signed(row->low, decimals),
                                  shown_signed(row->high, decimals)});
+  if (!full) keep_newest(figure.table, kSmallTable);
   return figure;
 }
 

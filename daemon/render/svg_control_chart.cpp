@@ -194,7 +194,7 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
 std::string draw(const ChartScene& scene, const Canvas& canvas, const Figure& figure, const std::string& id,
                  FigureSize size) {
   return draw_readings(scene, canvas, figure, id, size) +
-         draw_ranges(scene, canvas, id + ".ranges", {size.width, 110});
+         draw_ranges(scene, canvas, id + ".ranges", {size.width, 105});
 }
 
 void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
@@ -249,10 +249,11 @@ Figure control_chart_figure(const ChartScene& scene, FigureDetail detail) {
   if (scene.view.points.empty()) return figure;
   const bool full = detail == FigureDetail::full;
   const Canvas canvas = canvas_of(scene.view, full ? scene.view.points.size() : kSmall);
-  figure.drawing = draw(scene, canvas, figure, figure.id, {480, full ? 260.0 : 210.0});
+  figure.drawing = draw(scene, canvas, figure, figure.id, {360, full ? 220.0 : 190.0});
   if (full) figure.wide = draw(scene, canvas, figure, figure.id + ".wide", {960, 320});
   add_legend(figure, scene, canvas);
   add_table(figure, scene, canvas);
+  if (!full) keep_newest(figure.table, kSmallTable);
   return figure;
 }
 

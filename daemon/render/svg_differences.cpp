@@ -75,7 +75,7 @@ Figure differences_figure(const ComparisonScene& scene, FigureDetail detail) {
   figure.heading = "Differences";
   figure.summary = difference_words(scene);
   if (scene.view.pairs.empty()) return figure;
-  figure.drawing = draw(scene, figure, figure.id, {480, 280});
+  figure.drawing = draw(scene, figure, figure.id, {360, 240});
   if (detail == FigureDetail::full) figure.wide = draw(scene, figure, figure.id + ".wide", {960, 320});
   figure.legend = {{legend_dot("dots"), "pair"}};
   if (scene.view.difference) {

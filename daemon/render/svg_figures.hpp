@@ -19,6 +19,9 @@ namespace agreed {
 /// Readings of a check standard with centre line, limits, signals, marks and moving ranges.
 [[nodiscard]] Figure control_chart_figure(const ChartScene& scene, FigureDetail detail);
 
+/// Rows in the table of a small figure.
+inline constexpr std::size_t kSmallTable = 20;
+
 /// Milliseconds since 1970 UTC, for a time axis.
 [[nodiscard]] double on_axis(Instant at);
 /// The newest `most` of a list.

@@ -52,7 +52,7 @@ Figure pair_chart_figure(const ComparisonScene& scene, FigureDetail detail) {
   figure.id = "pair-chart." + id_part(scene.asked.id);
   figure.heading = "Pair chart: did the relation change?";
   figure.summary = pair_chart_words(scene);
-  figure.drawing = draw(scene, figure, figure.id, {480, 240});
+  figure.drawing = draw(scene, figure, figure.id, {360, 210});
   if (detail == FigureDetail::full && !figure.drawing.empty())
     figure.wide = draw(scene, figure, figure.id + ".wide", {960, 280});
   if (!figure.drawing.empty()) {

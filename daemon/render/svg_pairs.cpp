@@ -85,7 +85,7 @@ Figure pairs_figure(const ComparisonScene& scene, FigureDetail detail) {
   const bool full = detail == FigureDetail::full;
   const auto pairs = newest(scene.view.pairs, full ? scene.view.pairs.size() : kSmall);
   if (pairs.empty()) return figure;
-  figure.drawing = draw(scene, pairs, figure, {480, full ? 420.0 : 400.0});
+  figure.drawing = draw(scene, pairs, figure, {360, full ? 340.0 : 330.0});
   add_legend(figure, scene, pairs);
   const int decimals = scene.style.decimals;
   figure.table = {"Pairs, newest first",
@@ -95,6 +95,7 @@ Figure pairs_figure(const ComparisonScene& scene, FigureDetail detail) {
     figure.table.rows.push_back({pair->sample, shown_time(pair->measured_at), shown(pair->x, decimals),
                                  shown(pair->y, decimals), shown_signed(pair->y - pair->x, decimals),
                                  pair->residual ? shown(*pair->residual, 2) : "", pair_note(*pair)});
+  if (!full) keep_newest(figure.table, kSmallTable);
   return figure;
 }
 

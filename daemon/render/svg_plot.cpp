@@ -109,7 +109,7 @@ double Plot::to_y(double y) const {
 
 void Plot::value_axis_x(std::string_view name) {
   const double base = size_.height - bottom_;
-  for (const Tick& tick : value_ticks(x_.low, x_.high, std::max(2, static_cast<int>(size_.width / 95)))) {
+  for (const Tick& tick : value_ticks(x_.low, x_.high, std::max(2, static_cast<int>(size_.width / 75)))) {
     axes_ += line_element(to_x(tick.at), top_, to_x(tick.at), base, "grid");
     axes_ += text_element(to_x(tick.at), base + 15, "tick middle", tick.label);
   }

@@ -8,7 +8,7 @@
 namespace agreed {
 
 struct FigureSize {
-  double width = 480, height = 250;  ///< in units of the drawing; text is about 13 of them high
+  double width = 360, height = 210;  ///< in units of the drawing; text is about 13 of them high
 };
 
 /// low < high; see around() for one that holds given values.
@@ -37,7 +37,7 @@ enum class Shape { circle, square, diamond, triangle_up, triangle_down, cross, d
 class Plot {
  public:
   /// `id` must be unique in the page and fit for an id attribute; `right` is the room for line labels.
-  Plot(std::string id, FigureSize size, Extent x, Extent y, double right = 74);
+  Plot(std::string id, FigureSize size, Extent x, Extent y, double right = 62);
 
   void value_axis_x(std::string_view name);
   void time_axis_x(bool labels = true);
@@ -73,7 +73,7 @@ class Plot {
   std::string id_;
   FigureSize size_;
   Extent x_, y_;
-  double left_ = 58, right_, top_ = 20, bottom_ = 34;
+  double left_ = 50, right_, top_ = 20, bottom_ = 34;
   std::string axes_, clipped_, over_;
   std::vector<SideLabel> labels_;
   double last_flag_ = -1e9;

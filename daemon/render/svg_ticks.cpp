@@ -16,8 +16,8 @@ constexpr std::array<const char*, 12> kMonths = {"Jan", "Feb", "Mar", "Apr", "Ma
                                                  "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"};
 
 // Round steps below a month, in minutes.
-constexpr std::array<std::int64_t, 14> kSteps = {1,   2,   5,   10,  15,   30,   60,
-                                                 120, 180, 360, 720, 1440, 2880, 10080};
+constexpr std::array<std::int64_t, 15> kSteps = {1,   2,   5,   10,   15,   30,   60,   120,
+                                                 180, 360, 720, 1440, 2880, 5760, 10080};
 constexpr std::array<int, 7> kMonthSteps = {1, 2, 3, 6, 12, 24, 60};
 
 std::string month_name(month m) {
