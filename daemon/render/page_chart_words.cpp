@@ -1,0 +1,111 @@
+#include "daemon/render/page_chart_words.hpp"
+
+#include <cmath>
+
+#include "daemon/render/page_words.hpp"
+
+namespace agreed {
+namespace {
+
+std::string score_words(const std::optional<double>& score, double limit) {
+  return score ? shown(*score, 2) + " of " + shown(limit, 2) : "not yet given";
+}
+
+std::string learned_words(const ChartScene& scene) {
+  const BaselineView& base = scene.view.baseline;
+  std::string out = counted(base.readings, "reading", "readings") + " learned";
+  if (base.center) out += ", centre " + with_unit(*base.center, scene.style);
+  if (base.sd) out += ", sd " + with_unit(*base.sd, scene.style);
+  if (base.set_aside > 0) out += ", " + std::to_string(base.set_aside) + " set aside";
+  return out;
+}
+
+std::string unstable_words(const ChartScene& scene) {
+  const ChartView& view = scene.view;
+  const std::string begun = beginning_words(view.change.started_at, view.change.started_between);
+  if (view.pattern == "scatter") {
+    std::string out = "Unstable: the readings scatter more";
+    if (view.precision.ratio_of_sd)
+      out += ", " + shown(*view.precision.ratio_of_sd, 1) + " times the sd before";
+    return out + "; begun " + begun + ".";
+  }
+  std::string out = view.pattern == "single_reading" ? "Unstable: a single reading stands off"
+                                                     : "Unstable: the level shifted";
+  if (view.change.shift)
+    out += " by " + shown_signed(*view.change.shift, scene.style.decimals) + " " + scene.style.unit;
+  return out + "; begun " + begun + ".";
+}
+
+}  // namespace
+
+std::string state_words(ChartState state) {
+  switch (state) {
+    case ChartState::stable:
+      return "stable";
+    case ChartState::unstable:
+      return "unstable";
+    case ChartState::learning:
+      break;
+  }
+  return "learning";
+}
+
+std::string signal_words(ChartSignal signal) {
+  switch (signal) {
+    case ChartSignal::single_high:
+      return "single high";
+    case ChartSignal::single_low:
+      return "single low";
+    case ChartSignal::shift_up:
+      return "shift up";
+    case ChartSignal::shift_down:
+      return "shift down";
+    case ChartSignal::scatter_up:
+      break;
+  }
+  return "scatter up";
+}
+
+std::string chart_words(const ChartScene& scene) {
+  const ChartView& view = scene.view;
+  if (view.points.empty()) return "No reading yet. The chart begins with its first reading.";
+  std::string out;
+  if (view.state == ChartState::unstable)
+    out = unstable_words(scene) + " " + learned_words(scene) + ".";
+  else if (view.state == ChartState::learning)
+    out = "Learning: " + std::to_string(view.baseline.readings) + " of " +
+          std::to_string(view.baseline.needed) + " readings; it calls out from the fifth reading on. " +
+          learned_words(scene) + ".";
+  else
+    out = "Stable: " + learned_words(scene) + ".";
+  if (view.lower_limit && view.upper_limit)
+    out += " The next reading is expected between " + shown(*view.lower_limit, scene.style.decimals) +
+           " and " + with_unit(*view.upper_limit, scene.style) + ".";
+  return out + " Change score " + score_words(view.change.score, view.change.limit) + ".";
+}
+
+std::string precision_words(const ChartScene& scene) {
+  const ChartView& view = scene.view;
+  std::string out = "Precision score " + score_words(view.precision.score, view.precision.limit) + ".";
+  if (view.baseline.sigma)
+    out += " Repeatability sigma " + with_unit(*view.baseline.sigma, scene.style) +
+           " from the mean moving range" +
+           (view.baseline.sigma_degrees_of_freedom
+                ? " on " + shown(*view.baseline.sigma_degrees_of_freedom, 1) + " degrees of freedom."
+                : ".");
+  return out;
+}
+
+std::string reference_words(const ChartScene& scene) {
+  if (!scene.view.reference) return {};
+  const ReferenceView& reference = *scene.view.reference;
+  std::string out = "Reference value " + with_unit(reference.value, scene.style);
+  if (reference.expanded_uncertainty)
+    out += " \u00b1 " + shown(*reference.expanded_uncertainty, scene.style.decimals) + " (coverage factor " +
+           shortest(reference.coverage_factor) + ")";
+  if (reference.bias) out += "; bias " + shown_signed(*reference.bias, scene.style.decimals);
+  if (reference.normalised_error) out += ", normalised error " + shown(*reference.normalised_error, 2);
+  return out + ".";
+}
+
+}  // namespace agreed

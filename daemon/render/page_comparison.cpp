@@ -1,0 +1,97 @@
+// All of one comparison, and all of one chart.
+#include "daemon/render/page_chart_words.hpp"
+#include "daemon/render/page_views.hpp"
+#include "daemon/render/svg_figures.hpp"
+
+namespace agreed {
+namespace {
+
+DataTable level_table(const ComparisonScene& scene) {
+  DataTable table{"Decision levels, " + scene.style.unit,
+                  {"level", "verdict", "bias", "90 % interval", "allowable", "single samples within",
+                   "single results differ by"},
+                  {}};
+  const int decimals = scene.style.decimals;
+  for (const LevelView& level : scene.view.levels) {
+    const auto number = [&](const std::optional<double>& value) {
+      return value ? shown_signed(*value, decimals) : std::string("not yet");
+    };
+    table.rows.push_back(
+        {shortest(level.level),
+         verdict_words(level.verdict) + (level.reason.empty() ? "" : ", " + spaced(level.reason)),
+         number(level.bias),
+         level.low && level.high ? number(level.low) + " to " + number(level.high) : "not yet",
+         level.allowable ? "\u00b1" + shown(*level.allowable, decimals) : "not given",
+         level.single_result ? shown_share(level.single_result->share_within) : "not yet",
+         level.single_result ? number(level.single_result->low) + " to " + number(level.single_result->high)
+                             : "not yet"});
+  }
+  return table;
+}
+
+std::string window_words(const ComparisonScene& scene) {
+  const WindowView& window = scene.view.window;
+  std::string out = counted(window.pairs, "pair", "pairs") + " in the window of at most " +
+                    std::to_string(window.capacity > 0 ? window.capacity : scene.asked.window_pairs);
+  if (window.from && window.to) out += ", from " + shown_time(*window.from) + " to " + shown_time(*window.to);
+  out += "; " + counted(scene.view.pairs_total, "pair", "pairs") + " in all";
+  if (scene.view.waiting > 0)
+    out += "; " + counted(scene.view.waiting, "result waits", "results wait") + " for a partner";
+  if (window.since_intervention)
+    out += ". The comparison began anew at " + shown_time(*window.since_intervention);
+  return out + ".";
+}
+
+std::string range_words(const ComparisonScene& scene) {
+  if (!scene.view.range) return {};
+  const RangeView& range = *scene.view.range;
+  return "Range: reliability ratio " + shown(range.reliability_ratio, 3) +
+         (range.adequate ? ", adequate" : ", too narrow for a firm slope") +
+         (range.covers_levels ? "; the samples cover every decision level."
+                              : "; not every decision level is covered.");
+}
+
+std::string paragraph(const std::string& words) {
+  return words.empty() ? words : "<p>" + escaped(words) + "</p>";
+}
+
+}  // namespace
+
+std::string comparison_html(const PageInput& input, ComparisonIndex index) {
+  const ComparisonScene scene = comparison_scene(input.snapshot, index);
+  std::string out = "<h1>" + escaped(scene.name()) + ": do " + escaped(scene.x) + " and " + escaped(scene.y) +
+                    " agree?</h1>" + answer_html(answer_for(scene), true);
+  Subject subject;
+  subject.comparison = scene.asked.id;
+  out += alerts_of_html(input, subject);
+  out += "<section><h2>At the decision levels</h2>";
+  out +=
+      scene.view.levels.empty() ? paragraph("There is nothing to show yet.") : table_html(level_table(scene));
+  out += "<div class=\"figures broad\">";
+  for (std::size_t level = 0; level < scene.view.levels.size(); ++level)
+    out += figure_html(bias_figure(scene, level, FigureDetail::full), 3);
+  out += "</div></section><section><h2>The pairs</h2>" + paragraph(window_words(scene)) +
+         warnings_html(scene.view.warnings) + "<div class=\"figures broad\">" +
+         figure_html(pairs_figure(scene, FigureDetail::full), 3) +
+         figure_html(differences_figure(scene, FigureDetail::full), 3) +
+         figure_html(pair_chart_figure(scene, FigureDetail::full), 3) + "</div></section>";
+  out += "<section><h2>What the figures rest on</h2>" + paragraph(error_words(scene)) +
+         paragraph(scatter_words(scene)) + paragraph(range_words(scene));
+  return out + "</section>";
+}
+
+std::string chart_html(const PageInput& input, ChartIndex index) {
+  const ChartScene scene = chart_scene(input.snapshot, index);
+  std::string out = "<h1>" + escaped(scene.name()) + "</h1><p>" + chart_badge_html(scene.view.state) + "</p>";
+  out += paragraph(chart_words(scene)) + paragraph(precision_words(scene)) +
+         paragraph(reference_words(scene)) + warnings_html(scene.view.warnings);
+  Subject subject;
+  subject.analyzer = scene.analyzer;
+  subject.standard = scene.standard;
+  subject.measurand = scene.measurand.id;
+  out += alerts_of_html(input, subject);
+  return out + "<section><h2>Readings</h2><div class=\"figures broad\">" +
+         figure_html(control_chart_figure(scene, FigureDetail::full), 3) + "</div></section>";
+}
+
+}  // namespace agreed

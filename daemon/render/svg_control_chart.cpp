@@ -1,0 +1,260 @@
+// A control chart: readings with centre line and narrowing limits, signals, marks, and the moving ranges
+// below.
+#include <algorithm>
+#include <set>
+
+#include "daemon/render/page_chart_words.hpp"
+#include "daemon/render/svg_figures.hpp"
+#include "daemon/render/svg_plot.hpp"
+
+namespace agreed {
+namespace {
+
+constexpr std::size_t kSmall = 90;
+
+Shape signal_shape(ChartSignal signal) {
+  switch (signal) {
+    case ChartSignal::single_high:
+      return Shape::triangle_up;
+    case ChartSignal::single_low:
+      return Shape::triangle_down;
+    case ChartSignal::shift_up:
+      return Shape::double_up;
+    case ChartSignal::shift_down:
+      return Shape::double_down;
+    case ChartSignal::scatter_up:
+      break;
+  }
+  return Shape::star;
+}
+
+const char* signal_sample(ChartSignal signal) {
+  switch (signal) {
+    case ChartSignal::single_high:
+      return "M13 1L19 13L7 13Z";
+    case ChartSignal::single_low:
+      return "M13 15L19 3L7 3Z";
+    case ChartSignal::shift_up:
+      return "M7 8L13 0L19 8ZM7 15L13 7L19 15Z";
+    case ChartSignal::shift_down:
+      return "M7 8L13 16L19 8ZM7 1L13 9L19 1Z";
+    case ChartSignal::scatter_up:
+      break;
+  }
+  return "M13 0L15 6L21 8L15 10L13 16L11 10L5 8L11 6Z";
+}
+
+std::string signals_text(const ChartPoint& point) {
+  std::string out;
+  for (const ChartSignal signal : point.signals) out += (out.empty() ? "" : ", ") + signal_words(signal);
+  return out;
+}
+
+/// The shown points with what all parts of the drawing share.
+struct Canvas {
+  std::vector<ChartPoint> points;
+  Extent time;
+};
+
+Canvas canvas_of(const ChartView& view, std::size_t most) {
+  Canvas canvas{newest(view.points, most), {}};
+  ExtentOf time;
+  for (const ChartPoint& point : canvas.points) time.add(on_axis(point.measured_at));
+  for (const StretchMark& mark : view.marks)
+    if (mark.at >= canvas.points.front().measured_at) time.add(on_axis(mark.at));
+  canvas.time = time.padded(0.02);
+  return canvas;
+}
+
+Extent value_extent(const ChartView& view, const Canvas& canvas) {
+  ExtentOf extent;
+  for (const ChartPoint& point : canvas.points) extent.add(point.value);
+  // The limits of the first readings of a stretch are far apart and are clipped; those of the last are not.
+  if (view.upper_limit) extent.add(*view.upper_limit);
+  if (view.lower_limit) extent.add(*view.lower_limit);
+  return extent.padded(0.1);
+}
+
+/// Marks the readings of the present stretch up to the last one of its baseline.
+void add_learning(Plot& plot, const ChartView& view, const Canvas& canvas) {
+  const auto begun = std::find_if(canvas.points.rbegin(), canvas.points.rend(),
+                                  [](const ChartPoint& p) { return p.starts_stretch; });
+  if (begun == canvas.points.rend()) return;
+  int learned = 0;
+  auto last = begun.base() - 1;
+  for (auto point = last; point != canvas.points.end() && learned < view.baseline.needed; ++point) {
+    if (point->set_aside) continue;
+    ++learned;
+    last = point;
+  }
+  plot.block(on_axis((begun.base() - 1)->measured_at), on_axis(last->measured_at), "learning");
+}
+
+/// Limits as areas, one per stretch, since those of two stretches have nothing to do with each other.
+void add_limits(Plot& plot, const Canvas& canvas) {
+  std::vector<PlotPoint> upper, lower;
+  const auto flush = [&] {
+    plot.area(upper, lower, "expected");
+    plot.line(upper, "limit");
+    plot.line(lower, "limit");
+    upper.clear();
+    lower.clear();
+  };
+  for (const ChartPoint& point : canvas.points) {
+    if (point.starts_stretch) flush();
+    if (!point.upper || !point.lower) continue;
+    upper.push_back({on_axis(point.measured_at), *point.upper});
+    lower.push_back({on_axis(point.measured_at), *point.lower});
+  }
+  flush();
+}
+
+void add_readings(Plot& plot, const Canvas& canvas) {
+  std::vector<PlotPoint> line, dots;
+  const auto flush = [&] {
+    plot.line(line, "thread");
+    line.clear();
+  };
+  for (const ChartPoint& point : canvas.points) {
+    const PlotPoint at{on_axis(point.measured_at), point.value};
+    if (point.starts_stretch) flush();
+    line.push_back(at);
+    if (!point.set_aside && point.signals.empty()) dots.push_back(at);
+  }
+  flush();
+  plot.dots(dots, "dots");
+}
+
+void add_signals(Plot& plot, const ChartScene& scene, const Canvas& canvas) {
+  constexpr double kWordRoom = 80;
+  double last_word = -kWordRoom;
+  for (const ChartPoint& point : canvas.points) {
+    const PlotPoint at{on_axis(point.measured_at), point.value};
+    const std::string when = shown_time(point.measured_at) + ": " + with_unit(point.value, scene.style);
+    if (point.set_aside && point.signals.empty())
+      plot.shape(Shape::circle, at, "hollow", "set aside, " + when);
+    if (point.signals.empty()) continue;
+    plot.shape(signal_shape(point.signals.front()), at, "signal", signals_text(point) + ", " + when);
+    if (plot.to_x(at.x) - last_word < kWordRoom) continue;
+    last_word = plot.to_x(at.x);
+    plot.words_at(at, signals_text(point), "signal-word");
+  }
+}
+
+void add_marks(Plot& plot, const ChartView& view, bool flags) {
+  for (std::size_t i = 0; i < view.marks.size(); ++i)
+    plot.upright(on_axis(view.marks[i].at), "event", flags ? std::to_string(i + 1) : std::string());
+}
+
+std::string draw_readings(const ChartScene& scene, const Canvas& canvas, const Figure& figure,
+                          const std::string& id, FigureSize size) {
+  const ChartView& view = scene.view;
+  Plot plot(id, size, canvas.time, value_extent(view, canvas));
+  plot.value_axis_y(title_or_id(scene.measurand.title, scene.measurand.id) + ", " + scene.style.unit);
+  plot.time_axis_x(false);
+  add_learning(plot, view, canvas);
+  add_limits(plot, canvas);
+  const int decimals = scene.style.decimals;
+  if (view.change.started_between && view.state == ChartState::unstable)
+    plot.block(on_axis(view.change.started_between->first), on_axis(view.change.started_between->last),
+               "doubt");
+  if (view.reference) plot.across(view.reference->value, "reference");
+  if (view.baseline.center)
+    plot.across(*view.baseline.center, "centre", shown(*view.baseline.center, decimals));
+  if (view.upper_limit) plot.across(*view.upper_limit, "none", shown(*view.upper_limit, decimals));
+  if (view.lower_limit) plot.across(*view.lower_limit, "none", shown(*view.lower_limit, decimals));
+  add_marks(plot, view, true);
+  add_readings(plot, canvas);
+  add_signals(plot, scene, canvas);
+  return plot.svg(figure.heading, figure.summary);
+}
+
+std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std::string& id,
+                        FigureSize size) {
+  std::vector<PlotPoint> bars;
+  ExtentOf extent;
+  extent.add(0);
+  for (const ChartPoint& point : canvas.points) {
+    if (!point.moving_range) continue;
+    bars.push_back({on_axis(point.measured_at), *point.moving_range});
+    extent.add(*point.moving_range);
+  }
+  Plot plot(id, size, canvas.time, {0, extent.padded(0.15).high});
+  plot.value_axis_y("moving range", 2);
+  plot.time_axis_x();
+  add_marks(plot, scene.view, false);
+  plot.bars(bars, "bars");
+  const auto mean = scene.view.baseline.moving_range_mean;
+  if (mean) plot.across(*mean, "centre", shown(*mean, scene.style.decimals));
+  return plot.svg(
+      "Moving ranges of " + scene.name(),
+      mean ? "Mean moving range " + with_unit(*mean, scene.style) + "." : "No mean moving range yet.");
+}
+
+std::string draw(const ChartScene& scene, const Canvas& canvas, const Figure& figure, const std::string& id,
+                 FigureSize size) {
+  return draw_readings(scene, canvas, figure, id, size) +
+         draw_ranges(scene, canvas, id + ".ranges", {size.width, 105});
+}
+
+void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
+  const ChartView& view = scene.view;
+  figure.legend = {{legend_dot("dots"), "reading"},
+                   {legend_line("centre"), "centre"},
+                   {legend_area("expected"), "expected of a reading from those before it"}};
+  std::set<ChartSignal> signals;
+  bool aside = false;
+  for (const ChartPoint& point : canvas.points) {
+    if (!point.signals.empty()) signals.insert(point.signals.front());
+    aside = aside || point.set_aside;
+  }
+  for (const ChartSignal signal : signals)
+    figure.legend.push_back({legend_path("signal", signal_sample(signal)), signal_words(signal)});
+  if (aside)
+    figure.legend.push_back({legend_path("hollow", "M8 8a5 5 0 1 0 10 0a5 5 0 1 0 -10 0Z"), "set aside"});
+  figure.legend.push_back({legend_area("learning"), "baseline"});
+  if (view.change.started_between && view.state == ChartState::unstable)
+    figure.legend.push_back({legend_area("doubt"), "the change began within"});
+  if (view.reference) figure.legend.push_back({legend_line("reference"), "reference value"});
+  for (std::size_t i = 0; i < view.marks.size(); ++i)
+    if (on_axis(view.marks[i].at) >= canvas.time.low)
+      figure.legend.push_back(
+          {legend_line("event"),
+           std::to_string(i + 1) + ": " + spaced(view.marks[i].what) + ", " + shown_time(view.marks[i].at)});
+}
+
+void add_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
+  const int decimals = scene.style.decimals;
+  figure.table = {
+      scene.name() + ", newest first",
+      {"measured at", "reading", "moving range", "change score", "precision score", "signals", "use"},
+      {}};
+  for (auto point = canvas.points.rbegin(); point != canvas.points.rend(); ++point)
+    figure.table.rows.push_back({shown_time(point->measured_at), shown(point->value, decimals),
+                                 point->moving_range ? shown(*point->moving_range, decimals) : "",
+                                 point->score ? shown(*point->score, 2) : "",
+                                 point->precision_score ? shown(*point->precision_score, 2) : "",
+                                 signals_text(*point), point->set_aside ? "set aside" : "learned"});
+}
+
+}  // namespace
+
+Figure control_chart_figure(const ChartScene& scene, FigureDetail detail) {
+  Figure figure;
+  figure.id =
+      "chart." + id_part(scene.analyzer) + "." + id_part(scene.standard) + "." + id_part(scene.measurand.id);
+  figure.heading = scene.standard + ", " + title_or_id(scene.measurand.title, scene.measurand.id) +
+                   (scene.view.lot.empty() ? "" : ", lot " + scene.view.lot);
+  figure.summary = chart_words(scene);
+  if (scene.view.points.empty()) return figure;
+  const bool full = detail == FigureDetail::full;
+  const Canvas canvas = canvas_of(scene.view, full ? scene.view.points.size() : kSmall);
+  figure.drawing = draw(scene, canvas, figure, figure.id, {360, full ? 220.0 : 190.0});
+  if (full) figure.wide = draw(scene, canvas, figure, figure.id + ".wide", {960, 320});
+  add_legend(figure, scene, canvas);
+  add_table(figure, scene, canvas);
+  if (!full) keep_newest(figure.table, kSmallTable);
+  return figure;
+}
+
+}  // namespace agreed
