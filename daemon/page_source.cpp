@@ -3,6 +3,7 @@
 #include <map>
 
 #include "daemon/clock.hpp"
+#include "daemon/http/target.hpp"
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/render/page.hpp"
@@ -31,7 +32,11 @@ PageHook pages_of(const Service& service, AlertSource alerts) {
   return [&service, alerts = std::move(alerts)](const std::string& path,
                                                 const std::string& query) -> std::optional<Page> {
     const auto snapshot = service.snapshot();
-    auto page = render_page(path, parse_query(query), *snapshot, *snapshot->alerts, recently_resolved(alerts),
+    const auto target = take_apart("/?" + query);
+    const std::map<std::string, std::string> parameters =
+        target ? std::map<std::string, std::string>(target->parameters.begin(), target->parameters.end())
+               : std::map<std::string, std::string>();
+    auto page = render_page(path, parameters, *snapshot, *snapshot->alerts, recently_resolved(alerts),
                             now_utc());
     if (!page) return std::nullopt;
     return Page{page->status, std::move(page->content_type), std::move(page->body)};

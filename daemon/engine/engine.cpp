@@ -308,7 +308,7 @@ void Engine::publish(Instant now) {
     next_.alerts_of_comparison.clear();
     for (const Alert& alert : current) {
       ++(alert.state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
-      if (alert.severity == Severity::critical) ++next_.alerts_critical;
+      if (alert.severity == Severity::critical && alert.state == AlertState::open) ++next_.alerts_critical;
       if (!alert.subject.comparison.empty()) ++next_.alerts_of_comparison[alert.subject.comparison];
     }
     next_.alerts = std::make_shared<const std::vector<Alert>>(std::move(current));

@@ -19,6 +19,11 @@ class LazyView {
     cell_->view = std::move(ready);
   }
 
+  /// False for a view that was given as nothing.
+  explicit operator bool() const {
+    const std::lock_guard lock(cell_->mutex);
+    return cell_->make || cell_->view;
+  }
   const View& operator*() const { return *look(); }
   const View* operator->() const { return look(); }
 

@@ -1,25 +1,8 @@
 #include "daemon/http/etag.hpp"
 
-#include <array>
-#include <stdexcept>
-
-#include <openssl/evp.h>
+#include "daemon/sha256.hpp"
 
 namespace agreed {
-
-std::string sha256_hex(std::string_view bytes) {
-  std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
-  unsigned int length = 0;
-  if (EVP_Digest(bytes.data(), bytes.size(), digest.data(), &length, EVP_sha256(), nullptr) != 1)
-    throw std::runtime_error("SHA-256 cannot be computed: the OpenSSL library refuses it");
-  constexpr std::string_view digits = "0123456789abcdef";
-  std::string hex;
-  for (unsigned int i = 0; i < length; ++i) {
-    hex.push_back(digits[digest[i] >> 4U]);
-    hex.push_back(digits[digest[i] & 15U]);
-  }
-  return hex;
-}
 
 std::string etag_of(std::string_view body) {
   return '"' + sha256_hex(body).substr(0, 32) + '"';

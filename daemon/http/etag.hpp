@@ -5,9 +5,6 @@
 
 namespace agreed {
 
-/// SHA-256 of `bytes` as 64 lower-case hexadecimal digits.
-[[nodiscard]] std::string sha256_hex(std::string_view bytes);
-
 /// A strong tag of a body: the first 128 bits of its SHA-256, with the quotes.
 [[nodiscard]] std::string etag_of(std::string_view body);
 

@@ -41,8 +41,7 @@ Json chart_counts(const Snapshot& snapshot, AnalyzerIndex analyzer) {
   int stable = 0, unstable = 0, learning = 0;
   for (std::size_t i = 0; i < snapshot.settings->charts.size(); ++i) {
     if (snapshot.settings->charts[i].analyzer != analyzer) continue;
-    const bool known = i < snapshot.charts.size() && snapshot.charts[i];
-    switch (known ? snapshot.charts[i]->state : ChartState::learning) {
+    switch (i < snapshot.chart_states.size() ? snapshot.chart_states[i] : ChartState::learning) {
       case ChartState::stable:
         ++stable;
         break;
@@ -92,12 +91,13 @@ Json largest_bias(const ComparisonView& view) {
 }
 
 Json comparisons_of(const Snapshot& snapshot) {
+  static const ComparisonView kNothing;
   const Settings& settings = *snapshot.settings;
   Json list = Json::array();
   for (std::size_t i = 0; i < settings.comparisons.size(); ++i) {
     const ComparisonSettings& comparison = settings.comparisons[i];
     const bool known = i < snapshot.comparisons.size() && snapshot.comparisons[i];
-    const ComparisonView view = known ? *snapshot.comparisons[i] : ComparisonView{};
+    const ComparisonView& view = known ? *snapshot.comparisons[i] : kNothing;
     const auto alerts = snapshot.alerts_of_comparison.find(comparison.id);
     list.push_back({{"id", comparison.id},
                     {"measurand", settings.of(comparison.measurand).id},
