@@ -135,7 +135,7 @@ AlertWords drifting_words(const ComparisonAlert& pair) {
   words.steps = {repeat_checks(pair),
                  critical ? "Hold the " + pair.measurand + " results of both analyzers" +
                                 earliest_start(pair.alert) + " until the verdict is known again."
-                          : "Do not wait for the verdict with what cannot be measured again.",
+                          : "Keep samples of what is measured meanwhile, so that it can be measured again.",
                  "Run at least 8 split samples on both analyzers, spread over the range of use.",
                  look_at_both(pair)};
   return words;

@@ -144,8 +144,7 @@ AlertWords service_words(const Alert& alert, const Settings& settings) {
                          "Make room on the disk that holds the state folder.");
     case AlertKind::delivery_failing:
       return plain_words(
-          alert, settings,
-          "Messages to " + or_else(alert.subject.service, "a webhook") + " cannot be delivered",
+          alert, "Messages to " + or_else(alert.subject.service, "a webhook") + " cannot be delivered",
           "Check the receiving side and the route's address and secret.");
     default:
       return plain_words(alert, to_string(alert.kind), "Look at the page of what it is about.");
