@@ -168,7 +168,10 @@ std::string make_call(const PostRequest& request, const PostLimits& limits,
   auto posted = library_request(request, url->path, limits.answer, call);
   httplib::Response response;
   auto error = httplib::Error::Success;
-  return client.send(posted, response, error) ? "" : words_for(error);
+  if (!client.send(posted, response, error)) return words_for(error);
+  // The library calls no response_handler for an answer without a body, such as 204.
+  call->head(response.status, response.get_header_value("Retry-After"));
+  return "";
 }
 
 }  // namespace

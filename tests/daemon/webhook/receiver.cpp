@@ -31,7 +31,8 @@ std::string Received::header(const std::string& lower_case_name) const {
 
 Reply answer(int status, const std::string& header_lines) {
   return [=](const auto& send) {
-    send("HTTP/1.1 " + std::to_string(status) + " X\r\n" + header_lines + "Content-Length: 2\r\n\r\nok");
+    send("HTTP/1.1 " + std::to_string(status) + " X\r\n" + header_lines +
+         (status == 204 ? "\r\n" : "Content-Length: 2\r\n\r\nok"));
   };
 }
 
