@@ -3,6 +3,7 @@
 #include <cstdint>
 #include <optional>
 #include <string>
+#include <string_view>
 
 #include "core/base/finding.hpp"
 #include "core/base/instant.hpp"
@@ -13,6 +14,7 @@ enum class AlertState { open, acknowledged, resolved };
 enum class AlertChange { opened, changed, acknowledged, resolved, reminder };
 [[nodiscard]] const char* to_string(AlertState state);
 [[nodiscard]] const char* to_string(AlertChange change);
+[[nodiscard]] std::optional<AlertState> alert_state_from(std::string_view name);
 
 struct Acknowledgement {
   std::string by;

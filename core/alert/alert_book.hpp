@@ -19,17 +19,21 @@ struct AlertPolicy {
 
 class AlertBook {
  public:
-  /// `restored`: every alert as its last transition left it; ids go on from the largest.
+  /// `restored`: every alert as its last transition left it; ids go on from the largest. Resolved ones are
+  /// kept only as long as they can reopen.
   AlertBook(AlertPolicy policy, std::shared_ptr<const Settings> settings, std::vector<Alert> restored);
 
   /// A finding that holds opens, reopens (resolved less than reopen_within ago: same id), raises or adds to
   /// the alert of its (kind, subject); one that has ceased resolves it. Kinds that resolve on acknowledgement
-  /// collect `files`, `items` or `samples` in their details.
+  /// collect `files`, `items` or `samples` in their details (see collected.hpp). What changes an alert
+  /// without making it worse is a `changed` that is not told; what changes nothing gives no transition. A
+  /// reopened alert begins anew: severity, details, opened_at, nobody has acknowledged it.
   [[nodiscard]] std::vector<AlertTransition> apply(const Finding& finding, Instant now);
 
   /// After a fold: `conditions` is all that holds now. Opens what has no open alert, resolves with `reason`
   /// what no longer holds; alerts of kinds that are not the monitor's, and kinds that resolve on
-  /// acknowledgement, are left alone. `streams`: only alerts of these subjects are compared; empty = all.
+  /// acknowledgement, are left alone. What still holds is brought up to date as by apply. `streams`: only
+  /// alerts of these subjects are compared; empty = all.
   [[nodiscard]] std::vector<AlertTransition> reconcile(std::span<const Finding> conditions,
                                                        std::span<const Subject> streams,
                                                        std::string_view reason, Instant now);
@@ -40,17 +44,26 @@ class AlertBook {
                                                             std::span<const std::string> still_set_aside,
                                                             Instant now);
 
-  /// Throws std::out_of_range for an unknown id and std::logic_error for one that is resolved already.
+  /// Throws std::out_of_range for an id never given and std::logic_error for one that is resolved already.
+  /// The first acknowledgement stands: a second one gives no transition. Kinds that resolve on
+  /// acknowledgement give two: acknowledged, then resolved with reason `acknowledged`.
   [[nodiscard]] std::vector<AlertTransition> acknowledge(std::int64_t id, const std::string& by,
                                                          const std::string& note, Instant now);
 
-  /// Reminders of open alerts that nobody acknowledged.
+  /// Reminders of open alerts that nobody acknowledged; none when remind_every is zero.
   [[nodiscard]] std::vector<AlertTransition> tick(Instant now);
 
   /// Open and acknowledged alerts, by id.
   [[nodiscard]] std::vector<const Alert*> current() const;
 
  private:
+  [[nodiscard]] Alert* find_current(AlertKind kind, const Subject& subject);
+  [[nodiscard]] Alert& begin(const Finding& finding);
+  AlertTransition open(const Finding& finding, Instant now);
+  std::vector<AlertTransition> add(Alert& alert, const Finding& finding, Instant now);
+  AlertTransition resolve(Alert& alert, std::string_view reason, Instant now);
+  void forget_what_cannot_reopen(Instant now);
+
   AlertPolicy policy_;
   std::shared_ptr<const Settings> settings_;
   std::map<std::int64_t, Alert> alerts_;

@@ -4,6 +4,9 @@
 #include <cmath>
 #include <optional>
 #include <string>
+#include <type_traits>
+#include <utility>
+#include <variant>
 
 #include <nlohmann/json.hpp>
 
@@ -35,6 +38,30 @@ using Json = nlohmann::ordered_json;
 
 [[nodiscard]] inline Json json_period(const std::optional<Period>& period) {
   return period ? Json::array({to_rfc3339(period->first), to_rfc3339(period->last)}) : Json(nullptr);
+}
+
+/// The parts a subject has.
+[[nodiscard]] inline Json json_subject(const Subject& subject) {
+  Json json = Json::object();
+  for (const auto& [name, id] : {std::pair("analyzer", &subject.analyzer), std::pair("standard", &subject.standard),
+                                 std::pair("measurand", &subject.measurand),
+                                 std::pair("comparison", &subject.comparison), std::pair("service", &subject.service)})
+    if (!id->empty()) json[name] = *id;
+  return json;
+}
+
+[[nodiscard]] inline Json json_details(const Details& details) {
+  Json json = Json::object();
+  for (const auto& [name, detail] : details)
+    json[name] = std::visit(
+        [](const auto& value) {
+          if constexpr (std::is_same_v<std::decay_t<decltype(value)>, double>)
+            return json_number(value);
+          else
+            return Json(value);
+        },
+        detail);
+  return json;
 }
 
 /// The text of `json`; bytes that are not UTF-8 become the replacement character instead of an exception.

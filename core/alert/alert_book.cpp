@@ -1,0 +1,203 @@
+#include "core/alert/alert_book.hpp"
+
+#include <algorithm>
+#include <stdexcept>
+#include <string>
+#include <utility>
+
+#include "core/alert/collected.hpp"
+#include "core/alert/details.hpp"
+#include "core/alert/wording.hpp"
+
+namespace agreed {
+namespace {
+
+bool is_current(const Alert& alert) {
+  return alert.state != AlertState::resolved;
+}
+
+/// Kinds whose condition the monitor folds; the others come from the intake, the clock or the service itself.
+bool folded_by_the_monitor(AlertKind kind) {
+  switch (kind) {
+    case AlertKind::check_standard_unstable:
+    case AlertKind::check_standard_biased:
+    case AlertKind::agreement_lost:
+    case AlertKind::agreement_drifting:
+    case AlertKind::agreement_unproven:
+    case AlertKind::sample_scatter:
+      return true;
+    default:
+      return false;
+  }
+}
+
+/// What a finding says of an alert. A start that is not stated this time leaves the earlier estimate.
+void take_over(Alert& alert, const Finding& finding) {
+  if (finding.started_at) alert.started_at = finding.started_at;
+  if (finding.started_between) alert.started_between = finding.started_between;
+  alert.details = resolves_on_acknowledgement(alert.kind)
+                      ? collect(alert.kind, alert.details, finding.details)
+                      : finding.details;
+}
+
+}  // namespace
+
+AlertBook::AlertBook(AlertPolicy policy, std::shared_ptr<const Settings> settings,
+                     std::vector<Alert> restored)
+    : policy_(policy), settings_(std::move(settings)) {
+  if (!settings_) throw std::invalid_argument("AlertBook: settings must not be null");
+  for (auto& alert : restored) {
+    next_id_ = std::max(next_id_, alert.id + 1);
+    const auto id = alert.id;
+    alerts_.insert_or_assign(id, std::move(alert));
+  }
+}
+
+std::vector<AlertTransition> AlertBook::apply(const Finding& finding, Instant now) {
+  forget_what_cannot_reopen(now);
+  Alert* alert = find_current(finding.kind, finding.subject);
+  if (alert == nullptr) {
+    if (!finding.holds) return {};
+    return {open(finding, now)};
+  }
+  if (!finding.holds) return {resolve(*alert, finding.resolved_reason, now)};
+  return add(*alert, finding, now);
+}
+
+std::vector<AlertTransition> AlertBook::reconcile(std::span<const Finding> conditions,
+                                                  std::span<const Subject> streams, std::string_view reason,
+                                                  Instant now) {
+  const auto compared = [&](AlertKind kind, const Subject& subject) {
+    return folded_by_the_monitor(kind) &&
+           (streams.empty() || std::find(streams.begin(), streams.end(), subject) != streams.end());
+  };
+  std::vector<AlertTransition> transitions;
+  for (auto& [id, alert] : alerts_) {
+    if (!is_current(alert) || !compared(alert.kind, alert.subject)) continue;
+    const bool still_holds = std::any_of(conditions.begin(), conditions.end(), [&](const Finding& finding) {
+      return finding.holds && finding.kind == alert.kind && finding.subject == alert.subject;
+    });
+    if (!still_holds) transitions.push_back(resolve(alert, reason, now));
+  }
+  for (const auto& finding : conditions) {
+    if (!finding.holds || !compared(finding.kind, finding.subject)) continue;
+    for (auto& transition : apply(finding, now)) transitions.push_back(std::move(transition));
+  }
+  return transitions;
+}
+
+std::vector<AlertTransition> AlertBook::admit_outliers(const std::string& comparison,
+                                                       std::span<const std::string> still_set_aside,
+                                                       Instant now) {
+  Subject subject;
+  subject.comparison = comparison;
+  Alert* alert = find_current(AlertKind::pair_outlier, subject);
+  if (alert == nullptr) return {};
+  const auto samples = list_in(alert->details, collected_list(alert->kind));
+  const bool one_stays = std::any_of(samples.begin(), samples.end(), [&](const std::string& sample) {
+    return std::find(still_set_aside.begin(), still_set_aside.end(), sample) != still_set_aside.end();
+  });
+  // Without names nothing can be said to be admitted.
+  if (samples.empty() || one_stays) return {};
+  return {resolve(*alert, "late_data", now)};
+}
+
+std::vector<AlertTransition> AlertBook::acknowledge(std::int64_t id, const std::string& by,
+                                                    const std::string& note, Instant now) {
+  if (id < 1 || id >= next_id_) throw std::out_of_range("there is no alert " + std::to_string(id));
+  const auto found = alerts_.find(id);
+  if (found == alerts_.end() || !is_current(found->second))
+    throw std::logic_error("alert " + std::to_string(id) + " is resolved already");
+  Alert& alert = found->second;
+  if (alert.state == AlertState::acknowledged) return {};
+
+  alert.state = AlertState::acknowledged;
+  alert.acknowledged = Acknowledgement{by, now, note};
+  alert.changed_at = now;
+  write_words(alert, *settings_);
+  std::vector<AlertTransition> transitions{{AlertChange::acknowledged, now, true, alert}};
+  if (resolves_on_acknowledgement(alert.kind)) transitions.push_back(resolve(alert, "acknowledged", now));
+  return transitions;
+}
+
+std::vector<AlertTransition> AlertBook::tick(Instant now) {
+  forget_what_cannot_reopen(now);
+  std::vector<AlertTransition> transitions;
+  if (policy_.remind_every <= Duration::zero()) return transitions;
+  for (auto& [id, alert] : alerts_) {
+    if (alert.state != AlertState::open) continue;
+    // A told_at far ahead of now: our clock was set back. Remind, rather than stay silent until it catches
+    // up.
+    const Duration since = now - alert.told_at;
+    if (since < policy_.remind_every && -since <= policy_.remind_every) continue;
+    alert.told_at = now;
+    transitions.push_back({AlertChange::reminder, now, true, alert});
+  }
+  return transitions;
+}
+
+std::vector<const Alert*> AlertBook::current() const {
+  std::vector<const Alert*> list;
+  for (const auto& [id, alert] : alerts_)
+    if (is_current(alert)) list.push_back(&alert);
+  return list;
+}
+
+Alert* AlertBook::find_current(AlertKind kind, const Subject& subject) {
+  for (auto& [id, alert] : alerts_)
+    if (is_current(alert) && alert.kind == kind && alert.subject == subject) return &alert;
+  return nullptr;
+}
+
+/// A blank alert for the finding: under the id of the newest resolved one that may reopen, else a new one.
+Alert& AlertBook::begin(const Finding& finding) {
+  std::int64_t id = 0;
+  for (const auto& [known, alert] : alerts_)
+    if (alert.kind == finding.kind && alert.subject == finding.subject) id = known;
+  if (id == 0) id = next_id_++;
+  Alert blank;
+  blank.id = id;
+  blank.kind = finding.kind;
+  blank.subject = finding.subject;
+  return alerts_.insert_or_assign(id, std::move(blank)).first->second;
+}
+
+AlertTransition AlertBook::open(const Finding& finding, Instant now) {
+  Alert& alert = begin(finding);
+  alert.severity = finding.severity;
+  alert.opened_at = alert.changed_at = alert.told_at = now;
+  take_over(alert, finding);
+  write_words(alert, *settings_);
+  return {AlertChange::opened, now, true, alert};
+}
+
+std::vector<AlertTransition> AlertBook::add(Alert& alert, const Finding& finding, Instant now) {
+  Alert after = alert;
+  after.severity = std::max(alert.severity, finding.severity);
+  take_over(after, finding);
+  write_words(after, *settings_);
+  if (after == alert) return {};
+  const bool worse = after.severity > alert.severity;
+  after.changed_at = now;
+  if (worse) after.told_at = now;
+  alert = std::move(after);
+  return {{AlertChange::changed, now, worse, alert}};
+}
+
+AlertTransition AlertBook::resolve(Alert& alert, std::string_view reason, Instant now) {
+  alert.state = AlertState::resolved;
+  alert.resolved_at = now;
+  alert.resolved_reason = reason;
+  alert.changed_at = now;
+  write_words(alert, *settings_);
+  return {AlertChange::resolved, now, true, alert};
+}
+
+void AlertBook::forget_what_cannot_reopen(Instant now) {
+  std::erase_if(alerts_, [&](const auto& entry) {
+    const Alert& alert = entry.second;
+    return !is_current(alert) && now - alert.resolved_at.value_or(alert.changed_at) >= policy_.reopen_within;
+  });
+}
+
+}  // namespace agreed

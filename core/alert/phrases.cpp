@@ -1,0 +1,128 @@
+#include "core/alert/phrases.hpp"
+
+#include <algorithm>
+#include <array>
+#include <charconv>
+#include <cmath>
+#include <cstdio>
+
+#include "core/alert/details.hpp"
+
+namespace agreed {
+namespace {
+
+template <class... Format>
+std::string written(double value, Format... format) {
+  std::array<char, 400> text{};
+  const auto done = std::to_chars(text.data(), text.data() + text.size(), value, format...);
+  return {text.data(), done.ptr};
+}
+
+constexpr int kDigitsWithoutDecimals = 5;
+
+}  // namespace
+
+NumberStyle::NumberStyle(const Settings& settings, const std::string& measurand) {
+  for (const auto& known : settings.measurands)
+    if (known.id == measurand) {
+      unit_ = known.unit.empty() ? "" : " " + known.unit;
+      decimals_ = known.decimals;
+    }
+}
+
+std::string NumberStyle::result(double value) const {
+  return (decimals_ ? fixed(value, *decimals_) : significant(value, kDigitsWithoutDecimals)) + unit_;
+}
+
+std::string NumberStyle::mean(double value) const {
+  return (decimals_ ? fixed(value, *decimals_ + 1) : significant(value, kDigitsWithoutDecimals)) + unit_;
+}
+
+std::string NumberStyle::range(double low, double high) const {
+  const std::string first = mean(low);
+  return first.substr(0, first.size() - unit_.size()) + " to " + mean(high);
+}
+
+std::string fixed(double value, int decimals) {
+  auto text = written(value, std::chars_format::fixed, decimals);
+  if (text.front() == '-' && text.find_first_of("123456789") == std::string::npos) text.erase(0, 1);
+  return text;
+}
+
+std::string significant(double value, int digits) {
+  return written(value, std::chars_format::general, digits);
+}
+
+std::string percent(double share) {
+  return significant(100.0 * share, 4) + " %";
+}
+
+std::string counted(double count, std::string_view one, std::string_view many) {
+  const std::string number = fixed(count, 0);
+  return number + " " + std::string(number == "1" ? one : many);
+}
+
+std::string time_words(Instant at) {
+  using namespace std::chrono;
+  const auto day = floor<days>(at);
+  const year_month_day date{day};
+  const hh_mm_ss clock{floor<minutes>(at - day)};
+  std::array<char, 40> text{};
+  const int length =
+      std::snprintf(text.data(), text.size(), "%04d-%02u-%02u %02d:%02d UTC", static_cast<int>(date.year()),
+                    static_cast<unsigned>(date.month()), static_cast<unsigned>(date.day()),
+                    static_cast<int>(clock.hours().count()), static_cast<int>(clock.minutes().count()));
+  return {text.data(), static_cast<std::size_t>(length)};
+}
+
+std::string analyzer_words(const Settings& settings, const std::string& id) {
+  for (const auto& analyzer : settings.analyzers)
+    if (analyzer.id == id && !analyzer.title.empty() && analyzer.title != id)
+      return id + " (" + analyzer.title + ")";
+  return or_else(id, "the analyzer");
+}
+
+std::string score_words(const Details& details) {
+  const auto score = number_in(details, "score"), limit = number_in(details, "limit");
+  if (!score) return "";
+  return " (change score " + fixed(*score, 2) + (limit ? ", limit " + fixed(*limit, 2) : "") + ")";
+}
+
+const char* direction(double shift) {
+  return shift < 0 ? "lower" : "higher";
+}
+
+std::string since_words(const Alert& alert) {
+  const auto& between = alert.started_between;
+  if (!alert.started_at && !between) return "";
+  if (!between) return "most likely " + time_words(*alert.started_at) + ".";
+  const std::string first = time_words(between->first), last = time_words(between->last);
+  if (!alert.started_at)
+    return first == last ? first + "." : "some moment from " + first + " to " + last + ".";
+  const std::string start = "most likely " + time_words(*alert.started_at);
+  if (first == last) return start + ".";
+  return start + "; a start from " + first + " to " + last + " is possible.";
+}
+
+std::string earliest_start(const Alert& alert) {
+  if (alert.started_between) return " since " + time_words(alert.started_between->first);
+  if (alert.started_at) return " since " + time_words(*alert.started_at);
+  return "";
+}
+
+std::string list_words(const std::vector<std::string>& names) {
+  constexpr std::size_t most = 5;
+  const std::size_t first = names.size() > most ? names.size() - most : 0;
+  std::string text;
+  for (std::size_t i = first; i < names.size(); ++i) {
+    if (i > first) text += first == 0 && i + 1 == names.size() ? " and " : ", ";
+    text += names[i];
+  }
+  return first == 0 ? text : text + " (the newest of " + std::to_string(names.size()) + ")";
+}
+
+std::string or_else(const std::string& id, const char* otherwise) {
+  return id.empty() ? otherwise : id;
+}
+
+}  // namespace agreed

@@ -1,0 +1,181 @@
+// The words of alerts about a check standard.
+#include <cmath>
+
+#include "core/alert/details.hpp"
+#include "core/alert/phrases.hpp"
+
+namespace agreed {
+namespace {
+
+/// One chart's alert with its names at hand.
+struct ChartAlert {
+  ChartAlert(const Alert& a, const Settings& settings)
+      : alert(a),
+        numbers(settings, a.subject.measurand),
+        analyzer(or_else(a.subject.analyzer, "the analyzer")),
+        analyzer_in_full(analyzer_words(settings, a.subject.analyzer)),
+        standard(or_else(a.subject.standard, "the check standard")),
+        measurand(or_else(a.subject.measurand, "its measurand")) {}
+
+  const Alert& alert;
+  NumberStyle numbers;
+  std::string analyzer, analyzer_in_full, standard, measurand;
+
+  [[nodiscard]] std::optional<double> number(const char* name) const {
+    return number_in(alert.details, name);
+  }
+  /// " (10.530 to 10.710 g/100 g)" or empty.
+  [[nodiscard]] std::string limits() const {
+    const auto low = number("limit_lower"), high = number("limit_upper");
+    return low && high ? numbers.range(*low, *high) : "";
+  }
+  [[nodiscard]] std::string results() const {
+    return "results of " + analyzer + " for " + measurand + earliest_start(alert);
+  }
+};
+
+std::string look_back_at(const ChartAlert& chart) {
+  return "Look at what was last done to " + chart.analyzer +
+         " and what is due on it: parts changed, cleaning, calibration, sample cell, surroundings.";
+}
+
+std::string split_samples(const ChartAlert& chart) {
+  return "Run split samples on " + chart.analyzer + " and on the analyzer it is compared with.";
+}
+
+std::string newest_reading(const ChartAlert& chart) {
+  const auto value = chart.number("value");
+  if (!value) return "";
+  const std::string limits = chart.limits();
+  return " The newest reading is " + chart.numbers.result(*value) +
+         (limits.empty() ? "" : "; from those before it, " + limits + " was to be expected") + ".";
+}
+
+std::string how_many_since(const ChartAlert& chart) {
+  const auto readings = chart.number("readings_since");
+  return readings ? " Readings since the change: " + fixed(*readings, 0) + "." : "";
+}
+
+AlertWords single_reading_words(const ChartAlert& chart) {
+  const auto value = chart.number("value"), before = chart.number("mean_before");
+  const std::string limits = chart.limits();
+  AlertWords words;
+  words.title = "One " + chart.measurand + " reading of check standard " + chart.standard + " on " +
+                chart.analyzer + " is out of line";
+  words.found = "Analyzer " + chart.analyzer_in_full + " read " +
+                (value ? chart.numbers.result(*value) : "an unexpected value") + " for " + chart.measurand +
+                " on check standard " + chart.standard +
+                (limits.empty() ? "" : "; " + limits + " was to be expected") +
+                score_words(chart.alert.details) + ".";
+  if (before) words.found += " The mean of the readings before is " + chart.numbers.mean(*before) + ".";
+  words.since = since_words(chart.alert);
+  words.cause = "the single measurement (preparation, mix-up) or " + chart.analyzer +
+                "; one reading cannot tell which.";
+  words.doubt = chart.results() + ", until a repeat says otherwise.";
+  words.steps = {"Repeat check standard " + chart.standard + " on " + chart.analyzer + " now.",
+                 "If the repeat is " + (limits.empty() ? "as before" : "within " + limits) +
+                     ", go on; if it is not, hold the results and do not wait for the next check.",
+                 look_back_at(chart)};
+  return words;
+}
+
+AlertWords shift_words(const ChartAlert& chart) {
+  const auto shift = chart.number("shift");
+  const auto before = chart.number("mean_before"), after = chart.number("mean_after");
+  const std::string moved =
+      shift ? chart.numbers.mean(std::abs(*shift)) + " " + direction(*shift) : "differently";
+  AlertWords words;
+  words.title = "Check standard " + chart.standard + " on " + chart.analyzer + " reads " + moved + " for " +
+                chart.measurand;
+  words.found = "Analyzer " + chart.analyzer_in_full + " reads check standard " + chart.standard + " " +
+                moved + " for " + chart.measurand + " than before" + score_words(chart.alert.details) + ".";
+  if (before && after)
+    words.found +=
+        " The mean was " + chart.numbers.mean(*before) + " and is " + chart.numbers.mean(*after) + " now.";
+  words.found += how_many_since(chart) + newest_reading(chart);
+  if (chart.alert.severity == Severity::notice)
+    words.found += " The shift is smaller than the smallest one that is held to matter here.";
+  words.since = since_words(chart.alert);
+  words.cause =
+      chart.analyzer + ". If only " + chart.standard +
+      " has moved and other check standards on it have not, suspect the check standard itself; this "
+      "chart alone cannot tell.";
+  words.doubt = chart.results() + ".";
+  words.steps = {
+      "Repeat check standard " + chart.standard + " on " + chart.analyzer + " and run another one.",
+      look_back_at(chart)};
+  if (chart.alert.severity != Severity::notice)
+    words.steps.push_back("Hold the " + chart.results() + " until the cause is known.");
+  words.steps.push_back(split_samples(chart));
+  words.steps.emplace_back("Record what is done to the analyzer as an intervention.");
+  return words;
+}
+
+AlertWords scatter_words(const ChartAlert& chart) {
+  const auto sd = chart.number("sd"), ratio = chart.number("ratio_of_sd");
+  AlertWords words;
+  words.title =
+      "Check standard " + chart.standard + " on " + chart.analyzer + " scatters more for " + chart.measurand;
+  words.found = "Readings of check standard " + chart.standard + " for " + chart.measurand + " on analyzer " +
+                chart.analyzer_in_full + " scatter more than before" + score_words(chart.alert.details) + ".";
+  if (sd || ratio)
+    words.found += " Their standard deviation is " + (sd ? chart.numbers.mean(*sd) + " now" : "") +
+                   (sd && ratio ? ", " : "") + (ratio ? fixed(*ratio, 1) + " times what it was" : "") + ".";
+  words.found += how_many_since(chart) + newest_reading(chart);
+  words.since = since_words(chart.alert);
+  words.cause = chart.analyzer + " (its repeatability), or how the check standard is presented to it.";
+  words.doubt = "single " + chart.results() + "; means of several are less affected.";
+  words.steps = {
+      "Measure check standard " + chart.standard + " several times in a row on " + chart.analyzer +
+          ": scatter within that run points to the analyzer, scatter only between runs to handling "
+          "and surroundings.",
+      look_back_at(chart), "Measure in replicate what has to be decided meanwhile.", split_samples(chart)};
+  return words;
+}
+
+AlertWords unnamed_words(const ChartAlert& chart) {
+  AlertWords words;
+  words.title =
+      "Check standard " + chart.standard + " on " + chart.analyzer + " is not stable for " + chart.measurand;
+  words.found = "Readings of check standard " + chart.standard + " for " + chart.measurand + " on analyzer " +
+                chart.analyzer_in_full + " are not what they were" + score_words(chart.alert.details) + "." +
+                newest_reading(chart);
+  words.since = since_words(chart.alert);
+  words.doubt = chart.results() + ".";
+  words.steps = {"Repeat check standard " + chart.standard + " on " + chart.analyzer + ".",
+                 look_back_at(chart), split_samples(chart)};
+  return words;
+}
+
+AlertWords biased_words(const ChartAlert& chart) {
+  const auto bias = chart.number("bias"), limit = chart.number("limit");
+  const std::string off = bias ? chart.numbers.mean(std::abs(*bias)) + (*bias < 0 ? " below" : " above")
+                               : std::string("away from");
+  AlertWords words;
+  words.title = "Check standard " + chart.standard + " on " + chart.analyzer + " reads " + off +
+                " its reference value for " + chart.measurand;
+  words.found = "The mean of analyzer " + chart.analyzer_in_full + " for " + chart.measurand +
+                " on check standard " + chart.standard + " is " + off + " the reference value";
+  words.found += limit ? "; " + chart.numbers.mean(*limit) +
+                             " is what the uncertainty of the reference value and of the mean allow."
+                       : ", which is more than the uncertainties allow.";
+  words.since = since_words(chart.alert);
+  words.doubt = "results of " + chart.analyzer + " for " + chart.measurand + ".";
+  words.steps = {"Check the lot and the reference value of " + chart.standard + " against its certificate.",
+                 look_back_at(chart)};
+  return words;
+}
+
+}  // namespace
+
+AlertWords chart_words(const Alert& alert, const Settings& settings) {
+  const ChartAlert chart(alert, settings);
+  if (alert.kind == AlertKind::check_standard_biased) return biased_words(chart);
+  const std::string pattern = text_in(alert.details, "pattern").value_or("");
+  if (pattern == "single_reading") return single_reading_words(chart);
+  if (pattern == "shift") return shift_words(chart);
+  if (pattern == "scatter") return scatter_words(chart);
+  return unnamed_words(chart);
+}
+
+}  // namespace agreed

@@ -1,0 +1,230 @@
+// The words of alerts about two analyzers together. A difference is always y - x.
+#include <algorithm>
+#include <cmath>
+
+#include "core/alert/details.hpp"
+#include "core/alert/phrases.hpp"
+
+namespace agreed {
+namespace {
+
+/// One comparison's alert with its names at hand; of an id that is not configured the names are general.
+struct ComparisonAlert {
+  ComparisonAlert(const Alert& a, const Settings& settings)
+      : ComparisonAlert(a, settings, configured(settings, a.subject.comparison)) {}
+
+  const Alert& alert;
+  std::string id, x, y, x_in_full, y_in_full, measurand;
+  NumberStyle numbers;
+
+  [[nodiscard]] std::optional<double> number(const char* name) const {
+    return number_in(alert.details, name);
+  }
+  [[nodiscard]] std::string both() const { return x + " and " + y; }
+  [[nodiscard]] std::string both_in_full() const { return x_in_full + " and " + y_in_full; }
+
+ private:
+  ComparisonAlert(const Alert& a, const Settings& settings, const ComparisonSettings* known)
+      : alert(a),
+        id(or_else(a.subject.comparison, "the comparison")),
+        x(known ? settings.of(known->x).id : "the analyzer x"),
+        y(known ? settings.of(known->y).id : "the analyzer y"),
+        x_in_full(known ? analyzer_words(settings, x) : x),
+        y_in_full(known ? analyzer_words(settings, y) : y),
+        measurand(known ? settings.of(known->measurand).id : id),
+        numbers(settings, known ? settings.of(known->measurand).id : "") {}
+
+  static const ComparisonSettings* configured(const Settings& settings, const std::string& comparison) {
+    const auto found = std::find_if(settings.comparisons.begin(), settings.comparisons.end(),
+                                    [&](const auto& candidate) { return candidate.id == comparison; });
+    return found == settings.comparisons.end() ? nullptr : &*found;
+  }
+};
+
+/// The diagnosis, when there is one (`moved`, `probability`); otherwise what will decide it.
+std::string which_moved(const ComparisonAlert& pair) {
+  const std::string moved = text_in(pair.alert.details, "moved").value_or("");
+  const auto probability = pair.number("probability");
+  const std::string how_sure = probability ? " (probability " + percent(*probability) + ")" : "";
+  if (moved == "x") return pair.x + " has moved" + how_sure + ".";
+  if (moved == "y") return pair.y + " has moved" + how_sure + ".";
+  if (moved == "both") return "both analyzers have moved" + how_sure + ".";
+  if (moved == "neither")
+    return "neither analyzer by its check standards" + how_sure +
+           "; look at the samples and how they are split.";
+  return "not decided; split samples alone cannot tell which of the two moved. The check standards of " +
+         pair.both() + " do: more readings of them will decide it.";
+}
+
+std::string line_words(const ComparisonAlert& pair) {
+  const auto slope = pair.number("slope"), intercept = pair.number("intercept"), pairs = pair.number("pairs");
+  std::string text;
+  if (slope && intercept)
+    text = " The fitted line is " + pair.y + " = " + pair.numbers.mean(*intercept) + " + " +
+           fixed(*slope, 4) + " x " + pair.x;
+  if (pairs) text += (text.empty() ? " It rests on " : ", from ") + counted(*pairs, "pair", "pairs");
+  return text.empty() ? text : text + ".";
+}
+
+/// "line2 reads 0.350 g/100 g higher than line1 at 13.00 g/100 g".
+std::string bias_words(const ComparisonAlert& pair) {
+  const auto bias = pair.number("bias"), level = pair.number("level");
+  return pair.y + " reads " +
+         (bias ? pair.numbers.mean(std::abs(*bias)) + " " + direction(*bias) + " than "
+               : std::string("differently from ")) +
+         pair.x + (level ? " at " + pair.numbers.result(*level) : "");
+}
+
+std::string repeat_checks(const ComparisonAlert& pair) {
+  return "Run the check standards on " + pair.both() + " now, to see which one moved.";
+}
+
+std::string look_at_both(const ComparisonAlert& pair) {
+  return "Look at what was last done to " + pair.both() +
+         " and what is due on them: parts changed, cleaning, calibration, sample cell, surroundings.";
+}
+
+AlertWords lost_words(const ComparisonAlert& pair) {
+  const auto low = pair.number("low"), high = pair.number("high"), allowable = pair.number("allowable");
+  const auto confidence = pair.number("confidence"), level = pair.number("level");
+  AlertWords words;
+  words.title = pair.both() + " no longer agree for " + pair.measurand + ": " + bias_words(pair);
+  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand + ": " + bias_words(pair);
+  if (low && high)
+    words.found += std::string("; the ") + (confidence ? percent(*confidence) + " " : "") +
+                   "interval of the difference " + pair.y + " - " + pair.x + " is " +
+                   pair.numbers.range(*low, *high);
+  words.found += allowable ? "; allowable is " + pair.numbers.mean(*allowable) + " either way."
+                           : "; that is more than what is allowable.";
+  words.found += line_words(pair);
+  words.since = since_words(pair.alert);
+  words.cause = which_moved(pair);
+  words.doubt = pair.measurand + " results of both analyzers" +
+                (level ? " near " + pair.numbers.result(*level) : "") + earliest_start(pair.alert) +
+                ", and decisions that took them as one.";
+  words.steps = {"Do not use " + pair.both() + " as one for " + pair.measurand +
+                     "; hold the results in doubt" + earliest_start(pair.alert) + ".",
+                 repeat_checks(pair), look_at_both(pair),
+                 "After a repair or a recalibration record it as an intervention and run split samples until "
+                 "agreement is shown again."};
+  return words;
+}
+
+AlertWords drifting_words(const ComparisonAlert& pair) {
+  const auto shift = pair.number("shift"), pairs = pair.number("pairs"), allowable = pair.number("allowable");
+  const bool critical = pair.alert.severity == Severity::critical;
+  AlertWords words;
+  words.title = "The relation between " + pair.both() + " for " + pair.measurand + " has " +
+                (critical ? "clearly " : "") + "changed";
+  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand +
+                ": two lines, one before and one after some moment, describe the " +
+                (pairs ? counted(*pairs, "pair", "pairs") : std::string("pairs")) + " better than one" +
+                score_words(pair.alert.details) + ".";
+  if (shift)
+    words.found += " Since then " + pair.y + " reads " + pair.numbers.mean(std::abs(*shift)) + " " +
+                   direction(*shift) + " against " + pair.x + " than before.";
+  if (allowable) words.found += " The allowable difference is " + pair.numbers.mean(*allowable) + ".";
+  words.found += critical
+                     ? " The verdict starts anew, from the pairs since the change."
+                     : " Whether the difference is still allowable is the verdict's question; this tells "
+                       "that something moved.";
+  words.since = since_words(pair.alert);
+  words.cause = which_moved(pair);
+  words.doubt = pair.measurand + " results of " + pair.both() + " taken as one" + earliest_start(pair.alert) +
+                (critical ? "." : ", should the change be confirmed.");
+  words.steps = {repeat_checks(pair),
+                 critical ? "Hold the " + pair.measurand + " results of both analyzers" +
+                                earliest_start(pair.alert) + " until the verdict is known again."
+                          : "Keep samples of what is measured meanwhile, so that it can be measured again.",
+                 "Run at least 8 split samples on both analyzers, spread over the range of use.",
+                 look_at_both(pair)};
+  return words;
+}
+
+/// How often chance alone puts a pair so far off.
+std::string rarity_words(double p) {
+  constexpr double rarest = 1e6;  // beyond it the number says no more
+  if (p * rarest < 1) return "less than one pair in a million";
+  return "about one pair in " + fixed(std::max(1 / p, 1.0), 0);
+}
+
+AlertWords outlier_words(const ComparisonAlert& pair) {
+  const std::string sample = text_in(pair.alert.details, "sample").value_or("");
+  const auto x = pair.number("x"), y = pair.number("y"), p = pair.number("p");
+  const auto residual = pair.number("residual"), count = pair.number("count");
+  const bool several = count.value_or(1) > 1;
+  const std::string sentence_start = sample.empty() ? "A split sample" : "Split sample " + sample;
+  AlertWords words;
+  words.title =
+      (several ? counted(*count, "split sample", "split samples") + " do" : sentence_start + " does") +
+      " not fit the line of " + pair.both() + " for " + pair.measurand;
+  words.found = (several ? "The newest: " + (sample.empty() ? "a split sample" : "split sample " + sample)
+                         : sentence_start) +
+                " is far off the line of analyzers " + pair.both_in_full() + " for " + pair.measurand + ".";
+  if (x && y)
+    words.found += " " + pair.x + " gave " + pair.numbers.result(*x) + ", " + pair.y + " gave " +
+                   pair.numbers.result(*y) + ".";
+  if (residual) words.found += " Its residual is " + fixed(*residual, 1) + " standard deviations.";
+  if (p && *p > 0) words.found += " So far off by chance: " + rarity_words(*p) + ".";
+  words.found += " It is kept and shown, but set aside from the fit.";
+  const auto samples = list_in(pair.alert.details, "samples");
+  if (several && !samples.empty()) words.found += " All of them: " + list_words(samples) + ".";
+  words.cause = "the sample (mix-up, poor split, preparation) or one wild result; one pair cannot tell.";
+  words.doubt = "the results of " + (sample.empty() ? std::string("that sample") : "sample " + sample) +
+                " on both analyzers.";
+  words.steps = {"Measure what is left of the sample again on both analyzers.",
+                 "Check that both results belong to the same sample and how it was split."};
+  return words;
+}
+
+AlertWords unproven_words(const ComparisonAlert& pair) {
+  const auto more = pair.number("pairs_needed");
+  AlertWords words;
+  words.title = "Agreement of " + pair.both() + " for " + pair.measurand + " is still unproven";
+  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand +
+                ": the pairs show neither agreement nor disagreement." + line_words(pair);
+  if (more) words.found += " About " + counted(*more, "more pair", "more pairs") + " would decide it.";
+  words.since = since_words(pair.alert);
+  words.steps = {"Run more split samples, at the decision levels above all, or each of them in replicate."};
+  return words;
+}
+
+AlertWords scattered_words(const ComparisonAlert& pair) {
+  const auto observed = pair.number("observed_sd"), expected = pair.number("expected_sd");
+  AlertWords words;
+  words.title = "Split samples of " + pair.both() + " scatter more for " + pair.measurand +
+                " than the analyzers' repeatability explains";
+  words.found =
+      "Analyzers " + pair.both_in_full() + ", " + pair.measurand + ": the pairs scatter about the line";
+  if (observed && expected)
+    words.found += " with a standard deviation of " + pair.numbers.mean(*observed) +
+                   "; repeatability explains " + pair.numbers.mean(*expected);
+  else
+    words.found += " more than both analyzers' repeatability explains";
+  words.found += ".";
+  words.since = since_words(pair.alert);
+  words.cause = "samples that differ between the analyzers (splitting, matrix, ageing between the two runs).";
+  words.steps = {"Look at how samples are split and how long lies between the two measurements.",
+                 "Compare the pairs of one product or one campaign at a time."};
+  return words;
+}
+
+}  // namespace
+
+AlertWords comparison_words(const Alert& alert, const Settings& settings) {
+  const ComparisonAlert pair(alert, settings);
+  switch (alert.kind) {
+    case AlertKind::agreement_lost:
+      return lost_words(pair);
+    case AlertKind::agreement_drifting:
+      return drifting_words(pair);
+    case AlertKind::pair_outlier:
+      return outlier_words(pair);
+    case AlertKind::agreement_unproven:
+      return unproven_words(pair);
+    default:
+      return scattered_words(pair);
+  }
+}
+
+}  // namespace agreed

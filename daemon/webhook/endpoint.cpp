@@ -1,0 +1,28 @@
+#include "daemon/webhook/endpoint.hpp"
+
+#include "daemon/version.hpp"
+#include "daemon/webhook/cloud_event.hpp"
+#include "daemon/webhook/secrets.hpp"
+
+namespace agreed {
+
+Endpoint endpoint_of(const Route& route) {
+  return {route.name, route.url, route.ca_file, load_signing_keys(route)};
+}
+
+PostAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::string_view body, Instant at,
+                   const PostLimits& limits, const std::stop_token& stop) {
+  PostRequest request;
+  request.url = endpoint.url;
+  request.content_type = kCloudEventContentType;
+  request.body = body;
+  request.ca_file = endpoint.ca_file;
+  request.headers = {{"User-Agent", std::string("agreed/") + version()},
+                     {"webhook-id", std::string(webhook_id)},
+                     {"webhook-timestamp", webhook_timestamp(at)}};
+  if (!endpoint.keys.empty())
+    request.headers.emplace_back("webhook-signature", webhook_signature(webhook_id, at, body, endpoint.keys));
+  return http_post(request, limits, stop);
+}
+
+}  // namespace agreed

@@ -1,0 +1,192 @@
+#include "daemon/webhook/sender.hpp"
+
+#include <algorithm>
+#include <atomic>
+#include <condition_variable>
+#include <mutex>
+#include <random>
+#include <thread>
+
+#include "daemon/webhook/retry_after.hpp"
+
+namespace agreed {
+namespace {
+
+using Steady = std::chrono::steady_clock;
+
+constexpr int kGone = 410;
+/// How long a try that was made may still be recorded after stop was asked for.
+constexpr Duration kLastRecord = std::chrono::milliseconds(500);
+constexpr Duration kPoll = std::chrono::milliseconds(20);
+constexpr Duration kLongestTrouble = std::chrono::minutes(1);
+
+Instant wall_now() {
+  return std::chrono::floor<Duration>(std::chrono::system_clock::now());
+}
+
+}  // namespace
+
+/// One route and its thread.
+class WebhookSender::Lane {
+ public:
+  Lane(Endpoint endpoint, const Next& next, const Record& record, const SenderOptions& options)
+      : endpoint_(std::move(endpoint)), next_(next), record_(record), options_(options) {
+    thread_ = std::jthread([this](const std::stop_token& stop) { run(stop); });
+  }
+
+  void wake() {
+    const std::lock_guard lock(mutex_);
+    ++wakes_;
+    changed_.notify_all();
+  }
+  void request_stop() { thread_.request_stop(); }
+  void join() {
+    if (thread_.joinable()) thread_.join();
+  }
+  [[nodiscard]] const std::string& route() const { return endpoint_.route; }
+  [[nodiscard]] bool ended() const { return ended_; }
+
+ private:
+  void run(const std::stop_token& stop) {
+    Duration trouble = options_.after_trouble;
+    while (!stop.stop_requested() && !ended_) {
+      try {
+        step(stop);
+        trouble = options_.after_trouble;
+      } catch (...) {
+        // The journal could not be asked, or memory is short: nothing was lost, ask again later.
+        pause(stop, trouble, wakes());
+        trouble = std::min(2 * trouble, kLongestTrouble);
+      }
+    }
+  }
+
+  /// Sends the oldest message if it is due, else waits for that, or for news.
+  void step(const std::stop_token& stop) {
+    const std::uint64_t news = wakes();
+    const auto message = next_(endpoint_.route);
+    if (!message) return pause(stop, options_.longest_wait, news);
+    const Duration wait = time_until_due(*message);
+    if (wait > Duration::zero()) return pause(stop, wait, news);
+    attempt(*message, stop);
+  }
+
+  /// The due time of a message is fixed on the steady clock when it is first seen, or tried, by this process.
+  Duration time_until_due(const OutboxMessage& message) {
+    if (message_ != message.id) {
+      message_ = message.id;
+      set_due(message.tries > 0 ? Duration::zero() : message.due_at - wall_now());
+    }
+    return std::chrono::ceil<Duration>(due_ - Steady::now());
+  }
+
+  void set_due(Duration from_now) {
+    due_ = Steady::now() + std::clamp(from_now, Duration::zero(), options_.longest_wait);
+  }
+
+  void attempt(const OutboxMessage& message, const std::stop_token& stop) {
+    const Instant at = wall_now();
+    const CallOutcome outcome = call(message, at, stop);
+    if (outcome.status == 0 && stop.stop_requested()) return;  // nothing is known of it: made again at start
+    const double chance = std::uniform_real_distribution<double>(0.0, 1.0)(random_);
+    const DeliveryTry result = judge(message, outcome, wall_now(), chance, options_.retry);
+    if (!record(result, stop)) return;
+    if (result.status == kGone) ended_ = true;
+    if (result.next_due)
+      set_due(*result.next_due - wall_now());
+    else
+      message_ = 0;
+  }
+
+  CallOutcome call(const OutboxMessage& message, Instant at, const std::stop_token& stop) {
+    try {
+      const PostAnswer answer =
+          deliver(endpoint_, message.webhook_id, message.body, at, options_.limits, stop);
+      return {answer.status, answer.error, parse_retry_after(answer.retry_after, wall_now())};
+    } catch (const std::exception& failure) {
+      return {0, std::string("the message could not be sent: ") + failure.what(), std::nullopt};
+    }
+  }
+
+  /// Until it is stored; false when stop came first.
+  bool record(const DeliveryTry& result, const std::stop_token& stop) {
+    Duration trouble = options_.after_trouble;
+    while (true) {
+      try {
+        auto stored = record_(result);
+        if (!wait_for(stored, stop)) return false;
+        stored.get();
+        return true;
+      } catch (...) {
+        if (stop.stop_requested()) return false;
+        pause(stop, trouble, std::nullopt);
+        trouble = std::min(2 * trouble, kLongestTrouble);
+      }
+    }
+  }
+
+  static bool wait_for(const std::future<void>& stored, const std::stop_token& stop) {
+    auto give_up = Steady::time_point::max();
+    while (stored.wait_for(kPoll) == std::future_status::timeout) {
+      if (stop.stop_requested() && give_up == Steady::time_point::max())
+        give_up = Steady::now() + kLastRecord;
+      if (Steady::now() >= give_up) return false;
+    }
+    return true;
+  }
+
+  /// Waits, but not after stop, nor after a wake that came since `news` was read.
+  void pause(const std::stop_token& stop, Duration most, std::optional<std::uint64_t> news) {
+    std::unique_lock lock(mutex_);
+    changed_.wait_until(lock, stop, Steady::now() + most, [&] { return news && wakes_ != *news; });
+  }
+
+  std::uint64_t wakes() {
+    const std::lock_guard lock(mutex_);
+    return wakes_;
+  }
+
+  const Endpoint endpoint_;
+  const Next next_;
+  const Record record_;
+  const SenderOptions options_;
+
+  std::int64_t message_ = 0;  ///< the one that `due_` is of; 0: none
+  Steady::time_point due_{};
+  std::mt19937_64 random_{std::random_device{}()};
+  std::atomic<bool> ended_ = false;
+
+  std::mutex mutex_;
+  std::condition_variable_any changed_;
+  std::uint64_t wakes_ = 0;
+  std::jthread thread_;  // last: it uses all of the above
+};
+
+WebhookSender::WebhookSender(std::vector<Endpoint> endpoints, Next next, Record record,
+                             SenderOptions options) {
+  for (auto& endpoint : endpoints)
+    lanes_.push_back(std::make_unique<Lane>(std::move(endpoint), next, record, options));
+}
+
+WebhookSender::~WebhookSender() {
+  stop();
+}
+
+void WebhookSender::wake(const std::string& route) {
+  for (const auto& lane : lanes_)
+    if (lane->route() == route) lane->wake();
+}
+
+std::vector<std::string> WebhookSender::ended() const {
+  std::vector<std::string> routes;
+  for (const auto& lane : lanes_)
+    if (lane->ended()) routes.push_back(lane->route());
+  return routes;
+}
+
+void WebhookSender::stop() {
+  for (const auto& lane : lanes_) lane->request_stop();
+  for (const auto& lane : lanes_) lane->join();
+}
+
+}  // namespace agreed
