@@ -1,0 +1,267 @@
+"""The figures of the service beside their references, measured in one run on one machine.
+
+bench.py [part ...]   parts: intake start pairs webhook status idle (default: all)
+"""
+import ctypes
+import json
+import os
+import pathlib
+import statistics
+import struct
+import subprocess
+import sys
+import tempfile
+import threading
+import time
+
+ROOT = pathlib.Path(__file__).resolve().parents[2]
+sys.path[:0] = [str(ROOT / "tests" / "e2e"), str(ROOT / "examples")]
+os.environ.setdefault("AGREED", str(ROOT / "build" / "agreed"))
+from harness import Receiver, Site  # noqa: E402
+from plant import START, rfc3339  # noqa: E402
+
+STANDARDS = ("wheat-low", "wheat-mid", "wheat-high", "wheat-rye")
+LARGE = """\
+site: Harrow Mill
+state: state
+listen: {address: 127.0.0.1, port: 0}
+analyzers: {line1: {inbox: drop/line1, settle: 200ms}, line2: {inbox: drop/line2, settle: 200ms}}
+measurands: {protein: {unit: g/100 g, decimals: 4, decision_levels: [10.5, 13.0], allowable_difference: {absolute: 0.2}}}
+check_standards:
+""" + "".join(f"  {s}: {{measurands: {{protein: {{}}}}}}\n" for s in STANDARDS) + """\
+comparisons: {protein: {measurand: protein, x: line1, y: line2}}
+"""
+
+
+def say(text):
+    print(text, flush=True)
+
+
+def write_large(folder, rows_each):
+    """One file an analyzer: every second row a check of one of four standards, every other a split sample."""
+    import random
+    rng = random.Random(9)
+    paths = []
+    truths = [rng.uniform(10.0, 13.6) for _ in range(rows_each // 2)]
+    for n, analyzer in enumerate(("line1", "line2")):
+        path = folder / f"{analyzer}.csv"
+        with open(path, "w") as out:
+            out.write("analyzer,kind,measured_at,measurand,item,value\n")
+            for i in range(rows_each // 2):
+                at = rfc3339(START - 400 * 86400 + 120 * i + n)
+                out.write(f"{analyzer},check,{at},protein,{STANDARDS[i % 4]},{10.62 + i % 4 + rng.gauss(0, 0.02):.4f}\n")
+                out.write(f"{analyzer},split,{at},protein,S-{i:07d},{truths[i] + rng.gauss(0, 0.02):.4f}\n")
+        paths.append(path)
+    return paths
+
+
+def take_in(site, paths, rows):
+    """Seconds from the files' arrival until the last row is committed."""
+    begun = time.monotonic()
+    for path, analyzer in zip(paths, ("line1", "line2")):
+        os.rename(path, site.inbox(analyzer) / path.name)
+    while site.get("/api/status")["intake"]["readings"]["accepted"] < rows:
+        time.sleep(0.05)
+        if site.process.poll() is not None:
+            raise SystemExit("the service ended")
+    return time.monotonic() - begun
+
+
+def resident_mb(site):
+    for line in open(f"/proc/{site.process.pid}/status"):
+        if line.startswith("VmRSS"):
+            return int(line.split()[1]) / 1024
+    return 0.0
+
+
+def import_seconds(paths):
+    """The sqlite3 shell importing the same files into one table with the same five-column key."""
+    with tempfile.TemporaryDirectory(dir=paths[0].parent) as folder:
+        create = ("create table r(analyzer text, kind text, measured_at text, measurand text, item text, value real, "
+                  "primary key(analyzer, kind, measurand, item, measured_at));")
+        begun = time.monotonic()
+        subprocess.run(["sqlite3", f"{folder}/db", create, *(f".import --csv --skip 1 {p} r" for p in paths)], check=True)
+        return time.monotonic() - begun
+
+
+def bench_intake(rows=1_000_000):
+    site = Site(config=LARGE).start()
+    try:
+        paths = write_large(site.folder, rows // 2)
+        reference = import_seconds(paths)
+        seconds = take_in(site, paths, rows)
+        say(f"intake, {rows:,} rows: {rows / seconds:,.0f} rows/s; sqlite3 .import {rows / reference:,.0f} rows/s; "
+            f"ratio {reference / seconds:.2f} (budget 0.35, aim 0.6)")
+        say(f"resident memory after {rows:,} rows: {resident_mb(site):.1f} MB (budget 64)")
+        measure_start(site, rows)
+    finally:
+        site.close()
+
+
+def measure_start(site, rows):
+    site.stop()
+    begun = time.monotonic()
+    site.start()
+    say(f"start with {rows:,} readings: {time.monotonic() - begun:.2f} s to ready "
+        f"(budget {'0.7' if rows <= 100_000 else '6'} s); resident {resident_mb(site):.1f} MB")
+
+
+def bench_start():
+    site = Site(config=LARGE).start()
+    try:
+        take_in(site, write_large(site.folder, 50_000), 100_000)
+        measure_start(site, 100_000)
+    finally:
+        site.close()
+
+
+def bench_pairs():
+    say(subprocess.run([str(ROOT / "build/tests/bench/bench_pairs")], capture_output=True, text=True, check=True).stdout.strip())
+    import numpy as np
+    from scipy import odr
+    rng = np.random.default_rng(1)
+    truth = rng.uniform(10, 13.6, 100)
+    x, y = truth + rng.normal(0, 0.02, 100), truth + rng.normal(0, 0.02, 100)
+
+    def deming():
+        mx, my = x.mean(), y.mean()
+        sxx, syy, sxy = ((x - mx) ** 2).sum(), ((y - my) ** 2).sum(), ((x - mx) * (y - my)).sum()
+        d = syy - sxx
+        slope = (d + np.sqrt(d * d + 4 * sxy * sxy)) / (2 * sxy)
+        return slope, my - slope * mx
+
+    def each(function, count):
+        begun = time.perf_counter()
+        for _ in range(count):
+            function()
+        return (time.perf_counter() - begun) / count * 1e6
+
+    say(f"reference: numpy refit of 100: {each(deming, 5000):.1f} us; "
+        f"scipy.odr: {each(lambda: odr.ODR(odr.RealData(x, y, 0.02, 0.02), odr.unilinear, beta0=[1, 0]).run(), 200):.0f} us")
+
+
+def fsync_us(folder):
+    times = []
+    with open(folder / "fsync", "wb") as file:
+        for _ in range(500):
+            begun = time.perf_counter()
+            file.write(b"x" * 4096)
+            file.flush()
+            os.fdatasync(file.fileno())
+            times.append((time.perf_counter() - begun) * 1e6)
+    return statistics.median(times)
+
+
+def inotify_us(folder):
+    libc = ctypes.CDLL(None, use_errno=True)
+    fd = libc.inotify_init()
+    libc.inotify_add_watch(fd, str(folder).encode(), 0x80)  # IN_MOVED_TO
+    woke = []
+    ready = threading.Event()
+
+    def reader():
+        for _ in range(300):
+            data = os.read(fd, 4096)
+            assert struct.unpack_from("iIII", data)[1] & 0x80
+            woke.append(time.perf_counter())
+            ready.set()
+
+    thread = threading.Thread(target=reader)
+    thread.start()
+    times = []
+    for i in range(300):
+        (folder.parent / "seed").write_text("x")
+        ready.clear()
+        begun = time.perf_counter()
+        os.rename(folder.parent / "seed", folder / "woken")
+        ready.wait(5)
+        times.append((woke[-1] - begun) * 1e6)
+    thread.join()
+    os.close(fd)
+    return statistics.median(times)
+
+
+def bench_webhook(drops=200):
+    receiver = Receiver()
+    arrivals = {}
+    standards = [f"std-{i:03d}" for i in range(drops)]
+    config = f"""\
+site: Harrow Mill
+state: state
+false_alerts_per_year: 6
+listen: {{address: 127.0.0.1, port: 0}}
+analyzers: {{line1: {{inbox: drop/line1}}, line2: {{inbox: drop/line2}}}}
+measurands: {{protein: {{unit: g/100 g, decimals: 4}}}}
+check_standards:
+{''.join(f'  {s}: {{analyzers: [line1], measurands: {{protein: {{}}}}}}' + chr(10) for s in standards)}
+alerts: {{routes: [{{name: a, url: "http://127.0.0.1:{receiver.port}/", secret_file: secret}}]}}
+"""
+    site = Site(config=config).start()
+    try:
+        import random
+        rng = random.Random(3)
+        lines = ["kind,measured_at,measurand,item,value"]
+        lines += [f"check,{rfc3339(START + i * 3600)},protein,{s},{10 + rng.gauss(0, 0.02):.4f}" for i in range(40) for s in standards]
+        site.drop("line1", "history.csv", "\n".join(lines) + "\n")
+        site.wait_taken()
+        time.sleep(1)
+        receiver.got.clear()
+        times = []
+        for i, standard in enumerate(standards):
+            before = len(receiver.got)
+            begun = time.perf_counter()
+            site.drop("line1", f"d{i}.csv", f"kind,measured_at,measurand,item,value\ncheck,{rfc3339(START + 50 * 3600)},protein,{standard},12\n")
+            while len(receiver.got) == before and time.perf_counter() - begun < 5:
+                time.sleep(0.00005)
+            times.append((time.perf_counter() - begun) * 1e6)
+            time.sleep(0.02)
+        times.sort()
+        floors = fsync_us(site.folder), inotify_us(site.inbox("line2"))
+        median, p99 = statistics.median(times), times[int(len(times) * 0.99)]
+        say(f"drop to webhook: median {median:.0f} us, 99th percentile {p99:.0f} us; one fsync {floors[0]:.0f} us + one inotify "
+            f"wake-up {floors[1]:.0f} us; ratios {median / sum(floors):.1f} (budget 3) and {p99 / sum(floors):.1f} (budget 10)")
+    finally:
+        site.close()
+        receiver.close()
+
+
+def wrk(url):
+    out = subprocess.run(["wrk", "-t1", "-c16", "-d4s", url], capture_output=True, text=True, check=True).stdout
+    return float(out.split("Requests/sec:")[1].split()[0])
+
+
+def bench_status():
+    site = Site().start()
+    try:
+        body = site.request("/api/status")[2]
+        ours = wrk(site.base + "/api/status")
+        bare = subprocess.Popen([str(ROOT / "build/tests/bench/bench_bare_server"), "17481", str(len(body))], stdin=subprocess.PIPE)
+        time.sleep(0.5)
+        theirs = wrk("http://127.0.0.1:17481/")
+        bare.stdin.close()
+        bare.wait()
+        say(f"/api/status ({len(body)} bytes), 16 connections: {ours:,.0f} requests/s; bare server {theirs:,.0f}; "
+            f"ratio {ours / theirs:.2f} (budget 0.7)")
+    finally:
+        site.close()
+
+
+def bench_idle(seconds=40):
+    site = Site(rescan="15s").start()
+    try:
+        time.sleep(5)
+        ticks = lambda: sum(map(int, open(f"/proc/{site.process.pid}/stat").read().rsplit(")", 1)[1].split()[11:13]))
+        before = ticks()
+        time.sleep(seconds)
+        share = (ticks() - before) / os.sysconf("SC_CLK_TCK") / seconds * 100
+        say(f"idle: {share:.2f} % of one core (budget 0.5); resident {resident_mb(site):.1f} MB")
+    finally:
+        site.close()
+
+
+if __name__ == "__main__":
+    parts = sys.argv[1:] or ["pairs", "intake", "start", "webhook", "status", "idle"]
+    say(f"{time.strftime('%Y-%m-%d')}, {os.cpu_count()} cores, "
+        + next(l.split(":")[1].strip() for l in open("/proc/cpuinfo") if l.startswith("model name")))
+    for part in parts:
+        globals()[f"bench_{part}"]()
