@@ -9,6 +9,8 @@
 namespace agreed {
 namespace {
 constexpr std::int64_t kLeastBefore = 3;
+// Sums of squares closer than this part of them are equal but for rounding: the earlier split wins.
+constexpr double kTie = 1e-12;
 
 // Abramowitz and Stegun (1964) 26.7.5. The first term left out is below 1e-9 of t from 300 degrees of
 // freedom on, for x up to 6.
@@ -41,13 +43,14 @@ LevelSplit best_level_split(const Stretch& stretch) {
   const double mean = sum[held] / n;
 
   std::size_t best = stretch.first_split(kLeastBefore);
-  double largest = -1;
+  double largest = -1, bar = -1;
   auto k = static_cast<double>(stretch.before(best));
   for (std::size_t j = best; j < held; ++j, k += 1) {
     const double excess = sum[j] - k * mean;  // = k (mean before - mean of all)
     const double between = excess * excess * (inverse_before[j] + inverse_after[j]);
-    if (between > largest) {
+    if (between > bar) {
       largest = between;
+      bar = between * (1 + kTie);
       best = j;
     }
   }

@@ -3,7 +3,7 @@
 #include <algorithm>
 #include <bit>
 #include <cmath>
-#include <cstring>
+#include <cstdint>
 #include <limits>
 
 namespace agreed {
@@ -16,29 +16,36 @@ struct Sides {
   const double* squares;
   const double* inverse_before;
   const double* inverse_after;
-  std::size_t held;
-  double first_before, least_variance;
+  const double* inverse_degrees_before;
+  const double* inverse_degrees_after;
+  int held;
+  double least_variance, all_sum, all_squares;
 
   explicit Sides(const Stretch& stretch)
       : sum(stretch.sum()),
         squares(stretch.squares()),
         inverse_before(stretch.inverse_before()),
         inverse_after(stretch.inverse_after()),
-        held(stretch.held()),
-        first_before(static_cast<double>(stretch.block())),
+        inverse_degrees_before(stretch.inverse_degrees_before()),
+        inverse_degrees_after(inverse_after + 1),
+        held(static_cast<int>(stretch.held())),
         // Without spread any positive floor makes every ratio 1.
-        least_variance(stretch.has_spread() ? stretch.least_variance() : 1.0) {}
+        least_variance(stretch.has_spread()
+                           ? std::max(stretch.least_variance(), std::numeric_limits<double>::min())
+                           : 1.0),
+        all_sum(sum[held]),
+        all_squares(squares[held]) {}
 
-  [[nodiscard]] double ratio(std::size_t j) const {
-    const double later = sum[held] - sum[j];
-    const double before = squares[j] - sum[j] * sum[j] * inverse_before[j];
-    const double after = squares[held] - squares[j] - later * later * inverse_after[j];
-    const double degrees_before = first_before + static_cast<double>(static_cast<int>(j)) - 1;
-    const double degrees_after = static_cast<double>(static_cast<int>(held - j)) - 1;
-    const double floor = std::max(least_variance, std::numeric_limits<double>::min());
-    const double upper = std::max(after, floor * degrees_after) * degrees_before;
-    const double lower = std::max(before, floor * degrees_before) * degrees_after;
-    return std::min(std::max(upper / lower, kLeastRatio), kLargestRatio);
+  [[nodiscard]] double ratio(int j) const {
+    const double later = all_sum - sum[j];
+    const double before = (squares[j] - sum[j] * sum[j] * inverse_before[j]) * inverse_degrees_before[j];
+    const double after =
+        (all_squares - squares[j] - later * later * inverse_after[j]) * inverse_degrees_after[j];
+    const double upper = after > least_variance ? after : least_variance;
+    const double lower = before > least_variance ? before : least_variance;
+    const double f = upper / lower;
+    const double held_up = f > kLeastRatio ? f : kLeastRatio;
+    return held_up < kLargestRatio ? held_up : kLargestRatio;
   }
 };
 
@@ -76,26 +83,27 @@ double precision_limit(double h, std::int64_t before, std::int64_t after) {
 // a >= 2/(9 split_memory).
 PrecisionSplit best_precision_split(const Stretch& stretch, std::vector<float>& scratch) {
   const Sides sides(stretch);
-  const std::size_t first = stretch.first_split(kLeastBeforeScatter), end = stretch.held() - 1;
-  scratch.resize(end);
+  const auto first = static_cast<int>(stretch.first_split(kLeastBeforeScatter));
+  const int end = sides.held - 1;
+  scratch.resize(static_cast<std::size_t>(end));
   float* rough = scratch.data();
-  for (std::size_t j = first; j < end; ++j) {
+  constexpr float kTwoNinths = 2.0F / 9.0F;
+  for (int j = first; j < end; ++j) {
     const float root = rough_cube_root(static_cast<float>(sides.ratio(j)));
-    const double degrees_before = sides.first_before + static_cast<double>(static_cast<int>(j)) - 1;
-    const float b = static_cast<float>(2.0 / 9.0) / static_cast<float>(degrees_before);
-    const float a = static_cast<float>(2.0 / 9.0) / static_cast<float>(static_cast<int>(sides.held - j) - 1);
+    const float b = kTwoNinths * static_cast<float>(sides.inverse_degrees_before[j]);
+    const float a = kTwoNinths * static_cast<float>(sides.inverse_degrees_after[j]);
     rough[j] = ((1 - b) * root - (1 - a)) / std::sqrt(b * root * root + a);
   }
   const float largest = *std::max_element(rough + first, rough + end);
   const float candidate = largest - (1e-3F + 2e-5F * std::abs(largest));
 
-  PrecisionSplit best{first, stretch.before(first), -std::numeric_limits<double>::infinity(), 1};
-  for (std::size_t j = first; j < end; ++j) {
+  const auto position = [](int j) { return static_cast<std::size_t>(j); };
+  PrecisionSplit best{position(first), 0, -std::numeric_limits<double>::infinity(), 1};
+  for (int j = first; j < end; ++j) {
     if (rough[j] < candidate) continue;
     const double ratio = sides.ratio(j);
-    const double score =
-        precision_score(ratio, stretch.before(j), static_cast<std::int64_t>(stretch.held() - j));
-    if (score > best.score) best = {j, stretch.before(j), score, std::sqrt(ratio)};
+    const double score = precision_score(ratio, stretch.before(position(j)), sides.held - j);
+    if (score > best.score) best = {position(j), stretch.before(position(j)), score, std::sqrt(ratio)};
   }
   return best;
 }

@@ -23,6 +23,7 @@ void Stretch::push(const Prefix& prefix) {
   squares_.push_back(prefix.sums.squares);
   deviation_.push_back(prefix.deviation);
   inverse_.push_back(prefix.sums.n > 0 ? 1.0 / static_cast<double>(prefix.sums.n) : 0.0);
+  inverse_degrees_.push_back(prefix.sums.n > 1 ? 1.0 / static_cast<double>(prefix.sums.n - 1) : 0.0);
   rest_.push_back({prefix.ranges, prefix.step, prefix.at, prefix.point});
 }
 
@@ -58,7 +59,7 @@ void Stretch::append(Instant at, double value, std::int64_t point) {
   next.point = point;
   push(next);
   if (held() > static_cast<std::size_t>(split_memory_)) {
-    for (auto* array : {&sum_, &squares_, &deviation_, &inverse_}) array->pop_front();
+    for (auto* array : {&sum_, &squares_, &deviation_, &inverse_, &inverse_degrees_}) array->pop_front();
     rest_.pop_front();
     ++block_;
   }
@@ -73,7 +74,7 @@ std::int64_t Stretch::set_aside(const Prefix& start, std::size_t last) {
 
   const std::int64_t position = start.sums.n - block_;
   const std::size_t size = position >= 0 ? static_cast<std::size_t>(position) + 1 : 0;
-  for (auto* array : {&sum_, &squares_, &deviation_, &inverse_}) array->truncate(size);
+  for (auto* array : {&sum_, &squares_, &deviation_, &inverse_, &inverse_degrees_}) array->truncate(size);
   rest_.truncate(size);
   if (size == 0) {
     block_ = start.sums.n;

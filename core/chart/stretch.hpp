@@ -70,6 +70,8 @@ class Stretch {
   [[nodiscard]] const double* deviation() const { return deviation_.data(); }
   /// 1 / (readings before), 0 where there are none.
   [[nodiscard]] const double* inverse_before() const { return inverse_.data(); }
+  /// 1 / (readings before - 1), 0 where there are less than 2.
+  [[nodiscard]] const double* inverse_degrees_before() const { return inverse_degrees_.data(); }
   /// 1 / (readings after), 0 at held().
   [[nodiscard]] const double* inverse_after() const {
     return reciprocal_.data() + (static_cast<std::size_t>(split_memory_) - held());
@@ -105,7 +107,7 @@ class Stretch {
   double reference_ = 0;
   Instant first_at_{};
   std::int64_t block_ = 0;
-  SlidingArray<double> sum_, squares_, deviation_, inverse_;
+  SlidingArray<double> sum_, squares_, deviation_, inverse_, inverse_degrees_;
   SlidingArray<Rest> rest_;
   std::vector<double> reciprocal_;  ///< 1/split_memory .. 1/1, 0
 };
