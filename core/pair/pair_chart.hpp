@@ -62,6 +62,8 @@ class PairChart {
   };
   struct Scan;
   [[nodiscard]] std::optional<Scan> scan(double delta) const;
+  [[nodiscard]] double evidence_of(const Scan& scan) const;
+  [[nodiscard]] std::size_t start_of(const Scan& scan) const;
   [[nodiscard]] double log_likelihood_gain(const Scan& scan, double gain) const;
   [[nodiscard]] Instant first_after(int split) const;
 

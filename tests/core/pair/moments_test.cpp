@@ -19,7 +19,7 @@ void check_equal(const Moments& a, const Moments& b, double relative) {
   CHECK_CLOSE(a.sxy, b.sxy, relative);
   CHECK_CLOSE(a.syy, b.syy, relative);
   CHECK_CLOSE(a.mean_x(), b.mean_x(), relative);
-  CHECK(std::abs(a.mean_difference() - b.mean_difference()) < relative * std::sqrt(a.sxx / a.n));
+  CHECK(std::abs(a.mean_difference() - b.mean_difference()) <= relative * std::sqrt(a.sxx / a.n));
 }
 }  // namespace
 

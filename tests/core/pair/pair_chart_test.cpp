@@ -66,8 +66,9 @@ TEST_CASE("the pair score equals all splits fitted one by one") {
       const auto split = chart_of(points).best_split(delta);
       const Found slow = split_by_split(points, delta);
       REQUIRE(split);
-      CHECK(split->before == slow.before);
-      CHECK(split->after == static_cast<int>(n) - slow.before);
+      // At the last split looked at the start may be told later, see below.
+      if (slow.before + 3 < static_cast<int>(n)) CHECK(split->before == slow.before);
+      CHECK(split->before + split->after == static_cast<int>(n));
       CHECK_CLOSE(split->evidence, slow.evidence, 1e-8);
     }
 }
@@ -101,6 +102,22 @@ TEST_CASE("a step of two pair sds is found with its start") {
   CHECK(split->started_between.first <= at(60));
   CHECK(split->started_between.last >= at(60));
   CHECK(std::abs(split->shift - 3 * pair_sd) < pair_sd);
+}
+
+TEST_CASE("the start of a large step is right although too few pairs for a line have come after it") {
+  // The best split has three pairs after it; taken for the start it would put pairs from before the step into
+  // the new stretch (in 285 of 300 simulated steps of 10 pair sds the start was one pair early, now 0).
+  std::mt19937_64 random(50);
+  for (const std::size_t after : {1u, 2u, 3u}) {
+    CAPTURE(after);
+    auto points = draw({}, 60 + after, random);
+    for (std::size_t i = 60; i < points.size(); ++i) points[i].y += 0.3;
+    const auto split = chart_of(points).best_split(1);
+    REQUIRE(split);
+    CHECK(split->before == 60);
+    CHECK(split->started_at == at(60));
+    CHECK(split->started_between.last == at(60));
+  }
 }
 
 TEST_CASE("a proportional change is found although the mean residual hardly moves") {
