@@ -31,6 +31,10 @@ bool Section::given(const std::string& name) const {
   return find(name) != nullptr;
 }
 
+bool Section::is_empty_list(const std::string& name) const {
+  return given(name) && find(name)->kind == NodeKind::list && find(name)->children.empty();
+}
+
 bool Section::usable(const std::string& name) const {
   const Node* node = find(name);
   return node != nullptr && node->kind == NodeKind::scalar && !complaint(row(name), node->text);
