@@ -4,6 +4,7 @@
 #include <stdexcept>
 #include <utility>
 
+#include "config/row_value.hpp"
 #include "config/validate.hpp"
 #include "config/value_text.hpp"
 

@@ -11,8 +11,8 @@
 
 #include "config/config.hpp"
 #include "config/problems.hpp"
+#include "config/row_value.hpp"
 #include "config/schema.hpp"
-#include "config/validate.hpp"
 #include "config/yaml_tree.hpp"
 
 using namespace agreed;
