@@ -39,6 +39,7 @@ ConfigResult parse(std::string text, const fs::path& file) {
   const auto root = parse_yaml(text, problems);
   if (!root) return {std::nullopt, problems.sorted()};
   validate(*root, problems);
+  if (root->kind != NodeKind::map) return {std::nullopt, problems.sorted()};
   Draft draft = read_all(*root, fs::absolute(file), problems);
   ConfigResult result{std::nullopt, problems.sorted()};
   if (problems.any_error()) return result;

@@ -108,6 +108,8 @@ void spend_alarm_budget(const Section& top, bool judge, Draft& draft) {
                   shown(std::ceil(shares.taken_per_year * 100) / 100) +
                   " a year; expected some to be left: raise it, or raise or remove in_control_run_length");
   } else if (judge) {
+    if (draft.settings.charts.empty() && draft.settings.comparisons.empty())
+      top.warning_here("found neither check_standards nor comparisons; nothing is watched");
     judge_shares(top, shares, draft);
     const auto sections = top.named("comparisons");
     for (std::size_t i = 0; i < sections.size(); ++i)

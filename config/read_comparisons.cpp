@@ -111,8 +111,6 @@ void add_comparison(const Section& section, Draft& draft) {
 
 void read_comparisons(const Section& top, Draft& draft) {
   for (const Section& section : top.named("comparisons")) add_comparison(section, draft);
-  if (draft.settings.charts.empty() && draft.settings.comparisons.empty())
-    top.warning_here("found neither check_standards nor comparisons; nothing is watched");
 }
 
 }  // namespace agreed::settings_file

@@ -1,3 +1,5 @@
+#include <algorithm>
+
 #include "config/parts.hpp"
 
 namespace agreed::settings_file {
@@ -12,6 +14,18 @@ std::optional<AllowableDifference> allowable_of(const Section& measurand) {
   return allowable;
 }
 
+/// A percentage of nothing allows nothing.
+void refuse_nothing_allowed(const Section& section, const Measurand& measurand) {
+  const bool only_percent = measurand.allowable && measurand.allowable->percent &&
+                            !section.section("allowable_difference").given("absolute");
+  if (!only_percent) return;
+  const auto& levels = measurand.decision_levels;
+  if (std::any_of(levels.begin(), levels.end(),
+                  [&](double level) { return !(measurand.allowable->at(level) > 0); }))
+    section.error("allowable_difference",
+                  "found only percent, which allows nothing at the decision level 0; expected absolute too");
+}
+
 }  // namespace
 
 void read_measurands(const Section& top, Draft& draft) {
@@ -23,13 +37,7 @@ void read_measurands(const Section& top, Draft& draft) {
     measurand.decimals = section.whole_number("decimals");
     measurand.decision_levels = section.numbers("decision_levels");
     measurand.allowable = allowable_of(section);
-    // A percentage of nothing allows nothing.
-    if (measurand.allowable && !measurand.allowable->absolute)
-      for (const double level : measurand.decision_levels)
-        if (!(measurand.allowable->at(level) > 0))
-          section.error(
-              "allowable_difference",
-              "found only percent, which allows nothing at the decision level 0; expected absolute too");
+    refuse_nothing_allowed(section, measurand);
     draft.settings.measurands.push_back(std::move(measurand));
   }
 }

@@ -83,7 +83,7 @@ void check_secret_env(const Section& route, const std::string& variable) {
 void check_secret(const Section& section, const Route& route) {
   const int given = (section.given("secret_file") ? 1 : 0) + (section.given("secret_env") ? 1 : 0) +
                     (route.unsigned_ ? 1 : 0);
-  if (given == 0)
+  if (given == 0 && !(section.given("unsigned") && !section.usable("unsigned")))
     section.error_here(
         "found no signing secret, expected secret_file or secret_env, or unsigned: true to send without");
   if (given > 1)
@@ -117,7 +117,7 @@ std::vector<AlertKind> kinds_of(const Section& section) {
 /// An empty list would mean "none" to the reader and "all" to the service.
 void refuse_empty_filters(const Section& section) {
   for (const char* filter : {"kinds", "analyzers", "measurands", "comparisons"})
-    if (section.given(filter) && section.words(filter).empty())
+    if (section.is_empty_list(filter))
       section.error(filter, "found an empty list, expected at least one; leave the key out for all");
 }
 

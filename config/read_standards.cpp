@@ -113,7 +113,7 @@ std::set<std::string> watched(const Section& standard, const std::vector<LotOfAl
 std::vector<std::string> analyzers_of(const Section& standard, const Settings& settings) {
   const auto all = ids_of(settings.analyzers);
   if (!standard.given("analyzers")) return all;
-  if (standard.words("analyzers").empty())
+  if (standard.is_empty_list("analyzers"))
     standard.error("analyzers",
                    "found no analyzer, expected at least one; leave the key out for all of them");
   return known_ids(standard, "analyzers", all);

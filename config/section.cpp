@@ -4,6 +4,7 @@
 #include <stdexcept>
 #include <utility>
 
+#include "config/row_value.hpp"
 #include "config/validate.hpp"
 #include "config/value_text.hpp"
 
@@ -29,6 +30,10 @@ const Node* Section::find(const std::string& name) const {
 bool Section::given(const std::string& name) const {
   (void)row(name);
   return find(name) != nullptr;
+}
+
+bool Section::is_empty_list(const std::string& name) const {
+  return given(name) && find(name)->kind == NodeKind::list && find(name)->children.empty();
 }
 
 bool Section::usable(const std::string& name) const {

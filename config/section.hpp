@@ -23,6 +23,8 @@ class Section {
   [[nodiscard]] bool exists() const { return node_ != nullptr; }
   /// The key is there, right or wrong.
   [[nodiscard]] bool given(const std::string& name) const;
+  /// The key has a list without elements.
+  [[nodiscard]] bool is_empty_list(const std::string& name) const;
   /// The key has a value that can be used.
   [[nodiscard]] bool usable(const std::string& name) const;
 

@@ -1,21 +1,15 @@
 #pragma once
 // Holds a tree against the schema, key by key. What rules connect several keys is checked where they are
 // read.
-#include <optional>
 #include <string>
-#include <string_view>
 
 #include "config/node.hpp"
 #include "config/problems.hpp"
-#include "config/schema.hpp"
 
 namespace agreed::settings_file {
 
 /// Adds every key that is unknown, missing, of the wrong type, out of range or not available yet.
 void validate(const Node& root, Problems& problems);
-
-/// What is wrong with one value of a row, "found ..., expected ..."; nothing if it can be used.
-[[nodiscard]] std::optional<std::string> complaint(const SettingRow& row, std::string_view text);
 
 /// The path of a child: "analyzers" + "line1".
 [[nodiscard]] std::string joined(const std::string& path, const std::string& name);

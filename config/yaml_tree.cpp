@@ -6,6 +6,7 @@
 #include <string_view>
 #include <utility>
 
+#include <yaml-cpp/depthguard.h>
 #include <yaml-cpp/eventhandler.h>
 #include <yaml-cpp/exceptions.h>
 #include <yaml-cpp/parser.h>
@@ -32,9 +33,14 @@ Position position_of_byte(std::string_view text, std::size_t offset) {
 /// Builds the tree from the parser's events with a stack of the maps and lists that are still open.
 class TreeBuilder final : public YAML::EventHandler {
  public:
-  explicit TreeBuilder(Problems& problems) : problems_(problems) {}
+  TreeBuilder(std::string_view text, Problems& problems) : text_(text), problems_(problems) {
+    line_starts_.push_back(0);
+    for (std::size_t i = 0; i < text.size(); ++i)
+      if (text[i] == '\n') line_starts_.push_back(i + 1);
+  }
 
   [[nodiscard]] Node take_root() { return std::move(root_); }
+  [[nodiscard]] bool found_open_quote() const { return found_open_quote_; }
 
   void OnDocumentStart(const YAML::Mark&) override {}
   void OnDocumentEnd() override {}
@@ -49,6 +55,7 @@ class TreeBuilder final : public YAML::EventHandler {
   void OnScalar(const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor,
                 const std::string& value) override {
     refuse_extras(mark, tag, anchor);
+    refuse_open_quote(position(mark));
     attach(leaf(NodeKind::scalar, mark, value));
   }
   void OnSequenceStart(const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor,
@@ -66,6 +73,7 @@ class TreeBuilder final : public YAML::EventHandler {
   struct Open {
     Node node;
     bool awaits_key = true;  // of a map: the next value is a key
+    bool key_is_word = true;
     std::string key;
     Position key_at;
     std::map<std::string, int> lines;  // of the keys so far
@@ -86,6 +94,27 @@ class TreeBuilder final : public YAML::EventHandler {
     if (!tag.empty() && tag != "?" && tag != "!")
       problems_.error(position(mark), path(),
                       "found the tag " + shown(tag) + "; tags are not read: remove it");
+  }
+
+  /// A quotation mark left open swallows what follows, up to the next one or the end, without an error.
+  void refuse_open_quote(Position at) {
+    const auto line = static_cast<std::size_t>(at.line - 1);
+    if (line >= line_starts_.size()) return;
+    std::size_t i = line_starts_[line] + static_cast<std::size_t>(at.column - 1);
+    if (i >= text_.size() || (text_[i] != '"' && text_[i] != '\'')) return;
+    const char quote = text_[i];
+    for (++i; i < text_.size() && text_[i] != '\n'; ++i) {
+      if (text_[i] == quote && quote == '\'' && text_.substr(i + 1, 1) == "'") {
+        ++i;  // '' is an apostrophe
+      } else if (text_[i] == quote) {
+        return;
+      } else if (text_[i] == '\\' && quote == '"') {
+        ++i;
+      }
+    }
+    found_open_quote_ = true;
+    problems_.error(at, path(),
+                    "found a quotation mark that is not closed in its line; expected a text in one line");
   }
 
   void begin(NodeKind kind, const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor) {
@@ -119,12 +148,14 @@ class TreeBuilder final : public YAML::EventHandler {
     if (node.kind != NodeKind::scalar)
       problems_.error(node.at, path(), "found something other than a word as a key; expected a word");
     map.awaits_key = false;
+    map.key_is_word = node.kind == NodeKind::scalar;
     map.key = node.text;
     map.key_at = node.at;
   }
 
   void give_value(Open& map, Node node) {
     map.awaits_key = true;
+    if (!map.key_is_word) return;
     node.key = map.key;
     node.key_at = map.key_at;
     // An absent value is reported at its key: the parser marks it at whatever comes next.
@@ -153,7 +184,10 @@ class TreeBuilder final : public YAML::EventHandler {
     return text;
   }
 
+  std::string_view text_;
+  std::vector<std::size_t> line_starts_;
   Problems& problems_;
+  bool found_open_quote_ = false;
   std::vector<Open> open_;
   Node root_;
 };
@@ -171,6 +205,26 @@ bool is_text(std::string_view text, Problems& problems) {
   return true;
 }
 
+bool is_indented_by_tab(std::string_view text, int line) {
+  for (int i = 1; i < line && !text.empty(); ++i)
+    text.remove_prefix(
+        std::min(text.size(), text.find('\n') == std::string_view::npos ? text.size() : text.find('\n') + 1));
+  const std::string_view indentation = text.substr(0, text.find_first_not_of(" \t"));
+  return indentation.find('\t') != std::string_view::npos;
+}
+
+/// The parser's words, with what most often is behind them.
+std::string syntax_message(const YAML::Exception& error, std::string_view text) {
+  const std::string message = "not readable as YAML: " + error.msg;
+  if (!error.mark.is_null() && is_indented_by_tab(text, error.mark.line + 1))
+    return message + " (the line is indented by a tab, expected spaces)";
+  const bool structural =
+      error.msg.find("not found") != std::string::npos || error.msg.find("illegal") != std::string::npos;
+  return structural
+             ? message + " (often an indentation, a missing colon, or a quotation mark left open before this)"
+             : message;
+}
+
 }  // namespace
 
 std::optional<Node> parse_yaml(const std::string& text, Problems& problems) {
@@ -178,22 +232,23 @@ std::optional<Node> parse_yaml(const std::string& text, Problems& problems) {
   if (body.substr(0, kByteOrderMark.size()) == kByteOrderMark) body.remove_prefix(kByteOrderMark.size());
   if (!is_text(body, problems)) return std::nullopt;
   std::istringstream stream{std::string(body)};
-  TreeBuilder builder(problems);
+  TreeBuilder builder(body, problems);
   try {
     YAML::Parser parser(stream);
     if (!parser.HandleNextDocument(builder)) return Node{};
     Node root = builder.take_root();
     Problems of_the_rest;
-    TreeBuilder rest(of_the_rest);
+    TreeBuilder rest(body, of_the_rest);
     if (parser.HandleNextDocument(rest))
       problems.error({}, "", "found a second document (---); expected one");
     return root;
+  } catch (const YAML::DeepRecursion&) {
+    problems.error({}, "", "sections and lists are nested too deeply; expected a configuration in YAML");
+    return std::nullopt;
   } catch (const YAML::Exception& error) {
-    // The parser marks its own limit of nesting nowhere.
+    // What follows from a quotation mark left open is told already.
     const Position at = error.mark.is_null() ? Position{} : position(error.mark);
-    problems.error(at, "",
-                   "not readable as YAML: " + error.msg +
-                       " (often an indentation, a missing colon, or a quotation mark left open before this)");
+    if (!builder.found_open_quote()) problems.error(at, "", syntax_message(error, body));
     return std::nullopt;
   }
 }

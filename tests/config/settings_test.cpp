@@ -1,0 +1,185 @@
+// What a good configuration becomes.
+#include <map>
+#include <string>
+
+#include <doctest/doctest.h>
+
+#include "config/config.hpp"
+#include "core/base/rfc3339.hpp"
+
+using namespace agreed;
+using doctest::Approx;
+using namespace std::chrono_literals;
+
+namespace {
+
+Config parsed(const std::string& text) {
+  ConfigResult result = parse_config(text, "/etc/agreed/agreed.yaml");
+  std::string told;
+  for (const ConfigProblem& problem : result.problems) told += to_string(problem, "f") + '\n';
+  REQUIRE_MESSAGE(result.config.has_value(), told);
+  return *result.config;
+}
+
+const std::string kMill =
+    "site: Harrow Mill\n"
+    "analyzers:\n"
+    "  line2: {inbox: ../drop/line2/, title: Second}\n"
+    "  line1: {inbox: /srv/drop/line1}\n"
+    "measurands:\n"
+    "  protein: {unit: g/100 g, decision_levels: [10.5, 13.0], allowable_difference: {absolute: 0.2, "
+    "percent: 1.5}}\n"
+    "  moisture: {unit: g/100 g, smallest_shift: 0.05}\n"
+    "check_standards:\n"
+    "  wheat-low: {every: 8h, measurands: {protein: {reference: 10.62, expanded_uncertainty: 0.08}, "
+    "moisture: {}}}\n"
+    "  wheat-high:\n"
+    "    analyzers: [line2]\n"
+    "    lots:\n"
+    "      - {lot: 2025-C, measurands: {protein: {reference: 13.31}}}\n"
+    "      - {lot: 2026-A, from: \"2026-01-05T06:00:00Z\"}\n"
+    "    measurands: {protein: {reference: 13.24, coverage_factor: 3}}\n"
+    "    charts: {baseline: 40, in_control_run_length: 7300}\n"
+    "charts: {clear_after: 4}\n"
+    "comparisons:\n"
+    "  protein: {measurand: protein, x: line1, y: line2, window: {pairs: 100, age: none}}\n";
+
+}  // namespace
+
+TEST_CASE("lists are sorted by id and charts by analyzer, standard, measurand") {
+  const Config config = parsed(kMill);
+  const Settings& settings = *config.settings;
+  CHECK(settings.analyzers[0].id == "line1");
+  CHECK(settings.analyzers[0].title == "line1");
+  CHECK(settings.analyzers[1].title == "Second");
+  CHECK(config.intake[0].analyzer == "line1");
+  CHECK(config.intake[1].analyzer == "line2");
+  CHECK(settings.measurands[0].id == "moisture");
+  CHECK(settings.standards[0].id == "wheat-high");
+  std::string order;
+  for (const ChartSettings& chart : settings.charts)
+    order += settings.of(chart.analyzer).id + '/' + settings.of(chart.standard).id + '/' +
+             settings.of(chart.measurand).id + '\n';
+  CHECK(order ==
+        "line1/wheat-low/moisture\nline1/wheat-low/protein\n"
+        "line2/wheat-high/protein\nline2/wheat-low/moisture\nline2/wheat-low/protein\n");
+}
+
+TEST_CASE("paths are taken relative to the file and made clean") {
+  const Config config = parsed(kMill + "state: ./journal/\naccess: {tokens_file: tokens}\n");
+  CHECK(config.file == "/etc/agreed/agreed.yaml");
+  CHECK(config.intake[0].inbox == "/srv/drop/line1");
+  CHECK(config.intake[1].inbox == "/etc/drop/line2");
+  CHECK(config.state == "/etc/agreed/journal");
+  CHECK(config.tokens_file.value() == "/etc/agreed/tokens");
+}
+
+TEST_CASE("a check standard's own chart settings win over those for all") {
+  const Settings settings = *parsed(kMill).settings;
+  const ChartSettings& general = settings.charts[0];
+  const ChartSettings& own = settings.charts[2];
+  CHECK(general.baseline == 30);
+  CHECK(general.clear_after == 4);
+  CHECK(own.baseline == 40);
+  CHECK(own.clear_after == 4);
+  CHECK(own.level_run_length == Approx(7300));
+  CHECK(general.smallest_shift.value() == Approx(0.05));
+  CHECK_FALSE(own.smallest_shift.has_value());
+}
+
+TEST_CASE("lots follow each other, each with its own reference value or the standard's") {
+  const Settings settings = *parsed(kMill).settings;
+  const auto& lots = settings.charts[2].lots;
+  REQUIRE(lots.size() == 2);
+  CHECK(lots[0].id == "2025-C");
+  CHECK_FALSE(lots[0].from.has_value());
+  CHECK(lots[0].reference->value == Approx(13.31));
+  CHECK(lots[0].reference->coverage_factor == Approx(2));
+  CHECK(to_rfc3339(lots[1].from.value()) == "2026-01-05T06:00:00.000Z");
+  CHECK(lots[1].reference->value == Approx(13.24));
+  CHECK(lots[1].reference->coverage_factor == Approx(3));
+  CHECK(settings.charts[0].lots.size() == 1);
+  CHECK_FALSE(settings.charts[0].lots[0].reference.has_value());
+  CHECK(settings.charts[1].lots[0].reference->expanded_uncertainty.value() == Approx(0.08));
+}
+
+TEST_CASE("a cadence that is not given serves the budget and calls nothing overdue") {
+  const Settings settings = *parsed(kMill).settings;
+  CHECK(settings.charts[0].overdue);
+  CHECK(settings.charts[0].every == Duration(8h));
+  CHECK_FALSE(settings.charts[2].overdue);
+  CHECK(settings.charts[2].every == Duration(8h));
+  CHECK_FALSE(settings.comparisons[0].overdue);
+  CHECK(settings.comparisons[0].every == Duration(2h));
+}
+
+TEST_CASE("run lengths follow from the shares that own ones leave") {
+  // wheat-high on line2 uses 2 * 1,095 / 7,300 = 0.3 a year; 5.7 are left for 4 charts and 1 comparison.
+  const Settings settings = *parsed(kMill).settings;
+  CHECK(settings.charts[0].level_run_length == Approx(1095 / (5.7 / 5 / 2)).epsilon(1e-12));
+  CHECK(settings.charts[0].precision_run_length == Approx(1095 / (5.7 / 5 / 2)).epsilon(1e-12));
+  CHECK(settings.comparisons[0].warning_run_length == Approx(4380 / (5.7 / 5 / 2)).epsilon(1e-12));
+  CHECK(settings.comparisons[0].outlier_run_length == Approx(4380 / (5.7 / 5 / 4)).epsilon(1e-12));
+  CHECK(settings.comparisons[0].scatter_run_length == Approx(4380 / (5.7 / 5 / 4)).epsilon(1e-12));
+  CHECK(settings.alarm_budget.expected_per_year == Approx(6).epsilon(1e-12));
+}
+
+TEST_CASE("windows: 90 days also when only pairs is given, none when none is asked for") {
+  CHECK_FALSE(parsed(kMill).settings->comparisons[0].window_age.has_value());
+  std::string text = kMill;
+  text.replace(text.find(", age: none"), 11, "");
+  CHECK(parsed(text).settings->comparisons[0].window_age == Duration(90 * 24h));
+  CHECK(parsed(text).settings->comparisons[0].window_pairs == 100);
+}
+
+TEST_CASE("error ratios") {
+  const auto ratio = [](const std::string& setting) {
+    std::string text = kMill;
+    text.replace(text.find(", window: {pairs: 100, age: none}"), 33, setting);
+    return parsed(text).settings->comparisons[0].error_ratio;
+  };
+  CHECK(ratio("").source == ErrorSource::check_standards);
+  CHECK(ratio(", error_ratio: from_check_standards").source == ErrorSource::check_standards);
+  const auto sds = ratio(", error_ratio: {sd_x: 0.018, sd_y: 0.020}");
+  CHECK(sds.source == ErrorSource::given_sds);
+  CHECK(sds.sd_x == Approx(0.018));
+  CHECK(sds.sd_y == Approx(0.020));
+  const auto lambda = ratio(", error_ratio: {lambda: 1.5}");
+  CHECK(lambda.source == ErrorSource::given_lambda);
+  CHECK(lambda.lambda == Approx(1.5));
+}
+
+TEST_CASE("a route with every filter, and one with none") {
+  const Config config = parsed(kMill +
+                               "alerts:\n"
+                               "  remind_every: 4h\n"
+                               "  reopen_within: 12h\n"
+                               "  routes:\n"
+                               "    - {name: shift, url: \"https://chat.harrow.example/hooks/a1\", unsigned: "
+                               "true, at_least: warning,\n"
+                               "       kinds: [agreement_lost, pair_outlier], analyzers: [line1], "
+                               "measurands: [protein], comparisons: [protein]}\n"
+                               "    - {name: all, url: \"http://127.0.0.1:9099/agreed\", unsigned: true}\n");
+  CHECK(config.alert_policy.remind_every == Duration(4h));
+  CHECK(config.alert_policy.reopen_within == Duration(12h));
+  REQUIRE(config.routes.size() == 2);
+  const Route& shift = config.routes[0];
+  CHECK(shift.kinds == std::vector<AlertKind>{AlertKind::agreement_lost, AlertKind::pair_outlier});
+  CHECK(shift.at_least == Severity::warning);
+  CHECK(shift.analyzers == std::vector<std::string>{"line1"});
+  CHECK(shift.measurands == std::vector<std::string>{"protein"});
+  CHECK(shift.comparisons == std::vector<std::string>{"protein"});
+  CHECK(shift.unsigned_);
+  CHECK(config.routes[1].kinds.empty());
+  CHECK(config.routes[1].at_least == Severity::notice);
+}
+
+TEST_CASE("others may reach the service once a token or an explicit word allows it") {
+  CHECK(parsed(kMill + "listen: {address: 0.0.0.0, open_to_network: true}\n").listen.open_to_network);
+  CHECK(parsed(kMill + "listen: {address: 0.0.0.0, port: 0}\naccess: {tokens_file: t}\n").listen.port == 0);
+  CHECK(parsed(kMill + "listen: {address: \"::1\"}\n").listen.address == "::1");
+}
+
+TEST_CASE("the text is kept as read") {
+  CHECK(parsed(kMill).text == kMill);
+}
