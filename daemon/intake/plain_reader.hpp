@@ -18,6 +18,8 @@ class PlainReader {
  public:
   /// `taker` and the context's settings must outlive the reader. It may throw: what it throws passes through.
   PlainReader(PlainContext context, PlainSyntax syntax, RowTaker& taker);
+  PlainReader(const PlainReader&) = delete;
+  PlainReader& operator=(const PlainReader&) = delete;
 
   /// Takes the next bytes, cut anywhere; false once the file is known to be unusable.
   bool feed(std::string_view block);

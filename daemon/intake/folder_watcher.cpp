@@ -1,0 +1,47 @@
+#include "daemon/intake/folder_watcher.hpp"
+
+#include <atomic>
+#include <thread>
+
+#include "daemon/intake/watch_loop.hpp"
+
+namespace agreed {
+
+struct FolderWatcher::Impl {
+  WatchLoop loop;
+  std::atomic<bool> running = false;
+  std::jthread thread;
+};
+
+FolderWatcher::FolderWatcher(const IntakeSettings& intake, const Settings& settings, AnalyzerIndex analyzer,
+                             IntakeSink& sink, const WatcherLimits& limits)
+    : impl_(new Impl{{intake, settings, analyzer, sink, limits}, false, {}}) {}
+
+FolderWatcher::~FolderWatcher() {
+  stop();
+}
+
+void FolderWatcher::start() {
+  if (impl_->thread.joinable()) return;
+  impl_->running = true;
+  impl_->thread = std::jthread([impl = impl_.get()](const std::stop_token& stop) {
+    impl->loop.run(stop);
+    impl->running = false;
+  });
+}
+
+void FolderWatcher::request_stop() {
+  impl_->thread.request_stop();
+  impl_->loop.wake();
+}
+
+void FolderWatcher::stop() {
+  request_stop();
+  if (impl_->thread.joinable()) impl_->thread.join();
+}
+
+bool FolderWatcher::stopped() const {
+  return !impl_->running;
+}
+
+}  // namespace agreed

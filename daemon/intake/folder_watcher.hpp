@@ -1,0 +1,45 @@
+#pragma once
+// Takes in what lands in one analyzer's drop folder, in a thread of its own, so that a folder that hangs
+// blocks nothing else.
+#include <memory>
+
+#include "config/config.hpp"
+#include "daemon/intake/answer_queue.hpp"
+#include "daemon/intake/file_reader.hpp"
+#include "daemon/intake/sink.hpp"
+
+namespace agreed {
+
+/// The waits and limits that the configuration does not set; tests shorten them.
+struct WatcherLimits {
+  Duration unfinished = std::chrono::seconds(60);  ///< an empty, unclosed or incomplete file stands still
+  ReadLimits read;
+  QueueLimits queue;
+};
+
+class FolderWatcher {
+ public:
+  /// `settings` and `sink` must outlive the watcher. Throws std::runtime_error if the zone is unknown, or if
+  /// the process has no file descriptors left.
+  FolderWatcher(const IntakeSettings& intake, const Settings& settings, AnalyzerIndex analyzer,
+                IntakeSink& sink, const WatcherLimits& limits = {});
+  /// Stops.
+  ~FolderWatcher();
+  FolderWatcher(const FolderWatcher&) = delete;
+  FolderWatcher& operator=(const FolderWatcher&) = delete;
+
+  void start();
+  /// Asks the thread to end and does not wait. Safe from any thread.
+  void request_stop();
+  /// Asks and waits. Takes well under a second unless the folder hangs or the sink blocks in submit: unblock
+  /// the sink first. Files whose answers are outstanding stay in the inbox.
+  void stop();
+  /// True once the thread has ended, or before it began.
+  [[nodiscard]] bool stopped() const;
+
+ private:
+  struct Impl;
+  std::unique_ptr<Impl> impl_;
+};
+
+}  // namespace agreed
