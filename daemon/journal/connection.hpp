@@ -27,13 +27,15 @@ namespace agreed::journal {
 /// The text JournalError gives for a file that cannot be trusted.
 [[nodiscard]] JournalError damaged(const std::filesystem::path& file, std::string_view how);
 
-/// Runs `work`; what SQLite throws comes out as JournalError.
+/// Runs `work`; what SQLite or the file system throws comes out as JournalError.
 template <class Work>
 auto translating(const std::filesystem::path& file, const Work& work) {
   try {
     return work();
   } catch (const SQLite::Exception& error) {
     throw to_journal_error(error, file);
+  } catch (const std::filesystem::filesystem_error& error) {
+    throw JournalError(std::string("The journal's files could not be handled: ") + error.what(), true);
   }
 }
 

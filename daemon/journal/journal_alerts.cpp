@@ -136,4 +136,11 @@ void Journal::add_configuration(std::string_view text, std::string_view sha256, 
       [&] { impl_->history.start(Table::configurations).time(at).text(sha256).text(text).insert(); });
 }
 
+std::string Journal::last_configuration_sha256() {
+  return journal::translating(impl_->file, [&]() -> std::string {
+    Query row = impl_->query("SELECT sha256 FROM configurations ORDER BY id DESC LIMIT 1");
+    return row->executeStep() ? row->getColumn(0).getString() : "";
+  });
+}
+
 }  // namespace agreed

@@ -1,7 +1,6 @@
 // Read-only views of the journal for HTTP, the sender and the command line.
-#include "daemon/journal/connection.hpp"
 #include "daemon/journal/journal_impl.hpp"
-#include "daemon/journal/schema.hpp"
+#include "daemon/journal/reader_impl.hpp"
 
 namespace agreed {
 namespace {
@@ -129,16 +128,6 @@ constexpr const char* kOneOutcome =
     "JOIN file_outcomes o ON o.file = f.id WHERE (?1 = 0 OR f.id < ?1) AND o.outcome = ?3 ";
 
 }  // namespace
-
-struct JournalReader::Impl {
-  explicit Impl(const std::filesystem::path& folder)
-      : file(journal::database_file(folder)), database(journal::open_reader(file)) {
-    journal::check_usable(*database, file);
-  }
-
-  std::filesystem::path file;
-  std::unique_ptr<SQLite::Database> database;
-};
 
 JournalReader::JournalReader(const std::filesystem::path& folder) {
   journal::translating(journal::database_file(folder), [&] { impl_ = std::make_unique<Impl>(folder); });

@@ -3,11 +3,10 @@
 #include <algorithm>
 #include <array>
 
-#include <fcntl.h>
 #include <openssl/rand.h>
-#include <unistd.h>
 
 #include "daemon/journal/connection.hpp"
+#include "daemon/journal/durable.hpp"
 #include "daemon/journal/schema_1.hpp"
 
 namespace agreed::journal {
@@ -17,11 +16,6 @@ namespace fs = std::filesystem;
 
 // "agrd": tells our files from other SQLite databases.
 constexpr int kApplicationId = 0x61677264;
-
-fs::path with_suffix(fs::path file, const char* suffix) {
-  file += suffix;
-  return file;
-}
 
 /// A random (version 4) UUID as a URN, RFC 4122.
 std::string new_source() {
@@ -38,18 +32,6 @@ std::string new_source() {
     text.push_back(kDigits[b[i] & 15U]);
   }
   return text;
-}
-
-/// Makes what was written to `path` (a file or a folder) last through a power cut.
-void sync(const fs::path& path) {
-  const int descriptor = ::open(path.c_str(), O_RDONLY | O_CLOEXEC);
-  const bool done = descriptor >= 0 && ::fsync(descriptor) == 0;
-  if (descriptor >= 0) ::close(descriptor);
-  if (!done) throw JournalError("Cannot write " + path.string() + " to the disk", true);
-}
-
-void remove_unfinished(const fs::path& file) {
-  for (const char* suffix : {"", "-journal", "-wal", "-shm"}) fs::remove(with_suffix(file, suffix));
 }
 
 void write_new(const fs::path& file, Instant now) {
@@ -69,22 +51,10 @@ int pragma(SQLite::Database& database, const char* name) {
   return database.execAndGet(std::string("PRAGMA ") + name).getInt();
 }
 
-/// The first free name journal.before-schema-N.sqlite, journal.before-schema-N.1.sqlite, ...
-fs::path free_backup_name(const fs::path& file, int schema) {
-  const std::string stem = "journal.before-schema-" + std::to_string(schema);
-  fs::path name = file.parent_path() / (stem + ".sqlite");
-  for (int i = 1; fs::exists(name); ++i)
-    name = file.parent_path() / (stem + "." + std::to_string(i) + ".sqlite");
-  return name;
-}
-
 void copy_before(SQLite::Database& database, const fs::path& file, int schema) {
-  const fs::path copy = free_backup_name(file, schema);
-  SQLite::Statement vacuum(database, "VACUUM INTO ?");
-  vacuum.bind(1, copy.string());
-  vacuum.exec();
-  sync(copy);
-  sync(file.parent_path());
+  const std::string stem = "journal.before-schema-" + std::to_string(schema + 1);
+  copy_database(database, free_name(file.parent_path() / stem, ".sqlite"));
+  make_lasting(file.parent_path());
 }
 
 void apply(SQLite::Database& database, const Migration& step) {
@@ -117,7 +87,14 @@ void create_if_missing(const fs::path& file, Instant now) {
     write_new(unfinished, now);
   });
   fs::rename(unfinished, file);
-  sync(file.parent_path());
+  make_lasting(file.parent_path());
+}
+
+void copy_database(SQLite::Database& database, const fs::path& copy) {
+  SQLite::Statement vacuum(database, "VACUUM INTO ?");
+  vacuum.bind(1, copy.string());
+  vacuum.exec();
+  make_lasting(copy);
 }
 
 void check_usable(SQLite::Database& database, const fs::path& file, int schema) {

@@ -24,12 +24,15 @@ struct Migration {
 /// that is gone while its write-ahead log is still there.
 void create_if_missing(const std::filesystem::path& file, Instant now);
 
+/// A consistent, lasting copy at `copy`, which must not exist.
+void copy_database(SQLite::Database& database, const std::filesystem::path& copy);
+
 /// Throws JournalError unless the file is a journal of schema `schema` or older, with its newest batch
 /// readable. Cheap whatever the size.
 void check_usable(SQLite::Database& database, const std::filesystem::path& file, int schema = kSchema);
 
 /// Brings an older schema forward, one transaction a step, after copying the database to
-/// journal.before-schema-N.sqlite beside it.
+/// journal.before-schema-M.sqlite beside it, M the first new schema.
 void migrate(SQLite::Database& database, const std::filesystem::path& file,
              std::span<const Migration> migrations, int schema = kSchema);
 

@@ -184,3 +184,66 @@ TEST_CASE("a reader sees no half batch and does not hold up the writer") {
   journal.commit();
   CHECK(reader.next_message("a").has_value());
 }
+
+TEST_CASE("stored readings come in pages by key, with voided, corrected and censored ones") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  JournalReader reader(folder.path());
+  in_batch(journal, 10, [&] {
+    const auto file = journal.add_file(file_of("a"));
+    journal.add_reading(file, split("S-2", 5, 1));
+    JournalReading odd = split("S-1", 7, 0.05);
+    odd.censored = -1;
+    odd.line = 4;
+    odd.by = "J. Miller";
+    odd.note = "cup 2";
+    odd.clock_ambiguous = true;
+    journal.add_reading(file, odd);
+    journal.add_reading(file, split("S-1", 3, 2));
+    journal.add_void(file, split("S-2", 5, 0));
+    journal.add_reading(file, check("S-1", 3, 9));
+  });
+  in_batch(journal, 20, [&] { journal.add_reading(1, split("S-2", 5, 1.5)); });
+
+  ReadingQuery query{"line1", "protein", StoredKind::split, "", std::nullopt, std::nullopt, 3, std::nullopt};
+  const auto first = reader.readings(query);
+  REQUIRE(first.size() == 3);
+  CHECK(first[0].value == 2);
+  CHECK(first[1].censored == -1);
+  CHECK(first[1].line == 4);
+  CHECK(first[1].by == "J. Miller");
+  CHECK(first[1].note == "cup 2");
+  CHECK(first[1].clock_ambiguous);
+  CHECK(first[2].voided);
+  CHECK(first[2].received_at == at(10));
+  query.after = first.back();
+  const auto second = reader.readings(query);
+  REQUIRE(second.size() == 1);
+  CHECK(second[0].value == 1.5);
+  CHECK(second[0].revision == 1);
+  CHECK_FALSE(second[0].voided);
+  CHECK(second[0].received_at == at(20));
+
+  query.after.reset();
+  query.item = "S-1";
+  CHECK(reader.readings(query).size() == 2);
+  query.from = at(3);
+  query.to = at(7);
+  CHECK(reader.readings(query).size() == 1);
+  query.analyzer = "line9";
+  CHECK(reader.readings(query).empty());
+
+  std::vector<double> forward;
+  reader.each_split("line1", "protein",
+                    [&](std::string_view, Instant, std::int32_t, double value) { forward.push_back(value); });
+  CHECK(forward == std::vector{2.0, 1.5});
+}
+
+TEST_CASE("the newest configuration is known by its hash") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  CHECK(journal.last_configuration_sha256().empty());
+  in_batch(journal, 1, [&] { journal.add_configuration("a", "first", at(1)); });
+  in_batch(journal, 2, [&] { journal.add_configuration("b", "second", at(0)); });
+  CHECK(journal.last_configuration_sha256() == "second");
+}

@@ -1,0 +1,21 @@
+#pragma once
+// A read-only connection to a journal that may be used. Private to daemon/journal.
+#include <memory>
+
+#include "daemon/journal/connection.hpp"
+#include "daemon/journal/journal.hpp"
+#include "daemon/journal/schema.hpp"
+
+namespace agreed {
+
+struct JournalReader::Impl {
+  explicit Impl(const std::filesystem::path& folder)
+      : file(journal::database_file(folder)), database(journal::open_reader(file)) {
+    journal::check_usable(*database, file);
+  }
+
+  std::filesystem::path file;
+  std::unique_ptr<SQLite::Database> database;
+};
+
+}  // namespace agreed
