@@ -168,9 +168,12 @@ AlertWords outlier_words(const ComparisonAlert& pair) {
   if (p && *p > 0) words.found += " So far off by chance: " + rarity_words(*p) + ".";
   words.found += " It is kept and shown, but set aside from the fit.";
   const auto samples = list_in(pair.alert.details, "samples");
-  if (several && !samples.empty()) words.found += " All of them: " + list_words(samples) + ".";
+  if (several && !samples.empty()) words.found += " So far: " + list_words(samples) + ".";
   words.cause = "the sample (mix-up, poor split, preparation) or one wild result; one pair cannot tell.";
-  words.doubt = "the results of " + (sample.empty() ? std::string("that sample") : "sample " + sample) +
+  words.doubt = "the results of " +
+                (several          ? std::string("these samples")
+                 : sample.empty() ? std::string("that sample")
+                                  : "sample " + sample) +
                 " on both analyzers.";
   words.steps = {"Measure what is left of the sample again on both analyzers.",
                  "Check that both results belong to the same sample and how it was split."};

@@ -37,7 +37,7 @@ AlertWords rejected_words(const Alert& alert, const Settings& settings) {
                       reason_in(alert));
   if (rows) words.found += " Not taken: " + counted(*rows, "row", "rows") + ".";
   const auto files = list_in(alert.details, "files");
-  if (several && !files.empty()) words.found += " All of them: " + list_words(files) + ".";
+  if (several && !files.empty()) words.found += " So far: " + list_words(files) + ".";
   words.doubt =
       "nothing that was taken; results in the rejected rows are missing from charts and comparisons.";
   words.steps = {

@@ -336,3 +336,21 @@ TEST_CASE("a message that cannot be signed is a failed try in words, and no exce
   CHECK(tries[0].status == 0);
   CHECK(tries[0].error.find("could not be sent") != std::string::npos);
 }
+
+TEST_CASE("stop is prompt though a try is never confirmed as stored") {
+  Outbox outbox;
+  outbox.add("shift", 1);
+  Receiver receiver({answer(200)});
+  std::promise<void> asked, never;
+  WebhookSender sender(
+      {endpoint("shift", receiver.url())}, [&](const std::string& route) { return outbox.next(route); },
+      [&](const DeliveryTry&) {
+        asked.set_value();
+        return never.get_future();
+      },
+      quick());
+  asked.get_future().wait();
+  const auto start = std::chrono::steady_clock::now();
+  sender.stop();
+  CHECK(std::chrono::steady_clock::now() - start < 1s);
+}
