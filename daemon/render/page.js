@@ -8,6 +8,7 @@
   let tag = null, answeredAt = performance.now(), changedAt = answeredAt, trouble = "", timer = 0, asking = false;
 
   const shownAt = () => document.getElementById("main").dataset.at;
+  const shownTime = () => shownAt().slice(0, 16).replace("T", " ") + " UTC";
   const textOf = (selector) => Array.from(document.querySelectorAll(selector), (e) => e.textContent).join(". ");
 
   function showStale() {
@@ -15,9 +16,9 @@
     let words = "";
     if (now - answeredAt > silentAfter)
       words = "Not current: no proper answer from the service for " + Math.round((now - answeredAt) / 1000) +
-        " s" + (trouble ? " (" + trouble + ")" : "") + ". What is shown is as of " + shownAt() + ".";
+        " s" + (trouble ? " (" + trouble + ")" : "") + ". What is shown is as of " + shownTime() + ".";
     else if (now - changedAt > unchangedAfter)
-      words = "Not current: the service answers but has not renewed its figures since " + shownAt() + ".";
+      words = "Not current: the service answers but has not renewed its figures since " + shownTime() + ".";
     const banner = document.getElementById("stale");
     banner.hidden = words === "";
     if (banner.textContent !== words) banner.textContent = words;

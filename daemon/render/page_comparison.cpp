@@ -52,7 +52,7 @@ std::string range_words(const ComparisonScene& scene) {
 }
 
 std::string paragraph(const std::string& words) {
-  return words.empty() ? words : "<p>" + escaped(words) + "</p>";
+  return words.empty() ? words : "<p>" + flowing_html(words) + "</p>";
 }
 
 }  // namespace

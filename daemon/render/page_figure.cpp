@@ -14,7 +14,7 @@ std::string legend_html(const std::vector<LegendEntry>& legend) {
   if (legend.empty()) return {};
   std::string out = "<ul class=\"legend\">";
   for (const LegendEntry& entry : legend)
-    out += "<li>" + entry.sample_html + " " + escaped(entry.words) + "</li>";
+    out += "<li>" + entry.sample_html + " <span>" + flowing_html(entry.words) + "</span>" + "</li>";
   return out + "</ul>";
 }
 
@@ -57,7 +57,7 @@ std::string figure_html(const Figure& figure, int level) {
   else
     out += "<div class=\"narrow\">" + figure.drawing + "</div><div class=\"wide\">" + figure.wide + "</div>";
   out += legend_html(figure.legend);
-  out += "<figcaption>" + escaped(figure.summary) + "</figcaption>";
+  out += "<figcaption>" + flowing_html(figure.summary) + "</figcaption>";
   return out + folded_table_html(figure.id + ".data", "Data of this figure", figure.table) + "</figure>";
 }
 

@@ -16,7 +16,7 @@ constexpr std::size_t kListedFrom = 2;
 
 std::string bias_cell(const ComparisonScene& scene) {
   const auto at = foremost_level(scene.view);
-  if (!at) return "none yet";
+  if (!at) return "no bias yet";
   const LevelView& level = scene.view.levels[*at];
   const double share = std::abs(*level.bias) / *level.allowable;
   const std::string words = shown_signed(*level.bias, scene.style.decimals) + " of \u00b1" +
@@ -43,7 +43,9 @@ std::string list_html(const PageInput& input) {
     out += "<tr role=\"row\"><th role=\"rowheader\" scope=\"row\">" +
            link_html(comparison_path(scene.asked), scene.name()) + "</th>" + cell +
            answer_badge_html(answer_for(scene)) + "</td>" + cell + bias_cell(scene) + "</td>" + cell +
-           (scene.view.verdict_since ? time_html(*scene.view.verdict_since) : std::string("not yet")) +
+           (scene.view.verdict_since
+                ? "<span class=\"narrow-only\">since </span>" + time_html(*scene.view.verdict_since)
+                : std::string("no verdict yet")) +
            "</td></tr>";
   }
   return out + "</tbody></table>";

@@ -60,7 +60,7 @@ std::string paragraphs(const std::string& text) {
   std::string out;
   for (std::size_t at = 0; at < text.size();) {
     const std::size_t end = std::min(text.find('\n', at), text.size());
-    if (end > at) out += "<p>" + escaped(std::string_view(text).substr(at, end - at)) + "</p>";
+    if (end > at) out += "<p>" + flowing_html(std::string_view(text).substr(at, end - at)) + "</p>";
     at = end + 1;
   }
   return out;
@@ -96,7 +96,7 @@ std::string state_html(const Alert& alert) {
 std::string told_since(const Alert& alert) {
   std::string out = "since " + time_html(alert.opened_at);
   if (alert.started_at || alert.started_between)
-    out += "; begun " + escaped(beginning_words(alert.started_at, alert.started_between));
+    out += "; begun " + flowing_html(beginning_words(alert.started_at, alert.started_between));
   return out;
 }
 
@@ -112,9 +112,9 @@ std::string answer_html(const Answer& answer, bool foremost) {
          "</span></p><div>";
   if (!answer.since.empty() || !answer.verdict.empty())
     out += "<p class=\"since\">" + escaped(answer.verdict) +
-           (answer.since.empty() ? "" : " " + escaped(answer.since)) + "</p>";
-  if (!answer.sentence.empty()) out += "<p class=\"sentence\">" + escaped(answer.sentence) + "</p>";
-  for (const std::string& more : answer.more) out += "<p class=\"more\">" + escaped(more) + "</p>";
+           (answer.since.empty() ? "" : " " + flowing_html(answer.since)) + "</p>";
+  if (!answer.sentence.empty()) out += "<p class=\"sentence\">" + flowing_html(answer.sentence) + "</p>";
+  for (const std::string& more : answer.more) out += "<p class=\"more\">" + flowing_html(more) + "</p>";
   return out + "</div></div>";
 }
 

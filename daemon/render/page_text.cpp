@@ -11,6 +11,7 @@ namespace agreed {
 namespace {
 
 constexpr std::string_view kMinus = "\u2212";
+constexpr std::string_view kTied = "\u00a0";  // number and unit stay on one line
 constexpr int kMostDecimals = 12;
 
 bool plain(char c) {
@@ -28,6 +29,17 @@ std::string true_minus(std::string number) {
   if (number.empty() || number.front() != '-') return number;
   const bool zero = number.find_first_of("123456789") == std::string::npos;
   return (zero ? std::string() : std::string(kMinus)) + number.substr(1);
+}
+
+/// "2026-02-03 06:00 UTC" at the beginning of `text`, as shown_time writes it.
+bool begins_with_time(std::string_view text) {
+  constexpr std::string_view pattern = "0000-00-00 00:00 UTC";
+  if (text.size() < pattern.size()) return false;
+  for (std::size_t i = 0; i < pattern.size(); ++i) {
+    const bool fits = pattern[i] == '0' ? text[i] >= '0' && text[i] <= '9' : text[i] == pattern[i];
+    if (!fits) return false;
+  }
+  return true;
 }
 
 }  // namespace
@@ -57,6 +69,20 @@ std::string escaped(std::string_view text) {
     }
   }
   return out;
+}
+
+std::string flowing_html(std::string_view text) {
+  constexpr std::size_t kTimeLength = 20;
+  std::string out;
+  std::size_t done = 0;
+  for (std::size_t at = 0; at < text.size(); ++at) {
+    if (!begins_with_time(text.substr(at))) continue;
+    out += escaped(text.substr(done, at - done)) + "<span class=\"whole\">" +
+           std::string(text.substr(at, kTimeLength)) + "</span>";
+    done = at + kTimeLength;
+    at = done - 1;
+  }
+  return out + escaped(text.substr(done));
 }
 
 std::string path_segment(std::string_view text) {
@@ -121,7 +147,7 @@ std::string shown_signed(double value, int decimals) {
 
 std::string with_unit(double value, const NumberStyle& style) {
   const std::string number = shown(value, style.decimals);
-  return style.unit.empty() ? number : number + " " + style.unit;
+  return style.unit.empty() ? number : number + std::string(kTied) + style.unit;
 }
 
 std::string shortest(double value) {
@@ -134,9 +160,9 @@ std::string shortest(double value) {
 std::string shown_share(double share) {
   if (!std::isfinite(share)) return "not known";
   const double percent = 100 * std::clamp(share, 0.0, 1.0);
-  if (percent >= 99.95) return share < 1 ? "more than 99.9 %" : "100 %";
-  if (percent < 0.05) return share > 0 ? "less than 0.1 %" : "0 %";
-  return fixed(percent, percent > 99 || percent < 1 ? 1 : 0) + " %";
+  if (percent >= 99.95) return share < 1 ? "more than 99.9\u00a0%" : "100\u00a0%";
+  if (percent < 0.05) return share > 0 ? "less than 0.1\u00a0%" : "0\u00a0%";
+  return fixed(percent, percent > 99 || percent < 1 ? 1 : 0) + std::string(kTied) + "%";
 }
 
 std::string counted(std::int64_t count, std::string_view one, std::string_view many) {

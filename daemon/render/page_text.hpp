@@ -12,6 +12,8 @@ namespace agreed {
 
 /// For element content and quoted attributes alike: & < > " ' become references, control characters a space.
 [[nodiscard]] std::string escaped(std::string_view text);
+/// Escaped, with the times in it kept from being broken over two lines.
+[[nodiscard]] std::string flowing_html(std::string_view text);
 /// One segment of a path: all but letters, digits, - _ . ~ percent-encoded.
 [[nodiscard]] std::string path_segment(std::string_view text);
 /// Letters, digits and - only, so that it may stand in an id attribute.

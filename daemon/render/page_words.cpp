@@ -131,11 +131,11 @@ std::string named(const ComparisonScene& scene, std::string sentence) {
 }
 
 std::string several_sentence(const std::vector<std::string>& names, std::size_t of, std::string_view what) {
-  constexpr std::size_t kNamed = 4;
+  constexpr std::size_t kNamed = 3;
   std::string out =
       std::to_string(names.size()) + " of " + std::to_string(of) + " comparisons " + std::string(what) + ": ";
   for (std::size_t i = 0; i < names.size() && i < kNamed; ++i)
-    out += (i ? ", " : "") + shortened(names[i], 40);
+    out += (i ? ", " : "") + shortened(names[i], 60);
   if (names.size() > kNamed) out += " and " + std::to_string(names.size() - kNamed) + " more";
   return out + ".";
 }
@@ -268,9 +268,12 @@ Answer answer_of_several(const Snapshot& snapshot) {
               yes.sentence,      {}};
     answer.more.push_back("Agreement is shown in all " + std::to_string(count) + " comparisons.");
   } else {
-    answer = {AnswerKind::not_yet,    yes.names.empty() ? "Not yet" : "Not all",
-              "not shown everywhere", {},
-              waiting.sentence,       {}};
+    answer = {AnswerKind::not_yet,
+              yes.names.empty() ? "Not yet" : "Not all",
+              yes.names.empty() ? "not shown yet" : "not shown everywhere",
+              {},
+              waiting.sentence,
+              {}};
     answer.more.push_back(several_sentence(waiting.names, count, "do not show agreement"));
   }
   if (changing) answer.more.push_back("In at least one comparison a change is under way.");

@@ -76,7 +76,7 @@ std::string draw(const ComparisonScene& scene, const LevelView& level, const std
                  const Figure& figure, const std::string& id, FigureSize size) {
   ExtentOf times;
   for (const BiasRow& row : rows) times.add(row.at);
-  Plot plot(id, size, times.padded(0.02), bias_extent(rows, level));
+  Plot plot(id, size, times.padded(0.02, kLeastTime), bias_extent(rows, level));
   plot.value_axis_y("bias " + scene.y + " \u2212 " + scene.x + ", " + scene.style.unit);
   plot.time_axis_x();
   const int decimals = scene.style.decimals;

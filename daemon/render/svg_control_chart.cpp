@@ -10,7 +10,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kSmall = 90;
+constexpr std::size_t kSmall = 60;
 
 Shape signal_shape(ChartSignal signal) {
   switch (signal) {
@@ -62,7 +62,7 @@ Canvas canvas_of(const ChartView& view, std::size_t most) {
   for (const ChartPoint& point : canvas.points) time.add(on_axis(point.measured_at));
   for (const StretchMark& mark : view.marks)
     if (mark.at >= canvas.points.front().measured_at) time.add(on_axis(mark.at));
-  canvas.time = time.padded(0.02);
+  canvas.time = time.padded(0.02, kLeastTime);
   return canvas;
 }
 
@@ -146,6 +146,42 @@ void add_marks(Plot& plot, const ChartView& view, bool flags) {
     plot.upright(on_axis(view.marks[i].at), "event", flags ? std::to_string(i + 1) : std::string());
 }
 
+/// Means of the readings before and from the estimated start of a change of level, in the present stretch.
+struct TwoLevels {
+  PlotPoint before_from, before_to, after_from, after_to;
+};
+
+std::optional<TwoLevels> two_levels(const ChartView& view, const Canvas& canvas) {
+  if (view.state != ChartState::unstable || view.pattern == "scatter" || !view.change.started_at) return {};
+  struct Side {
+    double sum = 0, from = 0, to = 0;
+    int count = 0;
+    void add(const ChartPoint& point) {
+      to = on_axis(point.measured_at);
+      if (count++ == 0) from = to;
+      sum += point.value;
+    }
+  } before, after;
+  for (const ChartPoint& point : canvas.points) {
+    if (point.starts_stretch) before = after = Side{};
+    if (!point.set_aside) (point.measured_at < *view.change.started_at ? before : after).add(point);
+  }
+  if (before.count == 0 || after.count == 0) return {};
+  const double low = before.sum / before.count, high = after.sum / after.count;
+  return TwoLevels{{before.from, low}, {before.to, low}, {after.from, high}, {after.to, high}};
+}
+
+void add_centre(Plot& plot, const ChartView& view, const Canvas& canvas, int decimals) {
+  if (const auto levels = two_levels(view, canvas)) {
+    plot.line({levels->before_from, levels->before_to}, "centre");
+    plot.line({levels->after_from, levels->after_to}, "centre");
+    plot.across(levels->before_from.y, "none", shown(levels->before_from.y, decimals));
+    plot.across(levels->after_from.y, "none", shown(levels->after_from.y, decimals));
+  } else if (view.baseline.center) {
+    plot.across(*view.baseline.center, "centre", shown(*view.baseline.center, decimals));
+  }
+}
+
 std::string draw_readings(const ChartScene& scene, const Canvas& canvas, const Figure& figure,
                           const std::string& id, FigureSize size) {
   const ChartView& view = scene.view;
@@ -159,8 +195,7 @@ std::string draw_readings(const ChartScene& scene, const Canvas& canvas, const F
     plot.block(on_axis(view.change.started_between->first), on_axis(view.change.started_between->last),
                "doubt");
   if (view.reference) plot.across(view.reference->value, "reference");
-  if (view.baseline.center)
-    plot.across(*view.baseline.center, "centre", shown(*view.baseline.center, decimals));
+  add_centre(plot, view, canvas, decimals);
   if (view.upper_limit) plot.across(*view.upper_limit, "none", shown(*view.upper_limit, decimals));
   if (view.lower_limit) plot.across(*view.lower_limit, "none", shown(*view.lower_limit, decimals));
   add_marks(plot, view, true);
@@ -199,9 +234,10 @@ std::string draw(const ChartScene& scene, const Canvas& canvas, const Figure& fi
 
 void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
   const ChartView& view = scene.view;
-  figure.legend = {{legend_dot("dots"), "reading"},
-                   {legend_line("centre"), "centre"},
-                   {legend_area("expected"), "expected of a reading from those before it"}};
+  figure.legend = {
+      {legend_dot("dots"), "reading"},
+      {legend_line("centre"), two_levels(view, canvas) ? "mean before and after the change" : "centre"},
+      {legend_area("expected"), "expected of a reading from those before it"}};
   std::set<ChartSignal> signals;
   bool aside = false;
   for (const ChartPoint& point : canvas.points) {

@@ -19,6 +19,9 @@ namespace agreed {
 /// Readings of a check standard with centre line, limits, signals, marks and moving ranges.
 [[nodiscard]] Figure control_chart_figure(const ChartScene& scene, FigureDetail detail);
 
+/// The shortest time axis, in milliseconds.
+inline constexpr double kLeastTime = 6 * 3600e3;
+
 /// Rows in the table of a small figure.
 inline constexpr std::size_t kSmallTable = 20;
 

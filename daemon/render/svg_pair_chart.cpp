@@ -21,7 +21,7 @@ std::string draw(const ComparisonScene& scene, const Figure& figure, const std::
   if (times.empty()) return {};
   residuals.add(-3);
   residuals.add(3);
-  Plot plot(id, size, times.padded(0.02), residuals.padded(0.08), 18);
+  Plot plot(id, size, times.padded(0.02, kLeastTime), residuals.padded(0.08), 18);
   plot.value_axis_y("residual from the line, in its sd");
   plot.time_axis_x();
   const PairChartView& chart = scene.view.pair_chart;

@@ -84,10 +84,14 @@ void ExtentOf::add(double value) {
   any_ = true;
 }
 
-Extent ExtentOf::padded(double share) const {
+Extent ExtentOf::padded(double share, double least_width) const {
   const double width = high_ - low_;
   // Values that differ by less than their own rounding cannot be told apart in a drawing.
   const double least = std::max(std::max(std::abs(low_), std::abs(high_)) * 1e-9, 1e-12);
+  if (width < least_width) {
+    const double middle = (low_ + high_) / 2;
+    return {middle - least_width / 2, middle + least_width / 2};
+  }
   if (width > least) return {low_ - share * width, high_ + share * width};
   const double around = std::max(std::abs(low_) * 0.01, least * 10);
   return {low_ - around, high_ + around};

@@ -11,7 +11,7 @@ struct FigureSize {
   double width = 360, height = 210;  ///< in units of the drawing; text is about 13 of them high
 };
 
-/// low < high; see around() for one that holds given values.
+/// low < high.
 struct Extent {
   double low = 0, high = 1;
 };
@@ -21,7 +21,8 @@ class ExtentOf {
  public:
   void add(double value);  ///< values that are not finite are ignored
   [[nodiscard]] bool empty() const { return !any_; }
-  [[nodiscard]] Extent padded(double share) const;
+  /// At least `least` wide; without it, of one value some hundredths of it.
+  [[nodiscard]] Extent padded(double share, double least = 0) const;
 
  private:
   bool any_ = false;

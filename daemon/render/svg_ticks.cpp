@@ -16,8 +16,8 @@ constexpr std::array<const char*, 12> kMonths = {"Jan", "Feb", "Mar", "Apr", "Ma
                                                  "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"};
 
 // Round steps below a month, in minutes.
-constexpr std::array<std::int64_t, 15> kSteps = {1,   2,   5,   10,   15,   30,   60,   120,
-                                                 180, 360, 720, 1440, 2880, 5760, 10080};
+constexpr std::array<std::int64_t, 16> kSteps = {1,   2,   5,   10,   15,   30,   60,    120,
+                                                 180, 360, 720, 1440, 2880, 5760, 10080, 20160};
 constexpr std::array<int, 7> kMonthSteps = {1, 2, 3, 6, 12, 24, 60};
 
 std::string month_name(month m) {
@@ -85,7 +85,7 @@ std::vector<Tick> time_ticks(double low, double high, int most) {
   for (const std::int64_t step_minutes : kSteps) {
     const std::int64_t step = step_minutes * 60'000;
     // Weeks begin on Mondays: 1970-01-05 was one.
-    const std::int64_t origin = step_minutes == kSteps.back() ? 4LL * 86'400'000 : 0;
+    const std::int64_t origin = step_minutes % 10080 == 0 ? 4LL * 86'400'000 : 0;
     const auto count = [&](Instant at) {
       return static_cast<std::int64_t>(std::floor(
           static_cast<double>(at.time_since_epoch().count() - origin) / static_cast<double>(step)));

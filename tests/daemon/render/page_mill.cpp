@@ -390,10 +390,14 @@ Story hostile(const std::string& text) {
   Story out = drifting();
   auto settings = std::make_shared<Settings>(*out.snapshot.settings);
   settings->site = text;
-  for (Analyzer& analyzer : settings->analyzers) analyzer = {text, text};
-  for (Standard& standard : settings->standards) standard = {text, text};
+  // Ids stay different from each other, as the configuration sees to.
+  for (Analyzer& analyzer : settings->analyzers) analyzer = {text + analyzer.id, text};
+  for (Standard& standard : settings->standards) standard = {text + standard.id, text};
   for (Measurand& measurand : settings->measurands) measurand.title = measurand.unit = text;
-  for (ComparisonSettings& asked : settings->comparisons) asked.title = asked.id = text;
+  for (ComparisonSettings& asked : settings->comparisons) {
+    asked.title = text;
+    asked.id = text + asked.id;
+  }
   out.snapshot.settings = settings;
   for (auto& pointer : out.snapshot.comparisons) {
     auto view = std::make_shared<ComparisonView>(*pointer);
@@ -416,6 +420,7 @@ Story hostile(const std::string& text) {
     alert.acknowledged = Acknowledgement{text, out.snapshot.at, text};
   }
   Alert resolved = out.current[0];
+  resolved.id = 3;
   resolved.state = AlertState::resolved;
   resolved.resolved_reason = text;
   out.resolved = {resolved};
