@@ -177,12 +177,12 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
                                 Instant now) {
   JournalHistory history(*journal_, *settings_);
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
-  for (const auto* findings : {&outcome.findings, &intake_findings})
-    for (const Finding& finding : *findings) {
-      journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
-                            finding_json(finding));
-      tell(book_->apply(finding, now), now);
-    }
+  const auto tell_of = [&](const Finding& finding) {
+    journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject), finding_json(finding));
+    tell(book_->apply(finding, now), now);
+  };
+  std::for_each(outcome.findings.begin(), outcome.findings.end(), tell_of);
+  std::for_each(intake_findings.begin(), intake_findings.end(), tell_of);
   reconcile(outcome, "late_data", now);
   return outcome;
 }
