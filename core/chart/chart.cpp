@@ -162,7 +162,7 @@ void Chart::State::test(PointRecord& record, std::vector<Finding>& findings) {
 }
 
 // One more reading while the alert is open.
-void Chart::State::follow_up(PointRecord& record, std::vector<Finding>& findings) {
+void Chart::State::follow_up(const PointRecord& record, std::vector<Finding>& findings) {
   ++alarm->readings;
   const AftermathLimits limits{chart().clear_after, level.h, precision.h, chart().level_run_length,
                                chart().precision_run_length};
@@ -189,8 +189,11 @@ void Chart::State::follow_up(PointRecord& record, std::vector<Finding>& findings
 void Chart::State::close(const Aftermath& aftermath, Instant at, std::vector<Finding>& findings) {
   std::int64_t taken = 0;
   if (aftermath.outcome == Outcome::ends_setting_aside) {
-    for (std::size_t j = stretch.first_split(alarm->start.sums.n) + 1; j <= aftermath.position; ++j)
-      if (PointRecord* shown = point(stretch.prefix(j).point)) shown->set_aside = true;
+    // Numbers of points run on, also through readings no longer held one by one.
+    const std::int64_t last = stretch.prefix(aftermath.position).point;
+    const std::int64_t oldest = points_seen - static_cast<std::int64_t>(points.size());
+    for (std::int64_t number = std::max(alarm->start.point + 1, oldest); number <= last; ++number)
+      point(number)->set_aside = true;
     taken = stretch.set_aside(alarm->start, aftermath.position);
     set_aside += taken;
   }
@@ -208,39 +211,45 @@ Chart& Chart::operator=(const Chart& other) {
   return *this;
 }
 
+void Chart::State::follow_lot(Instant at, std::vector<Finding>& findings) {
+  const std::size_t now = lot_at(at);
+  if (lot && *lot != now) {
+    const Lot& next = chart().lots[now];
+    begin_stretch(next.from.value_or(at), "lot " + next.id, findings);
+  }
+  lot = now;
+}
+
+// Appends the reading to the stretch and remembers its point, with what was known before it.
+PointRecord& Chart::State::take(Instant at, double value) {
+  PointRecord record;
+  record.at = at;
+  record.value = value;
+  record.starts_stretch = stretch_begins;
+  stretch_begins = false;
+  const Prefix known = learned(), previous = stretch.last();
+  record.learned = known.sums.n;
+  if (known.sums.n >= kLeastForLimits) {
+    record.mean = mean_of(known.sums);
+    record.sd = sd_of(known.sums);
+  }
+  stretch.append(at, value, points_seen);
+  if (previous.sums.n > 0) record.moving_range = std::abs(stretch.last().deviation - previous.deviation);
+  record.count = stretch.count();
+  remember(record);
+  return points[points.size() - 1];
+}
+
 void Chart::add(const CheckReading& reading, std::vector<Finding>& findings) {
   State& s = *state_;
   refuse_earlier(reading.measured_at, s.newest);
   if (!std::isfinite(reading.value)) throw std::invalid_argument("value: expected a finite reading");
   s.newest = reading.measured_at;
-  const std::size_t lot = s.lot_at(reading.measured_at);
-  if (s.lot && *s.lot != lot) {
-    const Lot& next = s.chart().lots[lot];
-    s.begin_stretch(next.from.value_or(reading.measured_at), "lot " + next.id, findings);
-  }
-  s.lot = lot;
-
-  PointRecord record;
-  record.at = reading.measured_at;
-  record.value = reading.value;
-  record.starts_stretch = s.stretch_begins;
-  s.stretch_begins = false;
-  const Prefix known = s.learned();
-  record.learned = known.sums.n;
-  if (known.sums.n >= kLeastForLimits) {
-    record.mean = s.mean_of(known.sums);
-    record.sd = s.sd_of(known.sums);
-  }
-  const bool first = s.stretch.count() == 0;
-  const double previous = s.stretch.last().deviation;
-  s.stretch.append(reading.measured_at, reading.value, s.points_seen);
-  if (!first) record.moving_range = std::abs(s.stretch.last().deviation - previous);
-  record.count = s.stretch.count();
+  s.follow_lot(reading.measured_at, findings);
+  PointRecord& point = s.take(reading.measured_at, reading.value);
   const bool open = s.alarm.has_value();
-  s.remember(record);
-  PointRecord& kept = s.points[s.points.size() - 1];
-  s.test(kept, findings);
-  if (open) s.follow_up(kept, findings);
+  s.test(point, findings);
+  if (open) s.follow_up(point, findings);
   s.remember_repeatability(reading.measured_at);
 }
 

@@ -98,8 +98,10 @@ struct Chart::State {
   [[nodiscard]] Subject subject() const;
   [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
 
+  void follow_lot(Instant at, std::vector<Finding>& findings);
+  PointRecord& take(Instant at, double value);
   void test(PointRecord& point, std::vector<Finding>& findings);
-  void follow_up(PointRecord& point, std::vector<Finding>& findings);
+  void follow_up(const PointRecord& point, std::vector<Finding>& findings);
   void open(EndingRule rule, std::size_t position, const char* pattern, std::vector<Finding>& findings);
   void close(const Aftermath& aftermath, Instant at, std::vector<Finding>& findings);
   void begin_stretch(Instant at, const std::string& what, std::vector<Finding>& findings);

@@ -13,7 +13,7 @@ struct Entry {
 };
 
 // Mean readings (pairs) between false signals of normal readings, simulated with 400,000 (level), 60,000
-// (precision) and 150,000 (pairs) streams; tests/core/chart/run_length_slow_test.cpp repeats entries.
+// (precision) and 150,000 (pairs) streams; tests/core/chart/chart_slow_test.cpp repeats entries.
 constexpr Entry kLevel[] = {{3.3, 258},  {3.5, 483},   {3.7, 908},   {3.86, 1613}, {4.0, 2663},
                             {4.2, 5708}, {4.4, 12840}, {4.6, 30600}, {4.8, 75100}};
 constexpr Entry kPrecision[] = {{3.0, 479},   {3.3, 1203},  {3.5, 2363},  {3.7, 4902},

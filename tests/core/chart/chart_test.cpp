@@ -204,6 +204,34 @@ TEST_CASE("a single reading far off closes after three more and alone is set asi
   CHECK(*s.fed.chart.view().baseline.sd < 1.3);
 }
 
+TEST_CASE("an alert whose start is older than the readings held still ends, is set aside and counts right") {
+  for (const double size : {2.0, 4.0, 1e9}) {
+    const Settings settings = mill(1800, 20);
+    Fed fed(settings);
+    Readings next(36);
+    feed(fed, next, 60);
+    REQUIRE(fed.findings.empty());
+    feed(fed, next, 50, 10 + size);
+    CAPTURE(size);
+    REQUIRE(fed.unstable());
+    feed(fed, next, 19);
+    CHECK_FALSE(fed.unstable());
+    const ChartView view = fed.chart.view();
+    CHECK(view.baseline.readings + view.baseline.set_aside == 129);
+    CHECK(view.baseline.set_aside >= 48);
+    CHECK(view.baseline.set_aside <= 52);
+    CHECK(*view.baseline.center == doctest::Approx(10).epsilon(0.05));
+    CHECK(*view.baseline.sd == doctest::Approx(1).epsilon(0.3));
+    CHECK(*view.baseline.sigma == doctest::Approx(1).epsilon(0.3));
+    int marked = 0;
+    for (const ChartPoint& point : view.points) marked += point.set_aside;
+    CHECK(marked == view.baseline.set_aside);
+    feed(fed, next, 40);
+    CHECK(std::isfinite(*fed.chart.view().change.score));
+    CHECK(std::isfinite(*fed.chart.view().precision.score));
+  }
+}
+
 TEST_CASE("scores after a set-aside leave it out") {
   Scenario s(25);
   std::vector<double> counted;
