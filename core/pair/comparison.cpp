@@ -12,8 +12,7 @@ namespace agreed {
 namespace {
 constexpr std::size_t kRecentPairs = 500;
 constexpr std::size_t kBiasHistory = 500;
-constexpr double kCriticalFactor = 10;  // run length of `critical` over that of `warning`
-constexpr double kPlainTail = 0.05;     // each of the two one-sided tests
+constexpr double kPlainTail = 0.05;  // each of the two one-sided tests
 
 double resolution_of(const Measurand& measurand) {
   return measurand.decimals ? std::pow(10.0, -*measurand.decimals) : 0.0;
@@ -21,7 +20,7 @@ double resolution_of(const Measurand& measurand) {
 
 DriftLimits limits_of(const ComparisonSettings& config) {
   return {limit_for(Score::pairs, config.warning_run_length).h,
-          limit_for(Score::pairs, kCriticalFactor * config.warning_run_length).h};
+          limit_for(Score::pairs, critical_factor * config.warning_run_length).h};
 }
 
 Interval around(Bias bias, double t) {

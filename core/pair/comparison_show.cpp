@@ -4,13 +4,12 @@
 #include "core/chart/run_length.hpp"
 #include "core/pair/comparison_state.hpp"
 #include "core/pair/difference.hpp"
+#include "core/pair/level_errors.hpp"
 #include "core/pair/scatter.hpp"
 
 namespace agreed {
 namespace {
 using State = Comparison::State;
-
-constexpr double kCriticalFactor = 10;
 
 const char* name_of(ErrorSource source) {
   switch (source) {
@@ -144,7 +143,7 @@ PairChartView show_pair_chart(const State& state, std::vector<std::string>& warn
   view.limit = limits.warning;
   view.critical_limit = limits.critical;
   view.in_control_run_length = config.warning_run_length;
-  view.extrapolated = limit_for(Score::pairs, kCriticalFactor * config.warning_run_length).extrapolated;
+  view.extrapolated = limit_for(Score::pairs, critical_factor * config.warning_run_length).extrapolated;
   view.severity = state.alarm.open();
   std::optional<double> evidence;
   if (state.ratio.known && view.pairs > 0) {
@@ -216,6 +215,8 @@ ComparisonView show(const State& state) {
   if (state.fit.exists()) {
     view.fit = show_fit(state);
     const Point shares = state.window.error_shares();
+    if (error_grows_with_level(state.window.points(), state.fit))
+      view.warnings.push_back("error_grows_with_level");
     view.scatter = describe_scatter(state.fit, state.ratio, shares);
     if (view.scatter) view.scatter->excess = state.scatter_excess;
     view.range = describe_range(state.fit, state.ratio, shares, state.measurand().decision_levels);

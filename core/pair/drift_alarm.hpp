@@ -4,7 +4,8 @@
 // Method: own. The score counts only if it holds at lambda low, lambda and lambda high: the smallest of the
 //   three is the score. Above the warning limit it opens, above the critical limit it is critical and the
 //   stretch restarts at the estimated start. A warning ends when 3 pairs have come and the score is below its
-//   limit less 0.9; a critical one when agreement is shown again; both at an intervention.
+//   limit less 0.9; a critical one when agreement is shown again (without decision levels: never); both at an
+//   intervention.
 // Cost: one scan of the splits a pair, three while the score is near or above the limit.
 #include <array>
 #include <optional>

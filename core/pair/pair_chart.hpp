@@ -12,7 +12,7 @@
 // Assumptions: errors of constant variance (unit weights), pairs independent.
 // Accuracy: equals the split fits done one by one to 1e-8; an older block loses 1/(1-r^2) of its digits.
 // Degenerate: fewer than 7 pairs, or no line of positive slope: nothing.
-// Cost: O(min(n, split_memory)), about 8 ns a split; state bounded: the newest `split_memory` pairs and one
+// Cost: O(min(n, split_memory)), about 10 ns a split; state bounded: the newest `split_memory` pairs and one
 // block.
 #include <cstddef>
 #include <optional>

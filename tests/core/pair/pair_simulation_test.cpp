@@ -1,6 +1,7 @@
 // Simulations with fixed seeds: what the intervals and the rules promise, within three Monte Carlo standard
 // errors.
 #include "core/base/distributions.hpp"
+#include "core/pair/drift_alarm.hpp"
 #include "core/pair/jackknife.hpp"
 #include "tests/core/pair/harrow_mill.hpp"
 
@@ -116,4 +117,42 @@ TEST_CASE("a step of one pair sd is told in about the promised number of pairs")
   MESSAGE("median delay " << delays[100]);
   CHECK(delays[100] >= 17);
   CHECK(delays[100] <= 27);
+}
+
+TEST_CASE("the pair chart keeps the run length of its limit") {
+  // 3-statistics 3.2, row "pairs": 795 pairs between false signals at h = 3.5.
+  const double limit = evidence_of_score(3.5);
+  constexpr int streams = 400;
+  std::mt19937_64 random(103);
+  const Plant plant;
+  double pairs = 0;
+  for (int i = 0; i < streams; ++i) {
+    PairChart chart(400, 0);
+    do {
+      chart.insert(plant(random), {});
+      pairs += 1;
+    } while (chart.evidence(1).value_or(0) <= limit);
+  }
+  MESSAGE("run length " << pairs / streams);
+  CHECK(std::abs(pairs / streams - 795) < 3 * 795 / std::sqrt(1.0 * streams));
+}
+
+TEST_CASE("a bias that is just allowable is called a lost agreement in few comparisons") {
+  // Stated for a bias of exactly A = 1 pair sd, window 200, two levels at the 10th and 90th percentile: 6 %
+  // of comparisons within 1,000 pairs; for 0.8 A: 0.5 %.
+  Settings settings = harrow_mill();
+  const double allowable = 0.02 * std::sqrt(2.0);
+  settings.measurands[0].decision_levels = {9.6, 14.4};
+  settings.measurands[0].allowable = AllowableDifference{allowable, std::nullopt};
+  constexpr int monitors = 150;
+  for (const auto& [part, stated] : {std::pair{1.0, 0.06}, std::pair{0.8, 0.005}}) {
+    int lost = 0;
+    for (std::uint64_t seed = 0; seed < monitors; ++seed) {
+      Mill mill(7000 + seed, settings);
+      mill.run(1000, part * allowable);
+      if (!mill.of(AlertKind::agreement_lost).empty()) ++lost;
+    }
+    MESSAGE("bias " << part << " A: lost in " << lost << " of " << monitors);
+    CHECK(lost <= monitors * stated + 3 * std::sqrt(monitors * stated));
+  }
 }
