@@ -20,7 +20,7 @@ ConfigResult failed(std::string message) {
 }
 
 /// A complete draft; whether it counts is for `problems` to say.
-Draft read_all(const Node& root, const fs::path& file, Problems& problems) {
+Draft read_all(const TreeNode& root, const fs::path& file, Problems& problems) {
   Draft draft;
   const Section top = Section::top(root, problems);
   const fs::path folder = file.parent_path();

@@ -12,17 +12,17 @@ struct Position {
 
 enum class NodeKind { empty, scalar, list, map };
 
-struct Node {
+struct TreeNode {
   NodeKind kind = NodeKind::empty;
   Position at;       ///< of the value
   std::string key;   ///< of a map's child
   Position key_at;   ///< likewise
   std::string text;  ///< of a scalar
-  std::vector<Node> children;
+  std::vector<TreeNode> children;
 
   /// The child of that key; null when there is none.
-  [[nodiscard]] const Node* find(const std::string& child_key) const {
-    for (const Node& child : children)
+  [[nodiscard]] const TreeNode* find(const std::string& child_key) const {
+    for (const TreeNode& child : children)
       if (child.key == child_key) return &child;
     return nullptr;
   }

@@ -39,6 +39,7 @@ inline constexpr double kShortRunLength = 1'000;
 template <class Item>
 [[nodiscard]] std::vector<std::string> ids_of(const std::vector<Item>& items) {
   std::vector<std::string> ids;
+  ids.reserve(items.size());
   for (const Item& item : items) ids.push_back(item.id);
   return ids;
 }

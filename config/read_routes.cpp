@@ -15,6 +15,7 @@ namespace fs = std::filesystem;
 
 constexpr int kMostSecrets = 2;  // new and old
 constexpr std::size_t kLargestSecretFile = 4'096;
+constexpr std::size_t kMostRead = 65'536;  // certificates may have long words before them
 
 /// Words between white space.
 int words_in(const std::string& text) {
@@ -34,7 +35,7 @@ int lines_in(const std::string& text) {
   return count;
 }
 
-/// The text of a file, or why it cannot be had.
+/// The beginning of a file, or why it cannot be had.
 struct FileText {
   std::string text;
   std::string trouble;
@@ -45,7 +46,7 @@ FileText text_of(const fs::path& file) {
   if (!fs::exists(file, error)) return {"", "there is no file " + file.string()};
   if (!fs::is_regular_file(file, error)) return {"", file.string() + " is not a file"};
   std::ifstream stream(file, std::ios::binary);
-  std::string text(kLargestSecretFile + 1, '\0');
+  std::string text(kMostRead, '\0');
   stream.read(text.data(), static_cast<std::streamsize>(text.size()));
   if (!stream.is_open() || stream.bad()) return {"", file.string() + " cannot be read"};
   text.resize(static_cast<std::size_t>(stream.gcount()));

@@ -111,7 +111,7 @@ std::set<std::string> watched(const Section& standard, const std::vector<LotOfAl
 }
 
 std::vector<std::string> analyzers_of(const Section& standard, const Settings& settings) {
-  const auto all = ids_of(settings.analyzers);
+  auto all = ids_of(settings.analyzers);
   if (!standard.given("analyzers")) return all;
   if (standard.is_empty_list("analyzers"))
     standard.error("analyzers",

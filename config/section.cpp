@@ -10,10 +10,10 @@
 
 namespace agreed::settings_file {
 
-Section::Section(const Node* node, std::string pattern, std::string path, Position at, Problems& problems)
+Section::Section(const TreeNode* node, std::string pattern, std::string path, Position at, Problems& problems)
     : node_(node), pattern_(std::move(pattern)), path_(std::move(path)), at_(at), problems_(&problems) {}
 
-Section Section::top(const Node& root, Problems& problems) {
+Section Section::top(const TreeNode& root, Problems& problems) {
   return {&root, "", "", root.at, problems};
 }
 
@@ -23,7 +23,7 @@ const SettingRow& Section::row(const std::string& name) const {
   return *found;
 }
 
-const Node* Section::find(const std::string& name) const {
+const TreeNode* Section::find(const std::string& name) const {
   return node_ == nullptr ? nullptr : node_->find(name);
 }
 
@@ -37,7 +37,7 @@ bool Section::is_empty_list(const std::string& name) const {
 }
 
 bool Section::usable(const std::string& name) const {
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   return node != nullptr && node->kind == NodeKind::scalar && !complaint(row(name), node->text);
 }
 
@@ -76,10 +76,10 @@ bool Section::flag(const std::string& name) const {
 
 std::vector<std::string> Section::words(const std::string& name) const {
   std::vector<std::string> all;
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   (void)row(name);
   if (node == nullptr || node->kind != NodeKind::list) return all;
-  for (const Node& child : node->children)
+  for (const TreeNode& child : node->children)
     // Unusable ones keep their place, so that positions of elements are right.
     all.push_back(child.kind == NodeKind::scalar && !complaint(row(name), child.text) ? child.text : "");
   return all;
@@ -93,7 +93,7 @@ std::vector<double> Section::numbers(const std::string& name) const {
 }
 
 Section Section::section(const std::string& name) const {
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   const bool is_map = node != nullptr && node->kind == NodeKind::map;
   return {is_map ? node : nullptr, pattern_below(row(name)), joined(path_, name),
           node == nullptr ? at_ : node->key_at, *problems_};
@@ -101,10 +101,10 @@ Section Section::section(const std::string& name) const {
 
 std::vector<Section> Section::named(const std::string& name) const {
   std::vector<Section> all;
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   const std::string pattern = pattern_below(row(name));
   if (node == nullptr || node->kind != NodeKind::map) return all;
-  for (const Node& child : node->children) {
+  for (const TreeNode& child : node->children) {
     if (!is_id(child.key)) continue;
     const std::string path = joined(joined(path_, name), child.key);
     all.emplace_back(child.kind == NodeKind::map ? &child : nullptr, pattern, path, child.key_at, *problems_);
@@ -116,11 +116,11 @@ std::vector<Section> Section::named(const std::string& name) const {
 
 std::vector<Section> Section::list(const std::string& name) const {
   std::vector<Section> all;
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   const std::string pattern = pattern_below(row(name));
   if (node == nullptr || node->kind != NodeKind::list) return all;
   for (std::size_t i = 0; i < node->children.size(); ++i) {
-    const Node& child = node->children[i];
+    const TreeNode& child = node->children[i];
     const std::string path = joined(path_, name) + '[' + std::to_string(i) + ']';
     all.emplace_back(child.kind == NodeKind::map ? &child : nullptr, pattern, path, child.at, *problems_);
   }
@@ -128,12 +128,12 @@ std::vector<Section> Section::list(const std::string& name) const {
 }
 
 Position Section::where(const std::string& name) const {
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   return node == nullptr ? at_ : node->at;
 }
 
 Position Section::where(const std::string& name, std::size_t element) const {
-  const Node* node = find(name);
+  const TreeNode* node = find(name);
   return node == nullptr || element >= node->children.size() ? where(name) : node->children[element].at;
 }
 

@@ -15,9 +15,9 @@ namespace agreed::settings_file {
 class Section {
  public:
   /// `node` may be null: an absent section, of which everything has its default.
-  Section(const Node* node, std::string pattern, std::string path, Position at, Problems& problems);
+  Section(const TreeNode* node, std::string pattern, std::string path, Position at, Problems& problems);
   /// The whole file.
-  static Section top(const Node& root, Problems& problems);
+  static Section top(const TreeNode& root, Problems& problems);
 
   /// It is there, as a section.
   [[nodiscard]] bool exists() const { return node_ != nullptr; }
@@ -60,10 +60,10 @@ class Section {
   void warning_here(std::string message) const;
 
  private:
-  [[nodiscard]] const Node* find(const std::string& name) const;
+  [[nodiscard]] const TreeNode* find(const std::string& name) const;
   [[nodiscard]] const SettingRow& row(const std::string& name) const;
 
-  const Node* node_;
+  const TreeNode* node_;
   std::string pattern_, path_, id_;
   Position at_;
   Problems* problems_;

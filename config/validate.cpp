@@ -13,7 +13,7 @@ namespace {
 
 constexpr const char* kNotYet = "not available in this version yet";
 
-std::string kind_words(const Node& node) {
+std::string kind_words(const TreeNode& node) {
   switch (node.kind) {
     case NodeKind::empty:
       return "found no value";
@@ -32,8 +32,8 @@ class Validator {
   explicit Validator(Problems& problems) : problems_(problems) {}
 
   /// The keys of one section. `at`: where the section is named.
-  void section(const Node& map, const std::string& pattern, const std::string& path, Position at) {
-    for (const Node& child : map.children) {
+  void section(const TreeNode& map, const std::string& pattern, const std::string& path, Position at) {
+    for (const TreeNode& child : map.children) {
       const SettingRow* row = find_row(pattern, child.key);
       if (row == nullptr) {
         unknown(child, pattern, path);
@@ -47,7 +47,7 @@ class Validator {
   }
 
  private:
-  void unknown(const Node& child, const std::string& pattern, const std::string& path) {
+  void unknown(const TreeNode& child, const std::string& pattern, const std::string& path) {
     std::vector<std::string> names;
     for (const SettingRow* row : rows_below(pattern)) names.push_back(name_of(*row));
     std::string message = "unknown key";
@@ -71,7 +71,7 @@ class Validator {
     return "";
   }
 
-  void value(const Node& node, const SettingRow& row, const std::string& path) {
+  void value(const TreeNode& node, const SettingRow& row, const std::string& path) {
     not_yet(node, row, path);
     switch (row.type) {
       case Type::section:
@@ -94,7 +94,7 @@ class Validator {
     }
   }
 
-  void not_yet(const Node& node, const SettingRow& row, const std::string& path) {
+  void not_yet(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (row.later == Later::no) return;
     const auto words = words_of(row.later_choices);
     if (!words.empty()) {
@@ -108,20 +108,20 @@ class Validator {
     }
   }
 
-  void wrong(const Node& node, const SettingRow& row, const std::string& path) {
+  void wrong(const TreeNode& node, const SettingRow& row, const std::string& path) {
     problems_.error(node.at, path, kind_words(node) + ", expected " + expected(row));
   }
 
-  void fixed_section(const Node& node, const SettingRow& row, const std::string& path) {
+  void fixed_section(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::map && node.kind != NodeKind::empty) return wrong(node, row, path);
     section(node, pattern_below(row), path, node.key_at);
   }
 
-  void named(const Node& node, const SettingRow& row, const std::string& path) {
+  void named(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::map && node.kind != NodeKind::empty) return wrong(node, row, path);
     if (row.is_required && node.children.empty())
       problems_.error(node.key_at, path, "found none, expected at least one");
-    for (const Node& child : node.children) {
+    for (const TreeNode& child : node.children) {
       const std::string child_path = joined(path, child.key);
       if (!is_id(child.key))
         problems_.error(child.key_at, child_path,
@@ -136,15 +136,15 @@ class Validator {
     }
   }
 
-  void text_map(const Node& node, const SettingRow& row, const std::string& path) {
+  void text_map(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::map && node.kind != NodeKind::empty) return wrong(node, row, path);
-    for (const Node& child : node.children) element(child, row, joined(path, child.key));
+    for (const TreeNode& child : node.children) element(child, row, joined(path, child.key));
   }
 
-  void list(const Node& node, const SettingRow& row, const std::string& path) {
+  void list(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::list && node.kind != NodeKind::empty) return wrong(node, row, path);
     for (std::size_t i = 0; i < node.children.size(); ++i) {
-      const Node& child = node.children[i];
+      const TreeNode& child = node.children[i];
       const std::string child_path = path + '[' + std::to_string(i) + ']';
       if (child.kind == NodeKind::map) {
         section(child, pattern_below(row), child_path, child.at);
@@ -154,11 +154,11 @@ class Validator {
     }
   }
 
-  void scalar_list(const Node& node, const SettingRow& row, const std::string& path) {
+  void scalar_list(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::list) return wrong(node, row, path);
     std::set<std::string> seen;
     for (std::size_t i = 0; i < node.children.size(); ++i) {
-      const Node& child = node.children[i];
+      const TreeNode& child = node.children[i];
       const std::string child_path = path + '[' + std::to_string(i) + ']';
       element(child, row, child_path);
       if (child.kind != NodeKind::scalar || !is_good(row, child.text)) continue;
@@ -170,14 +170,14 @@ class Validator {
     }
   }
 
-  void element(const Node& node, const SettingRow& row, const std::string& path) {
+  void element(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::scalar)
       return problems_.error(node.at, path, kind_words(node) + ", expected " + expected_element(row));
     if (const auto wrong_value = element_complaint(row, node.text))
       problems_.error(node.at, path, *wrong_value);
   }
 
-  void scalar(const Node& node, const SettingRow& row, const std::string& path) {
+  void scalar(const TreeNode& node, const SettingRow& row, const std::string& path) {
     if (node.kind != NodeKind::scalar) return wrong(node, row, path);
     if (const auto wrong_value = complaint(row, node.text)) problems_.error(node.at, path, *wrong_value);
   }
@@ -187,7 +187,7 @@ class Validator {
 
 }  // namespace
 
-void validate(const Node& root, Problems& problems) {
+void validate(const TreeNode& root, Problems& problems) {
   if (root.kind != NodeKind::map) {
     const std::string found = root.kind == NodeKind::empty ? "found nothing" : kind_words(root);
     problems.error(root.at, "", found + ", expected the sections of a configuration (site, analyzers, ...)");

@@ -9,7 +9,7 @@
 namespace agreed::settings_file {
 
 /// Adds every key that is unknown, missing, of the wrong type, out of range or not available yet.
-void validate(const Node& root, Problems& problems);
+void validate(const TreeNode& root, Problems& problems);
 
 /// The path of a child: "analyzers" + "line1".
 [[nodiscard]] std::string joined(const std::string& path, const std::string& name);

@@ -39,7 +39,7 @@ class TreeBuilder final : public YAML::EventHandler {
       if (text[i] == '\n') line_starts_.push_back(i + 1);
   }
 
-  [[nodiscard]] Node take_root() { return std::move(root_); }
+  [[nodiscard]] TreeNode take_root() { return std::move(root_); }
   [[nodiscard]] bool found_open_quote() const { return found_open_quote_; }
 
   void OnDocumentStart(const YAML::Mark&) override {}
@@ -71,7 +71,7 @@ class TreeBuilder final : public YAML::EventHandler {
 
  private:
   struct Open {
-    Node node;
+    TreeNode node;
     bool awaits_key = true;  // of a map: the next value is a key
     bool key_is_word = true;
     std::string key;
@@ -79,8 +79,8 @@ class TreeBuilder final : public YAML::EventHandler {
     std::map<std::string, int> lines;  // of the keys so far
   };
 
-  static Node leaf(NodeKind kind, const YAML::Mark& mark, const std::string& text) {
-    Node node;
+  static TreeNode leaf(NodeKind kind, const YAML::Mark& mark, const std::string& text) {
+    TreeNode node;
     node.kind = kind;
     node.at = position(mark);
     node.text = text;
@@ -104,13 +104,10 @@ class TreeBuilder final : public YAML::EventHandler {
     if (i >= text_.size() || (text_[i] != '"' && text_[i] != '\'')) return;
     const char quote = text_[i];
     for (++i; i < text_.size() && text_[i] != '\n'; ++i) {
-      if (text_[i] == quote && quote == '\'' && text_.substr(i + 1, 1) == "'") {
-        ++i;  // '' is an apostrophe
-      } else if (text_[i] == quote) {
-        return;
-      } else if (text_[i] == '\\' && quote == '"') {
-        ++i;
-      }
+      const bool apostrophe = quote == '\'' && text_.substr(i, 2) == "''";
+      const bool escaped = quote == '"' && text_[i] == '\\';
+      if (!apostrophe && !escaped && text_[i] == quote) return;
+      if (apostrophe || escaped) ++i;
     }
     found_open_quote_ = true;
     problems_.error(at, path(),
@@ -124,12 +121,12 @@ class TreeBuilder final : public YAML::EventHandler {
   }
 
   void end() {
-    Node done = std::move(open_.back().node);
+    TreeNode done = std::move(open_.back().node);
     open_.pop_back();
     attach(std::move(done));
   }
 
-  void attach(Node node) {
+  void attach(TreeNode node) {
     if (open_.empty()) {
       root_ = std::move(node);
       return;
@@ -144,7 +141,7 @@ class TreeBuilder final : public YAML::EventHandler {
     }
   }
 
-  void take_key(Open& map, const Node& node) {
+  void take_key(Open& map, const TreeNode& node) {
     if (node.kind != NodeKind::scalar)
       problems_.error(node.at, path(), "found something other than a word as a key; expected a word");
     map.awaits_key = false;
@@ -153,7 +150,7 @@ class TreeBuilder final : public YAML::EventHandler {
     map.key_at = node.at;
   }
 
-  void give_value(Open& map, Node node) {
+  void give_value(Open& map, TreeNode node) {
     map.awaits_key = true;
     if (!map.key_is_word) return;
     node.key = map.key;
@@ -189,7 +186,7 @@ class TreeBuilder final : public YAML::EventHandler {
   Problems& problems_;
   bool found_open_quote_ = false;
   std::vector<Open> open_;
-  Node root_;
+  TreeNode root_;
 };
 
 bool is_text(std::string_view text, Problems& problems) {
@@ -227,7 +224,7 @@ std::string syntax_message(const YAML::Exception& error, std::string_view text) 
 
 }  // namespace
 
-std::optional<Node> parse_yaml(const std::string& text, Problems& problems) {
+std::optional<TreeNode> parse_yaml(const std::string& text, Problems& problems) {
   std::string_view body = text;
   if (body.substr(0, kByteOrderMark.size()) == kByteOrderMark) body.remove_prefix(kByteOrderMark.size());
   if (!is_text(body, problems)) return std::nullopt;
@@ -235,8 +232,8 @@ std::optional<Node> parse_yaml(const std::string& text, Problems& problems) {
   TreeBuilder builder(body, problems);
   try {
     YAML::Parser parser(stream);
-    if (!parser.HandleNextDocument(builder)) return Node{};
-    Node root = builder.take_root();
+    if (!parser.HandleNextDocument(builder)) return TreeNode{};
+    TreeNode root = builder.take_root();
     Problems of_the_rest;
     TreeBuilder rest(body, of_the_rest);
     if (parser.HandleNextDocument(rest))

@@ -13,6 +13,6 @@ namespace agreed::settings_file {
 /// Nothing when the text cannot be read at all; what is wrong is added to `problems`. Refused: other than
 /// UTF-8, control characters, anchors, aliases, tags, keys given twice, a second document. A byte order mark
 /// and CR LF are fine. An empty text gives an empty node.
-[[nodiscard]] std::optional<Node> parse_yaml(const std::string& text, Problems& problems);
+[[nodiscard]] std::optional<TreeNode> parse_yaml(const std::string& text, Problems& problems);
 
 }  // namespace agreed::settings_file

@@ -55,8 +55,8 @@ struct Seen {
 };
 
 /// Every key of the tree under the key of its row.
-void collect(const Node& map, const std::string& pattern, std::map<std::string, Seen>& seen) {
-  for (const Node& child : map.children) {
+void collect(const TreeNode& map, const std::string& pattern, std::map<std::string, Seen>& seen) {
+  for (const TreeNode& child : map.children) {
     const SettingRow* row = find_row(pattern, child.key);
     REQUIRE_MESSAGE(row != nullptr, "line ", child.key_at.line, ": ", child.key);
     Seen& entry = seen[std::string(row->key)];
@@ -66,7 +66,7 @@ void collect(const Node& map, const std::string& pattern, std::map<std::string, 
     const bool of_sections =
         row->type == Type::named || row->type == Type::list || row->type == Type::texts_or_sections;
     if (of_sections) {
-      for (const Node& element : child.children) collect(element, below, seen);
+      for (const TreeNode& element : child.children) collect(element, below, seen);
     } else if (child.kind == NodeKind::map && row->type != Type::text_map) {
       collect(child, below, seen);
     }
