@@ -17,7 +17,8 @@ using namespace agreed::test;
 
 namespace {
 
-ServerLimits quick_limits() {
+/// For the tests of deadlines.
+ServerLimits short_limits() {
   ServerLimits limits;
   limits.request = Milliseconds(400);
   limits.idle = Milliseconds(600);
@@ -28,7 +29,7 @@ ServerLimits quick_limits() {
 
 /// A server that shows what it was asked: the target, and the body in brackets.
 struct Running {
-  explicit Running(ServerLimits limits = quick_limits())
+  explicit Running(ServerLimits limits = {})
       : server(
             {"127.0.0.1", 0, false}, [this](const HttpRequest& request) { return answer(request); },
             [this](const std::string& words) {
@@ -44,7 +45,7 @@ struct Running {
     if (request.target == "/throw") throw std::runtime_error("secret of the house");
     if (request.target == "/throw-int") throw 7;  // NOLINT: what is not an exception class must not end us
     if (request.target == "/slow") std::this_thread::sleep_for(Milliseconds(100));
-    if (request.target == "/big") return {200, "text/plain", std::string(20'000'000, 'x'), "", {}};
+    if (request.target == "/big") return {200, "text/plain", std::string(8'000'000, 'x'), "", {}};
     return {200, "text/plain", request.target + " [" + request.body + "]" + request.authorization, "", {}};
   }
 
@@ -142,7 +143,7 @@ TEST_CASE("a huge number of header fields is refused") {
 }
 
 TEST_CASE("a head trickled byte by byte is ended by one deadline, with 408") {
-  Running running;
+  Running running(short_limits());
   RawClient client(running.server.port());
   const std::string head = get("/", "X: " + std::string(500, 'a') + "\r\n");
   std::string answer;
@@ -159,7 +160,7 @@ TEST_CASE("a head trickled byte by byte is ended by one deadline, with 408") {
 }
 
 TEST_CASE("a trickled body falls under the same deadline") {
-  Running running;
+  Running running(short_limits());
   RawClient client(running.server.port());
   client.send(post("Content-Length: 1000\r\n", "a"));
   std::string answer;
@@ -195,7 +196,7 @@ TEST_CASE("a body announced beyond the limit is refused before it is sent") {
   RawClient client(running.server.port());
   client.send(post("Content-Length: 100000000\r\n", ""));
   const auto spent = time_of([&] { CHECK(status_of(client.read_answer()) == 413); });
-  CHECK(spent < Milliseconds(300));
+  CHECK(spent < Milliseconds(1000));
   client.read_to_end();
   CHECK(client.closed());
 }
@@ -295,7 +296,7 @@ TEST_CASE("Connection: close is honoured in any case of letters, and HTTP/1.0 me
     CAPTURE(head);
     RawClient client(running.server.port());
     client.send(head);
-    const std::string answer = client.read_to_end(Milliseconds(300));
+    const std::string answer = client.read_to_end(Milliseconds(2000));
     CHECK(status_of(answer) == 200);
     CHECK(header_of(answer, "Connection") == "close");
     CHECK(client.closed());
@@ -332,55 +333,68 @@ TEST_CASE("64 slow and silent clients do not keep the 65th waiting") {
     }
   }
   const auto spent = time_of([&] { CHECK(status_of(running.ask(get("/a"))) == 200); });
-  CHECK(spent < Milliseconds(300));
+  CHECK(spent < Milliseconds(1000));
 }
 
 TEST_CASE("beyond the cap the client that waits longest has to go, and the newest is answered") {
-  ServerLimits limits = quick_limits();
+  ServerLimits limits;
   limits.connections = 8;
   limits.request = limits.idle = Milliseconds(60'000);
   Running running(limits);
   std::list<RawClient> silent;
   for (int i = 0; i < 40; ++i) silent.emplace_back(running.server.port());
   const auto spent = time_of([&] { CHECK(status_of(running.ask(get("/a"))) == 200); });
-  CHECK(spent < Milliseconds(500));
-  silent.front().read_to_end(Milliseconds(500));
+  CHECK(spent < Milliseconds(1000));
+  silent.front().read_to_end(Milliseconds(2000));
   CHECK(silent.front().closed());
 }
 
+TEST_CASE("clients that never take their answers cannot fill the table either") {
+  ServerLimits limits;
+  limits.connections = 6;
+  limits.workers = 2;
+  Running running(limits);
+  std::list<RawClient> lazy;
+  for (int i = 0; i < 20; ++i) {
+    lazy.emplace_back(running.server.port(), 4096);
+    lazy.back().send(get("/big"));
+  }
+  CHECK(status_of(running.ask(get("/a"))) == 200);
+}
+
 TEST_CASE("idle connections are closed, first ones sooner than kept ones") {
-  Running running;
+  Running running(short_limits());
   RawClient silent(running.server.port()), kept(running.server.port());
   kept.send(get("/a"));
   kept.read_answer();
-  silent.read_to_end(Milliseconds(1500));
+  silent.read_to_end();
   CHECK(silent.closed());
-  const auto spent = time_of([&] { kept.read_to_end(Milliseconds(2000)); });
+  const auto spent = time_of([&] { kept.read_to_end(); });
   CHECK(kept.closed());
   CHECK(spent < Milliseconds(1500));
 }
 
 TEST_CASE("a client that does not take its answer is cut off and holds no worker") {
-  ServerLimits limits = quick_limits();
+  ServerLimits limits = short_limits();
   limits.workers = 2;
   Running running(limits);
   std::list<RawClient> lazy;
   for (int i = 0; i < 6; ++i) {
-    lazy.emplace_back(running.server.port());
+    lazy.emplace_back(running.server.port(), 4096);
     lazy.back().send(get("/big"));
   }
   CHECK(status_of(running.ask(get("/a"))) == 200);
+  // Nothing arrives at a client that does not read, not even the end: only time tells.
   std::this_thread::sleep_for(Milliseconds(1200));
-  CHECK(lazy.front().read_to_end(Milliseconds(2000)).size() < 20'000'000);
+  CHECK(lazy.front().read_to_end().size() < 8'000'000);
   CHECK(lazy.front().closed());
 }
 
 TEST_CASE("a large answer arrives whole at a client that reads it late") {
   Running running;
-  RawClient client(running.server.port());
+  RawClient client(running.server.port(), 65536);
   client.send(get("/big"));
-  std::this_thread::sleep_for(Milliseconds(100));
-  CHECK(body_of(client.read_answer()).size() == 20'000'000);
+  CHECK(body_of(client.read_answer()).size() == 8'000'000);
 }
 
 TEST_CASE("an exception of the handler becomes 500 without its message, which is told to the log") {
@@ -442,7 +456,7 @@ TEST_CASE("stop before start and a second stop do no harm") {
 }
 
 TEST_CASE("the number of requests of one connection is bounded") {
-  ServerLimits limits = quick_limits();
+  ServerLimits limits;
   limits.requests_per_connection = 3;
   Running running(limits);
   RawClient client(running.server.port());
