@@ -12,11 +12,6 @@ namespace {
 
 constexpr long kTickNanoseconds = 100'000'000;
 
-bool waits_for_request(const Connection& connection) {
-  const ConnectionPhase phase = connection.phase;
-  return phase == ConnectionPhase::idle || phase == ConnectionPhase::partial;
-}
-
 }  // namespace
 
 ConnectionTable::ConnectionTable() : timer_(::timerfd_create(CLOCK_MONOTONIC, TFD_NONBLOCK | TFD_CLOEXEC)) {
@@ -31,12 +26,16 @@ ConnectionTable::~ConnectionTable() {
 Connection* ConnectionTable::add(int socket, std::size_t most) {
   auto fresh = std::make_unique<Connection>(socket);
   const std::scoped_lock lock(mutex_);
-  if (connections_.size() >= most && (connections_.size() >= 2 * most || !shut_longest_waiting_locked()))
-    return nullptr;
+  if (connections_.size() >= most && !shut_longest_waiting_locked()) return nullptr;
   Connection* added = fresh.get();
   connections_.emplace(added, std::move(fresh));
   if (!ticking_) set_timer_locked(true);
   return added;
+}
+
+std::size_t ConnectionTable::size() {
+  const std::scoped_lock lock(mutex_);
+  return connections_.size();
 }
 
 void ConnectionTable::remove(Connection& connection) {
@@ -54,7 +53,7 @@ void ConnectionTable::shut_longest_waiting() {
 bool ConnectionTable::shut_longest_waiting_locked() {
   Connection* longest = nullptr;
   for (const auto& [connection, owner] : connections_)
-    if (waits_for_request(*connection) && !connection->expired &&
+    if (connection->phase != ConnectionPhase::busy && !connection->expired &&
         (!longest || connection->since < longest->since))
       longest = connection;
   if (!longest) return false;

@@ -27,9 +27,10 @@ struct Connection {
   explicit Connection(int of) : socket(of) {}
 
   const int socket;
-  std::string in;               ///< came, not yet answered
-  std::string out;              ///< answer on its way
-  std::size_t sent = 0;         ///< of `out`
+  std::mutex handover;   ///< held while a worker gives it to the event queue, and when the next one takes it
+  std::string in;        ///< came, not yet answered
+  std::string out;       ///< answer on its way
+  std::size_t sent = 0;  ///< of `out`
   std::size_t thrown_away = 0;  ///< while lingering
   int answered = 0;
   bool close_after = false;  ///< `out` is the last answer
@@ -58,9 +59,11 @@ class ConnectionTable {
   [[nodiscard]] int timer() const { return timer_; }
 
   /// Takes over `socket`. With `most` connections in the table the one that waits longest for its client is
-  /// shut down (its worker will remove it); with twice as many, or nobody waiting, nothing is added and the
-  /// socket stays the caller's.
+  /// shut down (its worker will remove it); if none waits, nothing is added and the socket stays the
+  /// caller's.
   [[nodiscard]] Connection* add(int socket, std::size_t most);
+
+  [[nodiscard]] std::size_t size();
 
   /// Closes and forgets it.
   void remove(Connection& connection);

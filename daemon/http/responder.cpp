@@ -82,8 +82,11 @@ void fill(httplib::Response& response, HttpAnswer answer) {
 /// It never has a socket.
 class Responder::Library final : public httplib::Server {
  public:
-  Library(HttpHandler handler, std::function<void(const std::string&)> tell)
+  Library(HttpHandler handler, std::function<void(const std::string&)> tell, std::chrono::seconds idle,
+          int requests)
       : handler_(std::move(handler)), tell_(std::move(tell)) {
+    set_keep_alive_timeout(idle.count());
+    set_keep_alive_max_count(static_cast<std::size_t>(requests));
     set_default_headers({{"Content-Security-Policy", "default-src 'self'"},
                          {"X-Content-Type-Options", "nosniff"},
                          {"Referrer-Policy", "no-referrer"},
@@ -132,8 +135,9 @@ class Responder::Library final : public httplib::Server {
   std::string_view target_;
 };
 
-Responder::Responder(HttpHandler handler, std::function<void(const std::string&)> tell)
-    : library_(std::make_unique<Library>(std::move(handler), std::move(tell))) {}
+Responder::Responder(HttpHandler handler, std::function<void(const std::string&)> tell,
+                     std::chrono::seconds idle, int requests)
+    : library_(std::make_unique<Library>(std::move(handler), std::move(tell), idle, requests)) {}
 Responder::~Responder() = default;
 
 std::string Responder::respond(const Gated& request, std::string_view body, bool close) {

@@ -1,5 +1,6 @@
 #pragma once
 // Turns one request that passed the gate into the bytes of its answer, with the packaged HTTP library.
+#include <chrono>
 #include <functional>
 #include <memory>
 #include <string>
@@ -14,7 +15,9 @@ namespace agreed {
 class Responder {
  public:
   /// `tell` gets the message of an exception that left the handler; the client is not told it.
-  Responder(HttpHandler handler, std::function<void(const std::string&)> tell);
+  /// A kept connection is told that it may wait `idle` for the next of its `requests` requests.
+  Responder(HttpHandler handler, std::function<void(const std::string&)> tell, std::chrono::seconds idle,
+            int requests);
   ~Responder();
   Responder(const Responder&) = delete;
   Responder& operator=(const Responder&) = delete;

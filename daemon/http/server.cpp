@@ -74,7 +74,8 @@ class HttpServer::Workers {
  private:
   void work() noexcept {
     try {
-      Responder responder(handler_, tell_);
+      Responder responder(handler_, tell_, std::chrono::floor<std::chrono::seconds>(limits_.idle),
+                          limits_.requests_per_connection);
       while (!stopping_) {
         epoll_event event{};
         if (::epoll_wait(queue_.get(), &event, 1, -1) == 1) take(event, responder);
@@ -100,18 +101,19 @@ class HttpServer::Workers {
     }
     auto& connection = *static_cast<Connection*>(event.data.ptr);
     try {
-      const ConnectionPhase was = connection.phase.exchange(ConnectionPhase::busy);
-      wait_for(connection, go_on(connection, was, responder, limits_, stopping_));
+      wait_for(connection, go_on(connection, taken(connection), responder, limits_, stopping_));
     } catch (const std::exception&) {
       connections_.remove(connection);
     }
   }
 
   void accept_waiting() noexcept {
-    for (int i = 0; i < 64; ++i) {  // then let the workers look at what came
+    for (int i = 0; i < 64; ++i) {
       const int socket = ::accept4(listener_.socket(), nullptr, nullptr, SOCK_NONBLOCK | SOCK_CLOEXEC);
       if (socket >= 0) {
         welcome(socket);
+        // One had to go for it: let that one be cleared away before the next comes in.
+        if (connections_.size() >= limits_.connections) break;
       } else if (errno == EAGAIN || errno == EWOULDBLOCK) {
         break;
       } else if (errno == EMFILE || errno == ENFILE || errno == ENOBUFS || errno == ENOMEM) {
@@ -138,8 +140,8 @@ class HttpServer::Workers {
       return;
     }
     connection->began = std::chrono::steady_clock::now();
-    set_phase(*connection, ConnectionPhase::idle, connection->began, connection->began + limits_.request);
-    watch_connection(*connection, EPOLL_CTL_ADD, EPOLLIN);
+    hand_over(*connection, ConnectionPhase::idle, connection->began, connection->began + limits_.request,
+              EPOLL_CTL_ADD);
   }
 
   void tick() noexcept {
@@ -149,7 +151,11 @@ class HttpServer::Workers {
     watch(EPOLL_CTL_MOD, connections_.timer(), EPOLLIN | EPOLLONESHOT, kTimer);
   }
 
-  /// After this the connection is another worker's.
+  static ConnectionPhase taken(Connection& connection) {
+    const std::scoped_lock lock(connection.handover);
+    return connection.phase.exchange(ConnectionPhase::busy);
+  }
+
   void wait_for(Connection& connection, NextStep step) {
     const auto now = std::chrono::steady_clock::now();
     switch (step) {
@@ -157,41 +163,38 @@ class HttpServer::Workers {
         connections_.remove(connection);
         return;
       case NextStep::write:
-        set_phase(connection, ConnectionPhase::writing, now, connection.write_began + limits_.write);
-        watch_connection(connection, EPOLL_CTL_MOD, EPOLLOUT);
+        hand_over(connection, ConnectionPhase::writing, now, connection.write_began + limits_.write);
         return;
       case NextStep::linger:
         if (connection.thrown_away == 0) {
           ::shutdown(connection.socket, SHUT_WR);
           connection.write_began = now;
         }
-        set_phase(connection, ConnectionPhase::lingering, now, connection.write_began + limits_.linger);
-        watch_connection(connection, EPOLL_CTL_MOD, EPOLLIN);
+        hand_over(connection, ConnectionPhase::lingering, now, connection.write_began + limits_.linger);
         return;
       case NextStep::read:
         break;
     }
-    if (connection.in.empty() && connection.answered > 0)
-      set_phase(connection, ConnectionPhase::idle, connection.began, connection.began + limits_.idle);
-    else
-      set_phase(connection, connection.in.empty() ? ConnectionPhase::idle : ConnectionPhase::partial,
-                connection.began, connection.began + limits_.request);
-    watch_connection(connection, EPOLL_CTL_MOD, EPOLLIN);
+    const bool kept = connection.in.empty() && connection.answered > 0;
+    hand_over(connection, connection.in.empty() ? ConnectionPhase::idle : ConnectionPhase::partial,
+              connection.began, connection.began + (kept ? limits_.idle : limits_.request));
   }
 
-  static void set_phase(Connection& connection, ConnectionPhase phase, MonotonicTime since,
-                        MonotonicTime deadline) noexcept {
-    connection.since = since.time_since_epoch().count();
-    connection.deadline = deadline.time_since_epoch().count();
-    connection.phase = phase;
-  }
-
-  void watch_connection(Connection& connection, int operation, std::uint32_t events) noexcept {
+  /// Gives the connection to the event queue: after this it is another worker's.
+  void hand_over(Connection& connection, ConnectionPhase phase, MonotonicTime since, MonotonicTime deadline,
+                 int operation = EPOLL_CTL_MOD) noexcept {
     epoll_event event{};
-    event.events = events | EPOLLONESHOT;
+    event.events = (phase == ConnectionPhase::writing ? EPOLLOUT : EPOLLIN) | EPOLLONESHOT;
     event.data.ptr = &connection;
-    const int socket = connection.socket;
-    if (::epoll_ctl(queue_.get(), operation, socket, &event) != 0) connections_.remove(connection);
+    bool given = false;
+    {
+      const std::scoped_lock lock(connection.handover);
+      connection.since = since.time_since_epoch().count();
+      connection.deadline = deadline.time_since_epoch().count();
+      connection.phase = phase;
+      given = ::epoll_ctl(queue_.get(), operation, connection.socket, &event) == 0;
+    }
+    if (!given) connections_.remove(connection);
   }
 
   void watch(int operation, int descriptor, std::uint32_t events, std::uint64_t mark) noexcept {

@@ -19,13 +19,17 @@ using Milliseconds = std::chrono::milliseconds;
 
 class RawClient {
  public:
-  explicit RawClient(int port) : socket_(::socket(AF_INET, SOCK_STREAM | SOCK_CLOEXEC, 0)) {
+  /// `receive_buffer` 0: the system's.
+  explicit RawClient(int port, int receive_buffer = 0)
+      : socket_(::socket(AF_INET, SOCK_STREAM | SOCK_CLOEXEC, 0)) {
     sockaddr_in address{};
     address.sin_family = AF_INET;
     address.sin_port = htons(static_cast<std::uint16_t>(port));
     address.sin_addr.s_addr = htonl(INADDR_LOOPBACK);
     const int on = 1;
     ::setsockopt(socket_, IPPROTO_TCP, TCP_NODELAY, &on, sizeof on);
+    if (receive_buffer > 0)
+      ::setsockopt(socket_, SOL_SOCKET, SO_RCVBUF, &receive_buffer, sizeof receive_buffer);
     if (::connect(socket_, reinterpret_cast<const sockaddr*>(&address), sizeof address) != 0)
       throw std::runtime_error(std::string("connect: ") + std::strerror(errno));
   }
@@ -46,7 +50,7 @@ class RawClient {
   void end_sending() { ::shutdown(socket_, SHUT_WR); }
 
   /// All that comes until the other side closes; `closed()` tells whether it did within `longest`.
-  std::string read_to_end(Milliseconds longest = Milliseconds(3000)) {
+  std::string read_to_end(Milliseconds longest = Milliseconds(10000)) {
     std::string bytes;
     const auto last = std::chrono::steady_clock::now() + longest;
     while (!closed_ && read_some(bytes, last)) {
@@ -55,7 +59,7 @@ class RawClient {
   }
 
   /// One answer by its Content-Length (none for HEAD or 304, `head_only`); what comes after it is kept.
-  std::string read_answer(bool head_only = false, Milliseconds longest = Milliseconds(3000)) {
+  std::string read_answer(bool head_only = false, Milliseconds longest = Milliseconds(10000)) {
     const auto last = std::chrono::steady_clock::now() + longest;
     while (true) {
       const auto end = kept_.find("\r\n\r\n");

@@ -1,80 +1,13 @@
-// Every weakness of the packaged HTTP library that concerns a server, shown closed over a bare socket.
-#include "daemon/http/server.hpp"
-
-#include <atomic>
-#include <list>
-#include <mutex>
-#include <thread>
+// Requests that are wrong, doubtful or too large, over a bare socket: each weakness of the packaged HTTP
+// library in reading them, shown closed.
 #include <vector>
 
 #include <doctest/doctest.h>
 
-#include "daemon/http/problem.hpp"
-#include "tests/daemon/http/raw_client.hpp"
+#include "tests/daemon/http/running_server.hpp"
 
 using namespace agreed;
 using namespace agreed::test;
-
-namespace {
-
-ServerLimits quick_limits() {
-  ServerLimits limits;
-  limits.request = Milliseconds(400);
-  limits.idle = Milliseconds(600);
-  limits.write = Milliseconds(600);
-  limits.linger = Milliseconds(300);
-  return limits;
-}
-
-/// A server that shows what it was asked: the target, and the body in brackets.
-struct Running {
-  explicit Running(ServerLimits limits = quick_limits())
-      : server(
-            {"127.0.0.1", 0, false}, [this](const HttpRequest& request) { return answer(request); },
-            [this](const std::string& words) {
-              const std::scoped_lock lock(mutex);
-              told += words;
-            },
-            limits) {
-    server.start();
-  }
-
-  HttpAnswer answer(const HttpRequest& request) {
-    ++requests;
-    if (request.target == "/throw") throw std::runtime_error("secret of the house");
-    if (request.target == "/throw-int") throw 7;  // NOLINT: what is not an exception class must not end us
-    if (request.target == "/slow") std::this_thread::sleep_for(Milliseconds(100));
-    if (request.target == "/big") return {200, "text/plain", std::string(20'000'000, 'x'), "", {}};
-    return {200, "text/plain", request.target + " [" + request.body + "]" + request.authorization, "", {}};
-  }
-
-  std::string ask(const std::string& bytes) {
-    RawClient client(server.port());
-    client.send(bytes);
-    return client.read_answer();
-  }
-
-  std::mutex mutex;
-  std::string told;
-  std::atomic<int> requests{0};
-  HttpServer server;
-};
-
-std::string path_of(const std::string& segment) {
-  return std::string(1, '/').append(segment);
-}
-
-std::string post(const std::string& headers, const std::string& body) {
-  return "POST /p HTTP/1.1\r\nHost: h\r\n" + headers + "\r\n" + body;
-}
-
-std::chrono::milliseconds time_of(const std::function<void()>& what) {
-  const auto begin = std::chrono::steady_clock::now();
-  what();
-  return std::chrono::duration_cast<Milliseconds>(std::chrono::steady_clock::now() - begin);
-}
-
-}  // namespace
 
 TEST_CASE("an answer comes in one piece with the headers that protect it, and the connection is kept") {
   Running running;
@@ -142,7 +75,7 @@ TEST_CASE("a huge number of header fields is refused") {
 }
 
 TEST_CASE("a head trickled byte by byte is ended by one deadline, with 408") {
-  Running running;
+  Running running(short_limits());
   RawClient client(running.server.port());
   const std::string head = get("/", "X: " + std::string(500, 'a') + "\r\n");
   std::string answer;
@@ -159,7 +92,7 @@ TEST_CASE("a head trickled byte by byte is ended by one deadline, with 408") {
 }
 
 TEST_CASE("a trickled body falls under the same deadline") {
-  Running running;
+  Running running(short_limits());
   RawClient client(running.server.port());
   client.send(post("Content-Length: 1000\r\n", "a"));
   std::string answer;
@@ -195,7 +128,7 @@ TEST_CASE("a body announced beyond the limit is refused before it is sent") {
   RawClient client(running.server.port());
   client.send(post("Content-Length: 100000000\r\n", ""));
   const auto spent = time_of([&] { CHECK(status_of(client.read_answer()) == 413); });
-  CHECK(spent < Milliseconds(300));
+  CHECK(spent < Milliseconds(1000));
   client.read_to_end();
   CHECK(client.closed());
 }
@@ -295,7 +228,7 @@ TEST_CASE("Connection: close is honoured in any case of letters, and HTTP/1.0 me
     CAPTURE(head);
     RawClient client(running.server.port());
     client.send(head);
-    const std::string answer = client.read_to_end(Milliseconds(300));
+    const std::string answer = client.read_to_end(Milliseconds(2000));
     CHECK(status_of(answer) == 200);
     CHECK(header_of(answer, "Connection") == "close");
     CHECK(client.closed());
@@ -318,137 +251,4 @@ TEST_CASE("header values cannot bring in fields of their own") {
   CHECK(body_of(answer) == "/a []");
   CHECK(answer.find("Set-Cookie") == std::string::npos);
   CHECK(header_of(answer, "Content-Encoding").empty());
-}
-
-TEST_CASE("64 slow and silent clients do not keep the 65th waiting") {
-  Running running;
-  std::list<RawClient> slow;
-  for (int i = 0; i < 64; ++i) {
-    slow.emplace_back(running.server.port());
-    if (i % 3 == 1) slow.back().send("GET / HTTP/1.1\r\nHost: h\r\nX: a");
-    if (i % 3 == 2) {
-      slow.back().send(get("/kept"));
-      REQUIRE(status_of(slow.back().read_answer()) == 200);
-    }
-  }
-  const auto spent = time_of([&] { CHECK(status_of(running.ask(get("/a"))) == 200); });
-  CHECK(spent < Milliseconds(300));
-}
-
-TEST_CASE("beyond the cap the client that waits longest has to go, and the newest is answered") {
-  ServerLimits limits = quick_limits();
-  limits.connections = 8;
-  limits.request = limits.idle = Milliseconds(60'000);
-  Running running(limits);
-  std::list<RawClient> silent;
-  for (int i = 0; i < 40; ++i) silent.emplace_back(running.server.port());
-  const auto spent = time_of([&] { CHECK(status_of(running.ask(get("/a"))) == 200); });
-  CHECK(spent < Milliseconds(500));
-  silent.front().read_to_end(Milliseconds(500));
-  CHECK(silent.front().closed());
-}
-
-TEST_CASE("idle connections are closed, first ones sooner than kept ones") {
-  Running running;
-  RawClient silent(running.server.port()), kept(running.server.port());
-  kept.send(get("/a"));
-  kept.read_answer();
-  silent.read_to_end(Milliseconds(1500));
-  CHECK(silent.closed());
-  const auto spent = time_of([&] { kept.read_to_end(Milliseconds(2000)); });
-  CHECK(kept.closed());
-  CHECK(spent < Milliseconds(1500));
-}
-
-TEST_CASE("a client that does not take its answer is cut off and holds no worker") {
-  ServerLimits limits = quick_limits();
-  limits.workers = 2;
-  Running running(limits);
-  std::list<RawClient> lazy;
-  for (int i = 0; i < 6; ++i) {
-    lazy.emplace_back(running.server.port());
-    lazy.back().send(get("/big"));
-  }
-  CHECK(status_of(running.ask(get("/a"))) == 200);
-  std::this_thread::sleep_for(Milliseconds(1200));
-  CHECK(lazy.front().read_to_end(Milliseconds(2000)).size() < 20'000'000);
-  CHECK(lazy.front().closed());
-}
-
-TEST_CASE("a large answer arrives whole at a client that reads it late") {
-  Running running;
-  RawClient client(running.server.port());
-  client.send(get("/big"));
-  std::this_thread::sleep_for(Milliseconds(100));
-  CHECK(body_of(client.read_answer()).size() == 20'000'000);
-}
-
-TEST_CASE("an exception of the handler becomes 500 without its message, which is told to the log") {
-  Running running;
-  for (const std::string path : {"/throw", "/throw-int"}) {
-    const std::string answer = running.ask(get(path));
-    CHECK(status_of(answer) == 500);
-    CHECK(header_of(answer, "Content-Type") == "application/problem+json");
-    CHECK(answer.find("secret") == std::string::npos);
-    CHECK(answer.find("EXCEPTION") == std::string::npos);
-  }
-  CHECK(status_of(running.ask(get("/a"))) == 200);
-  const std::scoped_lock lock(running.mutex);
-  CHECK(running.told.find("secret of the house") != std::string::npos);
-  CHECK(running.told.find("unknown type") != std::string::npos);
-}
-
-TEST_CASE("a port in use is an error, not shared") {
-  Running running;
-  const Listen same{"127.0.0.1", running.server.port(), false};
-  const std::string expected = "127.0.0.1:" + std::to_string(running.server.port()) + " is in use";
-  CHECK_THROWS_WITH_AS(HttpServer(same, nullptr, nullptr), expected.c_str(), ListenError);
-}
-
-TEST_CASE("an address that is none, or not ours, is an error that says so") {
-  CHECK_THROWS_AS(HttpServer({"harrow", 0, false}, nullptr, nullptr), ListenError);
-  CHECK_THROWS_AS(HttpServer({"192.0.2.1", 0, false}, nullptr, nullptr), ListenError);
-}
-
-TEST_CASE("a stopped server's port is free again at once") {
-  int port = 0;
-  {
-    Running running;
-    port = running.server.port();
-    CHECK(status_of(running.ask(get("/a"))) == 200);
-  }
-  CHECK_NOTHROW(HttpServer({"127.0.0.1", port, false}, nullptr, nullptr));
-}
-
-TEST_CASE("stop is quick with clients connected, and finishes what is being answered") {
-  ServerLimits limits;  // the real ones: seconds
-  Running running(limits);
-  std::list<RawClient> clients;
-  for (int i = 0; i < 30; ++i) clients.emplace_back(running.server.port());
-  clients.front().send("GET / HTTP/1.1\r\nHost: h\r\n");
-  RawClient asking(running.server.port());
-  asking.send(get("/slow"));
-  while (running.requests == 0) std::this_thread::yield();
-  CHECK(time_of([&] { running.server.stop(); }) < Milliseconds(500));
-  CHECK(status_of(asking.read_answer()) == 200);
-  CHECK(running.server.stopping());
-}
-
-TEST_CASE("stop before start and a second stop do no harm") {
-  HttpServer server({"127.0.0.1", 0, false}, nullptr, nullptr);
-  server.stop();
-  server.stop();
-  CHECK(server.port() > 0);
-}
-
-TEST_CASE("the number of requests of one connection is bounded") {
-  ServerLimits limits = quick_limits();
-  limits.requests_per_connection = 3;
-  Running running(limits);
-  RawClient client(running.server.port());
-  client.send(get("/1") + get("/2") + get("/3"));
-  const std::string all = client.read_to_end();
-  CHECK(count_of(all, "HTTP/1.1 200") == 3);
-  CHECK(count_of(all, "Connection: close") == 1);
-  CHECK(client.closed());
 }

@@ -1,0 +1,37 @@
+#pragma once
+// Everything of HTTP put together: tokens, router, server.
+#include <filesystem>
+#include <functional>
+#include <memory>
+#include <optional>
+#include <string>
+
+#include "config/config.hpp"
+#include "daemon/engine/service.hpp"
+#include "daemon/http/alert_source.hpp"
+#include "daemon/http/router.hpp"
+#include "daemon/http/server.hpp"
+#include "daemon/http/tokens.hpp"
+
+namespace agreed {
+
+class HttpSide {
+ public:
+  /// Listens, and answers from `start` on. `service` outlives it. `tell` is for the log; called from several
+  /// threads. Throws ListenError when the address cannot be had, std::runtime_error when it may not be used
+  /// (no reader token, not opened on purpose).
+  HttpSide(const Listen& listen, std::optional<std::filesystem::path> tokens_file, Service& service,
+           AlertSource alerts, PageHook pages, std::function<void(const std::string&)> tell);
+
+  void start() { server_->start(); }
+  /// Within half a second, whoever is connected.
+  void stop() noexcept { server_->stop(); }
+  [[nodiscard]] int port() const { return server_->port(); }
+
+ private:
+  Tokens tokens_;
+  Router router_;
+  std::unique_ptr<HttpServer> server_;
+};
+
+}  // namespace agreed
