@@ -52,16 +52,21 @@ class JsonLineRows final : public RowFormat {
 };
 
 /// Cuts the array into its elements by brackets and quotes alone; what an element holds is not looked at
-/// here, so one broken element costs no other.
+/// here, so a wrong element costs no other as long as its brackets and quotes are balanced.
 class JsonArrayRows final : public RowFormat {
  public:
   JsonArrayRows(const RowMaker& maker, RowTaker& taker) : objects_(maker, taker), taker_(taker) {}
 
   void feed(std::string_view block) override {
-    for (const char c : block) {
-      if (!unusable_.empty()) return;
-      take(c);
-      if (c == '\n') ++line_;
+    while (!block.empty() && unusable_.empty()) {
+      const std::size_t plain = in_string_ && !escape_ ? plain_run(block) : 0;
+      if (plain > 0) {
+        keep(block.substr(0, plain));
+      } else {
+        take(block.front());
+        if (block.front() == '\n') ++line_;
+      }
+      block.remove_prefix(plain > 0 ? plain : 1);
     }
   }
 
@@ -77,6 +82,13 @@ class JsonArrayRows final : public RowFormat {
 
  private:
   enum class State { before, inside, after };
+
+  /// How many characters of a string come before one that means something.
+  static std::size_t plain_run(std::string_view text) {
+    std::size_t size = 0;
+    while (size < text.size() && text[size] != '"' && text[size] != '\\' && text[size] != '\n') ++size;
+    return size;
+  }
 
   void take(char c) {
     switch (state_) {
@@ -110,20 +122,19 @@ class JsonArrayRows final : public RowFormat {
     if (c == '{' || c == '[') ++depth_;
     if (c == '}' || c == ']') depth_ -= depth_ > 0 ? 1 : 0;
     in_string_ = c == '"';
-    keep(c);
+    keep({&c, 1});
   }
 
   void take_in_string(char c) {
     in_string_ = escape_ || c != '"';
     escape_ = !escape_ && c == '\\';
-    keep(c);
+    keep({&c, 1});
   }
 
-  void keep(char c) {
-    if (element_.size() < kMostLineBytes)
-      element_.push_back(c);
-    else
-      too_long_ = true;
+  void keep(std::string_view text) {
+    const std::size_t room = kMostLineBytes - element_.size();
+    too_long_ = too_long_ || text.size() > room;
+    element_.append(text.substr(0, room));
   }
 
   void end_element(char c) {

@@ -8,6 +8,15 @@ namespace {
 
 constexpr int kLooks = 2;
 
+std::optional<FileStamp> look_at(int inbox, const MovedFiles::Moved& file) {
+  try {
+    return stamp_of(inbox, file.path);
+  } catch (const std::system_error&) {
+    // The folder cannot be read now; it counts as a look, or it would be looked at for ever.
+    return file.read;
+  }
+}
+
 }  // namespace
 
 void MovedFiles::add(const std::string& path, const std::string& name, const FileStamp& read) {
@@ -26,13 +35,7 @@ std::vector<MovedFiles::Moved> MovedFiles::look(int inbox, Tick now) {
   std::vector<Moved> grown;
   std::vector<Moved> kept;
   for (Moved& file : files_) {
-    std::optional<FileStamp> stamp;
-    try {
-      stamp = stamp_of(inbox, file.path);
-    } catch (const std::system_error&) {
-      // The folder cannot be read now; it counts as a look, or it would be looked at for ever.
-      stamp = file.read;
-    }
+    const std::optional<FileStamp> stamp = look_at(inbox, file);
     if (!stamp || !stamp->regular) continue;
     if (!stamp->same_content(file.seen)) file.changed = now;
     file.seen = *stamp;
