@@ -1,0 +1,104 @@
+#pragma once
+// Read-only views of the journal for HTTP, the sender and the command line. One JournalReader is one
+// connection: one per thread.
+#include <cstdint>
+#include <filesystem>
+#include <functional>
+#include <memory>
+#include <optional>
+#include <string>
+#include <string_view>
+#include <vector>
+
+#include "daemon/journal/journal_types.hpp"
+
+namespace agreed {
+
+struct AlertQuery {
+  std::vector<std::string> states;  ///< empty: all
+  std::optional<Instant> since;     ///< changed at or after
+  int limit = 100;
+  std::int64_t before_id = 0;  ///< cursor: ids below it; 0 = from the newest
+};
+
+struct DeliveryRow {
+  std::string message, route, type, state;  ///< state: waiting, delivered, undeliverable
+  Instant created_at{};
+  std::optional<Instant> delivered_at, next_try_at;
+  int tries = 0, last_status = 0;
+  std::string last_error;
+};
+
+/// An alert with its whole record.
+struct AlertRecord {
+  std::string body;  ///< newest transition's JSON
+  std::vector<StoredTransition> history;
+  std::vector<DeliveryRow> deliveries;
+};
+
+struct RejectedRow {
+  std::int64_t file = 0;
+  std::uint32_t line = 0, column = 0;
+  std::string text, reason;
+};
+
+struct FileRow {
+  std::int64_t id = 0;
+  std::string analyzer, name, sha256, outcome, reason;
+  Instant received_at{};
+  std::int64_t accepted = 0, repeated = 0, rejected = 0;
+  std::vector<RejectedRow> rejected_rows;  ///< at most 20
+};
+
+/// One stored reading, also a voided or censored one.
+struct ReadingRow {
+  std::string analyzer, measurand, item;
+  StoredKind kind{};
+  Instant measured_at{}, received_at{};
+  std::int32_t replicate = 0;
+  std::int64_t revision = 0;  ///< 0, or how many corrections came before
+  double value = 0;
+  int censored = 0;  ///< as in JournalReading
+  bool voided = false, clock_ambiguous = false;
+  std::int64_t file = 0;
+  std::uint32_t line = 0;
+  std::string by, note;
+};
+
+/// Which readings, a page at a time, in the order of the key: item, measured_at, replicate, revision.
+struct ReadingQuery {
+  std::string analyzer, measurand;  ///< both needed
+  StoredKind kind{};
+  std::string item;                 ///< empty: all
+  std::optional<Instant> from, to;  ///< measured_at, from <= at < to
+  int limit = 100;
+  std::optional<ReadingRow> after;  ///< the last row of the page before (its item, time, replicate, revision)
+};
+
+class JournalReader {
+ public:
+  explicit JournalReader(const std::filesystem::path& folder);
+  ~JournalReader();
+  JournalReader(JournalReader&&) noexcept;
+
+  [[nodiscard]] std::vector<AlertRecord> alerts(const AlertQuery& query);
+  [[nodiscard]] std::optional<AlertRecord> alert(std::int64_t id);
+  /// The oldest undelivered, not given up message of `route`, whether due or not: order per route is kept.
+  [[nodiscard]] std::optional<OutboxMessage> next_message(std::string_view route);
+  [[nodiscard]] std::vector<FileRow> files(std::string_view outcome, int limit, std::int64_t before_id);
+  [[nodiscard]] std::vector<ReadingRow> readings(const ReadingQuery& query);
+
+  // As in Journal, as of the last commit; for replay and report.
+  void each_check(std::string_view analyzer, std::string_view item, std::string_view measurand,
+                  const std::function<void(Instant, std::int32_t replicate, double value)>& take);
+  void each_split(std::string_view analyzer, std::string_view measurand,
+                  const std::function<void(std::string_view sample, Instant, std::int32_t replicate,
+                                           double value)>& take);
+  [[nodiscard]] std::vector<JournalIntervention> interventions();
+
+ private:
+  struct Impl;
+  std::unique_ptr<Impl> impl_;
+};
+
+}  // namespace agreed
