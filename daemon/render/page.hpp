@@ -23,9 +23,9 @@ struct PageAnswer {
 /// Answers GET of `path` (decoded, without its query): `/`, `/comparisons/{id}`,
 /// `/charts/{analyzer}/{standard}/{measurand}`, `/alerts`, `/page.css`, `/page.js`; nothing for any other,
 /// and for ids that are not configured. Before the first fold every page but the assets says `starting`.
-/// `current`: open and acknowledged alerts; `resolved`: recently resolved ones, newest first. The body
-/// depends on `now` only once the snapshot has not been renewed for two minutes, so its hash serves as an
-/// ETag.
+/// No parameter of `query` has a meaning yet. `current`: open and acknowledged alerts; `resolved`: recently
+/// resolved ones, newest first. The body depends on `now` only once the snapshot has not been renewed for two
+/// minutes, so its hash serves as an ETag.
 [[nodiscard]] std::optional<PageAnswer> render_page(std::string_view path,
                                                     const std::map<std::string, std::string>& query,
                                                     const Snapshot& snapshot, std::span<const Alert> current,

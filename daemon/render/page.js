@@ -97,9 +97,12 @@
   }
 
   document.addEventListener("visibilitychange", () => { if (!document.hidden) { showStale(); turn(); } });
-  const opened = [];
+  // On paper short tables are opened; long ones would bury the figures under pages of numbers, so those print only
+  // when the reader has opened them.
+  const printedRows = 40, opened = [];
   window.addEventListener("beforeprint", () => {
-    for (const d of document.querySelectorAll("details:not([open])")) { d.open = true; opened.push(d); }
+    for (const d of document.querySelectorAll("details:not([open])"))
+      if (d.querySelectorAll("tr").length <= printedRows) { d.open = true; opened.push(d); }
   });
   window.addEventListener("afterprint", () => { for (const d of opened.splice(0)) d.open = false; });
   timer = window.setTimeout(turn, askEvery);

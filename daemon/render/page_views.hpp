@@ -38,8 +38,7 @@ struct PageInput {
 [[nodiscard]] std::string chart_badge_html(ChartState state);
 [[nodiscard]] std::string alert_html(const PageInput& input, const Alert& alert, int level);
 [[nodiscard]] std::string warnings_html(const std::vector<std::string>& warnings);
-/// Current alerts of a comparison, or of a chart; those of no comparison and no chart only when all are
-/// asked.
+/// A section with the current alerts of exactly this subject; empty when there are none.
 [[nodiscard]] std::string alerts_of_html(const PageInput& input, const Subject& subject);
 
 }  // namespace agreed

@@ -111,13 +111,18 @@ double Plot::to_y(double y) const {
   return size_.height - bottom_ - (y - y_.low) / (y_.high - y_.low) * (size_.height - top_ - bottom_);
 }
 
+std::string Plot::fitted_name(std::string_view name) const {
+  constexpr double kCharacterWidth = 8;
+  return shortened(name, static_cast<std::size_t>(size_.width / kCharacterWidth));
+}
+
 void Plot::value_axis_x(std::string_view name) {
   const double base = size_.height - bottom_;
   for (const Tick& tick : value_ticks(x_.low, x_.high, std::max(2, static_cast<int>(size_.width / 75)))) {
     axes_ += line_element(to_x(tick.at), top_, to_x(tick.at), base, "grid");
     axes_ += text_element(to_x(tick.at), base + 15, "tick middle", tick.label);
   }
-  axes_ += text_element(size_.width - right_, base + 30, "axis end", name);
+  axes_ += text_element(size_.width - right_, base + 30, "axis end", fitted_name(name));
 }
 
 void Plot::time_axis_x(bool labels) {
@@ -134,7 +139,7 @@ void Plot::value_axis_y(std::string_view name, int wanted) {
     axes_ += line_element(left_, to_y(tick.at), size_.width - right_, to_y(tick.at), "grid");
     axes_ += text_element(left_ - 6, to_y(tick.at) + 4, "tick end", tick.label);
   }
-  axes_ += text_element(4, 12, "axis", name);
+  axes_ += text_element(4, 12, "axis", fitted_name(name));
 }
 
 void Plot::band(double low, double high, std::string_view css) {

@@ -70,6 +70,7 @@ class Plot {
   };
   void path(const std::string& d, std::string_view css);
   [[nodiscard]] std::string side_labels() const;
+  [[nodiscard]] std::string fitted_name(std::string_view name) const;
 
   std::string id_;
   FigureSize size_;

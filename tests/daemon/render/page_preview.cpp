@@ -45,5 +45,7 @@ int main(int count, char** words) {
   write(folder / "starting.html", mill::starting(), "/");
   write(folder / "late.html", mill::agreeing(), "/", std::chrono::minutes(7));
   write(folder / "many.html", mill::many(40), "/");
+  const std::string odd = "An-unbroken-name-of-" + std::string(70, 'x') + " <b>&amp;";
+  write(folder / "hostile.html", mill::hostile(odd), "/");
   return 0;
 }
