@@ -31,7 +31,7 @@ spdlog::logger& logger() {
 }  // namespace
 
 void write_log(LogLevel level, std::string_view line) {
-  const std::string text = printable(line);
+  const std::string text = is_clean_text(line) ? std::string(line) : printable(line);
   static const bool kSystemd = under_systemd();
   switch (level) {
     case LogLevel::info:

@@ -36,8 +36,8 @@ PageHook pages_of(const Service& service, AlertSource alerts) {
     const std::map<std::string, std::string> parameters =
         target ? std::map<std::string, std::string>(target->parameters.begin(), target->parameters.end())
                : std::map<std::string, std::string>();
-    auto page = render_page(path, parameters, *snapshot, *snapshot->alerts, recently_resolved(alerts),
-                            now_utc());
+    auto page =
+        render_page(path, parameters, *snapshot, *snapshot->alerts, recently_resolved(alerts), now_utc());
     if (!page) return std::nullopt;
     return Page{page->status, std::move(page->content_type), std::move(page->body)};
   };

@@ -3,40 +3,41 @@
 #include <array>
 #include <cstdio>
 
+#include "core/base/utf8.hpp"
+
 namespace agreed {
 namespace {
 
-/// Length of the well-formed UTF-8 character at the front; 0 if there is none (Unicode 15, table 3-7).
-std::size_t utf8_length(std::string_view bytes) {
-  const auto byte = [&](std::size_t i) {
-    return i < bytes.size() ? static_cast<unsigned char>(bytes[i]) : 0U;
-  };
-  const auto follows = [&](std::size_t i) { return (byte(i) & 0xC0U) == 0x80U; };
-  const unsigned first = byte(0);
-  if (first < 0x80) return 1;
-  if (first >= 0xC2 && first <= 0xDF) return follows(1) ? 2 : 0;
-  if (first >= 0xE0 && first <= 0xEF) {
-    const bool overlong = first == 0xE0 && byte(1) < 0xA0, surrogate = first == 0xED && byte(1) > 0x9F;
-    return follows(1) && follows(2) && !overlong && !surrogate ? 3 : 0;
-  }
-  if (first >= 0xF0 && first <= 0xF4) {
-    const bool overlong = first == 0xF0 && byte(1) < 0x90, beyond = first == 0xF4 && byte(1) > 0x8F;
-    return follows(1) && follows(2) && follows(3) && !overlong && !beyond ? 4 : 0;
-  }
-  return 0;
+/// Length of the clean character `text` begins with; 0 if it begins with a control character or no character.
+std::size_t clean_length(std::string_view text) {
+  const std::size_t length = utf8_length(text);
+  const auto lead = static_cast<unsigned char>(text.front());
+  if (length == 1) return lead >= 0x20 && lead != 0x7F ? 1 : 0;
+  const bool is_c1 = length == 2 && lead == 0xC2 && static_cast<unsigned char>(text[1]) < 0xA0;
+  return is_c1 ? 0 : length;
 }
 
 }  // namespace
 
+bool is_clean_text(std::string_view text) {
+  while (!text.empty()) {
+    const std::size_t length = clean_length(text);
+    if (length == 0) return false;
+    text.remove_prefix(length);
+  }
+  return true;
+}
+
 std::string printable(std::string_view bytes) {
   std::string text;
+  text.reserve(bytes.size());
   while (!bytes.empty()) {
-    const std::size_t length = utf8_length(bytes);
-    const auto first = static_cast<unsigned char>(bytes.front());
-    if (length == 0 || first < 0x20 || first == 0x7F) {
-      std::array<char, 5> escaped{};
-      std::snprintf(escaped.data(), escaped.size(), "\\x%02X", first);
-      text += escaped.data();
+    const std::size_t length = bytes.front() == '\\' ? 0 : clean_length(bytes);
+    if (length == 0) {
+      std::array<char, 5> code{};
+      std::snprintf(code.data(), code.size(), "\\x%02X",
+                    static_cast<unsigned>(static_cast<unsigned char>(bytes.front())));
+      text += code.data();
       bytes.remove_prefix(1);
       continue;
     }

@@ -105,18 +105,19 @@ int serve(const Config& config, const StopSignals& signals) {
 
   // The listener comes before the engine, which needs the port for its links, and answers once there is an
   // engine.
-  Tokens tokens(config.tokens_file);
+  Tokens tokens(config.tokens_file, [](const std::string& trouble) { log_warning("tokens: {}", trouble); });
   if (reads_need_token(config.listen)) require_reader_token(config.listen, tokens);
   std::unique_ptr<Router> router;
   HttpServer server(
       config.listen, [&router](const HttpRequest& request) { return router->answer(request); },
       [](const std::string& trouble) { log_warning("http: {}", trouble); });
-  const std::string base_url = fmt::format("http://{}:{}", url_host(config.listen.address), server.port());
+  const std::string address = fmt::format("http://{}:{}", url_host(config.listen.address), server.port());
 
   std::unique_ptr<WebhookSender> sender;
-  Engine engine(config, std::move(journal), base_url, [&sender](const std::string& route) {
-    if (sender) sender->wake(route);
-  });
+  Engine engine(config, std::move(journal), config.page_url.value_or(address),
+                [&sender](const std::string& route) {
+                  if (sender) sender->wake(route);
+                });
   sender = std::make_unique<WebhookSender>(
       endpoints_of(config), outbox_of(config.state),
       [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });
@@ -125,9 +126,9 @@ int serve(const Config& config, const StopSignals& signals) {
                                                 reads_need_token(config.listen),
                                                 [&server] { return server.stopping(); }});
   server.start();
-  fmt::print("agreed {} answers on {}\n", version(), base_url);
+  fmt::print("agreed {} answers on {}\n", version(), address);
   std::fflush(stdout);
-  log_info("agreed {} answers on {}, state in {}", version(), base_url, config.state.string());
+  log_info("agreed {} answers on {}, state in {}", version(), address, config.state.string());
 
   engine.start();
   std::vector<std::unique_ptr<FolderWatcher>> watchers;
@@ -135,7 +136,6 @@ int serve(const Config& config, const StopSignals& signals) {
     watchers.push_back(
         std::make_unique<FolderWatcher>(config.intake[i], *config.settings, AnalyzerIndex{i}, engine));
   for (const auto& watcher : watchers) watcher->start();
-  sender->start();
   sd_notify(0, "READY=1");
 
   signals.wait();

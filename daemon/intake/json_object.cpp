@@ -6,6 +6,7 @@
 #include <nlohmann/json.hpp>
 
 #include "daemon/intake/text.hpp"
+#include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {

@@ -6,8 +6,8 @@
 
 namespace agreed {
 
-/// What to say after an unknown `name`: `did you mean "protein"?` if one of `known` is near (edit distance at
-/// most 2 and less than half its length), else `known are: a, b, c`, at most ten of them.
+/// What to say after an unknown `name`: `did you mean "protein"?` if one of `known` is near, else `known are:
+/// a, b, c`, at most ten of them.
 [[nodiscard]] std::string known_hint(std::string_view name, const std::vector<std::string_view>& known);
 
 }  // namespace agreed

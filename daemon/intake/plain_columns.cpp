@@ -5,6 +5,7 @@
 
 #include "daemon/intake/nearest_known.hpp"
 #include "daemon/intake/text.hpp"
+#include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {

@@ -7,6 +7,7 @@
 #include "daemon/intake/nearest_known.hpp"
 #include "daemon/intake/result_text.hpp"
 #include "daemon/intake/text.hpp"
+#include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {
@@ -149,7 +150,7 @@ class Work {
       const std::string fault = text_fault(other.text);
       if (!fault.empty()) {
         problem_column_ = other.column;
-        problem_ = escaped(other.name) + ": " + fault;
+        problem_ = printable(other.name) + ": " + fault;
         return false;
       }
       add_to_note(other.name, other.text);

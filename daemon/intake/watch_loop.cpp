@@ -5,8 +5,8 @@
 
 #include "daemon/intake/archive.hpp"
 #include "daemon/intake/file_names.hpp"
-#include "daemon/intake/intake_log.hpp"
 #include "daemon/intake/text.hpp"
+#include "daemon/log.hpp"
 
 namespace agreed {
 namespace {
@@ -51,7 +51,7 @@ void WatchLoop::run(const std::stop_token& stop) noexcept {
     } catch (const std::exception& error) {
       // Out of memory or descriptors, or a fault of ours: nothing is lost, the next scan tries again.
       try {
-        log_intake_warning(intake_.analyzer, std::string("intake is held up: ") + error.what());
+        log_warning("{}: {}", intake_.analyzer, std::string("intake is held up: ") + error.what());
         next_scan_ = Clock::now() + intake_.rescan;
         (void)inbox_.wait(next_scan_);
       } catch (...) {
@@ -186,8 +186,8 @@ void WatchLoop::look_again(Tick now, const std::stop_token& stop) {
       file->name = moved.name;
       file->moved_path = moved.path;
       file->stamp = content.stamp();
-      log_intake_warning(intake_.analyzer,
-                         in_quotes(moved.path) + " was written to after it was taken in; it is read again");
+      log_warning("{}: {}", intake_.analyzer,
+                  in_quotes(moved.path) + " was written to after it was taken in; it is read again");
       read(content, file, false, stop);
     } catch (const std::system_error& error) {
       tell_once(moved.path, in_quotes(moved.path) + " cannot be read again: " + error.what());
@@ -223,9 +223,9 @@ void WatchLoop::move(const TakenFile& file, const PieceAnswer& answer) {
     return waiting_.see(file.name, *stamp, Notice::renamed_in, Clock::now());
   if (answer.outcome == FileOutcome::rejected) {
     const Archived to = move_to_rejected(inbox_.folder(), file.name, answer.reason);
-    log_intake_warning(intake_.analyzer, in_quotes(file.name) + " was rejected, see " +
-                                             in_quotes(to.folder + "/" + to.name) +
-                                             " and its reason beside it");
+    log_warning("{}: {}", intake_.analyzer,
+                in_quotes(file.name) + " was rejected, see " + in_quotes(to.folder + "/" + to.name) +
+                    " and its reason beside it");
     return;
   }
   const Archived to = move_to_done(inbox_.folder(), file.name, answer.committed_at);
@@ -253,7 +253,7 @@ void WatchLoop::reachable(const std::string& why_not) {
   state_.reachable = why_not.empty();
   state_.reason = why_not;
   if (state_.reachable) {
-    if (!was_reachable) log_intake_info(intake_.analyzer, "watching " + in_quotes(intake_.inbox.string()));
+    if (!was_reachable) log_info("{}: {}", intake_.analyzer, "watching " + in_quotes(intake_.inbox.string()));
     told_.erase("inbox");
   } else {
     tell_once("inbox",
@@ -279,7 +279,7 @@ void WatchLoop::tell_once(const std::string& what, const std::string& words) {
   std::string& told = told_[what];
   if (told == words) return;
   told = words;
-  log_intake_warning(intake_.analyzer, words);
+  log_warning("{}: {}", intake_.analyzer, words);
 }
 
 PlainContext WatchLoop::context() const {

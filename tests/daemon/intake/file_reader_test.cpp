@@ -8,6 +8,7 @@
 
 #include "core/base/rfc3339.hpp"
 #include "daemon/intake/text.hpp"
+#include "daemon/printable.hpp"
 #include "tests/daemon/intake/watched_folder.hpp"
 
 using namespace agreed;
@@ -103,7 +104,7 @@ TEST_CASE("reading ends when no more pieces are wanted") {
 }
 
 TEST_CASE("texts of foreign bytes are shown clean") {
-  CHECK(escaped("a\nb\\\x1B[31m\xFF\xC3\xBC") == "a\\x0Ab\\x5C\\x1B[31m\\xFF\xC3\xBC");
+  CHECK(printable("a\nb\\\x1B[31m\xFF\xC3\xBC") == "a\\x0Ab\\x5C\\x1B[31m\\xFF\xC3\xBC");
   const std::string long_text = std::string(59, 'a') + "\xC3\xBC" + "bcd";
   CHECK(in_quotes(long_text) == '"' + std::string(59, 'a') + "...\"");
   CHECK(in_quotes("x") == "\"x\"");
