@@ -195,7 +195,7 @@ TEST_CASE("doubtful heads are refused") {
       {"GET / HTTP/1.1\r\nHost: h\r\nnonsense\r\n\r\n", 400},    // no colon
       {"GET / HTTP/1.1\r\nHost: h\r\nA: b\nB: c\r\n\r\n", 400},  // bare LF
       {"GET / HTTP/1.1\r\nHost: h\r\nA: b\rB: c\r\n\r\n", 400},  // bare CR
-      {std::string("GET / HTTP/1.1\r\nHost: h\r\nA: b\0c\r\n\r\n", 39), 400},
+      {std::string("GET / HTTP/1.1\r\nHost: h\r\nA: b").append(1, '\0').append("c\r\n\r\n"), 400},
       {"GET  / HTTP/1.1\r\nHost: h\r\n\r\n", 400},
       {"GET / x HTTP/1.1\r\nHost: h\r\n\r\n", 400},
       {"GET /\r\nHost: h\r\n\r\n", 400},  // HTTP/0.9
