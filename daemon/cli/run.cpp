@@ -17,11 +17,7 @@
 #include "daemon/clock.hpp"
 #include "daemon/engine/engine.hpp"
 #include "daemon/exit_codes.hpp"
-#include "daemon/http/access.hpp"
-#include "daemon/http/listener.hpp"
-#include "daemon/http/router.hpp"
-#include "daemon/http/server.hpp"
-#include "daemon/http/tokens.hpp"
+#include "daemon/http/http_side.hpp"
 #include "daemon/intake/folder_watcher.hpp"
 #include "daemon/journal/journal.hpp"
 #include "daemon/log.hpp"
@@ -92,6 +88,18 @@ std::vector<Endpoint> endpoints_of(const Config& config) {
   return endpoints;
 }
 
+/// Stops the engine before what it calls is gone, also when an exception leaves.
+class EngineStop {
+ public:
+  explicit EngineStop(Engine& engine) : engine_(engine) {}
+  ~EngineStop() { engine_.stop(); }
+  EngineStop(const EngineStop&) = delete;
+  EngineStop& operator=(const EngineStop&) = delete;
+
+ private:
+  Engine& engine_;
+};
+
 std::string url_host(const std::string& address) {
   if (address == "0.0.0.0" || address == "::") return "127.0.0.1";
   return address.find(':') == std::string::npos ? address : '[' + address + ']';
@@ -103,34 +111,21 @@ int serve(const Config& config, const StopSignals& signals) {
   const StateLock lock(config.state);
   auto journal = std::make_unique<Journal>(config.state);
 
-  // The listener comes before the engine, which needs the port for its links, and answers once there is an
-  // engine.
-  Tokens tokens(config.tokens_file, [](const std::string& trouble) { log_warning("tokens: {}", trouble); });
-  if (reads_need_token(config.listen)) require_reader_token(config.listen, tokens);
-  std::unique_ptr<Router> router;
-  HttpServer server(
-      config.listen, [&router](const HttpRequest& request) { return router->answer(request); },
-      [](const std::string& trouble) { log_warning("http: {}", trouble); });
-  const std::string address = fmt::format("http://{}:{}", url_host(config.listen.address), server.port());
-
-  std::unique_ptr<WebhookSender> sender;
-  Engine engine(config, std::move(journal), config.page_url.value_or(address),
-                [&sender](const std::string& route) {
-                  if (sender) sender->wake(route);
-                });
-  sender = std::make_unique<WebhookSender>(
-      endpoints_of(config), outbox_of(config.state),
-      [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });
+  Engine engine(config, std::move(journal));
   const AlertSource alerts = journal_alerts(config.state);
-  router = std::make_unique<Router>(RouterParts{engine, tokens, alerts, pages_of(engine, alerts),
-                                                reads_need_token(config.listen),
-                                                [&server] { return server.stopping(); }});
-  server.start();
+  HttpSide http(config.listen, config.tokens_file, engine, alerts, pages_of(engine, alerts),
+                [](const std::string& trouble) { log_warning("http: {}", trouble); });
+  WebhookSender sender(endpoints_of(config), outbox_of(config.state),
+                       [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });
+  const std::string address = fmt::format("http://{}:{}", url_host(config.listen.address), http.port());
+  http.start();
   fmt::print("agreed {} answers on {}\n", version(), address);
   std::fflush(stdout);
   log_info("agreed {} answers on {}, state in {}", version(), address, config.state.string());
 
-  engine.start();
+  engine.start(config.page_url.value_or(address),
+               [&sender](const std::string& route) { sender.wake(route); });
+  const EngineStop engine_stop(engine);
   std::vector<std::unique_ptr<FolderWatcher>> watchers;
   for (std::uint32_t i = 0; i < config.intake.size(); ++i)
     watchers.push_back(
@@ -142,8 +137,8 @@ int serve(const Config& config, const StopSignals& signals) {
   sd_notify(0, "STOPPING=1");
   log_info("stopping");
   const Deadline deadline;
-  server.stop();
-  sender->stop();
+  http.stop();
+  sender.stop();
   engine.stop();
   watchers.clear();
   return kDone;

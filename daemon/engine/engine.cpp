@@ -28,16 +28,13 @@ std::vector<Subject> subjects_of(const Settings& settings, const Range& indexes)
 
 }  // namespace
 
-Engine::Engine(const Config& config, std::unique_ptr<Journal> journal, std::string base_url,
-               std::function<void(const std::string&)> wake_sender)
+Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
     : settings_(config.settings),
       routes_(config.routes),
       alert_policy_(config.alert_policy),
       state_folder_(config.state),
-      base_url_(std::move(base_url)),
       config_sha256_(sha256_hex(config.text)),
       config_text_(config.text),
-      wake_sender_(std::move(wake_sender)),
       queue_(settings_->analyzers.size()),
       journal_(std::move(journal)),
       monitor_(settings_),
@@ -60,7 +57,9 @@ Engine::~Engine() {
   stop();
 }
 
-void Engine::start() {
+void Engine::start(std::string base_url, std::function<void(const std::string&)> wake_sender) {
+  base_url_ = std::move(base_url);
+  wake_sender_ = std::move(wake_sender);
   thread_ = std::thread([this] { run(); });
 }
 
@@ -178,7 +177,8 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   JournalHistory history(*journal_, *settings_);
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
   const auto tell_of = [&](const Finding& finding) {
-    journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject), finding_json(finding));
+    journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
+                          finding_json(finding));
     tell(book_->apply(finding, now), now);
   };
   std::for_each(outcome.findings.begin(), outcome.findings.end(), tell_of);

@@ -26,7 +26,9 @@ class Engine final : public IntakeSink, public Service {
          std::function<void(const std::string& route)> wake_sender);
   ~Engine() override;
 
-  void start();
+  /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were
+  /// committed.
+  void start(std::string base_url, std::function<void(const std::string& route)> wake_sender);
   /// Ends after the batch in hand; nothing is taken from then on.
   void stop();
 
@@ -58,10 +60,10 @@ class Engine final : public IntakeSink, public Service {
   const std::vector<Route> routes_;
   const AlertPolicy alert_policy_;
   const std::filesystem::path state_folder_;
-  const std::string base_url_;
   const std::string config_sha256_;
   const std::string config_text_;
-  const std::function<void(const std::string&)> wake_sender_;
+  std::string base_url_;
+  std::function<void(const std::string&)> wake_sender_;
 
   WorkQueue queue_;
   std::unique_ptr<Journal> journal_;
