@@ -20,10 +20,7 @@ namespace agreed {
 
 class Engine final : public IntakeSink, public Service {
  public:
-  /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were
-  /// committed.
-  Engine(const Config& config, std::unique_ptr<Journal> journal, std::string base_url,
-         std::function<void(const std::string& route)> wake_sender);
+  Engine(const Config& config, std::unique_ptr<Journal> journal);
   ~Engine() override;
 
   /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were

@@ -11,6 +11,8 @@ namespace agreed {
 template <class View>
 class LazyView {
  public:
+  /// Nothing to look at.
+  LazyView() : cell_(std::make_shared<Cell>()) {}
   explicit LazyView(std::function<View()> make) : cell_(std::make_shared<Cell>()) {
     cell_->make = std::move(make);
   }
@@ -18,6 +20,8 @@ class LazyView {
   LazyView(std::shared_ptr<const View> ready) : cell_(std::make_shared<Cell>()) {  // NOLINT: meant to convert
     cell_->view = std::move(ready);
   }
+  LazyView(std::shared_ptr<View> ready)  // NOLINT: meant to convert
+      : LazyView(std::shared_ptr<const View>(std::move(ready))) {}
 
   /// False for a view that was given as nothing.
   explicit operator bool() const {

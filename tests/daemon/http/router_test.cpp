@@ -10,6 +10,7 @@
 
 #include "daemon/http/access.hpp"
 #include "daemon/http/etag.hpp"
+#include "daemon/sha256.hpp"
 #include "tests/daemon/http/mill_snapshot.hpp"
 
 using namespace agreed;
