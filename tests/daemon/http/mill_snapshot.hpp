@@ -50,6 +50,7 @@ inline Snapshot empty_snapshot() {
   snapshot.settings = mill_settings();
   snapshot.analyzers.resize(2);
   snapshot.charts.resize(3);
+  snapshot.chart_states.resize(3);
   snapshot.comparisons.resize(1);
   return snapshot;
 }
@@ -135,6 +136,7 @@ inline Snapshot full_snapshot() {
   snapshot.analyzers[0] = {{true, "", 2, true}, at_hour(9)};
   snapshot.analyzers[1] = {{false, "the folder is not there", 0, true}, {}};
   snapshot.charts[1] = std::make_shared<const ChartView>(full_chart());
+  snapshot.chart_states[1] = ChartState::unstable;
   snapshot.comparisons[0] = std::make_shared<const ComparisonView>(full_comparison());
   snapshot.alerts_open = 1;
   snapshot.alerts_acknowledged = 1;
