@@ -56,7 +56,7 @@ ready_at=$(date +%s)
 cat <<END
 
 Harrow Mill is running; four weeks of history are in, and a shift goes by every two seconds.
-In about 15 s line2's lamp begins to wear and its protein results drift upward.
+In about 25 s line2's lamp begins to wear and its protein results drift upward.
 
   page      $address/
   status    curl -s $address/api/status

@@ -1,7 +1,7 @@
 """Harrow Mill at work: four weeks of history, then a live feed in which line2's lamp wears out.
 
 feed.py DIR history   writes the history into DIR/drop at once
-feed.py DIR live      goes on from there, a shift every two seconds until it has caught up with the clock (two calm
+feed.py DIR live      goes on from there, a shift every two seconds until it has caught up with the clock (four calm
                       days, eight days of drift), then a round every ten seconds
 """
 import itertools
@@ -13,8 +13,8 @@ import time
 from plant import CHECK_EVERY, MOISTURE, PAIR_EVERY, PROTEIN, Plant, csv, rfc3339
 
 HISTORY_SHIFTS = 28 * 3
-LIVE_SHIFTS = 10 * 3
-CALM_SHIFTS = 2 * 3
+LIVE_SHIFTS = 12 * 3
+CALM_SHIFTS = 4 * 3
 SECONDS_A_SHIFT = 2.0
 DRIFT_A_DAY = 0.06  # g/100 g of protein
 SHIFT = CHECK_EVERY
