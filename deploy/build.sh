@@ -1,10 +1,10 @@
 #!/bin/sh
 # Builds the service (Release, Ninja) into build/. Arguments go to CMake, e.g. -DAGREED_SANITIZE=address,undefined.
-# AGREED_BUILD_DIR names another build folder.
+# AGREED_BUILD_DIR names another build folder, AGREED_TARGET one target instead of all.
 set -eu
 cd "$(dirname "$0")/.."
 build=${AGREED_BUILD_DIR:-build}
 cmake -S . -B "$build" -G Ninja -DCMAKE_BUILD_TYPE=Release "$@" >"${TMPDIR:-/tmp}/agreed-cmake.$$" 2>&1 || {
   cat "${TMPDIR:-/tmp}/agreed-cmake.$$"; rm -f "${TMPDIR:-/tmp}/agreed-cmake.$$"; exit 1; }
 rm -f "${TMPDIR:-/tmp}/agreed-cmake.$$"
-cmake --build "$build"
+cmake --build "$build" ${AGREED_TARGET:+--target "$AGREED_TARGET"}

@@ -12,7 +12,7 @@ esac
 
 sh deploy/setup.sh
 echo "building (a few minutes the first time) ..."
-sh deploy/build.sh -DAGREED_TESTS=OFF -DAGREED_BENCH=OFF >/dev/null
+AGREED_TARGET=agreed sh deploy/build.sh >/dev/null
 
 mill=$(pwd)/examples/harrow-mill
 rm -rf "$mill"

@@ -1,5 +1,5 @@
 #pragma once
-// Distribution functions and quantiles, each to about 1e-13 relative; Boost.Math does the work. Tails are
+// Distribution functions and quantiles, each to about 1e-12 relative; Boost.Math does the work. Tails are
 // asked for as tails, never as 1 - p, so that small ones keep their digits. Arguments out of range throw
 // std::domain_error.
 

@@ -2,6 +2,8 @@
 
 #include <algorithm>
 
+#include <malloc.h>
+
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/log.hpp"
@@ -249,6 +251,7 @@ bool Engine::fold_from_journal(Instant now) {
     trouble_ = error.what();
     return false;
   }
+  malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
   trouble_.clear();
   return true;

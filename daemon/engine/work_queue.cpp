@@ -33,7 +33,8 @@ std::future<PieceAnswer> WorkQueue::put(FilePiece piece) {
   });
   if (stop_) throw std::runtime_error("the service is stopping");
   lane.rows += piece.rows.size();
-  lane.waiting.push_back({std::move(piece), {}});
+  const Instant oldest = oldest_of(piece);
+  lane.waiting.push_back({std::move(piece), oldest, {}});
   auto answer = lane.waiting.back().answer.get_future();
   changed_.notify_one();
   return answer;
@@ -76,13 +77,9 @@ void WorkQueue::stop() {
 
 WorkQueue::Lane* WorkQueue::oldest_lane() {
   Lane* oldest = nullptr;
-  Instant at{};
   for (Lane& lane : lanes_) {
     if (lane.waiting.empty()) continue;
-    const Instant lane_at = oldest_of(lane.waiting.front().piece);
-    if (oldest != nullptr && at <= lane_at) continue;
-    oldest = &lane;
-    at = lane_at;
+    if (oldest == nullptr || lane.waiting.front().oldest < oldest->waiting.front().oldest) oldest = &lane;
   }
   return oldest;
 }

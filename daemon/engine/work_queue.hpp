@@ -16,6 +16,7 @@ namespace agreed {
 
 struct QueuedPiece {
   FilePiece piece;
+  Instant oldest{};  ///< measured_at of its oldest row
   std::promise<PieceAnswer> answer;
 };
 

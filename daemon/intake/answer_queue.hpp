@@ -29,7 +29,7 @@ struct Stopping {};
 
 struct QueueLimits {
   std::size_t files = 1000;
-  std::size_t rows = 10'000;
+  std::size_t rows = 30'000;
 };
 
 class AnswerQueue {

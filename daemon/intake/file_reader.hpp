@@ -14,7 +14,8 @@ namespace agreed {
 
 struct ReadLimits {
   std::uint64_t file_bytes = 1ULL << 30U;
-  std::size_t piece_rows = 10'000;        ///< good and bad ones
+  std::size_t piece_rows =
+      1'000;  ///< good and bad ones; small, so that the engine can take analyzers in step
   std::size_t piece_bytes = 8ULL << 20U;  ///< of texts, about
 };
 

@@ -47,7 +47,7 @@ struct FileIdentity {
   std::string sha256;  ///< hex of the whole content
 };
 
-/// A piece of one file, at most 10,000 rows; the last piece of a file says so. If the file as a whole is
+/// A piece of one file, about a thousand rows; the last piece of a file says so. If the file as a whole is
 /// unusable there is one piece, `unusable` says why and no rows count.
 struct FilePiece {
   FileIdentity file;
