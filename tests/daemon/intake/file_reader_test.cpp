@@ -46,9 +46,9 @@ struct Reader {
 
 }  // namespace
 
-TEST_CASE("a file is cut into pieces of at most 10,000 rows and the last one says so") {
+TEST_CASE("a file is cut into pieces of at most 1,000 rows and the last one says so") {
   Reader reader;
-  reader.write(25'000);
+  reader.write(2'500);
   CHECK(reader.read() == ReadOutcome::given);
   REQUIRE(reader.pieces.size() == 3);
   std::uint32_t line = 2;
@@ -56,16 +56,16 @@ TEST_CASE("a file is cut into pieces of at most 10,000 rows and the last one say
     const FilePiece& piece = reader.pieces[i];
     CHECK(piece.piece == i);
     CHECK(piece.last == (i == 2));
-    CHECK(piece.rows.size() == (i == 2 ? 5'000 : 10'000));
+    CHECK(piece.rows.size() == (i == 2 ? 500 : 1'000));
     CHECK(piece.file.sha256 == reader.pieces[0].file.sha256);
     CHECK(piece.file.sha256.size() == 64);
     for (const Row& row : piece.rows) REQUIRE(row.line == line++);
   }
 }
 
-TEST_CASE("exactly 10,000 rows are one piece") {
+TEST_CASE("exactly 1,000 rows are one piece") {
   Reader reader;
-  reader.write(10'000);
+  reader.write(1'000);
   CHECK(reader.read() == ReadOutcome::given);
   CHECK(reader.pieces.size() == 1);
   CHECK(reader.pieces[0].last);
@@ -73,7 +73,7 @@ TEST_CASE("exactly 10,000 rows are one piece") {
 
 TEST_CASE("a file that grows while it is read is not finished") {
   Reader reader;
-  reader.write(15'000);
+  reader.write(1'500);
   const auto grow = [&] { std::ofstream(reader.temp.path() / "a.csv", std::ios::app) << csv_row("late"); };
   CHECK(reader.read(grow) == ReadOutcome::changed);
   REQUIRE(reader.pieces.size() == 1);
@@ -82,7 +82,7 @@ TEST_CASE("a file that grows while it is read is not finished") {
 
 TEST_CASE("a file rewritten in place with the same size and mtime is not finished") {
   Reader reader;
-  reader.write(15'000);
+  reader.write(1'500);
   const fs::path path = reader.temp.path() / "a.csv";
   const auto rewrite = [&] {
     const auto mtime = fs::last_write_time(path);
@@ -98,7 +98,7 @@ TEST_CASE("a file rewritten in place with the same size and mtime is not finishe
 
 TEST_CASE("reading ends when no more pieces are wanted") {
   Reader reader;
-  reader.write(35'000);
+  reader.write(3500);
   CHECK(reader.read({}, false) == ReadOutcome::given_up);
   CHECK(reader.pieces.size() == 1);
 }
