@@ -133,7 +133,8 @@ void Chart::State::accept_level(Instant at, std::vector<Finding>& findings) {
 
 void Chart::State::open(EndingRule rule, std::size_t position, const char* pattern,
                         std::vector<Finding>& findings) {
-  alarm = Alarm{rule, pattern, {}, stretch.prefix(position), 0};
+  alarm = Alarm{rule, pattern, {}, stretch.prefix(position), 0, {}};
+  alarm->score = score_of(rule);
   const Change change = describe();
   alarm->started_at = change.started_at;
   findings.push_back(finding(change));
@@ -172,6 +173,7 @@ void Chart::State::follow_up(const PointRecord& record, std::vector<Finding>& fi
       break;
     case Outcome::becomes_scatter:
       alarm->rule = EndingRule::precision;
+      alarm->score = score_of(alarm->rule);
       alarm->start = stretch.prefix(aftermath.position);
       break;
     case Outcome::ends:

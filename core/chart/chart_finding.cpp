@@ -9,7 +9,7 @@
 //   sd                of the readings before the start
 //   ratio_of_sd       sd after / before (only with two readings after)
 //   readings_before, readings_since  split at the estimated start
-//   score, limit, in_control_run_length, score_of   as of the newest reading; score_of: level or precision
+//   score, limit, in_control_run_length, score_of   as of the signal; score_of: level or precision
 // Once it has ceased: set_aside, the number of readings taken out as this alert ended.
 #include <algorithm>
 #include <cmath>
@@ -45,6 +45,10 @@ Change Chart::State::describe() const {
   return change;
 }
 
+std::optional<double> Chart::State::score_of(EndingRule rule) const {
+  return rule == EndingRule::level ? change_view().score : precision_view().score;
+}
+
 bool Chart::State::matters(const Change& change) const {
   if (change.pattern == "scatter") return true;
   double smallest = 0.5 * sd_of(change.before);
@@ -73,8 +77,7 @@ Details Chart::State::details(const Change& change) const {
   number("readings_before", static_cast<double>(change.before.n));
   number("readings_since", static_cast<double>(change.after.n));
   const bool of_level = alarm->rule == EndingRule::level;
-  const std::optional<double> score = of_level ? change_view().score : precision_view().score;
-  if (score) number("score", *score);
+  if (alarm->score) number("score", *alarm->score);
   number("limit", of_level ? level.h : precision.h);
   number("in_control_run_length", of_level ? chart().level_run_length : chart().precision_run_length);
   details.emplace_back("score_of", std::string(of_level ? "level" : "precision"));

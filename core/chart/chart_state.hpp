@@ -38,10 +38,11 @@ struct PointRecord {
 /// An open alert.
 struct Alarm {
   EndingRule rule = EndingRule::level;
-  std::string pattern;        ///< as told last
-  Instant started_at{};       ///< as told last
-  Prefix start;               ///< the stretch up to the start at the signal
-  std::int64_t readings = 0;  ///< since the signal
+  std::string pattern;          ///< as told last
+  Instant started_at{};         ///< as told last
+  Prefix start;                 ///< the stretch up to the start at the signal
+  std::int64_t readings = 0;    ///< since the signal
+  std::optional<double> score;  ///< at the signal, of the rule that signalled
 };
 
 /// The change as it is best described now.
@@ -94,6 +95,7 @@ struct Chart::State {
   /// The alert's finding as of now.
   [[nodiscard]] Finding finding(const Change& change) const;
   [[nodiscard]] Details details(const Change& change) const;
+  [[nodiscard]] std::optional<double> score_of(EndingRule rule) const;
   [[nodiscard]] bool matters(const Change& change) const;
   [[nodiscard]] Subject subject() const;
   [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
