@@ -1,8 +1,8 @@
 #include "daemon/engine/file_ledger.hpp"
 
 #include <algorithm>
-#include <charconv>
 
+#include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/printable.hpp"
@@ -11,12 +11,6 @@ namespace agreed {
 namespace {
 
 constexpr std::int64_t kReasonsKept = 1'000;
-
-std::string number(double value) {
-  char text[32];
-  const auto end = std::to_chars(text, text + sizeof text, value).ptr;
-  return {text, end};
-}
 
 int censoring_of(Censoring censored) {
   if (censored == Censoring::none) return 0;
@@ -96,10 +90,10 @@ void FileLedger::take_row(const Row& row, OpenFile& file, const Hands& hands) {
 void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands) {
   const JournalRowResult result = hands.journal.add_reading(file.id, keyed(row));
   if (result.outcome == RowOutcome::conflict) {
-    const std::string stands = number(result.stored_value);
+    const std::string stands = exact(result.stored_value);
     reject(file,
-           {row.line, 0, number(row.value),
-            "conflict: found " + number(row.value) + ", but " + stands +
+           {row.line, 0, exact(row.value),
+            "conflict: found " + exact(row.value) + ", but " + stands +
                 " stands under the same key; take that back (kind void) first"},
            hands);
     hands.findings.push_back({.kind = AlertKind::readings_conflict,
