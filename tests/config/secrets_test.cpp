@@ -1,13 +1,12 @@
 // Signing secrets: there must be one, and no message ever shows it.
 #include <cstdlib>
 #include <filesystem>
-#include <fstream>
 #include <string>
 
 #include <doctest/doctest.h>
-#include <unistd.h>
 
 #include "config/config.hpp"
+#include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
 namespace fs = std::filesystem;
@@ -16,27 +15,12 @@ namespace {
 
 constexpr const char* kSecret = "whsec_SGFycm93TWlsbEhhcnJvd01pbGw";
 
-/// A folder of this test's own, gone afterwards.
-class Folder {
- public:
-  Folder() : path_(fs::temp_directory_path() / ("agreed_secrets_" + std::to_string(getpid()))) {
-    fs::create_directories(path_);
-  }
-  Folder(const Folder&) = delete;
-  Folder& operator=(const Folder&) = delete;
-  ~Folder() {
-    std::error_code ignored;
-    fs::remove_all(path_, ignored);
-  }
+struct Folder : testing::TempFolder {
   void write(const std::string& name, const std::string& text,
              fs::perms rights = fs::perms::owner_read) const {
-    std::ofstream(path_ / name) << text;
-    fs::permissions(path_ / name, rights);
+    testing::write_file(path() / name, text);
+    fs::permissions(path() / name, rights);
   }
-  [[nodiscard]] const fs::path& path() const { return path_; }
-
- private:
-  fs::path path_;
 };
 
 ConfigResult with_route(const Folder& folder, const std::string& route) {

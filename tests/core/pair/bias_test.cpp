@@ -93,8 +93,8 @@ TEST_CASE("the identity test of an exact line") {
 TEST_CASE("single results: share within and limits") {
   const SingleResult single = single_result(0.1, 0.04, 30, 0.3);
   CHECK_CLOSE(single.share_within, normal_cdf(1.0) - normal_cdf(-2.0), 1e-12);
-  CHECK_CLOSE(single.high - 0.1, 0.2 * t_quantile(0.975, 30), 1e-12);
-  CHECK_CLOSE(0.1 - single.low, 0.2 * t_quantile(0.975, 30), 1e-12);
+  CHECK_CLOSE(single.high - 0.1, 0.2 * t_quantile_of_tail(0.025, 30), 1e-12);
+  CHECK_CLOSE(0.1 - single.low, 0.2 * t_quantile_of_tail(0.025, 30), 1e-12);
   CHECK(single_result(0.1, 0, 30, 0.3).share_within == 1);
   CHECK(single_result(0.4, 0, 30, 0.3).share_within == 0);
 }

@@ -18,7 +18,7 @@ Coverage coverage(const Plant& plant, double delta, double level, std::size_t n,
                   std::uint64_t seed) {
   std::mt19937_64 random(seed);
   const double truth = plant.intercept + (plant.slope - 1) * level;
-  const double t = t_quantile(0.975, static_cast<double>(n) - 2);
+  const double t = t_quantile_of_tail(0.025, static_cast<double>(n) - 2);
   Coverage held;
   for (int i = 0; i < runs; ++i) {
     const auto points = draw(plant, n, random);
@@ -54,7 +54,7 @@ TEST_CASE("an estimated lambda on a narrow range needs its own uncertainty in th
   std::mt19937_64 random(102);
   std::chi_squared_distribution<double> chi2(20);
   const Plant plant{11, 13, 0, 1, 0.35, 0.35};
-  const double t = t_quantile(0.975, 98);
+  const double t = t_quantile_of_tail(0.025, 98);
   double with = 0, without = 0;
   for (int i = 0; i < runs; ++i) {
     const auto points = draw(plant, 100, random);

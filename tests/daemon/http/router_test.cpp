@@ -3,7 +3,6 @@
 
 #include <chrono>
 #include <filesystem>
-#include <fstream>
 
 #include <doctest/doctest.h>
 #include <nlohmann/json.hpp>
@@ -12,6 +11,7 @@
 #include "daemon/http/etag.hpp"
 #include "daemon/sha256.hpp"
 #include "tests/daemon/http/mill_snapshot.hpp"
+#include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
 using namespace agreed::test;
@@ -21,14 +21,13 @@ namespace {
 
 /// Tokens of "rrr" (reader) and "ooo" (operator), in a folder of its own.
 struct TokensFile {
-  TokensFile()
-      : path(std::filesystem::temp_directory_path() / ("agreed-tokens-" + std::to_string(::getpid()))) {
+  TokensFile() {
     write("# who may ask\nreader wall " + sha256_hex("rrr") + "\n\noperator shift " + sha256_hex("ooo") +
           "\n");
   }
-  ~TokensFile() { std::filesystem::remove(path); }
-  void write(const std::string& text) const { std::ofstream(path) << text; }
-  std::filesystem::path path;
+  void write(const std::string& text) const { testing::write_file(path, text); }
+  testing::TempFolder folder;
+  std::filesystem::path path = folder.path() / "tokens";
 };
 
 AlertRecord record(int id) {

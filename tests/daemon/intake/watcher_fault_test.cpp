@@ -104,9 +104,8 @@ TEST_CASE("a removed inbox is noticed by its event, long before the next scan") 
 
 TEST_CASE("an empty folder on another device than before is taken for a share that is not mounted") {
   WatchedFolder folder;
-  std::string pattern = "/dev/shm/agreed-test-XXXXXX";
-  const fs::path other = ::mkdtemp(pattern.data()) != nullptr ? fs::path(pattern) : fs::path();
-  REQUIRE_FALSE(other.empty());
+  const TempFolder elsewhere("/dev/shm");
+  const fs::path& other = elsewhere.path();
   folder.intake.inbox = folder.temp.path() / "mount";
   fs::create_directory_symlink(folder.inbox, folder.intake.inbox);
   folder.start_watching();
@@ -116,7 +115,6 @@ TEST_CASE("an empty folder on another device than before is taken for a share th
   fs::remove(folder.intake.inbox);
   fs::create_directory_symlink(folder.inbox, folder.intake.inbox);
   CHECK(eventually([&] { return folder.sink.state().reachable; }));
-  fs::remove_all(other);
 }
 
 TEST_CASE("a file that cannot be moved is not read again, and moved when that is possible") {

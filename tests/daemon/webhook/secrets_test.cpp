@@ -1,11 +1,11 @@
 #include "daemon/webhook/secrets.hpp"
 
 #include <cstdlib>
-#include <fstream>
 #include <stdexcept>
 
 #include <doctest/doctest.h>
-#include <unistd.h>
+
+#include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
 
@@ -14,20 +14,18 @@ namespace {
 /// A file that is gone at the end of the test.
 class SecretFile {
  public:
-  explicit SecretFile(const std::string& content)
-      : path_(std::filesystem::temp_directory_path() / ("agreed_secret_" + std::to_string(::getpid()))) {
-    std::ofstream(path_) << content;
-  }
-  ~SecretFile() { std::filesystem::remove(path_); }
+  explicit SecretFile(const std::string& content) { testing::write_file(path(), content); }
   [[nodiscard]] Route route() const {
     Route route;
     route.name = "shift";
-    route.secret_file = path_;
+    route.secret_file = path();
     return route;
   }
 
  private:
-  std::filesystem::path path_;
+  [[nodiscard]] std::filesystem::path path() const { return folder_.path() / "secret"; }
+
+  testing::TempFolder folder_;
 };
 
 std::string refusal(const Route& route) {

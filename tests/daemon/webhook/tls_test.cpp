@@ -8,9 +8,9 @@
 #include <httplib.h>
 #include <openssl/pem.h>
 #include <openssl/x509v3.h>
-#include <unistd.h>
 
 #include "daemon/webhook/http_post.hpp"
+#include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
 
@@ -33,12 +33,10 @@ class Certificate {
     add(NID_basic_constraints, "critical,CA:TRUE");
     add(NID_subject_alt_name, "IP:127.0.0.1");
     X509_sign(x, key_.get(), EVP_sha256());
-    file_ = std::filesystem::temp_directory_path() / ("agreed_ca_" + std::to_string(::getpid()) + ".pem");
     std::FILE* out = std::fopen(file_.c_str(), "w");
     PEM_write_X509(out, x);
     std::fclose(out);
   }
-  ~Certificate() { std::filesystem::remove(file_); }
   [[nodiscard]] X509* certificate() const { return certificate_.get(); }
   [[nodiscard]] EVP_PKEY* key() const { return key_.get(); }
   [[nodiscard]] const std::filesystem::path& file() const { return file_; }
@@ -52,7 +50,8 @@ class Certificate {
 
   std::unique_ptr<EVP_PKEY, decltype(&EVP_PKEY_free)> key_;
   std::unique_ptr<X509, decltype(&X509_free)> certificate_;
-  std::filesystem::path file_;
+  testing::TempFolder folder_;
+  std::filesystem::path file_ = folder_.path() / "ca.pem";
 };
 
 }  // namespace
