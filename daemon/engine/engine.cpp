@@ -200,9 +200,7 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::string& reason,
   for (const ChartIndex chart : outcome.charts_refolded) add(monitor_.conditions(chart));
   for (const ComparisonIndex comparison : outcome.comparisons_refolded) {
     add(monitor_.conditions(comparison));
-    tell(
-        book_->admit_outliers(settings_->of(comparison).id, monitor_.comparison(comparison).set_aside(), now),
-        now);
+    tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
   }
   tell(book_->reconcile(conditions, subjects, reason, now), now);
 }
