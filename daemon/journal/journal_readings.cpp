@@ -45,7 +45,7 @@ constexpr const char* kRevisions =
 constexpr const char* kSameVoid =
     "SELECT 1 FROM voids v JOIN files f ON f.id = v.file JOIN files g ON g.id = ? WHERE v.analyzer = ? AND "
     "v.kind = ? AND v.measurand = ? AND v.item = ? AND v.measured_at = ? AND v.replicate = ? AND "
-    "v.line = ? AND v.batch < ? AND f.analyzer = g.analyzer AND "
+    "v.line = ? AND (f.id <> g.id OR v.batch < ?) AND f.analyzer = g.analyzer AND "
     "(f.sha256 = g.sha256 OR (f.name = g.name AND f.size < g.size)) LIMIT 1";
 
 void bind_key(SQLite::Statement& statement, const Key& key, int first) {
