@@ -61,6 +61,7 @@ FileLedger::OpenFile FileLedger::begin(const FilePiece& piece, Journal& journal)
   file.repeated = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
   if (const auto begun = journal.begun_file(record)) {
     file.id = begun->id;
+    file.finished = begun->finished;
     file.rejected_before = {begun->rejected.begin(), begun->rejected.end()};
   } else {
     file.id = journal.add_file(record);
@@ -168,6 +169,7 @@ void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& 
 bool FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {
   const auto before = file.rejected_before.find({bad.line, bad.column});
   const bool is_news = before == file.rejected_before.end();
+  file.news = file.news || is_news;
   if (is_news)
     hands.journal.add_rejected_row(file.id, bad.line, bad.column, bad.text, bad.reason);
   else
@@ -187,10 +189,10 @@ bool FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {
 
 PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const {
   if (file.repeated) {
-    hands.journal.finish_file(file.id, "repeated", "");
+    if (!file.finished) hands.journal.finish_file(file.id, "repeated", "");
     return {FileOutcome::repeated, hands.now, ""};
   }
-  if (file.rejected > 0)
+  if (file.rejected > 0 && (file.news || !file.finished))
     hands.findings.push_back({.kind = AlertKind::file_rejected,
                               .subject = {.analyzer = settings_->of(piece.file.analyzer).id},
                               .severity = Severity::warning,
@@ -202,7 +204,8 @@ PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, con
                                           {"rows", static_cast<double>(file.rejected)},
                                           {"good_rows", static_cast<double>(file.good)}}});
   const bool unusable = file.rejected > 0 && file.good == 0;
-  hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
+  if (!file.finished)
+    hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
   if (unusable) return {FileOutcome::rejected, hands.now, file.reasons};
   return {FileOutcome::done, hands.now, ""};
 }

@@ -47,6 +47,8 @@ class FileLedger {
     std::uint32_t first_line = 0, first_column = 0;
     std::string reasons;    ///< for NAME.reason.txt, the first thousand
     bool repeated = false;  ///< its content is known: its rows are passed over
+    bool finished = false;  ///< it was taken in whole before, and not moved
+    bool news = false;      ///< a row was rejected that was not before
     std::multiset<std::pair<std::uint32_t, std::uint32_t>>
         rejected_before;  ///< rows an interrupted reading of it rejected, line and column
   };

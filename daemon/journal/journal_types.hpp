@@ -62,9 +62,11 @@ struct JournalFile {
   std::int64_t mtime_ns = 0;
 };
 
-/// A file of which some batches were committed, and where its rejected rows so far were (line, column).
+/// A file of which some batches were committed (`finished`: all), and where its rejected rows so far were
+/// (line, column).
 struct BegunFile {
   std::int64_t id = 0;
+  bool finished = false;
   std::vector<std::pair<std::uint32_t, std::uint32_t>> rejected;
 };
 

@@ -36,6 +36,15 @@ const Alert* find(const Snapshot& snapshot, AlertKind kind) {
   return found == snapshot.alerts->end() ? nullptr : &*found;
 }
 
+void check_same_alerts(const Snapshot& a, const Snapshot& b) {
+  REQUIRE(a.alerts->size() == b.alerts->size());
+  for (std::size_t i = 0; i < a.alerts->size(); ++i) {
+    CHECK((*a.alerts)[i].kind == (*b.alerts)[i].kind);
+    CHECK((*a.alerts)[i].id == (*b.alerts)[i].id);
+    CHECK((*a.alerts)[i].details == (*b.alerts)[i].details);
+  }
+}
+
 void check_same_outcome(const Snapshot& a, const Snapshot& b) {
   IntakeTotals expected = a.totals, found = b.totals;
   expected.last_commit_at = found.last_commit_at = {};
@@ -43,12 +52,7 @@ void check_same_outcome(const Snapshot& a, const Snapshot& b) {
   CHECK(found.readings_accepted == 6);
   CHECK(found.readings_rejected == 5);
   CHECK(found.readings_repeated == 0);
-  REQUIRE(a.alerts->size() == b.alerts->size());
-  for (std::size_t i = 0; i < a.alerts->size(); ++i) {
-    CHECK((*a.alerts)[i].kind == (*b.alerts)[i].kind);
-    CHECK((*a.alerts)[i].id == (*b.alerts)[i].id);
-    CHECK((*a.alerts)[i].details == (*b.alerts)[i].details);
-  }
+  check_same_alerts(a, b);
 }
 
 }  // namespace
@@ -115,9 +119,44 @@ TEST_CASE("a file interrupted by a crash between two of its batches ends as if n
   for (const FilePiece& piece : three_pieces()) crashed.give(piece);
   check_same_outcome(*undisturbed.now(), *crashed.now());
   CHECK(crashed.values(kLowOnLine1) == undisturbed.values(kLowOnLine1));
-  // The content had rejected rows: given again, it is read again.
-  FilePiece again = three_pieces()[0];
-  CHECK(crashed.give(again).outcome == FileOutcome::more);
+}
+
+TEST_CASE("a file that a crash kept from being moved counts once, one given again counts again") {
+  Mill undisturbed, crashed;
+  undisturbed.start();
+  crashed.start();
+  for (const FilePiece& piece : three_pieces()) {
+    undisturbed.give(piece);
+    crashed.give(piece);
+  }
+  const FilePiece clean = file("clean.csv", {check(50, 10.6)});
+  CHECK(crashed.give(clean).outcome == FileOutcome::done);
+  const auto before = crashed.now()->totals;
+  crashed.start();
+  for (const FilePiece& piece : three_pieces())
+    CHECK(crashed.give(piece).outcome == (piece.last ? FileOutcome::done : FileOutcome::more));
+  CHECK(crashed.give(clean).outcome == FileOutcome::repeated);
+  CHECK(crashed.now()->totals.files_done == before.files_done);
+  CHECK(crashed.now()->totals.files_repeated == 0);
+  CHECK(crashed.now()->totals.readings_rejected == before.readings_rejected);
+  CHECK(crashed.now()->totals.readings_repeated == 0);
+  check_same_alerts(*undisturbed.now(), *crashed.now());
+
+  for (FilePiece piece : three_pieces()) {
+    piece.file.mtime_ns = 2;  // written again
+    crashed.give(piece);
+  }
+  CHECK(crashed.now()->totals.files_done == before.files_done + 1);
+  CHECK(crashed.now()->totals.readings_rejected == 2 * before.readings_rejected);
+}
+
+TEST_CASE("a rejected file that is moved back is a new one") {
+  Mill mill;
+  mill.start();
+  for (int i = 1; i <= 2; ++i) {
+    CHECK(mill.give(file("bad.csv", {}, {bad_row(2)})).outcome == FileOutcome::rejected);
+    CHECK(mill.now()->totals.files_rejected == i);
+  }
 }
 
 TEST_CASE("after a failed commit the later pieces of its file are refused until it is read from its start") {
