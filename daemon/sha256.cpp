@@ -1,29 +1,65 @@
 #include "daemon/sha256.hpp"
 
-#include <array>
 #include <stdexcept>
 
 #include <openssl/evp.h>
 
-namespace agreed {
+#include "daemon/hex.hpp"
 
-std::string to_hex(std::span<const unsigned char> bytes) {
-  constexpr std::string_view kDigits = "0123456789abcdef";
-  std::string text;
-  text.reserve(2 * bytes.size());
-  for (const unsigned char byte : bytes) {
-    text += kDigits[byte >> 4U];
-    text += kDigits[byte & 15U];
-  }
-  return text;
+namespace agreed {
+namespace {
+
+void require(bool done) {
+  if (!done) throw std::runtime_error("OpenSSL could not compute SHA-256");
+}
+
+struct Free {
+  void operator()(EVP_MD_CTX* context) const { EVP_MD_CTX_free(context); }
+  void operator()(EVP_MD* algorithm) const { EVP_MD_free(algorithm); }
+};
+
+}  // namespace
+
+// OpenSSL 3 looks an algorithm up by name at each use unless it was fetched.
+struct Sha256::Impl {
+  std::unique_ptr<EVP_MD_CTX, Free> context{EVP_MD_CTX_new()};
+  std::unique_ptr<EVP_MD, Free> algorithm{EVP_MD_fetch(nullptr, "SHA256", nullptr)};
+};
+
+Sha256::Sha256() : impl_(std::make_unique<Impl>()) {
+  require(impl_->context != nullptr && impl_->algorithm != nullptr);
+  start_over();
+}
+
+Sha256::~Sha256() = default;
+
+void Sha256::start_over() {
+  require(EVP_DigestInit_ex(impl_->context.get(), impl_->algorithm.get(), nullptr) == 1);
+}
+
+void Sha256::update(std::string_view bytes) {
+  require(EVP_DigestUpdate(impl_->context.get(), bytes.data(), bytes.size()) == 1);
+}
+
+Sha256::Digest Sha256::digest() {
+  Digest digest{};
+  require(EVP_DigestFinal_ex(impl_->context.get(), digest.data(), nullptr) == 1);
+  start_over();
+  return digest;
+}
+
+std::string Sha256::hex() {
+  return to_hex(digest());
+}
+
+Sha256::Digest sha256(std::string_view text) {
+  Sha256 hash;
+  hash.update(text);
+  return hash.digest();
 }
 
 std::string sha256_hex(std::string_view text) {
-  std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
-  unsigned length = 0;
-  if (EVP_Digest(text.data(), text.size(), digest.data(), &length, EVP_sha256(), nullptr) != 1)
-    throw std::runtime_error("SHA-256 is not available");
-  return to_hex({digest.data(), length});
+  return to_hex(sha256(text));
 }
 
 }  // namespace agreed

@@ -7,13 +7,12 @@
 #include <system_error>
 
 #include <openssl/crypto.h>
-#include <openssl/evp.h>
 #include <sys/stat.h>
 
 namespace agreed {
 namespace {
 
-using Hash = std::array<unsigned char, 32>;
+using Hash = Sha256::Digest;
 
 std::optional<Hash> hash_from_hex(const std::string& hex) {
   Hash hash{};
@@ -21,13 +20,6 @@ std::optional<Hash> hash_from_hex(const std::string& hex) {
     return std::nullopt;
   for (std::size_t i = 0; i < hash.size(); ++i)
     hash[i] = static_cast<unsigned char>(std::stoul(hex.substr(2 * i, 2), nullptr, 16));
-  return hash;
-}
-
-std::optional<Hash> hash_of(std::string_view token) {
-  Hash hash{};
-  if (EVP_Digest(token.data(), token.size(), hash.data(), nullptr, EVP_sha256(), nullptr) != 1)
-    return std::nullopt;
   return hash;
 }
 
@@ -41,13 +33,12 @@ Tokens::Tokens(std::optional<std::filesystem::path> file, std::function<void(con
     : file_(std::move(file)), tell_(std::move(tell)) {}
 
 std::optional<Role> Tokens::role_of(std::string_view token) {
-  const auto hash = hash_of(token);
+  const Hash hash = sha256(token);
   const std::scoped_lock lock(mutex_);
   read_if_changed();
   std::optional<Role> role;
-  if (!hash) return role;
   for (const Entry& entry : entries_)  // all of them, found or not: no early exit to time
-    if (CRYPTO_memcmp(entry.sha256.data(), hash->data(), hash->size()) == 0) {
+    if (CRYPTO_memcmp(entry.sha256.data(), hash.data(), hash.size()) == 0) {
       if (!role || entry.role == Role::operator_) role = entry.role;
     }
   return role;

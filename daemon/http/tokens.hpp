@@ -1,7 +1,6 @@
 #pragma once
 // Bearer tokens: a file of lines `role name sha256` holds their hashes, never the tokens themselves. It is
 // read again when it changes.
-#include <array>
 #include <filesystem>
 #include <functional>
 #include <mutex>
@@ -9,6 +8,8 @@
 #include <string>
 #include <string_view>
 #include <vector>
+
+#include "daemon/sha256.hpp"
 
 namespace agreed {
 
@@ -30,7 +31,7 @@ class Tokens {
  private:
   struct Entry {
     Role role;
-    std::array<unsigned char, 32> sha256;
+    Sha256::Digest sha256;
   };
   struct Stamp {
     std::int64_t modified_ns = 0, changed_ns = 0;

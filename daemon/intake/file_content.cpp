@@ -2,12 +2,10 @@
 
 #include <array>
 #include <cerrno>
-#include <new>
 #include <system_error>
 #include <vector>
 
 #include <fcntl.h>
-#include <openssl/evp.h>
 #include <sys/stat.h>
 
 namespace agreed {
@@ -38,40 +36,6 @@ std::optional<FileStamp> stamp_of(int folder, const std::string& name) {
   if (::fstatat(folder, name.c_str(), &status, AT_SYMLINK_NOFOLLOW) == 0) return stamp_from(status);
   if (errno == ENOENT) return std::nullopt;
   fail("stat");
-}
-
-struct Sha256::Impl {
-  EVP_MD_CTX* context = EVP_MD_CTX_new();
-};
-
-Sha256::Sha256() : impl_(std::make_unique<Impl>()) {
-  if (impl_->context == nullptr || EVP_DigestInit_ex(impl_->context, EVP_sha256(), nullptr) != 1) {
-    EVP_MD_CTX_free(impl_->context);
-    throw std::bad_alloc();
-  }
-}
-
-Sha256::~Sha256() {
-  EVP_MD_CTX_free(impl_->context);
-}
-
-void Sha256::update(std::string_view bytes) {
-  if (EVP_DigestUpdate(impl_->context, bytes.data(), bytes.size()) != 1)
-    throw std::runtime_error("SHA-256 could not be computed");
-}
-
-std::string Sha256::hex() {
-  std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
-  unsigned length = 0;
-  if (EVP_DigestFinal_ex(impl_->context, digest.data(), &length) != 1)
-    throw std::runtime_error("SHA-256 could not be computed");
-  constexpr std::string_view kDigits = "0123456789abcdef";
-  std::string text;
-  for (unsigned i = 0; i < length; ++i) {
-    text += kDigits[digest.at(i) >> 4U];
-    text += kDigits[digest.at(i) & 15U];
-  }
-  return text;
 }
 
 FileContent::FileContent(int folder, const std::string& name)

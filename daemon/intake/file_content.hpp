@@ -2,7 +2,6 @@
 // The bytes of one file in a drop folder, opened so that nothing outside the folder can be reached.
 #include <cstdint>
 #include <functional>
-#include <memory>
 #include <optional>
 #include <span>
 #include <string>
@@ -27,20 +26,6 @@ struct FileStamp {
 /// The stamp of `name` in the folder, of a symbolic link itself; nothing if it is not there. Throws
 /// std::system_error.
 [[nodiscard]] std::optional<FileStamp> stamp_of(int folder, const std::string& name);
-
-/// SHA-256 of a stream of bytes.
-class Sha256 {
- public:
-  Sha256();
-  ~Sha256();
-  void update(std::string_view bytes);
-  /// Lower-case hex; no more updates after it.
-  [[nodiscard]] std::string hex();
-
- private:
-  struct Impl;
-  std::unique_ptr<Impl> impl_;
-};
 
 class FileContent {
  public:

@@ -3,6 +3,8 @@
 #include <optional>
 #include <utility>
 
+#include "daemon/sha256.hpp"
+
 namespace agreed {
 namespace {
 

@@ -3,18 +3,11 @@
 #include <array>
 #include <bit>
 #include <charconv>
-#include <stdexcept>
-
-#include <openssl/evp.h>
 
 namespace agreed::journal {
 namespace {
 
 constexpr std::size_t kFlushAt = 32 * 1024;
-
-void require(int ok) {
-  if (ok != 1) throw std::runtime_error("SHA-256 of OpenSSL failed");
-}
 
 void append_number(std::string& to, std::int64_t value) {
   std::array<char, 20> digits{};
@@ -24,26 +17,12 @@ void append_number(std::string& to, std::int64_t value) {
 
 }  // namespace
 
-struct BatchText::Digest {
-  Digest() : context(EVP_MD_CTX_new()), algorithm(EVP_MD_fetch(nullptr, "SHA256", nullptr)) {}
-  ~Digest() {
-    EVP_MD_free(algorithm);
-    EVP_MD_CTX_free(context);
-  }
-  Digest(const Digest&) = delete;
-  Digest& operator=(const Digest&) = delete;
-
-  EVP_MD_CTX* context;
-  EVP_MD* algorithm;
-};
-
-BatchText::BatchText() : digest_(std::make_unique<Digest>()) {
+BatchText::BatchText() {
   buffer_.reserve(2 * kFlushAt);
 }
-BatchText::~BatchText() = default;
 
 void BatchText::begin(std::int64_t sequence, std::string_view previous, Instant committed_at) {
-  require(EVP_DigestInit_ex(digest_->context, digest_->algorithm, nullptr));
+  hash_.start_over();
   buffer_.clear();
   begin_row("batch");
   integer(sequence);
@@ -89,22 +68,13 @@ void BatchText::end_row() {
 }
 
 void BatchText::flush() {
-  require(EVP_DigestUpdate(digest_->context, buffer_.data(), buffer_.size()));
+  hash_.update(buffer_);
   buffer_.clear();
 }
 
 std::string BatchText::finish() {
   flush();
-  std::array<unsigned char, EVP_MAX_MD_SIZE> hash{};
-  unsigned length = 0;
-  require(EVP_DigestFinal_ex(digest_->context, hash.data(), &length));
-  std::string hex;
-  for (unsigned i = 0; i < length; ++i) {
-    constexpr std::string_view kDigits = "0123456789abcdef";
-    hex.push_back(kDigits[hash[i] >> 4U]);
-    hex.push_back(kDigits[hash[i] & 15U]);
-  }
-  return hex;
+  return hash_.hex();
 }
 
 std::string chain_start(std::string_view source, Instant created_at) {

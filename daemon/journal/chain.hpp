@@ -2,11 +2,11 @@
 // The canonical text of history rows and the SHA-256 over it that links each batch to the one before.
 // README.md documents the text; it never changes within a schema version. Private to daemon/journal.
 #include <cstdint>
-#include <memory>
 #include <string>
 #include <string_view>
 
 #include "core/base/instant.hpp"
+#include "daemon/sha256.hpp"
 
 namespace agreed::journal {
 
@@ -14,9 +14,6 @@ namespace agreed::journal {
 class BatchText {
  public:
   BatchText();
-  ~BatchText();
-  BatchText(const BatchText&) = delete;
-  BatchText& operator=(const BatchText&) = delete;
 
   /// Starts over with the head line of the batch.
   void begin(std::int64_t sequence, std::string_view previous, Instant committed_at);
@@ -36,8 +33,7 @@ class BatchText {
  private:
   void flush();
 
-  struct Digest;
-  std::unique_ptr<Digest> digest_;
+  Sha256 hash_;
   std::string buffer_;
   std::size_t row_start_ = 0;
 };

@@ -5,6 +5,7 @@
 
 #include <openssl/rand.h>
 
+#include "daemon/hex.hpp"
 #include "daemon/journal/connection.hpp"
 #include "daemon/journal/durable.hpp"
 #include "daemon/journal/schema_1.hpp"
@@ -24,14 +25,9 @@ std::string new_source() {
     throw JournalError("No random numbers for the journal's identity", true);
   b[6] = static_cast<unsigned char>((b[6] & 0x0fU) | 0x40U);
   b[8] = static_cast<unsigned char>((b[8] & 0x3fU) | 0x80U);
-  std::string text = "urn:uuid:";
-  for (std::size_t i = 0; i < b.size(); ++i) {
-    constexpr std::string_view kDigits = "0123456789abcdef";
-    if (i == 4 || i == 6 || i == 8 || i == 10) text.push_back('-');
-    text.push_back(kDigits[b[i] >> 4U]);
-    text.push_back(kDigits[b[i] & 15U]);
-  }
-  return text;
+  std::string text = to_hex(b);
+  for (const std::size_t hyphen : {8, 13, 18, 23}) text.insert(hyphen, 1, '-');
+  return "urn:uuid:" + text;
 }
 
 void write_new(const fs::path& file, Instant now) {

@@ -4,7 +4,9 @@
 
 namespace agreed {
 
-std::string subject_json(const Subject& subject) { return json_text(json_subject(subject)); }
+std::string subject_json(const Subject& subject) {
+  return json_text(json_subject(subject));
+}
 
 std::string finding_json(const Finding& finding) {
   return json_text({{"holds", finding.holds},

@@ -43,9 +43,10 @@ using Json = nlohmann::ordered_json;
 /// The parts a subject has.
 [[nodiscard]] inline Json json_subject(const Subject& subject) {
   Json json = Json::object();
-  for (const auto& [name, id] : {std::pair("analyzer", &subject.analyzer), std::pair("standard", &subject.standard),
-                                 std::pair("measurand", &subject.measurand),
-                                 std::pair("comparison", &subject.comparison), std::pair("service", &subject.service)})
+  for (const auto& [name, id] :
+       {std::pair("analyzer", &subject.analyzer), std::pair("standard", &subject.standard),
+        std::pair("measurand", &subject.measurand), std::pair("comparison", &subject.comparison),
+        std::pair("service", &subject.service)})
     if (!id->empty()) json[name] = *id;
   return json;
 }

@@ -7,6 +7,7 @@
 #include <openssl/rand.h>
 
 #include "core/base/rfc3339.hpp"
+#include "daemon/hex.hpp"
 
 namespace agreed {
 namespace {
@@ -70,13 +71,7 @@ std::string make_webhook_id() {
   std::array<unsigned char, 16> bytes{};
   if (RAND_bytes(bytes.data(), static_cast<int>(bytes.size())) != 1)
     throw std::runtime_error("the system gives no random bytes for a webhook id");
-  constexpr std::string_view digits = "0123456789abcdef";
-  std::string id = "msg_";
-  for (const unsigned char byte : bytes) {
-    id += digits[byte >> 4U];
-    id += digits[byte & 15U];
-  }
-  return id;
+  return "msg_" + to_hex(bytes);
 }
 
 }  // namespace agreed

@@ -29,14 +29,6 @@ TEST_CASE("a file that is closed after writing is taken at once and moved to the
   CHECK(pieces[0].rows[0].item == "S-1");
 }
 
-// FIPS 180-2 appendix B.1.
-TEST_CASE("the hash of a file is its SHA-256") {
-  Sha256 hash;
-  hash.update("ab");
-  hash.update("c");
-  CHECK(hash.hex() == "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad");
-}
-
 TEST_CASE("a file that is renamed in is taken at once") {
   WatchedFolder folder;
   folder.intake.rescan = std::chrono::hours(1);
