@@ -1,25 +1,18 @@
 #include "config/describe.hpp"
 
 #include <algorithm>
-#include <array>
 #include <cmath>
-#include <cstdio>
 #include <vector>
 
 #include "config/url.hpp"
 #include "config/value_text.hpp"
+#include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 #include "core/chart/run_length.hpp"
 
 namespace agreed {
 namespace {
 using settings_file::shown;
-
-std::string fixed(double value, int decimals) {
-  std::array<char, 64> text{};
-  std::snprintf(text.data(), text.size(), "%.*f", decimals, value);
-  return text.data();
-}
 
 std::string rounded(double value) {
   return fixed(value, 0);

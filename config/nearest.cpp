@@ -2,14 +2,12 @@
 
 #include <algorithm>
 
+#include "core/base/ascii.hpp"
+
 namespace agreed::settings_file {
 namespace {
 
 constexpr std::size_t kLongestCompared = 80;  // no name is longer; bounds the work on garbage
-
-char lower(char c) {
-  return c >= 'A' && c <= 'Z' ? static_cast<char>(c - 'A' + 'a') : c;
-}
 
 bool begins(std::string_view longer, std::string_view shorter) {
   constexpr std::size_t kTellingLength = 3;
@@ -24,10 +22,10 @@ std::size_t edit_distance(std::string_view a, std::string_view b) {
   for (std::size_t i = 1; i <= a.size(); ++i) {
     current[0] = i;
     for (std::size_t j = 1; j <= b.size(); ++j) {
-      const bool same = lower(a[i - 1]) == lower(b[j - 1]);
+      const bool same = ascii::lower(a[i - 1]) == ascii::lower(b[j - 1]);
       current[j] = std::min({last[j] + 1, current[j - 1] + 1, last[j - 1] + (same ? 0U : 1U)});
-      const bool exchanged =
-          i > 1 && j > 1 && lower(a[i - 1]) == lower(b[j - 2]) && lower(a[i - 2]) == lower(b[j - 1]);
+      const bool exchanged = i > 1 && j > 1 && ascii::lower(a[i - 1]) == ascii::lower(b[j - 2]) &&
+                             ascii::lower(a[i - 2]) == ascii::lower(b[j - 1]);
       if (exchanged) current[j] = std::min(current[j], before_last[j - 2] + 1);
     }
     before_last.swap(last);

@@ -5,6 +5,8 @@
 #include <charconv>
 #include <cmath>
 
+#include "core/base/ascii.hpp"
+#include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 
 namespace agreed::settings_file {
@@ -21,16 +23,9 @@ constexpr std::array<Unit, 5> kUnits = {
     {{"d", 86'400'000}, {"h", 3'600'000}, {"min", 60'000}, {"s", 1'000}, {"ms", 1}}};
 constexpr long long kLongest = 36'525LL * 86'400'000;  // 100 years
 
-bool is_digit(char c) {
-  return c >= '0' && c <= '9';
-}
-bool is_letter_or_digit(char c) {
-  return is_digit(c) || (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z');
-}
-
 std::size_t digits_at(std::string_view text, std::size_t at) {
   std::size_t count = 0;
-  while (at + count < text.size() && is_digit(text[at + count])) ++count;
+  while (at + count < text.size() && ascii::is_digit(text[at + count])) ++count;
   return count;
 }
 
@@ -111,9 +106,9 @@ std::optional<Instant> time_of(std::string_view text) {
 
 bool is_id(std::string_view text) {
   constexpr std::size_t kLongestId = 64;
-  if (text.empty() || text.size() > kLongestId || !is_letter_or_digit(text[0])) return false;
+  if (text.empty() || text.size() > kLongestId || !ascii::is_letter_or_digit(text[0])) return false;
   return std::all_of(text.begin(), text.end(),
-                     [](char c) { return is_letter_or_digit(c) || c == '_' || c == '-'; });
+                     [](char c) { return ascii::is_letter_or_digit(c) || c == '_' || c == '-'; });
 }
 
 std::string shown(std::string_view text) {
@@ -139,9 +134,7 @@ std::string shown_key(std::string_view text) {
 }
 
 std::string shown(double value) {
-  std::array<char, 32> text{};
-  const auto result = std::to_chars(text.data(), text.data() + text.size(), value);
-  return {text.data(), result.ptr};
+  return exact(value);
 }
 
 std::string shown(Duration duration) {

@@ -74,9 +74,10 @@ std::vector<AlertTransition> AlertBook::reconcile(std::span<const Finding> condi
   std::vector<AlertTransition> transitions;
   for (auto& [id, alert] : alerts_) {
     if (!is_current(alert) || !compared(alert.kind, alert.subject)) continue;
-    const bool still_holds = std::any_of(conditions.begin(), conditions.end(), [&](const Finding& finding) {
-      return finding.holds && finding.kind == alert.kind && finding.subject == alert.subject;
-    });
+    const bool still_holds =
+        std::any_of(conditions.begin(), conditions.end(), [&alert = alert](const Finding& finding) {
+          return finding.holds && finding.kind == alert.kind && finding.subject == alert.subject;
+        });
     if (!still_holds) transitions.push_back(resolve(alert, reason, now));
   }
   for (const auto& finding : conditions) {

@@ -1,22 +1,12 @@
 #include "core/alert/phrases.hpp"
 
 #include <algorithm>
-#include <array>
-#include <charconv>
 #include <cmath>
-#include <cstdio>
 
 #include "core/alert/details.hpp"
 
 namespace agreed {
 namespace {
-
-template <class... Format>
-std::string written(double value, Format... format) {
-  std::array<char, 400> text{};
-  const auto done = std::to_chars(text.data(), text.data() + text.size(), value, format...);
-  return {text.data(), done.ptr};
-}
 
 constexpr int kDigitsWithoutDecimals = 5;
 
@@ -43,36 +33,8 @@ std::string NumberStyle::range(double low, double high) const {
   return first.substr(0, first.size() - unit_.size()) + " to " + mean(high);
 }
 
-std::string fixed(double value, int decimals) {
-  auto text = written(value, std::chars_format::fixed, decimals);
-  if (text.front() == '-' && text.find_first_of("123456789") == std::string::npos) text.erase(0, 1);
-  return text;
-}
-
-std::string significant(double value, int digits) {
-  return written(value, std::chars_format::general, digits);
-}
-
 std::string percent(double share) {
   return significant(100.0 * share, 4) + " %";
-}
-
-std::string counted(double count, std::string_view one, std::string_view many) {
-  const std::string number = fixed(count, 0);
-  return number + " " + std::string(number == "1" ? one : many);
-}
-
-std::string time_words(Instant at) {
-  using namespace std::chrono;
-  const auto day = floor<days>(at);
-  const year_month_day date{day};
-  const hh_mm_ss clock{floor<minutes>(at - day)};
-  std::array<char, 40> text{};
-  const int length =
-      std::snprintf(text.data(), text.size(), "%04d-%02u-%02u %02d:%02d UTC", static_cast<int>(date.year()),
-                    static_cast<unsigned>(date.month()), static_cast<unsigned>(date.day()),
-                    static_cast<int>(clock.hours().count()), static_cast<int>(clock.minutes().count()));
-  return {text.data(), static_cast<std::size_t>(length)};
 }
 
 std::string analyzer_words(const Settings& settings, const std::string& id) {

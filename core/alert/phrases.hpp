@@ -6,6 +6,8 @@
 #include <vector>
 
 #include "core/alert/alert.hpp"
+#include "core/base/number_text.hpp"
+#include "core/base/rfc3339.hpp"
 #include "core/base/settings.hpp"
 
 namespace agreed {
@@ -36,16 +38,8 @@ class NumberStyle {
   std::optional<int> decimals_;
 };
 
-/// Fixed decimals, never "-0.00".
-[[nodiscard]] std::string fixed(double value, int decimals);
-/// At most `digits` significant digits.
-[[nodiscard]] std::string significant(double value, int digits);
 /// 0.999 -> "99.9 %".
 [[nodiscard]] std::string percent(double share);
-/// A whole number without decimals, and the word for it: "1 pair", "7 pairs".
-[[nodiscard]] std::string counted(double count, std::string_view one, std::string_view many);
-/// "2026-02-05 06:00 UTC".
-[[nodiscard]] std::string time_words(Instant at);
 /// The id, and the title behind it where there is one: "line2 (NIR analyzer, packing line 2)".
 [[nodiscard]] std::string analyzer_words(const Settings& settings, const std::string& id);
 /// " (change score 4.61, limit 4.08)", or empty.

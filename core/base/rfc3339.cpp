@@ -88,6 +88,12 @@ std::string to_rfc3339(Instant at) {
   return {text.data(), static_cast<std::size_t>(length)};
 }
 
+std::string time_words(Instant at) {
+  std::string text = to_rfc3339(at).substr(0, 16);
+  text[10] = ' ';
+  return text + " UTC";
+}
+
 std::optional<ParsedTime> parse_rfc3339(std::string_view text) {
   std::size_t at = 0;
   const auto date = date_part(text, at);

@@ -11,6 +11,9 @@ namespace agreed {
 /// "2026-01-05T06:00:00.000Z".
 [[nodiscard]] std::string to_rfc3339(Instant at);
 
+/// For people: "2026-02-05 06:00 UTC".
+[[nodiscard]] std::string time_words(Instant at);
+
 /// A date and time that may lack its offset; then `offset_given` is false and `at` is the local time read as
 /// UTC.
 struct ParsedTime {

@@ -1,8 +1,8 @@
 #include "daemon/engine/file_ledger.hpp"
 
 #include <algorithm>
-#include <charconv>
 
+#include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/printable.hpp"
@@ -11,12 +11,6 @@ namespace agreed {
 namespace {
 
 constexpr std::int64_t kReasonsKept = 1'000;
-
-std::string number(double value) {
-  char text[32];
-  const auto end = std::to_chars(text, text + sizeof text, value).ptr;
-  return {text, end};
-}
 
 int censoring_of(Censoring censored) {
   if (censored == Censoring::none) return 0;
@@ -101,10 +95,10 @@ void FileLedger::take_row(const Row& row, OpenFile& file, const Hands& hands) {
 void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands) {
   const JournalRowResult result = hands.journal.add_reading(file.id, keyed(row));
   if (result.outcome == RowOutcome::conflict) {
-    const std::string stands = number(result.stored_value);
+    const std::string stands = exact(result.stored_value);
     const bool is_news = reject(file,
-                                {row.line, 0, number(row.value),
-                                 "conflict: found " + number(row.value) + ", but " + stands +
+                                {row.line, 0, exact(row.value),
+                                 "conflict: found " + exact(row.value) + ", but " + stands +
                                      " stands under the same key; take that back (kind void) first"},
                                 hands);
     if (!is_news) return;
@@ -116,7 +110,8 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
                                           {"measurand", settings_->of(*row.measurand).id},
                                           {"measured_at", to_rfc3339(row.measured_at)},
                                           {"value", row.value},
-                                          {"stored_value", result.stored_value}}});
+                                          {"stored", result.stored_value},
+                                          {"line", static_cast<double>(row.line)}}});
     return;
   }
   ++file.good;

@@ -2,6 +2,8 @@
 
 #include <stdexcept>
 
+#include "config/url.hpp"
+#include "core/base/ascii.hpp"
 #include "daemon/http/problem.hpp"
 
 namespace agreed {
@@ -10,11 +12,7 @@ namespace {
 /// The token of "Bearer TOKEN", the scheme in any case of letters; empty when there is none.
 std::string bearer_token(const std::string& authorization) {
   constexpr std::string_view scheme = "bearer ";
-  if (authorization.size() <= scheme.size()) return {};
-  for (std::size_t i = 0; i < scheme.size(); ++i) {
-    const char c = authorization[i];
-    if ((c >= 'A' && c <= 'Z' ? static_cast<char>(c - 'A' + 'a') : c) != scheme[i]) return {};
-  }
+  if (!ascii::same_letters(std::string_view(authorization).substr(0, scheme.size()), scheme)) return {};
   const auto first = authorization.find_first_not_of(' ', scheme.size());
   return first == std::string::npos ? std::string() : authorization.substr(first);
 }
@@ -27,12 +25,8 @@ HttpAnswer unauthorized(const HttpRequest& request, const std::string& detail, c
 
 }  // namespace
 
-bool is_loopback(const std::string& address) {
-  return address == "::1" || address == "localhost" || address.substr(0, 4) == "127.";
-}
-
 bool reads_need_token(const Listen& listen) {
-  return !is_loopback(listen.address) && !listen.open_to_network;
+  return !settings_file::is_loopback(listen.address) && !listen.open_to_network;
 }
 
 void require_reader_token(const Listen& listen, Tokens& tokens) {

@@ -9,9 +9,6 @@
 
 namespace agreed {
 
-/// True for 127.0.0.0/8, ::1 and localhost.
-[[nodiscard]] bool is_loopback(const std::string& address);
-
 /// Whether reading needs a token: on an address others can reach, unless it was opened on purpose.
 [[nodiscard]] bool reads_need_token(const Listen& listen);
 

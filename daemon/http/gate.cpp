@@ -5,6 +5,8 @@
 #include <charconv>
 #include <optional>
 
+#include "core/base/ascii.hpp"
+
 namespace agreed {
 namespace {
 
@@ -34,24 +36,11 @@ bool is_field_value(std::string_view text) {
   });
 }
 
-std::string lower(std::string_view text) {
-  std::string result(text);
-  for (char& c : result)
-    if (c >= 'A' && c <= 'Z') c = static_cast<char>(c - 'A' + 'a');
-  return result;
-}
-
-std::string_view trimmed(std::string_view text) {
-  const auto first = text.find_first_not_of(" \t");
-  if (first == std::string_view::npos) return {};
-  return text.substr(first, text.find_last_not_of(" \t") - first + 1);
-}
-
 /// True if the comma-separated list `value` has `word`, whatever the case of letters.
 bool lists(std::string_view value, std::string_view word) {
   while (!value.empty()) {
     const auto comma = std::min(value.find(','), value.size());
-    if (lower(trimmed(value.substr(0, comma))) == word) return true;
+    if (ascii::lower(ascii::trimmed(value.substr(0, comma))) == word) return true;
     value.remove_prefix(std::min(comma + 1, value.size()));
   }
   return false;
@@ -93,14 +82,14 @@ Refusal read_field(std::string_view line, Gated& gated, Framing& framing) {
   const auto colon = line.find(':');
   if (colon == std::string_view::npos || !is_token(line.substr(0, colon)))
     return {400, "A header field must be: Name: value, on one line"};
-  const std::string name = lower(line.substr(0, colon));
-  const std::string_view value = trimmed(line.substr(colon + 1));
+  const std::string name = ascii::lower(line.substr(0, colon));
+  const std::string_view value = ascii::trimmed(line.substr(colon + 1));
   if (!is_field_value(value)) return {400, "A header field holds a control character."};
   if (name == "host") ++framing.hosts;
   if (name == "transfer-encoding") framing.transfer_encoding = true;
   if (name == "content-encoding") framing.content_encoding = true;
   if (name == "connection" && lists(value, "close")) gated.close = true;
-  if (name == "expect" && lower(value) == "100-continue") gated.expects_100 = true;
+  if (name == "expect" && ascii::lower(value) == "100-continue") gated.expects_100 = true;
   if (name == "content-length") {
     ++framing.lengths;
     std::size_t length = 0;

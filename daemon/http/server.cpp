@@ -13,26 +13,17 @@
 #include <sys/socket.h>
 #include <unistd.h>
 
+#include "daemon/descriptor.hpp"
 #include "daemon/http/connection.hpp"
 #include "daemon/http/exchange.hpp"
 
 namespace agreed {
 namespace {
 
-/// A descriptor that is closed with its owner.
-class Descriptor {
- public:
-  Descriptor(int descriptor, const char* what) : descriptor_(descriptor) {
-    if (descriptor < 0) throw std::system_error(errno, std::generic_category(), what);
-  }
-  ~Descriptor() { ::close(descriptor_); }
-  Descriptor(const Descriptor&) = delete;
-  Descriptor& operator=(const Descriptor&) = delete;
-  [[nodiscard]] int get() const { return descriptor_; }
-
- private:
-  int descriptor_;
-};
+Descriptor checked(int descriptor, const char* what) {
+  if (descriptor < 0) throw std::system_error(errno, std::generic_category(), what);
+  return Descriptor(descriptor);
+}
 
 // Marks of the events that are not a connection's; no object lives at these addresses.
 constexpr std::uint64_t kStop = 0, kListener = 1, kTimer = 2;
@@ -47,8 +38,8 @@ class HttpServer::Workers {
         handler_(std::move(handler)),
         tell_(std::move(tell)),
         limits_(limits),
-        queue_(::epoll_create1(EPOLL_CLOEXEC), "event queue of the HTTP server"),
-        stop_(::eventfd(0, EFD_CLOEXEC | EFD_NONBLOCK), "stop mark of the HTTP server") {}
+        queue_(checked(::epoll_create1(EPOLL_CLOEXEC), "event queue of the HTTP server")),
+        stop_(checked(::eventfd(0, EFD_CLOEXEC | EFD_NONBLOCK), "stop mark of the HTTP server")) {}
   ~Workers() { stop(); }
   Workers(const Workers&) = delete;
   Workers& operator=(const Workers&) = delete;

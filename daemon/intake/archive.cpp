@@ -11,7 +11,7 @@
 #include <sys/stat.h>
 
 #include "core/base/rfc3339.hpp"
-#include "daemon/intake/descriptor.hpp"
+#include "daemon/descriptor.hpp"
 
 namespace agreed {
 namespace {

@@ -7,7 +7,7 @@
 #include <string>
 #include <string_view>
 
-#include "daemon/intake/descriptor.hpp"
+#include "daemon/descriptor.hpp"
 
 namespace agreed {
 

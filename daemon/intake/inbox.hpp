@@ -7,7 +7,7 @@
 #include <string>
 #include <vector>
 
-#include "daemon/intake/descriptor.hpp"
+#include "daemon/descriptor.hpp"
 #include "daemon/intake/waiting_files.hpp"
 
 namespace agreed {

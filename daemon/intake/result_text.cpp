@@ -3,7 +3,7 @@
 #include <charconv>
 #include <cmath>
 
-#include "daemon/intake/text.hpp"
+#include "core/base/ascii.hpp"
 
 namespace agreed {
 
@@ -11,7 +11,7 @@ std::optional<ResultText> parse_result(std::string_view text) {
   ResultText result;
   if (!text.empty() && (text.front() == '<' || text.front() == '>')) {
     result.censored = text.front() == '<' ? Censoring::below : Censoring::above;
-    text = trimmed(text.substr(1));
+    text = ascii::trimmed(text.substr(1));
   }
   // from_chars would also read "nan" and "inf", and does not read a plus sign.
   if (text.find_first_not_of("0123456789+-.eE") != std::string_view::npos) return std::nullopt;

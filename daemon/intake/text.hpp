@@ -8,9 +8,6 @@ namespace agreed {
 /// The beginning of `text` (at most 60 bytes), made printable, in double quotes, for messages.
 [[nodiscard]] std::string in_quotes(std::string_view text);
 
-/// `text` without spaces and tabs at its ends.
-[[nodiscard]] std::string_view trimmed(std::string_view text);
-
 /// True if `text` ends with `end`, ASCII letters compared without case.
 [[nodiscard]] bool ends_with_word(std::string_view text, std::string_view end);
 

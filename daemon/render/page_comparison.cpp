@@ -33,12 +33,12 @@ std::string window_words(const ComparisonScene& scene) {
   const WindowView& window = scene.view.window;
   std::string out = counted(window.pairs, "pair", "pairs") + " in the window of at most " +
                     std::to_string(window.capacity > 0 ? window.capacity : scene.asked.window_pairs);
-  if (window.from && window.to) out += ", from " + shown_time(*window.from) + " to " + shown_time(*window.to);
+  if (window.from && window.to) out += ", from " + time_words(*window.from) + " to " + time_words(*window.to);
   out += "; " + counted(scene.view.pairs_total, "pair", "pairs") + " in all";
   if (scene.view.waiting > 0)
     out += "; " + counted(scene.view.waiting, "result waits", "results wait") + " for a partner";
   if (window.since_intervention)
-    out += ". The comparison began anew at " + shown_time(*window.since_intervention);
+    out += ". The comparison began anew at " + time_words(*window.since_intervention);
   return out + ".";
 }
 

@@ -14,7 +14,7 @@ struct ComparisonScene {
   const Measurand& measurand;
   const ComparisonView& view;
   std::string x, y;  ///< analyzer ids
-  NumberStyle style;
+  PageNumberStyle style;
   Instant at;  ///< of the snapshot
 
   /// "Protein" or the comparison's own title.
@@ -27,7 +27,7 @@ struct ChartScene {
   const Measurand& measurand;
   const ChartView& view;
   std::string analyzer, standard;
-  NumberStyle style;
+  PageNumberStyle style;
   Instant at;
 
   /// "line1, wheat-low, Protein".

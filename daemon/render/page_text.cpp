@@ -1,11 +1,9 @@
 #include "daemon/render/page_text.hpp"
 
 #include <algorithm>
-#include <array>
 #include <cmath>
-#include <cstdio>
 
-#include "core/base/rfc3339.hpp"
+#include "core/base/ascii.hpp"
 
 namespace agreed {
 namespace {
@@ -14,24 +12,11 @@ constexpr std::string_view kMinus = "\u2212";
 constexpr std::string_view kTied = "\u00a0";  // number and unit stay on one line
 constexpr int kMostDecimals = 12;
 
-bool plain(char c) {
-  return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9');
-}
-
-std::string fixed(double value, int decimals) {
-  std::array<char, 400> text{};
-  const int length =
-      std::snprintf(text.data(), text.size(), "%.*f", std::clamp(decimals, 0, kMostDecimals), value);
-  return {text.data(), static_cast<std::size_t>(length)};
-}
-
 std::string true_minus(std::string number) {
-  if (number.empty() || number.front() != '-') return number;
-  const bool zero = number.find_first_of("123456789") == std::string::npos;
-  return (zero ? std::string() : std::string(kMinus)) + number.substr(1);
+  return number.starts_with('-') ? std::string(kMinus) + number.substr(1) : number;
 }
 
-/// "2026-02-03 06:00 UTC" at the beginning of `text`, as shown_time writes it.
+/// "2026-02-03 06:00 UTC" at the beginning of `text`, as time_words writes it.
 bool begins_with_time(std::string_view text) {
   constexpr std::string_view pattern = "0000-00-00 00:00 UTC";
   if (text.size() < pattern.size()) return false;
@@ -89,7 +74,7 @@ std::string path_segment(std::string_view text) {
   constexpr std::string_view digits = "0123456789ABCDEF";
   std::string out;
   for (const char c : text) {
-    if (plain(c) || c == '-' || c == '_' || c == '.' || c == '~') {
+    if (ascii::is_letter_or_digit(c) || c == '-' || c == '_' || c == '.' || c == '~') {
       out += c;
       continue;
     }
@@ -104,7 +89,8 @@ std::string path_segment(std::string_view text) {
 std::string id_part(std::string_view text) {
   std::string out(text);
   std::replace_if(
-      out.begin(), out.end(), [](char c) { return !plain(c) && c != '-' && c != '_'; }, '-');
+      out.begin(), out.end(), [](char c) { return !ascii::is_letter_or_digit(c) && c != '-' && c != '_'; },
+      '-');
   return out;
 }
 
@@ -123,9 +109,9 @@ std::string shortened(std::string_view text, std::size_t most) {
   return std::string(text);
 }
 
-NumberStyle number_style(const Measurand& measurand, std::optional<double> scale) {
+PageNumberStyle number_style(const Measurand& measurand, std::optional<double> scale) {
   constexpr int kSignificant = 3;
-  NumberStyle style{kSignificant, measurand.unit};
+  PageNumberStyle style{kSignificant, measurand.unit};
   if (measurand.decimals)
     style.decimals = *measurand.decimals + 1;
   else if (scale && std::isfinite(*scale) && *scale > 0)
@@ -136,7 +122,7 @@ NumberStyle number_style(const Measurand& measurand, std::optional<double> scale
 
 std::string shown(double value, int decimals) {
   if (!std::isfinite(value)) return "not known";
-  return true_minus(fixed(value, decimals));
+  return true_minus(fixed(value, std::clamp(decimals, 0, kMostDecimals)));
 }
 
 std::string shown_signed(double value, int decimals) {
@@ -145,16 +131,14 @@ std::string shown_signed(double value, int decimals) {
   return std::isfinite(value) && value > 0 && !zero ? "+" + text : text;
 }
 
-std::string with_unit(double value, const NumberStyle& style) {
+std::string with_unit(double value, const PageNumberStyle& style) {
   const std::string number = shown(value, style.decimals);
   return style.unit.empty() ? number : number + std::string(kTied) + style.unit;
 }
 
 std::string shortest(double value) {
   if (!std::isfinite(value)) return "not known";
-  std::array<char, 40> text{};
-  const int length = std::snprintf(text.data(), text.size(), "%.6g", value);
-  return true_minus({text.data(), static_cast<std::size_t>(length)});
+  return true_minus(significant(value, 6));
 }
 
 std::string shown_share(double share) {
@@ -165,18 +149,8 @@ std::string shown_share(double share) {
   return fixed(percent, percent > 99 || percent < 1 ? 1 : 0) + std::string(kTied) + "%";
 }
 
-std::string counted(std::int64_t count, std::string_view one, std::string_view many) {
-  return std::to_string(count) + " " + std::string(count == 1 ? one : many);
-}
-
-std::string shown_time(Instant at) {
-  std::string text = to_rfc3339(at).substr(0, 16);
-  text[10] = ' ';
-  return text + " UTC";
-}
-
 std::string time_html(Instant at) {
-  return "<time datetime=\"" + to_rfc3339(at) + "\">" + shown_time(at) + "</time>";
+  return "<time datetime=\"" + to_rfc3339(at) + "\">" + time_words(at) + "</time>";
 }
 
 std::string shown_span(Duration span) {

@@ -6,6 +6,8 @@
 #include <string_view>
 
 #include "core/base/instant.hpp"
+#include "core/base/number_text.hpp"
+#include "core/base/rfc3339.hpp"
 #include "core/base/settings.hpp"
 
 namespace agreed {
@@ -24,29 +26,25 @@ namespace agreed {
 [[nodiscard]] std::string shortened(std::string_view text, std::size_t most);
 
 /// How numbers of one measurand are shown.
-struct NumberStyle {
+struct PageNumberStyle {
   int decimals = 3;
   std::string unit;
 };
 /// Decimals: the measurand's resolution and one more; without one, such that `scale` (an allowable difference
 /// or a standard deviation, > 0) shows three significant digits.
-[[nodiscard]] NumberStyle number_style(const Measurand& measurand, std::optional<double> scale);
+[[nodiscard]] PageNumberStyle number_style(const Measurand& measurand, std::optional<double> scale);
 
 /// "10.620", with a true minus sign and never "-0"; "not known" for what is no number.
 [[nodiscard]] std::string shown(double value, int decimals);
 /// The same with + before positive values.
 [[nodiscard]] std::string shown_signed(double value, int decimals);
 /// "10.620 g/100 g".
-[[nodiscard]] std::string with_unit(double value, const NumberStyle& style);
+[[nodiscard]] std::string with_unit(double value, const PageNumberStyle& style);
 /// As short as it goes, at most six significant digits: decision levels and tick labels.
 [[nodiscard]] std::string shortest(double value);
 /// "98 %", "99.7 %"; a share below one is never shown as 100 %, one above zero never as 0 %.
 [[nodiscard]] std::string shown_share(double share);
-/// "1 pair", "12 pairs".
-[[nodiscard]] std::string counted(std::int64_t count, std::string_view one, std::string_view many);
-
-/// "2026-02-03 06:00 UTC".
-[[nodiscard]] std::string shown_time(Instant at);
+/// time_words() as a time element.
 [[nodiscard]] std::string time_html(Instant at);
 /// "12 days", "3 h", "25 min", "a moment".
 [[nodiscard]] std::string shown_span(Duration span);

@@ -8,7 +8,7 @@ namespace {
 
 std::string since_words(const std::optional<Instant>& since, Instant now) {
   if (!since) return {};
-  return "since " + shown_time(*since) + (now > *since ? " (" + shown_span(now - *since) + ")" : "");
+  return "since " + time_words(*since) + (now > *since ? " (" + shown_span(now - *since) + ")" : "");
 }
 
 std::string at_level(const ComparisonScene& scene, double level) {
@@ -79,7 +79,7 @@ void add_more(Answer& answer, const ComparisonScene& scene) {
                           beginning_words(view.pair_chart.started_at, view.pair_chart.started_between) + ".");
   const bool agreeing_now = view.verdict == Verdict::agreement_shown;
   if (!agreeing_now && view.last_agreement)
-    answer.more.push_back("Agreement was last shown at " + shown_time(*view.last_agreement) + ".");
+    answer.more.push_back("Agreement was last shown at " + time_words(*view.last_agreement) + ".");
   if (!view.verdict_reason.empty() && view.verdict != Verdict::gathering)
     answer.more.push_back(reason_words(view.verdict_reason));
 }
@@ -179,8 +179,8 @@ std::string reason_words(const std::string& reason) {
 
 std::string beginning_words(const std::optional<Instant>& at, const std::optional<Period>& between) {
   if (between && between->first != between->last)
-    return "between " + shown_time(between->first) + " and " + shown_time(between->last);
-  if (at) return "at " + shown_time(*at);
+    return "between " + time_words(between->first) + " and " + time_words(between->last);
+  if (at) return "at " + time_words(*at);
   return "at a time not known yet";
 }
 

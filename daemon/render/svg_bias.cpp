@@ -123,7 +123,7 @@ Figure bias_figure(const ComparisonScene& scene, std::size_t index, FigureDetail
   figure.table = {figure.heading + ", newest first", {"at", "bias", "low", "high"}, {}};
   const int decimals = scene.style.decimals;
   for (auto row = rows.rbegin(); row != rows.rend(); ++row)
-    figure.table.rows.push_back({shown_time(Instant(Duration(static_cast<std::int64_t>(row->at)))),
+    figure.table.rows.push_back({time_words(Instant(Duration(static_cast<std::int64_t>(row->at)))),
                                  shown_signed(row->bias, decimals), shown_signed(row->low, decimals),
                                  shown_signed(row->high, decimals)});
   if (!full) keep_newest(figure.table, kSmallTable);

@@ -130,7 +130,7 @@ void add_signals(Plot& plot, const ChartScene& scene, const Canvas& canvas) {
   double last_word = -kWordRoom;
   for (const ChartPoint& point : canvas.points) {
     const PlotPoint at{on_axis(point.measured_at), point.value};
-    const std::string when = shown_time(point.measured_at) + ": " + with_unit(point.value, scene.style);
+    const std::string when = time_words(point.measured_at) + ": " + with_unit(point.value, scene.style);
     if (point.set_aside && point.signals.empty())
       plot.shape(Shape::circle, at, "hollow", "set aside, " + when);
     if (point.signals.empty()) continue;
@@ -256,7 +256,7 @@ void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
     if (on_axis(view.marks[i].at) >= canvas.time.low)
       figure.legend.push_back(
           {legend_line("event"),
-           std::to_string(i + 1) + ": " + spaced(view.marks[i].what) + ", " + shown_time(view.marks[i].at)});
+           std::to_string(i + 1) + ": " + spaced(view.marks[i].what) + ", " + time_words(view.marks[i].at)});
 }
 
 void add_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
@@ -266,7 +266,7 @@ void add_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
       {"measured at", "reading", "moving range", "change score", "precision score", "signals", "use"},
       {}};
   for (auto point = canvas.points.rbegin(); point != canvas.points.rend(); ++point)
-    figure.table.rows.push_back({shown_time(point->measured_at), shown(point->value, decimals),
+    figure.table.rows.push_back({time_words(point->measured_at), shown(point->value, decimals),
                                  point->moving_range ? shown(*point->moving_range, decimals) : "",
                                  point->score ? shown(*point->score, 2) : "",
                                  point->precision_score ? shown(*point->precision_score, 2) : "",

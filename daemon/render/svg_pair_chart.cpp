@@ -41,7 +41,7 @@ std::string draw(const ComparisonScene& scene, const Figure& figure, const std::
 }
 
 std::string pair_of(const ComparisonScene& scene, const std::optional<Instant>& at) {
-  return at ? shown_time(*at) : scene.view.pair_chart.state == PairChartState::learning ? "not yet" : "none";
+  return at ? time_words(*at) : scene.view.pair_chart.state == PairChartState::learning ? "not yet" : "none";
 }
 
 }  // namespace

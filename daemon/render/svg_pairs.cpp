@@ -92,7 +92,7 @@ Figure pairs_figure(const ComparisonScene& scene, FigureDetail detail) {
                   {"sample", "measured at", scene.x, scene.y, "difference", "residual", "use"},
                   {}};
   for (auto pair = pairs.rbegin(); pair != pairs.rend(); ++pair)
-    figure.table.rows.push_back({pair->sample, shown_time(pair->measured_at), shown(pair->x, decimals),
+    figure.table.rows.push_back({pair->sample, time_words(pair->measured_at), shown(pair->x, decimals),
                                  shown(pair->y, decimals), shown_signed(pair->y - pair->x, decimals),
                                  pair->residual ? shown(*pair->residual, 2) : "", pair_note(*pair)});
   if (!full) keep_newest(figure.table, kSmallTable);

@@ -3,8 +3,8 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
-#include <cstdio>
 
+#include "core/base/number_text.hpp"
 #include "daemon/render/page_text.hpp"
 #include "daemon/render/svg_ticks.hpp"
 
@@ -14,11 +14,9 @@ namespace {
 constexpr double kFarOff = 1e5;  // positions beyond it are clipped anyway and only lengthen the text
 
 std::string position(double value) {
-  std::array<char, 32> text{};
-  const int length = std::snprintf(text.data(), text.size(), "%.1f", std::clamp(value, -kFarOff, kFarOff));
-  std::string number(text.data(), static_cast<std::size_t>(length));
+  std::string number = fixed(std::clamp(value, -kFarOff, kFarOff), 1);
   if (number.ends_with(".0")) number.resize(number.size() - 2);
-  return number == "-0" ? "0" : number;
+  return number;
 }
 
 std::string attribute(std::string_view name, std::string_view value) {

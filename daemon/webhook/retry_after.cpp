@@ -4,6 +4,8 @@
 #include <array>
 #include <charconv>
 
+#include "core/base/ascii.hpp"
+
 namespace agreed {
 namespace {
 using namespace std::chrono;
@@ -44,9 +46,8 @@ std::optional<Instant> http_date(std::string_view text) {
 }  // namespace
 
 std::optional<Duration> parse_retry_after(std::string_view header, Instant now) {
-  const auto first = header.find_first_not_of(" \t");
-  if (first == std::string_view::npos) return std::nullopt;
-  header = header.substr(first, header.find_last_not_of(" \t") - first + 1);
+  header = ascii::trimmed(header);
+  if (header.empty()) return std::nullopt;
   if (header.find_first_not_of("0123456789") == std::string_view::npos) {
     const auto count = whole(header);  // nothing: more than an int holds
     return count ? std::min<Duration>(seconds(*count), kLongest) : kLongest;

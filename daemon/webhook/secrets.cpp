@@ -5,23 +5,19 @@
 #include <sstream>
 #include <stdexcept>
 
+#include "core/base/ascii.hpp"
+
 namespace agreed {
 namespace {
 
 constexpr const char* kWhiteSpace = " \t\r\n\v\f";
-
-std::string trimmed(const std::string& text) {
-  const auto first = text.find_first_not_of(kWhiteSpace);
-  if (first == std::string::npos) return "";
-  return text.substr(first, text.find_last_not_of(kWhiteSpace) - first + 1);
-}
 
 std::vector<std::string> lines_of(const std::filesystem::path& file) {
   std::ifstream in(file);
   if (!in) throw std::runtime_error("secret file " + file.string() + " cannot be read");
   std::vector<std::string> secrets;
   for (std::string line; std::getline(in, line);)
-    if (auto secret = trimmed(line); !secret.empty()) secrets.push_back(std::move(secret));
+    if (const auto secret = ascii::trimmed(line, kWhiteSpace); !secret.empty()) secrets.emplace_back(secret);
   if (in.bad()) throw std::runtime_error("secret file " + file.string() + " cannot be read");
   return secrets;
 }
