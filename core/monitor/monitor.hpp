@@ -84,6 +84,11 @@ class Monitor {
   };
   using Trace = std::vector<Repeatability>;
   using Traces = std::vector<std::optional<Trace>>;  ///< by ChartIndex
+  struct FoldedChart {
+    Chart fold;
+    std::optional<std::pair<Instant, std::int32_t>> last;
+    Trace trace;  ///< repeatability after each event
+  };
 
   void mark_late(const std::vector<Event>& batch);
   void mark_late(const CheckReading& reading);
@@ -103,18 +108,19 @@ class Monitor {
   void fold(const DuePair& due, MonitorOutcome& outcome);
   [[nodiscard]] bool of_refolded(const Subject& subject, const MonitorOutcome& outcome) const;
   void refold_stale(History& history, MonitorOutcome& outcome);
-  void refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions);
+  /// A chart folded on the side, from the beginning.
+  [[nodiscard]] FoldedChart fold_chart(ChartIndex index, History& history,
+                                       const std::vector<Intervention>& interventions) const;
+  Trace refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions);
   /// Appends the findings of pairs set aside that were not so in the fold before.
   void refold_and_compare(ComparisonIndex index, History& history,
-                          const std::vector<Intervention>& interventions, MonitorOutcome& outcome,
-                          std::vector<Finding>& newly_set_aside);
+                          const std::vector<Intervention>& interventions, Traces& traces,
+                          MonitorOutcome& outcome, std::vector<Finding>& newly_set_aside);
   /// The findings of all pairs set aside.
   std::vector<Finding> refold(ComparisonIndex index, History& history,
-                              const std::vector<Intervention>& interventions);
+                              const std::vector<Intervention>& interventions, Traces& traces);
   [[nodiscard]] std::vector<Pair> pair_all(ComparisonStream& stream, ComparisonIndex index,
                                            History& history) const;
-  [[nodiscard]] Trace trace_of(ChartIndex index, History& history,
-                               const std::vector<Intervention>& interventions) const;
   [[nodiscard]] std::optional<ErrorRatio> ratio_at(const ComparisonStream& stream, ComparisonIndex index,
                                                    Instant at, const Traces* traces) const;
   [[nodiscard]] std::optional<ErrorVariance> variance_at(std::span<const ChartIndex> charts, Instant at,
