@@ -14,6 +14,13 @@ Instant time_of(const Event& event) {
   return std::get<Intervention>(event).at;
 }
 
+Instant oldest_of(const SampleRows& rows) {
+  Instant oldest{Duration::max()};
+  if (!rows.x.empty()) oldest = std::min(oldest, rows.x.front().at);
+  if (!rows.y.empty()) oldest = std::min(oldest, rows.y.front().at);
+  return oldest;
+}
+
 bool takes(const ComparisonSettings& comparison, const SplitReading& reading) {
   return reading.measurand == comparison.measurand &&
          (reading.analyzer == comparison.x || reading.analyzer == comparison.y);
@@ -57,6 +64,7 @@ MonitorOutcome Monitor::apply(std::vector<Event> batch, History& history) {
   std::sort(batch.begin(), batch.end(), happens_before);
   mark_late(batch);
   const std::vector<DuePair> due = pair_up(batch, history);
+  mark_unjudged(due);
   MonitorOutcome outcome;
   auto next = due.begin();
   for (const Event& event : batch) {
@@ -131,6 +139,17 @@ void Monitor::mark_late(const Intervention& intervention) {
   }
 }
 
+void Monitor::mark_unjudged(const std::vector<DuePair>& due) {
+  for (const DuePair& pair : due) {
+    ComparisonStream& stream = comparisons_[pair.comparison.value];
+    if (stream.given || stream.stale) continue;
+    for (const auto* charts : {&stream.x_charts, &stream.y_charts})
+      for (const ChartIndex chart : *charts)
+        if (charts_[chart.value].stale || !charts_[chart.value].fold.repeatability_at(pair.pair.at))
+          stream.stale = true;
+  }
+}
+
 std::vector<Monitor::DuePair> Monitor::pair_up(const std::vector<Event>& batch, History& history) {
   std::vector<DuePair> due;
   std::vector<const SplitReading*> rows;
@@ -169,10 +188,14 @@ void Monitor::pair_up_sample(ComparisonIndex index, std::span<const SplitReading
   const ComparisonSettings& settings = settings_->of(index);
   const std::string& sample = rows.front()->sample;
   SampleRows known;
-  if (const SampleRows* remembered = stream.memory.find(sample))
+  // A sample id that came again may be remembered without its rows of long ago.
+  const SampleRows* remembered = stream.memory.find(sample);
+  if (remembered != nullptr && oldest_of(*remembered) <= rows.front()->measured_at)
     known = *remembered;
   else if (stream.memory.may_have_forgotten(rows.front()->measured_at))
     known = forgotten_rows(index, rows, history);
+  else if (remembered != nullptr)
+    known = *remembered;
   const auto folded = pairs_of(sample, known, settings.pair_within);
   for (const SplitReading* row : rows)
     known.add(row->analyzer == settings.x, {row->measured_at, row->replicate, row->value});
@@ -245,12 +268,9 @@ void Monitor::fold(const Event& event, MonitorOutcome& outcome) {
 void Monitor::fold(const DuePair& due, MonitorOutcome& outcome) {
   ComparisonStream& stream = comparisons_[due.comparison.value];
   if (stream.stale) return;
-  const auto ratio = ratio_at(stream, due.comparison, due.pair.at, nullptr);
-  if (!ratio) {
-    stream.stale = true;
-    return;
-  }
-  stream.fold.add(due.pair, *ratio, outcome.findings);
+  // There is one: see mark_unjudged.
+  const ErrorRatio ratio = ratio_at(stream, due.comparison, due.pair.at, nullptr).value();
+  stream.fold.add(due.pair, ratio, outcome.findings);
   stream.last = {due.pair.at, due.pair.sample};
   outcome.comparisons_changed.insert(due.comparison);
 }

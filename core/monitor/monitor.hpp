@@ -2,10 +2,12 @@
 // The monitor: a fold over events. Same settings and same set of events = same state, to the last bit, on
 // every machine, in whatever batches and order the events arrived.
 #include <cstdint>
+#include <map>
 #include <memory>
 #include <optional>
 #include <set>
 #include <span>
+#include <string>
 #include <vector>
 
 #include "core/base/event.hpp"
@@ -25,6 +27,8 @@ struct MonitorOutcome {
   std::set<ComparisonIndex> comparisons_changed;
   std::set<ChartIndex> charts_refolded;  ///< their conditions must be compared with the alert book
   std::set<ComparisonIndex> comparisons_refolded;
+  /// Of those folded again: the samples set aside anywhere in their history.
+  std::map<ComparisonIndex, std::vector<std::string>> set_aside;
 };
 
 /// Whom a chart's or a comparison's alerts are about.
@@ -80,10 +84,18 @@ class Monitor {
   };
   using Trace = std::vector<Repeatability>;
   using Traces = std::vector<std::optional<Trace>>;  ///< by ChartIndex
+  struct FoldedChart {
+    Chart fold;
+    std::optional<std::pair<Instant, std::int32_t>> last;
+    Trace trace;  ///< repeatability after each event
+  };
 
   void mark_late(const std::vector<Event>& batch);
   void mark_late(const CheckReading& reading);
   void mark_late(const Intervention& intervention);
+  /// Streams with a pair due whose error ratio the charts, as they stand, cannot tell: stale. Before anything
+  /// is folded, so that what a stream knew before the batch is still there to compare with.
+  void mark_unjudged(const std::vector<DuePair>& due);
   [[nodiscard]] std::vector<DuePair> pair_up(const std::vector<Event>& batch, History& history);
   void pair_up(ComparisonIndex index, std::span<const SplitReading*> rows, History& history,
                std::vector<DuePair>& due);
@@ -96,14 +108,19 @@ class Monitor {
   void fold(const DuePair& due, MonitorOutcome& outcome);
   [[nodiscard]] bool of_refolded(const Subject& subject, const MonitorOutcome& outcome) const;
   void refold_stale(History& history, MonitorOutcome& outcome);
-  void refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions);
-  /// The findings of pairs set aside that were not so in the fold before.
+  /// A chart folded on the side, from the beginning.
+  [[nodiscard]] FoldedChart fold_chart(ChartIndex index, History& history,
+                                       const std::vector<Intervention>& interventions) const;
+  Trace refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions);
+  /// Appends the findings of pairs set aside that were not so in the fold before.
+  void refold_and_compare(ComparisonIndex index, History& history,
+                          const std::vector<Intervention>& interventions, Traces& traces,
+                          MonitorOutcome& outcome, std::vector<Finding>& newly_set_aside);
+  /// The findings of all pairs set aside.
   std::vector<Finding> refold(ComparisonIndex index, History& history,
-                              const std::vector<Intervention>& interventions);
+                              const std::vector<Intervention>& interventions, Traces& traces);
   [[nodiscard]] std::vector<Pair> pair_all(ComparisonStream& stream, ComparisonIndex index,
                                            History& history) const;
-  [[nodiscard]] Trace trace_of(ChartIndex index, History& history,
-                               const std::vector<Intervention>& interventions) const;
   [[nodiscard]] std::optional<ErrorRatio> ratio_at(const ComparisonStream& stream, ComparisonIndex index,
                                                    Instant at, const Traces* traces) const;
   [[nodiscard]] std::optional<ErrorVariance> variance_at(std::span<const ChartIndex> charts, Instant at,

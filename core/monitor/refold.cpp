@@ -1,19 +1,23 @@
 // The part of the monitor that folds streams again from their history.
 #include <algorithm>
 #include <iterator>
+#include <string_view>
 #include <tuple>
 
+#include "core/base/rfc3339.hpp"
 #include "core/monitor/monitor.hpp"
 
 namespace agreed {
 namespace {
 
-/// True if the finding's sample is one of `samples`.
-bool names_one_of(const Finding& finding, const std::vector<std::string>& samples) {
+std::string text_of(const Finding& finding, std::string_view detail) {
   for (const auto& [name, value] : finding.details)
-    if (name == "sample")
-      return std::find(samples.begin(), samples.end(), std::get<std::string>(value)) != samples.end();
-  return false;
+    if (name == detail) return std::get<std::string>(value);
+  return "";
+}
+
+bool contains(const std::vector<std::string>& samples, const std::string& sample) {
+  return std::find(samples.begin(), samples.end(), sample) != samples.end();
 }
 
 }  // namespace
@@ -24,17 +28,21 @@ void Monitor::refold_stale(History& history, MonitorOutcome& outcome) {
       std::none_of(comparisons_.begin(), comparisons_.end(), is_stale))
     return;
   const auto interventions = history.interventions();
+  Traces traces(charts_.size());
   for (std::uint32_t i = 0; i < charts_.size(); ++i) {
     if (!charts_[i].stale) continue;
-    refold(ChartIndex{i}, history, interventions);
+    Trace trace = refold(ChartIndex{i}, history, interventions);
+    const auto& readers = charts_[i].read_by;
+    if (std::any_of(readers.begin(), readers.end(),
+                    [&](ComparisonIndex c) { return comparisons_[c.value].stale; }))
+      traces[i] = std::move(trace);
     outcome.charts_changed.insert({i});
     outcome.charts_refolded.insert({i});
   }
   std::vector<Finding> newly_set_aside;
   for (std::uint32_t i = 0; i < comparisons_.size(); ++i) {
     if (!comparisons_[i].stale) continue;
-    for (Finding& finding : refold(ComparisonIndex{i}, history, interventions))
-      newly_set_aside.push_back(std::move(finding));
+    refold_and_compare({i}, history, interventions, traces, outcome, newly_set_aside);
     outcome.comparisons_changed.insert({i});
     outcome.comparisons_refolded.insert({i});
   }
@@ -51,43 +59,38 @@ bool Monitor::of_refolded(const Subject& subject, const MonitorOutcome& outcome)
                      [&](ComparisonIndex index) { return subject == subject_of(*settings_, index); });
 }
 
-void Monitor::refold(ChartIndex index, History& history, const std::vector<Intervention>& interventions) {
-  ChartStream& stream = charts_[index.value];
-  stream.fold = Chart(*settings_, index);
-  stream.last.reset();
-  std::vector<Finding> silent;
-  auto next = interventions.begin();
-  for (const CheckReading& reading : history.checks(index)) {
-    for (; next != interventions.end() && next->at <= reading.measured_at; ++next)
-      if (next->analyzer == reading.analyzer) stream.fold.add(*next, silent);
-    stream.fold.add(reading, silent);
-    stream.last = {reading.measured_at, reading.replicate};
-    silent.clear();
-  }
-  for (; next != interventions.end(); ++next)
-    if (next->analyzer == settings_->of(index).analyzer) stream.fold.add(*next, silent);
-  stream.stale = false;
-}
-
-Monitor::Trace Monitor::trace_of(ChartIndex index, History& history,
-                                 const std::vector<Intervention>& interventions) const {
-  Chart scratch(*settings_, index);
-  Trace trace;
+Monitor::FoldedChart Monitor::fold_chart(ChartIndex index, History& history,
+                                         const std::vector<Intervention>& interventions) const {
+  FoldedChart folded{Chart(*settings_, index), {}, {}};
   std::vector<Finding> silent;
   const auto add = [&](const auto& event, Instant at) {
-    scratch.add(event, silent);
+    folded.fold.add(event, silent);
     silent.clear();
-    Repeatability now = scratch.repeatability();
-    now.at = at;
-    trace.push_back(now);
+    folded.trace.push_back(folded.fold.repeatability());
+    folded.trace.back().at = at;
   };
   auto next = interventions.begin();
+  const auto add_interventions_until = [&](std::optional<Instant> at) {
+    for (; next != interventions.end() && (!at || next->at <= *at); ++next)
+      if (next->analyzer == settings_->of(index).analyzer) add(*next, next->at);
+  };
   for (const CheckReading& reading : history.checks(index)) {
-    for (; next != interventions.end() && next->at <= reading.measured_at; ++next)
-      if (next->analyzer == reading.analyzer) add(*next, next->at);
+    add_interventions_until(reading.measured_at);
     add(reading, reading.measured_at);
+    folded.last = {reading.measured_at, reading.replicate};
   }
-  return trace;
+  add_interventions_until(std::nullopt);
+  return folded;
+}
+
+Monitor::Trace Monitor::refold(ChartIndex index, History& history,
+                               const std::vector<Intervention>& interventions) {
+  FoldedChart folded = fold_chart(index, history, interventions);
+  ChartStream& stream = charts_[index.value];
+  stream.fold = std::move(folded.fold);
+  stream.last = folded.last;
+  stream.stale = false;
+  return std::move(folded.trace);
 }
 
 std::vector<Pair> Monitor::pair_all(ComparisonStream& stream, ComparisonIndex index, History& history) const {
@@ -122,38 +125,56 @@ std::vector<Pair> Monitor::pair_all(ComparisonStream& stream, ComparisonIndex in
   return pairs;
 }
 
+void Monitor::refold_and_compare(ComparisonIndex index, History& history,
+                                 const std::vector<Intervention>& interventions, Traces& traces,
+                                 MonitorOutcome& outcome, std::vector<Finding>& newly_set_aside) {
+  const Comparison& fold = comparisons_[index.value].fold;
+  const auto before = fold.set_aside();
+  const Instant known_since = fold.kept_since();
+  auto findings = refold(index, history, interventions, traces);
+  auto& all = outcome.set_aside[index];
+  for (Finding& finding : findings) {
+    all.push_back(text_of(finding, "sample"));
+    const auto measured = parse_rfc3339(text_of(finding, "measured_at"));
+    // What was set aside among pairs older than those kept was told of then, if it was: no news.
+    if (measured && measured->at >= known_since && !contains(before, all.back()))
+      newly_set_aside.push_back(std::move(finding));
+  }
+}
+
 std::vector<Finding> Monitor::refold(ComparisonIndex index, History& history,
-                                     const std::vector<Intervention>& interventions) {
+                                     const std::vector<Intervention>& interventions, Traces& traces) {
   ComparisonStream& stream = comparisons_[index.value];
-  const auto set_aside_before = stream.fold.set_aside();
   stream.fold = Comparison(*settings_, index);
   stream.last.reset();
   const std::vector<Pair> pairs = pair_all(stream, index, history);
   // The charts still know the repeatability at the oldest pair, or they are folded on the side to find it.
-  Traces traces(charts_.size());
   if (!stream.given && !pairs.empty())
     for (const auto* charts : {&stream.x_charts, &stream.y_charts})
       for (const ChartIndex chart : *charts)
-        if (!charts_[chart.value].fold.repeatability_at(pairs.front().at))
-          traces[chart.value] = trace_of(chart, history, interventions);
-  std::vector<Finding> findings, newly_set_aside;
+        if (!traces[chart.value] && !charts_[chart.value].fold.repeatability_at(pairs.front().at))
+          traces[chart.value] = fold_chart(chart, history, interventions).trace;
+  std::vector<Finding> findings, set_aside;
   auto next = interventions.begin();
   const auto add_interventions_until = [&](std::optional<Instant> at) {
     for (; next != interventions.end() && (!at || next->at <= *at); ++next)
       if (concerns(*next, settings_->of(index))) stream.fold.add(*next, findings);
   };
+  const auto keep_set_aside = [&] {
+    for (Finding& finding : findings)
+      if (finding.kind == AlertKind::pair_outlier) set_aside.push_back(std::move(finding));
+    findings.clear();
+  };
   for (const Pair& pair : pairs) {
     add_interventions_until(pair.at);
     stream.fold.add(pair, *ratio_at(stream, index, pair.at, &traces), findings);
     stream.last = {pair.at, pair.sample};
-    for (Finding& finding : findings)
-      if (finding.kind == AlertKind::pair_outlier && !names_one_of(finding, set_aside_before))
-        newly_set_aside.push_back(std::move(finding));
-    findings.clear();
+    keep_set_aside();
   }
   add_interventions_until(std::nullopt);
+  keep_set_aside();
   stream.stale = false;
-  return newly_set_aside;
+  return set_aside;
 }
 
 }  // namespace agreed

@@ -240,6 +240,10 @@ std::vector<std::string> Comparison::set_aside() const {
   return samples;
 }
 
+Instant Comparison::kept_since() const {
+  return state_->recent.size() < kRecentPairs ? Instant::min() : state_->recent.front().pair.at;
+}
+
 Verdict Comparison::verdict() const {
   return state_->verdict.verdict();
 }

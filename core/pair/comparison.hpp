@@ -37,6 +37,8 @@ class Comparison {
 
   /// Samples of the newest 500 pairs that are set aside as outliers.
   [[nodiscard]] std::vector<std::string> set_aside() const;
+  /// The time of the oldest of the newest 500 pairs; the earliest time there is when no pair is older.
+  [[nodiscard]] Instant kept_since() const;
 
   [[nodiscard]] Verdict verdict() const;
   /// `waiting` of the view is left 0: halves are the monitor's.

@@ -1,10 +1,12 @@
 #include "daemon/cli/run.hpp"
 
-#include <atomic>
+#include <chrono>
+#include <condition_variable>
 #include <csignal>
 #include <cstdio>
 #include <filesystem>
 #include <memory>
+#include <mutex>
 #include <thread>
 #include <vector>
 
@@ -56,20 +58,25 @@ class Deadline {
  public:
   Deadline()
       : thread_([this] {
-          for (auto waited = std::chrono::milliseconds(0); waited < kGrace && !done_; waited += kStep)
-            std::this_thread::sleep_for(kStep);
-          if (!done_) _exit(kDone);
+          std::unique_lock lock(mutex_);
+          if (!changed_.wait_until(lock, end_, [this] { return done_; })) _exit(kDone);
         }) {}
   ~Deadline() {
-    done_ = true;
+    {
+      const std::lock_guard lock(mutex_);
+      done_ = true;
+    }
+    changed_.notify_one();
     thread_.join();
   }
   Deadline(const Deadline&) = delete;
   Deadline& operator=(const Deadline&) = delete;
 
  private:
-  static constexpr std::chrono::milliseconds kStep{20};
-  std::atomic<bool> done_ = false;
+  const std::chrono::steady_clock::time_point end_ = std::chrono::steady_clock::now() + kGrace;
+  std::mutex mutex_;
+  std::condition_variable changed_;
+  bool done_ = false;
   std::thread thread_;
 };
 

@@ -21,13 +21,6 @@ constexpr Duration kIdle = std::chrono::minutes(1);
 // While the journal cannot be used: how long until it is tried again.
 constexpr Duration kTryAgain = std::chrono::seconds(2);
 
-template <class Range>
-std::vector<Subject> subjects_of(const Settings& settings, const Range& indexes) {
-  std::vector<Subject> subjects;
-  for (const auto index : indexes) subjects.push_back(subject_of(settings, index));
-  return subjects;
-}
-
 }  // namespace
 
 Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
@@ -112,47 +105,60 @@ std::future<void> Engine::record(DeliveryTry attempt) {
 }
 
 void Engine::run() noexcept {
-  try {
-    turn({.pieces = {}, .tasks = {}, .tick = true, .stop = false});
-    for (;;) {
-      Work work = queue_.take(trouble_.empty() ? kIdle : kTryAgain);
-      if (work.stop) return fail(work, "the service is stopping");
+  Work work{.pieces = {}, .tasks = {}, .tick = true, .stop = false};
+  while (!work.stop) {
+    try {
       turn(std::move(work));
+      work = queue_.take(trouble_.empty() ? kIdle : kTryAgain);
+    } catch (const std::exception& error) {
+      // No memory to tell of a batch: who waits for its answer hears that there is none and asks again.
+      log_error("the engine goes on after: {}", error.what());
+      work = {};
     }
-  } catch (const std::exception& error) {
-    log_error("the engine ended: {}", error.what());
-    queue_.stop();
   }
+  fail(work, "the service is stopping");
 }
 
 void Engine::turn(Work work) {
   const Instant now = now_utc();
+  const std::int64_t sequence = journal_->head().sequence;
   std::vector<std::function<void()>> answers;
   try {
-    if (!folded_ && !fold_from_journal(now)) {
-      fail(work, trouble_);
-    } else {
-      take_batch(work, now, answers);
-      trouble_.clear();
-    }
+    if (!folded_) fold_from_journal(now);
+    take_batch(work, now, answers);
+    if (journal_->head().sequence != sequence || !anything_waits()) end_trouble();
   } catch (const std::exception& error) {
-    log_error("a batch could not be committed and will be tried again: {}", error.what());
-    journal_->rollback();
-    folded_ = false;
-    ledger_.forget();
-    routes_with_news_.clear();
-    trouble_ = error.what();
-    answers.clear();
-    fail(work, trouble_);
+    undo(error.what());
+    answers = {[this, &work] { fail(work, trouble_); }};
   }
   publish(now);
   for (const auto& answer : answers) answer();
   for (const std::string& route : std::exchange(routes_with_news_, {})) wake_sender_(route);
 }
 
+void Engine::undo(const std::string& why) {
+  journal_->rollback();
+  folded_ = false;
+  book_.reset();  // what it says was not committed; the snapshot keeps what was
+  ledger_.forget();
+  routes_with_news_.clear();
+  if (trouble_ != why) log_error("the journal cannot be used; it is tried again: {}", why);
+  trouble_ = why;
+}
+
+// Only a batch that was written shows that the journal can be written to again, as long as one is to come.
+void Engine::end_trouble() {
+  if (!trouble_.empty()) log_info("the journal can be used again");
+  trouble_.clear();
+}
+
+bool Engine::anything_waits() const {
+  const auto inboxes = queue_.inboxes();
+  return std::any_of(inboxes.begin(), inboxes.end(),
+                     [](const InboxState& inbox) { return inbox.pending > 0; });
+}
+
 void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers) {
-  const auto reminders = book_->tick(now);
-  if (work.pieces.empty() && work.tasks.empty() && reminders.empty()) return;
   journal_->begin(now);
   std::vector<Event> events;
   std::vector<Finding> findings;
@@ -167,11 +173,19 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
   }
   const MonitorOutcome outcome = conclude(std::move(events), findings, now);
   for (const Task& task : work.tasks) task.inside(now);
-  tell(reminders, now);
+  tell(book_->tick(now), now);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   for (Task& task : work.tasks)
     if (task.after) answers.emplace_back([&task] { task.after(""); });
+}
+
+std::vector<Subject> Engine::refolded(const MonitorOutcome& outcome) const {
+  std::vector<Subject> subjects;
+  for (const ChartIndex chart : outcome.charts_refolded) subjects.push_back(subject_of(*settings_, chart));
+  for (const ComparisonIndex comparison : outcome.comparisons_refolded)
+    subjects.push_back(subject_of(*settings_, comparison));
+  return subjects;
 }
 
 MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
@@ -185,16 +199,14 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   };
   std::for_each(outcome.findings.begin(), outcome.findings.end(), tell_of);
   std::for_each(intake_findings.begin(), intake_findings.end(), tell_of);
-  reconcile(outcome, "late_data", now);
+  if (const auto subjects = refolded(outcome); !subjects.empty())
+    reconcile(outcome, subjects, "late_data", now);
   return outcome;
 }
 
-void Engine::reconcile(const MonitorOutcome& outcome, const std::string& reason, Instant now) {
+void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
+                       const std::string& reason, Instant now) {
   std::vector<Finding> conditions;
-  auto subjects = subjects_of(*settings_, outcome.charts_refolded);
-  for (const Subject& subject : subjects_of(*settings_, outcome.comparisons_refolded))
-    subjects.push_back(subject);
-  if (subjects.empty()) return;
   const auto add = [&conditions](std::vector<Finding> more) {
     conditions.insert(conditions.end(), std::make_move_iterator(more.begin()),
                       std::make_move_iterator(more.end()));
@@ -202,9 +214,7 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::string& reason,
   for (const ChartIndex chart : outcome.charts_refolded) add(monitor_.conditions(chart));
   for (const ComparisonIndex comparison : outcome.comparisons_refolded) {
     add(monitor_.conditions(comparison));
-    tell(
-        book_->admit_outliers(settings_->of(comparison).id, monitor_.comparison(comparison).set_aside(), now),
-        now);
+    tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
   }
   tell(book_->reconcile(conditions, subjects, reason, now), now);
 }
@@ -229,32 +239,23 @@ void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) 
   }
 }
 
-bool Engine::fold_from_journal(Instant now) {
-  try {
-    std::vector<Alert> restored;
-    for (const StoredTransition& transition : journal_->last_transitions())
-      restored.push_back(alert_from_json(transition.body));
-    book_ = std::make_unique<AlertBook>(alert_policy_, settings_, std::move(restored));
-    monitor_ = Monitor(settings_);
-    JournalHistory history(*journal_, *settings_);
-    const MonitorOutcome outcome = monitor_.fold_all(history);
-    journal_->begin(now);
-    const bool new_configuration = journal_->last_configuration_sha256() != config_sha256_;
-    if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
-    reconcile(outcome, new_configuration ? "configuration_changed" : "late_data", now);
-    journal_->commit();
-    refresh_views(outcome.charts_changed, outcome.comparisons_changed);
-  } catch (const std::exception& error) {
-    journal_->rollback();
-    if (trouble_ != error.what())
-      log_error("the journal cannot be used; it will be tried again: {}", error.what());
-    trouble_ = error.what();
-    return false;
-  }
+void Engine::fold_from_journal(Instant now) {
+  std::vector<Alert> restored;
+  for (const StoredTransition& transition : journal_->last_transitions())
+    restored.push_back(alert_from_json(transition.body));
+  book_ = std::make_unique<AlertBook>(alert_policy_, settings_, std::move(restored));
+  monitor_ = Monitor(settings_);
+  JournalHistory history(*journal_, *settings_);
+  const MonitorOutcome outcome = monitor_.fold_all(history);
+  journal_->begin(now);
+  const bool new_configuration = journal_->last_configuration_sha256() != config_sha256_;
+  if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
+  // Of all subjects: what is no longer configured holds no longer.
+  reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now);
+  journal_->commit();
+  refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
-  trouble_.clear();
-  return true;
 }
 
 void Engine::fail(Work& work, const std::string& why) {
@@ -296,6 +297,7 @@ void Engine::publish(Instant now) {
   const auto inboxes = queue_.inboxes();
   next_.not_ready = not_ready(inboxes);
   next_.ready = next_.not_ready.empty();
+  next_.started = next_.started || next_.ready;
   next_.pending_files = 0;
   for (std::size_t i = 0; i < inboxes.size(); ++i) {
     next_.analyzers[i].inbox = inboxes[i];

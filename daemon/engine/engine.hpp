@@ -44,9 +44,15 @@ class Engine final : public IntakeSink, public Service {
   void take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers);
   MonitorOutcome conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
                           Instant now);
-  void reconcile(const MonitorOutcome& outcome, const std::string& reason, Instant now);
+  [[nodiscard]] std::vector<Subject> refolded(const MonitorOutcome& outcome) const;
+  /// Compares the alert book with what holds after a fold; `subjects` as in AlertBook::reconcile.
+  void reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
+                 const std::string& reason, Instant now);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
-  [[nodiscard]] bool fold_from_journal(Instant now);
+  void fold_from_journal(Instant now);
+  void undo(const std::string& why);
+  void end_trouble();
+  [[nodiscard]] bool anything_waits() const;
   void fail(Work& work, const std::string& why);
 
   void publish(Instant now);
@@ -68,7 +74,7 @@ class Engine final : public IntakeSink, public Service {
   FileLedger ledger_;
   std::unique_ptr<AlertBook> book_;
   std::set<std::string> routes_with_news_;
-  std::string trouble_;  ///< why the journal cannot be used at present; empty when it can
+  std::string trouble_;  ///< why the last batch could not be committed; empty when it was
   bool folded_ = false;
   bool configuration_recorded_ = false;
 

@@ -29,33 +29,38 @@ Event event_of(const Row& row) {
 PieceAnswer FileLedger::take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor,
                              std::vector<Event>& events, std::vector<Finding>& findings) {
   const Hands hands{journal, monitor, events, findings, now};
-  const std::string& analyzer = settings_->of(piece.file.analyzer).id;
   const Key key{piece.file.analyzer, piece.file.name, piece.file.sha256};
-  if (piece.piece == 0) {
-    const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
-                             piece.file.mtime_ns};
-    const bool known = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
-    OpenFile file;
-    file.id = journal.add_file(record);
-    if (known) {
-      journal.finish_file(file.id, "repeated", "");
-      open_.erase(key);
-      return {FileOutcome::repeated, now, ""};
-    }
-    open_[key] = std::move(file);
-  }
+  if (piece.piece == 0) open_[key] = begin(piece, journal);
   const auto found = open_.find(key);
   if (found == open_.end() || found->second.next_piece != piece.piece)
     throw PieceOutOfOrder("an earlier piece of this file was not taken; the file is read again");
   OpenFile& file = found->second;
   ++file.next_piece;
-  if (!piece.unusable.empty()) reject(file, {0, 0, "", piece.unusable}, hands);
-  for (const Row& row : piece.rows) take_row(row, file, hands);
-  for (const BadRow& bad : piece.bad) reject(file, bad, hands);
+  if (!file.repeated) {
+    if (!piece.unusable.empty()) reject(file, {0, 0, "", piece.unusable}, hands);
+    for (const Row& row : piece.rows) take_row(row, file, hands);
+    for (const BadRow& bad : piece.bad) reject(file, bad, hands);
+  }
   if (!piece.last) return {FileOutcome::more, now, ""};
   PieceAnswer answer = finish(piece, file, hands);
   open_.erase(found);
   return answer;
+}
+
+FileLedger::OpenFile FileLedger::begin(const FilePiece& piece, Journal& journal) const {
+  const std::string& analyzer = settings_->of(piece.file.analyzer).id;
+  const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
+                           piece.file.mtime_ns};
+  OpenFile file;
+  file.repeated = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
+  if (const auto begun = journal.begun_file(record)) {
+    file.id = begun->id;
+    file.finished = begun->finished;
+    file.rejected_before = {begun->rejected.begin(), begun->rejected.end()};
+  } else {
+    file.id = journal.add_file(record);
+  }
+  return file;
 }
 
 JournalReading FileLedger::keyed(const Row& row) const {
@@ -91,11 +96,12 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
   const JournalRowResult result = hands.journal.add_reading(file.id, keyed(row));
   if (result.outcome == RowOutcome::conflict) {
     const std::string stands = exact(result.stored_value);
-    reject(file,
-           {row.line, 0, exact(row.value),
-            "conflict: found " + exact(row.value) + ", but " + stands +
-                " stands under the same key; take that back (kind void) first"},
-           hands);
+    const bool is_news = reject(file,
+                                {row.line, 0, exact(row.value),
+                                 "conflict: found " + exact(row.value) + ", but " + stands +
+                                     " stands under the same key; take that back (kind void) first"},
+                                hands);
+    if (!is_news) return;
     hands.findings.push_back({.kind = AlertKind::readings_conflict,
                               .subject = {.analyzer = settings_->of(row.analyzer).id},
                               .severity = Severity::warning,
@@ -104,7 +110,8 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
                                           {"measurand", settings_->of(*row.measurand).id},
                                           {"measured_at", to_rfc3339(row.measured_at)},
                                           {"value", row.value},
-                                          {"stored_value", result.stored_value}}});
+                                          {"stored", result.stored_value},
+                                          {"line", static_cast<double>(row.line)}}});
     return;
   }
   ++file.good;
@@ -113,8 +120,20 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
 }
 
 void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
+  const JournalReading key = keyed(row);
+  const auto all_taken_back = hands.journal.add_void(file.id, key);
+  if (all_taken_back.empty() && !hands.journal.was_voided(key)) {
+    reject(file,
+           {row.line, 0, row.item,
+            "void: no reading stands under this key (analyzer " + std::string(key.analyzer) + ", measurand " +
+                std::string(key.measurand) + ", item " + row.item + ", measured_at " +
+                to_rfc3339(row.measured_at) + ", replicate " + std::to_string(row.replicate) +
+                "); nothing was taken back"},
+           hands);
+    return;
+  }
   ++file.good;
-  for (const VoidedReading& taken_back : hands.journal.add_void(file.id, keyed(row))) {
+  for (const VoidedReading& taken_back : all_taken_back) {
     if (taken_back.kind == StoredKind::split) {
       hands.monitor.take_back_split(row.analyzer, *row.measurand);
       continue;
@@ -142,22 +161,33 @@ void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& 
       Intervention{row.measured_at, row.analyzer, row.standard, row.measurand, row.intervention, row.note});
 }
 
-void FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {
-  hands.journal.add_rejected_row(file.id, bad.line, bad.column, bad.text, bad.reason);
+bool FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {
+  const auto before = file.rejected_before.find({bad.line, bad.column});
+  const bool is_news = before == file.rejected_before.end();
+  file.news = file.news || is_news;
+  if (is_news)
+    hands.journal.add_rejected_row(file.id, bad.line, bad.column, bad.text, bad.reason);
+  else
+    file.rejected_before.erase(before);
   if (file.rejected == 0) {
     file.first_reason = bad.reason;
     file.first_line = bad.line;
     file.first_column = bad.column;
   }
-  if (++file.rejected > kReasonsKept) return;
+  if (++file.rejected > kReasonsKept) return is_news;
   if (bad.line > 0) file.reasons += "line " + std::to_string(bad.line);
   if (bad.column > 0) file.reasons += ", column " + std::to_string(bad.column);
   if (bad.line > 0) file.reasons += ": ";
   file.reasons += bad.reason + '\n';
+  return is_news;
 }
 
 PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const {
-  if (file.rejected > 0)
+  if (file.repeated) {
+    if (!file.finished) hands.journal.finish_file(file.id, "repeated", "");
+    return {FileOutcome::repeated, hands.now, ""};
+  }
+  if (file.rejected > 0 && (file.news || !file.finished))
     hands.findings.push_back({.kind = AlertKind::file_rejected,
                               .subject = {.analyzer = settings_->of(piece.file.analyzer).id},
                               .severity = Severity::warning,
@@ -169,7 +199,8 @@ PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, con
                                           {"rows", static_cast<double>(file.rejected)},
                                           {"good_rows", static_cast<double>(file.good)}}});
   const bool unusable = file.rejected > 0 && file.good == 0;
-  hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
+  if (!file.finished)
+    hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
   if (unusable) return {FileOutcome::rejected, hands.now, file.reasons};
   return {FileOutcome::done, hands.now, ""};
 }

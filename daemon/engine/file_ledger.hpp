@@ -2,8 +2,11 @@
 // Takes the pieces of drop files into the journal and says what became of each file.
 #include <map>
 #include <memory>
+#include <set>
+#include <stdexcept>
 #include <string>
 #include <tuple>
+#include <utility>
 #include <vector>
 
 #include "core/base/event.hpp"
@@ -42,7 +45,12 @@ class FileLedger {
     std::int64_t good = 0, rejected = 0;
     std::string first_reason;  ///< of the first rejected row
     std::uint32_t first_line = 0, first_column = 0;
-    std::string reasons;  ///< for NAME.reason.txt, the first thousand
+    std::string reasons;    ///< for NAME.reason.txt, the first thousand
+    bool repeated = false;  ///< its content is known: its rows are passed over
+    bool finished = false;  ///< it was taken in whole before, and not moved
+    bool news = false;      ///< a row was rejected that was not before
+    std::multiset<std::pair<std::uint32_t, std::uint32_t>>
+        rejected_before;  ///< rows an interrupted reading of it rejected, line and column
   };
   using Key = std::tuple<AnalyzerIndex, std::string, std::string>;  ///< analyzer, name, content
 
@@ -53,11 +61,13 @@ class FileLedger {
     std::vector<Finding>& findings;
     Instant now;
   };
+  [[nodiscard]] OpenFile begin(const FilePiece& piece, Journal& journal) const;
   void take_row(const Row& row, OpenFile& file, const Hands& hands);
   void take_reading(const Row& row, OpenFile& file, const Hands& hands);
   void take_void(const Row& row, OpenFile& file, const Hands& hands);
   void take_intervention(const Row& row, OpenFile& file, const Hands& hands);
-  static void reject(OpenFile& file, const BadRow& bad, const Hands& hands);
+  /// False if the row was rejected and told of before the reading of its file was interrupted.
+  static bool reject(OpenFile& file, const BadRow& bad, const Hands& hands);
   PieceAnswer finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const;
   [[nodiscard]] JournalReading keyed(const Row& row) const;
 

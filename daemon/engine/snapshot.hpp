@@ -27,7 +27,8 @@ struct Snapshot {
   Instant at{};
   Instant started_at{};
   std::string config_sha256;
-  bool ready = false;
+  bool started = false;                ///< the first fold and the first scans are done
+  bool ready = false;                  ///< and results can be taken in
   std::vector<std::string> not_ready;  ///< why not, in words
   std::shared_ptr<const Settings> settings;
   IntakeTotals totals;

@@ -38,6 +38,10 @@ class Journal {
 
   /// The file's row id if `analyzer` gave this content before and it was read without a rejected row.
   [[nodiscard]] bool knows_content(std::string_view analyzer, std::string_view sha256);
+  /// The same file (analyzer, name, content) if it was begun and not finished: after a crash between two
+  /// of its batches it is gone through again under that id. Also if it was finished as done or repeated and
+  /// has the same mtime: after a crash between its last commit and its move.
+  [[nodiscard]] std::optional<BegunFile> begun_file(const JournalFile& file);
   /// Begins a file; `outcome` is set by finish_file in this batch or a later one.
   std::int64_t add_file(const JournalFile& file);
   /// outcome: done, repeated or rejected. `reason` for rejected.

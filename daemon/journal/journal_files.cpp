@@ -30,6 +30,28 @@ bool Journal::knows_content(std::string_view analyzer, std::string_view sha256) 
   });
 }
 
+std::optional<BegunFile> Journal::begun_file(const JournalFile& file) {
+  return journal::translating(impl_->file, [&]() -> std::optional<BegunFile> {
+    const auto analyzer = impl_->names.find(file.analyzer);
+    if (!analyzer) return std::nullopt;
+    Query row = impl_->query(
+        "SELECT f.id, o.file IS NOT NULL FROM files f LEFT JOIN file_outcomes o ON o.file = f.id "
+        "WHERE f.analyzer = ? AND f.sha256 = ? AND f.name = ? AND "
+        "(o.file IS NULL OR (o.outcome <> 'rejected' AND f.mtime_ns = ?)) ORDER BY f.id DESC LIMIT 1");
+    row->bind(1, *analyzer);
+    row->bind(2, file.sha256);
+    row->bind(3, file.name.data(), static_cast<int>(file.name.size()));  // a BLOB, as stored
+    row->bind(4, file.mtime_ns);
+    if (!row->executeStep()) return std::nullopt;
+    BegunFile begun{row->getColumn(0).getInt64(), row->getColumn(1).getInt() != 0, {}};
+    Query rejected = impl_->query("SELECT line, field FROM rejected_rows WHERE file = ?");
+    rejected->bind(1, begun.id);
+    while (rejected->executeStep())
+      begun.rejected.emplace_back(rejected->getColumn(0).getUInt(), rejected->getColumn(1).getUInt());
+    return begun;
+  });
+}
+
 std::int64_t Journal::add_file(const JournalFile& file) {
   return impl_->in_open_batch([&] {
     const std::int64_t analyzer = impl_->names.id_of(file.analyzer);

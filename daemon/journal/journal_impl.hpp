@@ -66,6 +66,8 @@ struct Store {
   /// Prepared once per text; `sql` must be a literal. Not to be borrowed twice at a time.
   [[nodiscard]] Query query(const char* sql);
 
+  /// The sequence the open batch will have.
+  [[nodiscard]] std::int64_t open_batch() const { return head.sequence + 1; }
   [[nodiscard]] std::int64_t analyzer_of_file(std::int64_t id);
 
  private:

@@ -23,6 +23,7 @@ struct Revision {
   double value = 0;
   int censored = 0;
   bool voided = false;
+  std::int64_t file = 0, line = 0, batch = 0;
 
   /// The same double, bit for bit: a value that was only nearly the same is another value.
   [[nodiscard]] bool says(double other, int other_censored) const {
@@ -34,16 +35,18 @@ struct Revision {
 constexpr const char* kRevisions =
     "SELECT r.revision, r.value, r.censored, EXISTS (SELECT 1 FROM voids v WHERE v.analyzer = r.analyzer AND "
     "v.kind = r.kind AND v.measurand = r.measurand AND v.item = r.item AND v.measured_at = r.measured_at AND "
-    "v.replicate = r.replicate AND v.revision = r.revision) FROM readings r WHERE r.analyzer = ? AND "
+    "v.replicate = r.replicate AND v.revision = r.revision), r.file, r.line, r.batch FROM readings r WHERE "
+    "r.analyzer = ? AND "
     "r.kind = ? AND r.measurand = ? AND r.item = ? AND r.measured_at = ? AND r.replicate = ? "
     "ORDER BY r.revision DESC";
 
-// The same line of the same content, read another time: after a crash between two batches of a file, or
-// because its content had rejected rows and was given again.
+// The same line read another time: of the same content (after a crash between two batches of a file, or
+// because it had rejected rows and was given again), or of a file that has grown since.
 constexpr const char* kSameVoid =
     "SELECT 1 FROM voids v JOIN files f ON f.id = v.file JOIN files g ON g.id = ? WHERE v.analyzer = ? AND "
     "v.kind = ? AND v.measurand = ? AND v.item = ? AND v.measured_at = ? AND v.replicate = ? AND "
-    "v.line = ? AND f.id <> g.id AND f.analyzer = g.analyzer AND f.sha256 = g.sha256 LIMIT 1";
+    "v.line = ? AND (f.id <> g.id OR v.batch < ?) AND f.analyzer = g.analyzer AND "
+    "(f.sha256 = g.sha256 OR (f.name = g.name AND f.size < g.size)) LIMIT 1";
 
 void bind_key(SQLite::Statement& statement, const Key& key, int first) {
   statement.bind(first, key.analyzer);
@@ -61,7 +64,9 @@ std::vector<Revision> revisions_of(Store& store, const Key& key) {
   bind_key(*rows, key, 1);
   while (rows->executeStep())
     found.push_back({rows->getColumn(0).getInt64(), rows->getColumn(1).getDouble(),
-                     rows->getColumn(2).getInt(), rows->getColumn(3).getInt() != 0});
+                     rows->getColumn(2).getInt(), rows->getColumn(3).getInt() != 0,
+                     rows->getColumn(4).getInt64(), rows->getColumn(5).getInt64(),
+                     rows->getColumn(6).getInt64()});
   return found;
 }
 
@@ -70,6 +75,7 @@ bool void_was_read_before(Store& store, std::int64_t file, const Key& key) {
   rows->bind(1, file);
   bind_key(*rows, key, 2);
   rows->bind(8, key.reading.line);
+  rows->bind(9, store.open_batch());
   return rows->executeStep();
 }
 
@@ -108,7 +114,11 @@ JournalRowResult judge_known(Store& store, std::int64_t file, const Key& key, do
   // While a correction stands, what it corrected is known too: a file read again from its start brings both.
   const bool repeated = newest.voided ? says(newest) : std::any_of(known.begin(), known.end(), says);
   if (repeated) {
-    store.tallies.repeat(file, key.analyzer);
+    // The very row: its file was begun, not finished, and is gone through again. It came once.
+    const bool same_row = std::any_of(known.begin(), known.end(), [&](const Revision& r) {
+      return says(r) && r.file == file && r.line == key.reading.line && r.batch < store.open_batch();
+    });
+    if (!same_row) store.tallies.repeat(file, key.analyzer);
     return {RowOutcome::repeated, newest.value};
   }
   if (!newest.voided) return {RowOutcome::conflict, newest.value};

@@ -5,6 +5,8 @@
 #include <stdexcept>
 #include <string>
 #include <string_view>
+#include <utility>
+#include <vector>
 
 #include "core/base/instant.hpp"
 
@@ -58,6 +60,14 @@ struct JournalFile {
   std::string analyzer, name, sha256;
   std::uint64_t size = 0;
   std::int64_t mtime_ns = 0;
+};
+
+/// A file of which some batches were committed (`finished`: all), and where its rejected rows so far were
+/// (line, column).
+struct BegunFile {
+  std::int64_t id = 0;
+  bool finished = false;
+  std::vector<std::pair<std::uint32_t, std::uint32_t>> rejected;
 };
 
 /// Totals of the journal, as `intake` of /api/status shows them.

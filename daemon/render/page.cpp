@@ -43,7 +43,7 @@ std::optional<PageAnswer> render_page(std::string_view path,
   if (path == "/page.js")
     return PageAnswer{200, "text/javascript; charset=utf-8", std::string(page_script())};
   const PageInput input{snapshot, current, resolved, now, program_version};
-  const bool started = snapshot.ready && snapshot.settings;
+  const bool started = snapshot.started && snapshot.settings;
   if (path == "/") return page(input, "Do the analyzers agree?", overview_html(input));
   if (path == "/alerts") return page(input, "Alerts", started ? alerts_html(input) : overview_html(input));
   if (!snapshot.settings) return std::nullopt;

@@ -166,7 +166,7 @@ std::string current_alerts_html(const PageInput& input) {
 
 std::string overview_html(const PageInput& input) {
   std::string out = "<h1>Do the analyzers agree?</h1>" + answer_html(overall_answer(input.snapshot), true);
-  if (!input.snapshot.ready || !input.snapshot.settings) return out;
+  if (!input.snapshot.started || !input.snapshot.settings) return out;
   return out + current_alerts_html(input) + comparisons_html(input) + analyzers_html(input);
 }
 

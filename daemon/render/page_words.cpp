@@ -280,10 +280,7 @@ Answer answer_of_several(const Snapshot& snapshot) {
   return answer;
 }
 
-}  // namespace
-
-Answer overall_answer(const Snapshot& snapshot) {
-  if (!snapshot.ready || !snapshot.settings) return starting_answer(snapshot);
+Answer answer_of_all(const Snapshot& snapshot) {
   const std::size_t count = snapshot.settings->comparisons.size();
   if (count == 0)
     return {AnswerKind::not_yet,
@@ -296,6 +293,17 @@ Answer overall_answer(const Snapshot& snapshot) {
   const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{0});
   Answer answer = answer_for(scene);
   answer.sentence = named(scene, answer.sentence);
+  return answer;
+}
+
+}  // namespace
+
+Answer overall_answer(const Snapshot& snapshot) {
+  if (!snapshot.started || !snapshot.settings) return starting_answer(snapshot);
+  Answer answer = answer_of_all(snapshot);
+  if (!snapshot.ready)
+    for (const std::string& reason : snapshot.not_ready)
+      answer.more.push_back("At present no results are taken in: " + reason);
   return answer;
 }
 

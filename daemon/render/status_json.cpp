@@ -124,8 +124,8 @@ Json budget_of(const AlarmBudget& budget) {
 }  // namespace
 
 const char* overall(const Snapshot& snapshot) {
-  if (!snapshot.ready) return "starting";
-  bool attention = snapshot.alerts_open > 0;
+  if (!snapshot.started) return "starting";
+  bool attention = !snapshot.ready || snapshot.alerts_open > 0;
   bool alert = snapshot.alerts_critical > 0;
   for (std::size_t i = 0; i < snapshot.comparisons.size(); ++i) {
     if (!snapshot.comparisons[i]) continue;

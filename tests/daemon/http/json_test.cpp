@@ -121,9 +121,18 @@ TEST_CASE("overall is the worst that is to be told") {
   CHECK(overall_with(Verdict::inconclusive, 24) == "ok");  // prove_within is 24 h here
   CHECK(overall_with(Verdict::inconclusive, 25) == "attention");
   Snapshot starting = full_snapshot();
-  starting.ready = false;
+  starting.started = starting.ready = false;
   starting.alerts_critical = 1;
   CHECK(std::string(overall(starting)) == "starting");
+}
+
+TEST_CASE("a service that stopped taking results in is not starting again") {
+  Snapshot troubled = full_snapshot();
+  troubled.ready = false;
+  troubled.alerts_open = troubled.alerts_critical = 0;
+  CHECK(std::string(overall(troubled)) == "attention");
+  troubled.alerts_critical = 1;
+  CHECK(std::string(overall(troubled)) == "alert");
 }
 
 TEST_CASE("the largest bias is the one that uses most of what is allowable") {

@@ -129,7 +129,7 @@ inline ComparisonView full_comparison() {
 
 inline Snapshot full_snapshot() {
   Snapshot snapshot = empty_snapshot();
-  snapshot.ready = true;
+  snapshot.started = snapshot.ready = true;
   snapshot.not_ready.clear();
   snapshot.totals = {3, 1, 0, 120, 2, 1, 1, 1, at_hour(9)};
   snapshot.pending_files = 2;

@@ -277,7 +277,7 @@ Story story(int pairs, int readings, double drift) {
   snapshot.started_at = kBegin;
   snapshot.at = kBegin + hours(2) * std::max(pairs, 1) + minutes(3);
   snapshot.config_sha256 = "5f3c0a9be1d24477";
-  snapshot.ready = true;
+  snapshot.started = snapshot.ready = true;
   AnalyzerStatus status;
   status.inbox.reachable = true;
   if (readings > 0) status.last_reading_at = snapshot.at - minutes(14);
@@ -355,7 +355,7 @@ Story gathering() {
 
 Story starting() {
   Story out = story(0, 0, 0);
-  out.snapshot.ready = false;
+  out.snapshot.started = out.snapshot.ready = false;
   out.snapshot.not_ready = {"64,000 of 100,000 journalled readings folded"};
   out.snapshot.charts.clear();
   out.snapshot.comparisons.clear();
