@@ -50,6 +50,9 @@ class Journal {
   /// Takes back what matches (analyzer, measurand, item, measured_at, replicate) whatever the kind; empty if
   /// nothing stands there. Repeating a void is harmless.
   std::vector<VoidedReading> add_void(std::int64_t file, const JournalReading& key);
+  /// True if a reading of that key was ever taken back: tells a void that is repeated from one that is
+  /// mistaken.
+  [[nodiscard]] bool was_voided(const JournalReading& key);
   /// False if the same one (analyzer, standard, measurand, kind, at) is known. `file` 0: it came by another
   /// way.
   bool add_intervention(std::int64_t file, const JournalIntervention& intervention);
@@ -76,7 +79,8 @@ class Journal {
   [[nodiscard]] std::vector<StoredTransition> last_transitions();
   /// Of the newest configuration recorded; empty when there is none.
   [[nodiscard]] std::string last_configuration_sha256();
-  /// Of the analyzer's newest accepted reading.
+  /// received_at of the newest row per analyzer.
+  [[nodiscard]] std::optional<Instant> last_received(std::string_view analyzer);
   [[nodiscard]] std::optional<Instant> last_measured(std::string_view analyzer);
 
  private:

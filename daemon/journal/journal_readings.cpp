@@ -103,7 +103,7 @@ bool insert_reading(Store& store, std::int64_t file, const Key& key, std::int64_
                             .integer(r.clock_ambiguous ? 1 : 0)
                             .insert()
                             .has_value();
-  if (inserted) store.tallies.accept(file, key.analyzer, r.measured_at, r.censored != 0);
+  if (inserted) store.tallies.accept(file, key.analyzer, r.measured_at, r.censored != 0, store.now);
   return inserted;
 }
 
@@ -168,6 +168,18 @@ std::vector<VoidedReading> Journal::add_void(std::int64_t file, const JournalRea
                         std::string(reading.item), kind, reading.measured_at});
     }
     return voided;
+  });
+}
+
+bool Journal::was_voided(const JournalReading& reading) {
+  return impl_->in_open_batch([&] {
+    for (const StoredKind kind : {StoredKind::check, StoredKind::split}) {
+      const auto key = find_key(*impl_, reading, kind);
+      if (!key) continue;
+      const auto known = revisions_of(*impl_, *key);
+      if (std::any_of(known.begin(), known.end(), [](const Revision& r) { return r.voided; })) return true;
+    }
+    return false;
   });
 }
 
