@@ -50,6 +50,9 @@ class Journal {
   /// Takes back what matches (analyzer, measurand, item, measured_at, replicate) whatever the kind; empty if
   /// nothing stands there. Repeating a void is harmless.
   std::vector<VoidedReading> add_void(std::int64_t file, const JournalReading& key);
+  /// True if a reading of that key was ever taken back: tells a void that is repeated from one that is
+  /// mistaken.
+  [[nodiscard]] bool was_voided(const JournalReading& key);
   /// False if the same one (analyzer, standard, measurand, kind, at) is known. `file` 0: it came by another
   /// way.
   bool add_intervention(std::int64_t file, const JournalIntervention& intervention);

@@ -171,4 +171,16 @@ std::vector<VoidedReading> Journal::add_void(std::int64_t file, const JournalRea
   });
 }
 
+bool Journal::was_voided(const JournalReading& reading) {
+  return impl_->in_open_batch([&] {
+    for (const StoredKind kind : {StoredKind::check, StoredKind::split}) {
+      const auto key = find_key(*impl_, reading, kind);
+      if (!key) continue;
+      const auto known = revisions_of(*impl_, *key);
+      if (std::any_of(known.begin(), known.end(), [](const Revision& r) { return r.voided; })) return true;
+    }
+    return false;
+  });
+}
+
 }  // namespace agreed

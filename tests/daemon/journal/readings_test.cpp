@@ -133,14 +133,17 @@ TEST_CASE("a void takes back check and split of its key, repeating it does nothi
   OpenBatch batch;
   batch.add(check("A", 0, 1));
   batch.add(split("A", 0, 2));
+  CHECK_FALSE(batch.journal.was_voided(check("A", 0, 0)));
   CHECK(batch.journal.add_void(batch.file, check("A", 0, 0)).size() == 2);
   CHECK(batch.journal.add_void(batch.file, check("A", 0, 0)).empty());
+  CHECK(batch.journal.was_voided(check("A", 0, 0)));
   CHECK(batch.journal.totals().readings_voided == 2);
 }
 
 TEST_CASE("a void of what never was takes nothing back, and what comes later is accepted") {
   OpenBatch batch;
   CHECK(batch.journal.add_void(batch.file, check("wheat-low", 0, 0)).empty());
+  CHECK_FALSE(batch.journal.was_voided(check("wheat-low", 0, 0)));
   CHECK(batch.add(check("wheat-low", 0, 1)) == RowOutcome::accepted);
 }
 
