@@ -190,9 +190,8 @@ void Monitor::pair_up_sample(ComparisonIndex index, std::span<const SplitReading
   SampleRows known;
   // A sample id that came again may be remembered without its rows of long ago.
   const SampleRows* remembered = stream.memory.find(sample);
-  if (remembered != nullptr && oldest_of(*remembered) <= rows.front()->measured_at)
-    known = *remembered;
-  else if (stream.memory.may_have_forgotten(rows.front()->measured_at))
+  const bool complete = remembered != nullptr && oldest_of(*remembered) <= rows.front()->measured_at;
+  if (!complete && stream.memory.may_have_forgotten(rows.front()->measured_at))
     known = forgotten_rows(index, rows, history);
   else if (remembered != nullptr)
     known = *remembered;

@@ -182,6 +182,7 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
 
 std::vector<Subject> Engine::refolded(const MonitorOutcome& outcome) const {
   std::vector<Subject> subjects;
+  subjects.reserve(outcome.charts_refolded.size() + outcome.comparisons_refolded.size());
   for (const ChartIndex chart : outcome.charts_refolded) subjects.push_back(subject_of(*settings_, chart));
   for (const ComparisonIndex comparison : outcome.comparisons_refolded)
     subjects.push_back(subject_of(*settings_, comparison));

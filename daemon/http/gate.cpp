@@ -129,7 +129,7 @@ Refusal read_head(std::string_view head, const GateLimits& limits, Gated& gated)
     head.remove_prefix(end + kLineEnd.size());
     if (line.find_first_of("\r\n") != std::string_view::npos) return {400, "Lines must end with CR LF."};
     if (!request_line && ++fields > limits.fields) return {431, "There are too many header fields."};
-    const Refusal refusal =
+    Refusal refusal =
         request_line ? read_request_line(line, limits, gated) : read_field(line, gated, framing);
     if (refusal.status != 0) return refusal;
     if (request_line) gated.head.assign(line).append(kLineEnd);

@@ -11,7 +11,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kBlock = 64U * 1024U;
+constexpr std::size_t kBlock = std::size_t{64} * 1024;
 
 [[noreturn]] void fail(const char* what) {
   throw std::system_error(errno, std::generic_category(), what);

@@ -108,7 +108,7 @@ InboxEvents Inbox::wait(Tick until) {
 }
 
 void Inbox::read_events(InboxEvents& events) {
-  alignas(inotify_event) std::array<char, 64 * 1024> buffer;
+  alignas(inotify_event) std::array<char, std::size_t{64} * 1024> buffer;
   for (;;) {
     const ssize_t size = ::read(notify_.get(), buffer.data(), buffer.size());
     if (size <= 0) return;

@@ -21,6 +21,7 @@ constexpr std::array<std::string_view, 5> kInterventions = {"recalibrated", "rep
 template <class Thing>
 std::vector<std::string_view> ids_of(const std::vector<Thing>& things) {
   std::vector<std::string_view> ids;
+  ids.reserve(things.size());
   for (const Thing& thing : things) ids.emplace_back(thing.id);
   return ids;
 }

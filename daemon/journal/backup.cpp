@@ -22,7 +22,7 @@ void copy_journal(const fs::path& from, const fs::path& to) {
 
 /// The log goes first: a journal beside the log of another would be worse than one without.
 fs::path set_aside(const fs::path& file) {
-  const fs::path kept = journal::free_name(file.parent_path() / "journal.replaced", ".sqlite");
+  fs::path kept = journal::free_name(file.parent_path() / "journal.replaced", ".sqlite");
   const fs::path log = with_suffix(file, "-wal");
   if (fs::exists(log)) fs::rename(log, with_suffix(kept, "-wal"));
   fs::remove(with_suffix(file, "-shm"));
@@ -52,7 +52,7 @@ fs::path restore_journal(const fs::path& folder, const fs::path& backup) {
   return journal::translating(file, [&] {
     const fs::path fresh = with_suffix(file, ".new");
     copy_journal(backup, fresh);
-    const fs::path kept = set_aside(file);
+    fs::path kept = set_aside(file);
     fs::rename(fresh, file);
     journal::make_lasting(folder);
     return kept;

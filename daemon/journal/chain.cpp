@@ -7,7 +7,7 @@
 namespace agreed::journal {
 namespace {
 
-constexpr std::size_t kFlushAt = 32 * 1024;
+constexpr std::size_t kFlushAt = std::size_t{32} * 1024;
 
 void append_number(std::string& to, std::int64_t value) {
   std::array<char, 20> digits{};

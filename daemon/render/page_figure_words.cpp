@@ -1,4 +1,5 @@
 // What each figure of a comparison shows, in words: its caption, and its description for a screen reader.
+#include <cmath>
 #include <map>
 
 #include "daemon/render/page_words.hpp"
@@ -39,8 +40,8 @@ std::string pairs_words(const ComparisonScene& scene) {
     return counted(view.window.pairs, "pair", "pairs") + " in the window and no fitted line" +
            (view.fit_reason.empty() ? "." : ": " + spaced(view.fit_reason) + ".");
   const FitView& fit = *view.fit;
-  const int percent = static_cast<int>(fit.confidence * 1000 + 0.5);
-  const std::string level = percent % 10 ? shown(fit.confidence * 100, 1) : std::to_string(percent / 10);
+  const long thousandths = std::lround(fit.confidence * 1000);
+  const std::string level = shown(fit.confidence * 100, thousandths % 10 == 0 ? 0 : 1);
   const std::string line = scene.y + " = " + shown(fit.intercept, scene.style.decimals) + " + " +
                            shown(fit.slope, 4) + " \u00d7 " + scene.x;
   return "Fitted line through " + counted(view.window.pairs, "pair", "pairs") + ": " + line + " (" + level +

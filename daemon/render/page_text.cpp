@@ -12,7 +12,7 @@ constexpr std::string_view kMinus = "\u2212";
 constexpr std::string_view kTied = "\u00a0";  // number and unit stay on one line
 constexpr int kMostDecimals = 12;
 
-std::string true_minus(std::string number) {
+std::string true_minus(const std::string& number) {
   return number.starts_with('-') ? std::string(kMinus) + number.substr(1) : number;
 }
 

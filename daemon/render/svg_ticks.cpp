@@ -73,7 +73,11 @@ std::vector<Tick> value_ticks(double low, double high, int wanted) {
   // Counted in whole steps, so that no rounding adds up; a bound against steps too small for the values.
   const double first = std::ceil(low / step - 1e-9), last = std::floor(high / step + 1e-9);
   if (!(last - first < 1000)) return ticks;
-  for (double i = first; i <= last; ++i) ticks.push_back({i * step, shown(i * step, decimals)});
+  const int steps = static_cast<int>(last - first);
+  for (int i = 0; i <= steps; ++i) {
+    const double value = (first + i) * step;
+    ticks.push_back({value, shown(value, decimals)});
+  }
   return ticks;
 }
 

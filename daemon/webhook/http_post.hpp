@@ -23,8 +23,8 @@ struct PostRequest {
 
 struct PostLimits {
   Duration connect = std::chrono::seconds(5);
-  Duration whole = std::chrono::seconds(10);  ///< from name look-up to the last byte
-  std::size_t answer = 64 * 1024;             ///< bytes of the answer's body that are read
+  Duration whole = std::chrono::seconds(10);    ///< from name look-up to the last byte
+  std::size_t answer = std::size_t{64} * 1024;  ///< bytes of the answer's body that are read
 };
 
 struct PostAnswer {

@@ -162,7 +162,7 @@ class WebhookSender::Lane {
   std::jthread thread_;  // last: it uses all of the above
 };
 
-WebhookSender::WebhookSender(std::vector<Endpoint> endpoints, Next next, Record record,
+WebhookSender::WebhookSender(std::vector<Endpoint> endpoints, const Next& next, const Record& record,
                              SenderOptions options) {
   for (auto& endpoint : endpoints)
     lanes_.push_back(std::make_unique<Lane>(std::move(endpoint), next, record, options));

@@ -34,7 +34,8 @@ class WebhookSender {
   using Record = std::function<std::future<void>(DeliveryTry)>;
 
   /// Starts the threads. Messages tried before this start are due at once.
-  WebhookSender(std::vector<Endpoint> endpoints, Next next, Record record, SenderOptions options = {});
+  WebhookSender(std::vector<Endpoint> endpoints, const Next& next, const Record& record,
+                SenderOptions options = {});
   ~WebhookSender();
   WebhookSender(const WebhookSender&) = delete;
   WebhookSender& operator=(const WebhookSender&) = delete;
