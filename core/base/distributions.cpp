@@ -31,18 +31,12 @@ double normal_cdf(double z) {
 double normal_tail(double z) {
   return bm::cdf(bm::complement(kNormal, z));
 }
-double normal_quantile(double p) {
-  return bm::quantile(kNormal, p);
-}
 double normal_quantile_of_tail(double p) {
   return bm::quantile(bm::complement(kNormal, p));
 }
 
 double t_tail(double t, double df) {
   return bm::cdf(bm::complement(StudentT(df), t));
-}
-double t_quantile(double p, double df) {
-  return bm::quantile(StudentT(df), p);
 }
 double t_quantile_of_tail(double p, double df) {
   return bm::quantile(bm::complement(StudentT(df), p));

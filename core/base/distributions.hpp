@@ -9,15 +9,11 @@ namespace agreed {
 [[nodiscard]] double normal_cdf(double z);
 /// P(Z > z).
 [[nodiscard]] double normal_tail(double z);
-/// z with P(Z <= z) = p, 0 < p < 1.
-[[nodiscard]] double normal_quantile(double p);
 /// z with P(Z > z) = p, 0 < p < 1.
 [[nodiscard]] double normal_quantile_of_tail(double p);
 
 /// P(T > t) on `df` degrees of freedom.
 [[nodiscard]] double t_tail(double t, double df);
-/// t with P(T <= t) = p.
-[[nodiscard]] double t_quantile(double p, double df);
 /// t with P(T > t) = p.
 [[nodiscard]] double t_quantile_of_tail(double p, double df);
 /// P(F > f).

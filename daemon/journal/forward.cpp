@@ -103,18 +103,11 @@ std::vector<StoredTransition> Journal::last_transitions() {
   return journal::translating(impl_->file, [&] { return journal::last_transitions(*impl_->database); });
 }
 
-std::optional<Instant> Journal::last_received(std::string_view analyzer) {
-  const auto id = impl_->names.find(analyzer);
-  const auto& last = impl_->tallies.last;
-  const auto seen = id ? last.find(*id) : last.end();
-  return seen == last.end() ? std::nullopt : seen->second.received_at;
-}
-
 std::optional<Instant> Journal::last_measured(std::string_view analyzer) {
   const auto id = impl_->names.find(analyzer);
-  const auto& last = impl_->tallies.last;
-  const auto seen = id ? last.find(*id) : last.end();
-  return seen == last.end() ? std::nullopt : seen->second.measured_at;
+  const auto& newest = impl_->tallies.newest_measured_at;
+  const auto found = id ? newest.find(*id) : newest.end();
+  return found == newest.end() ? std::nullopt : std::optional(found->second);
 }
 
 }  // namespace agreed

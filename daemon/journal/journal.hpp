@@ -79,8 +79,7 @@ class Journal {
   [[nodiscard]] std::vector<StoredTransition> last_transitions();
   /// Of the newest configuration recorded; empty when there is none.
   [[nodiscard]] std::string last_configuration_sha256();
-  /// received_at of the newest row per analyzer.
-  [[nodiscard]] std::optional<Instant> last_received(std::string_view analyzer);
+  /// Of the analyzer's newest accepted reading.
   [[nodiscard]] std::optional<Instant> last_measured(std::string_view analyzer);
 
  private:

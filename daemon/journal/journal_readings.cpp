@@ -103,7 +103,7 @@ bool insert_reading(Store& store, std::int64_t file, const Key& key, std::int64_
                             .integer(r.clock_ambiguous ? 1 : 0)
                             .insert()
                             .has_value();
-  if (inserted) store.tallies.accept(file, key.analyzer, r.measured_at, r.censored != 0, store.now);
+  if (inserted) store.tallies.accept(file, key.analyzer, r.measured_at, r.censored != 0);
   return inserted;
 }
 

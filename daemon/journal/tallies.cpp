@@ -38,16 +38,13 @@ void load_files(SQLite::Database& database, IntakeTotals& totals) {
   if (newest.executeStep()) totals.last_commit_at = instant(newest.getColumn(0));
 }
 
-std::map<std::int64_t, LastSeen> load_last(SQLite::Database& database) {
-  std::map<std::int64_t, LastSeen> last;
-  SQLite::Statement rows(database,
-                         "SELECT a.analyzer, a.newest, b.committed_at FROM "
-                         "(SELECT analyzer, max(newest_measured_at) AS newest, max(batch) AS batch "
-                         "FROM arrivals WHERE accepted > 0 GROUP BY analyzer) a "
-                         "JOIN batches b ON b.sequence = a.batch");
-  while (rows.executeStep())
-    last[rows.getColumn(0).getInt64()] = {instant(rows.getColumn(2)), instant(rows.getColumn(1))};
-  return last;
+std::map<std::int64_t, Instant> load_newest_measured_at(SQLite::Database& database) {
+  std::map<std::int64_t, Instant> newest;
+  SQLite::Statement rows(
+      database,
+      "SELECT analyzer, max(newest_measured_at) FROM arrivals WHERE accepted > 0 GROUP BY analyzer");
+  while (rows.executeStep()) newest[rows.getColumn(0).getInt64()] = instant(rows.getColumn(1));
+  return newest;
 }
 
 }  // namespace
@@ -62,8 +59,7 @@ Arrival& Tallies::of(std::int64_t file, std::int64_t analyzer) {
   return arrivals.back();
 }
 
-void Tallies::accept(std::int64_t file, std::int64_t analyzer, Instant measured_at, bool censored,
-                     Instant now) {
+void Tallies::accept(std::int64_t file, std::int64_t analyzer, Instant measured_at, bool censored) {
   Arrival& arrival = of(file, analyzer);
   ++arrival.accepted;
   ++totals.readings_accepted;
@@ -72,9 +68,8 @@ void Tallies::accept(std::int64_t file, std::int64_t analyzer, Instant measured_
     ++totals.readings_censored;
   }
   arrival.newest_measured_at = std::max(arrival.newest_measured_at.value_or(measured_at), measured_at);
-  LastSeen& seen = last[analyzer];
-  seen.received_at = now;
-  seen.measured_at = std::max(seen.measured_at.value_or(measured_at), measured_at);
+  Instant& newest = newest_measured_at.try_emplace(analyzer, measured_at).first->second;
+  newest = std::max(newest, measured_at);
 }
 
 void Tallies::repeat(std::int64_t file, std::int64_t analyzer) {
@@ -103,7 +98,7 @@ Tallies load_tallies(SQLite::Database& database) {
   Tallies tallies;
   load_readings(database, tallies.totals);
   load_files(database, tallies.totals);
-  tallies.last = load_last(database);
+  tallies.newest_measured_at = load_newest_measured_at(database);
   return tallies;
 }
 

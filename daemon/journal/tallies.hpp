@@ -18,18 +18,14 @@ struct Arrival {
   std::optional<Instant> newest_measured_at;
 };
 
-struct LastSeen {
-  std::optional<Instant> received_at, measured_at;
-};
-
 /// A value, so that a rolled-back batch is undone by putting the earlier copy back.
 struct Tallies {
   IntakeTotals totals;
-  std::map<std::int64_t, LastSeen> last;  ///< by analyzer
-  std::vector<Arrival> arrivals;          ///< of the open batch, in order of arrival
-  bool took_in = false;                   ///< the open batch concerns a file
+  std::map<std::int64_t, Instant> newest_measured_at;  ///< by analyzer
+  std::vector<Arrival> arrivals;                       ///< of the open batch, in order of arrival
+  bool took_in = false;                                ///< the open batch concerns a file
 
-  void accept(std::int64_t file, std::int64_t analyzer, Instant measured_at, bool censored, Instant now);
+  void accept(std::int64_t file, std::int64_t analyzer, Instant measured_at, bool censored);
   void repeat(std::int64_t file, std::int64_t analyzer);
   void reject(std::int64_t file, std::int64_t analyzer);
   void take_back(std::int64_t file, std::int64_t analyzer);

@@ -54,7 +54,6 @@ TEST_CASE("a rolled-back batch leaves no trace, in the totals, the ids, the name
   CHECK(journal.totals() == totals);
   CHECK(journal.head().sha256 == head.sha256);
   CHECK(journal.last_measured("line1") == at(0));
-  CHECK(journal.last_received("line1") == at(10));
   CHECK_FALSE(journal.last_measured("line3").has_value());
   CHECK_FALSE(journal.knows_content("line1", "sha-100"));
   CHECK(checks_of(journal, "wheat-low").size() == 1);
@@ -99,10 +98,7 @@ TEST_CASE("opened again, the journal says the same") {
   CHECK(journal.head().sequence == 3);
   CHECK(journal.head().sha256 == head.sha256);
   CHECK(journal.source() == source);
-  CHECK(journal.last_received("line1") == at(1002));
-  CHECK(journal.last_received("line2") == at(1002));
   CHECK(journal.last_measured("line1") == at(2));
-  CHECK_FALSE(journal.last_received("line9").has_value());
   const auto transitions = journal.last_transitions();
   REQUIRE(transitions.size() == 3);
   CHECK(transitions[2].alert == 3);

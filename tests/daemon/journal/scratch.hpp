@@ -1,6 +1,5 @@
 #pragma once
 // A state folder that goes away by itself, and short ways to fill a journal.
-#include <cstdlib>
 #include <filesystem>
 #include <stdexcept>
 #include <string>
@@ -10,30 +9,23 @@
 #include <unistd.h>
 
 #include "daemon/journal/journal.hpp"
+#include "tests/support/temp_folder.hpp"
 
 namespace agreed::testing {
 
+/// In memory where that exists: hundreds of commits would each wait for the disk.
+inline std::filesystem::path quick_base() {
+  const std::filesystem::path memory = "/dev/shm";
+  return ::access(memory.c_str(), W_OK) == 0 ? memory : std::filesystem::temp_directory_path();
+}
+
 class ScratchFolder {
  public:
-  ScratchFolder() {
-    // In memory where that exists: hundreds of commits would each wait for the disk.
-    const std::filesystem::path memory = "/dev/shm";
-    const auto base = ::access(memory.c_str(), W_OK) == 0 ? memory : std::filesystem::temp_directory_path();
-    std::string name = (base / "agreed-journal-XXXXXX").string();
-    if (::mkdtemp(name.data()) == nullptr) throw std::runtime_error("no scratch folder");
-    path_ = name;
-  }
-  ~ScratchFolder() {
-    std::error_code ignored;
-    std::filesystem::remove_all(path_, ignored);
-  }
-  ScratchFolder(const ScratchFolder&) = delete;
-  ScratchFolder& operator=(const ScratchFolder&) = delete;
-  [[nodiscard]] const std::filesystem::path& path() const { return path_; }
-  [[nodiscard]] std::filesystem::path database() const { return path_ / "journal.sqlite"; }
+  [[nodiscard]] const std::filesystem::path& path() const { return folder_.path(); }
+  [[nodiscard]] std::filesystem::path database() const { return path() / "journal.sqlite"; }
 
  private:
-  std::filesystem::path path_;
+  TempFolder folder_{quick_base()};
 };
 
 inline Instant at(std::int64_t seconds) {
