@@ -6,62 +6,10 @@
 #include "core/base/distributions.hpp"
 #include "core/chart/level_score.hpp"
 #include "core/chart/run_length.hpp"
-#include "support.hpp"
+#include "tests/core/chart/scenario.hpp"
 
 using namespace agreed;
 using namespace agreed::test;
-
-namespace {
-void feed(Fed& fed, Readings& next, int count, double mean = 10, double sd = 1) {
-  for (int i = 0; i < count; ++i) fed.read(mean + sd * next());
-}
-
-// A start that raises no false alert, so that the scenario is what opens one.
-struct Scenario {
-  Settings settings = mill(1800);
-  Readings next;
-  Fed fed{settings};
-  explicit Scenario(std::uint64_t seed, int before = 100) : next(seed) {
-    feed(fed, next, before);
-    REQUIRE(fed.findings.empty());
-  }
-};
-
-/// Everything a view holds, to the bit.
-std::string dump(const ChartView& view) {
-  std::string text;
-  const auto number = [&](std::optional<double> value) {
-    char buffer[40];
-    std::snprintf(buffer, sizeof buffer, value ? "%a " : "- ", value.value_or(0));
-    text += buffer;
-  };
-  const auto time = [&](std::optional<Instant> at) {
-    text += at ? std::to_string(at->time_since_epoch().count()) + " " : "- ";
-  };
-  text += view.lot + to_string(view.state) + view.pattern;
-  for (const auto value :
-       {view.baseline.center, view.baseline.sd, view.baseline.sigma, view.baseline.sigma_degrees_of_freedom,
-        view.baseline.moving_range_mean, view.upper_limit, view.lower_limit, view.change.score,
-        view.change.shift, view.precision.score, view.precision.ratio_of_sd, view.serial_correlation})
-    number(value);
-  time(view.change.started_at);
-  if (view.change.started_between)
-    time(view.change.started_between->first), time(view.change.started_between->last);
-  text += std::to_string(view.baseline.readings) + " " + std::to_string(view.baseline.set_aside);
-  for (const std::string& warning : view.warnings) text += warning;
-  for (const StretchMark& mark : view.marks) time(mark.at), text += mark.what;
-  for (const ChartPoint& point : view.points) {
-    time(point.measured_at);
-    for (const auto value : {std::optional(point.value), point.moving_range, point.score,
-                             point.precision_score, point.upper, point.lower})
-      number(value);
-    for (const ChartSignal signal : point.signals) text += to_string(signal);
-    text += point.set_aside ? "a" : "";
-    text += point.starts_stretch ? "s\n" : "\n";
-  }
-  return text;
-}
-}  // namespace
 
 TEST_CASE("a chart without readings is learning and has nothing to say") {
   const Settings settings = mill(1800);
@@ -277,91 +225,6 @@ TEST_CASE("a pattern or start that changes by the tenth reading after the signal
     CHECK(other);
   }
   CHECK(updated > 5);
-}
-
-TEST_CASE("an intervention begins a new stretch and clears the alert") {
-  Scenario s(27);
-  feed(s.fed, s.next, 20, 14);
-  REQUIRE(s.fed.unstable());
-  s.fed.intervene(InterventionKind::recalibrated);
-  CHECK_FALSE(s.fed.unstable());
-  CHECK_FALSE(s.fed.findings.back().holds);
-  CHECK(s.fed.findings.back().resolved_reason == "new_stretch");
-  const std::size_t told = s.fed.findings.size();
-  feed(s.fed, s.next, 10, 14);
-  CHECK(s.fed.findings.size() == told);
-  const ChartView view = s.fed.chart.view();
-  CHECK(view.baseline.readings == 10);
-  CHECK(view.state == ChartState::learning);
-  CHECK(view.points[120].starts_stretch);
-  CHECK_FALSE(view.points[120].moving_range);
-  CHECK_FALSE(view.points[120].score);
-  REQUIRE(view.marks.size() == 1);
-  CHECK(view.marks[0].what == "recalibrated");
-}
-
-TEST_CASE("interventions that do not concern the chart change nothing") {
-  Scenario s(28);
-  const std::string before = dump(s.fed.chart.view());
-  std::vector<Finding>& findings = s.fed.findings;
-  s.fed.chart.add(Intervention{hour(100), {0}, {}, {}, InterventionKind::noted, ""}, findings);
-  s.fed.chart.add(Intervention{hour(100), {1}, {}, {}, InterventionKind::repaired, ""}, findings);
-  s.fed.chart.add(Intervention{hour(100), {0}, {}, MeasurandIndex{1}, InterventionKind::repaired, ""},
-                  findings);
-  s.fed.chart.add(Intervention{hour(100), {0}, StandardIndex{0}, {}, InterventionKind::level_accepted, ""},
-                  findings);
-  CHECK(dump(s.fed.chart.view()) == before);
-  CHECK(findings.empty());
-  s.fed.chart.add(
-      Intervention{hour(100), {0}, StandardIndex{1}, MeasurandIndex{0}, InterventionKind::repaired, ""},
-      findings);
-  CHECK(s.fed.chart.view().baseline.readings == 0);
-}
-
-TEST_CASE("accepting a level begins the stretch at the estimated start, with the readings since") {
-  Scenario s(29);
-  feed(s.fed, s.next, 25, 14);
-  REQUIRE(s.fed.unstable());
-  s.fed.intervene(InterventionKind::level_accepted);
-  CHECK(s.fed.findings.back().resolved_reason == "new_stretch");
-  CHECK(s.fed.findings.back().at == hour(125));
-  const ChartView view = s.fed.chart.view();
-  CHECK(view.baseline.readings == 25);
-  CHECK(*view.baseline.center == doctest::Approx(14).epsilon(0.05));
-  CHECK(view.points[100].starts_stretch);
-  CHECK(*view.baseline.from == hour(101));
-  CHECK(view.marks[0].at == hour(101));
-  feed(s.fed, s.next, 30, 14);
-  CHECK_FALSE(s.fed.unstable());
-}
-
-TEST_CASE("accepting a level while nothing is open begins the stretch at its own time") {
-  Scenario s(30);
-  s.fed.intervene(InterventionKind::level_accepted);
-  CHECK(s.fed.findings.empty());
-  CHECK(s.fed.chart.view().baseline.readings == 0);
-  CHECK(s.fed.chart.view().marks[0].at == hour(100));
-}
-
-TEST_CASE("a new lot begins a new stretch") {
-  Settings settings = mill(1800);
-  settings.charts[0].lots.push_back({"2026-B", hour(51), ReferenceValue{11.9, 0.2, 2}});
-  Fed fed(settings);
-  Readings next(31);
-  feed(fed, next, 50);
-  CHECK(fed.chart.view().lot == "2026-A");
-  CHECK_FALSE(fed.chart.view().reference);
-  feed(fed, next, 40, 12);
-  CHECK(fed.findings.empty());
-  const ChartView view = fed.chart.view();
-  CHECK(view.lot == "2026-B");
-  CHECK(view.baseline.readings == 40);
-  CHECK(view.points[50].starts_stretch);
-  CHECK(view.marks[0].what == "lot 2026-B");
-  REQUIRE(view.reference);
-  CHECK(*view.reference->bias == doctest::Approx(*view.baseline.center - 11.9));
-  const double u = std::sqrt(*view.baseline.sd * *view.baseline.sd / 40 + 0.1 * 0.1);
-  CHECK(*view.reference->normalised_error == doctest::Approx(*view.reference->bias / (2 * u)));
 }
 
 TEST_CASE("a small shift is a notice, by half an sd, the allowable difference or the setting") {
