@@ -21,6 +21,10 @@ constexpr Duration kIdle = std::chrono::minutes(1);
 // While the journal cannot be used: how long until it is tried again.
 constexpr Duration kTryAgain = std::chrono::seconds(2);
 
+std::pair<AnalyzerIndex, std::string> file_of(const QueuedPiece& queued) {
+  return {queued.piece.file.analyzer, queued.piece.file.name};
+}
+
 }  // namespace
 
 Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
@@ -126,9 +130,9 @@ void Engine::turn(Work work) {
   try {
     if (!folded_) fold_from_journal(now);
     take_batch(work, now, answers);
-    if (journal_->head().sequence != sequence || !anything_waits()) end_trouble();
+    end_trouble(journal_->head().sequence != sequence);
   } catch (const std::exception& error) {
-    undo(error.what());
+    undo(work, error.what());
     answers = {[this, &work] { fail(work, trouble_); }};
   }
   publish(now);
@@ -136,8 +140,12 @@ void Engine::turn(Work work) {
   for (const std::string& route : std::exchange(routes_with_news_, {})) wake_sender_(route);
 }
 
-void Engine::undo(const std::string& why) {
+void Engine::undo(const Work& work, const std::string& why) {
   journal_->rollback();
+  for (const QueuedPiece& queued : work.pieces) {
+    refused_.insert(file_of(queued));
+    queue_.still_waits(queued.piece.file.analyzer);
+  }
   folded_ = false;
   book_.reset();  // what it says was not committed; the snapshot keeps what was
   ledger_.forget();
@@ -146,10 +154,14 @@ void Engine::undo(const std::string& why) {
   trouble_ = why;
 }
 
-// Only a batch that was written shows that the journal can be written to again, as long as one is to come.
-void Engine::end_trouble() {
-  if (!trouble_.empty()) log_info("the journal can be used again");
+// As long as something waits, only what was refused and is now written shows that the journal can be used
+// again: on a full disk a small piece may fit where the next does not.
+void Engine::end_trouble(bool written) {
+  if (trouble_.empty()) return;
+  if (anything_waits() && !(written && refused_.empty())) return;
+  log_info("the journal can be used again");
   trouble_.clear();
+  refused_.clear();
 }
 
 bool Engine::anything_waits() const {
@@ -175,6 +187,8 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
   for (const Task& task : work.tasks) task.inside(now);
   tell(book_->tick(now), now);
   journal_->commit();
+  for (const QueuedPiece& queued : work.pieces)
+    if (queued.piece.last) refused_.erase(file_of(queued));
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   for (Task& task : work.tasks)
     if (task.after) answers.emplace_back([&task] { task.after(""); });

@@ -50,8 +50,8 @@ class Engine final : public IntakeSink, public Service {
                  const std::string& reason, Instant now);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
   void fold_from_journal(Instant now);
-  void undo(const std::string& why);
-  void end_trouble();
+  void undo(const Work& work, const std::string& why);
+  void end_trouble(bool written);
   [[nodiscard]] bool anything_waits() const;
   void fail(Work& work, const std::string& why);
 
@@ -74,7 +74,8 @@ class Engine final : public IntakeSink, public Service {
   FileLedger ledger_;
   std::unique_ptr<AlertBook> book_;
   std::set<std::string> routes_with_news_;
-  std::string trouble_;  ///< why the last batch could not be committed; empty when it was
+  std::string trouble_;  ///< why what waits could not be committed; empty when nothing was refused
+  std::set<std::pair<AnalyzerIndex, std::string>> refused_;  ///< files that wait since
   bool folded_ = false;
   bool configuration_recorded_ = false;
 

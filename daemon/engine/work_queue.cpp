@@ -55,6 +55,12 @@ void WorkQueue::report(AnalyzerIndex analyzer, const InboxState& state) {
   changed_.notify_one();
 }
 
+void WorkQueue::still_waits(AnalyzerIndex analyzer) {
+  const std::lock_guard lock(mutex_);
+  InboxState& inbox = lanes_.at(analyzer.value).inbox;
+  inbox.pending = std::max(inbox.pending, decltype(inbox.pending){1});
+}
+
 void WorkQueue::stop() {
   std::vector<Lane> left(lanes_.size());
   std::vector<Task> tasks;

@@ -45,6 +45,9 @@ class WorkQueue {
   /// Never blocks. False once stopped.
   bool put(Task task);
   void report(AnalyzerIndex analyzer, const InboxState& state);
+  /// What was taken of the analyzer could not be committed: at least one file of it waits, until its next
+  /// report.
+  void still_waits(AnalyzerIndex analyzer);
   /// Refuses whatever comes from now on, and what waits.
   void stop();
 

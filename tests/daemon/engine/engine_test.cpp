@@ -105,6 +105,21 @@ TEST_CASE("as long as files wait, only a written batch ends the trouble; when no
   CHECK(eventually([&] { return mill.now()->ready; }));
 }
 
+TEST_CASE("the trouble lasts until the file that was refused is taken in whole") {
+  Mill mill;
+  mill.start();
+  mill.break_journal();
+  CHECK_THROWS((void)mill.give(three_pieces()[0]));  // no report has counted it as waiting
+  mill.repair_journal();
+  mill.give(three_pieces()[0]);
+  mill.give(three_pieces()[1]);
+  CHECK_FALSE(mill.now()->ready);
+  mill.give(file("other.csv", {check(90, 10.6)}));
+  CHECK_FALSE(mill.now()->ready);
+  mill.give(three_pieces()[2]);
+  CHECK(mill.now()->ready);
+}
+
 TEST_CASE("a file interrupted by a crash between two of its batches ends as if nothing had been") {
   Mill undisturbed, crashed;
   undisturbed.start();
