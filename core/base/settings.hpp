@@ -107,6 +107,10 @@ struct EstablishedLine {
 
 enum class FitMethod { deming, weighted_deming };
 
+/// How the error of a single result goes with the level: sd constant, proportional to the level, or
+/// sqrt(a^2 + b^2 level^2).
+enum class ErrorGrowth { constant, proportional, mixed };
+
 struct ComparisonSettings {
   std::string id;
   std::string title;
@@ -115,6 +119,7 @@ struct ComparisonSettings {
   int window_pairs = 200;              ///< 3..1000
   std::optional<Duration> window_age;  ///< counted back from the newest pair
   ErrorRatioSettings error_ratio;
+  ErrorGrowth error_growth = ErrorGrowth::constant;
   FitMethod fit = FitMethod::deming;
   double confidence = 0.95;
   int confirm = 3;

@@ -7,6 +7,7 @@
 #include "core/chart/run_length.hpp"
 #include "core/pair/comparison_state.hpp"
 #include "core/pair/curvature.hpp"
+#include "core/pair/pair_weight.hpp"
 #include "core/pair/scatter.hpp"
 
 namespace agreed {
@@ -115,7 +116,7 @@ void Comparison::State::begin_stretch(Instant at, std::vector<Finding>& findings
 void Comparison::State::accept(const Pair& pair, std::int64_t serial, int later) {
   const Point point{pair.x, pair.y};
   window.insert(point, {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates}, later);
-  chart.insert(point, pair.at, later);
+  chart.insert(point, pair.at, later, weight_of(pair, ratio));
   ++pairs_since_renewal;
   outliers.accepted(serial);
   if (RecentPair* kept = recent_of(serial)) kept->outcome = PairOutcome::accepted;

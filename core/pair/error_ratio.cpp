@@ -40,7 +40,32 @@ ErrorRatio ratio_of(const ErrorVariance& x, const ErrorVariance& y) {
   return ratio;
 }
 
-ErrorRatio given_ratio(const ErrorRatioSettings& settings) {
+ErrorRatio ratio_of(const ErrorModel& x, const ErrorModel& y, double level) {
+  ErrorRatio ratio;
+  for (const ErrorModel* model : {&x, &y})
+    if (!model->exists()) {
+      ratio.reason = model->reason;
+      return ratio;
+    }
+  ratio = ratio_of(ErrorVariance{x.variance_at(level), x.degrees_of_freedom_at(level)},
+                   ErrorVariance{y.variance_at(level), y.degrees_of_freedom_at(level)});
+  ratio.x_model = x;
+  ratio.y_model = y;
+  ratio.level = level;
+  return ratio;
+}
+
+double mean_level(std::span<const Repeatability> x, std::span<const Repeatability> y) {
+  double sum = 0, df = 0;
+  for (const auto& side : {x, y})
+    for (const Repeatability& standard : side) {
+      sum += standard.mean * standard.degrees_of_freedom;
+      df += standard.degrees_of_freedom;
+    }
+  return df > 0 ? sum / df : 0;
+}
+
+ErrorRatio given_ratio(const ErrorRatioSettings& settings, ErrorGrowth growth) {
   ErrorRatio ratio;
   if (settings.source == ErrorSource::given_sds && settings.sd_x > 0 && settings.sd_y > 0) {
     ratio.known = ratio.variances_known = true;
@@ -52,6 +77,13 @@ ErrorRatio given_ratio(const ErrorRatioSettings& settings) {
     ratio.lambda = settings.lambda;
     ratio.low = settings.lambda / kBareFactor;
     ratio.high = settings.lambda * kBareFactor;
+    if (growth == ErrorGrowth::proportional) {
+      ratio.x_model.growth = ratio.y_model.growth = growth;
+      ratio.x_model.at_zero = ratio.y_model.at_zero = 0;
+      ratio.x_model.relative = settings.lambda;
+      ratio.y_model.relative = 1;
+      ratio.level = 1;
+    }
   } else {
     ratio.reason = "error_ratio_not_given";
   }

@@ -16,7 +16,15 @@ namespace agreed {
 /// nu_x).
 [[nodiscard]] ErrorRatio ratio_of(const ErrorVariance& x, const ErrorVariance& y);
 
-/// As configured: given sds (interval of no width), or a bare lambda (a factor 2 either way).
-[[nodiscard]] ErrorRatio given_ratio(const ErrorRatioSettings& settings);
+/// Of errors that grow: lambda = var x / var y at `level`, its interval on the degrees of freedom there.
+[[nodiscard]] ErrorRatio ratio_of(const ErrorModel& x, const ErrorModel& y, double level);
+
+/// The mean level of standards, by degrees of freedom: where `lambda` of a mixed model is stated.
+[[nodiscard]] double mean_level(std::span<const Repeatability> x, std::span<const Repeatability> y);
+
+/// As configured: given sds (interval of no width), or a bare lambda (a factor 2 either way). Of errors that
+/// are proportional to the level lambda is the ratio of their squared coefficients of variation.
+[[nodiscard]] ErrorRatio given_ratio(const ErrorRatioSettings& settings,
+                                     ErrorGrowth growth = ErrorGrowth::constant);
 
 }  // namespace agreed
