@@ -9,6 +9,7 @@
 #include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 #include "core/chart/run_length.hpp"
+#include "core/pair/drift_alarm.hpp"
 
 namespace agreed {
 namespace {
@@ -143,9 +144,13 @@ std::string comparison_text(const Settings& settings, const ComparisonSettings& 
                shown(comparison.confidence) + ", of alerts " + shown(comparison.alert_confidence));
   text += line("  every", cadence(comparison.every, comparison.overdue));
   text += line("  pair_within", shown(comparison.pair_within));
-  text += line("  pair chart, warning", run_length(comparison.warning_run_length, "pairs", Score::pairs));
   text +=
-      line("  pair chart, critical", run_length(10 * comparison.warning_run_length, "pairs", Score::pairs));
+      line("  pair chart, warning", run_length(comparison.warning_run_length, "pairs", score_of(comparison)));
+  text += line("  pair chart, critical",
+               run_length(10 * comparison.warning_run_length, "pairs", score_of(comparison)));
+  if (comparison.relation)
+    text += line("  relation", "y = " + shown(comparison.relation->intercept) + " + " +
+                                   shown(comparison.relation->slope) + " x, established");
   text += line("  outliers", std::string(comparison.set_outliers_aside ? "set_aside" : "keep") +
                                  ", a false one every " + rounded(comparison.outlier_run_length) + " pairs");
   text +=

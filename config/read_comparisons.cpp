@@ -24,6 +24,15 @@ ErrorRatioSettings error_ratio_of(const Section& comparison) {
   return ratio;
 }
 
+std::optional<EstablishedLine> relation_of(const Section& comparison) {
+  if (comparison.text("relation") == "identity") return EstablishedLine{};
+  const Section section = comparison.section("relation");
+  if (!section.exists()) return std::nullopt;
+  if (!(section.given("intercept") && section.given("slope")))
+    section.error_here("found no whole line, expected both intercept and slope, or the word identity");
+  return EstablishedLine{section.number("intercept").value_or(0), section.number("slope").value_or(1)};
+}
+
 void read_window(const Section& comparison, ComparisonSettings& settings) {
   const Section window = comparison.section("window");
   settings.window_pairs = window.whole_number("pairs").value_or(settings.window_pairs);
@@ -41,6 +50,7 @@ void read_rules(const Section& comparison, ComparisonSettings& settings) {
   settings.set_outliers_aside = comparison.text("outliers") != "keep";
   settings.split_memory = comparison.whole_number("split_memory").value_or(settings.split_memory);
   settings.prove_within = comparison.duration("prove_within");
+  settings.relation = relation_of(comparison);
 }
 
 /// The key among two that was written, so that the message stands where it can be mended.

@@ -203,9 +203,9 @@ Rows comparison_rows() {
       row("comparisons.*.fit", T::word, "deming", "the line's fit")
           .one_of("deming|weighted_deming")
           .coming(Later::refused, "weighted_deming"),
-      row("comparisons.*.relation", T::word_or_section, "", "an established line instead of the fitted one")
-          .one_of("identity")
-          .coming(Later::refused),
+      row("comparisons.*.relation", T::word_or_section, "",
+          "the line that is to hold; the pair chart asks against it, else against the pairs' own")
+          .one_of("identity"),
       row("comparisons.*.relation.intercept", T::number, "", "its intercept"),
       row("comparisons.*.relation.slope", T::number, "", "its slope").above(0, kAny),
       row("comparisons.*.confidence", T::number, "0.95", "of the intervals shown").within(0.5, 0.9999),

@@ -16,17 +16,15 @@ constexpr std::size_t kRecentPairs = 500;
 constexpr std::size_t kBiasHistory = 500;
 constexpr double kPlainTail = 0.05;  // each of the two one-sided tests
 constexpr double kCurvedTail = 0.01;
-// Against an established line the pair chart calls 7 % more often at a limit than without one: simulated as
-// the table of run lengths, at limits from 3.5 to 4.4 (tests/core/pair/pair_simulation_test.cpp repeats it).
-constexpr double kEstablishedLineFactor = 1.07;
 
 double resolution_of(const Measurand& measurand) {
   return measurand.decimals ? std::pow(10.0, -*measurand.decimals) : 0.0;
 }
 
 DriftLimits limits_of(const ComparisonSettings& config) {
-  const double run_length = config.warning_run_length * (config.relation ? kEstablishedLineFactor : 1);
-  return {limit_for(Score::pairs, run_length).h, limit_for(Score::pairs, critical_factor * run_length).h};
+  const Score score = score_of(config);
+  return {limit_for(score, config.warning_run_length).h,
+          limit_for(score, critical_factor * config.warning_run_length).h};
 }
 
 Interval around(Bias bias, double t) {

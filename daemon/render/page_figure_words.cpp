@@ -76,7 +76,10 @@ std::string pair_chart_words(const ComparisonScene& scene) {
   const std::string score = "change score " + shown(*chart.score, 2) + ", limit " + shown(chart.limit, 2) +
                             ", critical limit " + shown(chart.critical_limit, 2);
   if (chart.state == PairChartState::stable)
-    return "Pair chart stable: no change of the relation among " + pairs + " (" + score + ").";
+    return std::string("Pair chart stable: ") +
+           (chart.against_established_line ? "no departure from the established line"
+                                           : "no change of the relation") +
+           " among " + pairs + " (" + score + ").";
   return "Pair chart unstable: the relation changed " +
          beginning_words(chart.started_at, chart.started_between) + " (" + score + ").";
 }
