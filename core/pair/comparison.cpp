@@ -76,7 +76,8 @@ void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
   bool hold = false;
   if (fit.exists() && ratio.known) {
     const int df = fit.degrees_of_freedom();
-    const double residual = prediction_residual(fit, {pair.x, pair.y}, resolution);
+    const Point shares{1.0 / pair.x_replicates, 1.0 / pair.y_replicates};
+    const double residual = prediction_residual(fit, {pair.x, pair.y}, shares, resolution);
     if (outliers.flags(residual, df)) {
       const auto admitted = outliers.admit_or_hold({pair, serial, residual, df});
       for (const HeldPair& held : admitted) accept(held.pair, held.serial, held.accepted_later);
@@ -113,8 +114,11 @@ void Comparison::State::begin_stretch(Instant at, std::vector<Finding>& findings
 
 void Comparison::State::accept(const Pair& pair, std::int64_t serial, int later) {
   const Point point{pair.x, pair.y};
-  window.insert(point, {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates}, later);
-  chart.insert(point, pair.at, later, weight_of(pair, ratio));
+  window.insert(
+      point,
+      {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates, pair.x_squares, pair.y_squares},
+      later);
+  chart.insert(point, pair.at, later, weight_of(pair, ratio, config().fit));
   ++pairs_since_renewal;
   outliers.accepted(serial);
   if (RecentPair* kept = recent_of(serial)) kept->outcome = PairOutcome::accepted;
@@ -135,8 +139,9 @@ RecentPair* Comparison::State::recent_of(std::int64_t serial) {
 }
 
 void Comparison::State::evaluate(Instant at, std::vector<Finding>& findings) {
+  if (takes_replicates()) ratio = ratio_from_replicates(window, config().error_growth);
   if (ratio.known) watch_for_change(at, findings);
-  fit = fit_window(window, ratio);
+  fit = fit_window(window, ratio, config().fit);
   test_renewed_window(at, findings);
   judge_levels(at);
   move_verdict(at, findings);
@@ -253,7 +258,7 @@ Comparison& Comparison::operator=(const Comparison& other) {
 
 void Comparison::add(const Pair& pair, const ErrorRatio& ratio, std::vector<Finding>& findings) {
   state_->last_at = pair.at;
-  state_->ratio = ratio;
+  if (!state_->takes_replicates()) state_->ratio = ratio;
   state_->add(pair, findings);
 }
 

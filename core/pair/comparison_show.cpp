@@ -25,6 +25,30 @@ const char* name_of(ErrorSource source) {
   return "";
 }
 
+const char* name_of(ErrorGrowth growth) {
+  switch (growth) {
+    case ErrorGrowth::constant:
+      return "constant";
+    case ErrorGrowth::proportional:
+      return "proportional";
+    case ErrorGrowth::mixed:
+      return "mixed";
+  }
+  return "";
+}
+
+const char* name_of(LineMethod method) {
+  switch (method) {
+    case LineMethod::deming:
+      return "deming";
+    case LineMethod::weighted_deming:
+      return "weighted_deming";
+    case LineMethod::york:
+      return "york";
+  }
+  return "";
+}
+
 WindowView show_window(const State& state) {
   WindowView view;
   view.pairs = state.window.size();
@@ -37,10 +61,20 @@ WindowView show_window(const State& state) {
   return view;
 }
 
+ErrorModelSide show_side(const ErrorVariance& variance, const ErrorModel& model) {
+  const bool constant = model.growth == ErrorGrowth::constant;
+  ErrorModelSide side;
+  side.constant = std::sqrt(constant ? variance.variance : model.at_zero);
+  side.relative = std::sqrt(model.relative);
+  if (variance.degrees_of_freedom > 0) side.df = variance.degrees_of_freedom;
+  return side;
+}
+
 ErrorView show_error(const State& state) {
   const ErrorRatio& ratio = state.ratio;
   ErrorView view;
   view.source = name_of(state.config().error_ratio.source);
+  view.model.growth = name_of(state.config().error_growth);
   if (!ratio.known) {
     view.reason = ratio.reason.empty() ? "no_pairs_yet" : ratio.reason;
     return view;
@@ -53,18 +87,21 @@ ErrorView show_error(const State& state) {
   view.sd_y = std::sqrt(ratio.y.variance);
   if (ratio.x.degrees_of_freedom > 0) view.df_x = ratio.x.degrees_of_freedom;
   if (ratio.y.degrees_of_freedom > 0) view.df_y = ratio.y.degrees_of_freedom;
+  if (ratio.growth() != ErrorGrowth::constant) view.model.level = ratio.level;
+  view.model.x = show_side(ratio.x, ratio.x_model);
+  view.model.y = show_side(ratio.y, ratio.y_model);
   return view;
 }
 
-std::optional<double> slope_at(const State& state, double delta) {
-  const DemingLine line = deming_line(state.fit.moments, delta);
-  return line.exists() ? std::optional(line.slope) : std::nullopt;
+std::optional<double> slope_at(const State& state, double lambda) {
+  return slope_at_lambda(state.window, state.ratio, state.config().fit, lambda);
 }
 
 FitView show_fit(const State& state) {
   const WindowFit& fit = state.fit;
   const double mean_x = fit.line.mean_x;
   FitView view;
+  view.method = name_of(fit.method);
   view.intercept = fit.line.intercept();
   view.slope = fit.line.slope;
   view.se_intercept = bias_at(fit.line, fit.jackknife, 0).se;
@@ -77,9 +114,8 @@ FitView show_fit(const State& state) {
   view.intercept_interval = {view.intercept - t * view.se_intercept, view.intercept + t * view.se_intercept};
   view.slope_interval = {view.slope - t * view.se_slope, view.slope + t * view.se_slope};
   view.identity_p = identity_p(fit.line, fit.jackknife, fit.moments.n);
-  const Deltas deltas = state.deltas();
-  view.slope_at_lambda_low = slope_at(state, deltas[1]);
-  view.slope_at_lambda_high = slope_at(state, deltas[2]);
+  view.slope_at_lambda_low = slope_at(state, state.ratio.low);
+  view.slope_at_lambda_high = slope_at(state, state.ratio.high);
   return view;
 }
 
@@ -114,7 +150,7 @@ LevelView show_level(const State& state, const LevelNow& level) {
   view.reason = said.reason;
   if (!state.measurand().allowable) return view;
   view.allowable = level.allowable;
-  const SingleResult single = single_result(level.bias.value, state.fit.residual_variance,
+  const SingleResult single = single_result(level.bias.value, state.fit.residual_variance_at(level.level),
                                             state.fit.degrees_of_freedom(), level.allowable);
   view.single_result = SingleResultView{single.share_within, single.low, single.high};
   return view;
@@ -198,9 +234,9 @@ PairView show_pair(const State& state, const RecentPair& recent, std::int64_t fi
   view.in_window = recent.outcome == PairOutcome::accepted && recent.serial >= first_in_window;
   view.outlier = recent.outcome == PairOutcome::set_aside;
   if (state.fit.exists()) {
-    const Point point{view.x, view.y};
-    view.residual = view.in_window ? studentised_residual(state.fit, point, state.resolution)
-                                   : prediction_residual(state.fit, point, state.resolution);
+    const Point point{view.x, view.y}, shares{1.0 / view.x_replicates, 1.0 / view.y_replicates};
+    view.residual = view.in_window ? studentised_residual(state.fit, point, shares, state.resolution)
+                                   : prediction_residual(state.fit, point, shares, state.resolution);
   }
   return view;
 }
@@ -234,7 +270,7 @@ ComparisonView show(const State& state) {
   if (state.fit.exists()) {
     view.fit = show_fit(state);
     const Point shares = state.window.error_shares();
-    if (state.ratio.growth() == ErrorGrowth::constant &&
+    if (state.config().error_growth == ErrorGrowth::constant &&
         error_grows_with_level(state.window.points(), state.fit))
       view.warnings.push_back("error_grows_with_level");
     if (state.curved) view.warnings.push_back("curved");

@@ -13,6 +13,7 @@
 #include "core/pair/outlier.hpp"
 #include "core/pair/pair_chart.hpp"
 #include "core/pair/proof_plan.hpp"
+#include "core/pair/replicate_errors.hpp"
 #include "core/pair/t_table.hpp"
 #include "core/pair/verdict.hpp"
 #include "core/pair/window_fit.hpp"
@@ -71,6 +72,10 @@ struct Comparison::State {
   /// Why there can never be a verdict with these settings; empty: there can.
   [[nodiscard]] std::string_view no_verdict() const;
   [[nodiscard]] Deltas deltas() const;
+  /// The error ratio comes from the window's own replicates, not with each pair.
+  [[nodiscard]] bool takes_replicates() const {
+    return config().error_ratio.source == ErrorSource::replicates;
+  }
 
   void add(const Pair& pair, std::vector<Finding>& findings);
   void begin_stretch(Instant at, std::vector<Finding>& findings);

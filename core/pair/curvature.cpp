@@ -17,14 +17,7 @@ double product(const std::vector<double>& a, const std::vector<double>& b) {
   return sum;
 }
 
-void centre(std::vector<double>& values) {
-  double mean = 0;
-  for (const double value : values) mean += value;
-  mean /= static_cast<double>(values.size());
-  for (double& value : values) value -= mean;
-}
-
-// What of `values` the column does not explain; both are centred.
+// What of `values` the column does not explain.
 void take_out(const std::vector<double>& column, std::vector<double>& values) {
   const double slope = product(column, values) / product(column, column);
   for (std::size_t i = 0; i < values.size(); ++i) values[i] -= slope * column[i];
@@ -34,23 +27,28 @@ void take_out(const std::vector<double>& column, std::vector<double>& values) {
 std::optional<double> curvature_p(std::span<const Point> points, const WindowFit& fit) {
   const std::size_t n = points.size();
   if (n < 4) return std::nullopt;
-  std::vector<double> v, w;
+  // Each row is divided by the sd of its residual, so that errors that grow with the level count as they
+  // should.
+  std::vector<double> one, v, w;
   for (const Point p : points) {
-    const Point c = fit.moments.centred(p);
-    v.push_back(fit.line.residual(c));
-    w.push_back(fit.line.fitted(c));
+    const double fitted = fit.fitted(p, {1, 1});
+    const double variance = fit.weighted() ? fit.residual_variance_at(fit.line.mean_x + fitted) : 1;
+    if (!(variance > 0)) return std::nullopt;
+    one.push_back(1 / std::sqrt(variance));
+    v.push_back(fit.residual(p) * one.back());
+    w.push_back(fitted * one.back());
   }
-  centre(v);
-  centre(w);
+  take_out(one, v);
+  take_out(one, w);
   double widest = 0;
   for (const double value : w) widest = std::max(widest, std::abs(value));
   if (!(widest > 0)) return std::nullopt;
   std::vector<double> square;
-  for (double& value : w) {
-    value /= widest;
-    square.push_back(value * value);
+  for (std::size_t i = 0; i < n; ++i) {
+    w[i] /= widest;
+    square.push_back(w[i] * w[i] / one[i]);
   }
-  centre(square);
+  take_out(one, square);
   const double whole = product(square, square);
   take_out(w, square);
   take_out(w, v);

@@ -1,6 +1,7 @@
 #include "core/pair/error_ratio.hpp"
 
 #include <cmath>
+#include <utility>
 
 #include "core/base/distributions.hpp"
 
@@ -63,6 +64,31 @@ double mean_level(std::span<const Repeatability> x, std::span<const Repeatabilit
       df += standard.degrees_of_freedom;
     }
   return df > 0 ? sum / df : 0;
+}
+
+ErrorRatio ratio_from_standards(std::span<const Repeatability> x, std::span<const Repeatability> y,
+                                ErrorGrowth growth, const std::string& measurand, const std::string& on_x,
+                                const std::string& on_y) {
+  for (const auto& [standards, analyzer] : {std::pair(x, &on_x), std::pair(y, &on_y)}) {
+    const ErrorVariance sum = pooled(standards);
+    const std::string to_know = measurand + " on " + *analyzer;
+    ErrorRatio unknown;
+    if (!(sum.degrees_of_freedom > 0 && sum.variance > 0)) {
+      unknown.reason = "too few check readings of " + to_know + " to know its repeatability";
+      return unknown;
+    }
+    if (growth == ErrorGrowth::constant) continue;
+    const std::string_view no = fit_error_model(growth, standards).reason;
+    if (no == no_model::one_level)
+      unknown.reason = "the check standards of " + to_know +
+                       " lie at one level, and a mixed error model needs two that are a fifth apart";
+    else if (no == no_model::at_zero)
+      unknown.reason = "a check standard of " + to_know +
+                       " lies at level zero, where an error proportional to the level vanishes";
+    if (!unknown.reason.empty()) return unknown;
+  }
+  if (growth == ErrorGrowth::constant) return ratio_of(pooled(x), pooled(y));
+  return ratio_of(fit_error_model(growth, x), fit_error_model(growth, y), mean_level(x, y));
 }
 
 ErrorRatio given_ratio(const ErrorRatioSettings& settings, ErrorGrowth growth) {

@@ -1,6 +1,7 @@
 #pragma once
-// lambda from check standards or from the configuration (3-statistics 3.1; F-interval of a variance ratio).
+// lambda from check standards or from the configuration, with the F-interval of a variance ratio.
 #include <span>
+#include <string>
 
 #include "core/base/settings.hpp"
 #include "core/chart/repeatability.hpp"
@@ -21,6 +22,13 @@ namespace agreed {
 
 /// The mean level of standards, by degrees of freedom: where `lambda` of a mixed model is stated.
 [[nodiscard]] double mean_level(std::span<const Repeatability> x, std::span<const Repeatability> y);
+
+/// From the check standards of both analyzers, errors going with the level as `growth` says. The reason why
+/// there is none names measurand and analyzer.
+[[nodiscard]] ErrorRatio ratio_from_standards(std::span<const Repeatability> x,
+                                              std::span<const Repeatability> y, ErrorGrowth growth,
+                                              const std::string& measurand, const std::string& on_x,
+                                              const std::string& on_y);
 
 /// As configured: given sds (interval of no width), or a bare lambda (a factor 2 either way). Of errors that
 /// are proportional to the level lambda is the ratio of their squared coefficients of variation.

@@ -15,6 +15,7 @@ struct Pair {
   Instant at;           ///< the later of the two sides' first results
   double x = 0, y = 0;  ///< means of the replicates
   int x_replicates = 1, y_replicates = 1;
+  double x_squares = 0, y_squares = 0;  ///< sums of squares of the replicates about their means
 };
 
 /// Error variance of single results of one analyzer, pooled or at a level.

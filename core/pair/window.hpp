@@ -22,8 +22,9 @@ namespace agreed {
 /// What a pair in the window is besides its values.
 struct WindowEntry {
   Instant at;
-  std::int64_t serial = 0;          ///< number of the pair in the comparison, from 1
-  double x_share = 1, y_share = 1;  ///< error variance of the mean / of a single result: 1 / replicates
+  std::int64_t serial = 0;              ///< number of the pair in the comparison, from 1
+  double x_share = 1, y_share = 1;      ///< error variance of the mean / of a single result: 1 / replicates
+  double x_squares = 0, y_squares = 0;  ///< sums of squares of the replicates about their means
 };
 
 class Window {
@@ -46,6 +47,8 @@ class Window {
   [[nodiscard]] std::int64_t number() const { return number_; }
   /// Mean over the window of what replicates leave of the error variance of x and of y.
   [[nodiscard]] Point error_shares() const;
+  /// All pairs have the same numbers of replicates.
+  [[nodiscard]] bool has_equal_shares() const;
 
  private:
   void drop_oldest();

@@ -17,23 +17,38 @@ Json window_of(const WindowView& window) {
           {"since_intervention", json_time(window.since_intervention)}};
 }
 
+Json side_of(const std::optional<ErrorModelSide>& side) {
+  if (!side) return nullptr;
+  return {{"constant", json_number(side->constant)},
+          {"relative", json_number(side->relative)},
+          {"df", json_number(side->df)}};
+}
+
+Json model_of(const ErrorModelView& model) {
+  return {{"growth", model.growth},
+          {"level", json_number(model.level)},
+          {"x", side_of(model.x)},
+          {"y", side_of(model.y)}};
+}
+
 Json error_of(const ErrorView& error) {
   return {{"lambda", json_number(error.lambda)}, {"lambda_is", "var(x error)/var(y error)"},
           {"low", json_number(error.low)},       {"high", json_number(error.high)},
           {"sd_x", json_number(error.sd_x)},     {"sd_y", json_number(error.sd_y)},
           {"df_x", json_number(error.df_x)},     {"df_y", json_number(error.df_y)},
-          {"source", json_words(error.source)},  {"reason", json_words(error.reason)}};
+          {"source", json_words(error.source)},  {"reason", json_words(error.reason)},
+          {"model", model_of(error.model)}};
 }
 
-Json fit_of(const std::optional<FitView>& fit, FitMethod method) {
+Json fit_of(const std::optional<FitView>& fit) {
   if (!fit) return nullptr;
-  return {{"method", method == FitMethod::deming ? "deming" : "weighted_deming"},
+  return {{"method", fit->method},
           {"intercept", json_number(fit->intercept)},
           {"slope", json_number(fit->slope)},
           {"se_intercept", json_number(fit->se_intercept)},
           {"se_slope", json_number(fit->se_slope)},
           {"cov", json_number(fit->cov)},
-          {"se_method", "jackknife"},
+          {"se_method", fit->se_method},
           {"analytic_se_intercept", json_number(fit->analytic_se_intercept)},
           {"analytic_se_slope", json_number(fit->analytic_se_slope)},
           {"intercept_interval", interval_of(fit->intercept_interval)},
@@ -196,7 +211,7 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"waiting", view.waiting},
           {"window", window_of(view.window)},
           {"error", error_of(view.error)},
-          {"fit", fit_of(view.fit, comparison.fit)},
+          {"fit", fit_of(view.fit)},
           {"fit_reason", json_words(view.fit_reason)},
           {"levels", levels_of(view)},
           {"difference", difference_of(view.difference)},

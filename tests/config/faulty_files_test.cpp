@@ -222,8 +222,6 @@ std::vector<Fault> faults_of_what_comes_later() {
        "found 'classical', which is not available in this version yet"},
       {"weighted fit", with("every: 2h", "fit: weighted_deming"), 27, 10, "comparisons.protein.fit",
        "not available in this version yet"},
-      {"an established relation", with("every: 2h", "relation: identity"), 27, 5,
-       "comparisons.protein.relation", "not available in this version yet"},
       {"lambda from replicates", with("every: 2h", "error_ratio: from_replicates"), 27, 18,
        "comparisons.protein.error_ratio", "not available in this version yet"},
       {"run rules", with("baseline: 30", "run_rules: [{trend: 6}]"), 17, 10, "charts.run_rules",
@@ -264,6 +262,22 @@ TEST_CASE("the configuration that the faults are put into is good") {
   const ConfigResult result = parse_config(kGood, "/nowhere/agreed.yaml");
   CHECK(result.config.has_value());
   CHECK(result.problems.empty());
+}
+
+TEST_CASE("an established relation is a word or a whole line") {
+  const ConfigResult word = parse_config(with("every: 2h", "relation: identity"), "agreed.yaml");
+  REQUIRE(word.config);
+  CHECK(word.config->settings->comparisons[0].relation == EstablishedLine{0, 1});
+  const ConfigResult line =
+      parse_config(with("every: 2h", "relation: {intercept: -0.1, slope: 1.02}"), "agreed.yaml");
+  REQUIRE(line.config);
+  CHECK(line.config->settings->comparisons[0].relation == EstablishedLine{-0.1, 1.02});
+  CHECK_FALSE(parse_config(kGood, "agreed.yaml").config->settings->comparisons[0].relation);
+  for (const char* bad : {"relation: {slope: 1.02}", "relation: {intercept: 0}",
+                          "relation: {intercept: 0, slope: 0}", "relation: one_to_one", "relation: {}"}) {
+    INFO(bad);
+    CHECK_FALSE(parse_config(with("every: 2h", bad), "agreed.yaml").config);
+  }
 }
 
 TEST_CASE("faults of structure are told at their place") {

@@ -106,7 +106,7 @@ TEST_CASE(
     "after") {
   Settings settings = harrow_mill();
   settings.measurands[0].allowable =
-      AllowableDifference{0.012, std::nullopt};  // too little for the first pairs
+      AllowableDifference{0.008, std::nullopt};  // too little for the first pairs
   settings.comparisons[0].prove_within = std::chrono::hours(50);
   Mill mill(84, settings);
   mill.run(20);  // inconclusive from the 20th pair
@@ -122,7 +122,7 @@ TEST_CASE(
   CHECK(found[0].severity == Severity::notice);
   CHECK(text_in(found[0], "inconclusive_since") == to_rfc3339(since));
   CHECK(number_in(found[0], "pairs") == 46);
-  CHECK(number_in(found[0], "allowable") == 0.012);
+  CHECK(number_in(found[0], "allowable") == 0.008);
   const ComparisonView view = mill.comparison.view();
   REQUIRE(view.proof);
   CHECK(view.proof->overdue);
@@ -173,7 +173,8 @@ TEST_CASE(
   CHECK(drifting.back().severity == Severity::critical);
   CHECK(number_in(drifting.back(), "relation_slope") == 1);
   CHECK(number_in(drifting.back(), "shift") == doctest::Approx(0.05).epsilon(0.4));
-  CHECK(drifting.size() <= 2);  // a warning, then critical: a lasting difference is not told pair by pair
+  // A warning, then critical: a lasting difference is not told pair by pair.
+  CHECK(std::count_if(drifting.begin(), drifting.end(), [](const Finding& f) { return f.holds; }) <= 2);
   const ComparisonView view = mill.comparison.view();
   CHECK_FALSE(view.pair_chart.against_established_line);
   CHECK(view.verdict == Verdict::agreement_shown);  // 0.05 is within what is allowable
