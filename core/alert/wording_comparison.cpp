@@ -167,7 +167,7 @@ std::string windows_words(double p) {
 
 AlertWords outlier_words(const ComparisonAlert& pair) {
   const std::string sample = text_in(pair.alert.details, "sample").value_or("");
-  const auto x = pair.number("x"), y = pair.number("y"), p = pair.number("p");
+  const auto x = pair.number("x_value"), y = pair.number("y_value"), p = pair.number("p");
   const auto residual = pair.number("residual"), count = pair.number("count");
   const bool several = count.value_or(1) > 1;
   const std::string sentence_start = sample.empty() ? "A split sample" : "Split sample " + sample;
