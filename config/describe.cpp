@@ -121,13 +121,26 @@ std::string error_ratio_text(const ErrorRatioSettings& ratio) {
     case ErrorSource::check_standards:
       return "from the check standards";
     case ErrorSource::replicates:
-      return "from replicates";
+      return "from the replicates of the split samples";
     case ErrorSource::given_sds:
       return "sd_x " + shown(ratio.sd_x) + ", sd_y " + shown(ratio.sd_y);
     case ErrorSource::given_lambda:
       return "lambda = var(x error)/var(y error) = " + shown(ratio.lambda) + ", to a factor of 2";
   }
   return "";
+}
+
+std::string fit_text(const ComparisonSettings& comparison) {
+  const std::string fit = comparison.fit == FitMethod::deming ? "deming" : "weighted_deming";
+  switch (comparison.error_growth) {
+    case ErrorGrowth::constant:
+      return fit + ", errors constant";
+    case ErrorGrowth::proportional:
+      return fit + ", errors proportional to the level";
+    case ErrorGrowth::mixed:
+      return fit + ", errors with a constant and a proportional part";
+  }
+  return fit;
 }
 
 std::string comparison_text(const Settings& settings, const ComparisonSettings& comparison) {
@@ -138,6 +151,7 @@ std::string comparison_text(const Settings& settings, const ComparisonSettings& 
                               ", y = " + settings.of(comparison.y).id);
   text += line("  window", std::to_string(comparison.window_pairs) + " pairs, " + age);
   text += line("  error_ratio", error_ratio_text(comparison.error_ratio));
+  text += line("  fit", fit_text(comparison));
   text += line("  verdict", "from " + std::to_string(comparison.least_pairs) + " pairs, moves after " +
                                 std::to_string(comparison.confirm) + " in a row");
   text += line("  confidence",

@@ -56,12 +56,19 @@ std::string which_moved(const ComparisonAlert& pair) {
          pair.both() + " do: more readings of them will decide it.";
 }
 
+/// How the line was fitted, when not by plain Deming regression.
+std::string fit_words(const ComparisonAlert& pair) {
+  const std::string fit = text_in(pair.alert.details, "fit").value_or("");
+  if (fit == "weighted_deming") return " (weighted Deming)";
+  return fit == "york" ? " (each pair weighted by its errors)" : "";
+}
+
 std::string line_words(const ComparisonAlert& pair) {
   const auto slope = pair.number("slope"), intercept = pair.number("intercept"), pairs = pair.number("pairs");
   std::string text;
   if (slope && intercept)
-    text = " The fitted line is " + pair.y + " = " + pair.numbers.mean(*intercept) + " + " +
-           fixed(*slope, 4) + " x " + pair.x;
+    text = " The fitted line" + fit_words(pair) + " is " + pair.y + " = " + pair.numbers.mean(*intercept) +
+           " + " + fixed(*slope, 4) + " x " + pair.x;
   if (pairs) text += (text.empty() ? " It rests on " : ", from ") + counted(*pairs, "pair", "pairs");
   return text.empty() ? text : text + ".";
 }

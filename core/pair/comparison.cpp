@@ -118,7 +118,7 @@ void Comparison::State::accept(const Pair& pair, std::int64_t serial, int later)
       point,
       {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates, pair.x_squares, pair.y_squares},
       later);
-  chart.insert(point, pair.at, later, weight_of(pair, ratio, config().fit));
+  chart.insert(point, pair.at, later, weight_of(pair, ratio));
   ++pairs_since_renewal;
   outliers.accepted(serial);
   if (RecentPair* kept = recent_of(serial)) kept->outcome = PairOutcome::accepted;

@@ -67,6 +67,7 @@ Finding agreement_lost_finding(const Comparison::State& state, Instant at) {
                            {"intercept", state.fit.line.intercept()},
                            {"pairs", static_cast<double>(state.window.size())}};
   finding.details.insert(finding.details.end(), details.begin(), details.end());
+  if (state.fit.weighted()) finding.details.emplace_back("fit", std::string(to_string(state.fit.method)));
   return finding;
 }
 

@@ -37,18 +37,6 @@ const char* name_of(ErrorGrowth growth) {
   return "";
 }
 
-const char* name_of(LineMethod method) {
-  switch (method) {
-    case LineMethod::deming:
-      return "deming";
-    case LineMethod::weighted_deming:
-      return "weighted_deming";
-    case LineMethod::york:
-      return "york";
-  }
-  return "";
-}
-
 WindowView show_window(const State& state) {
   WindowView view;
   view.pairs = state.window.size();
@@ -101,7 +89,7 @@ FitView show_fit(const State& state) {
   const WindowFit& fit = state.fit;
   const double mean_x = fit.line.mean_x;
   FitView view;
-  view.method = name_of(fit.method);
+  view.method = to_string(fit.method);
   view.intercept = fit.line.intercept();
   view.slope = fit.line.slope;
   view.se_intercept = bias_at(fit.line, fit.jackknife, 0).se;

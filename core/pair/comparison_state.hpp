@@ -96,7 +96,7 @@ struct Comparison::State {
 /// The findings of a comparison. Their details, by name (values in the measurand's unit unless said):
 ///   all            measurand, unit, x, y: ids and the unit
 ///   agreement_lost level, bias (y - x), low, high (interval at `confidence`), confidence, allowable, slope,
-///                  intercept, pairs (in the window)
+///                  intercept, pairs (in the window); fit (york, weighted_deming) when it is weighted
 ///   agreement_drifting  score, limit (crossed), critical_limit (scores, in sd), shift (mean residual of y
 ///                  after minus before), pairs_before, pairs_after; against an established line also
 ///                  relation_intercept, relation_slope

@@ -12,14 +12,13 @@
 // millionth
 //   of that at the reference level.
 // Cost: O(1).
-#include "core/base/settings.hpp"
 #include "core/pair/pair.hpp"
 
 namespace agreed {
 
 [[nodiscard]] double level_of(const Pair& pair, double lambda);
 
-/// > 0 and finite. `fit`: weighted Deming takes errors for proportional to the level whatever the models say.
-[[nodiscard]] double weight_of(const Pair& pair, const ErrorRatio& ratio, FitMethod fit = FitMethod::deming);
+/// > 0 and finite.
+[[nodiscard]] double weight_of(const Pair& pair, const ErrorRatio& ratio);
 
 }  // namespace agreed

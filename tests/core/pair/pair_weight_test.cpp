@@ -142,15 +142,6 @@ TEST_CASE("the weight goes with the inverse variance at the pair's level as meas
   CHECK(weight_of(pair_at(0, 0), ratio) == doctest::Approx(1e6));
 }
 
-TEST_CASE("weighted Deming takes the errors for proportional to the level") {
-  const ErrorRatio ratio = equal_errors();
-  const auto weight = [&](double level) {
-    return weight_of(pair_at(level, level), ratio, FitMethod::weighted_deming);
-  };
-  CHECK_CLOSE(weight(8) / weight(24), 9, 1e-12);
-  CHECK(std::isfinite(weight(0)));
-}
-
 TEST_CASE("replicates enter the weight by what they leave of the difference's variance") {
   ErrorRatio ratio = equal_errors();
   ratio.lambda = 2;  // var(y - x) = 1 + 2 of single results, 1/2 + 2/4 of these means
