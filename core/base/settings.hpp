@@ -117,6 +117,12 @@ struct ErrorRatioSettings {
   double lambda = 0;          ///< given_lambda
 };
 
+/// A relation that was established before and is to hold: y = intercept + slope * x.
+struct EstablishedLine {
+  double intercept = 0, slope = 1;
+  bool operator==(const EstablishedLine&) const = default;
+};
+
 enum class FitMethod { deming, weighted_deming };
 
 /// How the error of a single result goes with the level: sd constant, proportional to the level, or
@@ -146,6 +152,8 @@ struct ComparisonSettings {
   double outlier_run_length = 0;  ///< pairs between false outliers
   double scatter_run_length = 0;  ///< pairs between false `sample_scatter`
   std::optional<Duration> prove_within;
+  std::optional<EstablishedLine>
+      relation;  ///< what the pair chart holds the pairs against; none: their own line
 };
 
 /// How the yearly allowance of false alerts is spent.

@@ -37,18 +37,6 @@ const char* name_of(ErrorGrowth growth) {
   return "";
 }
 
-const char* name_of(LineMethod method) {
-  switch (method) {
-    case LineMethod::deming:
-      return "deming";
-    case LineMethod::weighted_deming:
-      return "weighted_deming";
-    case LineMethod::york:
-      return "york";
-  }
-  return "";
-}
-
 WindowView show_window(const State& state) {
   WindowView view;
   view.pairs = state.window.size();
@@ -101,7 +89,7 @@ FitView show_fit(const State& state) {
   const WindowFit& fit = state.fit;
   const double mean_x = fit.line.mean_x;
   FitView view;
-  view.method = name_of(fit.method);
+  view.method = to_string(fit.method);
   view.intercept = fit.line.intercept();
   view.slope = fit.line.slope;
   view.se_intercept = bias_at(fit.line, fit.jackknife, 0).se;
@@ -179,7 +167,8 @@ PairChartView show_pair_chart(const State& state, std::vector<std::string>& warn
   view.limit = limits.warning;
   view.critical_limit = limits.critical;
   view.in_control_run_length = config.warning_run_length;
-  view.extrapolated = limit_for(Score::pairs, critical_factor * config.warning_run_length).extrapolated;
+  view.extrapolated = limit_for(score_of(config), critical_factor * config.warning_run_length).extrapolated;
+  view.against_established_line = state.chart.against_established_line();
   view.severity = state.alarm.open();
   std::optional<double> evidence;
   if (state.ratio.known && view.pairs > 0) {
@@ -203,6 +192,22 @@ PairChartView show_pair_chart(const State& state, std::vector<std::string>& warn
   } else if (view.score) {
     view.state = PairChartState::stable;
   }
+  return view;
+}
+
+std::optional<ProofView> show_proof(const State& state) {
+  if (state.verdict.verdict() != Verdict::inconclusive || state.window.size() < state.config().least_pairs)
+    return std::nullopt;
+  const auto plan = proof_plan_of(state);
+  if (!plan) return std::nullopt;
+  ProofView view;
+  view.overdue = state.unproven.has_value();
+  view.level = plan->level;
+  view.aim = plan->aim;
+  view.more_pairs = plan->more_pairs;
+  view.residual_sd = std::sqrt(state.fit.residual_variance);
+  if (plan->scatter_factor) view.sd_needed = *plan->scatter_factor * view.residual_sd;
+  view.reason = plan->reason;
   return view;
 }
 
@@ -243,6 +248,8 @@ ComparisonView show(const State& state) {
   view.verdict_since = state.verdict.since();
   view.verdict_reason = state.verdict.reason();
   view.last_agreement = state.last_agreement;
+  if (state.lost) view.agreement_lost = state.lost->at;
+  view.proof = show_proof(state);
   view.pairs_total = state.pairs_total;
   view.window = show_window(state);
   view.error = show_error(state);
@@ -254,6 +261,7 @@ ComparisonView show(const State& state) {
     if (state.config().error_growth == ErrorGrowth::constant &&
         error_grows_with_level(state.window.points(), state.fit))
       view.warnings.push_back("error_grows_with_level");
+    if (state.curved) view.warnings.push_back("curved");
     view.scatter = describe_scatter(state.fit, state.ratio, shares);
     if (view.scatter) view.scatter->excess = state.scatter_excess;
     view.range = describe_range(state.fit, state.ratio, shares, state.measurand().decision_levels);

@@ -112,7 +112,20 @@ struct PairChartView {
   std::optional<Severity> severity;  ///< of the open signal
   std::optional<Instant> started_at;
   std::optional<Period> started_between;
+  bool against_established_line = false;  ///< else against the pairs' own line
   bool operator==(const PairChartView&) const = default;
+};
+
+/// What would decide an inconclusive verdict (core/pair/proof_plan.hpp).
+struct ProofView {
+  bool overdue = false;  ///< inconclusive for longer than prove_within
+  double level = 0;
+  Verdict aim = Verdict::agreement_shown;
+  std::optional<int> more_pairs;
+  std::optional<double> sd_needed;  ///< residual sd that would decide it with the present pairs
+  double residual_sd = 0;
+  std::string reason;  ///< why no number of pairs would
+  bool operator==(const ProofView&) const = default;
 };
 
 struct OutlierView {
@@ -146,6 +159,9 @@ struct ComparisonView {
   std::optional<Instant> verdict_since;
   std::string verdict_reason;
   std::optional<Instant> last_agreement;  ///< newest pair at which the verdict was agreement_shown
+  std::optional<Instant>
+      agreement_lost;              ///< since when agreement is lost and not shown again; none: it is not
+  std::optional<ProofView> proof;  ///< while the verdict is inconclusive and enough pairs came
   std::vector<std::string> warnings;
   std::int64_t pairs_total = 0;
   std::int64_t waiting = 0;  ///< halves without a partner

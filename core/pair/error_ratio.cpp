@@ -48,6 +48,10 @@ ErrorRatio ratio_of(const ErrorModel& x, const ErrorModel& y, double level) {
       ratio.reason = model->reason;
       return ratio;
     }
+  if (!(x.variance_at(level) > 0 && y.variance_at(level) > 0)) {
+    ratio.reason = "repeatability_is_zero";
+    return ratio;
+  }
   ratio = ratio_of(ErrorVariance{x.variance_at(level), x.degrees_of_freedom_at(level)},
                    ErrorVariance{y.variance_at(level), y.degrees_of_freedom_at(level)});
   ratio.x_model = x;

@@ -131,6 +131,18 @@ Seen seen(const WindowFit& fit, Point pair, Point shares, double resolution) {
 }
 }  // namespace
 
+const char* to_string(LineMethod method) {
+  switch (method) {
+    case LineMethod::deming:
+      return "deming";
+    case LineMethod::weighted_deming:
+      return "weighted_deming";
+    case LineMethod::york:
+      return "york";
+  }
+  return "";
+}
+
 double WindowFit::residual_variance_at(double level) const {
   if (!weighted()) return residual_variance;
   const PairErrors errors = weighing.errors_at({level, level + line.difference_at(level)});

@@ -22,6 +22,7 @@
 namespace agreed {
 
 enum class LineMethod { deming, weighted_deming, york };
+[[nodiscard]] const char* to_string(LineMethod method);
 
 struct WindowFit {
   std::string reason;

@@ -126,10 +126,28 @@ Json pair_chart_of(const PairChartView& chart) {
           {"critical_limit", json_number(chart.critical_limit)},
           {"in_control_run_length", json_number(chart.in_control_run_length)},
           {"limit_extrapolated", chart.extrapolated},
+          {"against", chart.against_established_line ? "established_line" : "own_line"},
           {"severity", chart.severity ? Json(to_string(*chart.severity)) : Json(nullptr)},
           {"started_at", json_time(chart.started_at)},
           {"started_between", json_period(chart.started_between)},
           {"reason", chart.score ? Json(nullptr) : Json("the pair chart needs 7 pairs in this stretch")}};
+}
+
+Json proof_of(const std::optional<ProofView>& proof) {
+  if (!proof) return nullptr;
+  return {{"overdue", proof->overdue},
+          {"level", json_number(proof->level)},
+          {"aim", to_string(proof->aim)},
+          {"more_pairs", proof->more_pairs ? Json(*proof->more_pairs) : Json(nullptr)},
+          {"residual_sd", json_number(proof->residual_sd)},
+          {"sd_needed", json_number(proof->sd_needed)},
+          {"reason", json_words(proof->reason)}};
+}
+
+/// The established line that the configuration names, null when there is none.
+Json relation_of(const std::optional<EstablishedLine>& relation) {
+  if (!relation) return nullptr;
+  return {{"intercept", json_number(relation->intercept)}, {"slope", json_number(relation->slope)}};
 }
 
 Json outliers_of(const ComparisonView& view) {
@@ -185,6 +203,9 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"verdict_since", json_time(view.verdict_since)},
           {"verdict_reason", json_words(view.verdict_reason)},
           {"last_agreement_at", json_time(view.last_agreement)},
+          {"agreement_lost_at", json_time(view.agreement_lost)},
+          {"proof", proof_of(view.proof)},
+          {"relation", relation_of(comparison.relation)},
           {"warnings", view.warnings},
           {"pairs_total", view.pairs_total},
           {"waiting", view.waiting},
