@@ -236,7 +236,8 @@ class Chart:
         n, mean, sd = len(v), float(v.mean()), float(v.std(ddof=1))
         half = t_quantile(stats.norm.cdf(self.limit), n - 1) * sd * math.sqrt(1 + 1 / n)
         out = {
-            "baseline": {"readings": n, "center": mean, "sd": sd, "sigma": moving_range_mean(v) / D2,
+            "baseline": {"readings": n, "center": mean, "sd": sd, "sd_degrees_of_freedom": n - 1,
+                         "carried_over": 0, "sigma": moving_range_mean(v) / D2,
                          "sigma_degrees_of_freedom": moving_range_degrees_of_freedom(n),
                          "moving_range_mean": moving_range_mean(v),
                          "set_aside": sum(p["set_aside"] for p in self.points)},
@@ -259,5 +260,40 @@ class Chart:
             value, expanded, factor = reference
             u = math.sqrt(sd**2 / n + (expanded / factor) ** 2)
             out["reference"] = {"value": value, "expanded_uncertainty": expanded, "coverage_factor": factor,
-                                "bias": mean - value, "normalised_error": (mean - value) / (2 * u)}
+                                "bias": mean - value, "normalised_error": (mean - value) / (2 * u),
+                                "allowed_bias": expanded + self.limit * sd / math.sqrt(n) if n >= 30 else None}
         return out
+
+
+def runs_of_replicates(runs, run_length):
+    """What a chart shows of runs of equally many replicates while nothing is wrong with them."""
+    data = np.array(runs, float)
+    n, k = data.shape
+    squares = ((data - data.mean(axis=1, keepdims=True)) ** 2).sum(axis=1)
+
+    def score(split):
+        before, after = split * (k - 1), (n - split) * (k - 1)
+        f = (squares[split:].sum() / after) / (squares[:split].sum() / before)
+        a, b = 2 / (9 * after), 2 / (9 * before)
+        return ((1 - b) * f ** (1 / 3) - (1 - a)) / math.sqrt(b * f ** (2 / 3) + a)
+    within = squares.sum() / (n * (k - 1))
+    of_means = (moving_range_mean(data.mean(axis=1)) / D2) ** 2
+    return {"points": [{"value": float(run.mean()), "replicates": k, "within_sd": float(run.std(ddof=1))} for run in data],
+            "precision": {"score": max(score(split) for split in range(1, n) if split * (k - 1) >= 4),
+                          "limit": limit_for(PRECISION, (2 - 1 / (k - 1)) * run_length),
+                          "in_control_run_length": run_length},
+            "replicates": {"runs": n, "per_run": k, "within_sd": math.sqrt(within),
+                           "within_degrees_of_freedom": n * (k - 1),
+                           "between_sd": math.sqrt(max(of_means - within / k, 0.0)), "tell_precision": True}}
+
+
+def effect(before, after):
+    """after - before with Welch's interval."""
+    before, after = np.asarray(before, float), np.asarray(after, float)
+    parts = [v.var(ddof=1) / len(v) for v in (before, after)]
+    df = sum(parts) ** 2 / sum(p**2 / (len(v) - 1) for p, v in zip(parts, (before, after)))
+    half = -t_quantile(0.025, df) * math.sqrt(sum(parts))
+    difference = float(after.mean() - before.mean())
+    return {"readings_before": len(before), "readings_after": len(after), "mean_before": float(before.mean()),
+            "mean_after": float(after.mean()), "difference": difference, "low": difference - half,
+            "high": difference + half}

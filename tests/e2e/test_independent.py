@@ -319,3 +319,28 @@ class Independent(SiteTest):
 
     def test_errors_with_a_constant_and_a_growing_part(self):
         self.follow_growing("mixed", "error_model: mixed", "york")
+
+    def test_runs_of_replicates_and_an_intervention(self):
+        generator = random.Random(31)
+        rows, runs, before, after = [], [], [], []
+        for i in range(36):
+            of_run = 10.62 + generator.gauss(0, 0.02)
+            runs.append([round(of_run + generator.gauss(0, 0.02), 3) for _ in range(3)])
+            rows += [("check", rfc3339(START + i * HOUR), "protein", "wheat-low", value, k)
+                     for k, value in enumerate(runs[-1])]
+            for values, time in ((before, START + i * HOUR), (after, START + (i + 40) * HOUR)):
+                values.append(round(13.41 + (0.03 if values is after else 0) + generator.gauss(0, 0.02), 3))
+                rows.append(("check", rfc3339(time), "protein", "wheat-high", values[-1], 0))
+        rows.append(("intervention", rfc3339(START + 38 * HOUR), "", "recalibrated", "", ""))
+        rows = [row for row in rows if row[3] != "wheat-low"] + [row for row in rows if row[3] == "wheat-low"]
+        site = self.make_site(config=CONFIG.format(port=0, rescan="1s", decimals=3, routes="    []")).start()
+        site.drop("line1", "readings.csv", csv(rows).replace("item,value", "item,value,replicate"))
+        site.wait_taken()
+        expected = independent_chart.runs_of_replicates(runs, CHART_RUN_LENGTH)
+        self.compare(expected, site.get("/api/charts/line1/wheat-low/protein?points=500"), "runs")
+        shown = site.get("/api/charts/line1/wheat-high/protein")
+        effect = independent_chart.effect(before, after)
+        self.compare({**effect, "what": "recalibrated", "allowable": allowable(np.mean(before))},
+                     shown["intervention_effect"], "effect")
+        self.compare(effect, shown["since_first"], "since_first")
+        self.assertEqual(self.wrong, [], "\n" + "\n".join(self.wrong))
