@@ -43,7 +43,9 @@ Chart::State::State(const Settings& all, ChartIndex at)
       index(at),
       level(limit_for(Score::level, chart().level_run_length)),
       precision(limit_for(Score::precision, chart().precision_run_length)),
-      stretch(new_stretch()) {}
+      stretch(new_stretch()) {
+  if (chart().method == ChartMethod::classical) classical.emplace(classical::Fold(chart()));
+}
 
 Stretch Chart::State::new_stretch() const {
   const std::optional<int> decimals = measurand().decimals;
@@ -109,6 +111,7 @@ void Chart::State::begin_stretch(Instant at, const std::string& what, std::vecto
   before_stretch = repeatability();
   if (alarm) findings.push_back(ceased(at, "new_stretch", 0));
   alarm.reset();
+  if (classical) restart_classical(at, findings);
   stretch = new_stretch();
   set_aside = 0;
   stretch_begins = true;
@@ -249,6 +252,10 @@ void Chart::add(const CheckReading& reading, std::vector<Finding>& findings) {
   s.newest = reading.measured_at;
   s.follow_lot(reading.measured_at, findings);
   PointRecord& point = s.take(reading.measured_at, reading.value);
+  if (s.classical) {
+    s.judge_by_limits(reading.measured_at, {&reading.value, 1}, findings);
+    return s.remember_repeatability(reading.measured_at);
+  }
   const bool open = s.alarm.has_value();
   s.test(point, findings);
   if (open) s.follow_up(point, findings);
@@ -290,9 +297,11 @@ std::optional<Repeatability> Chart::repeatability_at(Instant at) const {
 
 void Chart::conditions(std::vector<Finding>& findings) const {
   if (state_->alarm) findings.push_back(state_->finding(state_->describe()));
+  if (state_->classical && state_->classical->fold.alarm()) findings.push_back(state_->classical_finding());
 }
 
 ChartState Chart::state() const {
+  if (state_->classical) return state_->classical->fold.state();
   if (state_->alarm) return ChartState::unstable;
   return state_->stretch.count() < state_->chart().baseline ? ChartState::learning : ChartState::stable;
 }

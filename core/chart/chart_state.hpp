@@ -8,6 +8,7 @@
 #include "core/base/settings.hpp"
 #include "core/chart/aftermath.hpp"
 #include "core/chart/chart.hpp"
+#include "core/chart/classical/fold.hpp"
 #include "core/chart/explanation.hpp"
 #include "core/chart/level_score.hpp"
 #include "core/chart/precision_score.hpp"
@@ -58,6 +59,13 @@ struct Change {
   }
 };
 
+/// What a classical chart has instead of scores; classical/in_chart.cpp works with it.
+struct ClassicalPart {
+  classical::Fold fold;
+  std::optional<Prefix> baseline;               ///< the stretch up to its last reading, once learned
+  SlidingArray<classical::JudgedRun> judged{};  ///< as `points`
+};
+
 struct Chart::State {
   State(const Settings& all, ChartIndex at);
 
@@ -77,14 +85,19 @@ struct Chart::State {
   bool history_cut = false;
   std::vector<StretchMark> marks;
   std::vector<float> scratch;
+  std::optional<ClassicalPart> classical;
 
   [[nodiscard]] const ChartSettings& chart() const { return settings->of(index); }
   [[nodiscard]] const Measurand& measurand() const { return settings->of(chart().measurand); }
   [[nodiscard]] std::size_t lot_at(Instant at) const;
   [[nodiscard]] const Lot& present_lot() const { return chart().lots.at(lot.value_or(0)); }
 
-  /// The stretch as far as it is learned from: all of it, or up to the start of what an open alert suspects.
-  [[nodiscard]] Prefix learned() const { return alarm ? alarm->start : stretch.last(); }
+  /// The stretch as far as it is learned from: all of it, or up to the start of what an open alert suspects;
+  /// on a classical chart the baseline.
+  [[nodiscard]] Prefix learned() const {
+    if (classical && classical->baseline) return *classical->baseline;
+    return alarm ? alarm->start : stretch.last();
+  }
   [[nodiscard]] double mean_of(const Sums& sums) const;
   /// Sample sd, not below what the resolution allows; needs 2 readings.
   [[nodiscard]] double sd_of(const Sums& sums) const;
@@ -99,6 +112,13 @@ struct Chart::State {
   [[nodiscard]] bool matters(const Change& change) const;
   [[nodiscard]] Subject subject() const;
   [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
+
+  // Of a classical chart.
+  void judge_by_limits(Instant at, std::span<const double> run, std::vector<Finding>& findings);
+  void restart_classical(Instant at, std::vector<Finding>& findings);
+  [[nodiscard]] Finding classical_finding() const;
+  [[nodiscard]] bool matters_by_limits() const;
+  void show_classical(ChartView& view) const;
 
   void follow_lot(Instant at, std::vector<Finding>& findings);
   PointRecord& take(Instant at, double value);

@@ -47,7 +47,7 @@ void Fold::restart() {
   means_ = {};
 }
 
-Fold::Change Fold::take(Instant at, double value) {
+Fold::Change Fold::take(Instant at, std::span<const double> values) {
   const bool replicate = run_.readings > 0 && at == run_.at;
   const std::optional<ClassicalAlarm> was = now_.alarm;
   if (replicate) {
@@ -58,7 +58,7 @@ Fold::Change Fold::take(Instant at, double value) {
     run_ = {};
     run_.at = at;
   }
-  run_.add(value);
+  for (const double value : values) run_.add(value);
   means_.push_back({at, run_.mean});
   if (means_.size() > kRunsKept) means_.pop_front();
   const bool had_limits = now_.basis.has_value();

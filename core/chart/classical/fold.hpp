@@ -11,6 +11,7 @@
 // sigma/sqrt(n), and the range up to (d2 + 3 d3) sigma or the standard deviation up to
 // (c4 + 3 sqrt(1 - c4^2)) sigma. What is looked for upwards only: less spread is no fault.
 #include <optional>
+#include <span>
 
 #include "core/chart/classical/baseline.hpp"
 #include "core/chart/classical/level_tests.hpp"
@@ -42,8 +43,8 @@ class Fold {
   explicit Fold(const ChartSettings& chart);
 
   enum class Change { none, opened, pattern_changed, ended };
-  /// Takes the next reading, no earlier than any before.
-  Change take(Instant at, double value);
+  /// Takes the next run, or further replicates of the newest one; no earlier than any before.
+  Change take(Instant at, std::span<const double> values);
 
   /// Begins a new stretch: a new baseline; a given centre line and sigma stay.
   void restart();
@@ -52,6 +53,11 @@ class Fold {
   /// The newest run completed the baseline.
   [[nodiscard]] bool completes_baseline() const { return now_.learned && !before_.learned; }
   [[nodiscard]] bool learned() const { return now_.learned; }
+  /// `learning` until there are limits and a reading.
+  [[nodiscard]] ChartState state() const {
+    if (now_.alarm) return ChartState::unstable;
+    return now_.basis && now_.runs > 0 ? ChartState::stable : ChartState::learning;
+  }
   [[nodiscard]] const std::optional<ClassicalAlarm>& alarm() const { return now_.alarm; }
   [[nodiscard]] const JudgedRun& newest() const { return now_.judged; }
 

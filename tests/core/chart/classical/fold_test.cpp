@@ -32,8 +32,8 @@ ChartSettings given(double center, double sigma) {
 /// A fold fed one run an hour.
 struct Fed {
   explicit Fed(const ChartSettings& chart) : fold(chart) {}
-  Fold::Change read(double value) { return fold.take(hour(++hours), value); }
-  Fold::Change replicate(double value) { return fold.take(hour(hours), value); }
+  Fold::Change read(double value) { return fold.take(hour(++hours), {&value, 1}); }
+  Fold::Change replicate(double value) { return fold.take(hour(hours), {&value, 1}); }
   void feed(const std::vector<double>& values) {
     for (const double value : values) read(value);
   }
