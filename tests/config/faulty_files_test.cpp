@@ -218,16 +218,12 @@ std::vector<Fault> faults_between_keys() {
 
 std::vector<Fault> faults_of_what_comes_later() {
   return {
-      {"classical charts", with("baseline: 30", "method: classical"), 17, 18, "charts.method",
-       "found 'classical', which is not available in this version yet"},
       {"weighted fit", with("every: 2h", "fit: weighted_deming"), 27, 10, "comparisons.protein.fit",
        "not available in this version yet"},
       {"an established relation", with("every: 2h", "relation: identity"), 27, 5,
        "comparisons.protein.relation", "not available in this version yet"},
       {"lambda from replicates", with("every: 2h", "error_ratio: from_replicates"), 27, 18,
        "comparisons.protein.error_ratio", "not available in this version yet"},
-      {"run rules", with("baseline: 30", "run_rules: [{trend: 6}]"), 17, 10, "charts.run_rules",
-       "not available in this version yet"},
       {"a mapped format",
        with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: mill_export}") +
            "formats: {mill_export: {type: csv, values: {protein: Prot}}}\n",
