@@ -119,7 +119,17 @@ struct ErrorRatioSettings {
   double lambda = 0;          ///< given_lambda
 };
 
+/// A relation that was established before and is to hold: y = intercept + slope * x.
+struct EstablishedLine {
+  double intercept = 0, slope = 1;
+  bool operator==(const EstablishedLine&) const = default;
+};
+
 enum class FitMethod { deming, weighted_deming };
+
+/// How the error of a single result goes with the level: sd constant, proportional to the level, or
+/// sqrt(a^2 + b^2 level^2).
+enum class ErrorGrowth { constant, proportional, mixed };
 
 struct ComparisonSettings {
   std::string id;
@@ -129,6 +139,7 @@ struct ComparisonSettings {
   int window_pairs = 200;              ///< 3..1000
   std::optional<Duration> window_age;  ///< counted back from the newest pair
   ErrorRatioSettings error_ratio;
+  ErrorGrowth error_growth = ErrorGrowth::constant;
   FitMethod fit = FitMethod::deming;
   double confidence = 0.95;
   int confirm = 3;
@@ -143,6 +154,8 @@ struct ComparisonSettings {
   double outlier_run_length = 0;  ///< pairs between false outliers
   double scatter_run_length = 0;  ///< pairs between false `sample_scatter`
   std::optional<Duration> prove_within;
+  std::optional<EstablishedLine>
+      relation;  ///< what the pair chart holds the pairs against; none: their own line
 };
 
 /// How the yearly allowance of false alerts is spent.
