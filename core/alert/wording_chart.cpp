@@ -48,7 +48,10 @@ std::string newest_reading(const ChartAlert& chart) {
   const auto value = chart.number("value");
   if (!value) return "";
   const std::string limits = chart.limits();
-  return " The newest reading is " + chart.numbers.result(*value) +
+  const auto replicates = chart.number("replicates");
+  return (replicates ? " The newest reading (mean of " + fixed(*replicates, 0) + ") is "
+                     : " The newest reading is ") +
+         chart.numbers.result(*value) +
          (limits.empty()      ? ""
           : chart.classical() ? "; the limits are " + limits
                               : "; from those before it, " + limits + " was to be expected") +
@@ -133,9 +136,9 @@ AlertWords scatter_words(const ChartAlert& chart) {
       "Check standard " + chart.standard + " on " + chart.analyzer + " scatters more for " + chart.measurand;
   words.found = "Readings of check standard " + chart.standard + " for " + chart.measurand + " on analyzer " +
                 chart.analyzer_in_full + " scatter more than before" + score_words(chart.alert.details) + ".";
-  if (sd || ratio)
-    words.found += " Their standard deviation is " + (sd ? chart.numbers.mean(*sd) + " now" : "") +
-                   (sd && ratio ? ", " : "") + (ratio ? fixed(*ratio, 1) + " times what it was" : "") + ".";
+  if (sd && ratio)
+    words.found += " Their standard deviation was " + chart.numbers.mean(*sd) + " and is " +
+                   fixed(*ratio, 1) + " times that now.";
   if (const auto range = chart.number("moving_range"), most = chart.number("moving_range_upper");
       range && most)
     words.found += " The newest moving range is " + chart.numbers.result(*range) + "; up to " +
@@ -166,6 +169,22 @@ AlertWords unnamed_words(const ChartAlert& chart) {
   return words;
 }
 
+// " of 10.620 g/100 g, stated to 0.080 g/100 g", or empty.
+std::string reference_in_full(const ChartAlert& chart) {
+  const auto reference = chart.number("reference"), uncertainty = chart.number("expanded_uncertainty");
+  if (!reference) return "";
+  return " of " + chart.numbers.mean(*reference) +
+         (uncertainty ? ", stated with an expanded uncertainty of " + chart.numbers.mean(*uncertainty) : "");
+}
+
+std::string mean_in_full(const ChartAlert& chart) {
+  const auto mean = chart.number("mean"), readings = chart.number("readings");
+  if (!mean || !readings) return "";
+  const auto e_n = chart.number("normalised_error");
+  return " The mean is " + chart.numbers.mean(*mean) + ", of " + fixed(*readings, 0) + " readings" +
+         (e_n ? "; normalised error " + fixed(*e_n, 2) : "") + ".";
+}
+
 AlertWords biased_words(const ChartAlert& chart) {
   const auto bias = chart.number("bias"), limit = chart.number("limit");
   const std::string off = bias ? chart.numbers.mean(std::abs(*bias)) + (*bias < 0 ? " below" : " above")
@@ -174,14 +193,23 @@ AlertWords biased_words(const ChartAlert& chart) {
   words.title = "Check standard " + chart.standard + " on " + chart.analyzer + " reads " + off +
                 " its reference value for " + chart.measurand;
   words.found = "The mean of analyzer " + chart.analyzer_in_full + " for " + chart.measurand +
-                " on check standard " + chart.standard + " is " + off + " the reference value";
+                " on check standard " + chart.standard + " is " + off + " the reference value" +
+                reference_in_full(chart);
   words.found += limit ? "; " + chart.numbers.mean(*limit) +
                              " is what the uncertainty of the reference value and of the mean allow."
                        : ", which is more than the uncertainties allow.";
+  words.found += mean_in_full(chart);
   words.since = since_words(chart.alert);
-  words.doubt = "results of " + chart.analyzer + " for " + chart.measurand + ".";
-  words.steps = {"Check the lot and the reference value of " + chart.standard + " against its certificate.",
-                 look_back_at(chart)};
+  words.cause = chart.analyzer +
+                " (its calibration), or the check standard: the wrong lot, a reference value entered "
+                "wrongly, a standard that has changed.";
+  words.doubt = "results of " + chart.analyzer + " for " + chart.measurand + " near this level.";
+  words.steps = {
+      "Check the lot and the reference value of " + chart.standard + " against its certificate.",
+      "Run another check standard with a reference value on " + chart.analyzer +
+          ": if it reads off by as much, it is the analyzer.",
+      look_back_at(chart),
+      "If the analyzer is adjusted, record that as an intervention: its readings then count anew."};
   return words;
 }
 

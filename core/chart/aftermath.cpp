@@ -35,10 +35,10 @@ Sums for_each_end(const Stretch& stretch, const Prefix& start, int clear_after, 
   std::vector<Sums> returned(held - from + 1);
   for (std::size_t j = held; j > from; --j) {
     returned[j - 1 - from] = returned[j - from];
-    returned[j - 1 - from].add(deviation[j]);
+    returned[j - 1 - from].add(deviation[j], stretch.within(j));
   }
   for (std::size_t j = from; j <= held; ++j) {
-    if (j > from) since.add(deviation[j]);
+    if (j > from) since.add(deviation[j], stretch.within(j));
     if (j >= first && j + static_cast<std::size_t>(clear_after) <= held)
       cut(j, Parts{start.sums, since, returned[j - from]});
   }
@@ -58,7 +58,7 @@ struct Ended {
 class LevelRule {
  public:
   LevelRule(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits)
-      : limits_(limits), n_(static_cast<double>(stretch.count())) {
+      : limits_(limits), n_(static_cast<double>(stretch.counted())), carried_(stretch.carried().squares) {
     floor_ = std::max((n_ - 2) * stretch.least_variance(), std::numeric_limits<double>::min());
     const Sums since = for_each_end(stretch, start, limits.clear_after, [&](std::size_t j, const Parts& p) {
       possible_ = true;
@@ -85,10 +85,10 @@ class LevelRule {
   [[nodiscard]] std::size_t position() const { return ended_.position; }
 
  private:
-  [[nodiscard]] double held_up(double squares) const { return std::max(floor_, squares); }
+  [[nodiscard]] double held_up(double squares) const { return std::max(floor_, squares + carried_); }
 
   AftermathLimits limits_;
-  double n_, floor_ = 0, lasting_ = 0, whole_ = 0;
+  double n_, carried_, floor_ = 0, lasting_ = 0, whole_ = 0;
   bool possible_ = false;
   Ended ended_;
 };
@@ -96,15 +96,17 @@ class LevelRule {
 class PrecisionRule {
  public:
   PrecisionRule(const Stretch& stretch, const Prefix& start, const AftermathLimits& limits)
-      : limits_(limits), floor_(std::max(stretch.least_variance(), std::numeric_limits<double>::min())) {
+      : limits_(limits), by_replicates_(stretch.by_replicates()), carried_(stretch.carried()) {
+    const double least = by_replicates_ ? stretch.least_variance_within() : stretch.least_variance();
+    floor_ = std::max(least, std::numeric_limits<double>::min());
     const Sums since = for_each_end(stretch, start, limits.clear_after, [&](std::size_t j, const Parts& p) {
       possible_ = true;
-      if (p.deviating.n < 2 || !(variance(p.deviating) > variance(p.normal()))) return;
-      const double likelihood = part(p.normal()) + part(p.deviating);
+      if (!tells(p.deviating) || !(variance(scatter(p.deviating)) > variance(normal(p.normal())))) return;
+      const double likelihood = part(normal(p.normal())) + part(scatter(p.deviating));
       if (!ended_.any || likelihood > ended_.value) ended_ = {true, j, likelihood};
     });
-    lasting_ = part(start.sums) + part(since);
-    whole_ = part(start.sums + since);
+    lasting_ = part(normal(start.sums)) + part(scatter(since));
+    whole_ = part(normal(start.sums + since));
   }
 
   [[nodiscard]] bool can_end() const { return possible_; }
@@ -118,15 +120,33 @@ class PrecisionRule {
   [[nodiscard]] std::size_t position() const { return ended_.position; }
 
  private:
-  [[nodiscard]] double variance(const Sums& sums) const {
-    return std::max(floor_, sums.about_mean() / static_cast<double>(sums.n));
+  // What is compared: readings about their mean, or replicates about their run's.
+  struct Scatter {
+    double n = 0, squares = 0;
+  };
+  [[nodiscard]] Scatter scatter(const Sums& sums) const {
+    if (by_replicates_) return {static_cast<double>(sums.within.degrees), sums.within.squares};
+    return {static_cast<double>(sums.n), sums.about_mean()};
   }
-  [[nodiscard]] double part(const Sums& sums) const {
-    return -static_cast<double>(sums.n) / 2 * std::log(variance(sums));
+  /// With what earlier lots of the standard left.
+  [[nodiscard]] Scatter normal(const Sums& sums) const {
+    const Scatter own = scatter(sums);
+    if (by_replicates_)
+      return {own.n + static_cast<double>(carried_.within.degrees), own.squares + carried_.within.squares};
+    return {own.n + static_cast<double>(carried_.degrees), own.squares + carried_.squares};
   }
+  [[nodiscard]] bool tells(const Sums& sums) const {
+    return sums.n >= 2 && (!by_replicates_ || sums.within.degrees > 0);
+  }
+  [[nodiscard]] double variance(const Scatter& s) const {
+    return s.n > 0 ? std::max(floor_, s.squares / s.n) : floor_;
+  }
+  [[nodiscard]] double part(const Scatter& s) const { return -s.n / 2 * std::log(variance(s)); }
 
   AftermathLimits limits_;
-  double floor_, lasting_ = 0, whole_ = 0;
+  bool by_replicates_;
+  Carried carried_;
+  double floor_ = 0, lasting_ = 0, whole_ = 0;
   bool possible_ = false;
   Ended ended_;
 };
@@ -135,7 +155,7 @@ Aftermath judge_level(const Stretch& stretch, const Prefix& start, const Afterma
                       std::vector<float>& scratch) {
   const LevelRule rule(stretch, start, limits);
   if (!rule.can_end()) return {};
-  const bool confirmed = level_score_exceeds(best_level_split(stretch).t, stretch.count(),
+  const bool confirmed = level_score_exceeds(best_level_split(stretch).t, stretch.counted(),
                                              limits.level_limit - kConfirmedWithin);
   if (confirmed && !rule.has_ended()) return {};
 
@@ -143,8 +163,9 @@ Aftermath judge_level(const Stretch& stretch, const Prefix& start, const Afterma
                                            : Aftermath{Outcome::ends, 0};
   const Explanation scatter = explain_by_two_normals(stretch);
   if (scatter.gain > rule.gain()) {
-    const PrecisionSplit precision = best_precision_split(stretch, scratch);
-    if (precision.score > limits.precision_limit) return {Outcome::becomes_scatter, scatter.position};
+    const bool scatters = has_precision_splits(stretch) &&
+                          best_precision_split(stretch, scratch).score > limits.precision_limit;
+    if (scatters) return {Outcome::becomes_scatter, scatter.position};
   }
   return scatter.gain > rule.gain() - kNearlyAsWell ? Aftermath{} : ends;
 }
@@ -153,8 +174,8 @@ Aftermath judge_precision(const Stretch& stretch, const Prefix& start, const Aft
                           std::vector<float>& scratch) {
   const PrecisionRule rule(stretch, start, limits);
   if (!rule.can_end()) return {};
-  const bool confirmed =
-      best_precision_split(stretch, scratch).score >= limits.precision_limit - kConfirmedWithin;
+  const bool confirmed = has_precision_splits(stretch) && best_precision_split(stretch, scratch).score >=
+                                                              limits.precision_limit - kConfirmedWithin;
   if (confirmed && !rule.has_ended()) return {};
   return rule.sets_aside() ? Aftermath{Outcome::ends_setting_aside, rule.position()}
                            : Aftermath{Outcome::ends, 0};

@@ -2,6 +2,7 @@
 // One control chart as a fold: readings and interventions in, findings out.
 #include <memory>
 #include <optional>
+#include <span>
 #include <vector>
 
 #include "core/base/event.hpp"
@@ -22,8 +23,15 @@ class Chart {
   Chart(const Chart&);
   Chart& operator=(const Chart&);
 
-  /// Takes the next reading; it is not earlier than any before it. Appends what it leads to.
-  void add(const CheckReading& reading, std::vector<Finding>& findings);
+  /// Takes the next run: one or more readings of one time, later than those of any run before it and not
+  /// earlier than any intervention. A run is one point, its mean; so all its replicates must be known, and
+  /// one that comes afterwards is for the caller to fold the chart again. Appends what it leads to.
+  void add(std::span<const CheckReading> run, std::vector<Finding>& findings);
+
+  /// A run of one.
+  void add(const CheckReading& reading, std::vector<Finding>& findings) {
+    add(std::span(&reading, 1), findings);
+  }
 
   /// Takes an intervention on this chart's analyzer, not earlier than anything before it. One that does not
   /// concern this chart (another standard or measurand, `noted`) changes nothing.

@@ -10,7 +10,18 @@
 //   ratio_of_sd       sd after / before (only with two readings after)
 //   readings_before, readings_since  split at the estimated start
 //   score, limit, in_control_run_length, score_of   as of the signal; score_of: level or precision
+//   replicates        of the newest reading, if more than one: value is their mean
+// mean_before and shift are left out where a new lot scatters more from its first reading on. Where precision
+// is told by replicates, sd and ratio_of_sd of the pattern `scatter` are theirs, within runs.
 // Once it has ceased: set_aside, the number of readings taken out as this alert ended.
+//
+// Details of check_standard_biased while it holds, numbers in the measurand's unit:
+//   unit              (only if the measurand has one)
+//   bias              mean - reference value
+//   limit             bias that is allowed for
+//   mean, sd, readings, readings_from   of this stretch (time as RFC 3339)
+//   reference, expanded_uncertainty, coverage_factor
+//   normalised_error
 #include <algorithm>
 #include <cmath>
 
@@ -30,7 +41,9 @@ Subject Chart::State::subject() const {
 // A level score that found the change keeps its own words for the first readings; then the lasting
 // explanation with the larger gain is told. Which rule ends the alert does not depend on it.
 Change Chart::State::describe() const {
-  const Explanation means = explain_by_two_means(stretch, best_level_split(stretch));
+  // Replicates may tell of scatter before there are readings enough for two means.
+  const Explanation means =
+      has_level_splits(stretch) ? explain_by_two_means(stretch, best_level_split(stretch)) : Explanation{};
   const Explanation sds = has_precision_splits(stretch) ? explain_by_two_sds(stretch) : Explanation{};
   Change change;
   change.pattern = alarm->pattern;
@@ -51,9 +64,30 @@ std::optional<double> Chart::State::score_of(EndingRule rule) const {
 
 bool Chart::State::matters(const Change& change) const {
   if (change.pattern == "scatter") return true;
-  double smallest = 0.5 * sd_of(change.before);
-  if (measurand().allowable) smallest = measurand().allowable->at(mean_of(change.before)) / 4;
-  return std::abs(change.shift()) >= chart().smallest_shift.value_or(smallest);
+  const auto shift = change.shift();
+  return !shift || std::abs(*shift) >= smallest_shift(change.before);
+}
+
+double Chart::State::smallest_shift(const Sums& before) const {
+  if (chart().smallest_shift) return *chart().smallest_shift;
+  return measurand().allowable ? measurand().allowable->at(mean_of(before)) / 4 : 0.5 * sd_of(before);
+}
+
+Chart::State::SdPair Chart::State::sds_of(const Change& change) const {
+  if (change.pattern == "scatter" && stretch.by_replicates()) {
+    const auto sd = [this](const Within& within) -> std::optional<double> {
+      if (within.degrees < 1) return {};
+      return std::sqrt(
+          std::max(stretch.least_variance_within(), within.squares / static_cast<double>(within.degrees)));
+    };
+    return {sd(change.before.within + stretch.carried().within), sd(change.after.within)};
+  }
+  SdPair sds;
+  if (degrees_of(change.before) >= 1) sds.before = sd_of(change.before);
+  if (change.after.n >= 2)
+    sds.after = std::sqrt(std::max(stretch.least_variance(),
+                                   change.after.about_mean() / static_cast<double>(change.after.n - 1)));
+  return sds;
 }
 
 Details Chart::State::details(const Change& change) const {
@@ -68,12 +102,13 @@ Details Chart::State::details(const Change& change) const {
     number("limit_lower", *point.lower);
     number("limit_upper", *point.upper);
   }
-  number("mean_before", mean_of(change.before));
+  if (newest_point.replicates > 1) number("replicates", newest_point.replicates);
+  if (change.before.n > 0) number("mean_before", mean_of(change.before));
   number("mean_after", mean_of(change.after));
-  number("shift", change.shift());
-  const double sd = sd_of(change.before);
-  number("sd", sd);
-  if (change.after.n >= 2 && sd > 0) number("ratio_of_sd", sd_of(change.after) / sd);
+  if (const auto shift = change.shift()) number("shift", *shift);
+  const auto [sd, sd_after] = sds_of(change);
+  if (sd) number("sd", *sd);
+  if (sd && sd_after && *sd > 0) number("ratio_of_sd", *sd_after / *sd);
   number("readings_before", static_cast<double>(change.before.n));
   number("readings_since", static_cast<double>(change.after.n));
   const bool of_level = alarm->rule == EndingRule::level;
@@ -93,6 +128,39 @@ Finding Chart::State::finding(const Change& change) const {
   finding.started_at = change.started_at;
   finding.started_between = change.started_between;
   finding.details = details(change);
+  return finding;
+}
+
+Finding Chart::State::bias_finding() const {
+  const ReferenceView reference = reference_view().value();
+  const ComparedMean mean = compared_mean().value();
+  Finding finding;
+  finding.kind = AlertKind::check_standard_biased;
+  finding.subject = subject();
+  finding.severity = Severity::warning;
+  finding.at = points.back().at;
+  Details& details = finding.details;
+  if (!measurand().unit.empty()) details.emplace_back("unit", measurand().unit);
+  details.emplace_back("bias", *reference.bias);
+  details.emplace_back("limit", *reference.allowed_bias);
+  details.emplace_back("mean", mean.mean);
+  details.emplace_back("sd", mean.sd);
+  details.emplace_back("readings", static_cast<double>(mean.readings));
+  details.emplace_back("readings_from", to_rfc3339(stretch.first_at()));
+  details.emplace_back("reference", reference.value);
+  details.emplace_back("expanded_uncertainty", *reference.expanded_uncertainty);
+  details.emplace_back("coverage_factor", reference.coverage_factor);
+  if (reference.normalised_error) details.emplace_back("normalised_error", *reference.normalised_error);
+  return finding;
+}
+
+Finding Chart::State::bias_ceased(Instant at, const char* reason) const {
+  Finding finding;
+  finding.kind = AlertKind::check_standard_biased;
+  finding.subject = subject();
+  finding.holds = false;
+  finding.at = at;
+  finding.resolved_reason = reason;
   return finding;
 }
 

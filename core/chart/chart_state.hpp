@@ -11,7 +11,9 @@
 #include "core/chart/classical/fold.hpp"
 #include "core/chart/explanation.hpp"
 #include "core/chart/level_score.hpp"
+#include "core/chart/mean_level.hpp"
 #include "core/chart/precision_score.hpp"
+#include "core/chart/reference.hpp"
 #include "core/chart/run_length.hpp"
 #include "core/chart/sliding_array.hpp"
 #include "core/chart/stretch.hpp"
@@ -22,6 +24,8 @@ constexpr std::size_t kPointsKept = 500;
 constexpr std::int64_t kLeastForLimits = kLeastForLevel - 1;  ///< the fifth reading is the first tested
 constexpr std::int64_t kPatternFrom = 10;  ///< readings after a signal that tell a shift from scatter
 constexpr std::int64_t kLeastForRepeatability = 5;
+constexpr std::int64_t kLeastWithin = 4;     ///< degrees of freedom within runs that count for repeatability
+constexpr std::int64_t kLeastForEffect = 5;  ///< readings of a stretch whose level is compared with another
 constexpr std::int64_t kOwnRepeatabilityFrom = 11;  ///< readings, hence 10 moving ranges
 
 /// A point as it was worked out when its reading came; what needs special functions is left to the view.
@@ -29,9 +33,12 @@ struct PointRecord {
   Instant at{};
   double value = 0;
   std::optional<double> moving_range, t, precision_score;
-  std::int64_t count = 0;    ///< readings of the stretch up to here
+  std::int64_t counted = 0;  ///< as Stretch::counted, up to here
   std::int64_t learned = 0;  ///< readings its limits rest on
+  std::int64_t degrees = 0;  ///< of the sd; 0: not known well enough for limits
   double mean = 0, sd = 0;   ///< of those
+  int replicates = 1;
+  double within_squares = 0;
   std::optional<ChartSignal> level_signal;
   bool scatter_signal = false, set_aside = false, starts_stretch = false;
 };
@@ -54,7 +61,9 @@ struct Change {
   Period started_between{};
   Sums before, after;
 
-  [[nodiscard]] double shift() const {
+  /// Nothing where the scatter of a new lot is told from its first reading on.
+  [[nodiscard]] std::optional<double> shift() const {
+    if (before.n == 0 || after.n == 0) return {};
     return after.sum / static_cast<double>(after.n) - before.sum / static_cast<double>(before.n);
   }
 };
@@ -72,12 +81,17 @@ struct Chart::State {
   const Settings* settings;
   ChartIndex index;
   ChangeLimit level, precision;
+  std::int64_t precision_degrees = 1;  ///< within a run, that the limit of precision is for
   Stretch stretch;
   std::optional<Alarm> alarm;
   std::optional<std::size_t> lot;  ///< of the newest reading
   bool stretch_begins = false;     ///< the next reading is the first after an intervention or of a new lot
   std::int64_t set_aside = 0;      ///< readings of this stretch
   Repeatability before_stretch;    ///< stands in while this stretch knows too little
+  bool biased = false;             ///< against the reference value, as told
+  std::optional<MeanLevel> first_level;   ///< of the first stretch of this lot
+  std::optional<MeanLevel> level_before;  ///< just before the newest intervention
+  StretchMark intervention{};             ///< that one
   std::optional<Instant> newest;
   std::int64_t points_seen = 0;
   SlidingArray<PointRecord> points;  ///< of the newest readings
@@ -99,8 +113,26 @@ struct Chart::State {
     return alarm ? alarm->start : stretch.last();
   }
   [[nodiscard]] double mean_of(const Sums& sums) const;
-  /// Sample sd, not below what the resolution allows; needs 2 readings.
+  /// Degrees of freedom of what is learned from these readings and carried over from earlier lots.
+  [[nodiscard]] std::int64_t degrees_of(const Sums& sums) const {
+    return stretch.carried().degrees + std::max<std::int64_t>(sums.n - 1, 0);
+  }
+  /// Do these readings say what the next one may be?
+  [[nodiscard]] bool has_limits(const Sums& sums) const {
+    return sums.n >= 1 && sums.n + stretch.carried().degrees >= kLeastForLimits;
+  }
+  /// Sample sd, with what is carried over, not below what the resolution allows; needs a degree of freedom.
   [[nodiscard]] double sd_of(const Sums& sums) const;
+  /// Of what an alert compares: the readings, or the replicates within their runs.
+  struct SdPair {
+    std::optional<double> before, after;
+  };
+  [[nodiscard]] SdPair sds_of(const Change& change) const;
+  [[nodiscard]] std::optional<MeanLevel> level_of(const Prefix& known) const;
+  [[nodiscard]] std::optional<MeanLevel> present_level() const;
+  [[nodiscard]] std::optional<ComparedMean> compared_mean() const;
+  [[nodiscard]] double smallest_shift(const Sums& before) const;
+  [[nodiscard]] Carried carry() const;
   [[nodiscard]] Repeatability repeatability() const;
 
   /// Of an open alert: which pattern, since when.
@@ -112,21 +144,27 @@ struct Chart::State {
   [[nodiscard]] bool matters(const Change& change) const;
   [[nodiscard]] Subject subject() const;
   [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
+  [[nodiscard]] Finding bias_finding() const;
+  [[nodiscard]] Finding bias_ceased(Instant at, const char* reason) const;
 
   // Of a classical chart.
-  void judge_by_limits(Instant at, std::span<const double> run, std::vector<Finding>& findings);
+  void judge_by_limits(std::span<const CheckReading> run, std::vector<Finding>& findings);
   void restart_classical(Instant at, std::vector<Finding>& findings);
   [[nodiscard]] Finding classical_finding() const;
   [[nodiscard]] bool matters_by_limits() const;
   void show_classical(ChartView& view) const;
 
   void follow_lot(Instant at, std::vector<Finding>& findings);
-  PointRecord& take(Instant at, double value);
+  PointRecord& take(const Run& run);
+  void adapt_precision_limit();
+  void judge_bias(Instant at, std::vector<Finding>& findings);
+  void keep_levels(const StretchMark& next, const std::optional<Change>& accepted);
   void test(PointRecord& point, std::vector<Finding>& findings);
   void follow_up(const PointRecord& point, std::vector<Finding>& findings);
   void open(EndingRule rule, std::size_t position, const char* pattern, std::vector<Finding>& findings);
   void close(const Aftermath& aftermath, Instant at, std::vector<Finding>& findings);
-  void begin_stretch(Instant at, const std::string& what, std::vector<Finding>& findings);
+  void begin_stretch(Instant at, const std::string& what, const Carried& carried,
+                     std::vector<Finding>& findings);
   void accept_level(Instant at, std::vector<Finding>& findings);
   void remember(const PointRecord& point);
   void remember_repeatability(Instant at);
@@ -136,9 +174,13 @@ struct Chart::State {
   [[nodiscard]] PrecisionView precision_view() const;
   [[nodiscard]] BaselineView baseline_view() const;
   [[nodiscard]] std::optional<ReferenceView> reference_view() const;
-  [[nodiscard]] std::vector<std::string> warnings(const std::optional<double>& correlation) const;
+  void add_warnings(ChartView& view) const;
   [[nodiscard]] PointRecord* point(std::int64_t number);
-  [[nodiscard]] Stretch new_stretch() const;
+  [[nodiscard]] std::optional<ReplicatesView> replicates_view() const;
+  [[nodiscard]] std::optional<EffectView> intervention_effect() const;
+  [[nodiscard]] std::optional<EffectView> since_first() const;
+  [[nodiscard]] std::optional<double> correlation() const;
+  [[nodiscard]] Stretch new_stretch(const Carried& carried, std::int64_t point_before) const;
 };
 
 }  // namespace agreed

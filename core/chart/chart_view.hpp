@@ -3,6 +3,7 @@
 #include <cstdint>
 #include <optional>
 #include <string>
+#include <utility>
 #include <vector>
 
 #include "core/base/finding.hpp"
@@ -56,6 +57,8 @@ struct ChartPoint {
   std::optional<double> upper,
       lower;  ///< what this reading could have been, from those before it; none while s is unknown
   std::vector<ChartSignal> signals;
+  int replicates = 1;               ///< of the run whose mean the value is
+  std::optional<double> within_sd;  ///< of those, from 2 on
   bool set_aside = false;
   bool starts_stretch = false;  ///< first reading after an intervention or of a new lot
   std::optional<ClassicalPoint> classical;
@@ -86,6 +89,8 @@ struct BaselineView {
   int readings = 0;  ///< learned in the present stretch
   int needed = 30;
   std::optional<double> center, sd, sigma, sigma_degrees_of_freedom, moving_range_mean;
+  std::int64_t sd_degrees_of_freedom = 0;  ///< with those carried over from earlier lots
+  std::int64_t carried_over = 0;           ///< degrees of freedom from earlier lots
   std::optional<Instant> from, to;
   std::int64_t set_aside = 0;
   bool operator==(const BaselineView&) const = default;
@@ -96,7 +101,39 @@ struct ReferenceView {
   std::optional<double> expanded_uncertainty;
   double coverage_factor = 2;
   std::optional<double> bias, normalised_error;
+  std::optional<double> allowed_bias;  ///< above it the standard is biased; none below 30 readings
+  bool biased = false;                 ///< as told by the alert
   bool operator==(const ReferenceView&) const = default;
+};
+
+/// Runs of replicates among the readings learned, lots before included.
+struct ReplicatesView {
+  std::int64_t runs = 0;
+  double per_run = 1;  ///< harmonic mean of the numbers of replicates
+  double within_sd = 0;
+  std::int64_t within_degrees_of_freedom = 0;
+  std::optional<double> between_sd;  ///< of run means beyond that; none below 5 readings
+  bool tell_precision = false;       ///< precision is told by them, not by the run means
+  bool operator==(const ReplicatesView&) const = default;
+};
+
+/// Mean of the present stretch less an earlier one.
+struct EffectView {
+  std::string what;  ///< the intervention; empty: since the first stretch of this lot
+  Instant at;        ///< of the intervention, or of the first reading compared with
+  std::int64_t readings_before = 0, readings_after = 0;
+  double mean_before = 0, mean_after = 0, difference = 0;
+  std::optional<double> low, high;  ///< 95 % interval; none without scatter
+  double confidence = 0.95;
+  std::optional<double> allowable;  ///< allowable difference at the mean before
+  bool operator==(const EffectView&) const = default;
+};
+
+/// The numbers behind a warning, by name.
+struct WarningNumbers {
+  std::string warning;
+  std::vector<std::pair<std::string, double>> numbers;
+  bool operator==(const WarningNumbers&) const = default;
 };
 
 struct StretchMark {
@@ -126,10 +163,16 @@ struct ChartView {
   std::optional<double> upper_limit, lower_limit;  ///< what the next reading may be
   ChangeView change;
   PrecisionView precision;
-  std::optional<ClassicalView> classical;  ///< then change and precision say nothing
-  std::optional<double> serial_correlation;
+  std::optional<ClassicalView> classical;    ///< then change and precision say nothing
+  std::optional<double> serial_correlation;  ///< of the readings learned, about their mean
+  std::optional<double>
+      correlation_allowed_for;  ///< about the two means at the best split; by the level score
   std::optional<ReferenceView> reference;
+  std::optional<ReplicatesView> replicates;  ///< none without any
+  std::optional<EffectView> intervention_effect, since_first;
+  std::optional<double> smallest_shift;  ///< below it a shift is a notice
   std::vector<std::string> warnings;
+  std::vector<WarningNumbers> warning_numbers;  ///< of those warnings that have some
   std::vector<StretchMark> marks;
   std::vector<ChartPoint> points;  ///< oldest first, at most the newest 500
   bool operator==(const ChartView&) const = default;

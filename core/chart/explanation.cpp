@@ -18,21 +18,45 @@ double floor_of(const Stretch& stretch) {
 std::vector<double> gains_of_two_sds(const Stretch& stretch, std::size_t first, bool own_means) {
   const Sums all = stretch.last().sums;
   const double floor = floor_of(stretch);
-  const auto n = static_cast<double>(all.n);
-  const double mean = all.sum / n;
-  const double whole = n / 2 * std::log(std::max(floor, all.about_mean() / n));
+  const double carried = stretch.carried().squares;
+  const auto degrees = static_cast<double>(stretch.carried().degrees);
+  const auto counted = static_cast<double>(stretch.counted());
+  const double mean = all.sum / static_cast<double>(all.n);
+  const double whole = counted / 2 * std::log(std::max(floor, (all.about_mean() + carried) / counted));
   std::vector<double> gains;
   for (std::size_t j = first; j + 2 <= stretch.held(); ++j) {
     const Sums before{stretch.before(j), stretch.sum()[j], stretch.squares()[j]}, after = all - before;
-    const auto about = [&](const Sums& side) {
+    const auto squares = [&](const Sums& side) {
       const auto m = static_cast<double>(side.n);
-      const double squares = own_means ? side.about_mean() : side.squares - mean * (2 * side.sum - m * mean);
-      return std::max(floor, squares / m);
+      return own_means ? side.about_mean() : side.squares - mean * (2 * side.sum - m * mean);
     };
-    const double earlier = about(before), later = about(after);
-    const double gain = whole - static_cast<double>(before.n) / 2 * std::log(earlier) -
-                        static_cast<double>(after.n) / 2 * std::log(later);
+    const auto m = static_cast<double>(after.n);
+    const double k = static_cast<double>(before.n) + degrees;
+    const double earlier = std::max(floor, (squares(before) + carried) / k);
+    const double later = std::max(floor, squares(after) / m);
+    const double gain = whole - k / 2 * std::log(earlier) - m / 2 * std::log(later);
     gains.push_back(later > earlier ? gain : -std::numeric_limits<double>::infinity());
+  }
+  return gains;
+}
+
+// The same of the variances within runs of replicates.
+std::vector<double> gains_of_replicates(const Stretch& stretch) {
+  const Within carried = stretch.carried().within, all = stretch.last().sums.within;
+  const double floor = std::max(stretch.least_variance_within(), std::numeric_limits<double>::min());
+  const auto variance = [floor](const Within& within) {
+    return std::max(floor, within.squares / static_cast<double>(within.degrees));
+  };
+  const auto part = [&](const Within& within) {
+    return static_cast<double>(within.degrees) / 2 * std::log(variance(within));
+  };
+  std::vector<double> gains;
+  for (std::size_t j = 0; j < stretch.held(); ++j) {
+    const Within before = stretch.within_before(j) + carried, after = all - stretch.within_before(j);
+    const bool both = before.degrees >= kLeastBeforeScatter - 1 && after.degrees >= 1;
+    gains.push_back(both && variance(after) > variance(before)
+                        ? part(all + carried) - part(before) - part(after)
+                        : -std::numeric_limits<double>::infinity());
   }
   return gains;
 }
@@ -55,16 +79,16 @@ void find_candidates(Explanation& best, const std::vector<double>& gains, std::s
 }  // namespace
 
 Explanation explain_by_two_means(const Stretch& stretch, const LevelSplit& best) {
-  const double n = static_cast<double>(best.count);
-  const double floor = (n - 2) * floor_of(stretch);
+  const auto n = static_cast<double>(best.count), counted = static_cast<double>(best.counted);
+  const double floor = (counted - 2) * floor_of(stretch);
   const Sums all = stretch.last().sums;
-  const double total = std::max(floor, all.about_mean());
-  const std::size_t first = stretch.first_split(3);
+  const double total = std::max(floor, all.about_mean() + stretch.carried().squares);
+  const std::size_t first = first_level_split(stretch);
   std::vector<double> gains;
   for (std::size_t j = first; j < stretch.held(); ++j) {
     const double excess = stretch.sum()[j] - static_cast<double>(stretch.before(j)) * (all.sum / n);
     const double between = excess * excess * (stretch.inverse_before()[j] + stretch.inverse_after()[j]);
-    gains.push_back(n / 2 * std::log(total / std::max(floor, total - between)));
+    gains.push_back(counted / 2 * std::log(total / std::max(floor, total - between)));
   }
   Explanation explanation;
   explanation.position = best.position;
@@ -74,15 +98,16 @@ Explanation explain_by_two_means(const Stretch& stretch, const LevelSplit& best)
 }
 
 Explanation explain_by_two_sds(const Stretch& stretch) {
-  const std::size_t first = stretch.first_split(kLeastBeforeScatter);
-  const std::vector<double> gains = gains_of_two_sds(stretch, first, false);
+  const std::size_t first = stretch.by_replicates() ? 0 : first_scatter_split(stretch);
+  const std::vector<double> gains =
+      stretch.by_replicates() ? gains_of_replicates(stretch) : gains_of_two_sds(stretch, first, false);
   Explanation best = best_of(gains, first);
   if (std::isfinite(best.gain)) find_candidates(best, gains, first);
   return best;
 }
 
 Explanation explain_by_two_normals(const Stretch& stretch) {
-  const std::size_t first = stretch.first_split(kLeastBeforeScatter);
+  const std::size_t first = first_scatter_split(stretch);
   return best_of(gains_of_two_sds(stretch, first, true), first);
 }
 

@@ -20,10 +20,11 @@ struct Explanation {
 /// Two means, one sd.
 [[nodiscard]] Explanation explain_by_two_means(const Stretch& stretch, const LevelSplit& best);
 
-/// One mean, two sds, the later one larger.
+/// One mean, two sds, the later one larger; of replicates within their runs where precision is told by them.
 [[nodiscard]] Explanation explain_by_two_sds(const Stretch& stretch);
 
-/// A mean and an sd on each side, the later sd larger. first and last are not filled in.
+/// A mean and an sd of the readings (run means) on each side, the later sd larger. first and last are not
+/// filled in.
 [[nodiscard]] Explanation explain_by_two_normals(const Stretch& stretch);
 
 }  // namespace agreed

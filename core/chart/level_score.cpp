@@ -8,7 +8,6 @@
 
 namespace agreed {
 namespace {
-constexpr std::int64_t kLeastBefore = 3;
 // Sums of squares closer than this part of them are equal but for rounding: the earlier split wins.
 constexpr double kTie = 1e-12;
 
@@ -24,8 +23,8 @@ double t_quantile_expanded(double x, double df) {
 }
 
 double residual_floor(const Stretch& stretch) {
-  const auto n = static_cast<double>(stretch.count());
-  return std::max((n - 2) * stretch.least_variance(), std::numeric_limits<double>::min());
+  const auto counted = static_cast<double>(stretch.counted());
+  return std::max((counted - 2) * stretch.least_variance(), std::numeric_limits<double>::min());
 }
 
 // m times the variance of a mean of m readings whose lag-1 correlation is r, over that of one reading.
@@ -42,7 +41,7 @@ LevelSplit best_level_split(const Stretch& stretch) {
   const auto n = static_cast<double>(stretch.count());
   const double mean = sum[held] / n;
 
-  std::size_t best = stretch.first_split(kLeastBefore);
+  std::size_t best = first_level_split(stretch);
   double largest = -1, bar = -1;
   auto k = static_cast<double>(stretch.before(best));
   for (std::size_t j = best; j < held; ++j, k += 1) {
@@ -55,20 +54,22 @@ LevelSplit best_level_split(const Stretch& stretch) {
     }
   }
 
-  LevelSplit split{best, stretch.before(best), stretch.count(), 0, residual_floor(stretch)};
-  if (!stretch.has_spread()) return split;
-  split.residual = std::max(split.residual, stretch.last().sums.about_mean() - largest);
-  const double t = std::sqrt((n - 2) * largest / split.residual);
+  LevelSplit split{best, stretch.before(best),   stretch.count(), stretch.counted(),
+                   0,    residual_floor(stretch)};
+  const double carried = stretch.carried().squares;
+  if (!stretch.has_spread() && !(carried > 0)) return split;
+  split.residual = std::max(split.residual, stretch.last().sums.about_mean() - largest + carried);
+  const double t = std::sqrt(static_cast<double>(split.counted - 2) * largest / split.residual);
   split.t = sum[best] - static_cast<double>(split.before) * mean < 0 ? t : -t;
   return split;
 }
 
-double level_score(double t, std::int64_t count) {
-  return normal_score_of_t(t, static_cast<double>(count - 2));
+double level_score(double t, std::int64_t counted) {
+  return normal_score_of_t(t, static_cast<double>(counted - 2));
 }
 
-bool level_score_exceeds(double t, std::int64_t count, double h) {
-  return std::abs(t) > h && std::abs(level_score(t, count)) > h;
+bool level_score_exceeds(double t, std::int64_t counted, double h) {
+  return std::abs(t) > h && std::abs(level_score(t, counted)) > h;
 }
 
 bool holds_with_serial_correlation(const Stretch& stretch, const LevelSplit& best, double h) {
@@ -76,23 +77,24 @@ bool holds_with_serial_correlation(const Stretch& stretch, const LevelSplit& bes
   const std::size_t held = stretch.held();
   const double* sum = stretch.sum();
   const auto n = static_cast<double>(stretch.count());
-  const double total = stretch.last().sums.about_mean();
+  const auto counted = static_cast<double>(stretch.counted());
+  const double total = stretch.last().sums.about_mean() + stretch.carried().squares;
   const double floor = residual_floor(stretch);
   double largest = 0;
-  for (std::size_t j = stretch.first_split(kLeastBefore); j < held; ++j) {
+  for (std::size_t j = first_level_split(stretch); j < held; ++j) {
     const auto before = static_cast<double>(stretch.before(j));
     const double after = n - before;
     const double difference = (sum[held] - sum[j]) / after - sum[j] / before;
     const double between =
         difference * difference / (inflation(r, before) / before + inflation(r, after) / after);
-    largest = std::max(largest, (n - 2) * between / std::max(floor, total - between));
+    largest = std::max(largest, (counted - 2) * between / std::max(floor, total - between));
   }
-  return level_score_exceeds(std::sqrt(largest), stretch.count(), h);
+  return level_score_exceeds(std::sqrt(largest), stretch.counted(), h);
 }
 
-double prediction_factor(std::int64_t n, double h) {
+double prediction_factor(std::int64_t n, std::int64_t degrees, double h) {
   constexpr double kExpandedFrom = 300;
-  const auto df = static_cast<double>(n - 1);
+  const auto df = static_cast<double>(degrees);
   const double t = df < kExpandedFrom ? t_of_normal_score(h, df) : t_quantile_expanded(h, df);
   return t * std::sqrt(1 + 1 / static_cast<double>(n));
 }

@@ -19,7 +19,7 @@ struct Sides {
   const double* inverse_degrees_before;
   const double* inverse_degrees_after;
   int held;
-  double least_variance, all_sum, all_squares;
+  double carried, least_variance, all_sum, all_squares;
 
   explicit Sides(const Stretch& stretch)
       : sum(stretch.sum()),
@@ -29,8 +29,9 @@ struct Sides {
         inverse_degrees_before(stretch.inverse_degrees_before()),
         inverse_degrees_after(inverse_after + 1),
         held(static_cast<int>(stretch.held())),
+        carried(stretch.carried().squares),
         // Without spread any positive floor makes every ratio 1.
-        least_variance(stretch.has_spread()
+        least_variance(stretch.has_spread() || stretch.carried().squares > 0
                            ? std::max(stretch.least_variance(), std::numeric_limits<double>::min())
                            : 1.0),
         all_sum(sum[held]),
@@ -38,7 +39,8 @@ struct Sides {
 
   [[nodiscard]] double ratio(int j) const {
     const double later = all_sum - sum[j];
-    const double before = (squares[j] - sum[j] * sum[j] * inverse_before[j]) * inverse_degrees_before[j];
+    const double before =
+        (squares[j] - sum[j] * sum[j] * inverse_before[j] + carried) * inverse_degrees_before[j];
     const double after =
         (all_squares - squares[j] - later * later * inverse_after[j]) * inverse_degrees_after[j];
     const double upper = after > least_variance ? after : least_variance;
@@ -58,7 +60,46 @@ float rough_cube_root(float x) {
   root = kThird * (2 * root + x / (root * root));
   return kThird * (2 * root + x / (root * root));
 }
+PrecisionSplit best_split_of_replicates(const Stretch& stretch) {
+  const Within carried = stretch.carried().within;
+  const Within all = stretch.last().sums.within;
+  const double floor = std::max(stretch.least_variance_within(), std::numeric_limits<double>::min());
+  PrecisionSplit best{0, 0, -std::numeric_limits<double>::infinity(), 1};
+  for (std::size_t j = 0; j < stretch.held(); ++j) {
+    const Within before = stretch.within_before(j) + carried, after = all - stretch.within_before(j);
+    if (after.degrees < 1) break;
+    if (before.degrees < kLeastBeforeScatter - 1) continue;
+    const auto variance = [floor](const Within& within) {
+      return std::max(floor, within.squares / static_cast<double>(within.degrees));
+    };
+    const double ratio = std::clamp(variance(after) / variance(before), kLeastRatio, kLargestRatio);
+    const double score = precision_score(ratio, before.degrees + 1, after.degrees + 1);
+    if (score > best.score) best = {j, stretch.before(j), score, std::sqrt(ratio)};
+  }
+  return best;
+}
+
+bool splits_replicates(const Stretch& stretch) {
+  const Within carried = stretch.carried().within;
+  const Within all = stretch.last().sums.within;
+  for (std::size_t j = stretch.held(); j-- > 0;)
+    if (all.degrees > stretch.within_before(j).degrees)
+      return carried.degrees + stretch.within_before(j).degrees >= kLeastBeforeScatter - 1;
+  return false;
+}
+
 }  // namespace
+
+std::size_t first_scatter_split(const Stretch& stretch) {
+  // Of k readings k - 1 degrees of freedom; a first reading adds none to what is carried.
+  const std::int64_t missing = kLeastBeforeScatter - stretch.carried().degrees;
+  return stretch.first_split(missing > 1 ? missing : 0);
+}
+
+bool has_precision_splits(const Stretch& stretch) {
+  if (stretch.by_replicates()) return splits_replicates(stretch);
+  return stretch.held() >= 2 && first_scatter_split(stretch) + 2 <= stretch.held();
+}
 
 double precision_score(double ratio, std::int64_t before, std::int64_t after) {
   const double a = 2 / (9 * static_cast<double>(after - 1));
@@ -82,8 +123,13 @@ double precision_limit(double h, std::int64_t before, std::int64_t after) {
 // score is off by less than 4e-6 (|z| + 45), since c / sqrt(a + b c^2) <= (|z| + 1/sqrt(a)) / (1 - b) and
 // a >= 2/(9 split_memory).
 PrecisionSplit best_precision_split(const Stretch& stretch, std::vector<float>& scratch) {
+  if (stretch.by_replicates()) return best_split_of_replicates(stretch);
   const Sides sides(stretch);
-  const auto first = static_cast<int>(stretch.first_split(kLeastBeforeScatter));
+  const auto first = static_cast<int>(first_scatter_split(stretch));
+  const auto before = [&](int j) {
+    const std::int64_t own = stretch.before(static_cast<std::size_t>(j));
+    return stretch.carried().degrees + std::max<std::int64_t>(own, 1);
+  };
   const int end = sides.held - 1;
   scratch.resize(static_cast<std::size_t>(end));
   float* rough = scratch.data();
@@ -102,7 +148,7 @@ PrecisionSplit best_precision_split(const Stretch& stretch, std::vector<float>& 
   for (int j = first; j < end; ++j) {
     if (rough[j] < candidate) continue;
     const double ratio = sides.ratio(j);
-    const double score = precision_score(ratio, stretch.before(position(j)), sides.held - j);
+    const double score = precision_score(ratio, before(j), sides.held - j);
     if (score > best.score) best = {position(j), stretch.before(position(j)), score, std::sqrt(ratio)};
   }
   return best;

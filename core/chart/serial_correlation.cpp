@@ -1,5 +1,9 @@
 #include "core/chart/serial_correlation.hpp"
 
+#include <algorithm>
+#include <array>
+#include <cmath>
+
 namespace agreed {
 namespace {
 struct Lagged {
@@ -37,6 +41,16 @@ double residual_correlation(const Stretch& stretch, std::size_t position) {
   if (!(squares > 0)) return 0;
   const double r = (before.products + after.products) / squares;
   return std::clamp(r + (1 + 4 * r) / static_cast<double>(held), 0.0, 0.9);
+}
+
+double run_length_if_correlated(double lag_1) {
+  constexpr std::array<double, 6> kLag = {0, 0.1, 0.2, 0.3, 0.4, 0.6};
+  constexpr std::array<double, 6> kRunLength = {kUncorrelatedRunLength, 830, 400, 215, 120, 44};
+  const double r = std::clamp(lag_1, kLag.front(), kLag.back());
+  const auto upper = std::find_if(kLag.begin() + 1, kLag.end() - 1, [r](double lag) { return r <= lag; });
+  const auto i = static_cast<std::size_t>(upper - kLag.begin());
+  const double share = (r - kLag[i - 1]) / (kLag[i] - kLag[i - 1]);
+  return std::exp((1 - share) * std::log(kRunLength[i - 1]) + share * std::log(kRunLength[i]));
 }
 
 }  // namespace agreed

@@ -21,6 +21,16 @@ Instant oldest_of(const SampleRows& rows) {
   return oldest;
 }
 
+/// Is it a further replicate of the run, or the first reading of one?
+bool is_of_run(const std::vector<CheckReading>& run, const Event& event) {
+  const auto* check = std::get_if<CheckReading>(&event);
+  if (check == nullptr || run.empty()) return check != nullptr;
+  const auto key = [](const CheckReading& r) {
+    return std::tie(r.measured_at, r.analyzer, r.standard, r.measurand);
+  };
+  return key(*check) == key(run.front());
+}
+
 bool takes(const ComparisonSettings& comparison, const SplitReading& reading) {
   return reading.measurand == comparison.measurand &&
          (reading.analyzer == comparison.x || reading.analyzer == comparison.y);
@@ -67,10 +77,17 @@ MonitorOutcome Monitor::apply(std::vector<Event> batch, History& history) {
   mark_unjudged(due);
   MonitorOutcome outcome;
   auto next = due.begin();
-  for (const Event& event : batch) {
+  std::vector<CheckReading> run;
+  for (auto event = batch.begin(); event != batch.end();) {
     // A pair is judged by the checks up to and including its own moment.
-    for (; next != due.end() && next->pair.at < time_of(event); ++next) fold(*next, outcome);
-    fold(event, outcome);
+    for (; next != due.end() && next->pair.at < time_of(*event); ++next) fold(*next, outcome);
+    if (!std::holds_alternative<CheckReading>(*event)) {
+      fold(*event++, outcome);
+      continue;
+    }
+    run.clear();
+    while (event != batch.end() && is_of_run(run, *event)) run.push_back(std::get<CheckReading>(*event++));
+    fold(run, outcome);
   }
   for (; next != due.end(); ++next) fold(*next, outcome);
   refold_stale(history, outcome);
@@ -112,8 +129,8 @@ void Monitor::mark_late(const CheckReading& reading) {
   const auto index = find_chart(reading.analyzer, reading.standard, reading.measurand);
   if (!index) return;
   ChartStream& stream = charts_[index->value];
-  const bool before_a_reading =
-      stream.last && std::pair(reading.measured_at, reading.replicate) < *stream.last;
+  // A further replicate of a run that is folded changes its point.
+  const bool before_a_reading = stream.last && reading.measured_at <= *stream.last;
   const bool before_an_intervention = stream.fold.last_at() && reading.measured_at < *stream.fold.last_at();
   if (before_a_reading || before_an_intervention) stream.stale = true;
   for (const ComparisonIndex reader : stream.read_by) {
@@ -234,17 +251,18 @@ SampleRows Monitor::forgotten_rows(ComparisonIndex index, std::span<const SplitR
   return known;
 }
 
+void Monitor::fold(std::span<const CheckReading> run, MonitorOutcome& outcome) {
+  const CheckReading& first = run.front();
+  const auto index = find_chart(first.analyzer, first.standard, first.measurand);
+  if (!index) return;
+  ChartStream& stream = charts_[index->value];
+  if (stream.stale) return;
+  stream.fold.add(run, outcome.findings);
+  stream.last = first.measured_at;
+  outcome.charts_changed.insert(*index);
+}
+
 void Monitor::fold(const Event& event, MonitorOutcome& outcome) {
-  if (const auto* check = std::get_if<CheckReading>(&event)) {
-    const auto index = find_chart(check->analyzer, check->standard, check->measurand);
-    if (!index) return;
-    ChartStream& stream = charts_[index->value];
-    if (stream.stale) return;
-    stream.fold.add(*check, outcome.findings);
-    stream.last = {check->measured_at, check->replicate};
-    outcome.charts_changed.insert(*index);
-    return;
-  }
   if (const auto* split = std::get_if<SplitReading>(&event)) {
     // Its pair is folded at its own moment; here only a half may have begun to wait.
     for (std::uint32_t i = 0; i < comparisons_.size(); ++i)

@@ -65,8 +65,7 @@ class Monitor {
  private:
   struct ChartStream {
     Chart fold;
-    std::optional<std::pair<Instant, std::int32_t>>
-        last;                              ///< time and replicate of the newest reading folded
+    std::optional<Instant> last;           ///< time of the newest run folded
     std::vector<ComparisonIndex> read_by;  ///< comparisons that take lambda from it
     bool stale = false;
   };
@@ -86,7 +85,7 @@ class Monitor {
   using Traces = std::vector<std::optional<Trace>>;  ///< by ChartIndex
   struct FoldedChart {
     Chart fold;
-    std::optional<std::pair<Instant, std::int32_t>> last;
+    std::optional<Instant> last;
     Trace trace;  ///< repeatability after each event
   };
 
@@ -104,6 +103,8 @@ class Monitor {
   [[nodiscard]] SampleRows forgotten_rows(ComparisonIndex index,
                                           std::span<const SplitReading* const> in_batch,
                                           History& history) const;
+  /// Readings that share chart and time: one run.
+  void fold(std::span<const CheckReading> run, MonitorOutcome& outcome);
   void fold(const Event& event, MonitorOutcome& outcome);
   void fold(const DuePair& due, MonitorOutcome& outcome);
   [[nodiscard]] bool of_refolded(const Subject& subject, const MonitorOutcome& outcome) const;

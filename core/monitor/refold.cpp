@@ -74,10 +74,15 @@ Monitor::FoldedChart Monitor::fold_chart(ChartIndex index, History& history,
     for (; next != interventions.end() && (!at || next->at <= *at); ++next)
       if (next->analyzer == settings_->of(index).analyzer) add(*next, next->at);
   };
-  for (const CheckReading& reading : history.checks(index)) {
-    add_interventions_until(reading.measured_at);
-    add(reading, reading.measured_at);
-    folded.last = {reading.measured_at, reading.replicate};
+  const std::vector<CheckReading> readings = history.checks(index);
+  for (auto first = readings.begin(); first != readings.end();) {
+    const Instant at = first->measured_at;
+    const auto last =
+        std::find_if(first, readings.end(), [at](const CheckReading& r) { return r.measured_at != at; });
+    add_interventions_until(at);
+    add(std::span<const CheckReading>(first, last), at);
+    folded.last = at;
+    first = last;
   }
   add_interventions_until(std::nullopt);
   return folded;

@@ -1,5 +1,6 @@
 #include "daemon/render/chart_json.hpp"
 
+#include "daemon/render/chart_range.hpp"
 #include "daemon/render/classical_json.hpp"
 #include "daemon/render/json_parts.hpp"
 
@@ -12,6 +13,8 @@ Json baseline_of(const BaselineView& baseline) {
           {"needed", baseline.needed},
           {"center", json_number(baseline.center)},
           {"sd", json_number(baseline.sd)},
+          {"sd_degrees_of_freedom", baseline.sd_degrees_of_freedom},
+          {"carried_over", baseline.carried_over},
           {"sigma", json_number(baseline.sigma)},
           {"sigma_degrees_of_freedom", json_number(baseline.sigma_degrees_of_freedom)},
           {"sigma_method", "moving_range"},
@@ -55,7 +58,51 @@ Json reference_of(const std::optional<ReferenceView>& reference) {
           {"expanded_uncertainty", json_number(reference->expanded_uncertainty)},
           {"coverage_factor", json_number(reference->coverage_factor)},
           {"bias", json_number(reference->bias)},
-          {"normalised_error", json_number(reference->normalised_error)}};
+          {"normalised_error", json_number(reference->normalised_error)},
+          {"allowed_bias", json_number(reference->allowed_bias)},
+          {"biased", reference->biased}};
+}
+
+Json replicates_of(const std::optional<ReplicatesView>& replicates) {
+  if (!replicates) return nullptr;
+  return {{"runs", replicates->runs},
+          {"per_run", json_number(replicates->per_run)},
+          {"within_sd", json_number(replicates->within_sd)},
+          {"within_degrees_of_freedom", replicates->within_degrees_of_freedom},
+          {"between_sd", json_number(replicates->between_sd)},
+          {"tell_precision", replicates->tell_precision}};
+}
+
+Json effect_of(const std::optional<EffectView>& effect) {
+  if (!effect) return nullptr;
+  return {{"what", effect->what.empty() ? Json("first_stretch") : Json(effect->what)},
+          {"at", to_rfc3339(effect->at)},
+          {"readings_before", effect->readings_before},
+          {"readings_after", effect->readings_after},
+          {"mean_before", json_number(effect->mean_before)},
+          {"mean_after", json_number(effect->mean_after)},
+          {"difference", json_number(effect->difference)},
+          {"low", json_number(effect->low)},
+          {"high", json_number(effect->high)},
+          {"confidence", json_number(effect->confidence)},
+          {"allowable", json_number(effect->allowable)}};
+}
+
+Json warnings_of(const ChartView& view, const std::optional<StandardRange>& range) {
+  Json all = view.warnings;
+  if (range) all.push_back("range_not_covered");
+  return all;
+}
+
+Json warning_details_of(const ChartView& view, const std::optional<StandardRange>& range) {
+  Json all = Json::object();
+  if (range)
+    all["range_not_covered"] = {{"lowest", json_number(range->lowest)},
+                                {"highest", json_number(range->highest)},
+                                {"levels", range->uncovered}};
+  for (const WarningNumbers& behind : view.warning_numbers)
+    for (const auto& [name, value] : behind.numbers) all[behind.warning][name] = json_number(value);
+  return all;
 }
 
 Json point_of(const ChartPoint& point) {
@@ -69,6 +116,8 @@ Json point_of(const ChartPoint& point) {
                {"upper", json_number(point.upper)},
                {"lower", json_number(point.lower)},
                {"signals", std::move(signals)},
+               {"replicates", point.replicates},
+               {"within_sd", json_number(point.within_sd)},
                {"set_aside", point.set_aside},
                {"starts_stretch", point.starts_stretch}};
   if (point.classical) add_classical(json, *point.classical);
@@ -103,6 +152,7 @@ Json chart_of(const Snapshot& snapshot, ChartIndex index, int points) {
   const Settings& settings = *snapshot.settings;
   const ChartSettings& chart = settings.of(index);
   const ChartView view = view_of(snapshot, index);
+  const auto range = range_not_covered(snapshot, index);
   Json limits = limits_of(view);
   const Json limits_reason =
       limits.is_null() ? Json("too few readings to say what the next one may be") : Json(nullptr);
@@ -120,10 +170,14 @@ Json chart_of(const Snapshot& snapshot, ChartIndex index, int points) {
                {"change", change_of(view.change)},
                {"precision", precision_of(view.precision)},
                {"serial_correlation", json_number(view.serial_correlation)},
-               {"intervention_effect", nullptr},
-               {"since_first", nullptr},
+               {"serial_correlation_allowed_for", json_number(view.correlation_allowed_for)},
+               {"replicates", replicates_of(view.replicates)},
+               {"smallest_shift", json_number(view.smallest_shift)},
+               {"intervention_effect", effect_of(view.intervention_effect)},
+               {"since_first", effect_of(view.since_first)},
                {"reference", reference_of(view.reference)},
-               {"warnings", view.warnings},
+               {"warnings", warnings_of(view, range)},
+               {"warning_details", warning_details_of(view, range)},
                {"marks", marks_of(view)},
                {"points", points_of(view, points)}};
   if (chart.method == ChartMethod::classical) make_classical(json, chart, view);

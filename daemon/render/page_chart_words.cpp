@@ -133,7 +133,41 @@ std::string reference_words(const ChartScene& scene) {
            shortest(reference.coverage_factor) + ")";
   if (reference.bias) out += "; bias " + shown_signed(*reference.bias, scene.style.decimals);
   if (reference.normalised_error) out += ", normalised error " + shown(*reference.normalised_error, 2);
+  if (reference.allowed_bias)
+    out += "; up to " + with_unit(*reference.allowed_bias, scene.style) + " is allowed for";
+  return out + (reference.biased ? ". Biased." : ".");
+}
+
+std::string replicates_words(const ChartScene& scene) {
+  if (!scene.view.replicates) return {};
+  const ReplicatesView& replicates = *scene.view.replicates;
+  std::string out = "Points are means of runs of replicates (" + shown(replicates.per_run, 1) +
+                    " a run); sd within runs " + with_unit(replicates.within_sd, scene.style);
+  if (replicates.between_sd) out += ", between runs " + with_unit(*replicates.between_sd, scene.style);
   return out + ".";
+}
+
+std::string effects_words(const ChartScene& scene) {
+  const auto difference = [&](const EffectView& effect) {
+    std::string out = shown_signed(effect.difference, scene.style.decimals) + " " + scene.style.unit;
+    if (effect.low && effect.high)
+      out += " (95 % interval " + shown_signed(*effect.low, scene.style.decimals) + " to " +
+             shown_signed(*effect.high, scene.style.decimals) + ")";
+    return out;
+  };
+  const auto beside = [&](const EffectView& effect) {
+    return effect.allowable ? "; allowable difference " + with_unit(*effect.allowable, scene.style) + "."
+                            : ".";
+  };
+  std::string out;
+  if (const auto& effect = scene.view.intervention_effect)
+    out = "Since " + spaced(effect->what) + " (" + time_words(effect->at) + ") the mean is " +
+          difference(*effect) + " from what it was before, of " +
+          counted(static_cast<int>(effect->readings_after), "reading", "readings") + beside(*effect);
+  if (const auto& first = scene.view.since_first)
+    out += (out.empty() ? "" : " ") +
+           ("Against the first stretch of this lot it is " + difference(*first) + beside(*first));
+  return out;
 }
 
 }  // namespace agreed

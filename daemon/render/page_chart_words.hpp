@@ -14,5 +14,9 @@ namespace agreed {
 [[nodiscard]] std::string precision_words(const ChartScene& scene);
 /// Empty without a reference value.
 [[nodiscard]] std::string reference_words(const ChartScene& scene);
+/// Empty without replicates.
+[[nodiscard]] std::string replicates_words(const ChartScene& scene);
+/// What the newest intervention did, and how far the mean is from that of the first stretch; empty without.
+[[nodiscard]] std::string effects_words(const ChartScene& scene);
 
 }  // namespace agreed

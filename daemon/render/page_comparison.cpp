@@ -1,4 +1,5 @@
 // All of one comparison, and all of one chart.
+#include "daemon/render/chart_range.hpp"
 #include "daemon/render/page_chart_words.hpp"
 #include "daemon/render/page_views.hpp"
 #include "daemon/render/svg_figures.hpp"
@@ -82,9 +83,12 @@ std::string comparison_html(const PageInput& input, ComparisonIndex index) {
 
 std::string chart_html(const PageInput& input, ChartIndex index) {
   const ChartScene scene = chart_scene(input.snapshot, index);
+  std::vector<std::string> warnings = scene.view.warnings;
+  if (range_not_covered(input.snapshot, index)) warnings.emplace_back("range_not_covered");
   std::string out = "<h1>" + escaped(scene.name()) + "</h1><p>" + chart_badge_html(scene.view.state) + "</p>";
   out += paragraph(chart_words(scene)) + paragraph(precision_words(scene)) +
-         paragraph(reference_words(scene)) + warnings_html(scene.view.warnings);
+         paragraph(replicates_words(scene)) + paragraph(reference_words(scene)) +
+         paragraph(effects_words(scene)) + warnings_html(warnings);
   Subject subject;
   subject.analyzer = scene.analyzer;
   subject.standard = scene.standard;

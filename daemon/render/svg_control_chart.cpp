@@ -292,6 +292,11 @@ void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
            std::to_string(i + 1) + ": " + spaced(view.marks[i].what) + ", " + time_words(view.marks[i].at)});
 }
 
+std::string reading_words(const ChartPoint& point, int decimals) {
+  return shown(point.value, decimals) +
+         (point.replicates > 1 ? " (mean of " + std::to_string(point.replicates) + ")" : "");
+}
+
 std::string cell(const std::optional<double>& value, int decimals) {
   return value ? shown(*value, decimals) : "";
 }
@@ -303,7 +308,7 @@ void add_classical_table(Figure& figure, const ChartScene& scene, const Canvas& 
                   {}};
   for (auto point = canvas.points.rbegin(); point != canvas.points.rend(); ++point) {
     const ClassicalPoint judged = point->classical.value_or(ClassicalPoint{});
-    figure.table.rows.push_back({time_words(point->measured_at), shown(point->value, decimals),
+    figure.table.rows.push_back({time_words(point->measured_at), reading_words(*point, decimals),
                                  cell(point->moving_range, decimals), cell(judged.ewma, decimals),
                                  cell(judged.cusum_upper, 2), cell(judged.cusum_lower, 2),
                                  signals_text(*point)});
@@ -318,7 +323,7 @@ void add_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
       {"measured at", "reading", "moving range", "change score", "precision score", "signals", "use"},
       {}};
   for (auto point = canvas.points.rbegin(); point != canvas.points.rend(); ++point)
-    figure.table.rows.push_back({time_words(point->measured_at), shown(point->value, decimals),
+    figure.table.rows.push_back({time_words(point->measured_at), reading_words(*point, decimals),
                                  point->moving_range ? shown(*point->moving_range, decimals) : "",
                                  point->score ? shown(*point->score, 2) : "",
                                  point->precision_score ? shown(*point->precision_score, 2) : "",

@@ -23,9 +23,11 @@
 
 namespace agreed {
 
-void Chart::State::judge_by_limits(Instant at, std::span<const double> run, std::vector<Finding>& findings) {
+void Chart::State::judge_by_limits(std::span<const CheckReading> run, std::vector<Finding>& findings) {
   using Turn = classical::Fold::Change;
-  const Turn change = classical->fold.take(at, run);
+  classical::Run taken{run.front().measured_at};
+  for (const CheckReading& reading : run) taken.add(reading.value);
+  const Turn change = classical->fold.take(taken);
   if (classical->fold.completes_baseline()) classical->baseline = stretch.last();
   classical->judged.push_back(classical->fold.newest());
   if (classical->judged.size() > kPointsKept) classical->judged.pop_front();
@@ -37,7 +39,7 @@ void Chart::State::judge_by_limits(Instant at, std::span<const double> run, std:
       findings.push_back(classical_finding());
       break;
     case Turn::ended:
-      findings.push_back(ceased(at, "back_to_normal", 0));
+      findings.push_back(ceased(taken.at, "back_to_normal", 0));
       break;
   }
 }

@@ -126,7 +126,7 @@ TEST_CASE("the words of more scatter") {
             "scatter",
             {{"value", 10.76}, {"sd", 0.0447}, {"ratio_of_sd", 2.11}, {"score", 3.9}, {"limit", 3.62}})) ==
         R"(Check standard wheat-low on line2 scatters more for protein
-Readings of check standard wheat-low for protein on analyzer line2 (NIR analyzer, packing line 2) scatter more than before (change score 3.90, limit 3.62). Their standard deviation is 0.045 g/100 g now, 2.1 times what it was. The newest reading is 10.76 g/100 g.
+Readings of check standard wheat-low for protein on analyzer line2 (NIR analyzer, packing line 2) scatter more than before (change score 3.90, limit 3.62). Their standard deviation was 0.045 g/100 g and is 2.1 times that now. The newest reading is 10.76 g/100 g.
 Since: most likely 2026-02-05 06:00 UTC; a start from 2026-02-04 22:00 UTC to 2026-02-05 22:00 UTC is possible.
 Likely cause: line2 (its repeatability), or how the check standard is presented to it.
 In doubt: single results of line2 for protein since 2026-02-04 22:00 UTC; means of several are less affected.

@@ -38,6 +38,13 @@ inline Instant hour(std::int64_t n) {
 struct Fed {
   explicit Fed(const Settings& settings) : chart(settings, {0}) {}
   void read(double value) { chart.add(CheckReading{hour(++hours), {0}, {1}, {0}, 0, value}, findings); }
+  void read_run(const std::vector<double>& values) {
+    std::vector<CheckReading> run;
+    ++hours;
+    for (const double value : values)
+      run.push_back({hour(hours), {0}, {1}, {0}, static_cast<std::int32_t>(run.size()), value});
+    chart.add(run, findings);
+  }
   void intervene(InterventionKind kind) {
     chart.add(Intervention{hour(hours), {0}, {}, {}, kind, ""}, findings);
   }

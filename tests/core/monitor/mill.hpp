@@ -98,8 +98,15 @@ inline Instant hour(double h) {
   return Instant{std::chrono::milliseconds(static_cast<std::int64_t>(h * 3.6e6))};
 }
 
+/// Of check readings: one each.
+inline int one_reading(std::uint32_t, std::uint32_t) {
+  return 1;
+}
+
 /// Some weeks at the mill, with a step of line2, a gross pair, replicates, and interventions now and then.
-inline std::vector<Event> weeks(std::mt19937& random, int shifts) {
+/// `replicates(analyzer, standard)`: readings in each run of a check standard.
+inline std::vector<Event> weeks(std::mt19937& random, int shifts,
+                                int (*replicates)(std::uint32_t, std::uint32_t) = one_reading) {
   std::normal_distribution<double> error(0, 0.02);
   std::uniform_real_distribution<double> product(10.0, 13.6), minutes(0, 50);
   const int step_at = static_cast<int>(random() % static_cast<unsigned>(shifts));
@@ -107,13 +114,12 @@ inline std::vector<Event> weeks(std::mt19937& random, int shifts) {
   for (int i = 0; i < shifts; ++i) {
     const double start = 8.0 * i, step = i >= step_at ? 0.08 : 0.0;
     for (std::uint32_t a = 0; a < 2; ++a)
-      for (std::uint32_t s = 0; s < 2; ++s)
-        events.emplace_back(CheckReading{hour(start + minutes(random) / 60),
-                                         {a},
-                                         {s},
-                                         {0},
-                                         0,
-                                         (s == 0 ? 13.4 : 10.6) + (a == 1 ? step : 0) + error(random)});
+      for (std::uint32_t s = 0; s < 2; ++s) {
+        const Instant at = hour(start + minutes(random) / 60);
+        for (std::int32_t k = 0; k < replicates(a, s); ++k)
+          events.emplace_back(CheckReading{
+              at, {a}, {s}, {0}, k, (s == 0 ? 13.4 : 10.6) + (a == 1 ? step : 0) + error(random)});
+      }
     for (int p = 0; p < 4; ++p) {
       const double truth = product(random);
       const double gross = random() % 60 == 0 ? 0.5 : 0.0;

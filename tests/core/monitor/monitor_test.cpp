@@ -39,6 +39,26 @@ TEST_CASE("state is a function of the set of events: any order of arrival, any b
   }
 }
 
+TEST_CASE("runs of replicates: state is a function of the set, also when a batch cuts a run in two") {
+  const auto settings = harrow_mill();
+  // line1 reads wheat-high in threes and wheat-low in twos, line2 reads singly.
+  const auto replicates = [](std::uint32_t analyzer, std::uint32_t standard) {
+    if (analyzer == 1) return 1;
+    return standard == 0 ? 3 : 2;
+  };
+  for (unsigned seed = 41; seed <= 44; ++seed) {
+    CAPTURE(seed);
+    std::mt19937 random(seed);
+    auto events = weeks(random, 40, replicates);
+    const Monitor expected = fold_at_once(events, settings);
+    CHECK(expected.chart({0}).view().points.back().replicates == 3);
+    CHECK(expected.chart({0}).view().points.size() == 40);
+    check_same(fold_in_batches(events, random, settings), expected, *settings);
+    std::shuffle(events.begin(), events.end(), random);
+    check_same(fold_in_batches(events, random, settings), expected, *settings);
+  }
+}
+
 TEST_CASE(
     "so it is with errors that grow and with lambda from replicates, late checks and samples included") {
   struct How {
