@@ -68,6 +68,14 @@ Deltas Comparison::State::deltas() const {
           delta_of_means(ratio.high, window)};
 }
 
+// Over restarts of the window as well: they mean another relation, not another repeatability.
+ErrorRatio Comparison::State::ratio_of_replicates() const {
+  ReplicatePool pool(config().error_growth);
+  for (const RecentPair& kept : recent)
+    if (kept.outcome == PairOutcome::accepted) pool.add(kept.pair);
+  return pool.ratio();
+}
+
 void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
   const std::int64_t serial = ++pairs_total;
   recent.push_back({pair, serial});
@@ -114,10 +122,7 @@ void Comparison::State::begin_stretch(Instant at, std::vector<Finding>& findings
 
 void Comparison::State::accept(const Pair& pair, std::int64_t serial, int later) {
   const Point point{pair.x, pair.y};
-  window.insert(
-      point,
-      {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates, pair.x_squares, pair.y_squares},
-      later);
+  window.insert(point, {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates}, later);
   chart.insert(point, pair.at, later, weight_of(pair, ratio));
   ++pairs_since_renewal;
   outliers.accepted(serial);
@@ -139,7 +144,7 @@ RecentPair* Comparison::State::recent_of(std::int64_t serial) {
 }
 
 void Comparison::State::evaluate(Instant at, std::vector<Finding>& findings) {
-  if (takes_replicates()) ratio = ratio_from_replicates(window, config().error_growth);
+  if (takes_replicates()) ratio = ratio_of_replicates();
   if (ratio.known) watch_for_change(at, findings);
   fit = fit_window(window, ratio, config().fit);
   test_renewed_window(at, findings);

@@ -72,7 +72,7 @@ struct Comparison::State {
   /// Why there can never be a verdict with these settings; empty: there can.
   [[nodiscard]] std::string_view no_verdict() const;
   [[nodiscard]] Deltas deltas() const;
-  /// The error ratio comes from the window's own replicates, not with each pair.
+  /// The error ratio comes from the replicates of the newest 500 pairs, not with each pair.
   [[nodiscard]] bool takes_replicates() const {
     return config().error_ratio.source == ErrorSource::replicates;
   }
@@ -81,6 +81,7 @@ struct Comparison::State {
   void begin_stretch(Instant at, std::vector<Finding>& findings);
 
  private:
+  [[nodiscard]] ErrorRatio ratio_of_replicates() const;
   void accept(const Pair& pair, std::int64_t serial, int later);
   void set_aside(const std::vector<HeldPair>& pairs, Instant at, std::vector<Finding>& findings);
   RecentPair* recent_of(std::int64_t serial);

@@ -1,54 +1,40 @@
 #include "core/pair/replicate_errors.hpp"
 
-#include <cmath>
-
 #include "core/pair/error_ratio.hpp"
 
 namespace agreed {
-namespace {
-struct Pool {
-  double squares = 0, df = 0;
 
-  // `share`: 1 / replicates.
-  void add(double share, double sum_of_squares, double unit) {
-    const double more = std::round(1 / share) - 1;
-    if (!(more > 0 && unit > 0)) return;
-    squares += sum_of_squares / unit;
-    df += more;
-  }
-};
+void ReplicatePool::Side::add(int replicates, double sum_of_squares, double unit) {
+  if (replicates < 2 || !(unit > 0)) return;
+  squares += sum_of_squares / unit;
+  df += replicates - 1;
+}
 
-ErrorModel model_of(const Pool& pool, ErrorGrowth growth) {
+void ReplicatePool::add(const Pair& pair) {
+  const bool constant = growth_ == ErrorGrowth::constant;
+  x_.add(pair.x_replicates, pair.x_squares, constant ? 1 : pair.x * pair.x);
+  y_.add(pair.y_replicates, pair.y_squares, constant ? 1 : pair.y * pair.y);
+  levels_ += (pair.x + pair.y) / 2;
+  ++pairs_;
+}
+
+ErrorModel ReplicatePool::model_of(const Side& side) const {
+  const bool constant = growth_ == ErrorGrowth::constant;
+  const double mean = side.squares / side.df, variance = 2 * mean * mean / side.df;
   ErrorModel model;
-  model.growth = growth;
-  const double mean = pool.squares / pool.df, variance = 2 * mean * mean / pool.df;
-  const bool constant = growth == ErrorGrowth::constant;
+  model.growth = growth_;
   model.at_zero = constant ? mean : 0;
   model.at_zero_variance = constant ? variance : 0;
   model.relative = constant ? 0 : mean;
   model.relative_variance = constant ? 0 : variance;
   return model;
 }
-}  // namespace
 
-ErrorRatio ratio_from_replicates(const Window& window, ErrorGrowth growth) {
-  const bool constant = growth == ErrorGrowth::constant;
-  Pool x, y;
-  double level = 0;
-  const auto points = window.points();
-  const auto entries = window.entries();
-  for (std::size_t i = 0; i < points.size(); ++i) {
-    const Point p = points[i];
-    x.add(entries[i].x_share, entries[i].x_squares, constant ? 1 : p.x * p.x);
-    y.add(entries[i].y_share, entries[i].y_squares, constant ? 1 : p.y * p.y);
-    level += (p.x + p.y) / (2 * window.size());
-  }
-  if (!(x.df > 0 && y.df > 0)) {
-    ErrorRatio unknown;
-    unknown.reason = x.df > 0 ? "no_replicates_of_y" : "no_replicates_of_x";
-    return unknown;
-  }
-  return ratio_of(model_of(x, growth), model_of(y, growth), level);
+ErrorRatio ReplicatePool::ratio() const {
+  if (x_.df > 0 && y_.df > 0) return ratio_of(model_of(x_), model_of(y_), levels_ / pairs_);
+  ErrorRatio unknown;
+  unknown.reason = x_.df > 0 ? "no_replicates_of_y" : "no_replicates_of_x";
+  return unknown;
 }
 
 }  // namespace agreed

@@ -22,9 +22,8 @@ namespace agreed {
 /// What a pair in the window is besides its values.
 struct WindowEntry {
   Instant at;
-  std::int64_t serial = 0;              ///< number of the pair in the comparison, from 1
-  double x_share = 1, y_share = 1;      ///< error variance of the mean / of a single result: 1 / replicates
-  double x_squares = 0, y_squares = 0;  ///< sums of squares of the replicates about their means
+  std::int64_t serial = 0;          ///< number of the pair in the comparison, from 1
+  double x_share = 1, y_share = 1;  ///< error variance of the mean / of a single result: 1 / replicates
 };
 
 class Window {

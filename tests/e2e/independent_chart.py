@@ -168,6 +168,7 @@ class Chart:
         learned = self.learned()
         point["repeatability"] = None if len(learned) < 2 else \
             (moving_range_degrees_of_freedom(len(learned)), moving_range_mean(learned) / D2)
+        point["level"] = float(learned.mean())
 
     def learned(self):
         """The readings that describe the standard: while a change is open, those before its start."""

@@ -1,7 +1,6 @@
 #include "core/pair/window_fit.hpp"
 
 #include "core/pair/error_ratio.hpp"
-#include "core/pair/replicate_errors.hpp"
 #include "core/pair/scatter.hpp"
 #include "tests/core/pair/support.hpp"
 
@@ -49,8 +48,8 @@ std::vector<Point> drawn(std::size_t n, std::mt19937_64& random) {
   return points;
 }
 
-WindowEntry replicated(int x, int y, double x_squares = 0, double y_squares = 0) {
-  return {{}, 0, 1.0 / x, 1.0 / y, x_squares, y_squares};
+WindowEntry replicated(int x, int y) {
+  return {{}, 0, 1.0 / x, 1.0 / y};
 }
 }  // namespace
 
@@ -216,31 +215,4 @@ TEST_CASE("a level at or below zero leaves no line with proportional errors, and
   for (const FitMethod asked : {FitMethod::deming, FitMethod::weighted_deming})
     CHECK(fit_window(window_of(points), proportional_ratio(0.05, 0.05), asked).reason ==
           "level_not_positive");
-}
-
-TEST_CASE("lambda from replicates: pooled within samples, by degrees of freedom") {
-  // x: 0.02 on 1, 0.06 on 2 (three replicates); y: 0.01 on 1, 0.03 on 1.
-  const std::vector<Point> points{{10, 10}, {20, 20}, {30, 30}};
-  const Window window =
-      window_of(points, {replicated(2, 2, 0.02, 0.01), replicated(3, 1, 0.06, 0), replicated(1, 2, 0, 0.03)});
-  const ErrorRatio ratio = ratio_from_replicates(window, ErrorGrowth::constant);
-  REQUIRE(ratio.known);
-  CHECK_CLOSE(ratio.x.variance, 0.08 / 3, 1e-14);
-  CHECK_CLOSE(ratio.y.variance, 0.04 / 2, 1e-14);
-  CHECK_CLOSE(ratio.x.degrees_of_freedom, 3, 1e-12);
-  CHECK_CLOSE(ratio.y.degrees_of_freedom, 2, 1e-12);
-  CHECK_CLOSE(ratio.lambda, 4.0 / 3, 1e-13);
-  CHECK(ratio.estimated);
-
-  const ErrorRatio growing = ratio_from_replicates(window, ErrorGrowth::proportional);
-  REQUIRE(growing.known);
-  CHECK_CLOSE(growing.x_model.relative, (0.02 / 100 + 0.06 / 400) / 3, 1e-13);
-  CHECK_CLOSE(growing.y_model.relative, (0.01 / 100 + 0.03 / 900) / 2, 1e-13);
-
-  CHECK(ratio_from_replicates(window_of({{1, 1}}, {replicated(1, 2, 0, 1)}), ErrorGrowth::constant).reason ==
-        "no_replicates_of_x");
-  CHECK(ratio_from_replicates(window_of({{1, 1}}, {replicated(2, 1, 1, 0)}), ErrorGrowth::constant).reason ==
-        "no_replicates_of_y");
-  CHECK(ratio_from_replicates(window_of({{1, 1}}, {replicated(2, 2, 1, 0)}), ErrorGrowth::constant).reason ==
-        "repeatability_is_zero");
 }
