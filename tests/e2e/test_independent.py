@@ -275,7 +275,7 @@ class Independent(SiteTest):
         self.assertEqual(comparison.severity, None)
 
     def test_pairs_that_leave_an_established_line_a_little(self):
-        mill = Mill(seed=24, pair=lambda i: -0.01 + (0.035 if i >= 30 else 0.0))
+        mill = Mill(seed=24, pair=lambda i: -0.01 + (0.055 if i >= 30 else 0.0))
         _, comparison = self.follow(mill, extra=" relation: identity,", relation=(0.0, 1.0))
         self.assertEqual(comparison.severity, "warning")
 
