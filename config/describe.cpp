@@ -98,6 +98,19 @@ std::string lots_text(const std::vector<Lot>& lots) {
   return list_of(words);
 }
 
+std::string classical_text(const ChartSettings& chart) {
+  const ClassicalSettings& chosen = chart.classical;
+  std::string text = "limits of 3 sd";
+  if (chosen.center) text += ", center " + shown(*chosen.center);
+  if (chosen.sigma) text += ", sigma " + shown(*chosen.sigma);
+  if (chosen.ewma_weight && chosen.ewma_width)
+    text += ", ewma " + shown(*chosen.ewma_weight) + '/' + shown(*chosen.ewma_width);
+  if (chosen.cusum_allowance && chosen.cusum_limit)
+    text += ", cusum " + shown(*chosen.cusum_allowance) + '/' + shown(*chosen.cusum_limit);
+  if (!(chosen.run_rules == RunRules{})) text += ", run rules";
+  return text + "; a false signal every about " + shown(std::round(chart.expected.readings)) + " readings";
+}
+
 std::string charts_text(const Settings& settings) {
   std::string text = "\nCharts\n";
   for (const ChartSettings& chart : settings.charts) {
@@ -106,8 +119,12 @@ std::string charts_text(const Settings& settings) {
                  "");
     text += line("  lots", lots_text(chart.lots));
     text += line("  every", cadence(chart.every, chart.overdue));
-    text += line("  level", run_length(chart.level_run_length, "readings", Score::level));
-    text += line("  precision", run_length(chart.precision_run_length, "readings", Score::precision));
+    if (chart.method == ChartMethod::classical)
+      text += line("  classical", classical_text(chart));
+    else
+      text += line("  level", run_length(chart.level_run_length, "readings", Score::level));
+    if (chart.method != ChartMethod::classical)
+      text += line("  precision", run_length(chart.precision_run_length, "readings", Score::precision));
     text += line("  baseline", std::to_string(chart.baseline) + " readings; split_memory " +
                                    std::to_string(chart.split_memory) + ", clear_after " +
                                    std::to_string(chart.clear_after));

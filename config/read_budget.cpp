@@ -2,10 +2,13 @@
 #include <algorithm>
 #include <cmath>
 #include <limits>
+#include <set>
+#include <tuple>
 
 #include "config/parts.hpp"
 #include "config/value_text.hpp"
 #include "core/base/alarm_budget.hpp"
+#include "core/chart/classical/expected_run_length.hpp"
 
 namespace agreed::settings_file {
 namespace {
@@ -18,6 +21,76 @@ std::vector<BudgetEntry> entries_of(const std::vector<Item>& items,
   std::vector<BudgetEntry> entries;
   for (std::size_t i = 0; i < items.size(); ++i) entries.push_back({items[i].every, own.at(i)});
   return entries;
+}
+
+/// Charts of which the same was chosen have the same run length; where centre and sigma lie does not matter.
+bool same_run_length(const ChartSettings& a, const ChartSettings& b) {
+  const ClassicalSettings &x = a.classical, &y = b.classical;
+  return a.baseline == b.baseline && x.center.has_value() == y.center.has_value() &&
+         x.sigma.has_value() == y.sigma.has_value() &&
+         x.sigma_degrees_of_freedom == y.sigma_degrees_of_freedom && x.ewma_weight == y.ewma_weight &&
+         x.ewma_width == y.ewma_width && x.cusum_allowance == y.cusum_allowance &&
+         x.cusum_limit == y.cusum_limit && x.run_rules == y.run_rules;
+}
+
+/// Works each combination out once: it takes up to half a second.
+void find_run_lengths_of_limits(std::vector<ChartSettings>& charts) {
+  for (std::size_t i = 0; i < charts.size(); ++i) {
+    if (charts[i].method != ChartMethod::classical) continue;
+    const auto same = [&](const ChartSettings& chart) {
+      return chart.method == ChartMethod::classical && same_run_length(chart, charts[i]);
+    };
+    const auto known = std::find_if(charts.begin(), charts.begin() + static_cast<std::ptrdiff_t>(i), same);
+    charts[i].expected = known != charts.begin() + static_cast<std::ptrdiff_t>(i)
+                             ? known->expected
+                             : classical::expected_run_length(charts[i].classical, charts[i].baseline);
+  }
+}
+
+std::vector<BudgetEntry> chart_entries(const Draft& draft) {
+  std::vector<BudgetEntry> entries = entries_of(draft.settings.charts, draft.chart_run_lengths);
+  for (std::size_t i = 0; i < entries.size(); ++i)
+    if (const ChartSettings& chart = draft.settings.charts[i]; chart.expected.readings > 0)
+      entries[i].run_length_of_limits = chart.expected.readings;
+  return entries;
+}
+
+std::string about(double value) {
+  return shown(std::round(value));
+}
+
+std::string cost_of(const ChartSettings& chart, double share) {
+  const ExpectedRunLength& expected = chart.expected;
+  const double a_year = 365.0 * 24 * 3'600'000 / static_cast<double>(chart.every.count()) / expected.readings;
+  std::string text = "what was chosen for these classical charts has a false signal every about " +
+                     about(expected.readings) + " readings";
+  if (std::abs(expected.readings - expected.known_parameters) > 1)
+    text += " (" + about(expected.known_parameters) + " if centre and sigma were known exactly)";
+  return text + ", each chart about " + about(a_year) +
+         " a year; its share of false_alerts_per_year is one every " + about(share) + " readings";
+}
+
+/// A classical chart keeps no promise of ours: what it costs is said.
+void judge_limits(const ChartSettings& chart, const Section& charts) {
+  std::string text;
+  if (classical::all_run_rules(chart.classical.run_rules))
+    text = "all run rules together with the limits: about " + about(chart.expected.limits_and_run_rules) +
+           " readings between false signals; fewer rules find nearly as much";
+  // The share is that of two scores, each with a run length of its own.
+  const double share = chart.level_run_length / 2;
+  if (chart.expected.readings < share / 2) text += (text.empty() ? "" : "; ") + cost_of(chart, share);
+  if (!text.empty()) charts.warning("method", text);
+}
+
+void judge_all_limits(const Draft& draft) {
+  std::set<std::tuple<int, int, double>> told;
+  for (std::size_t i = 0; i < draft.settings.charts.size(); ++i) {
+    const auto& charts = draft.chart_methods[i];
+    if (!charts) continue;
+    const Position at = charts->where("method");
+    if (told.insert({at.line, at.column, draft.settings.charts[i].expected.readings}).second)
+      judge_limits(draft.settings.charts[i], *charts);
+  }
 }
 
 std::vector<BudgetEntry> comparison_entries(const Draft& draft) {
@@ -60,7 +133,7 @@ Shortest shortest_share(const Draft& draft) {
   const Settings& all = draft.settings;
   for (std::size_t i = 0; i < all.charts.size(); ++i) {
     const ChartSettings& chart = all.charts[i];
-    if (!draft.chart_run_lengths[i])
+    if (!draft.chart_run_lengths[i] && chart.method != ChartMethod::classical)
       shortest.offer(chart.level_run_length, "chart " + all.of(chart.analyzer).id + '/' +
                                                  all.of(chart.standard).id + '/' +
                                                  all.of(chart.measurand).id);
@@ -109,8 +182,8 @@ void check_scatter(const Section& comparison, const ComparisonSettings& settings
 
 void spend_alarm_budget(const Section& top, bool judge, Draft& draft) {
   const double allowed = top.number("false_alerts_per_year").value_or(AlarmBudget{}.allowed_per_year);
-  const BudgetShares shares = share_alarm_budget(
-      allowed, entries_of(draft.settings.charts, draft.chart_run_lengths), comparison_entries(draft));
+  if (judge) find_run_lengths_of_limits(draft.settings.charts);
+  const BudgetShares shares = share_alarm_budget(allowed, chart_entries(draft), comparison_entries(draft));
   put_into(draft.settings, shares);
   if (shares.overspent) {
     top.error("false_alerts_per_year",
@@ -121,6 +194,7 @@ void spend_alarm_budget(const Section& top, bool judge, Draft& draft) {
     if (draft.settings.charts.empty() && draft.settings.comparisons.empty())
       top.warning_here("found neither check_standards nor comparisons; nothing is watched");
     judge_shares(top, shares, draft);
+    judge_all_limits(draft);
     const auto sections = top.named("comparisons");
     for (std::size_t i = 0; i < sections.size(); ++i)
       check_scatter(sections[i], draft.settings.comparisons[i]);

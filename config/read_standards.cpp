@@ -5,6 +5,7 @@
 #include <tuple>
 #include <utility>
 
+#include "config/chart_layers.hpp"
 #include "config/parts.hpp"
 #include "config/value_text.hpp"
 
@@ -12,26 +13,6 @@ namespace agreed::settings_file {
 namespace {
 
 constexpr Duration kEveryIfNotGiven = std::chrono::hours(8);  // for the alarm budget only
-
-/// A chart's settings: the check standard's own where given, else those for all.
-class ChartDefaults {
- public:
-  ChartDefaults(Section own, Section general) : own_(std::move(own)), general_(std::move(general)) {}
-
-  [[nodiscard]] int whole_number(const std::string& name, int otherwise) const {
-    return from(name).whole_number(name).value_or(otherwise);
-  }
-  [[nodiscard]] std::optional<double> run_length() const {
-    return from("in_control_run_length").number("in_control_run_length");
-  }
-
- private:
-  [[nodiscard]] const Section& from(const std::string& name) const {
-    return own_.usable(name) ? own_ : general_;
-  }
-
-  Section own_, general_;
-};
 
 void warn_of_short_run_length(const Section& charts) {
   const auto length = charts.number("in_control_run_length");
@@ -91,6 +72,9 @@ std::vector<LotOfAll> lots_of(const Section& standard, const std::vector<std::st
   if (standard.given("lot")) standard.error("lot", "found beside lots, expected one of the two");
   std::vector<LotOfAll> lots;
   for (const Section& section : sections) {
+    for (const Section& measurand : section.named("measurands"))
+      if (measurand.given("charts"))
+        measurand.error("charts", "found in a lot, expected under the check standard's own measurands");
     const References of_lot = section.given("measurands") ? references_of(section, measurands) : own;
     lots.push_back({section.text("lot").value_or(""), section.time("from"), of_lot});
   }
@@ -129,8 +113,9 @@ std::vector<Lot> lots_for(const std::vector<LotOfAll>& lots, const std::string& 
   return result;
 }
 
-ChartSettings chart_from(const Section& standard, const ChartDefaults& defaults) {
+ChartSettings chart_from(const Section& standard, const ChartLayers& defaults) {
   ChartSettings chart;
+  chart.method = method_of(defaults);
   chart.baseline = defaults.whole_number("baseline", chart.baseline);
   chart.split_memory = defaults.whole_number("split_memory", chart.split_memory);
   chart.clear_after = defaults.whole_number("clear_after", chart.clear_after);
@@ -142,23 +127,37 @@ ChartSettings chart_from(const Section& standard, const ChartDefaults& defaults)
 struct ChartDraft {
   ChartSettings chart;
   std::optional<double> own_run_length;
+  std::optional<Section> method;  ///< where a classical one says so
 };
 
-void add_charts(const Section& top, const Section& standard, const ChartDefaults& defaults,
-                StandardIndex index, const Settings& settings, std::vector<ChartDraft>& charts) {
+ChartDraft draft_of(const Section& standard, const ChartLayers& layers) {
+  ChartDraft draft{chart_from(standard, layers), layers.run_length(), std::nullopt};
+  if (draft.chart.method == ChartMethod::classical) {
+    draft.chart.classical = read_classical(layers);
+    draft.own_run_length.reset();
+    draft.method = layers.from("method");
+  }
+  return draft;
+}
+
+/// The charts of one check standard. `general`: the settings for all.
+void add_charts(const Section& top, const Section& standard, const Section& general, StandardIndex index,
+                const Settings& settings, std::vector<ChartDraft>& charts) {
   const auto lots = lots_of(standard, ids_of(settings.measurands));
   const auto measurands = watched(standard, lots);
   const auto analyzers = analyzers_of(standard, settings);
   for (const Section& measurand : top.named("measurands")) {
     if (measurands.count(measurand.id()) == 0) continue;
+    const ChartLayers layers = layers_of(standard, measurand.id(), general);
+    const ChartDraft draft = draft_of(standard, layers);
     for (const std::string& analyzer : analyzers) {
-      ChartSettings chart = chart_from(standard, defaults);
+      ChartSettings chart = draft.chart;
       chart.standard = index;
       chart.analyzer = index_of<AnalyzerIndex>(settings.analyzers, analyzer).value();
       chart.measurand = index_of<MeasurandIndex>(settings.measurands, measurand.id()).value();
       chart.smallest_shift = measurand.number("smallest_shift");
       chart.lots = lots_for(lots, measurand.id());
-      charts.push_back({std::move(chart), defaults.run_length()});
+      charts.push_back({std::move(chart), draft.own_run_length, draft.method});
     }
   }
 }
@@ -172,10 +171,13 @@ void read_standards(const Section& top, Draft& draft) {
   for (const Section& standard : top.named("check_standards")) {
     const Section own = standard.section("charts");
     warn_of_short_run_length(own);
+    for (const Section& measurand : standard.named("measurands"))
+      warn_of_short_run_length(measurand.section("charts"));
     const StandardIndex index{static_cast<std::uint32_t>(draft.settings.standards.size())};
     draft.settings.standards.push_back({standard.id(), standard.text("title").value_or(standard.id())});
-    add_charts(top, standard, ChartDefaults(own, general), index, draft.settings, charts);
+    add_charts(top, standard, general, index, draft.settings, charts);
   }
+  check_classical(top);
   std::sort(charts.begin(), charts.end(), [](const ChartDraft& a, const ChartDraft& b) {
     return std::tie(a.chart.analyzer, a.chart.standard, a.chart.measurand) <
            std::tie(b.chart.analyzer, b.chart.standard, b.chart.measurand);
@@ -183,6 +185,7 @@ void read_standards(const Section& top, Draft& draft) {
   for (ChartDraft& chart : charts) {
     draft.settings.charts.push_back(std::move(chart.chart));
     draft.chart_run_lengths.push_back(chart.own_run_length);
+    draft.chart_methods.push_back(std::move(chart.method));
   }
 }
 

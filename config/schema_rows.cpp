@@ -121,6 +121,7 @@ Rows standard_rows() {
           .within(0, kAny),
       row("check_standards.*.measurands.*.coverage_factor", T::number, "2", "of the expanded uncertainty")
           .above(0, 10),
+      row("check_standards.*.measurands.*.charts", T::section, "", "its own chart settings").as("charts"),
       row("check_standards.*.lots", T::list, "", "instead of lot, when lots follow each other; oldest first"),
       row("check_standards.*.lots[].lot", T::text, "", "its name").required(),
       row("check_standards.*.lots[].from", T::time, "", "in use from then on; the first may do without"),
@@ -135,8 +136,7 @@ Rows chart_rows() {
   return {
       row("charts", T::section, "", "how check readings are charted, for all check standards"),
       row("charts.method", T::word, "change_point", "how a change is looked for")
-          .one_of("change_point|classical")
-          .coming(Later::refused, "classical"),
+          .one_of("change_point|classical"),
       row("charts.baseline", T::whole_number, "30", "readings until learning ends; watched from the first")
           .within(10, 400),
       row("charts.split_memory", T::whole_number, "400", "newest readings that may be the start of a change")
@@ -146,18 +146,23 @@ Rows chart_rows() {
       row("charts.in_control_run_length", T::number, "",
           "readings between false signals of each score, instead of a share")
           .within(100, kLongRun),
-      row("charts.center", T::number, "", "classical: centre line from an earlier study")
-          .coming(Later::refused),
-      row("charts.sigma", T::number, "", "classical: standard deviation from an earlier study")
-          .above(0, kAny)
-          .coming(Later::refused),
-      row("charts.ewma", T::section, "", "classical: exponentially weighted mean").coming(Later::refused),
-      row("charts.ewma.weight", T::number, "", "weight of the newest reading").above(0, 1),
-      row("charts.ewma.width", T::number, "", "half width of its limits, in its own sd").above(0, 10),
-      row("charts.cusum", T::section, "", "classical: cumulative sum").coming(Later::refused),
-      row("charts.cusum.allowance", T::number, "", "in sd").within(0, 10),
-      row("charts.cusum.limit", T::number, "", "in sd").above(0, 100),
-      row("charts.run_rules", T::list, "", "classical: run rules, any of these").coming(Later::refused),
+      row("charts.center", T::number, "", "classical: centre line from an earlier study"),
+      row("charts.sigma", T::number, "",
+          "classical: standard deviation of one reading, from an earlier study")
+          .above(0, kAny),
+      row("charts.sigma_degrees_of_freedom", T::number, "", "classical: behind that sigma; none: exact")
+          .within(1, 1e6),
+      row("charts.run_spread", T::word, "standard_deviation", "classical: how replicates of a run scatter")
+          .one_of("standard_deviation|range"),
+      row("charts.ewma", T::section, "", "classical: exponentially weighted mean"),
+      row("charts.ewma.weight", T::number, "", "weight of the newest reading").within(0.01, 1).required(),
+      row("charts.ewma.width", T::number, "", "half width of its limits, in its own sd")
+          .above(0, 10)
+          .required(),
+      row("charts.cusum", T::section, "", "classical: cumulative sum"),
+      row("charts.cusum.allowance", T::number, "", "in sd").within(0, 10).required(),
+      row("charts.cusum.limit", T::number, "", "in sd").above(0, 100).required(),
+      row("charts.run_rules", T::list, "", "classical: run rules, any of these"),
       row("charts.run_rules[].same_side", T::whole_number, "", "so many in a row on one side").within(2, 100),
       row("charts.run_rules[].trend", T::whole_number, "", "so many in a row rising, or falling")
           .within(3, 100),

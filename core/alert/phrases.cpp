@@ -44,7 +44,20 @@ std::string analyzer_words(const Settings& settings, const std::string& id) {
   return or_else(id, "the analyzer");
 }
 
+// What told it on a classical chart.
+std::string signals_words(const Details& details) {
+  std::vector<std::string> names = list_in(details, "signals");
+  if (names.empty()) return "";
+  for (std::string& name : names) {
+    std::replace(name.begin(), name.end(), '_', ' ');
+    if (name == "ewma") name = "EWMA";
+    if (name == "cusum") name = "cumulative sum";
+  }
+  return " (told by: " + list_words(names) + ")";
+}
+
 std::string score_words(const Details& details) {
+  if (text_in(details, "method") == "classical") return signals_words(details);
   const auto score = number_in(details, "score"), limit = number_in(details, "limit");
   if (!score) return "";
   return " (change score " + fixed(*score, 2) + (limit ? ", limit " + fixed(*limit, 2) : "") + ")";

@@ -29,6 +29,7 @@ struct ChartAlert {
     const auto low = number("limit_lower"), high = number("limit_upper");
     return low && high ? numbers.range(*low, *high) : "";
   }
+  [[nodiscard]] bool classical() const { return text_in(alert.details, "method") == "classical"; }
   [[nodiscard]] std::string results() const {
     return "results of " + analyzer + " for " + measurand + earliest_start(alert);
   }
@@ -51,7 +52,17 @@ std::string newest_reading(const ChartAlert& chart) {
   return (replicates ? " The newest reading (mean of " + fixed(*replicates, 0) + ") is "
                      : " The newest reading is ") +
          chart.numbers.result(*value) +
-         (limits.empty() ? "" : "; from those before it, " + limits + " was to be expected") + ".";
+         (limits.empty()      ? ""
+          : chart.classical() ? "; the limits are " + limits
+                              : "; from those before it, " + limits + " was to be expected") +
+         ".";
+}
+
+/// How often limits such as these call without cause: whoever answers must know.
+std::string how_often_falsely(const ChartAlert& chart) {
+  const auto readings = chart.number("expected_run_length");
+  if (!readings || *readings <= 0) return "";
+  return " Limits as chosen here call without cause about every " + fixed(*readings, 0) + " readings.";
 }
 
 std::string how_many_since(const ChartAlert& chart) {
@@ -70,7 +81,9 @@ AlertWords single_reading_words(const ChartAlert& chart) {
                 " on check standard " + chart.standard +
                 (limits.empty() ? "" : "; " + limits + " was to be expected") +
                 score_words(chart.alert.details) + ".";
-  if (before) words.found += " The mean of the readings before is " + chart.numbers.mean(*before) + ".";
+  if (before)
+    words.found += (chart.classical() ? " The centre line is " : " The mean of the readings before is ") +
+                   chart.numbers.mean(*before) + "." + how_often_falsely(chart);
   words.since = since_words(chart.alert);
   words.cause = "the single measurement (preparation, mix-up) or " + chart.analyzer +
                 "; one reading cannot tell which.";
@@ -93,9 +106,11 @@ AlertWords shift_words(const ChartAlert& chart) {
   words.found = "Analyzer " + chart.analyzer_in_full + " reads check standard " + chart.standard + " " +
                 moved + " for " + chart.measurand + " than before" + score_words(chart.alert.details) + ".";
   if (before && after)
-    words.found +=
-        " The mean was " + chart.numbers.mean(*before) + " and is " + chart.numbers.mean(*after) + " now.";
-  words.found += how_many_since(chart) + newest_reading(chart);
+    words.found += (chart.classical() ? " The centre line is " : " The mean was ") +
+                   chart.numbers.mean(*before) +
+                   (chart.classical() ? ", the mean since the change " : " and is ") +
+                   chart.numbers.mean(*after) + (chart.classical() ? "." : " now.");
+  words.found += how_many_since(chart) + newest_reading(chart) + how_often_falsely(chart);
   if (chart.alert.severity == Severity::notice)
     words.found += " The shift is smaller than the smallest one that is held to matter here.";
   words.since = since_words(chart.alert);
@@ -124,7 +139,11 @@ AlertWords scatter_words(const ChartAlert& chart) {
   if (sd && ratio)
     words.found += " Their standard deviation was " + chart.numbers.mean(*sd) + " and is " +
                    fixed(*ratio, 1) + " times that now.";
-  words.found += how_many_since(chart) + newest_reading(chart);
+  if (const auto range = chart.number("moving_range"), most = chart.number("moving_range_upper");
+      range && most)
+    words.found += " The newest moving range is " + chart.numbers.result(*range) + "; up to " +
+                   chart.numbers.mean(*most) + " was to be expected.";
+  words.found += how_many_since(chart) + newest_reading(chart) + how_often_falsely(chart);
   words.since = since_words(chart.alert);
   words.cause = chart.analyzer + " (its repeatability), or how the check standard is presented to it.";
   words.doubt = "single " + chart.results() + "; means of several are less affected.";

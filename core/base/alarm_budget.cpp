@@ -70,6 +70,11 @@ void expect(AlarmBudget& budget, AlertKind kind, const BudgetEntry& entry, doubl
 void add_expectations(BudgetShares& shares, const std::vector<BudgetEntry>& charts,
                       const std::vector<BudgetEntry>& comparisons) {
   for (std::size_t i = 0; i < charts.size(); ++i) {
+    if (const auto of_limits = charts[i].run_length_of_limits) {
+      require_positive(*of_limits, "a run length");
+      expect(shares.budget, AlertKind::check_standard_unstable, charts[i], *of_limits);
+      continue;
+    }
     expect(shares.budget, AlertKind::check_standard_unstable, charts[i], shares.charts[i].level);
     expect(shares.budget, AlertKind::check_standard_unstable, charts[i], shares.charts[i].precision);
   }

@@ -14,6 +14,8 @@ namespace agreed {
 struct BudgetEntry {
   Duration every{};                  ///< mean time between its readings (pairs), > 0
   std::optional<double> run_length;  ///< its own `in_control_run_length`, > 0, instead of a share
+  /// Of a classical chart: the run length its limits give it, whatever its share; > 0.
+  std::optional<double> run_length_of_limits{};
   /// Of a comparison: whether these tests are made at all. One that is not made keeps its part of the share
   /// and adds nothing to what is expected.
   bool tests_outliers = true, tests_scatter = true;
@@ -43,8 +45,9 @@ struct BudgetShares {
 /// Own run lengths are taken off first; what is left is shared evenly. A chart's share: half to level, half
 /// to precision; an own run length holds for each of the two. A comparison's: half to the pair chart's
 /// warning, a quarter each to outliers and scatter; an own run length is the warning's, the other two get
-/// twice that each. Throws std::invalid_argument for an `every`, a run length or an allowance that is not
-/// positive and finite.
+/// twice that each. A classical chart has its share like any other, but what is expected of it follows from
+/// its limits: it may use up more or less. Throws std::invalid_argument for an `every`, a run length or an
+/// allowance that is not positive and finite.
 [[nodiscard]] BudgetShares share_alarm_budget(double false_alerts_per_year,
                                               const std::vector<BudgetEntry>& charts,
                                               const std::vector<BudgetEntry>& comparisons);

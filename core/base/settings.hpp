@@ -62,6 +62,8 @@ struct Standard {
 struct RunRules {
   int same_side = 0, trend = 0, two_of_three_beyond = 0, four_of_five_beyond = 0, alternating = 0,
       near_centre = 0, away_from_centre = 0;
+
+  bool operator==(const RunRules&) const = default;
 };
 
 /// How the spread of the replicates of one run is measured on a classical chart.

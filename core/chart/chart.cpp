@@ -69,7 +69,9 @@ Chart::State::State(const Settings& all, ChartIndex at)
       index(at),
       level(limit_for(Score::level, chart().level_run_length)),
       precision(limit_for(Score::precision, chart().precision_run_length)),
-      stretch(new_stretch({}, -1)) {}
+      stretch(new_stretch({}, -1)) {
+  if (chart().method == ChartMethod::classical) classical.emplace(classical::Fold(chart()));
+}
 
 Stretch Chart::State::new_stretch(const Carried& carried, std::int64_t point_before) const {
   const std::optional<int> decimals = measurand().decimals;
@@ -164,6 +166,7 @@ void Chart::State::begin_stretch(Instant at, const std::string& what, const Carr
   if (alarm) findings.push_back(ceased(at, "new_stretch", 0));
   if (biased) findings.push_back(bias_ceased(at, "new_stretch"));
   alarm.reset();
+  if (classical) restart_classical(at, findings);
   biased = false;
   stretch = new_stretch(carried, points_seen - 1);
   set_aside = 0;
@@ -381,6 +384,11 @@ void Chart::add(std::span<const CheckReading> run, std::vector<Finding>& finding
   s.newest = at;
   s.follow_lot(at, findings);
   PointRecord& point = s.take(run_of(run));
+  if (s.classical) {
+    s.judge_by_limits(run, findings);
+    s.judge_bias(at, findings);
+    return s.remember_repeatability(at);
+  }
   const bool open = s.alarm.has_value();
   s.test(point, findings);
   if (open) s.follow_up(point, findings);
@@ -425,10 +433,12 @@ std::optional<Repeatability> Chart::repeatability_at(Instant at) const {
 
 void Chart::conditions(std::vector<Finding>& findings) const {
   if (state_->alarm) findings.push_back(state_->finding(state_->describe()));
+  if (state_->classical && state_->classical->fold.alarm()) findings.push_back(state_->classical_finding());
   if (state_->biased) findings.push_back(state_->bias_finding());
 }
 
 ChartState Chart::state() const {
+  if (state_->classical) return state_->classical->fold.state();
   if (state_->alarm) return ChartState::unstable;
   return state_->stretch.count() < state_->chart().baseline ? ChartState::learning : ChartState::stable;
 }

@@ -8,6 +8,7 @@
 #include "core/base/settings.hpp"
 #include "core/chart/aftermath.hpp"
 #include "core/chart/chart.hpp"
+#include "core/chart/classical/fold.hpp"
 #include "core/chart/explanation.hpp"
 #include "core/chart/level_score.hpp"
 #include "core/chart/mean_level.hpp"
@@ -67,6 +68,13 @@ struct Change {
   }
 };
 
+/// What a classical chart has instead of scores; classical/in_chart.cpp works with it.
+struct ClassicalPart {
+  classical::Fold fold;
+  std::optional<Prefix> baseline;               ///< the stretch up to its last reading, once learned
+  SlidingArray<classical::JudgedRun> judged{};  ///< as `points`
+};
+
 struct Chart::State {
   State(const Settings& all, ChartIndex at);
 
@@ -91,14 +99,19 @@ struct Chart::State {
   bool history_cut = false;
   std::vector<StretchMark> marks;
   std::vector<float> scratch;
+  std::optional<ClassicalPart> classical;
 
   [[nodiscard]] const ChartSettings& chart() const { return settings->of(index); }
   [[nodiscard]] const Measurand& measurand() const { return settings->of(chart().measurand); }
   [[nodiscard]] std::size_t lot_at(Instant at) const;
   [[nodiscard]] const Lot& present_lot() const { return chart().lots.at(lot.value_or(0)); }
 
-  /// The stretch as far as it is learned from: all of it, or up to the start of what an open alert suspects.
-  [[nodiscard]] Prefix learned() const { return alarm ? alarm->start : stretch.last(); }
+  /// The stretch as far as it is learned from: all of it, or up to the start of what an open alert suspects;
+  /// on a classical chart the baseline.
+  [[nodiscard]] Prefix learned() const {
+    if (classical && classical->baseline) return *classical->baseline;
+    return alarm ? alarm->start : stretch.last();
+  }
   [[nodiscard]] double mean_of(const Sums& sums) const;
   /// Degrees of freedom of what is learned from these readings and carried over from earlier lots.
   [[nodiscard]] std::int64_t degrees_of(const Sums& sums) const {
@@ -133,6 +146,13 @@ struct Chart::State {
   [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
   [[nodiscard]] Finding bias_finding() const;
   [[nodiscard]] Finding bias_ceased(Instant at, const char* reason) const;
+
+  // Of a classical chart.
+  void judge_by_limits(std::span<const CheckReading> run, std::vector<Finding>& findings);
+  void restart_classical(Instant at, std::vector<Finding>& findings);
+  [[nodiscard]] Finding classical_finding() const;
+  [[nodiscard]] bool matters_by_limits() const;
+  void show_classical(ChartView& view) const;
 
   void follow_lot(Instant at, std::vector<Finding>& findings);
   PointRecord& take(const Run& run);

@@ -297,6 +297,7 @@ ChartView Chart::view() const {
   view.marks = s.marks;
   view.points.reserve(s.points.size());
   for (const PointRecord& record : s.points.all()) view.points.push_back(s.shown(record));
+  if (s.classical) s.show_classical(view);
   return view;
 }
 

@@ -39,6 +39,15 @@ enum class ChartSignal : std::uint8_t {
 [[nodiscard]] const char* to_string(ChartState state);
 [[nodiscard]] const char* to_string(ChartSignal signal);
 
+/// What a classical chart shows of one reading, as far as it was worked out; in the measurand's unit.
+struct ClassicalPoint {
+  std::optional<double> moving_range_upper;
+  std::optional<double> spread, spread_upper;  ///< range or standard deviation of a run's replicates
+  std::optional<double> ewma, ewma_upper, ewma_lower;
+  std::optional<double> cusum_upper, cusum_lower;  ///< in standard deviations
+  bool operator==(const ClassicalPoint&) const = default;
+};
+
 struct ChartPoint {
   Instant measured_at;
   double value = 0;
@@ -52,6 +61,7 @@ struct ChartPoint {
   std::optional<double> within_sd;  ///< of those, from 2 on
   bool set_aside = false;
   bool starts_stretch = false;  ///< first reading after an intervention or of a new lot
+  std::optional<ClassicalPoint> classical;
   bool operator==(const ChartPoint&) const = default;
 };
 
@@ -132,6 +142,18 @@ struct StretchMark {
   bool operator==(const StretchMark&) const = default;
 };
 
+/// The limits of a classical chart, of single readings, and where they come from.
+struct ClassicalView {
+  std::optional<double> center, sigma;             ///< none while the baseline is learned
+  std::optional<double> sigma_degrees_of_freedom;  ///< of a given sigma if they were given
+  bool center_given = false, sigma_given = false;
+  bool within_runs = false;  ///< sigma is that of the replicates of a run
+  std::optional<double> moving_range_upper;
+  std::optional<Instant> alarm_started_at;
+  std::optional<double> shift;  ///< of the open alert: mean since its start less the centre line
+  bool operator==(const ClassicalView&) const = default;
+};
+
 struct ChartView {
   ChartIndex index;
   std::string lot;
@@ -141,6 +163,7 @@ struct ChartView {
   std::optional<double> upper_limit, lower_limit;  ///< what the next reading may be
   ChangeView change;
   PrecisionView precision;
+  std::optional<ClassicalView> classical;    ///< then change and precision say nothing
   std::optional<double> serial_correlation;  ///< of the readings learned, about their mean
   std::optional<double>
       correlation_allowed_for;  ///< about the two means at the best split; by the level score

@@ -1,6 +1,7 @@
 #include "daemon/render/chart_json.hpp"
 
 #include "daemon/render/chart_range.hpp"
+#include "daemon/render/classical_json.hpp"
 #include "daemon/render/json_parts.hpp"
 
 namespace agreed {
@@ -107,18 +108,20 @@ Json warning_details_of(const ChartView& view, const std::optional<StandardRange
 Json point_of(const ChartPoint& point) {
   Json signals = Json::array();
   for (const ChartSignal signal : point.signals) signals.push_back(to_string(signal));
-  return {{"measured_at", to_rfc3339(point.measured_at)},
-          {"value", json_number(point.value)},
-          {"moving_range", json_number(point.moving_range)},
-          {"score", json_number(point.score)},
-          {"precision_score", json_number(point.precision_score)},
-          {"upper", json_number(point.upper)},
-          {"lower", json_number(point.lower)},
-          {"signals", std::move(signals)},
-          {"replicates", point.replicates},
-          {"within_sd", json_number(point.within_sd)},
-          {"set_aside", point.set_aside},
-          {"starts_stretch", point.starts_stretch}};
+  Json json = {{"measured_at", to_rfc3339(point.measured_at)},
+               {"value", json_number(point.value)},
+               {"moving_range", json_number(point.moving_range)},
+               {"score", json_number(point.score)},
+               {"precision_score", json_number(point.precision_score)},
+               {"upper", json_number(point.upper)},
+               {"lower", json_number(point.lower)},
+               {"signals", std::move(signals)},
+               {"replicates", point.replicates},
+               {"within_sd", json_number(point.within_sd)},
+               {"set_aside", point.set_aside},
+               {"starts_stretch", point.starts_stretch}};
+  if (point.classical) add_classical(json, *point.classical);
+  return json;
 }
 
 Json points_of(const ChartView& view, int points) {
@@ -153,30 +156,32 @@ Json chart_of(const Snapshot& snapshot, ChartIndex index, int points) {
   Json limits = limits_of(view);
   const Json limits_reason =
       limits.is_null() ? Json("too few readings to say what the next one may be") : Json(nullptr);
-  return {{"analyzer", settings.of(chart.analyzer).id},
-          {"standard", settings.of(chart.standard).id},
-          {"lot", json_words(view.lot)},
-          {"measurand", settings.of(chart.measurand).id},
-          {"unit", settings.of(chart.measurand).unit},
-          {"state", to_string(view.state)},
-          {"pattern", json_words(view.pattern)},
-          {"method", chart.method == ChartMethod::change_point ? "change_point" : "classical"},
-          {"baseline", baseline_of(view.baseline)},
-          {"limits", std::move(limits)},
-          {"limits_reason", limits_reason},
-          {"change", change_of(view.change)},
-          {"precision", precision_of(view.precision)},
-          {"serial_correlation", json_number(view.serial_correlation)},
-          {"serial_correlation_allowed_for", json_number(view.correlation_allowed_for)},
-          {"replicates", replicates_of(view.replicates)},
-          {"smallest_shift", json_number(view.smallest_shift)},
-          {"intervention_effect", effect_of(view.intervention_effect)},
-          {"since_first", effect_of(view.since_first)},
-          {"reference", reference_of(view.reference)},
-          {"warnings", warnings_of(view, range)},
-          {"warning_details", warning_details_of(view, range)},
-          {"marks", marks_of(view)},
-          {"points", points_of(view, points)}};
+  Json json = {{"analyzer", settings.of(chart.analyzer).id},
+               {"standard", settings.of(chart.standard).id},
+               {"lot", json_words(view.lot)},
+               {"measurand", settings.of(chart.measurand).id},
+               {"unit", settings.of(chart.measurand).unit},
+               {"state", to_string(view.state)},
+               {"pattern", json_words(view.pattern)},
+               {"method", chart.method == ChartMethod::change_point ? "change_point" : "classical"},
+               {"baseline", baseline_of(view.baseline)},
+               {"limits", std::move(limits)},
+               {"limits_reason", limits_reason},
+               {"change", change_of(view.change)},
+               {"precision", precision_of(view.precision)},
+               {"serial_correlation", json_number(view.serial_correlation)},
+               {"serial_correlation_allowed_for", json_number(view.correlation_allowed_for)},
+               {"replicates", replicates_of(view.replicates)},
+               {"smallest_shift", json_number(view.smallest_shift)},
+               {"intervention_effect", effect_of(view.intervention_effect)},
+               {"since_first", effect_of(view.since_first)},
+               {"reference", reference_of(view.reference)},
+               {"warnings", warnings_of(view, range)},
+               {"warning_details", warning_details_of(view, range)},
+               {"marks", marks_of(view)},
+               {"points", points_of(view, points)}};
+  if (chart.method == ChartMethod::classical) make_classical(json, chart, view);
+  return json;
 }
 
 }  // namespace

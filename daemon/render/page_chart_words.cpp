@@ -1,5 +1,6 @@
 #include "daemon/render/page_chart_words.hpp"
 
+#include <algorithm>
 #include <cmath>
 
 #include "daemon/render/page_words.hpp"
@@ -17,6 +18,37 @@ std::string learned_words(const ChartScene& scene) {
   if (base.center) out += ", centre " + with_unit(*base.center, scene.style);
   if (base.sd) out += ", sd " + with_unit(*base.sd, scene.style);
   if (base.set_aside > 0) out += ", " + std::to_string(base.set_aside) + " set aside";
+  return out;
+}
+
+// A classical chart: what it found, by what limits, and how often those call falsely.
+std::string classical_state_words(const ChartScene& scene) {
+  const ChartView& view = scene.view;
+  if (view.state == ChartState::learning)
+    return "Learning: " + std::to_string(view.baseline.readings) + " of " +
+           std::to_string(view.baseline.needed) + " readings of the baseline; nothing is judged before.";
+  if (view.state == ChartState::stable) return "Stable.";
+  const std::string begun = beginning_words(view.classical->alarm_started_at, {});
+  if (view.pattern == "scatter") return "Unstable: the readings scatter more; begun " + begun + ".";
+  std::string out = view.pattern == "single_reading" ? "Unstable: a single reading stands off"
+                                                     : "Unstable: the level shifted";
+  if (view.classical->shift)
+    out += " by " + shown_signed(*view.classical->shift, scene.style.decimals) + " " + scene.style.unit;
+  return out + "; begun " + begun + ".";
+}
+
+std::string classical_words(const ChartScene& scene) {
+  const ClassicalView& view = *scene.view.classical;
+  std::string out = classical_state_words(scene);
+  if (scene.view.lower_limit && scene.view.upper_limit)
+    out += " Limits " + shown(*scene.view.lower_limit, scene.style.decimals) + " to " +
+           with_unit(*scene.view.upper_limit, scene.style) + ", centre " +
+           with_unit(*view.center, scene.style) +
+           (view.sigma_given ? ", from an earlier study."
+                             : ", from the " + counted(scene.view.baseline.readings, "reading", "readings") +
+                                   " of the baseline.");
+  if (const double length = scene.asked.expected.readings; length > 0)
+    out += " What was chosen calls falsely about every " + shown(length, 0) + " readings.";
   return out;
 }
 
@@ -51,24 +83,16 @@ std::string state_words(ChartState state) {
 }
 
 std::string signal_words(ChartSignal signal) {
-  switch (signal) {
-    case ChartSignal::single_high:
-      return "single high";
-    case ChartSignal::single_low:
-      return "single low";
-    case ChartSignal::shift_up:
-      return "shift up";
-    case ChartSignal::shift_down:
-      return "shift down";
-    case ChartSignal::scatter_up:
-      break;
-  }
-  return "scatter up";
+  std::string words = to_string(signal);
+  std::replace(words.begin(), words.end(), '_', ' ');
+  if (signal == ChartSignal::ewma) return "EWMA";
+  return signal == ChartSignal::cusum ? "cumulative sum" : words;
 }
 
 std::string chart_words(const ChartScene& scene) {
   const ChartView& view = scene.view;
   if (view.points.empty()) return "No reading yet. The chart begins with its first reading.";
+  if (view.classical) return classical_words(scene);
   std::string out;
   if (view.state == ChartState::unstable)
     out = unstable_words(scene) + " " + learned_words(scene) + ".";
@@ -86,7 +110,11 @@ std::string chart_words(const ChartScene& scene) {
 
 std::string precision_words(const ChartScene& scene) {
   const ChartView& view = scene.view;
-  std::string out = "Precision score " + score_words(view.precision.score, view.precision.limit) + ".";
+  std::string out;
+  if (!view.classical)
+    out = "Precision score " + score_words(view.precision.score, view.precision.limit) + ".";
+  else if (view.classical->moving_range_upper)
+    out = "Moving ranges up to " + with_unit(*view.classical->moving_range_upper, scene.style) + ".";
   if (view.baseline.sigma)
     out += " Repeatability sigma " + with_unit(*view.baseline.sigma, scene.style) +
            " from the mean moving range" +

@@ -12,36 +12,40 @@ namespace {
 
 constexpr std::size_t kSmall = 60;
 
-Shape signal_shape(ChartSignal signal) {
-  switch (signal) {
-    case ChartSignal::single_high:
-      return Shape::triangle_up;
-    case ChartSignal::single_low:
-      return Shape::triangle_down;
-    case ChartSignal::shift_up:
-      return Shape::double_up;
-    case ChartSignal::shift_down:
-      return Shape::double_down;
-    case ChartSignal::scatter_up:
-      break;
-  }
-  return Shape::star;
-}
+struct SignalMark {
+  Shape shape;
+  const char* sample;  ///< the same as a path, for the legend
+};
 
-const char* signal_sample(ChartSignal signal) {
+SignalMark mark_of(ChartSignal signal) {
   switch (signal) {
     case ChartSignal::single_high:
-      return "M13 1L19 13L7 13Z";
+    case ChartSignal::above_limit:
+      return {Shape::triangle_up, "M13 1L19 13L7 13Z"};
     case ChartSignal::single_low:
-      return "M13 15L19 3L7 3Z";
+    case ChartSignal::below_limit:
+      return {Shape::triangle_down, "M13 15L19 3L7 3Z"};
     case ChartSignal::shift_up:
-      return "M7 8L13 0L19 8ZM7 15L13 7L19 15Z";
+      return {Shape::double_up, "M7 8L13 0L19 8ZM7 15L13 7L19 15Z"};
     case ChartSignal::shift_down:
-      return "M7 8L13 16L19 8ZM7 1L13 9L19 1Z";
+      return {Shape::double_down, "M7 8L13 16L19 8ZM7 1L13 9L19 1Z"};
     case ChartSignal::scatter_up:
+    case ChartSignal::moving_range_above_limit:
+    case ChartSignal::range_above_limit:
+    case ChartSignal::standard_deviation_above_limit:
+      return {Shape::star, "M13 0L15 6L21 8L15 10L13 16L11 10L5 8L11 6Z"};
+    case ChartSignal::ewma:
+    case ChartSignal::cusum:
+    case ChartSignal::same_side:
+    case ChartSignal::trend:
+    case ChartSignal::two_of_three_beyond:
+    case ChartSignal::four_of_five_beyond:
+    case ChartSignal::alternating:
+    case ChartSignal::near_centre:
+    case ChartSignal::away_from_centre:
       break;
   }
-  return "M13 0L15 6L21 8L15 10L13 16L11 10L5 8L11 6Z";
+  return {Shape::diamond, "M13 1L20 8L13 15L6 8Z"};
 }
 
 std::string signals_text(const ChartPoint& point) {
@@ -109,6 +113,28 @@ void add_limits(Plot& plot, const Canvas& canvas) {
   flush();
 }
 
+/// The line of the EWMA with its limits.
+void add_ewma(Plot& plot, const Canvas& canvas) {
+  std::vector<PlotPoint> value, upper, lower;
+  const auto flush = [&] {
+    plot.line(value, "fitted");
+    plot.line(upper, "limit");
+    plot.line(lower, "limit");
+    value.clear();
+    upper.clear();
+    lower.clear();
+  };
+  for (const ChartPoint& point : canvas.points) {
+    if (point.starts_stretch) flush();
+    if (!point.classical || !point.classical->ewma) continue;
+    const double at = on_axis(point.measured_at);
+    value.push_back({at, *point.classical->ewma});
+    upper.push_back({at, *point.classical->ewma_upper});
+    lower.push_back({at, *point.classical->ewma_lower});
+  }
+  flush();
+}
+
 void add_readings(Plot& plot, const Canvas& canvas) {
   std::vector<PlotPoint> line, dots;
   const auto flush = [&] {
@@ -134,7 +160,7 @@ void add_signals(Plot& plot, const ChartScene& scene, const Canvas& canvas) {
     if (point.set_aside && point.signals.empty())
       plot.shape(Shape::circle, at, "hollow", "set aside, " + when);
     if (point.signals.empty()) continue;
-    plot.shape(signal_shape(point.signals.front()), at, "signal", signals_text(point) + ", " + when);
+    plot.shape(mark_of(point.signals.front()).shape, at, "signal", signals_text(point) + ", " + when);
     if (plot.to_x(at.x) - last_word < kWordRoom) continue;
     last_word = plot.to_x(at.x);
     plot.words_at(at, signals_text(point), "signal-word");
@@ -177,8 +203,8 @@ void add_centre(Plot& plot, const ChartView& view, const Canvas& canvas, int dec
     plot.line({levels->after_from, levels->after_to}, "centre");
     plot.across(levels->before_from.y, "none", shown(levels->before_from.y, decimals));
     plot.across(levels->after_from.y, "none", shown(levels->after_from.y, decimals));
-  } else if (view.baseline.center) {
-    plot.across(*view.baseline.center, "centre", shown(*view.baseline.center, decimals));
+  } else if (const auto centre = view.classical ? view.classical->center : view.baseline.center) {
+    plot.across(*centre, "centre", shown(*centre, decimals));
   }
 }
 
@@ -190,6 +216,7 @@ std::string draw_readings(const ChartScene& scene, const Canvas& canvas, const F
   plot.time_axis_x(false);
   add_learning(plot, view, canvas);
   add_limits(plot, canvas);
+  add_ewma(plot, canvas);
   const int decimals = scene.style.decimals;
   if (view.change.started_between && view.state == ChartState::unstable)
     plot.block(on_axis(view.change.started_between->first), on_axis(view.change.started_between->last),
@@ -214,6 +241,8 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
     bars.push_back({on_axis(point.measured_at), *point.moving_range});
     extent.add(*point.moving_range);
   }
+  const auto limit = scene.view.classical ? scene.view.classical->moving_range_upper : std::nullopt;
+  if (limit) extent.add(*limit);
   Plot plot(id, size, canvas.time, {0, extent.padded(0.15).high});
   plot.value_axis_y("moving range", 2);
   plot.time_axis_x();
@@ -221,6 +250,7 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
   plot.bars(bars, "bars");
   const auto mean = scene.view.baseline.moving_range_mean;
   if (mean) plot.across(*mean, "centre", shown(*mean, scene.style.decimals));
+  if (limit) plot.across(*limit, "limit", shown(*limit, scene.style.decimals));
   return plot.svg(
       "Moving ranges of " + scene.name(),
       mean ? "Mean moving range " + with_unit(*mean, scene.style) + "." : "No mean moving range yet.");
@@ -237,7 +267,10 @@ void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
   figure.legend = {
       {legend_dot("dots"), "reading"},
       {legend_line("centre"), two_levels(view, canvas) ? "mean before and after the change" : "centre"},
-      {legend_area("expected"), "expected of a reading from those before it"}};
+      {legend_area("expected"),
+       view.classical ? "within the limits" : "expected of a reading from those before it"}};
+  if (scene.asked.classical.ewma_weight && view.classical)
+    figure.legend.push_back({legend_line("fitted"), "EWMA"});
   std::set<ChartSignal> signals;
   bool aside = false;
   for (const ChartPoint& point : canvas.points) {
@@ -245,7 +278,7 @@ void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
     aside = aside || point.set_aside;
   }
   for (const ChartSignal signal : signals)
-    figure.legend.push_back({legend_path("signal", signal_sample(signal)), signal_words(signal)});
+    figure.legend.push_back({legend_path("signal", mark_of(signal).sample), signal_words(signal)});
   if (aside)
     figure.legend.push_back({legend_path("hollow", "M8 8a5 5 0 1 0 10 0a5 5 0 1 0 -10 0Z"), "set aside"});
   figure.legend.push_back({legend_area("learning"), "baseline"});
@@ -264,7 +297,26 @@ std::string reading_words(const ChartPoint& point, int decimals) {
          (point.replicates > 1 ? " (mean of " + std::to_string(point.replicates) + ")" : "");
 }
 
+std::string cell(const std::optional<double>& value, int decimals) {
+  return value ? shown(*value, decimals) : "";
+}
+
+void add_classical_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
+  const int decimals = scene.style.decimals;
+  figure.table = {scene.name() + ", newest first",
+                  {"measured at", "reading", "moving range", "EWMA", "sum above", "sum below", "signals"},
+                  {}};
+  for (auto point = canvas.points.rbegin(); point != canvas.points.rend(); ++point) {
+    const ClassicalPoint judged = point->classical.value_or(ClassicalPoint{});
+    figure.table.rows.push_back({time_words(point->measured_at), reading_words(*point, decimals),
+                                 cell(point->moving_range, decimals), cell(judged.ewma, decimals),
+                                 cell(judged.cusum_upper, 2), cell(judged.cusum_lower, 2),
+                                 signals_text(*point)});
+  }
+}
+
 void add_table(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
+  if (scene.view.classical) return add_classical_table(figure, scene, canvas);
   const int decimals = scene.style.decimals;
   figure.table = {
       scene.name() + ", newest first",

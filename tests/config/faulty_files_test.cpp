@@ -231,10 +231,6 @@ std::vector<Fault> faults_between_keys() {
 
 std::vector<Fault> faults_of_what_comes_later() {
   return {
-      {"classical charts", with("baseline: 30", "method: classical"), 17, 18, "charts.method",
-       "found 'classical', which is not available in this version yet"},
-      {"run rules", with("baseline: 30", "run_rules: [{trend: 6}]"), 17, 10, "charts.run_rules",
-       "not available in this version yet"},
       {"a mapped format",
        with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: mill_export}") +
            "formats: {mill_export: {type: csv, values: {protein: Prot}}}\n",

@@ -8,6 +8,7 @@ from scipy import odr
 
 import independent
 import independent_chart
+import independent_classical
 import independent_weighted
 from harness import CONFIG, SiteTest
 from plant import START, csv, rfc3339
@@ -215,6 +216,31 @@ class Independent(SiteTest):
         self.assertEqual(charts["line1", "wheat-low"].unstable, None)
         self.assertEqual(comparison.severity, None)
 
+    def test_a_classical_chart(self):
+        charts = "charts: {method: classical, baseline: 15, ewma: {weight: 0.2, width: 2.86}, " \
+                 "cusum: {allowance: 0.5, limit: 5}, run_rules: [{same_side: 9}, {trend: 6}, " \
+                 "{two_of_three_beyond: 2}, {four_of_five_beyond: 1}]}"
+        config = CONFIG.format(port=0, rescan="1s", decimals=3, routes="    []")
+        config = config.replace("expanded_uncertainty: 0.08", "expanded_uncertainty: 0.08, " + charts)
+        mill = Mill(seed=9, check=lambda i, noise: noise + (0.05 if i >= 22 else 0) + (0.12 if i == 17 else 0))
+        site = self.make_site(config=config).start()
+        mill.drop_on(site)
+        chart = independent_classical.Chart(mill.checks["line1", "wheat-low"], 15, (0.2, 2.86), (0.5, 5))
+        shown = site.get("/api/charts/line1/wheat-low/protein?points=500")
+        self.compare(chart.shown(), shown, "line1/wheat-low")
+        told = {name for point in chart.points for name in point["signals"]}
+        self.assertLessEqual({"above_limit", "moving_range_above_limit", "ewma", "cusum", "four_of_five_beyond"}, told)
+        # Printed: EWMA 0.2/2.86 with exact limits 365.9; cumulative sum 0.5/5 465.4.
+        self.assertAlmostEqual(shown["run_length"]["ewma"], 365.9, delta=0.05)
+        self.assertAlmostEqual(shown["run_length"]["cusum"], 465.4, delta=0.05)
+        self.assertLess(shown["expected_run_length"], shown["run_length"]["known_parameters"])
+        self.report()
+        self.assertEqual(self.wrong, [], "\n" + "\n".join(self.wrong))
+        # The other check standard keeps its method, and its share of the alarm budget.
+        other = site.get("/api/charts/line1/wheat-high/protein")
+        self.assertEqual(other["method"], "change_point")
+        self.assertAlmostEqual(other["change"]["in_control_run_length"] / CHART_RUN_LENGTH, 1, delta=1e-9)
+
     def test_a_window_of_the_newest_thirty_pairs(self):
         _, comparison = self.follow(Mill(seed=1), capacity=30)
         self.assertEqual((len(comparison.window()), len(comparison.stretch)), (30, PAIRS))
@@ -249,7 +275,7 @@ class Independent(SiteTest):
         self.assertEqual(comparison.severity, None)
 
     def test_pairs_that_leave_an_established_line_a_little(self):
-        mill = Mill(seed=24, pair=lambda i: -0.01 + (0.035 if i >= 30 else 0.0))
+        mill = Mill(seed=24, pair=lambda i: -0.01 + (0.055 if i >= 30 else 0.0))
         _, comparison = self.follow(mill, extra=" relation: identity,", relation=(0.0, 1.0))
         self.assertEqual(comparison.severity, "warning")
 

@@ -70,8 +70,13 @@ bool any_rule(const RunRules& r) {
 void add_parts(const ClassicalSettings& chosen, ExpectedRunLength& expected) {
   expected.limits = limits_run_length(kLimitWidth);
   expected.limits_and_moving_range = individuals_run_length();
-  if (any_rule(chosen.run_rules))
-    expected.limits_and_run_rules = rules_run_length(chosen.run_rules).value_or(0);
+  if (any_rule(chosen.run_rules)) {
+    ClassicalSettings only_rules;
+    only_rules.run_rules = chosen.run_rules;
+    const auto exact = rules_run_length(chosen.run_rules);
+    expected.limits_and_run_rules =
+        exact ? *exact : simulated_run_length(only_rules, false, kRuns / 2, kSeed).readings;
+  }
   if (chosen.ewma_weight && chosen.ewma_width)
     expected.ewma = ewma_run_length(*chosen.ewma_weight, *chosen.ewma_width);
   if (chosen.cusum_allowance && chosen.cusum_limit)

@@ -24,7 +24,7 @@ double spread_limit(int readings, RunSpread spread) {
 }
 }  // namespace
 
-Fold::Fold(const ChartSettings& chart) : chart_(&chart), before_(beginning()), now_(before_) {}
+Fold::Fold(const ChartSettings& chart) : chart_(&chart), now_(beginning()) {}
 
 Fold::Progress Fold::beginning() const {
   Progress progress;
@@ -42,92 +42,78 @@ std::optional<LimitBasis> Fold::known(const Baseline& baseline) const {
 }
 
 void Fold::restart() {
-  run_ = {};
-  before_ = now_ = beginning();
+  now_ = beginning();
+  completes_baseline_ = false;
   means_ = {};
 }
 
-Fold::Change Fold::take(Instant at, double value) {
-  const bool replicate = run_.readings > 0 && at == run_.at;
+Fold::Change Fold::take(const Run& run) {
   const std::optional<ClassicalAlarm> was = now_.alarm;
-  if (replicate) {
-    now_ = before_;
-    means_.truncate(means_.size() - 1);
-  } else {
-    before_ = now_;
-    run_ = {};
-    run_.at = at;
-  }
-  run_.add(value);
-  means_.push_back({at, run_.mean});
+  means_.push_back({run.at, run.mean});
   if (means_.size() > kRunsKept) means_.pop_front();
   const bool had_limits = now_.basis.has_value();
-  learn(now_);
+  learn(run);
   now_.judged = {};
-  if (had_limits) {
-    judge(now_);
-  } else {
-    now_.judged.readings = run_.readings;
-    now_.judged.mean = run_.mean;
-    if (now_.runs > 1) now_.judged.moving_range = std::abs(run_.mean - now_.previous_mean);
-  }
-  now_.previous_mean = run_.mean;
-  now_.previous_readings = run_.readings;
+  now_.judged.readings = run.readings;
+  now_.judged.mean = run.mean;
+  if (now_.runs > 1) now_.judged.moving_range = std::abs(run.mean - now_.previous_mean);
+  if (had_limits) judge(run);
+  now_.previous_mean = run.mean;
+  now_.previous_readings = run.readings;
   if (!was) return now_.alarm ? Change::opened : Change::none;
   if (!now_.alarm) return Change::ended;
   return now_.alarm->pattern == was->pattern ? Change::none : Change::pattern_changed;
 }
 
-void Fold::learn(Progress& progress) const {
-  ++progress.runs;
-  if (progress.learned) return;
-  progress.baseline.add(run_, chart_->classical.run_spread);
-  if (!progress.basis) progress.basis = known(progress.baseline);
-  progress.learned = progress.baseline.runs() >= chart_->baseline && progress.basis.has_value();
+void Fold::learn(const Run& run) {
+  ++now_.runs;
+  completes_baseline_ = false;
+  if (now_.learned) return;
+  now_.baseline.add(run, chart_->classical.run_spread);
+  if (!now_.basis) now_.basis = known(now_.baseline);
+  now_.learned = now_.baseline.runs() >= chart_->baseline && now_.basis.has_value();
+  completes_baseline_ = now_.learned;
 }
 
-void Fold::judge(Progress& progress) const {
-  const LimitBasis& basis = *progress.basis;
+void Fold::judge(const Run& run) {
+  const LimitBasis& basis = *now_.basis;
   const ClassicalSettings& chosen = chart_->classical;
-  JudgedRun& judged = progress.judged;
-  judged.readings = run_.readings;
-  judged.mean = run_.mean;
+  JudgedRun& judged = now_.judged;
   const double sd =
-      basis.within_runs ? basis.sigma / std::sqrt(static_cast<double>(run_.readings)) : basis.sigma;
+      basis.within_runs ? basis.sigma / std::sqrt(static_cast<double>(run.readings)) : basis.sigma;
   judged.upper = basis.center + kLimitWidth * sd;
   judged.lower = basis.center - kLimitWidth * sd;
-  const LevelTests::Result level = progress.tests.take((run_.mean - basis.center) / sd, chosen);
+  const LevelTests::Result level = now_.tests.take((run.mean - basis.center) / sd, chosen);
   judged.signals = level.signals;
   if (chosen.ewma_weight && chosen.ewma_width) {
-    const Ewma& ewma = progress.tests.ewma;
+    const Ewma& ewma = now_.tests.ewma;
     const double half = sd * ewma.limit(*chosen.ewma_weight, *chosen.ewma_width);
     judged.ewma = basis.center + sd * ewma.value;
     judged.ewma_upper = basis.center + half;
     judged.ewma_lower = basis.center - half;
   }
   if (chosen.cusum_allowance && chosen.cusum_limit) {
-    judged.cusum_upper = progress.tests.cusum.upper;
-    judged.cusum_lower = progress.tests.cusum.lower;
+    judged.cusum_upper = now_.tests.cusum.upper;
+    judged.cusum_lower = now_.tests.cusum.lower;
   }
-  judge_spread(progress);
-  follow(progress, level);
+  judge_spread(run);
+  follow(level);
 }
 
-void Fold::judge_spread(Progress& progress) const {
-  const LimitBasis& basis = *progress.basis;
+void Fold::judge_spread(const Run& run) {
+  const LimitBasis& basis = *now_.basis;
   const RunSpread measure = chart_->classical.run_spread;
-  JudgedRun& judged = progress.judged;
-  if (progress.runs > 1) judged.moving_range = std::abs(run_.mean - progress.previous_mean);
-  if (basis.within_runs && run_.readings >= 2) {
-    judged.spread = spread_of(run_, measure);
-    judged.spread_upper = spread_limit(run_.readings, measure) * basis.sigma;
+  JudgedRun& judged = now_.judged;
+  if (basis.within_runs && run.readings >= 2) {
+    judged.spread = spread_of(run, measure);
+    judged.spread_upper = spread_limit(run.readings, measure) * basis.sigma;
     judged.signals.add(measure == RunSpread::range ? ChartSignal::range_above_limit
                                                    : ChartSignal::standard_deviation_above_limit,
                        *judged.spread > *judged.spread_upper);
     return;
   }
   // Moving ranges of single readings and of means of several are not of one kind.
-  const bool comparable = !basis.within_runs || progress.previous_readings <= 1;
+  const bool comparable = !basis.within_runs || now_.previous_readings <= 1;
   if (!comparable) return;
   judged.moving_range_upper = kMovingRangeLimit * kD2 * basis.sigma;
   judged.signals.add(ChartSignal::moving_range_above_limit,
@@ -135,10 +121,10 @@ void Fold::judge_spread(Progress& progress) const {
 }
 
 // A shift is the lasting explanation: once told, it replaces a single reading or scatter told before.
-void Fold::follow(Progress& progress, const LevelTests::Result& level) const {
-  const Signals& signals = progress.judged.signals;
-  std::optional<ClassicalAlarm>& alarm = progress.alarm;
-  const std::int64_t first = std::max<std::int64_t>(1, progress.runs - level.readings + 1);
+void Fold::follow(const LevelTests::Result& level) {
+  const Signals& signals = now_.judged.signals;
+  std::optional<ClassicalAlarm>& alarm = now_.alarm;
+  const std::int64_t first = std::max<std::int64_t>(1, now_.runs - level.readings + 1);
   if (!alarm) {
     if (signals.any()) alarm = ClassicalAlarm{signals.pattern(), first, 0};
     return;

@@ -2,8 +2,7 @@
 // One classical chart as a fold over the readings of its stretch: first the baseline, then every run judged
 // against limits that no longer move.
 //
-// A run is the readings of one measured_at. It is judged anew, from what was known before it, whenever one of
-// its replicates comes, so that only the set of readings matters. Nothing is set aside. The state is bounded:
+// A run is the readings of one measured_at, taken as a whole. Nothing is set aside. The state is bounded:
 // sums, the memories of the tests, and the means of the newest 500 runs.
 //
 // Limits (ISO 7870-2): individuals (runs of one, or runs whose spread was not used for sigma): centre +-
@@ -42,16 +41,21 @@ class Fold {
   explicit Fold(const ChartSettings& chart);
 
   enum class Change { none, opened, pattern_changed, ended };
-  /// Takes the next reading, no earlier than any before.
-  Change take(Instant at, double value);
+  /// Takes the next run, of one or more readings, later than any before.
+  Change take(const Run& run);
 
   /// Begins a new stretch: a new baseline; a given centre line and sigma stay.
   void restart();
 
   [[nodiscard]] const std::optional<LimitBasis>& basis() const { return now_.basis; }
   /// The newest run completed the baseline.
-  [[nodiscard]] bool completes_baseline() const { return now_.learned && !before_.learned; }
+  [[nodiscard]] bool completes_baseline() const { return completes_baseline_; }
   [[nodiscard]] bool learned() const { return now_.learned; }
+  /// `learning` until there are limits and a reading.
+  [[nodiscard]] ChartState state() const {
+    if (now_.alarm) return ChartState::unstable;
+    return now_.basis && now_.runs > 0 ? ChartState::stable : ChartState::learning;
+  }
   [[nodiscard]] const std::optional<ClassicalAlarm>& alarm() const { return now_.alarm; }
   [[nodiscard]] const JudgedRun& newest() const { return now_.judged; }
 
@@ -79,15 +83,15 @@ class Fold {
 
   [[nodiscard]] Progress beginning() const;
   [[nodiscard]] std::optional<LimitBasis> known(const Baseline& baseline) const;
-  void learn(Progress& progress) const;
-  void judge(Progress& progress) const;
-  void judge_spread(Progress& progress) const;
-  void follow(Progress& progress, const LevelTests::Result& level) const;
+  void learn(const Run& run);
+  void judge(const Run& run);
+  void judge_spread(const Run& run);
+  void follow(const LevelTests::Result& level);
   [[nodiscard]] std::size_t alarm_position() const;
 
   const ChartSettings* chart_;
-  Run run_;
-  Progress before_, now_;  ///< without and with the newest run
+  Progress now_;
+  bool completes_baseline_ = false;
   SlidingArray<Mean> means_;
 };
 

@@ -1,5 +1,6 @@
 #pragma once
-// One run: the readings of one measured_at, replicates of each other. A single reading is a run of one.
+// One run as a classical chart needs it: the readings of one measured_at, replicates of each other, with
+// their range. A single reading is a run of one.
 #include <algorithm>
 #include <cmath>
 #include <limits>

@@ -14,6 +14,8 @@ TEST_CASE("the limits named in the design follow from the table") {
   CHECK(run_length_for(Score::level, 3.3) == doctest::Approx(258));
   CHECK(run_length_for(Score::precision, 3.0) == doctest::Approx(479));
   CHECK(run_length_for(Score::pairs, 4.8) == doctest::Approx(129000));
+  CHECK(run_length_for(Score::pairs_established_line, 4.6) == doctest::Approx(41540));
+  CHECK(limit_for(Score::pairs_established_line, 1e5).extrapolated);
   CHECK_FALSE(limit_for(Score::level, 75100).extrapolated);
   CHECK_FALSE(limit_for(Score::level, 258).extrapolated);
 }
@@ -32,7 +34,7 @@ TEST_CASE("beyond the table the fitted law goes on and says so") {
 }
 
 TEST_CASE("limit and run length invert each other and rise together") {
-  for (const Score score : {Score::level, Score::precision, Score::pairs}) {
+  for (const Score score : {Score::level, Score::precision, Score::pairs, Score::pairs_established_line}) {
     double last = 0;
     for (double run_length = 20; run_length < 1e9; run_length *= 1.3) {
       const double h = limit_for(score, run_length).h;

@@ -177,19 +177,31 @@ TEST_CASE("a false warning lasts about eight pairs") {
 
 TEST_CASE("the warning of a lasting change is rarely given up") {
   // 3-statistics 3.5, h = 4.2: falsely resolved within 200 pairs in 9 / 2 / 0 % of steps of 0.5 / 1 / 2 sd.
-  constexpr int runs = 300;
-  for (const auto& [size, promised] : {std::pair{0.5, 0.09}, std::pair{1.0, 0.02}, std::pair{2.0, 0.0}}) {
-    int given_up = 0;
-    for (int i = 0; i < runs; ++i) {
-      Watch watch({4.2, 20}, 400 + static_cast<std::uint64_t>(i));
-      for (int k = 0; k < 60; ++k) watch.add();
-      for (int k = 0; k < 2000 && !watch.alarm.open(); ++k) watch.add({size, 0});
-      for (int k = 0; k < 200 && watch.alarm.open(); ++k) watch.add({size, 0});
+  // That holds after 200 calm pairs. After 60 they are too few to prove half an sd for good: half of the
+  // warnings of it, which come in 57 % of the runs only, are given up; 4 % of those of 1 sd.
+  struct Row {
+    int calm;
+    double size, promised;
+  };
+  constexpr int runs = 200;
+  for (const Row& row :
+       {Row{200, 0.5, 0.09}, Row{200, 1, 0.02}, Row{200, 2, 0}, Row{60, 0.5, 0.5}, Row{60, 1, 0.04}}) {
+    int given_up = 0, opened = 0;
+    for (std::uint64_t seed = 4000; seed < 4000 + runs; ++seed) {
+      Watch watch({4.2, 20}, seed);
+      for (int k = 0; k < row.calm; ++k) watch.add();
+      if (watch.alarm.open()) continue;
+      for (int k = 0; k < 1000 && !watch.alarm.open(); ++k) watch.add({row.size, 0});
+      if (!watch.alarm.open()) continue;
+      ++opened;
+      for (int k = 0; k < 200 && watch.alarm.open(); ++k) watch.add({row.size, 0});
       given_up += !watch.alarm.open();
     }
-    MESSAGE("step " << size << " sd: given up in " << 100.0 * given_up / runs << " %, promised "
-                    << 100 * promised);
-    CHECK(given_up <= runs * promised + 3 * std::sqrt(std::max(1.0, runs * promised)));
+    MESSAGE(row.calm << " calm pairs, step " << row.size << " sd: " << given_up << " of " << opened
+                     << " warnings given up, promised " << 100 * row.promised << " %");
+    const double expected = opened * row.promised;
+    CHECK(opened > runs / 3);
+    CHECK(given_up <= expected + 3 * std::sqrt(std::max(1.0, expected * (1 - row.promised))));
   }
 }
 
@@ -200,7 +212,7 @@ TEST_CASE("the scatter test calls falsely at its rate") {
   settings.comparisons[0].scatter_run_length = 1000;
   settings.comparisons[0].warning_run_length = 1e9;
   int called = 0;
-  constexpr int monitors = 40, pairs = 1000;
+  constexpr int monitors = 100, pairs = 1000;
   for (std::uint64_t seed = 0; seed < monitors; ++seed) {
     Mill mill(500 + seed, settings);
     mill.run(pairs);

@@ -92,7 +92,7 @@ inline ComparisonView full_comparison() {
   view.pairs_total = 150;
   view.waiting = 2;
   view.window = {140, 200, at_hour(0), at_hour(9), at_hour(0)};
-  view.error = {0.81, 0.4, 1.6, 0.018, 0.020, 17.9, 17.9, "check_standards", ""};
+  view.error = {0.81, 0.4, 1.6, 0.018, 0.020, 17.9, 17.9, "check_standards", "", {}};
   FitView fit;
   fit.intercept = 0.01;
   fit.slope = 0.998;

@@ -104,7 +104,7 @@ void fill_view(ComparisonView& view, const Measurand& measurand, std::size_t win
   fit.intercept_interval = {line.intercept - 0.09, line.intercept + 0.09};
   fit.slope_interval = {line.slope - 0.008, line.slope + 0.008};
   view.fit = fit;
-  view.error = {0.81, 0.4, 1.6, 0.018, 0.020, 17.9, 17.9, "check_standards", ""};
+  view.error = {0.81, 0.4, 1.6, 0.018, 0.020, 17.9, 17.9, "check_standards", "", {}};
   DifferenceView d;
   const Moments m = moments(view.pairs, window_from, count);
   d.mean = m.y - m.x;

@@ -32,8 +32,12 @@ ChartSettings given(double center, double sigma) {
 /// A fold fed one run an hour.
 struct Fed {
   explicit Fed(const ChartSettings& chart) : fold(chart) {}
-  Fold::Change read(double value) { return fold.take(hour(++hours), value); }
-  Fold::Change replicate(double value) { return fold.take(hour(hours), value); }
+  Fold::Change read(double value) { return run({value}); }
+  Fold::Change run(const std::vector<double>& replicates) {
+    Run taken{hour(++hours)};
+    for (const double value : replicates) taken.add(value);
+    return fold.take(taken);
+  }
   void feed(const std::vector<double>& values) {
     for (const double value : values) read(value);
   }
@@ -107,10 +111,7 @@ TEST_CASE("run means with range and with standard deviation: wafer thickness") {
     ChartSettings chart = chart_of(20);
     chart.classical.run_spread = expected.spread;
     Fed fed(chart);
-    const auto feed = [&](const std::vector<double>& row) {
-      fed.read(row[1]);
-      for (std::size_t i = 2; i < row.size(); ++i) fed.replicate(row[i]);
-    };
+    const auto feed = [&](const std::vector<double>& row) { fed.run({row.begin() + 1, row.end()}); };
     for (const auto& row : rows) feed(row);
     REQUIRE(fed.fold.basis());
     CHECK(fed.fold.basis()->within_runs);
@@ -206,19 +207,20 @@ TEST_CASE("a shift told by a run rule began with the first reading of the patter
   CHECK(fed.fold.mean_since_alarm_started() == doctest::Approx(4.0 / 9));
 }
 
-TEST_CASE("a run is judged by all its replicates, whatever came first") {
+TEST_CASE("a run of replicates is judged by its mean and by its spread") {
   ChartSettings chart = given(0, 1);
-  Fed fed(chart), other(chart);
+  Fed fed(chart);
   fed.feed({0.1, 0.2});
-  other.feed({0.1, 0.2});
-  CHECK(fed.read(3.4) == Fold::Change::opened);      // alone it is beyond 3
-  CHECK(fed.replicate(0.2) == Fold::Change::ended);  // 1.8 is within 3/sqrt(2), 3.2 apart is no scatter
-  CHECK(other.read(0.2) == Fold::Change::none);
-  CHECK(other.replicate(3.4) == Fold::Change::none);
-  CHECK_FALSE(fed.fold.newest().signals.any());
-  CHECK(fed.fold.newest().mean == doctest::Approx(other.fold.newest().mean).epsilon(1e-15));
+  CHECK(fed.run({3.4, 0.2}) == Fold::Change::none);  // 1.8 is within 3/sqrt(2)
   CHECK(*fed.fold.newest().upper == doctest::Approx(3 / std::sqrt(2.0)));
+  CHECK(*fed.fold.newest().spread == doctest::Approx(3.2 / std::sqrt(2.0)));
   CHECK(fed.fold.runs() == 3);
+  CHECK(fed.run({2.3, 2.1}) == Fold::Change::opened);
+  CHECK(fed.fold.alarm()->pattern == Pattern::single_reading);
+  Fed other(chart);
+  CHECK(other.run({-2.1, 2.1}) == Fold::Change::opened);
+  CHECK(has(other.fold, ChartSignal::standard_deviation_above_limit));
+  CHECK(other.fold.alarm()->pattern == Pattern::scatter);
 }
 
 TEST_CASE("an intervention begins a new baseline; what was given stays") {
@@ -261,12 +263,11 @@ TEST_CASE("without replicates in half of the runs they are taken as individuals"
   const ChartSettings chart = chart_of(10);
   Fed fed(chart);
   for (int i = 0; i < 10; ++i) {
-    fed.read(i % 2);
-    if (i < 4) fed.replicate(i % 2 + 0.01);
+    const double value = i % 2;
+    fed.run(i < 4 ? std::vector{value, value + 0.01} : std::vector{value});
   }
   CHECK_FALSE(fed.fold.basis()->within_runs);
-  fed.read(0.5);
-  fed.replicate(0.5);
+  fed.run({0.5, 0.5});
   CHECK_FALSE(fed.fold.newest().spread);
   CHECK(fed.fold.newest().moving_range_upper);
 }
