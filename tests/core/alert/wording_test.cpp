@@ -121,6 +121,34 @@ Next: 1. Repeat check standard wheat-low on line2 and run another one. 2. Look a
 )");
 }
 
+TEST_CASE("a classical chart says what told it, its limits, and how often these call without cause") {
+  const auto has = [](const std::string& text, const char* part) {
+    return text.find(part) != std::string::npos;
+  };
+  const std::string shift =
+      words(chart_alert("shift", {{"method", "classical"},
+                                  {"signals", std::vector<std::string>{"ewma", "two_of_three_beyond"}},
+                                  {"value", 10.70},
+                                  {"limit_lower", 10.55},
+                                  {"limit_upper", 10.69},
+                                  {"mean_before", 10.62},
+                                  {"mean_after", 10.68},
+                                  {"shift", 0.06},
+                                  {"expected_run_length", 48.3}}));
+  CHECK(has(shift, "0.060 g/100 g higher for protein than before (told by: EWMA and two of three beyond)."));
+  CHECK(has(shift, "The centre line is 10.620 g/100 g, the mean since the change 10.680 g/100 g."));
+  CHECK(has(shift, "the limits are 10.550 to 10.690 g/100 g"));
+  CHECK(has(shift, "call without cause about every 48 readings."));
+  const std::string scatter =
+      words(chart_alert("scatter", {{"method", "classical"},
+                                    {"signals", std::vector<std::string>{"moving_range_above_limit"}},
+                                    {"value", 10.70},
+                                    {"moving_range", 0.11},
+                                    {"moving_range_upper", 0.0771}}));
+  CHECK(has(scatter, "scatter more than before (told by: moving range above limit)."));
+  CHECK(has(scatter, "The newest moving range is 0.11 g/100 g; up to 0.077 g/100 g was to be expected."));
+}
+
 TEST_CASE("the words of more scatter") {
   CHECK(words(chart_alert(
             "scatter",

@@ -315,3 +315,43 @@ TEST_CASE("names with bytes that are not UTF-8 do not break the answer") {
   snapshot.comparisons[0] = std::make_shared<const ComparisonView>(view);
   CHECK(comparison_of(snapshot).at("pairs")[0].at("sample") == "S-\xEF\xBF\xBD\"<script>\n");
 }
+
+TEST_CASE("a classical chart has limits, blocks and a run length in place of scores") {
+  Snapshot snapshot = full_snapshot();
+  auto settings = std::make_shared<Settings>(*snapshot.settings);
+  ChartSettings& asked = settings->charts[1];
+  asked.method = ChartMethod::classical;
+  asked.classical.ewma_weight = 0.2;
+  asked.classical.ewma_width = 2.86;
+  asked.classical.run_rules.same_side = 9;
+  asked.expected = {52.1, 1.1, 92.5, 0.6, 370.4, 105.3, 152.7, 365.9, 0};
+  snapshot.settings = settings;
+  ChartView view = full_chart();
+  view.classical = ClassicalView{};
+  view.classical->center = 10.62;
+  view.classical->sigma = 0.02;
+  view.classical->moving_range_upper = 0.0737;
+  ClassicalPoint judged;
+  judged.ewma = 10.63;
+  view.points.back().classical = judged;
+  view.points.back().signals = {ChartSignal::above_limit, ChartSignal::moving_range_above_limit};
+  snapshot.charts[1] = std::make_shared<const ChartView>(view);
+
+  const Json chart = chart_of(snapshot, 1);
+  CHECK(chart.at("method") == "classical");
+  CHECK(chart.at("change").is_null());
+  CHECK(chart.at("precision").is_null());
+  CHECK(chart.at("limits").at("moving_range_upper") == 0.0737);
+  CHECK(chart.at("limits").at("source") == "baseline");
+  CHECK(chart.at("ewma").at("weight") == 0.2);
+  CHECK(chart.at("ewma").at("value") == 10.63);
+  CHECK(chart.at("ewma").at("upper").is_null());
+  CHECK(chart.at("cusum").is_null());
+  CHECK(chart.at("run_rules") == Json({{"same_side", 9}}));
+  CHECK(chart.at("expected_run_length") == 52.1);
+  CHECK(chart.at("run_length").at("known_parameters") == 92.5);
+  CHECK(chart.at("run_length").at("limits_and_run_rules") == 152.7);
+  CHECK(chart.at("run_length").at("cusum").is_null());
+  CHECK(chart.at("points").back().at("signals") == Json({"above_limit", "moving_range_above_limit"}));
+  CHECK(chart.at("points").back().at("ewma") == 10.63);
+}

@@ -34,7 +34,7 @@ struct Fed {
   explicit Fed(const ChartSettings& chart) : fold(chart) {}
   Fold::Change read(double value) { return run({value}); }
   Fold::Change run(const std::vector<double>& replicates) {
-    Run taken{hour(++hours)};
+    classical::Run taken{hour(++hours)};
     for (const double value : replicates) taken.add(value);
     return fold.take(taken);
   }
