@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "core/base/settings.hpp"
+#include "core/pair/agreement_record.hpp"
 #include "core/pair/comparison.hpp"
 #include "core/pair/drift_alarm.hpp"
 #include "core/pair/outlier.hpp"
@@ -41,6 +42,19 @@ struct RecentPair {
   double residual = 0, p = 1;  ///< at arrival, of those held or set aside
 };
 
+/// Of a pair older than those kept whole, for the look-back.
+struct OlderPair {
+  std::string sample;
+  Instant at{};
+};
+
+/// What a critical signal leaves of the stretch that ends at the estimated start.
+struct RememberedStart {
+  Moments before;                          ///< of the newest pairs before it
+  Instant since;                           ///< start of that stretch
+  std::optional<PairMark> last_agreement;  ///< before the earliest likely start
+};
+
 struct Comparison::State {
   State(const Settings& all_settings, ComparisonIndex comparison);
 
@@ -58,7 +72,11 @@ struct Comparison::State {
   std::vector<LevelNow> levels;  ///< empty without a fit or an allowable difference
   bool scatter_excess = false;   ///< at the last full renewal of the window
   std::deque<RecentPair> recent;
+  std::deque<OlderPair> older;  ///< the 500 before those
   std::deque<BiasPoint> bias_history;
+  AgreementRecord agreement;
+  std::optional<Instant> first_pair_at;
+  std::optional<RememberedStart> restarted;  ///< at the last critical signal
   std::int64_t pairs_total = 0;
   std::optional<Instant> last_at, stretch_from, last_agreement;
   std::optional<Finding> lost, drifting;  ///< the conditions that hold, as last found
@@ -75,6 +93,7 @@ struct Comparison::State {
  private:
   void accept(const Pair& pair, std::int64_t serial, int later);
   void set_aside(const std::vector<HeldPair>& pairs, Instant at, std::vector<Finding>& findings);
+  void drop_oldest();
   RecentPair* recent_of(std::int64_t serial);
   void evaluate(Instant at, std::vector<Finding>& findings);
   void watch_for_change(Instant at, std::vector<Finding>& findings);
@@ -95,6 +114,11 @@ struct Comparison::State {
 [[nodiscard]] Finding agreement_drifting_finding(const Comparison::State& state, Instant at);
 [[nodiscard]] Finding pair_outlier_finding(const Comparison::State& state, const RecentPair& pair,
                                            Instant at);
+
+/// The newest pair before `at` at which agreement was shown.
+[[nodiscard]] std::optional<PairMark> last_agreement_before(const Comparison::State& state, Instant at);
+/// At a critical signal, before the stretch restarts.
+[[nodiscard]] RememberedStart remember_start(const Comparison::State& state);
 
 /// The view of a state.
 [[nodiscard]] ComparisonView show(const Comparison::State& state);

@@ -74,17 +74,35 @@ Json within_of(const DifferenceView& difference) {
       {"interval", difference.within_interval ? interval_of(*difference.within_interval) : Json(nullptr)}};
 }
 
+Json limits_of(const AgreementLimits& limits) {
+  return {{"mean", json_number(limits.mean)},
+          {"sd", json_number(limits.sd)},
+          {"mean_interval", interval_of(limits.mean_interval)},
+          {"lower_limit", json_number(limits.lower_limit)},
+          {"upper_limit", json_number(limits.upper_limit)},
+          {"lower_limit_interval", interval_of(limits.lower_limit_interval)},
+          {"upper_limit_interval", interval_of(limits.upper_limit_interval)}};
+}
+
 Json difference_of(const std::optional<DifferenceView>& difference) {
   if (!difference) return nullptr;
-  return {{"mean", json_number(difference->mean)},
-          {"sd", json_number(difference->sd)},
-          {"mean_interval", interval_of(difference->mean_interval)},
-          {"lower_limit", json_number(difference->lower_limit)},
-          {"upper_limit", json_number(difference->upper_limit)},
-          {"lower_limit_interval", interval_of(difference->lower_limit_interval)},
-          {"upper_limit_interval", interval_of(difference->upper_limit_interval)},
-          {"within_allowable", within_of(*difference)},
-          {"paired_t_p", json_number(difference->paired_t_p)}};
+  Json json = limits_of(*difference);
+  json["within_allowable"] = within_of(*difference);
+  json["percent"] = difference->percent ? limits_of(*difference->percent) : Json(nullptr);
+  json["paired_t_p"] = json_number(difference->paired_t_p);
+  return json;
+}
+
+Json robust_of(const std::optional<RobustView>& robust) {
+  if (!robust) return nullptr;
+  const auto interval = [](const std::optional<Interval>& limits) {
+    return limits ? interval_of(*limits) : Json(nullptr);
+  };
+  return {{"method", "passing_bablok"},
+          {"slope", json_number(robust->slope)},
+          {"slope_interval", interval(robust->slope_interval)},
+          {"intercept", json_number(robust->intercept)},
+          {"intercept_interval", interval(robust->intercept_interval)}};
 }
 
 Json scatter_of(const std::optional<ScatterView>& scatter) {
@@ -179,8 +197,8 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"fit_reason", json_words(view.fit_reason)},
           {"levels", levels_of(view)},
           {"difference", difference_of(view.difference)},
-          {"robust", nullptr},
-          {"concordance", nullptr},
+          {"robust", robust_of(view.robust)},
+          {"concordance", json_number(view.concordance)},
           {"scatter", scatter_of(view.scatter)},
           {"range", range_of(view.range)},
           {"pair_chart", pair_chart_of(view.pair_chart)},
