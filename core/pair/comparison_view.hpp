@@ -156,6 +156,8 @@ struct LookBackView {
   std::int64_t pairs = 0;            ///< after `from`; of all data: all
   std::vector<std::string> samples;  ///< of the newest 1,000 of them, oldest first
   double hours = 0;
+
+  [[nodiscard]] const char* from_is() const { return from_agreement ? "agreement_shown" : "start_of_data"; }
   bool operator==(const LookBackView&) const = default;
 };
 

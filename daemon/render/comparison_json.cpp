@@ -135,6 +135,40 @@ Json pair_chart_of(const PairChartView& chart) {
           {"reason", chart.score ? Json(nullptr) : Json("the pair chart needs 7 pairs in this stretch")}};
 }
 
+Json diagnosis_of(const std::optional<DiagnosisView>& diagnosis) {
+  if (!diagnosis) return nullptr;
+  const auto& [x, y, both, neither] = diagnosis->probabilities;
+  return {{"moved", to_string(diagnosis->moved)},
+          {"evidence", diagnosis->evidence},
+          {"probability", json_number(diagnosis->probability)},
+          {"probabilities",
+           {{"x", json_number(x)},
+            {"y", json_number(y)},
+            {"both", json_number(both)},
+            {"neither", json_number(neither)}}},
+          {"shift_pairs", json_number(diagnosis->shift_pairs)},
+          {"shift_x", json_number(diagnosis->shift_x)},
+          {"shift_y", json_number(diagnosis->shift_y)},
+          {"se_shift_pairs", json_number(diagnosis->se_pairs)},
+          {"se_shift_x", json_number(diagnosis->se_x)},
+          {"se_shift_y", json_number(diagnosis->se_y)},
+          {"pairs_before", diagnosis->pairs_before},
+          {"pairs_after", diagnosis->pairs_after},
+          {"x_readings_before", diagnosis->x_readings_before},
+          {"x_readings_after", diagnosis->x_readings_after},
+          {"y_readings_before", diagnosis->y_readings_before},
+          {"y_readings_after", diagnosis->y_readings_after},
+          {"started_at", json_time(diagnosis->started_at)},
+          {"started_between", json_period(diagnosis->started_between)}};
+}
+
+Json look_back_of(const std::optional<LookBackView>& look_back) {
+  if (!look_back) return nullptr;
+  return {{"from", to_rfc3339(look_back->from)}, {"from_is", look_back->from_is()},
+          {"to", to_rfc3339(look_back->to)},     {"hours", json_number(look_back->hours)},
+          {"pairs", look_back->pairs},           {"samples", look_back->samples}};
+}
+
 Json outliers_of(const ComparisonView& view) {
   Json list = Json::array();
   for (const OutlierView& outlier : view.outliers)
@@ -202,8 +236,8 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"scatter", scatter_of(view.scatter)},
           {"range", range_of(view.range)},
           {"pair_chart", pair_chart_of(view.pair_chart)},
-          {"diagnosis", nullptr},
-          {"look_back", nullptr},
+          {"diagnosis", diagnosis_of(view.diagnosis)},
+          {"look_back", look_back_of(view.look_back)},
           {"outliers", outliers_of(view)},
           {"pairs", pairs_of(view, pairs)}};
 }

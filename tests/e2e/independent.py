@@ -286,6 +286,7 @@ class Comparison:
         self.change = pair_change(*xy(self.stretch), error)
         if self.change.score > self.critical_limit:
             self.severity, self.restarted = "critical", True
+            self.before = self.stretch[:self.change.k]
             self.stretch = self.stretch[self.change.k:]
             self.change = None if len(self.stretch) < 7 else pair_change(*xy(self.stretch), error)
         elif self.change.score > self.warning_limit:
