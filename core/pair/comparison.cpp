@@ -143,13 +143,14 @@ void Comparison::State::evaluate(Instant at, std::vector<Finding>& findings) {
 }
 
 void Comparison::State::watch_for_change(Instant at, std::vector<Finding>& findings) {
+  const bool critical_already = alarm.open() == Severity::critical;
   const auto step = alarm.step(chart, deltas());
   if (step == DriftAlarm::Step::not_confirmed) end(drifting, at, "not_confirmed", findings);
   if (step != DriftAlarm::Step::warning && step != DriftAlarm::Step::critical) return;
   drifting = agreement_drifting_finding(*this, at);
   findings.push_back(*drifting);
   if (step != DriftAlarm::Step::critical) return;
-  restarted = remember_start(*this);
+  if (!critical_already) restarted = remember_start(*this);
   const int after = alarm.split().after;
   chart.restart(after);
   window.restart(after);

@@ -13,22 +13,34 @@ constexpr std::size_t kSamplesListed = 1000;
 
 struct Sides {
   Moments before, after;
+  std::int64_t first_after = 0;  ///< number of that pair
 };
 
 // The newest `after` accepted pairs, and up to `before` of those just before them.
 Sides sides_of(const State& state, std::int64_t before, std::int64_t after) {
   std::vector<Point> before_points, after_points;
+  std::int64_t first_after = state.pairs_total + 1;
   for (auto recent = state.recent.rbegin(); recent != state.recent.rend(); ++recent) {
     if (recent->outcome != PairOutcome::accepted) continue;
     const Point point{recent->pair.x, recent->pair.y};
-    if (after-- > 0)
+    if (after-- > 0) {
       after_points.push_back(point);
-    else if (before-- > 0)
+      first_after = recent->serial;
+    } else if (before-- > 0) {
       before_points.push_back(point);
-    else
+    } else {
       break;
+    }
   }
-  return {Moments(before_points), Moments(after_points)};
+  return {Moments(before_points), Moments(after_points), first_after};
+}
+
+Moments accepted_from(const State& state, std::int64_t serial) {
+  std::vector<Point> points;
+  for (const RecentPair& recent : state.recent)
+    if (recent.serial >= serial && recent.outcome == PairOutcome::accepted)
+      points.push_back({recent.pair.x, recent.pair.y});
+  return Moments(points);
 }
 
 // The newest pair before `at`, as far as pairs are kept.
@@ -53,13 +65,12 @@ std::optional<Split> split_now(const State& state) {
 
 std::optional<PairSplit> pair_split(const State& state) {
   if (state.alarm.open() == Severity::critical) {
-    const Split& split = state.alarm.split();
     const RememberedStart& start = *state.restarted;
     return PairSplit{start.since,
-                     split.started_at,
-                     split.started_between,
+                     start.started_at,
+                     start.started_between,
                      start.before,
-                     sides_of(state, 0, state.chart.pairs()).after,
+                     accepted_from(state, start.first_after),
                      state.deltas()[0]};
   }
   const auto split = split_now(state);
@@ -111,8 +122,10 @@ std::optional<PairMark> last_agreement_before(const State& state, Instant at) {
 
 RememberedStart remember_start(const State& state) {
   const Split& split = state.alarm.split();
-  return {sides_of(state, split.before, split.after).before, state.stretch_from.value_or(Instant::min()),
-          last_agreement_before(state, split.started_between.first)};
+  const Sides sides = sides_of(state, split.before, split.after);
+  return {split.started_at,  split.started_between,
+          sides.before,      state.stretch_from.value_or(Instant::min()),
+          sides.first_after, last_agreement_before(state, split.started_between.first)};
 }
 
 bool Comparison::changed() const {

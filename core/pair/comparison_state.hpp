@@ -48,10 +48,14 @@ struct OlderPair {
   Instant at{};
 };
 
-/// What a critical signal leaves of the stretch that ends at the estimated start.
+/// What a critical signal leaves of the stretch that ends at the estimated start. Further critical signals,
+/// until agreement is shown again, leave it as it is: the change in question is all that came since.
 struct RememberedStart {
+  Instant started_at{};
+  Period started_between{};
   Moments before;                          ///< of the newest pairs before it
-  Instant since;                           ///< start of that stretch
+  Instant since{};                         ///< start of that stretch
+  std::int64_t first_after = 0;            ///< number of the first pair after it
   std::optional<PairMark> last_agreement;  ///< before the earliest likely start
 };
 
@@ -76,7 +80,7 @@ struct Comparison::State {
   std::deque<BiasPoint> bias_history;
   AgreementRecord agreement;
   std::optional<Instant> first_pair_at;
-  std::optional<RememberedStart> restarted;  ///< at the last critical signal
+  std::optional<RememberedStart> restarted;  ///< at the first critical signal of those open
   std::int64_t pairs_total = 0;
   std::optional<Instant> last_at, stretch_from, last_agreement;
   std::optional<Finding> lost, drifting;  ///< the conditions that hold, as last found
