@@ -11,7 +11,7 @@ struct Story {
   double x = 0, y = 0;      ///< shift of line1 and of line2 per shift of eight hours since `from`
   double samples = 0;       ///< of the pairs alone
   bool drift = false;       ///< the shifts grow with time instead of being there at once
-  bool checks_on_x = true;  ///< check standards are run on line1 after the start
+  bool checks_on_y = true;  ///< check standards are run on line2 after the start
   int from = 45, shifts = 75;
 };
 
@@ -26,7 +26,7 @@ std::vector<Event> told(const Story& story, unsigned seed) {
     const double shift[2] = {grown * story.x, grown * story.y};
     for (std::uint32_t a = 0; a < 2; ++a)
       for (std::uint32_t s = 0; s < 2; ++s)
-        if (a == 1 || i < story.from || story.checks_on_x)
+        if (a == 0 || i < story.from || story.checks_on_y)
           events.emplace_back(CheckReading{
               hour(8.0 * i + 0.1 * a), {a}, {s}, {0}, 0, (s == 0 ? 13.4 : 10.6) + shift[a] + error(random)});
     for (int p = 0; p < 4; ++p) {
@@ -80,22 +80,26 @@ TEST_CASE("a step of line2, of line1, of both against each other, of the samples
 }
 
 TEST_CASE("line2 drifts upward: it is line2 that moved") {
+  int named = 0;
   for (unsigned seed = 1; seed <= 10; ++seed) {
     CAPTURE(seed);
     const DiagnosisView found = diagnosis_of({.y = 0.6, .drift = true}, seed);
-    CHECK(found.moved == Moved::y);
-    CHECK(*found.shift_pairs > 0);
+    CHECK(found.probabilities[1] > 0.8);
+    CHECK((found.moved == Moved::y || found.moved == Moved::undecided));
+    CHECK(*found.shift_pairs > 0.2);
+    named += found.moved == Moved::y ? 1 : 0;
   }
+  CHECK(named >= 7);
 }
 
-TEST_CASE("without check readings on line1 it stays undecided and says what will decide it") {
-  const DiagnosisView found = diagnosis_of({.y = 0.4, .checks_on_x = false});
+TEST_CASE("without check readings on line2 it stays undecided and says what will decide it") {
+  const DiagnosisView found = diagnosis_of({.y = 0.4, .checks_on_y = false});
   CHECK(found.moved == Moved::undecided);
   CHECK(found.probability < 0.9);
-  CHECK_FALSE(found.shift_x);
-  CHECK(found.x_readings_after == 0);
+  CHECK_FALSE(found.shift_y);
+  CHECK(found.y_readings_after == 0);
   CHECK(found.evidence.find("more check reading") != std::string::npos);
-  CHECK(found.evidence.find("on line1 would decide it") != std::string::npos);
+  CHECK(found.evidence.find("on line2 would decide it") != std::string::npos);
 }
 
 TEST_CASE("the diagnosis follows the check readings: they alone decide after the pairs have stopped") {
