@@ -9,6 +9,7 @@
 #include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
 #include "core/chart/run_length.hpp"
+#include "core/pair/drift_alarm.hpp"
 
 namespace agreed {
 namespace {
@@ -120,13 +121,26 @@ std::string error_ratio_text(const ErrorRatioSettings& ratio) {
     case ErrorSource::check_standards:
       return "from the check standards";
     case ErrorSource::replicates:
-      return "from replicates";
+      return "from the replicates of the split samples";
     case ErrorSource::given_sds:
       return "sd_x " + shown(ratio.sd_x) + ", sd_y " + shown(ratio.sd_y);
     case ErrorSource::given_lambda:
       return "lambda = var(x error)/var(y error) = " + shown(ratio.lambda) + ", to a factor of 2";
   }
   return "";
+}
+
+std::string fit_text(const ComparisonSettings& comparison) {
+  const std::string fit = comparison.fit == FitMethod::deming ? "deming" : "weighted_deming";
+  switch (comparison.error_growth) {
+    case ErrorGrowth::constant:
+      return fit + ", errors constant";
+    case ErrorGrowth::proportional:
+      return fit + ", errors proportional to the level";
+    case ErrorGrowth::mixed:
+      return fit + ", errors with a constant and a proportional part";
+  }
+  return fit;
 }
 
 std::string comparison_text(const Settings& settings, const ComparisonSettings& comparison) {
@@ -137,15 +151,20 @@ std::string comparison_text(const Settings& settings, const ComparisonSettings& 
                               ", y = " + settings.of(comparison.y).id);
   text += line("  window", std::to_string(comparison.window_pairs) + " pairs, " + age);
   text += line("  error_ratio", error_ratio_text(comparison.error_ratio));
+  text += line("  fit", fit_text(comparison));
   text += line("  verdict", "from " + std::to_string(comparison.least_pairs) + " pairs, moves after " +
                                 std::to_string(comparison.confirm) + " in a row");
   text += line("  confidence",
                shown(comparison.confidence) + ", of alerts " + shown(comparison.alert_confidence));
   text += line("  every", cadence(comparison.every, comparison.overdue));
   text += line("  pair_within", shown(comparison.pair_within));
-  text += line("  pair chart, warning", run_length(comparison.warning_run_length, "pairs", Score::pairs));
   text +=
-      line("  pair chart, critical", run_length(10 * comparison.warning_run_length, "pairs", Score::pairs));
+      line("  pair chart, warning", run_length(comparison.warning_run_length, "pairs", score_of(comparison)));
+  text += line("  pair chart, critical",
+               run_length(10 * comparison.warning_run_length, "pairs", score_of(comparison)));
+  if (comparison.relation)
+    text += line("  relation", "y = " + shown(comparison.relation->intercept) + " + " +
+                                   shown(comparison.relation->slope) + " x, established");
   text += line("  outliers", std::string(comparison.set_outliers_aside ? "set_aside" : "keep") +
                                  ", a false one every " + rounded(comparison.outlier_run_length) + " pairs");
   text +=

@@ -20,6 +20,17 @@ std::vector<BudgetEntry> entries_of(const std::vector<Item>& items,
   return entries;
 }
 
+std::vector<BudgetEntry> comparison_entries(const Draft& draft) {
+  auto entries = entries_of(draft.settings.comparisons, draft.comparison_run_lengths);
+  for (std::size_t i = 0; i < entries.size(); ++i) {
+    const ComparisonSettings& comparison = draft.settings.comparisons[i];
+    entries[i].tests_outliers = comparison.set_outliers_aside;
+    // A bare lambda says nothing of the size of the errors, so scatter cannot be held against it.
+    entries[i].tests_scatter = comparison.error_ratio.source != ErrorSource::given_lambda;
+  }
+  return entries;
+}
+
 void put_into(Settings& settings, const BudgetShares& shares) {
   settings.alarm_budget = shares.budget;
   for (std::size_t i = 0; i < settings.charts.size(); ++i) {
@@ -98,9 +109,8 @@ void check_scatter(const Section& comparison, const ComparisonSettings& settings
 
 void spend_alarm_budget(const Section& top, bool judge, Draft& draft) {
   const double allowed = top.number("false_alerts_per_year").value_or(AlarmBudget{}.allowed_per_year);
-  const BudgetShares shares =
-      share_alarm_budget(allowed, entries_of(draft.settings.charts, draft.chart_run_lengths),
-                         entries_of(draft.settings.comparisons, draft.comparison_run_lengths));
+  const BudgetShares shares = share_alarm_budget(
+      allowed, entries_of(draft.settings.charts, draft.chart_run_lengths), comparison_entries(draft));
   put_into(draft.settings, shares);
   if (shares.overspent) {
     top.error("false_alerts_per_year",

@@ -1,4 +1,5 @@
 #include <algorithm>
+#include <string_view>
 
 #include "config/parts.hpp"
 #include "config/value_text.hpp"
@@ -11,7 +12,10 @@ constexpr Duration kEveryIfNotGiven = std::chrono::hours(2);  // for the alarm b
 ErrorRatioSettings error_ratio_of(const Section& comparison) {
   ErrorRatioSettings ratio;
   const Section section = comparison.section("error_ratio");
-  if (!section.exists()) return ratio;
+  if (!section.exists()) {
+    if (comparison.text("error_ratio") == "from_replicates") ratio.source = ErrorSource::replicates;
+    return ratio;
+  }
   const bool x = section.given("sd_x"), y = section.given("sd_y"), lambda = section.given("lambda");
   if (lambda ? x || y : !(x && y))
     section.error_here("found " +
@@ -22,6 +26,48 @@ ErrorRatioSettings error_ratio_of(const Section& comparison) {
   ratio.sd_y = section.number("sd_y").value_or(0);
   ratio.lambda = section.number("lambda").value_or(0);
   return ratio;
+}
+
+std::optional<EstablishedLine> relation_of(const Section& comparison) {
+  if (comparison.text("relation") == "identity") return EstablishedLine{};
+  const Section section = comparison.section("relation");
+  if (!section.exists()) return std::nullopt;
+  if (!(section.given("intercept") && section.given("slope")))
+    section.error_here("found no whole line, expected both intercept and slope, or the word identity");
+  return EstablishedLine{section.number("intercept").value_or(0), section.number("slope").value_or(1)};
+}
+
+ErrorGrowth growth_of(std::string_view word) {
+  if (word == "proportional") return ErrorGrowth::proportional;
+  return word == "mixed" ? ErrorGrowth::mixed : ErrorGrowth::constant;
+}
+
+void read_fit(const Section& comparison, ComparisonSettings& settings) {
+  settings.error_growth = growth_of(comparison.text("error_model").value_or(""));
+  if (comparison.text("fit") != "weighted_deming") return;
+  settings.fit = FitMethod::weighted_deming;
+  if (!comparison.given("error_model")) settings.error_growth = ErrorGrowth::proportional;
+}
+
+void check_fit(const Section& comparison, const ComparisonSettings& settings) {
+  const ErrorGrowth growth = settings.error_growth;
+  const ErrorSource source = settings.error_ratio.source;
+  if (settings.fit == FitMethod::weighted_deming && growth != ErrorGrowth::proportional)
+    comparison.error("error_model",
+                     "found " + shown(comparison.text("error_model").value_or("")) +
+                         " beside fit: weighted_deming, expected proportional, which that fit takes for "
+                         "granted; or fit: deming");
+  if (growth == ErrorGrowth::constant) return;
+  const std::string key = comparison.given("error_model") ? "error_model" : "fit";
+  if (source == ErrorSource::given_sds)
+    comparison.error(key,
+                     "found standard deviations beside errors that grow with the level, expected "
+                     "error_ratio: {lambda: ...}, from_check_standards or from_replicates: a standard "
+                     "deviation holds at one level only");
+  else if (growth == ErrorGrowth::mixed && source != ErrorSource::check_standards)
+    comparison.error(key,
+                     "found mixed, expected error_ratio: from_check_standards beside it: only check "
+                     "standards at two levels tell both parts");
 }
 
 void read_window(const Section& comparison, ComparisonSettings& settings) {
@@ -41,6 +87,7 @@ void read_rules(const Section& comparison, ComparisonSettings& settings) {
   settings.set_outliers_aside = comparison.text("outliers") != "keep";
   settings.split_memory = comparison.whole_number("split_memory").value_or(settings.split_memory);
   settings.prove_within = comparison.duration("prove_within");
+  settings.relation = relation_of(comparison);
 }
 
 /// The key among two that was written, so that the message stands where it can be mended.
@@ -74,10 +121,16 @@ void warn_of_gaps(const Section& comparison, const ComparisonSettings& settings,
                            "stay gathering");
   if (settings.error_ratio.source != ErrorSource::check_standards) return;
   for (const AnalyzerIndex side : {settings.x, settings.y}) {
-    const bool watched = std::any_of(all.charts.begin(), all.charts.end(), [&](const ChartSettings& chart) {
-      return chart.analyzer == side && chart.measurand == settings.measurand;
-    });
-    if (watched) continue;
+    const auto watching =
+        std::count_if(all.charts.begin(), all.charts.end(), [&](const ChartSettings& chart) {
+          return chart.analyzer == side && chart.measurand == settings.measurand;
+        });
+    if (watching == 1 && settings.error_growth == ErrorGrowth::mixed)
+      comparison.warning("error_model", "only one check standard gives " + measurand.id + " on " +
+                                            all.of(side).id +
+                                            ", so a mixed error model stays unknown and no line is fitted; "
+                                            "expected two at different levels, or proportional");
+    if (watching > 0) continue;
     comparison.warning("error_ratio",
                        "no check standard gives " + measurand.id + " on " + all.of(side).id +
                            ", so the error ratio stays unknown and no line is fitted; expected one, "
@@ -95,6 +148,8 @@ void add_comparison(const Section& section, Draft& draft) {
   if (x && y && *x == *y) section.error("y", "found the analyzer of x again, expected another one");
   read_window(section, settings);
   settings.error_ratio = error_ratio_of(section);
+  read_fit(section, settings);
+  check_fit(section, settings);
   read_rules(section, settings);
   check_rules(section, settings);
   if (measurand && x && y) {

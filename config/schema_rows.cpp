@@ -189,8 +189,7 @@ Rows comparison_rows() {
           .within(kHour, 3'660 * kDay),
       row("comparisons.*.error_ratio", T::word_or_section, "from_check_standards",
           "var(x error) / var(y error), whence")
-          .one_of("from_check_standards|from_replicates")
-          .coming(Later::refused, "from_replicates"),
+          .one_of("from_check_standards|from_replicates"),
       row("comparisons.*.error_ratio.sd_x", T::number, "", "repeatability of x, from an earlier study")
           .above(0, kAny),
       row("comparisons.*.error_ratio.sd_y", T::number, "", "repeatability of y").above(0, kAny),
@@ -198,14 +197,11 @@ Rows comparison_rows() {
           "the ratio itself; taken as known to a factor of 2")
           .within(1e-6, 1e6),
       row("comparisons.*.error_model", T::word, "constant", "how the error goes with the level")
-          .one_of("constant|proportional|mixed")
-          .coming(Later::refused, "proportional|mixed"),
-      row("comparisons.*.fit", T::word, "deming", "the line's fit")
-          .one_of("deming|weighted_deming")
-          .coming(Later::refused, "weighted_deming"),
-      row("comparisons.*.relation", T::word_or_section, "", "an established line instead of the fitted one")
-          .one_of("identity")
-          .coming(Later::refused),
+          .one_of("constant|proportional|mixed"),
+      row("comparisons.*.fit", T::word, "deming", "the line's fit").one_of("deming|weighted_deming"),
+      row("comparisons.*.relation", T::word_or_section, "",
+          "the line that is to hold; the pair chart asks against it, else against the pairs' own")
+          .one_of("identity"),
       row("comparisons.*.relation.intercept", T::number, "", "its intercept"),
       row("comparisons.*.relation.slope", T::number, "", "its slope").above(0, kAny),
       row("comparisons.*.confidence", T::number, "0.95", "of the intervals shown").within(0.5, 0.9999),

@@ -73,12 +73,19 @@ std::string look_back_words(const ComparisonAlert& pair) {
          (samples.empty() ? "" : ", samples " + list_words(samples)) + ".";
 }
 
+/// How the line was fitted, when not by plain Deming regression.
+std::string fit_words(const ComparisonAlert& pair) {
+  const std::string fit = text_in(pair.alert.details, "fit").value_or("");
+  if (fit == "weighted_deming") return " (weighted Deming)";
+  return fit == "york" ? " (each pair weighted by its errors)" : "";
+}
+
 std::string line_words(const ComparisonAlert& pair) {
   const auto slope = pair.number("slope"), intercept = pair.number("intercept"), pairs = pair.number("pairs");
   std::string text;
   if (slope && intercept)
-    text = " The fitted line is " + pair.y + " = " + pair.numbers.mean(*intercept) + " + " +
-           fixed(*slope, 4) + " x " + pair.x;
+    text = " The fitted line" + fit_words(pair) + " is " + pair.y + " = " + pair.numbers.mean(*intercept) +
+           " + " + fixed(*slope, 4) + " x " + pair.x;
   if (pairs) text += (text.empty() ? " It rests on " : ", from ") + counted(*pairs, "pair", "pairs");
   return text.empty() ? text : text + ".";
 }
@@ -127,15 +134,25 @@ AlertWords lost_words(const ComparisonAlert& pair) {
   return words;
 }
 
+/// What the pair chart says: of the pairs' own line, or of an established one.
+std::string changed_words(const ComparisonAlert& pair) {
+  const auto pairs = pair.number("pairs"), intercept = pair.number("relation_intercept");
+  const auto slope = pair.number("relation_slope"), after = pair.number("pairs_after");
+  if (intercept && slope)
+    return ": the " + (after ? "newest " + counted(*after, "pair", "pairs") : std::string("newest pairs")) +
+           " do not lie on the established line " + pair.y + " = " + pair.numbers.mean(*intercept) + " + " +
+           fixed(*slope, 4) + " x " + pair.x;
+  return ": two lines, one before and one after some moment, describe the " +
+         (pairs ? counted(*pairs, "pair", "pairs") : std::string("pairs")) + " better than one";
+}
+
 AlertWords drifting_words(const ComparisonAlert& pair) {
-  const auto shift = pair.number("shift"), pairs = pair.number("pairs"), allowable = pair.number("allowable");
+  const auto shift = pair.number("shift"), allowable = pair.number("allowable");
   const bool critical = pair.alert.severity == Severity::critical;
   AlertWords words;
   words.title = "The relation between " + pair.both() + " for " + pair.measurand + " has " +
                 (critical ? "clearly " : "") + "changed";
-  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand +
-                ": two lines, one before and one after some moment, describe the " +
-                (pairs ? counted(*pairs, "pair", "pairs") : std::string("pairs")) + " better than one" +
+  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand + changed_words(pair) +
                 score_words(pair.alert.details) + ".";
   if (shift)
     words.found += " Since then " + pair.y + " reads " + pair.numbers.mean(std::abs(*shift)) + " " +
@@ -165,9 +182,16 @@ std::string rarity_words(double p) {
   return "about one pair in " + fixed(std::max(1 / p, 1.0), 0);
 }
 
+/// How often chance alone makes a window scatter so much.
+std::string windows_words(double p) {
+  constexpr double rarest = 1e6;
+  if (p * rarest < 1) return "less than one window in a million";
+  return "about one window in " + fixed(std::max(1 / p, 1.0), 0);
+}
+
 AlertWords outlier_words(const ComparisonAlert& pair) {
   const std::string sample = text_in(pair.alert.details, "sample").value_or("");
-  const auto x = pair.number("x"), y = pair.number("y"), p = pair.number("p");
+  const auto x = pair.number("x_value"), y = pair.number("y_value"), p = pair.number("p");
   const auto residual = pair.number("residual"), count = pair.number("count");
   const bool several = count.value_or(1) > 1;
   const std::string sentence_start = sample.empty() ? "A split sample" : "Split sample " + sample;
@@ -197,35 +221,94 @@ AlertWords outlier_words(const ComparisonAlert& pair) {
   return words;
 }
 
+/// "more pairs" and what else would decide it, at the level that it hangs on.
+std::string proof_words(const ComparisonAlert& pair) {
+  const auto level = pair.number("level"), bias = pair.number("bias"), allowable = pair.number("allowable");
+  const auto more = pair.number("pairs_needed"), pairs = pair.number("pairs"),
+             sd = pair.number("residual_sd");
+  const auto sd_needed = pair.number("sd_needed"), room = pair.number("window_pairs");
+  const std::string reason = text_in(pair.alert.details, "reason").value_or("");
+  std::string text;
+  if (level && bias && allowable)
+    text += " It hangs on " + pair.numbers.result(*level) + ", where " + pair.y + " reads " +
+            pair.numbers.mean(std::abs(*bias)) + " " + direction(*bias) + " than " + pair.x + " and " +
+            pair.numbers.mean(*allowable) + " is allowable.";
+  if (reason == "bias_as_large_as_allowable")
+    return text + " The bias is about as large as what is allowable, so more pairs will not decide it.";
+  if (reason == "not_covered")
+    return text +
+           " No sample reaches that level: no number of pairs at other levels decides it, samples near it "
+           "do.";
+  if (!more) return text;
+  if (*more < 1) return text + " The pairs that are there are enough to decide it any time.";
+  const bool disagreement = text_in(pair.alert.details, "aim") == "disagreement_shown";
+  text += " If the bias stays so, about " + counted(*more, "more pair", "more pairs") + " would show " +
+          (disagreement ? "that the analyzers disagree" : "that they agree") + " (chance 80 %)";
+  if (pairs && room && *pairs + *more > *room)
+    text += "; the window holds only " + counted(*room, "pair", "pairs") + ", so it would have to be larger";
+  text += ".";
+  if (sd && sd_needed && *sd_needed < *sd)
+    text += " With the pairs of now it takes a scatter about the line of " + pair.numbers.mean(*sd_needed) +
+            " instead of " + pair.numbers.mean(*sd) + ", as from means of " +
+            counted(std::ceil(std::pow(*sd / *sd_needed, 2)), "replicate", "replicates") +
+            " on both analyzers.";
+  return text;
+}
+
 AlertWords unproven_words(const ComparisonAlert& pair) {
-  const auto more = pair.number("pairs_needed");
+  const std::string since = text_in(pair.alert.details, "inconclusive_since").value_or("");
+  const auto at = parse_rfc3339(since);
+  const auto pairs = pair.number("pairs");
+  const std::string reason = text_in(pair.alert.details, "reason").value_or("");
   AlertWords words;
   words.title = "Agreement of " + pair.both() + " for " + pair.measurand + " is still unproven";
-  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand +
-                ": the pairs show neither agreement nor disagreement." + line_words(pair);
-  if (more) words.found += " About " + counted(*more, "more pair", "more pairs") + " would decide it.";
-  words.since = since_words(pair.alert);
-  words.steps = {"Run more split samples, at the decision levels above all, or each of them in replicate."};
+  words.found = "Analyzers " + pair.both_in_full() + ", " + pair.measurand + ": the " +
+                (pairs ? counted(*pairs, "pair", "pairs") + " of the window" : std::string("pairs")) +
+                " show neither agreement nor disagreement." + proof_words(pair);
+  if (at) words.since = "inconclusive since " + time_words(at->at) + ".";
+  words.doubt = pair.measurand + " results of both analyzers used as one: nothing shows that they may be.";
+  if (reason == "bias_as_large_as_allowable")
+    words.steps = {"Look for what makes " + pair.y + " read differently from " + pair.x +
+                       " and remove it, or ask whether the allowable difference is what the use needs.",
+                   "Record what was done as an intervention, so that the pairs begin anew."};
+  else
+    words.steps = {"Run more split samples, at the decision levels above all, or each of them in replicate."};
   return words;
 }
 
 AlertWords scattered_words(const ComparisonAlert& pair) {
   const auto observed = pair.number("observed_sd"), expected = pair.number("expected_sd");
+  const auto ratio = pair.number("sd_ratio"), p = pair.number("p"), pairs = pair.number("pairs");
   AlertWords words;
   words.title = "Split samples of " + pair.both() + " scatter more for " + pair.measurand +
                 " than the analyzers' repeatability explains";
   words.found =
-      "Analyzers " + pair.both_in_full() + ", " + pair.measurand + ": the pairs scatter about the line";
+      "Analyzers " + pair.both_in_full() + ", " + pair.measurand + ": the " +
+      (pairs ? counted(*pairs, "pair", "pairs") + " of the window scatter" : std::string("pairs scatter")) +
+      " about the line";
   if (observed && expected)
     words.found += " with a standard deviation of " + pair.numbers.mean(*observed) +
                    "; repeatability explains " + pair.numbers.mean(*expected);
   else
     words.found += " more than both analyzers' repeatability explains";
+  if (ratio) words.found += ", so it is " + fixed(*ratio, 2) + " times as large";
   words.found += ".";
+  if (p) words.found += " As much by chance: " + windows_words(*p) + ".";
+  words.found +=
+      " The samples differ between the analyzers by more than repeatability: what holds for the mean need "
+      "not "
+      "hold for a single sample.";
   words.since = since_words(pair.alert);
-  words.cause = "samples that differ between the analyzers (splitting, matrix, ageing between the two runs).";
-  words.steps = {"Look at how samples are split and how long lies between the two measurements.",
-                 "Compare the pairs of one product or one campaign at a time."};
+  words.cause =
+      "samples that differ between the analyzers (splitting, matrix, ageing between the two runs), or a "
+      "repeatability from check standards that is too small for real samples.";
+  words.doubt = "the agreement of single samples of " + pair.measurand +
+                "; the intervals shown rest on the scatter "
+                "that was seen and stay valid.";
+  words.steps = {
+      "Look at how samples are split and how long lies between the two measurements.",
+      "Compare the pairs of one product or one campaign at a time.",
+      "Measure a few samples in replicate on both analyzers: if replicates agree, the samples differ."};
   return words;
 }
 

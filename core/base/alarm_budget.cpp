@@ -75,8 +75,10 @@ void add_expectations(BudgetShares& shares, const std::vector<BudgetEntry>& char
   }
   for (std::size_t i = 0; i < comparisons.size(); ++i) {
     expect(shares.budget, AlertKind::agreement_drifting, comparisons[i], shares.comparisons[i].warning);
-    expect(shares.budget, AlertKind::pair_outlier, comparisons[i], shares.comparisons[i].outlier);
-    expect(shares.budget, AlertKind::sample_scatter, comparisons[i], shares.comparisons[i].scatter);
+    if (comparisons[i].tests_outliers)
+      expect(shares.budget, AlertKind::pair_outlier, comparisons[i], shares.comparisons[i].outlier);
+    if (comparisons[i].tests_scatter)
+      expect(shares.budget, AlertKind::sample_scatter, comparisons[i], shares.comparisons[i].scatter);
   }
 }
 

@@ -14,6 +14,9 @@ namespace agreed {
 struct BudgetEntry {
   Duration every{};                  ///< mean time between its readings (pairs), > 0
   std::optional<double> run_length;  ///< its own `in_control_run_length`, > 0, instead of a share
+  /// Of a comparison: whether these tests are made at all. One that is not made keeps its part of the share
+  /// and adds nothing to what is expected.
+  bool tests_outliers = true, tests_scatter = true;
 };
 
 /// Readings between false signals of each score of a chart.

@@ -64,14 +64,31 @@ struct RunRules {
       near_centre = 0, away_from_centre = 0;
 };
 
+/// How the spread of the replicates of one run is measured on a classical chart.
+enum class RunSpread { standard_deviation, range };
+
 struct ClassicalSettings {
-  std::optional<double> center, sigma;  ///< from an earlier study
+  std::optional<double> center, sigma;             ///< from an earlier study; sigma of one reading
+  std::optional<double> sigma_degrees_of_freedom;  ///< behind a given sigma; none: taken as exact
+  RunSpread run_spread = RunSpread::standard_deviation;
   std::optional<double> ewma_weight, ewma_width;
   std::optional<double> cusum_allowance, cusum_limit;
   RunRules run_rules;
 };
 
 enum class ChartMethod { change_point, classical };
+
+/// Mean readings between false signals of a classical chart, as what was chosen for it makes it.
+struct ExpectedRunLength {
+  double readings = 0;          ///< the honest figure: with limits from the baseline, or the study, there is
+  double standard_error = 0;    ///< of that figure, from its simulation; 0: worked out exactly
+  double known_parameters = 0;  ///< if centre and sigma were known exactly
+  double known_standard_error = 0;
+  // Of the parts alone, with known parameters; 0: not chosen, or only simulated together with the others.
+  double limits = 0, limits_and_moving_range = 0, limits_and_run_rules = 0, ewma = 0, cusum = 0;
+
+  bool operator==(const ExpectedRunLength&) const = default;
+};
 
 /// One chart: one check standard's one measurand on one analyzer.
 struct ChartSettings {
@@ -89,6 +106,7 @@ struct ChartSettings {
   bool overdue = false;   ///< `every` was given, so a missing reading may be called overdue
   std::vector<Lot> lots;  ///< by `from`, at least one
   ClassicalSettings classical;
+  ExpectedRunLength expected;  ///< of a classical chart
 };
 
 enum class ErrorSource { check_standards, given_sds, given_lambda, replicates };
@@ -99,7 +117,17 @@ struct ErrorRatioSettings {
   double lambda = 0;          ///< given_lambda
 };
 
+/// A relation that was established before and is to hold: y = intercept + slope * x.
+struct EstablishedLine {
+  double intercept = 0, slope = 1;
+  bool operator==(const EstablishedLine&) const = default;
+};
+
 enum class FitMethod { deming, weighted_deming };
+
+/// How the error of a single result goes with the level: sd constant, proportional to the level, or
+/// sqrt(a^2 + b^2 level^2).
+enum class ErrorGrowth { constant, proportional, mixed };
 
 struct ComparisonSettings {
   std::string id;
@@ -109,6 +137,7 @@ struct ComparisonSettings {
   int window_pairs = 200;              ///< 3..1000
   std::optional<Duration> window_age;  ///< counted back from the newest pair
   ErrorRatioSettings error_ratio;
+  ErrorGrowth error_growth = ErrorGrowth::constant;
   FitMethod fit = FitMethod::deming;
   double confidence = 0.95;
   int confirm = 3;
@@ -123,6 +152,8 @@ struct ComparisonSettings {
   double outlier_run_length = 0;  ///< pairs between false outliers
   double scatter_run_length = 0;  ///< pairs between false `sample_scatter`
   std::optional<Duration> prove_within;
+  std::optional<EstablishedLine>
+      relation;  ///< what the pair chart holds the pairs against; none: their own line
 };
 
 /// How the yearly allowance of false alerts is spent.

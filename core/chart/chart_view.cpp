@@ -39,6 +39,34 @@ const char* to_string(ChartSignal signal) {
       return "shift_down";
     case ChartSignal::scatter_up:
       return "scatter_up";
+    case ChartSignal::above_limit:
+      return "above_limit";
+    case ChartSignal::below_limit:
+      return "below_limit";
+    case ChartSignal::moving_range_above_limit:
+      return "moving_range_above_limit";
+    case ChartSignal::range_above_limit:
+      return "range_above_limit";
+    case ChartSignal::standard_deviation_above_limit:
+      return "standard_deviation_above_limit";
+    case ChartSignal::ewma:
+      return "ewma";
+    case ChartSignal::cusum:
+      return "cusum";
+    case ChartSignal::same_side:
+      return "same_side";
+    case ChartSignal::trend:
+      return "trend";
+    case ChartSignal::two_of_three_beyond:
+      return "two_of_three_beyond";
+    case ChartSignal::four_of_five_beyond:
+      return "four_of_five_beyond";
+    case ChartSignal::alternating:
+      return "alternating";
+    case ChartSignal::near_centre:
+      return "near_centre";
+    case ChartSignal::away_from_centre:
+      return "away_from_centre";
   }
   return "";
 }

@@ -12,7 +12,29 @@
 namespace agreed {
 
 enum class ChartState { learning, stable, unstable };
-enum class ChartSignal : std::uint8_t { single_high, single_low, shift_up, shift_down, scatter_up };
+enum class ChartSignal : std::uint8_t {
+  // of change-point charts
+  single_high,
+  single_low,
+  shift_up,
+  shift_down,
+  scatter_up,
+  // of classical charts
+  above_limit,
+  below_limit,
+  moving_range_above_limit,
+  range_above_limit,               ///< of the replicates of one run
+  standard_deviation_above_limit,  ///< likewise
+  ewma,
+  cusum,
+  same_side,
+  trend,
+  two_of_three_beyond,
+  four_of_five_beyond,
+  alternating,
+  near_centre,
+  away_from_centre,
+};
 [[nodiscard]] const char* to_string(ChartState state);
 [[nodiscard]] const char* to_string(ChartSignal signal);
 

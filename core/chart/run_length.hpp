@@ -4,7 +4,7 @@
 
 namespace agreed {
 
-enum class Score { level, precision, pairs };
+enum class Score { level, precision, pairs, pairs_established_line };
 
 struct ChangeLimit {
   double h = 0;               ///< limit of the score, in normal standard deviations

@@ -47,7 +47,7 @@ Monitor::Monitor(std::shared_ptr<const Settings> settings) : settings_(std::move
     ComparisonStream stream{
         Comparison(*settings_, {i}), SampleMemory(comparison.pair_within), {}, {}, {}, {}, false};
     if (comparison.error_ratio.source != ErrorSource::check_standards)
-      stream.given = given_ratio(comparison.error_ratio);
+      stream.given = given_ratio(comparison.error_ratio, comparison.error_growth);
     for (std::uint32_t c = 0; c < charts_.size(); ++c) {
       const ChartSettings& chart = settings_->charts[c];
       if (chart.measurand != comparison.measurand) continue;
@@ -274,8 +274,8 @@ void Monitor::fold(const DuePair& due, MonitorOutcome& outcome) {
   outcome.comparisons_changed.insert(due.comparison);
 }
 
-std::optional<ErrorVariance> Monitor::variance_at(std::span<const ChartIndex> charts, Instant at,
-                                                  const Traces* traces) const {
+std::optional<std::vector<Repeatability>> Monitor::standards_at(std::span<const ChartIndex> charts,
+                                                                Instant at, const Traces* traces) const {
   std::vector<Repeatability> standards;
   for (const ChartIndex index : charts) {
     if (traces && (*traces)[index.value]) {
@@ -289,23 +289,18 @@ std::optional<ErrorVariance> Monitor::variance_at(std::span<const ChartIndex> ch
     if (!found) return std::nullopt;
     standards.push_back(*found);
   }
-  return pooled(standards);
+  return standards;
 }
 
 std::optional<ErrorRatio> Monitor::ratio_at(const ComparisonStream& stream, ComparisonIndex index, Instant at,
                                             const Traces* traces) const {
   if (stream.given) return stream.given;
-  const auto x = variance_at(stream.x_charts, at, traces), y = variance_at(stream.y_charts, at, traces);
+  const auto x = standards_at(stream.x_charts, at, traces), y = standards_at(stream.y_charts, at, traces);
   if (!x || !y) return std::nullopt;
   const ComparisonSettings& settings = settings_->of(index);
-  for (const auto& [variance, analyzer] : {std::pair(*x, settings.x), std::pair(*y, settings.y)}) {
-    if (variance.degrees_of_freedom > 0 && variance.variance > 0) continue;
-    ErrorRatio unknown;
-    unknown.reason = "too few check readings of " + settings_->of(settings.measurand).id + " on " +
-                     settings_->of(analyzer).id + " to know its repeatability";
-    return unknown;
-  }
-  return ratio_of(*x, *y);
+  const std::string& measurand = settings_->of(settings.measurand).id;
+  const std::string &on_x = settings_->of(settings.x).id, &on_y = settings_->of(settings.y).id;
+  return ratio_from_standards(*x, *y, settings.error_growth, measurand, on_x, on_y);
 }
 
 bool Monitor::concerns(const Intervention& intervention, const ComparisonSettings& comparison) const {

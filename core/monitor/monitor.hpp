@@ -135,8 +135,9 @@ class Monitor {
                                            History& history) const;
   [[nodiscard]] std::optional<ErrorRatio> ratio_at(const ComparisonStream& stream, ComparisonIndex index,
                                                    Instant at, const Traces* traces) const;
-  [[nodiscard]] std::optional<ErrorVariance> variance_at(std::span<const ChartIndex> charts, Instant at,
-                                                         const Traces* traces) const;
+  [[nodiscard]] std::optional<std::vector<Repeatability>> standards_at(std::span<const ChartIndex> charts,
+                                                                       Instant at,
+                                                                       const Traces* traces) const;
   [[nodiscard]] CheckShift shift_of(std::span<const ChartIndex> charts, const Moment& moment,
                                     double resolution) const;
   [[nodiscard]] bool concerns(const Intervention& intervention, const ComparisonSettings& comparison) const;

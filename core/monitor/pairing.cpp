@@ -11,6 +11,7 @@ struct Half {
   Instant first{};
   double mean = 0;
   int replicates = 0;
+  double squares = 0;  ///< of the replicates about their mean
 };
 
 std::vector<Half> halves_of(const std::vector<SideRow>& rows, Duration within) {
@@ -18,19 +19,22 @@ std::vector<Half> halves_of(const std::vector<SideRow>& rows, Duration within) {
   double sum = 0;
   for (const SideRow& row : rows) {
     if (halves.empty() || row.at - halves.back().first > within) {
-      halves.push_back({row.at, row.value, 1});
+      halves.push_back({row.at, row.value, 1, 0});
       sum = row.value;
       continue;
     }
     Half& half = halves.back();
+    const double before = row.value - half.mean;
     sum += row.value;
     half.mean = sum / ++half.replicates;
+    half.squares += before * (row.value - half.mean);
   }
   return halves;
 }
 
 Pair pair_of(const std::string& sample, const Half& x, const Half& y) {
-  return {sample, std::max(x.first, y.first), x.mean, y.mean, x.replicates, y.replicates};
+  return {sample,   std::max(x.first, y.first), x.mean, y.mean, x.replicates, y.replicates, x.squares,
+          y.squares};
 }
 
 /// A possible match: how far apart, when, and which halves.

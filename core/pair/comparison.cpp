@@ -6,6 +6,8 @@
 #include "core/base/distributions.hpp"
 #include "core/chart/run_length.hpp"
 #include "core/pair/comparison_state.hpp"
+#include "core/pair/curvature.hpp"
+#include "core/pair/pair_weight.hpp"
 #include "core/pair/scatter.hpp"
 
 namespace agreed {
@@ -14,14 +16,16 @@ constexpr std::size_t kRecentPairs = 500;
 constexpr std::size_t kOlderPairs = 500;
 constexpr std::size_t kBiasHistory = 500;
 constexpr double kPlainTail = 0.05;  // each of the two one-sided tests
+constexpr double kCurvedTail = 0.01;
 
 double resolution_of(const Measurand& measurand) {
   return measurand.decimals ? std::pow(10.0, -*measurand.decimals) : 0.0;
 }
 
 DriftLimits limits_of(const ComparisonSettings& config) {
-  return {limit_for(Score::pairs, config.warning_run_length).h,
-          limit_for(Score::pairs, critical_factor * config.warning_run_length).h};
+  const Score score = score_of(config);
+  return {limit_for(score, config.warning_run_length).h,
+          limit_for(score, critical_factor * config.warning_run_length).h};
 }
 
 Interval around(Bias bias, double t) {
@@ -44,7 +48,7 @@ Comparison::State::State(const Settings& all, ComparisonIndex comparison)
       index(comparison),
       resolution(resolution_of(measurand())),
       window(config().window_pairs, config().window_age),
-      chart(config().split_memory, resolution),
+      chart(config().split_memory, resolution, config().relation),
       alarm(limits_of(config())),
       outliers(config().set_outliers_aside ? config().outlier_run_length : 0),
       verdict(measurand().decision_levels.size(), config().confirm, config().least_pairs),
@@ -65,6 +69,14 @@ Deltas Comparison::State::deltas() const {
           delta_of_means(ratio.high, window)};
 }
 
+// Over restarts of the window as well: they mean another relation, not another repeatability.
+ErrorRatio Comparison::State::ratio_of_replicates() const {
+  ReplicatePool pool(config().error_growth);
+  for (const RecentPair& kept : recent)
+    if (kept.outcome == PairOutcome::accepted) pool.add(kept.pair);
+  return pool.ratio();
+}
+
 void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
   const std::int64_t serial = ++pairs_total;
   if (!first_pair_at) first_pair_at = pair.at;
@@ -74,7 +86,8 @@ void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
   bool hold = false;
   if (fit.exists() && ratio.known) {
     const int df = fit.degrees_of_freedom();
-    const double residual = prediction_residual(fit, {pair.x, pair.y}, resolution);
+    const Point shares{1.0 / pair.x_replicates, 1.0 / pair.y_replicates};
+    const double residual = prediction_residual(fit, {pair.x, pair.y}, shares, resolution);
     if (outliers.flags(residual, df)) {
       const auto admitted = outliers.admit_or_hold({pair, serial, residual, df});
       for (const HeldPair& held : admitted) accept(held.pair, held.serial, held.accepted_later);
@@ -100,22 +113,26 @@ void Comparison::State::drop_oldest() {
 void Comparison::State::begin_stretch(Instant at, std::vector<Finding>& findings) {
   set_aside(outliers.give_up_all(), at, findings);
   window.restart(0);
-  chart.restart(0);
+  chart.begin_stretch();
   stretch_from = at;
   fit = WindowFit();
   fit.reason = no_line::too_few_pairs;
   levels.clear();
-  scatter_excess = false;
+  pairs_since_renewal = 0;
+  scatter_excess = curved = false;
   verdict.begin_stretch(at);
   if (!no_verdict().empty()) verdict.block(no_verdict());
   alarm.end();
   end(drifting, at, "intervention", findings);
+  end(unproven, at, "intervention", findings);
+  end(scattered, at, "intervention", findings);
 }
 
 void Comparison::State::accept(const Pair& pair, std::int64_t serial, int later) {
   const Point point{pair.x, pair.y};
   window.insert(point, {pair.at, serial, 1.0 / pair.x_replicates, 1.0 / pair.y_replicates}, later);
-  chart.insert(point, pair.at, later);
+  chart.insert(point, pair.at, later, weight_of(pair, ratio));
+  ++pairs_since_renewal;
   outliers.accepted(serial);
   if (RecentPair* kept = recent_of(serial)) kept->outcome = PairOutcome::accepted;
 }
@@ -135,11 +152,13 @@ RecentPair* Comparison::State::recent_of(std::int64_t serial) {
 }
 
 void Comparison::State::evaluate(Instant at, std::vector<Finding>& findings) {
+  if (takes_replicates()) ratio = ratio_of_replicates();
   if (ratio.known) watch_for_change(at, findings);
-  fit = fit_window(window, ratio);
-  test_scatter();
+  fit = fit_window(window, ratio, config().fit);
+  test_renewed_window(at, findings);
   judge_levels(at);
   move_verdict(at, findings);
+  watch_proof(at, findings);
 }
 
 void Comparison::State::watch_for_change(Instant at, std::vector<Finding>& findings) {
@@ -154,14 +173,29 @@ void Comparison::State::watch_for_change(Instant at, std::vector<Finding>& findi
   const int after = alarm.split().after;
   chart.restart(after);
   window.restart(after);
+  pairs_since_renewal = window.size();
   stretch_from = alarm.split().started_at;
   if (no_verdict().empty()) verdict.restart_after_change(at);
 }
 
-void Comparison::State::test_scatter() {
-  if (window.number() % window.capacity() != 0 || !fit.exists() || !(config().scatter_run_length > 0)) return;
+// Tests that would call falsely if they were made at every pair: once per full renewal of the window.
+void Comparison::State::test_renewed_window(Instant at, std::vector<Finding>& findings) {
+  if (pairs_since_renewal < window.capacity() || !fit.exists()) return;
+  pairs_since_renewal = 0;
+  const auto p = curvature_p(window.points(), fit);
+  curved = p && *p < kCurvedTail;
+  if (config().scatter_run_length > 0) test_scatter(at, findings);
+}
+
+void Comparison::State::test_scatter(Instant at, std::vector<Finding>& findings) {
   const auto scatter = describe_scatter(fit, ratio, window.error_shares());
   scatter_excess = scatter && scatter->p < window.capacity() / config().scatter_run_length;
+  if (!scatter_excess) {
+    end(scattered, at, "scatter_explained", findings);
+    return;
+  }
+  scattered = sample_scatter_finding(*this, *scatter, at);
+  findings.push_back(*scattered);
 }
 
 void Comparison::State::judge_levels(Instant at) {
@@ -215,6 +249,20 @@ void Comparison::State::move_verdict(Instant at, std::vector<Finding>& findings)
   }
 }
 
+// Told when it has lasted too long, and again each time as long has gone by, since the number of pairs that
+// would decide it changes.
+void Comparison::State::watch_proof(Instant at, std::vector<Finding>& findings) {
+  if (verdict.verdict() != Verdict::inconclusive) {
+    end(unproven, at, to_string(verdict.verdict()), findings);
+    return;
+  }
+  if (!config().prove_within || !verdict.since() || window.size() < config().least_pairs) return;
+  const Instant since = unproven ? unproven->at : *verdict.since();
+  if (!(at - since > *config().prove_within)) return;
+  unproven = agreement_unproven_finding(*this, at);
+  findings.push_back(*unproven);
+}
+
 Comparison::Comparison(const Settings& settings, ComparisonIndex index)
     : state_(std::make_unique<State>(settings, index)) {}
 Comparison::~Comparison() = default;
@@ -228,7 +276,7 @@ Comparison& Comparison::operator=(const Comparison& other) {
 
 void Comparison::add(const Pair& pair, const ErrorRatio& ratio, std::vector<Finding>& findings) {
   state_->last_at = pair.at;
-  state_->ratio = ratio;
+  if (!state_->takes_replicates()) state_->ratio = ratio;
   state_->add(pair, findings);
 }
 
@@ -244,6 +292,8 @@ std::optional<Instant> Comparison::last_at() const {
 void Comparison::conditions(std::vector<Finding>& findings) const {
   if (state_->lost) findings.push_back(*state_->lost);
   if (state_->drifting) findings.push_back(*state_->drifting);
+  if (state_->unproven) findings.push_back(*state_->unproven);
+  if (state_->scattered) findings.push_back(*state_->scattered);
 }
 
 std::vector<std::string> Comparison::set_aside() const {

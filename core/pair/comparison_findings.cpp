@@ -39,7 +39,19 @@ const LevelNow& worst_level(const Comparison::State& state) {
   }
   return worst == nullptr ? state.levels.front() : *worst;
 }
+
+void append(Finding& finding, const Details& details) {
+  finding.details.insert(finding.details.end(), details.begin(), details.end());
+}
 }  // namespace
+
+std::optional<ProofPlan> proof_plan_of(const Comparison::State& state) {
+  if (state.levels.empty() || !state.measurand().allowable) return std::nullopt;
+  std::vector<LevelEvidence> levels;
+  for (const LevelNow& now : state.levels)
+    levels.push_back({now.level, now.bias.value, now.bias.se, now.allowable, now.statement.covered});
+  return plan_proof(levels, state.window.size(), state.config().alert_confidence);
+}
 
 Finding agreement_lost_finding(const Comparison::State& state, Instant at) {
   Finding finding = finding_of(state, AlertKind::agreement_lost, Severity::critical, at);
@@ -55,6 +67,7 @@ Finding agreement_lost_finding(const Comparison::State& state, Instant at) {
                            {"intercept", state.fit.line.intercept()},
                            {"pairs", static_cast<double>(state.window.size())}};
   finding.details.insert(finding.details.end(), details.begin(), details.end());
+  if (state.fit.weighted()) finding.details.emplace_back("fit", std::string(to_string(state.fit.method)));
   return finding;
 }
 
@@ -71,7 +84,42 @@ Finding agreement_drifting_finding(const Comparison::State& state, Instant at) {
                            {"shift", split.shift},
                            {"pairs_before", static_cast<double>(split.before)},
                            {"pairs_after", static_cast<double>(split.after)}};
-  finding.details.insert(finding.details.end(), details.begin(), details.end());
+  append(finding, details);
+  if (state.chart.against_established_line())
+    append(finding, {{"relation_intercept", state.config().relation->intercept},
+                     {"relation_slope", state.config().relation->slope}});
+  return finding;
+}
+
+Finding agreement_unproven_finding(const Comparison::State& state, Instant at) {
+  Finding finding = finding_of(state, AlertKind::agreement_unproven, Severity::notice, at);
+  append(finding, {{"inconclusive_since", to_rfc3339(state.verdict.since().value_or(at))},
+                   {"pairs", static_cast<double>(state.window.size())},
+                   {"window_pairs", static_cast<double>(state.window.capacity())}});
+  const auto plan = proof_plan_of(state);
+  if (!plan) return finding;
+  const double sd = std::sqrt(state.fit.residual_variance);
+  append(finding, {{"residual_sd", sd},
+                   {"level", plan->level},
+                   {"bias", plan->bias},
+                   {"allowable", plan->allowable},
+                   {"aim", to_string(plan->aim)}});
+  if (!plan->reason.empty()) append(finding, {{"reason", std::string(plan->reason)}});
+  if (plan->more_pairs) append(finding, {{"pairs_needed", static_cast<double>(*plan->more_pairs)}});
+  if (plan->scatter_factor) append(finding, {{"sd_needed", *plan->scatter_factor * sd}});
+  return finding;
+}
+
+Finding sample_scatter_finding(const Comparison::State& state, const ScatterView& scatter, Instant at) {
+  Finding finding = finding_of(state, AlertKind::sample_scatter, Severity::notice, at);
+  append(finding, {{"observed_sd", scatter.observed_sd},
+                   {"expected_sd", scatter.expected_sd},
+                   {"sd_ratio", std::sqrt(scatter.variance_ratio)},
+                   {"variance_ratio", scatter.variance_ratio},
+                   {"p", scatter.p},
+                   {"pairs", static_cast<double>(state.window.size())},
+                   {"from", to_rfc3339(state.window.entries().front().at)},
+                   {"to", to_rfc3339(state.window.entries().back().at)}});
   return finding;
 }
 

@@ -28,6 +28,18 @@ const char* name_of(ErrorSource source) {
   return "";
 }
 
+const char* name_of(ErrorGrowth growth) {
+  switch (growth) {
+    case ErrorGrowth::constant:
+      return "constant";
+    case ErrorGrowth::proportional:
+      return "proportional";
+    case ErrorGrowth::mixed:
+      return "mixed";
+  }
+  return "";
+}
+
 WindowView show_window(const State& state) {
   WindowView view;
   view.pairs = state.window.size();
@@ -40,10 +52,20 @@ WindowView show_window(const State& state) {
   return view;
 }
 
+ErrorModelSide show_side(const ErrorVariance& variance, const ErrorModel& model) {
+  const bool constant = model.growth == ErrorGrowth::constant;
+  ErrorModelSide side;
+  side.constant = std::sqrt(constant ? variance.variance : model.at_zero);
+  side.relative = std::sqrt(model.relative);
+  if (variance.degrees_of_freedom > 0) side.df = variance.degrees_of_freedom;
+  return side;
+}
+
 ErrorView show_error(const State& state) {
   const ErrorRatio& ratio = state.ratio;
   ErrorView view;
   view.source = name_of(state.config().error_ratio.source);
+  view.model.growth = name_of(state.config().error_growth);
   if (!ratio.known) {
     view.reason = ratio.reason.empty() ? "no_pairs_yet" : ratio.reason;
     return view;
@@ -56,18 +78,21 @@ ErrorView show_error(const State& state) {
   view.sd_y = std::sqrt(ratio.y.variance);
   if (ratio.x.degrees_of_freedom > 0) view.df_x = ratio.x.degrees_of_freedom;
   if (ratio.y.degrees_of_freedom > 0) view.df_y = ratio.y.degrees_of_freedom;
+  if (ratio.growth() != ErrorGrowth::constant) view.model.level = ratio.level;
+  view.model.x = show_side(ratio.x, ratio.x_model);
+  view.model.y = show_side(ratio.y, ratio.y_model);
   return view;
 }
 
-std::optional<double> slope_at(const State& state, double delta) {
-  const DemingLine line = deming_line(state.fit.moments, delta);
-  return line.exists() ? std::optional(line.slope) : std::nullopt;
+std::optional<double> slope_at(const State& state, double lambda) {
+  return slope_at_lambda(state.window, state.ratio, state.config().fit, lambda);
 }
 
 FitView show_fit(const State& state) {
   const WindowFit& fit = state.fit;
   const double mean_x = fit.line.mean_x;
   FitView view;
+  view.method = to_string(fit.method);
   view.intercept = fit.line.intercept();
   view.slope = fit.line.slope;
   view.se_intercept = bias_at(fit.line, fit.jackknife, 0).se;
@@ -80,9 +105,8 @@ FitView show_fit(const State& state) {
   view.intercept_interval = {view.intercept - t * view.se_intercept, view.intercept + t * view.se_intercept};
   view.slope_interval = {view.slope - t * view.se_slope, view.slope + t * view.se_slope};
   view.identity_p = identity_p(fit.line, fit.jackknife, fit.moments.n);
-  const Deltas deltas = state.deltas();
-  view.slope_at_lambda_low = slope_at(state, deltas[1]);
-  view.slope_at_lambda_high = slope_at(state, deltas[2]);
+  view.slope_at_lambda_low = slope_at(state, state.ratio.low);
+  view.slope_at_lambda_high = slope_at(state, state.ratio.high);
   return view;
 }
 
@@ -131,7 +155,7 @@ LevelView show_level(const State& state, const LevelNow& level) {
   view.reason = said.reason;
   if (!state.measurand().allowable) return view;
   view.allowable = level.allowable;
-  const SingleResult single = single_result(level.bias.value, state.fit.residual_variance,
+  const SingleResult single = single_result(level.bias.value, state.fit.residual_variance_at(level.level),
                                             state.fit.degrees_of_freedom(), level.allowable);
   view.single_result = SingleResultView{single.share_within, single.low, single.high};
   return view;
@@ -160,7 +184,8 @@ PairChartView show_pair_chart(const State& state, std::vector<std::string>& warn
   view.limit = limits.warning;
   view.critical_limit = limits.critical;
   view.in_control_run_length = config.warning_run_length;
-  view.extrapolated = limit_for(Score::pairs, critical_factor * config.warning_run_length).extrapolated;
+  view.extrapolated = limit_for(score_of(config), critical_factor * config.warning_run_length).extrapolated;
+  view.against_established_line = state.chart.against_established_line();
   view.severity = state.alarm.open();
   std::optional<double> evidence;
   if (state.ratio.known && view.pairs > 0) {
@@ -187,6 +212,22 @@ PairChartView show_pair_chart(const State& state, std::vector<std::string>& warn
   return view;
 }
 
+std::optional<ProofView> show_proof(const State& state) {
+  if (state.verdict.verdict() != Verdict::inconclusive || state.window.size() < state.config().least_pairs)
+    return std::nullopt;
+  const auto plan = proof_plan_of(state);
+  if (!plan) return std::nullopt;
+  ProofView view;
+  view.overdue = state.unproven.has_value();
+  view.level = plan->level;
+  view.aim = plan->aim;
+  view.more_pairs = plan->more_pairs;
+  view.residual_sd = std::sqrt(state.fit.residual_variance);
+  if (plan->scatter_factor) view.sd_needed = *plan->scatter_factor * view.residual_sd;
+  view.reason = plan->reason;
+  return view;
+}
+
 PairView show_pair(const State& state, const RecentPair& recent, std::int64_t first_in_window) {
   PairView view;
   view.sample = recent.pair.sample;
@@ -198,9 +239,9 @@ PairView show_pair(const State& state, const RecentPair& recent, std::int64_t fi
   view.in_window = recent.outcome == PairOutcome::accepted && recent.serial >= first_in_window;
   view.outlier = recent.outcome == PairOutcome::set_aside;
   if (state.fit.exists()) {
-    const Point point{view.x, view.y};
-    view.residual = view.in_window ? studentised_residual(state.fit, point, state.resolution)
-                                   : prediction_residual(state.fit, point, state.resolution);
+    const Point point{view.x, view.y}, shares{1.0 / view.x_replicates, 1.0 / view.y_replicates};
+    view.residual = view.in_window ? studentised_residual(state.fit, point, shares, state.resolution)
+                                   : prediction_residual(state.fit, point, shares, state.resolution);
   }
   return view;
 }
@@ -224,6 +265,8 @@ ComparisonView show(const State& state) {
   view.verdict_since = state.verdict.since();
   view.verdict_reason = state.verdict.reason();
   view.last_agreement = state.last_agreement;
+  if (state.lost) view.agreement_lost = state.lost->at;
+  view.proof = show_proof(state);
   view.pairs_total = state.pairs_total;
   view.window = show_window(state);
   view.error = show_error(state);
@@ -234,8 +277,10 @@ ComparisonView show(const State& state) {
   if (state.fit.exists()) {
     view.fit = show_fit(state);
     const Point shares = state.window.error_shares();
-    if (error_grows_with_level(state.window.points(), state.fit))
+    if (state.config().error_growth == ErrorGrowth::constant &&
+        error_grows_with_level(state.window.points(), state.fit))
       view.warnings.push_back("error_grows_with_level");
+    if (state.curved) view.warnings.push_back("curved");
     view.scatter = describe_scatter(state.fit, state.ratio, shares);
     if (view.scatter) view.scatter->excess = state.scatter_excess;
     view.range = describe_range(state.fit, state.ratio, shares, state.measurand().decision_levels);

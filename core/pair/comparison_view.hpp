@@ -31,17 +31,35 @@ struct WindowView {
   bool operator==(const WindowView&) const = default;
 };
 
+/// sd of one analyzer's single results at a level: sqrt(constant^2 + (relative level)^2).
+struct ErrorModelSide {
+  double constant = 0, relative = 0;
+  std::optional<double> df;  ///< of its variance at `level` of the model
+  bool operator==(const ErrorModelSide&) const = default;
+};
+
+/// How the errors go with the level. Sides are null while nothing but their ratio is known.
+struct ErrorModelView {
+  std::string growth = "constant";  ///< constant, proportional, mixed
+  std::optional<double> level;      ///< where lambda, sd_x and sd_y hold, when they do not everywhere
+  std::optional<ErrorModelSide> x, y;
+  bool operator==(const ErrorModelView&) const = default;
+};
+
 /// The error variances of single results, and lambda = var(x error) / var(y error) with its 95 % interval.
 struct ErrorView {
   std::optional<double> lambda, low, high, sd_x, sd_y, df_x, df_y;
   std::string source;  ///< check_standards, given_sds, given_lambda, replicates
   std::string reason;  ///< why lambda is not known, when it is not
+  ErrorModelView model;
   bool operator==(const ErrorView&) const = default;
 };
 
 struct FitView {
+  std::string method = "deming";        ///< deming, weighted_deming, york
+  std::string se_method = "jackknife";  ///< of se_intercept, se_slope, cov and all intervals
   double intercept = 0, slope = 1;
-  double se_intercept = 0, se_slope = 0, cov = 0;  ///< jackknife
+  double se_intercept = 0, se_slope = 0, cov = 0;
   double analytic_se_intercept = 0, analytic_se_slope = 0;
   Interval intercept_interval{}, slope_interval{};
   double confidence = 0.95;
@@ -112,7 +130,20 @@ struct PairChartView {
   std::optional<Severity> severity;  ///< of the open signal
   std::optional<Instant> started_at;
   std::optional<Period> started_between;
+  bool against_established_line = false;  ///< else against the pairs' own line
   bool operator==(const PairChartView&) const = default;
+};
+
+/// What would decide an inconclusive verdict (core/pair/proof_plan.hpp).
+struct ProofView {
+  bool overdue = false;  ///< inconclusive for longer than prove_within
+  double level = 0;
+  Verdict aim = Verdict::agreement_shown;
+  std::optional<int> more_pairs;
+  std::optional<double> sd_needed;  ///< residual sd that would decide it with the present pairs
+  double residual_sd = 0;
+  std::string reason;  ///< why no number of pairs would
+  bool operator==(const ProofView&) const = default;
 };
 
 struct OutlierView {
@@ -174,6 +205,9 @@ struct ComparisonView {
   std::optional<Instant> verdict_since;
   std::string verdict_reason;
   std::optional<Instant> last_agreement;  ///< newest pair at which the verdict was agreement_shown
+  std::optional<Instant>
+      agreement_lost;              ///< since when agreement is lost and not shown again; none: it is not
+  std::optional<ProofView> proof;  ///< while the verdict is inconclusive and enough pairs came
   std::vector<std::string> warnings;
   std::int64_t pairs_total = 0;
   std::int64_t waiting = 0;  ///< halves without a partner

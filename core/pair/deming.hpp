@@ -25,6 +25,9 @@ inline constexpr std::string_view slope_not_positive =
     "slope_not_positive";  ///< the results do not go together
 inline constexpr std::string_view one_pair_decides =
     "one_pair_decides";  ///< without one pair there is no line
+inline constexpr std::string_view level_not_positive =
+    "level_not_positive";  ///< errors proportional to the level, and a level at or below zero
+inline constexpr std::string_view not_converged = "not_converged";  ///< the weights find no rest
 }  // namespace no_line
 
 /// The slope alone, of any sign; not finite where there is none. `deming_line` looks after that.

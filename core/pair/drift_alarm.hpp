@@ -10,9 +10,17 @@
 #include <array>
 #include <optional>
 
+#include "core/base/settings.hpp"
+#include "core/chart/run_length.hpp"
 #include "core/pair/pair_chart.hpp"
 
 namespace agreed {
+
+/// The row of run lengths that the pair chart's limits follow. With an established line it holds after a
+/// change too, when the chart asks without it: the run length is then about a seventh longer.
+[[nodiscard]] inline Score score_of(const ComparisonSettings& comparison) {
+  return comparison.relation ? Score::pairs_established_line : Score::pairs;
+}
 
 /// Limits of the score, in normal standard deviations.
 struct DriftLimits {

@@ -1,6 +1,7 @@
 #include "core/pair/error_ratio.hpp"
 
 #include <cmath>
+#include <utility>
 
 #include "core/base/distributions.hpp"
 
@@ -40,7 +41,61 @@ ErrorRatio ratio_of(const ErrorVariance& x, const ErrorVariance& y) {
   return ratio;
 }
 
-ErrorRatio given_ratio(const ErrorRatioSettings& settings) {
+ErrorRatio ratio_of(const ErrorModel& x, const ErrorModel& y, double level) {
+  ErrorRatio ratio;
+  for (const ErrorModel* model : {&x, &y})
+    if (!model->exists()) {
+      ratio.reason = model->reason;
+      return ratio;
+    }
+  if (!(x.variance_at(level) > 0 && y.variance_at(level) > 0)) {
+    ratio.reason = "repeatability_is_zero";
+    return ratio;
+  }
+  ratio = ratio_of(ErrorVariance{x.variance_at(level), x.degrees_of_freedom_at(level)},
+                   ErrorVariance{y.variance_at(level), y.degrees_of_freedom_at(level)});
+  ratio.x_model = x;
+  ratio.y_model = y;
+  ratio.level = level;
+  return ratio;
+}
+
+double mean_level(std::span<const Repeatability> x, std::span<const Repeatability> y) {
+  double sum = 0, df = 0;
+  for (const auto& side : {x, y})
+    for (const Repeatability& standard : side) {
+      sum += standard.mean * standard.degrees_of_freedom;
+      df += standard.degrees_of_freedom;
+    }
+  return df > 0 ? sum / df : 0;
+}
+
+ErrorRatio ratio_from_standards(std::span<const Repeatability> x, std::span<const Repeatability> y,
+                                ErrorGrowth growth, const std::string& measurand, const std::string& on_x,
+                                const std::string& on_y) {
+  for (const auto& [standards, analyzer] : {std::pair(x, &on_x), std::pair(y, &on_y)}) {
+    const ErrorVariance sum = pooled(standards);
+    const std::string to_know = measurand + " on " + *analyzer;
+    ErrorRatio unknown;
+    if (!(sum.degrees_of_freedom > 0 && sum.variance > 0)) {
+      unknown.reason = "too few check readings of " + to_know + " to know its repeatability";
+      return unknown;
+    }
+    if (growth == ErrorGrowth::constant) continue;
+    const std::string_view no = fit_error_model(growth, standards).reason;
+    if (no == no_model::one_level)
+      unknown.reason = "the check standards of " + to_know +
+                       " lie at one level, and a mixed error model needs two that are a fifth apart";
+    else if (no == no_model::at_zero)
+      unknown.reason = "a check standard of " + to_know +
+                       " lies at level zero, where an error proportional to the level vanishes";
+    if (!unknown.reason.empty()) return unknown;
+  }
+  if (growth == ErrorGrowth::constant) return ratio_of(pooled(x), pooled(y));
+  return ratio_of(fit_error_model(growth, x), fit_error_model(growth, y), mean_level(x, y));
+}
+
+ErrorRatio given_ratio(const ErrorRatioSettings& settings, ErrorGrowth growth) {
   ErrorRatio ratio;
   if (settings.source == ErrorSource::given_sds && settings.sd_x > 0 && settings.sd_y > 0) {
     ratio.known = ratio.variances_known = true;
@@ -52,6 +107,13 @@ ErrorRatio given_ratio(const ErrorRatioSettings& settings) {
     ratio.lambda = settings.lambda;
     ratio.low = settings.lambda / kBareFactor;
     ratio.high = settings.lambda * kBareFactor;
+    if (growth == ErrorGrowth::proportional) {
+      ratio.x_model.growth = ratio.y_model.growth = growth;
+      ratio.x_model.at_zero = ratio.y_model.at_zero = 0;
+      ratio.x_model.relative = settings.lambda;
+      ratio.y_model.relative = 1;
+      ratio.level = 1;
+    }
   } else {
     ratio.reason = "error_ratio_not_given";
   }

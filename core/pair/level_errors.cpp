@@ -39,9 +39,8 @@ bool error_grows_with_level(std::span<const Point> points, const WindowFit& fit)
   if (points.size() < kLeastPairs) return false;
   std::vector<double> sizes, levels;
   for (const Point p : points) {
-    const Point c = fit.moments.centred(p);
-    sizes.push_back(std::abs(fit.line.residual(c)));
-    levels.push_back(fit.line.fitted(c));
+    sizes.push_back(std::abs(fit.residual(p)));
+    levels.push_back(fit.fitted(p, {1, 1}));
   }
   return rank_correlation(sizes, levels) > kLimit / std::sqrt(static_cast<double>(points.size()) - 1);
 }

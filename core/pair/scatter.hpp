@@ -7,6 +7,7 @@
 //   Satterthwaite, Biometrics Bull. 2 (1946) 110; reliability ratio 1 - sigma_x^2 (n-1)/Sxx (Fuller 1987).
 // Degenerate: variances not known (a bare lambda): no scatter block; the x error is then taken from the
 //   scatter itself for the reliability ratio.
+//   Of weighted fits both variances are those at the mean of the line, the reliability ratio is weighted.
 // Cost: O(1), one F tail.
 #include <optional>
 #include <span>

@@ -1,6 +1,8 @@
 #include "core/pair/window.hpp"
 
+#include <algorithm>
 #include <stdexcept>
+#include <tuple>
 
 namespace agreed {
 namespace {
@@ -66,6 +68,16 @@ Point Window::error_shares() const {
     sum.y += entry.y_share;
   }
   return {sum.x / size(), sum.y / size()};
+}
+
+bool Window::has_equal_shares() const {
+  if (replicated_ == 0) return true;
+  const WindowEntry& first = entries_.front();
+  // Shares are 1 / k of whole numbers, so equal ones are equal to the last bit.
+  const auto same = [&](const WindowEntry& entry) {
+    return std::tie(entry.x_share, entry.y_share) == std::tie(first.x_share, first.y_share);
+  };
+  return std::all_of(entries_.begin(), entries_.end(), same);
 }
 
 }  // namespace agreed

@@ -46,6 +46,8 @@ class Window {
   [[nodiscard]] std::int64_t number() const { return number_; }
   /// Mean over the window of what replicates leave of the error variance of x and of y.
   [[nodiscard]] Point error_shares() const;
+  /// All pairs have the same numbers of replicates.
+  [[nodiscard]] bool has_equal_shares() const;
 
  private:
   void drop_oldest();

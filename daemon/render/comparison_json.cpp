@@ -17,23 +17,38 @@ Json window_of(const WindowView& window) {
           {"since_intervention", json_time(window.since_intervention)}};
 }
 
+Json side_of(const std::optional<ErrorModelSide>& side) {
+  if (!side) return nullptr;
+  return {{"constant", json_number(side->constant)},
+          {"relative", json_number(side->relative)},
+          {"df", json_number(side->df)}};
+}
+
+Json model_of(const ErrorModelView& model) {
+  return {{"growth", model.growth},
+          {"level", json_number(model.level)},
+          {"x", side_of(model.x)},
+          {"y", side_of(model.y)}};
+}
+
 Json error_of(const ErrorView& error) {
   return {{"lambda", json_number(error.lambda)}, {"lambda_is", "var(x error)/var(y error)"},
           {"low", json_number(error.low)},       {"high", json_number(error.high)},
           {"sd_x", json_number(error.sd_x)},     {"sd_y", json_number(error.sd_y)},
           {"df_x", json_number(error.df_x)},     {"df_y", json_number(error.df_y)},
-          {"source", json_words(error.source)},  {"reason", json_words(error.reason)}};
+          {"source", json_words(error.source)},  {"reason", json_words(error.reason)},
+          {"model", model_of(error.model)}};
 }
 
-Json fit_of(const std::optional<FitView>& fit, FitMethod method) {
+Json fit_of(const std::optional<FitView>& fit) {
   if (!fit) return nullptr;
-  return {{"method", method == FitMethod::deming ? "deming" : "weighted_deming"},
+  return {{"method", fit->method},
           {"intercept", json_number(fit->intercept)},
           {"slope", json_number(fit->slope)},
           {"se_intercept", json_number(fit->se_intercept)},
           {"se_slope", json_number(fit->se_slope)},
           {"cov", json_number(fit->cov)},
-          {"se_method", "jackknife"},
+          {"se_method", fit->se_method},
           {"analytic_se_intercept", json_number(fit->analytic_se_intercept)},
           {"analytic_se_slope", json_number(fit->analytic_se_slope)},
           {"intercept_interval", interval_of(fit->intercept_interval)},
@@ -129,6 +144,7 @@ Json pair_chart_of(const PairChartView& chart) {
           {"critical_limit", json_number(chart.critical_limit)},
           {"in_control_run_length", json_number(chart.in_control_run_length)},
           {"limit_extrapolated", chart.extrapolated},
+          {"against", chart.against_established_line ? "established_line" : "own_line"},
           {"severity", chart.severity ? Json(to_string(*chart.severity)) : Json(nullptr)},
           {"started_at", json_time(chart.started_at)},
           {"started_between", json_period(chart.started_between)},
@@ -167,6 +183,23 @@ Json look_back_of(const std::optional<LookBackView>& look_back) {
   return {{"from", to_rfc3339(look_back->from)}, {"from_is", look_back->from_is()},
           {"to", to_rfc3339(look_back->to)},     {"hours", json_number(look_back->hours)},
           {"pairs", look_back->pairs},           {"samples", look_back->samples}};
+}
+
+Json proof_of(const std::optional<ProofView>& proof) {
+  if (!proof) return nullptr;
+  return {{"overdue", proof->overdue},
+          {"level", json_number(proof->level)},
+          {"aim", to_string(proof->aim)},
+          {"more_pairs", proof->more_pairs ? Json(*proof->more_pairs) : Json(nullptr)},
+          {"residual_sd", json_number(proof->residual_sd)},
+          {"sd_needed", json_number(proof->sd_needed)},
+          {"reason", json_words(proof->reason)}};
+}
+
+/// The established line that the configuration names, null when there is none.
+Json relation_of(const std::optional<EstablishedLine>& relation) {
+  if (!relation) return nullptr;
+  return {{"intercept", json_number(relation->intercept)}, {"slope", json_number(relation->slope)}};
 }
 
 Json outliers_of(const ComparisonView& view) {
@@ -222,12 +255,15 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"verdict_since", json_time(view.verdict_since)},
           {"verdict_reason", json_words(view.verdict_reason)},
           {"last_agreement_at", json_time(view.last_agreement)},
+          {"agreement_lost_at", json_time(view.agreement_lost)},
+          {"proof", proof_of(view.proof)},
+          {"relation", relation_of(comparison.relation)},
           {"warnings", view.warnings},
           {"pairs_total", view.pairs_total},
           {"waiting", view.waiting},
           {"window", window_of(view.window)},
           {"error", error_of(view.error)},
-          {"fit", fit_of(view.fit, comparison.fit)},
+          {"fit", fit_of(view.fit)},
           {"fit_reason", json_words(view.fit_reason)},
           {"levels", levels_of(view)},
           {"difference", difference_of(view.difference)},

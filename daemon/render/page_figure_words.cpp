@@ -34,6 +34,14 @@ std::string level_words(const ComparisonScene& scene, const LevelView& level) {
   return out + (level.reason.empty() ? "." : ". " + reason_words(level.reason));
 }
 
+namespace {
+std::string fit_words(const std::string& method) {
+  if (method == "weighted_deming") return "Line fitted by weighted Deming regression";
+  if (method == "york") return "Line fitted with each pair weighted by its own errors (York)";
+  return "Fitted line";
+}
+}  // namespace
+
 std::string pairs_words(const ComparisonScene& scene) {
   const ComparisonView& view = scene.view;
   if (!view.fit)
@@ -44,8 +52,9 @@ std::string pairs_words(const ComparisonScene& scene) {
   const std::string level = shown(fit.confidence * 100, thousandths % 10 == 0 ? 0 : 1);
   const std::string line = scene.y + " = " + shown(fit.intercept, scene.style.decimals) + " + " +
                            shown(fit.slope, 4) + " \u00d7 " + scene.x;
-  return "Fitted line through " + counted(view.window.pairs, "pair", "pairs") + ": " + line + " (" + level +
-         " % intervals: intercept " + shown_signed(fit.intercept_interval[0], scene.style.decimals) + " to " +
+  return fit_words(fit.method) + " through " + counted(view.window.pairs, "pair", "pairs") + ": " + line +
+         " (" + level + " % intervals: intercept " +
+         shown_signed(fit.intercept_interval[0], scene.style.decimals) + " to " +
          shown_signed(fit.intercept_interval[1], scene.style.decimals) + ", slope " +
          shown(fit.slope_interval[0], 4) + " to " + shown(fit.slope_interval[1], 4) + ").";
 }
@@ -76,7 +85,10 @@ std::string pair_chart_words(const ComparisonScene& scene) {
   const std::string score = "change score " + shown(*chart.score, 2) + ", limit " + shown(chart.limit, 2) +
                             ", critical limit " + shown(chart.critical_limit, 2);
   if (chart.state == PairChartState::stable)
-    return "Pair chart stable: no change of the relation among " + pairs + " (" + score + ").";
+    return std::string("Pair chart stable: ") +
+           (chart.against_established_line ? "no departure from the established line"
+                                           : "no change of the relation") +
+           " among " + pairs + " (" + score + ").";
   return "Pair chart unstable: the relation changed " +
          beginning_words(chart.started_at, chart.started_between) + " (" + score + ").";
 }
@@ -89,9 +101,15 @@ std::string error_words(const ComparisonScene& scene) {
                     ") = " + shown(*error.lambda, 2);
   if (error.low && error.high)
     out += " (95 % interval " + shown(*error.low, 2) + " to " + shown(*error.high, 2) + ")";
-  if (error.sd_x && error.sd_y)
+  const ErrorModelView& model = error.model;
+  if (model.growth == "proportional" && model.x && model.y)
+    out += "; sd of one result " + shown(100 * model.x->relative, 2) + " % of the level on " + scene.x +
+           ", " + shown(100 * model.y->relative, 2) + " % on " + scene.y;
+  else if (error.sd_x && error.sd_y)
     out += "; sd of one result " + with_unit(*error.sd_x, scene.style) + " on " + scene.x + ", " +
            with_unit(*error.sd_y, scene.style) + " on " + scene.y;
+  if (model.growth == "mixed" && model.level)
+    out += " at " + with_unit(*model.level, scene.style) + ", growing with the level";
   return out + (error.source.empty() ? "." : "; from " + spaced(error.source) + ".");
 }
 

@@ -167,7 +167,9 @@ std::string current_alerts_html(const PageInput& input) {
 std::string overview_html(const PageInput& input) {
   std::string out = "<h1>Do the analyzers agree?</h1>" + answer_html(overall_answer(input.snapshot), true);
   if (!input.snapshot.started || !input.snapshot.settings) return out;
-  return out + current_alerts_html(input) + comparisons_html(input) + analyzers_html(input);
+  out += current_alerts_html(input) + comparisons_html(input) + analyzers_html(input);
+  const std::string budget = budget_words(input.snapshot.settings->alarm_budget);
+  return budget.empty() ? out : out + "<p>" + escaped(budget) + "</p>";
 }
 
 std::string alerts_html(const PageInput& input) {

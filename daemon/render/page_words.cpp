@@ -68,6 +68,22 @@ std::string gathering_words(const ComparisonScene& scene) {
          " pairs that a verdict needs have come.";
 }
 
+/// Why agreement that was lost is not shown again: what the comparison is waiting for.
+std::string not_shown_again(const ComparisonScene& scene) {
+  const ComparisonView& view = scene.view;
+  const std::string pairs = std::to_string(view.window.pairs) + " of the " +
+                            std::to_string(scene.asked.least_pairs) + " pairs that agreement takes";
+  if (view.verdict_reason == "restarted_after_change")
+    return "a further change was found, so the comparison began anew" +
+           (view.window.since_intervention ? " at " + time_words(*view.window.since_intervention) : "") +
+           " and has " + pairs;
+  if (view.verdict == Verdict::gathering)
+    return "the comparison began anew" +
+           (view.window.since_intervention ? " at " + time_words(*view.window.since_intervention) : "") +
+           " and has " + pairs;
+  return "the pairs since then neither show it nor the opposite";
+}
+
 bool drifting(const ComparisonView& view) {
   return view.pair_chart.state == PairChartState::unstable;
 }
@@ -80,8 +96,28 @@ void add_more(Answer& answer, const ComparisonScene& scene) {
   const bool agreeing_now = view.verdict == Verdict::agreement_shown;
   if (!agreeing_now && view.last_agreement)
     answer.more.push_back("Agreement was last shown at " + time_words(*view.last_agreement) + ".");
-  if (!view.verdict_reason.empty() && view.verdict != Verdict::gathering)
+  // The sentence has said it already when agreement is lost.
+  const bool said = view.agreement_lost && view.verdict_reason == "restarted_after_change";
+  if (!view.verdict_reason.empty() && view.verdict != Verdict::gathering && !said)
     answer.more.push_back(reason_words(view.verdict_reason));
+}
+
+/// Agreement was lost and the verdict says neither that it is back nor, any more, that it is not.
+bool is_lost(const ComparisonView& view) {
+  return view.agreement_lost && (view.verdict == Verdict::inconclusive || view.verdict == Verdict::gathering);
+}
+
+/// An open alert says that agreement is lost: an answer of "not shown" beside it would play that down.
+void tell_lost(Answer& answer, const ComparisonScene& scene) {
+  const Instant lost = *scene.view.agreement_lost;
+  const bool undecided = scene.view.verdict == Verdict::inconclusive;
+  answer.kind = AnswerKind::no;
+  answer.word = "Lost, not shown again";
+  answer.verdict = "agreement lost";
+  answer.since = since_words(lost, scene.at);
+  if (undecided) answer.more.push_back(answer.sentence);
+  answer.sentence = "Agreement was lost at " + time_words(lost) +
+                    " and has not been shown again since: " + not_shown_again(scene) + ".";
 }
 
 bool speaks(const LevelView& level) {
@@ -211,6 +247,7 @@ Answer answer_for(const ComparisonScene& scene) {
       answer.sentence = gathering_words(scene);
       break;
   }
+  if (is_lost(view)) tell_lost(answer, scene);
   add_more(answer, scene);
   return answer;
 }
@@ -233,7 +270,7 @@ struct Group {
 
 void add_to(Group& group, const ComparisonScene& scene) {
   group.names.push_back(scene.name());
-  if (const auto since = scene.view.verdict_since) {
+  if (const auto since = is_lost(scene.view) ? scene.view.agreement_lost : scene.view.verdict_since) {
     group.earliest = group.earliest ? std::min(*group.earliest, *since) : *since;
     group.latest = group.latest ? std::max(*group.latest, *since) : *since;
   }
@@ -246,22 +283,28 @@ void add_to(Group& group, const ComparisonScene& scene) {
 
 Answer answer_of_several(const Snapshot& snapshot) {
   Group yes, no, waiting;
-  bool changing = false;
+  bool changing = false, lost = false;
   const std::size_t count = snapshot.settings->comparisons.size();
   for (std::uint32_t i = 0; i < count; ++i) {
     const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{i});
     const Verdict verdict = scene.view.verdict;
-    add_to(verdict == Verdict::agreement_shown      ? yes
-           : verdict == Verdict::disagreement_shown ? no
-                                                    : waiting,
+    add_to(verdict == Verdict::agreement_shown                             ? yes
+           : verdict == Verdict::disagreement_shown || is_lost(scene.view) ? no
+                                                                           : waiting,
            scene);
+    lost = lost || is_lost(scene.view);
     changing = changing || drifting(scene.view);
   }
   Answer answer;
   if (!no.names.empty()) {
-    answer = {AnswerKind::no, "No", "disagreement shown", since_words(no.earliest, snapshot.at),
-              no.sentence,    {}};
-    answer.more.push_back(several_sentence(no.names, count, "disagree"));
+    answer = {AnswerKind::no,
+              "No",
+              lost ? "agreement lost" : "disagreement shown",
+              since_words(no.earliest, snapshot.at),
+              no.sentence,
+              {}};
+    answer.more.push_back(
+        several_sentence(no.names, count, lost ? "disagree or have lost agreement" : "disagree"));
   } else if (waiting.names.empty()) {
     answer = {AnswerKind::yes,   changing ? "Yes, but changing" : "Yes",
               "agreement shown", since_words(yes.latest, snapshot.at),
@@ -297,6 +340,19 @@ Answer answer_of_all(const Snapshot& snapshot) {
 }
 
 }  // namespace
+
+std::string budget_words(const AlarmBudget& budget) {
+  if (!(budget.expected_per_year > 0)) return {};
+  std::string out = "By chance alone " + shown(budget.expected_per_year, 1) +
+                    " false alerts a year are expected of what is configured (" +
+                    shortest(budget.allowed_per_year) + " are allowed)";
+  const char* before = ": ";
+  for (const auto& [kind, expected] : budget.by_kind) {
+    out += before + spaced(kind) + " " + shown(expected, expected < 0.1 ? 2 : 1);
+    before = ", ";
+  }
+  return out + ".";
+}
 
 Answer overall_answer(const Snapshot& snapshot) {
   if (!snapshot.started || !snapshot.settings) return starting_answer(snapshot);

@@ -37,6 +37,8 @@ struct Answer {
 [[nodiscard]] std::string pair_chart_words(const ComparisonScene& scene);
 [[nodiscard]] std::string error_words(const ComparisonScene& scene);
 [[nodiscard]] std::string scatter_words(const ComparisonScene& scene);
+/// How many false alerts are to be expected, and of which kinds; empty when nothing is watched.
+[[nodiscard]] std::string budget_words(const AlarmBudget& budget);
 /// "between A and B", "at A".
 [[nodiscard]] std::string beginning_words(const std::optional<Instant>& at,
                                           const std::optional<Period>& between);

@@ -1,15 +1,18 @@
 #include "daemon/render/status_json.hpp"
 
+#include <algorithm>
+
 #include "daemon/render/json_parts.hpp"
 #include "daemon/version.hpp"
 
 namespace agreed {
 namespace {
 
-bool needs_attention(const ComparisonView& view, const ComparisonSettings& settings, Instant now) {
+/// `prove_within` is counted in measured_at, so the newest pair of the window says how late it is.
+bool needs_attention(const ComparisonView& view, const ComparisonSettings& settings) {
   if (view.verdict == Verdict::gathering) return true;
   return view.verdict == Verdict::inconclusive && settings.prove_within && view.verdict_since &&
-         now - *view.verdict_since > *settings.prove_within;
+         view.window.to && *view.window.to - *view.verdict_since > *settings.prove_within;
 }
 
 Json service_of(const Snapshot& snapshot) {
@@ -106,6 +109,7 @@ Json comparisons_of(const Snapshot& snapshot) {
                     {"verdict", to_string(view.verdict)},
                     {"verdict_since", json_time(view.verdict_since)},
                     {"verdict_reason", json_words(view.verdict_reason)},
+                    {"agreement_lost_at", json_time(view.agreement_lost)},
                     {"pairs", view.window.pairs},
                     {"largest_bias", largest_bias(view)},
                     {"alerts", alerts == snapshot.alerts_of_comparison.end() ? 0 : alerts->second}});
@@ -113,12 +117,44 @@ Json comparisons_of(const Snapshot& snapshot) {
   return list;
 }
 
-Json budget_of(const AlarmBudget& budget) {
+// 3-statistics 3.4 and 3.2: what is not shared out, since it does not come back year by year.
+constexpr double kLostAtTheEdge = 0.06, kLostAtTheEdgeOfSmallWindows = 0.19, kBiasedStandards = 0.04;
+constexpr int kLargeWindow = 200;
+
+/// Alerts outside the yearly number, each with the share of its subjects that it may call falsely.
+Json stated_apart(const Settings& settings) {
+  int comparisons = 0, charts = 0;
+  bool large_windows = true;
+  for (const ComparisonSettings& comparison : settings.comparisons) {
+    const Measurand& measurand = settings.of(comparison.measurand);
+    if (measurand.decision_levels.empty() || !measurand.allowable) continue;
+    ++comparisons;
+    large_windows = large_windows && comparison.window_pairs >= kLargeWindow;
+  }
+  for (const ChartSettings& chart : settings.charts)
+    charts += std::any_of(chart.lots.begin(), chart.lots.end(), [](const Lot& lot) { return lot.reference; });
+  Json apart = Json::object();
+  if (comparisons > 0)
+    apart["agreement_lost"] = {
+        {"subjects", comparisons},
+        {"share_at_most", large_windows ? kLostAtTheEdge : kLostAtTheEdgeOfSmallWindows},
+        {"of",
+         "comparisons whose bias is exactly the allowable difference, within 1,000 pairs; far fewer below"}};
+  if (charts > 0)
+    apart["check_standard_biased"] = {{"subjects", charts},
+                                      {"share_at_most", kBiasedStandards},
+                                      {"of", "charts with a reference value, once for good"}};
+  return apart;
+}
+
+Json budget_of(const Settings& settings) {
+  const AlarmBudget& budget = settings.alarm_budget;
   Json by_kind = Json::object();
   for (const auto& [kind, expected] : budget.by_kind) by_kind[kind] = json_number(expected);
   return {{"false_alerts_per_year", json_number(budget.allowed_per_year)},
           {"expected", json_number(budget.expected_per_year)},
-          {"by_kind", std::move(by_kind)}};
+          {"by_kind", std::move(by_kind)},
+          {"apart", stated_apart(settings)}};
 }
 
 }  // namespace
@@ -130,8 +166,8 @@ const char* overall(const Snapshot& snapshot) {
   for (std::size_t i = 0; i < snapshot.comparisons.size(); ++i) {
     if (!snapshot.comparisons[i]) continue;
     const ComparisonView& view = *snapshot.comparisons[i];
-    alert = alert || view.verdict == Verdict::disagreement_shown;
-    attention = attention || needs_attention(view, snapshot.settings->comparisons.at(i), snapshot.at);
+    alert = alert || view.verdict == Verdict::disagreement_shown || view.agreement_lost;
+    attention = attention || needs_attention(view, snapshot.settings->comparisons.at(i));
   }
   if (alert) return "alert";
   return attention ? "attention" : "ok";
@@ -147,7 +183,7 @@ std::string status_json(const Snapshot& snapshot) {
       {"analyzers", analyzers_of(snapshot)},
       {"comparisons", comparisons_of(snapshot)},
       {"alerts", {{"open", snapshot.alerts_open}, {"acknowledged", snapshot.alerts_acknowledged}}},
-      {"alarm_budget", budget_of(snapshot.settings->alarm_budget)},
+      {"alarm_budget", budget_of(*snapshot.settings)},
       {"chain", {{"sequence", snapshot.chain.sequence}, {"sha256", snapshot.chain.sha256}}}};
   return json_text(status);
 }

@@ -211,6 +211,19 @@ std::vector<Fault> faults_between_keys() {
        "false_alerts_per_year", "own in_control_run_length settings use up 14.6 a year"},
       {"a budget beyond sense", "false_alerts_per_year: 1000\n" + kGood, 1, 24, "false_alerts_per_year",
        "expected at least 20", 2},
+      {"a weighted fit beside a constant error",
+       with("every: 2h", "fit: weighted_deming\n    error_model: constant"), 28, 18,
+       "comparisons.protein.error_model",
+       "found 'constant' beside fit: weighted_deming, expected proportional"},
+      {"sds that hold at one level",
+       with("every: 2h", "error_model: proportional\n    error_ratio: {sd_x: 0.02, sd_y: 0.02}"), 27, 18,
+       "comparisons.protein.error_model", "expected error_ratio: {lambda: ...}"},
+      {"sds beside the weighted fit",
+       with("every: 2h", "fit: weighted_deming\n    error_ratio: {sd_x: 0.02, sd_y: 0.02}"), 27, 10,
+       "comparisons.protein.fit", "expected error_ratio: {lambda: ...}"},
+      {"a mixed error from replicates",
+       with("every: 2h", "error_model: mixed\n    error_ratio: from_replicates"), 27, 18,
+       "comparisons.protein.error_model", "only check standards at two levels tell both parts"},
       {"a window longer than the time between false alerts", with("every: 2h", "every: 5d"), 23, 13,
        "comparisons.protein.window", "expected fewer than the 146 pairs"},
   };
@@ -220,12 +233,6 @@ std::vector<Fault> faults_of_what_comes_later() {
   return {
       {"classical charts", with("baseline: 30", "method: classical"), 17, 18, "charts.method",
        "found 'classical', which is not available in this version yet"},
-      {"weighted fit", with("every: 2h", "fit: weighted_deming"), 27, 10, "comparisons.protein.fit",
-       "not available in this version yet"},
-      {"an established relation", with("every: 2h", "relation: identity"), 27, 5,
-       "comparisons.protein.relation", "not available in this version yet"},
-      {"lambda from replicates", with("every: 2h", "error_ratio: from_replicates"), 27, 18,
-       "comparisons.protein.error_ratio", "not available in this version yet"},
       {"run rules", with("baseline: 30", "run_rules: [{trend: 6}]"), 17, 10, "charts.run_rules",
        "not available in this version yet"},
       {"a mapped format",
@@ -264,6 +271,22 @@ TEST_CASE("the configuration that the faults are put into is good") {
   const ConfigResult result = parse_config(kGood, "/nowhere/agreed.yaml");
   CHECK(result.config.has_value());
   CHECK(result.problems.empty());
+}
+
+TEST_CASE("an established relation is a word or a whole line") {
+  const ConfigResult word = parse_config(with("every: 2h", "relation: identity"), "agreed.yaml");
+  REQUIRE(word.config);
+  CHECK(word.config->settings->comparisons[0].relation == EstablishedLine{0, 1});
+  const ConfigResult line =
+      parse_config(with("every: 2h", "relation: {intercept: -0.1, slope: 1.02}"), "agreed.yaml");
+  REQUIRE(line.config);
+  CHECK(line.config->settings->comparisons[0].relation == EstablishedLine{-0.1, 1.02});
+  CHECK_FALSE(parse_config(kGood, "agreed.yaml").config->settings->comparisons[0].relation);
+  for (const char* bad : {"relation: {slope: 1.02}", "relation: {intercept: 0}",
+                          "relation: {intercept: 0, slope: 0}", "relation: one_to_one", "relation: {}"}) {
+    INFO(bad);
+    CHECK_FALSE(parse_config(with("every: 2h", bad), "agreed.yaml").config);
+  }
 }
 
 TEST_CASE("faults of structure are told at their place") {

@@ -149,6 +149,23 @@ TEST_CASE("error ratios") {
   CHECK(lambda.lambda == Approx(1.5));
 }
 
+TEST_CASE("how errors grow, and the fit that goes with it") {
+  const auto comparison = [](const std::string& setting) {
+    std::string text = kMill;
+    text.replace(text.find(", window: {pairs: 100, age: none}"), 33, setting);
+    return parsed(text).settings->comparisons[0];
+  };
+  CHECK(comparison("").error_growth == ErrorGrowth::constant);
+  CHECK(comparison("").fit == FitMethod::deming);
+  CHECK(comparison(", error_model: proportional").error_growth == ErrorGrowth::proportional);
+  CHECK(comparison(", error_model: proportional").fit == FitMethod::deming);
+  CHECK(comparison(", error_model: mixed").error_growth == ErrorGrowth::mixed);
+  const ComparisonSettings weighted = comparison(", fit: weighted_deming, error_ratio: {lambda: 1.5}");
+  CHECK(weighted.fit == FitMethod::weighted_deming);
+  CHECK(weighted.error_growth == ErrorGrowth::proportional);
+  CHECK(comparison(", error_ratio: from_replicates").error_ratio.source == ErrorSource::replicates);
+}
+
 TEST_CASE("a route with every filter, and one with none") {
   const Config config = parsed(kMill +
                                "alerts:\n"

@@ -7,7 +7,7 @@ import math
 import numpy as np
 from scipy import special, stats
 
-from independent_chart import PAIRS, between, limit_for, normal_score, rss, t_quantile
+from independent_chart import PAIRS, PAIRS_ON_A_LINE, between, limit_for, normal_score, rss, t_quantile
 
 
 def pooled(charts):
@@ -148,6 +148,31 @@ class Fit:
                 "p": stats.f.sf(ratio, self.n - 2, df)}
 
 
+def curvature_p(fit):
+    """F test of the square of the fitted true value in the residuals."""
+    w = fit.fitted_true() - fit.fitted_true().mean()
+    straight, bent = np.column_stack([np.ones(fit.n), w]), np.column_stack([np.ones(fit.n), w, w * w])
+    rest = [float(((fit.residuals - d @ np.linalg.lstsq(d, fit.residuals, rcond=None)[0]) ** 2).sum())
+            for d in (straight, bent)]
+    return stats.f.sf((rest[0] - rest[1]) / (rest[1] / (fit.n - 3)), 1, fit.n - 3)
+
+
+def chance_of_agreement(level, scale, pairs):
+    """Of showing agreement at one look, the bias staying what it is, at a standard error of `scale` times this one."""
+    t, se = t_quantile(0.95, pairs - 2), level["se"] * scale
+    room, bias = level["allowable"], abs(level["bias"])
+    return stats.norm.cdf((room - bias) / se - t) - stats.norm.cdf(t - (room + bias) / se)
+
+
+def pairs_to_agreement(levels, pairs):
+    """More pairs for a chance of 80 % at every level, each number tried in turn."""
+    needed = pairs
+    for level in levels:
+        while chance_of_agreement(level, math.sqrt(pairs / needed), needed) < 0.8:
+            needed += 1
+    return needed - pairs
+
+
 def differences(x, y, allowable):
     """Bland and Altman 1999, Clopper and Pearson 1934."""
     d = y - x
@@ -215,9 +240,31 @@ class PairChange:
         self.between = between(inside, self.k, n)
 
 
-def pair_change(x, y, error):
+class DepartureFromLine:
+    """Do the pairs from some moment on lie on a line of their own, and not on the established one?"""
+
+    def __init__(self, x, y, ratio, relation):
+        n, delta = len(x), 1 / ratio
+        intercept, slope = relation
+        v = y - intercept - slope * x
+        w = delta * x + slope * (y - intercept)
+        whole = float((v**2).sum())
+
+        def around_own_line(k):
+            design = np.column_stack([np.ones(n - k), w[k:] - w.mean()])
+            coefficients = np.linalg.lstsq(design, v[k:], rcond=None)[0]
+            return float(((v[k:] - design @ coefficients) ** 2).sum())
+        inside = {k: float((v[:k] ** 2).sum()) + around_own_line(k) for k in range(0, n - 2)}
+        self.k = min(inside, key=lambda k: (inside[k], k))
+        f = (whole - inside[self.k]) / 2 / (inside[self.k] / (n - 3))
+        self.score = normal_score(stats.f.sf(f, 2, n - 3) / 2)
+        self.between = between(inside, self.k, n)
+
+
+def pair_change(x, y, error, relation=None):
     """The change at the estimated ratio; its score counts only if it holds at both ends of the ratio's interval."""
-    at = [PairChange(x, y, r) for r in (error.low, error.ratio, error.high)]
+    ratios = (error.low, error.ratio, error.high)
+    at = [DepartureFromLine(x, y, r, relation) if relation else PairChange(x, y, r) for r in ratios]
     middle = at[1]
     middle.score = min(c.score for c in at)
     return middle
@@ -237,10 +284,12 @@ def xy(pairs):
 class Comparison:
     """Pairs folded one by one: which are kept, when the pair chart speaks, what is left in the window."""
 
-    def __init__(self, pairs, error_at, capacity, warning, least_p):
+    def __init__(self, pairs, error_at, capacity, warning, least_p, relation=None):
         self.error_at, self.capacity, self.least_p = error_at, capacity, least_p
-        self.warning, self.warning_limit = warning, limit_for(PAIRS, warning)
-        self.critical_limit = limit_for(PAIRS, 10 * warning)
+        table = PAIRS_ON_A_LINE if relation else PAIRS
+        self.warning, self.warning_limit = warning, limit_for(table, warning)
+        self.critical_limit = limit_for(table, 10 * warning)
+        self.relation = relation  # until a change was told
         self.pairs, self.stretch, self.held = pairs, [], []
         self.severity, self.change, self.restarted = None, None, False
         self.line = None  # as it stood after the pair before
@@ -283,9 +332,9 @@ class Comparison:
         self.change = None
         if error is None or len(self.stretch) < 7:
             return
-        self.change = pair_change(*xy(self.stretch), error)
+        self.change = pair_change(*xy(self.stretch), error, self.relation)
         if self.change.score > self.critical_limit:
-            self.severity, self.restarted = "critical", True
+            self.severity, self.restarted, self.relation = "critical", True, None
             self.before = self.stretch[:self.change.k]
             self.stretch = self.stretch[self.change.k:]
             self.change = None if len(self.stretch) < 7 else pair_change(*xy(self.stretch), error)

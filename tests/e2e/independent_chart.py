@@ -13,6 +13,8 @@ from scipy import optimize, special, stats
 LEVEL = ([3.3, 3.5, 3.7, 3.86, 4.0, 4.2, 4.4, 4.6, 4.8], [258, 483, 908, 1613, 2663, 5708, 12840, 30600, 75100])
 PRECISION = ([3.0, 3.3, 3.5, 3.7, 3.86, 4.0, 4.2, 4.4], [479, 1203, 2363, 4902, 9130, 15370, 35200, 84700])
 PAIRS = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6, 4.8], [795, 2670, 4440, 9490, 21300, 50500, 129000])
+PAIRS_ON_A_LINE = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6], [776, 2483, 3976, 8195, 18465, 41540])
+PAIRS_LAW = 1.11  # beyond a table of pairs ln(run length) goes on as h^2/2 - 1.11 ln h
 NOT_CONFIRMED = 0.9  # a score so far below its limit takes the signal back
 WITHIN = 3.0         # log-likelihood by which a start may be worse than the best one
 D2 = 2 / math.sqrt(math.pi)
@@ -20,7 +22,14 @@ D2 = 2 / math.sqrt(math.pi)
 
 def limit_for(table, run_length):
     limits, lengths = table
-    assert lengths[0] <= run_length <= lengths[-1], "outside the table"
+    assert lengths[0] <= run_length, "below the table"
+    if run_length > lengths[-1]:
+        assert table is PAIRS_ON_A_LINE, "beyond the table"
+
+        def beyond(h):
+            return h * h / 2 - PAIRS_LAW * math.log(h)
+        return optimize.brentq(lambda h: math.log(lengths[-1]) + beyond(h) - beyond(limits[-1]) - math.log(run_length),
+                               limits[-1], 10, xtol=1e-13)
     return float(np.interp(math.log(run_length), np.log(lengths), limits))
 
 
@@ -159,6 +168,7 @@ class Chart:
         learned = self.learned()
         point["repeatability"] = None if len(learned) < 2 else \
             (moving_range_degrees_of_freedom(len(learned)), moving_range_mean(learned) / D2)
+        point["level"] = float(learned.mean())
 
     def learned(self):
         """The readings that describe the standard: while a change is open, those before its start."""

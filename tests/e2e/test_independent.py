@@ -9,6 +9,7 @@ from scipy import odr
 import independent
 import independent_chart
 import independent_diagnosis
+import independent_weighted
 from harness import CONFIG, SiteTest
 from plant import START, csv, rfc3339
 
@@ -125,10 +126,13 @@ class Independent(SiteTest):
         worst = max(self.seen, default=(0.0, "nothing"))
         print(f"{len(self.seen)} numbers compared, worst {worst[0]:.1e} at {worst[1]} ... ", end="", file=sys.stderr)
 
-    def follow(self, mill, capacity=40, decimals=3):
+    def follow(self, mill, capacity=40, decimals=3, extra="", relation=None, allowed=allowable):
         """Drops the mill on a service and compares all it shows; the independent charts and comparison."""
         config = CONFIG.format(port=0, rescan="1s", decimals=3, routes="    []")
-        config = config.replace("y: line2,", f"y: line2, window: {{pairs: {capacity}}},")
+        config = config.replace("y: line2,", f"y: line2, window: {{pairs: {capacity}}},{extra}")
+        if allowed is not allowable:
+            config = config.replace("allowable_difference: {absolute: 0.2, percent: 1.5}",
+                                    f"allowable_difference: {{absolute: {allowed(0)}}}")
         if decimals is None:  # the smallest step seen counts
             config = config.replace("    decimals: 3\n", "")
         site = self.make_site(config=config).start()
@@ -139,19 +143,33 @@ class Independent(SiteTest):
             charts[analyzer, standard] = chart
             shown = site.get(f"/api/charts/{analyzer}/{standard}/protein?points=500")
             self.compare(chart.shown(REFERENCE.get(standard)), shown, f"{analyzer}/{standard}")
-        comparison = self.compare_pairs(mill, charts, capacity, site.get("/api/comparisons/protein?pairs=500"))
+        shown = site.get("/api/comparisons/protein?pairs=500")
+        comparison = self.compare_pairs(mill, charts, capacity, shown, relation, allowed)
+        self.compare_budget(site.get("/api/status")["alarm_budget"])
+        self.shown = shown
         self.report()
         self.assertEqual(self.wrong, [], "\n" + "\n".join(self.wrong))
         self.assertGreater(len(self.seen), 300)
         return charts, comparison
 
-    def compare_pairs(self, mill, charts, capacity, shown):
+    def compare_budget(self, shown):
+        a_year = 365 * 24
+        charts = len(CHARTS) * 2 * a_year / 8 / CHART_RUN_LENGTH
+        warnings, outliers = a_year / 2 / PAIR_RUN_LENGTH, a_year / 2 / OUTLIER_RUN_LENGTH
+        kinds = {"check_standard_unstable": charts, "agreement_drifting": warnings, "pair_outlier": outliers,
+                 "sample_scatter": outliers}
+        self.compare({"false_alerts_per_year": 6.0, "expected": sum(kinds.values()), "by_kind": kinds}, shown, "budget")
+        self.assertEqual(set(shown["by_kind"]), set(kinds))
+        self.assertEqual(shown["apart"]["agreement_lost"]["subjects"], 1)
+
+    def compare_pairs(self, mill, charts, capacity, shown, relation=None, allowed=allowable):
         def error_at(time):
             sides = [independent.repeatability_at([c for (name, _), c in charts.items() if name == side], time)
                      for side in ("line1", "line2")]
             return independent.ErrorRatio(*sides) if all(sides) else None
         pairs = [independent.Pair(sample, later, x, y) for sample, _, x, later, y in mill.pairs]
-        folded = independent.Comparison(pairs, error_at, capacity, PAIR_RUN_LENGTH, 1 / OUTLIER_RUN_LENGTH)
+        folded = independent.Comparison(pairs, error_at, capacity, PAIR_RUN_LENGTH, 1 / OUTLIER_RUN_LENGTH,
+                                        relation)
         window, error = folded.window(), error_at(pairs[-1].time)
         x, y = independent.xy(window)
         fit = independent.Fit(x, y, error)
@@ -161,8 +179,9 @@ class Independent(SiteTest):
         self.compare({
             "window": {"pairs": len(window), "capacity": capacity, "from": window[0].time, "to": window[-1].time},
             "error": error.shown(), "fit": fit.shown(), "scatter": fit.scatter(),
-            "levels": [fit.level(level, allowable(level), LEAST_PAIRS) for level in DECISION_LEVELS],
-            "difference": independent.differences(x, y, allowable),
+            "levels": [fit.level(level, allowed(level), LEAST_PAIRS) for level in DECISION_LEVELS],
+            "difference": independent.differences(x, y, allowed),
+            "relation": {"intercept": relation[0], "slope": relation[1]} if relation else None,
             "range": {"reliability_ratio": reliability, "adequate": reliability >= 0.95, "covers_levels": covered},
             "pair_chart": self.pair_chart(folded),
             "outliers": [{"sample": p.sample, "residual": p.at_arrival[0], "p": p.at_arrival[1]}
@@ -170,6 +189,8 @@ class Independent(SiteTest):
             "pairs": [{"sample": p.sample, "measured_at": p.time, "x": p.x, "y": p.y, "in_window": p in window,
                        "outlier": p.outlier, "residual": fit.of_own_pair(p) if p in window else fit.of_new_pair(p)}
                       for p in pairs]}, shown, "comparison")
+        if len(folded.stretch) == capacity == len(window):  # the window has just been renewed
+            self.assertEqual("curved" in shown["warnings"], independent.curvature_p(fit) < 0.01)
         self.compare(independent.concordance(x, y), shown["concordance"], "concordance")
         if len(window) >= LEAST_PAIRS:  # fewer have no rank interval
             self.compare(independent.passing_bablok(x, y), shown["robust"], "robust")
@@ -198,7 +219,8 @@ class Independent(SiteTest):
     def pair_chart(folded):
         out = {"pairs": len(folded.stretch), "score": folded.change.score if folded.change else None,
                "limit": folded.warning_limit, "critical_limit": folded.critical_limit,
-               "in_control_run_length": folded.warning, "severity": folded.severity}
+               "in_control_run_length": folded.warning, "severity": folded.severity,
+               "against": "established_line" if folded.relation else "own_line"}
         if folded.severity == "warning":
             first, last = folded.change.between
             out.update(state="unstable", started_at=folded.stretch[folded.change.k].time,
@@ -247,6 +269,78 @@ class Independent(SiteTest):
                                          pair=lambda i: step if i >= 24 else 0.0))
         self.assertEqual(comparison.severity, "critical")
 
+    def test_pairs_that_keep_to_an_established_line(self):
+        _, comparison = self.follow(Mill(seed=1), extra=" relation: {intercept: 0.01, slope: 1.0},", relation=(0.01, 1.0))
+        self.assertEqual(comparison.severity, None)
+
+    def test_pairs_that_leave_an_established_line_a_little(self):
+        mill = Mill(seed=24, pair=lambda i: -0.01 + (0.035 if i >= 30 else 0.0))
+        _, comparison = self.follow(mill, extra=" relation: identity,", relation=(0.0, 1.0))
+        self.assertEqual(comparison.severity, "warning")
+
+    def test_pairs_that_leave_an_established_line(self):
+        mill = Mill(seed=7, pair=lambda i: 0.12 if i >= 24 else 0.0)
+        _, comparison = self.follow(mill, extra=" relation: identity,", relation=(0.0, 1.0))
+        self.assertEqual(comparison.severity, "critical")
+
+    def test_a_curved_relation(self):
+        mill = Mill(seed=9)
+        mill.pairs = [(s, t, x, later, mill.rounded(y + 0.03 * (x - 11.8) ** 2)) for s, t, x, later, y in mill.pairs]
+        self.follow(mill)
+        self.assertIn("curved", self.shown["warnings"])
+
+    def test_what_would_prove_agreement(self):
+        self.follow(Mill(seed=1), allowed=lambda level: 0.02, extra=" prove_within: 10h,")
+        proof, levels = self.shown["proof"], self.shown["levels"]
+        self.assertTrue(proof["overdue"])
+        self.assertEqual(proof["aim"], "agreement_shown")
+        self.assertEqual(proof["more_pairs"], independent.pairs_to_agreement(levels, PAIRS))
+        level = next(v for v in levels if v["level"] == proof["level"])
+        factor = proof["sd_needed"] / proof["residual_sd"]
+        self.assertAlmostEqual(independent.chance_of_agreement(level, factor, PAIRS), 0.8, delta=1e-7)
+
     def test_one_gross_pair(self):
         _, comparison = self.follow(Mill(seed=8, pair=lambda i: 1.5 if i == 25 else 0.0))
         self.assertEqual([p.sample for p in comparison.pairs if p.outlier], ["S-025"])
+
+    def follow_growing(self, growth, settings, method):
+        """Errors that grow with the level: the line, its errors and what rests on them, of the last pair."""
+        mill = Mill(seed=31)
+        config = CONFIG.format(port=0, rescan="1s", decimals=3, routes="    []")
+        site = self.make_site(config=config.replace("y: line2,", f"y: line2, {settings},")).start()
+        mill.drop_on(site)
+        last = mill.pairs[-1][3]
+        sides = {"line1": [], "line2": []}
+        for (analyzer, _), readings in mill.checks.items():
+            points = [p for p in independent_chart.Chart(readings, 3, CHART_RUN_LENGTH).points if p["time"] <= last]
+            sides[analyzer].append(points[-1]["repeatability"] + (points[-1]["level"],))
+        error = independent_weighted.Error(growth, sides["line1"], sides["line2"])
+        x, y = (np.array([p[i] for p in mill.pairs]) for i in (2, 4))
+        fit = independent_weighted.Weighted(x, y, error, method)
+        shown = site.get("/api/comparisons/protein?pairs=500")
+        self.assertEqual(shown["window"]["pairs"], PAIRS)
+        self.compare({"error": error.shown(), "fit": fit.shown(), "scatter": fit.scatter(),
+                      "levels": [fit.level(level, allowable(level)) for level in DECISION_LEVELS]}, shown, growth)
+        self.report()
+        self.assertEqual(self.wrong, [], "\n" + "\n".join(self.wrong))
+        # Standard errors come from a jackknife that is as good as n refits to 0.2 %.
+        jackknife, york = fit.covariances()
+        for name, expected in (("se_intercept", jackknife[0, 0]), ("se_slope", jackknife[1, 1]),
+                               ("analytic_se_intercept", york[0, 0]), ("analytic_se_slope", york[1, 1])):
+            self.assertAlmostEqual(shown["fit"][name] / expected**0.5, 1, delta=2e-3, msg=name)
+        self.assertAlmostEqual(shown["fit"]["cov"] / jackknife[0, 1], 1, delta=4e-3)
+        for level in shown["levels"]:
+            design = np.array([1.0, level["level"]])
+            se = float(design @ jackknife @ design) ** 0.5
+            self.assertAlmostEqual(level["se"] / se, 1, delta=2e-3)
+            self.assertAlmostEqual(level["high"] - level["bias"],
+                                   independent_chart.t_quantile(0.95, PAIRS - 2) * level["se"], delta=1e-9)
+
+    def test_errors_proportional_to_the_level(self):
+        self.follow_growing("proportional", "error_model: proportional", "york")
+
+    def test_weighted_deming(self):
+        self.follow_growing("proportional", "fit: weighted_deming", "weighted_deming")
+
+    def test_errors_with_a_constant_and_a_growing_part(self):
+        self.follow_growing("mixed", "error_model: mixed", "york")

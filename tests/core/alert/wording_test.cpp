@@ -7,6 +7,7 @@
 
 #include <doctest/doctest.h>
 
+#include "core/alert/details.hpp"
 #include "tests/core/alert/harrow_mill.hpp"
 
 using namespace agreed;
@@ -192,15 +193,82 @@ Next: 1. Run the check standards on line1 and line2 now, to see which one moved.
 }
 
 TEST_CASE("the words of a pair set aside") {
-  CHECK(words(pair_alert(
-            AlertKind::pair_outlier, Severity::notice,
-            {{"sample", "S-104"}, {"x", 11.2}, {"y", 12.9}, {"residual", 6.07}, {"p", 0.00003425}})) ==
+  CHECK(words(pair_alert(AlertKind::pair_outlier, Severity::notice,
+                         {{"sample", "S-104"},
+                          {"x_value", 11.2},
+                          {"y_value", 12.9},
+                          {"residual", 6.07},
+                          {"p", 0.00003425}})) ==
         R"(Split sample S-104 does not fit the line of line1 and line2 for protein
 Split sample S-104 is far off the line of analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2) for protein. line1 gave 11.20 g/100 g, line2 gave 12.90 g/100 g. Its residual is 6.1 standard deviations. So far off by chance: about one pair in 29197. It is kept and shown, but set aside from the fit.
 Likely cause: the sample (mix-up, poor split, preparation) or one wild result; one pair cannot tell.
 In doubt: the results of sample S-104 on both analyzers.
 Next: 1. Measure what is left of the sample again on both analyzers. 2. Check that both results belong to the same sample and how it was split. 3. Acknowledge this alert, with what was found.
 )");
+}
+
+TEST_CASE("the words of pairs off an established line") {
+  const std::string text = words(pair_alert(AlertKind::agreement_drifting, Severity::warning,
+                                            {{"score", 4.5},
+                                             {"limit", 4.3},
+                                             {"shift", 0.05},
+                                             {"pairs_after", 12.0},
+                                             {"relation_intercept", -0.1},
+                                             {"relation_slope", 1.02}}));
+  CHECK(
+      text.find(
+          "protein: the newest 12 pairs do not lie on the established line line2 = -0.100 g/100 g + 1.0200 x "
+          "line1 (change score 4.50, limit 4.30). Since then line2 reads 0.050 g/100 g higher") !=
+      std::string::npos);
+}
+
+TEST_CASE("the words of samples that scatter") {
+  CHECK(
+      words(pair_alert(AlertKind::sample_scatter, Severity::notice,
+                       {{"observed_sd", 0.0512},
+                        {"expected_sd", 0.0285},
+                        {"sd_ratio", 1.796},
+                        {"p", 0.00001},
+                        {"pairs", 200.0}})) ==
+      R"(Split samples of line1 and line2 scatter more for protein than the analyzers' repeatability explains
+Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: the 200 pairs of the window scatter about the line with a standard deviation of 0.051 g/100 g; repeatability explains 0.029 g/100 g, so it is 1.80 times as large. As much by chance: about one window in 100000. The samples differ between the analyzers by more than repeatability: what holds for the mean need not hold for a single sample.
+Likely cause: samples that differ between the analyzers (splitting, matrix, ageing between the two runs), or a repeatability from check standards that is too small for real samples.
+In doubt: the agreement of single samples of protein; the intervals shown rest on the scatter that was seen and stay valid.
+Next: 1. Look at how samples are split and how long lies between the two measurements. 2. Compare the pairs of one product or one campaign at a time. 3. Measure a few samples in replicate on both analyzers: if replicates agree, the samples differ. 4. Acknowledge this alert.
+)");
+}
+
+TEST_CASE("the words of agreement unproven: pairs that would decide it, or why none would") {
+  const Details known = {{"inconclusive_since", "2026-02-05T06:00:00.000Z"},
+                         {"pairs", 46.0},
+                         {"window_pairs", 200.0},
+                         {"residual_sd", 0.03},
+                         {"level", 13.0},
+                         {"bias", 0.12},
+                         {"allowable", 0.2},
+                         {"aim", "agreement_shown"}};
+  Details decided = known;
+  decided.insert(decided.end(), {{"pairs_needed", 24.0}, {"sd_needed", 0.02}});
+  CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, decided)) ==
+        R"(Agreement of line1 and line2 for protein is still unproven
+Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: the 46 pairs of the window show neither agreement nor disagreement. It hangs on 13.00 g/100 g, where line2 reads 0.120 g/100 g higher than line1 and 0.200 g/100 g is allowable. If the bias stays so, about 24 more pairs would show that they agree (chance 80 %). With the pairs of now it takes a scatter about the line of 0.020 g/100 g instead of 0.030 g/100 g, as from means of 3 replicates on both analyzers.
+Since: inconclusive since 2026-02-05 06:00 UTC.
+In doubt: protein results of both analyzers used as one: nothing shows that they may be.
+Next: 1. Run more split samples, at the decision levels above all, or each of them in replicate. 2. Acknowledge this alert.
+)");
+  Details large = decided, edge = known, uncovered = known;
+  set_detail(large, "pairs_needed", 300.0);
+  CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, large))
+            .find("about 300 more pairs would show that they agree (chance 80 %); the window holds only 200 "
+                  "pairs, so it "
+                  "would have to be larger.") != std::string::npos);
+  edge.push_back({"reason", "bias_as_large_as_allowable"});
+  CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, edge))
+            .find("about as large as what is allowable, so more pairs will not decide it.") !=
+        std::string::npos);
+  uncovered.push_back({"reason", "not_covered"});
+  CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, uncovered))
+            .find("No sample reaches that level") != std::string::npos);
 }
 
 TEST_CASE("the words of two pairs set aside") {

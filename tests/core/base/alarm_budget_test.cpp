@@ -61,6 +61,18 @@ TEST_CASE("a chart read three times a day with a share of 0.6 a year gets 3,650 
   CHECK_FALSE(shares.overspent);
 }
 
+TEST_CASE("a test that is not made adds nothing to what is expected and leaves the others their limits") {
+  BudgetEntry keeps = every(hours(2)), bare = every(hours(2));
+  keeps.tests_outliers = false;
+  bare.tests_scatter = false;
+  const auto shares = share_alarm_budget(6, {}, {keeps, bare});
+  CHECK(shares.budget.expected_per_year == Approx(4.5).epsilon(1e-12));
+  CHECK(shares.budget.by_kind.at("agreement_drifting") == Approx(3).epsilon(1e-12));
+  CHECK(shares.budget.by_kind.at("pair_outlier") == Approx(0.75).epsilon(1e-12));
+  CHECK(shares.budget.by_kind.at("sample_scatter") == Approx(0.75).epsilon(1e-12));
+  CHECK(shares.comparisons[0].warning == shares.comparisons[1].warning);
+}
+
 TEST_CASE("an own run length is taken off first and the rest shared evenly") {
   // One chart with 730 for each score at 1,095 readings a year uses 3 a year; 3 are left for two others.
   const std::vector<BudgetEntry> charts = {every(hours(8), 730.0), every(hours(8)), every(hours(24))};

@@ -61,20 +61,26 @@ class Record final : public History {
       return r.analyzer == chart.analyzer && r.standard == chart.standard && r.measurand == chart.measurand;
     });
   }
-  std::vector<SplitReading> splits(ComparisonIndex) override {
-    auto rows = select<SplitReading>([](const SplitReading&) { return true; });
+  std::vector<SplitReading> splits(ComparisonIndex index) override {
+    auto rows = select<SplitReading>([&](const SplitReading& r) { return is_of(r, index); });
     std::stable_sort(rows.begin(), rows.end(),
                      [](const SplitReading& a, const SplitReading& b) { return a.sample < b.sample; });
     return rows;
   }
-  std::vector<SplitReading> splits_of(ComparisonIndex, std::string_view sample) override {
-    return select<SplitReading>([&](const SplitReading& r) { return r.sample == sample; });
+  std::vector<SplitReading> splits_of(ComparisonIndex index, std::string_view sample) override {
+    return select<SplitReading>([&](const SplitReading& r) { return r.sample == sample && is_of(r, index); });
   }
   std::vector<Intervention> interventions() override {
     return select<Intervention>([](const Intervention&) { return true; });
   }
 
  private:
+  [[nodiscard]] bool is_of(const SplitReading& reading, ComparisonIndex index) const {
+    const ComparisonSettings& comparison = settings_.of(index);
+    return reading.measurand == comparison.measurand &&
+           (reading.analyzer == comparison.x || reading.analyzer == comparison.y);
+  }
+
   template <class Kind, class Wanted>
   std::vector<Kind> select(Wanted wanted) const {
     std::vector<Kind> found;

@@ -39,6 +39,36 @@ TEST_CASE("state is a function of the set of events: any order of arrival, any b
   }
 }
 
+TEST_CASE(
+    "so it is with errors that grow and with lambda from replicates, late checks and samples included") {
+  struct How {
+    ErrorGrowth growth;
+    FitMethod fit;
+    ErrorSource source;
+  };
+  for (const How how :
+       {How{ErrorGrowth::mixed, FitMethod::deming, ErrorSource::check_standards},
+        How{ErrorGrowth::proportional, FitMethod::weighted_deming, ErrorSource::check_standards},
+        How{ErrorGrowth::proportional, FitMethod::deming, ErrorSource::replicates}}) {
+    auto changed = std::make_shared<Settings>(*harrow_mill());
+    changed->comparisons[0].error_growth = how.growth;
+    changed->comparisons[0].fit = how.fit;
+    changed->comparisons[0].error_ratio.source = how.source;
+    const std::shared_ptr<const Settings> settings = changed;
+    int fits = 0;
+    for (unsigned seed = 71; seed < 75; ++seed) {
+      std::mt19937 random(seed);
+      auto events = weeks(random, 30);
+      const Monitor expected = fold_at_once(events, settings);
+      fits += expected.comparison({0}).view().fit ? 1 : 0;
+      check_same(fold_in_batches(events, random, settings), expected, *settings);
+      std::shuffle(events.begin(), events.end(), random);
+      check_same(fold_in_batches(events, random, settings), expected, *settings);
+    }
+    CHECK(fits >= 2);
+  }
+}
+
 TEST_CASE("what is taken back was never there") {
   const auto settings = harrow_mill();
   for (unsigned seed = 21; seed <= 24; ++seed) {

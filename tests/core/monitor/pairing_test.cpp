@@ -39,6 +39,9 @@ TEST_CASE("replicates are averaged and the first one gives the time") {
   REQUIRE(pairs.size() == 1);
   CHECK(pairs[0].x == doctest::Approx(11.2).epsilon(1e-15));
   CHECK(pairs[0].x_replicates == 3);
+  // 0.2, 0.1 and 0.3 off their mean.
+  CHECK(pairs[0].x_squares == doctest::Approx(0.14).epsilon(1e-12));
+  CHECK(pairs[0].y_squares == 0.0);
   CHECK(pairs[0].at == at(2h));
 }
 

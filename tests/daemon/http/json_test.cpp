@@ -38,6 +38,7 @@ std::string overall_with(Verdict verdict, int hours_ago, int open = 0, int criti
   Snapshot snapshot = full_snapshot();
   ComparisonView view = full_comparison();
   view.verdict = verdict;
+  view.window.to = snapshot.at;
   view.verdict_since = snapshot.at - std::chrono::hours(hours_ago);
   snapshot.comparisons[0] = std::make_shared<const ComparisonView>(view);
   snapshot.alerts_open = open;
@@ -66,11 +67,11 @@ TEST_CASE("the status in full, byte for byte") {
       R"("inbox":{"reachable":false,"reason":"the folder is not there","pending":0},"last_reading_at":null,)"
       R"("charts":{"stable":0,"unstable":0,"learning":1}}],)"
       R"("comparisons":[{"id":"protein","measurand":"protein","x":"line1","y":"line2","verdict":"agreement_shown",)"
-      R"("verdict_since":"2026-01-05T03:00:00.000Z","verdict_reason":null,"pairs":140,)"
+      R"("verdict_since":"2026-01-05T03:00:00.000Z","verdict_reason":null,"agreement_lost_at":null,"pairs":140,)"
       R"("largest_bias":{"level":13.0,"bias":0.02,"allowable":0.2},"alerts":1}],)"
       R"("alerts":{"open":1,"acknowledged":1},)"
       R"("alarm_budget":{"false_alerts_per_year":6.0,"expected":5.5,)"
-      R"("by_kind":{"agreement_drifting":1.5,"check_standard_unstable":4.0}},)"
+      R"("by_kind":{"agreement_drifting":1.5,"check_standard_unstable":4.0},"apart":{}},)"
       R"("chain":{"sequence":7,"sha256":"aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaa"}})";
   CHECK(json.dump() == expected);
   CHECK(status_json(snapshot) == status);
@@ -124,6 +125,59 @@ TEST_CASE("overall is the worst that is to be told") {
   starting.started = starting.ready = false;
   starting.alerts_critical = 1;
   CHECK(std::string(overall(starting)) == "starting");
+}
+
+TEST_CASE("prove_within is counted in the times of the pairs, and agreement that is lost is an alert") {
+  Snapshot snapshot = full_snapshot();
+  snapshot.alerts_open = snapshot.alerts_critical = 0;
+  ComparisonView view = full_comparison();
+  view.verdict = Verdict::inconclusive;
+  view.verdict_since = *view.window.to - std::chrono::hours(24);
+  const auto overall_now = [&] {
+    snapshot.comparisons[0] = std::make_shared<const ComparisonView>(view);
+    return std::string(overall(snapshot));
+  };
+  CHECK(overall_now() == "ok");  // however long ago the newest pair was measured
+  view.verdict_since = *view.window.to - std::chrono::hours(25);
+  CHECK(overall_now() == "attention");
+  view.agreement_lost = view.window.to;
+  CHECK(overall_now() == "alert");
+}
+
+TEST_CASE("what a comparison says of its proof, its relation and agreement that was lost") {
+  Snapshot snapshot = full_snapshot();
+  ComparisonView view = full_comparison();
+  CHECK(comparison_of(snapshot).at("proof").is_null());
+  CHECK(comparison_of(snapshot).at("relation").is_null());
+  CHECK(comparison_of(snapshot).at("agreement_lost_at").is_null());
+  CHECK(comparison_of(snapshot).at("pair_chart").at("against") == "own_line");
+  ProofView proof;
+  proof.overdue = true;
+  proof.level = 13;
+  proof.more_pairs = 24;
+  proof.residual_sd = 0.03;
+  proof.sd_needed = 0.02;
+  view.proof = proof;
+  view.agreement_lost = at_hour(3);
+  view.pair_chart.against_established_line = true;
+  snapshot.comparisons[0] = std::make_shared<const ComparisonView>(view);
+  Settings settings = *snapshot.settings;
+  settings.comparisons[0].relation = EstablishedLine{-0.1, 1.02};
+  settings.measurands[0].decision_levels = {13};
+  settings.measurands[0].allowable = AllowableDifference{0.2, {}};
+  settings.charts[0].lots[0].reference = ReferenceValue{10.6, 0.08, 2};
+  snapshot.settings = std::make_shared<const Settings>(settings);
+  const Json json = comparison_of(snapshot);
+  CHECK(
+      json.at("proof").dump() ==
+      R"({"overdue":true,"level":13.0,"aim":"agreement_shown","more_pairs":24,"residual_sd":0.03,"sd_needed":0.02,"reason":null})");
+  CHECK(json.at("relation").dump() == R"({"intercept":-0.1,"slope":1.02})");
+  CHECK(json.at("agreement_lost_at") == "2026-01-05T03:00:00.000Z");
+  CHECK(json.at("pair_chart").at("against") == "established_line");
+  const Json apart = Json::parse(status_json(snapshot)).at("alarm_budget").at("apart");
+  CHECK(apart.at("agreement_lost").at("subjects") == 1);
+  CHECK(apart.at("agreement_lost").at("share_at_most") == 0.06);
+  CHECK(apart.at("check_standard_biased").at("subjects") == 1);
 }
 
 TEST_CASE("a service that stopped taking results in is not starting again") {

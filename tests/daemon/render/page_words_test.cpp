@@ -89,6 +89,44 @@ TEST_CASE("a signalling pair chart is named beside a verdict that still stands")
   CHECK(has(known.answer().more[0], "at 2026-01-30 06:03 UTC"));
 }
 
+TEST_CASE("agreement that was lost is named first while nothing is shown since, with the reason") {
+  Known known(Verdict::inconclusive, Verdict::inconclusive, 0.15, 0.08, 0.22, 0.8);
+  known.view->agreement_lost = known.story.snapshot.at - std::chrono::hours(72);
+  known.view->verdict_reason = "restarted_after_change";
+  known.view->window.pairs = 6;
+  known.view->window.since_intervention = known.story.snapshot.at - std::chrono::hours(20);
+  const Answer answer = known.answer();
+  CHECK(answer.kind == AnswerKind::no);
+  CHECK(answer.word == "Lost, not shown again");
+  CHECK(
+      answer.sentence ==
+      "Agreement was lost at 2026-01-28 02:03 UTC and has not been shown again since: a further change was "
+      "found, "
+      "so the comparison began anew at 2026-01-30 06:03 UTC and has 6 of the 20 pairs that agreement takes.");
+  CHECK(answer.since == "since 2026-01-28 02:03 UTC (3 days)");
+  REQUIRE_FALSE(answer.more.empty());
+  CHECK(has(answer.more[0], "do not decide it yet"));
+
+  known.view->verdict_reason = "not_decided";
+  CHECK(has(known.answer().sentence, "the pairs since then neither show it nor the opposite"));
+  known.view->verdict = Verdict::gathering;
+  CHECK(has(known.answer().sentence, "6 of the 20 pairs"));
+  CHECK(known.answer().word == "Lost, not shown again");
+  known.view->verdict = Verdict::disagreement_shown;
+  CHECK(known.answer().word == "No");
+}
+
+TEST_CASE("the alarm budget is one sentence") {
+  CHECK(budget_words(
+            {6,
+             5.54,
+             {{"agreement_drifting", 1.5}, {"check_standard_unstable", 4}, {"sample_scatter", 0.04}}}) ==
+        "By chance alone 5.5 false alerts a year are expected of what is configured (6 are allowed): "
+        "agreement drifting "
+        "1.5, check standard unstable 4.0, sample scatter 0.04.");
+  CHECK(budget_words({}).empty());
+}
+
 TEST_CASE("gathering says how many pairs have come, or what the configuration lacks") {
   Known known(Verdict::gathering, Verdict::gathering, 0, 0, 0, 0);
   known.view->window.pairs = 7;
