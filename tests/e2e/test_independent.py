@@ -205,7 +205,8 @@ class Independent(SiteTest):
         before, after = folded.before, folded.stretch
         if folded.severity == "warning":
             before, after = after[:folded.change.k], after[folded.change.k:]
-        read = {side: [[(time, value, point["set_aside"]) for (time, value), point in zip(mill.checks[chart], charts[chart].points)]
+        read = {side: [[(time, value, point["set_aside"])
+                        for (time, value), point in zip(mill.checks[chart], charts[chart].points)]
                        for chart in mill.checks if chart[0] == side] for side in ("line1", "line2")}
         expected = independent_diagnosis.diagnosis(before, after, error.ratio, read["line1"], read["line2"], 0.001)
         self.compare(expected, shown["diagnosis"], "diagnosis")
@@ -213,7 +214,8 @@ class Independent(SiteTest):
         self.assertLessEqual(doubt["from"], shown["diagnosis"]["started_between"][0])
         known = doubt["from_is"] == "agreement_shown"
         late = [p for p in folded.pairs if p.time > doubt["from"] or not known]
-        self.compare({"pairs": len(late), "samples": [p.sample for p in late], "to": folded.pairs[-1].time}, doubt, "look_back")
+        self.compare({"pairs": len(late), "samples": [p.sample for p in late], "to": folded.pairs[-1].time},
+                     doubt, "look_back")
 
     @staticmethod
     def pair_chart(folded):
