@@ -4,6 +4,7 @@
 
 #include "core/alert/details.hpp"
 #include "core/alert/phrases.hpp"
+#include "core/base/rfc3339.hpp"
 
 namespace agreed {
 namespace {
@@ -41,9 +42,12 @@ struct ComparisonAlert {
   }
 };
 
-/// The diagnosis, when there is one (`moved`, `probability`); otherwise what will decide it.
+/// The diagnosis, when there is one (`moved`, `probability`, `evidence`); otherwise what will decide it.
 std::string which_moved(const ComparisonAlert& pair) {
   const std::string moved = text_in(pair.alert.details, "moved").value_or("");
+  const auto evidence = text_in(pair.alert.details, "evidence");
+  if (evidence && moved == "undecided") return "not decided. " + *evidence;
+  if (evidence) return *evidence;
   const auto probability = pair.number("probability");
   const std::string how_sure = probability ? " (probability " + percent(*probability) + ")" : "";
   if (moved == "x") return pair.x + " has moved" + how_sure + ".";
@@ -54,6 +58,19 @@ std::string which_moved(const ComparisonAlert& pair) {
            "; look at the samples and how they are split.";
   return "not decided; split samples alone cannot tell which of the two moved. The check standards of " +
          pair.both() + " do: more readings of them will decide it.";
+}
+
+/// How far back results are in doubt; empty when that is not known.
+std::string look_back_words(const ComparisonAlert& pair) {
+  const auto pairs = pair.number("look_back_pairs");
+  const auto from = parse_rfc3339(text_in(pair.alert.details, "look_back_from").value_or(""));
+  if (!pairs || !from) return "";
+  const bool of_agreement = text_in(pair.alert.details, "look_back_from_is") == "agreement_shown";
+  const auto samples = list_in(pair.alert.details, "look_back_samples");
+  return std::string(of_agreement ? " Agreement was last shown before that at "
+                                  : " Agreement was never shown before that; the data begin at ") +
+         time_words(from->at) + ": " + counted(*pairs, "pair", "pairs") + " since" +
+         (samples.empty() ? "" : ", samples " + list_words(samples)) + ".";
 }
 
 /// How the line was fitted, when not by plain Deming regression.
@@ -108,7 +125,7 @@ AlertWords lost_words(const ComparisonAlert& pair) {
   words.cause = which_moved(pair);
   words.doubt = pair.measurand + " results of both analyzers" +
                 (level ? " near " + pair.numbers.result(*level) : "") + earliest_start(pair.alert) +
-                ", and decisions that took them as one.";
+                ", and decisions that took them as one." + look_back_words(pair);
   words.steps = {"Do not use " + pair.both() + " as one for " + pair.measurand +
                      "; hold the results in doubt" + earliest_start(pair.alert) + ".",
                  repeat_checks(pair), look_at_both(pair),
@@ -148,7 +165,7 @@ AlertWords drifting_words(const ComparisonAlert& pair) {
   words.since = since_words(pair.alert);
   words.cause = which_moved(pair);
   words.doubt = pair.measurand + " results of " + pair.both() + " taken as one" + earliest_start(pair.alert) +
-                (critical ? "." : ", should the change be confirmed.");
+                (critical ? "." : ", should the change be confirmed.") + look_back_words(pair);
   words.steps = {repeat_checks(pair),
                  critical ? "Hold the " + pair.measurand + " results of both analyzers" +
                                 earliest_start(pair.alert) + " until the verdict is known again."

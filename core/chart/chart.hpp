@@ -9,6 +9,7 @@
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
 #include "core/chart/chart_view.hpp"
+#include "core/chart/check_point.hpp"
 #include "core/chart/repeatability.hpp"
 
 namespace agreed {
@@ -49,6 +50,9 @@ class Chart {
 
   /// Appends the findings that hold now, as if just made: what the alert book is compared with after a fold.
   void conditions(std::vector<Finding>& findings) const;
+
+  /// The newest 500 readings, oldest first, those set aside among them.
+  [[nodiscard]] std::vector<CheckPoint> readings() const;
 
   [[nodiscard]] ChartState state() const;
   [[nodiscard]] ChartView view() const;

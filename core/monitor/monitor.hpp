@@ -14,6 +14,7 @@
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
 #include "core/chart/chart.hpp"
+#include "core/diagnosis/diagnosis.hpp"
 #include "core/monitor/history.hpp"
 #include "core/monitor/pairing.hpp"
 #include "core/pair/comparison.hpp"
@@ -29,6 +30,12 @@ struct MonitorOutcome {
   std::set<ComparisonIndex> comparisons_refolded;
   /// Of those folded again: the samples set aside anywhere in their history.
   std::map<ComparisonIndex, std::vector<std::string>> set_aside;
+};
+
+/// What is known of an open change of a comparison.
+struct ExplainedChange {
+  DiagnosisView diagnosis;
+  LookBackView look_back;
 };
 
 /// Whom a chart's or a comparison's alerts are about.
@@ -52,6 +59,11 @@ class Monitor {
 
   [[nodiscard]] std::vector<Finding> conditions(ChartIndex chart) const;
   [[nodiscard]] std::vector<Finding> conditions(ComparisonIndex comparison) const;
+  /// While a change of the comparison is open: which analyzer moved and what is in doubt, by all that is
+  /// known now. Not folded; it changes with every reading and pair.
+  [[nodiscard]] std::optional<ExplainedChange> explain(ComparisonIndex comparison) const;
+  /// Comparisons with an open change of which this batch may say more.
+  [[nodiscard]] std::vector<ComparisonIndex> explained_anew(const MonitorOutcome& outcome) const;
   [[nodiscard]] const Chart& chart(ChartIndex index) const { return charts_.at(index.value).fold; }
   [[nodiscard]] const Comparison& comparison(ComparisonIndex index) const {
     return comparisons_.at(index.value).fold;
@@ -127,6 +139,8 @@ class Monitor {
   [[nodiscard]] std::optional<std::vector<Repeatability>> standards_at(std::span<const ChartIndex> charts,
                                                                        Instant at,
                                                                        const Traces* traces) const;
+  [[nodiscard]] CheckShift shift_of(std::span<const ChartIndex> charts, const Moment& moment,
+                                    double resolution) const;
   [[nodiscard]] bool concerns(const Intervention& intervention, const ComparisonSettings& comparison) const;
 
   std::shared_ptr<const Settings> settings_;

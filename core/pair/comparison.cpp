@@ -13,6 +13,7 @@
 namespace agreed {
 namespace {
 constexpr std::size_t kRecentPairs = 500;
+constexpr std::size_t kOlderPairs = 500;
 constexpr std::size_t kBiasHistory = 500;
 constexpr double kPlainTail = 0.05;  // each of the two one-sided tests
 constexpr double kCurvedTail = 0.01;
@@ -78,8 +79,9 @@ ErrorRatio Comparison::State::ratio_of_replicates() const {
 
 void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
   const std::int64_t serial = ++pairs_total;
+  if (!first_pair_at) first_pair_at = pair.at;
   recent.push_back({pair, serial});
-  if (recent.size() > kRecentPairs) recent.pop_front();
+  if (recent.size() > kRecentPairs) drop_oldest();
 
   bool hold = false;
   if (fit.exists() && ratio.known) {
@@ -100,6 +102,12 @@ void Comparison::State::add(const Pair& pair, std::vector<Finding>& findings) {
     accept(pair, serial, 0);
   set_aside(outliers.give_up(serial), pair.at, findings);
   if (!hold) evaluate(pair.at, findings);
+}
+
+void Comparison::State::drop_oldest() {
+  older.push_back({std::move(recent.front().pair.sample), recent.front().pair.at});
+  recent.pop_front();
+  if (older.size() > kOlderPairs) older.pop_front();
 }
 
 void Comparison::State::begin_stretch(Instant at, std::vector<Finding>& findings) {
@@ -154,12 +162,14 @@ void Comparison::State::evaluate(Instant at, std::vector<Finding>& findings) {
 }
 
 void Comparison::State::watch_for_change(Instant at, std::vector<Finding>& findings) {
+  const bool critical_already = alarm.open() == Severity::critical;
   const auto step = alarm.step(chart, deltas());
   if (step == DriftAlarm::Step::not_confirmed) end(drifting, at, "not_confirmed", findings);
   if (step != DriftAlarm::Step::warning && step != DriftAlarm::Step::critical) return;
   drifting = agreement_drifting_finding(*this, at);
   findings.push_back(*drifting);
   if (step != DriftAlarm::Step::critical) return;
+  if (!critical_already) restarted = remember_start(*this);
   const int after = alarm.split().after;
   chart.restart(after);
   window.restart(after);
@@ -223,7 +233,10 @@ void Comparison::State::move_verdict(Instant at, std::vector<Finding>& findings)
   for (const LevelNow& level : levels) statements.push_back(level.statement);
   input.levels = statements;
   const auto moved = verdict.step(input);
-  if (verdict.verdict() == Verdict::agreement_shown) last_agreement = at;
+  if (verdict.verdict() == Verdict::agreement_shown) {
+    last_agreement = at;
+    agreement.shown({at, pairs_total}, moved == Verdict::agreement_shown);
+  }
   if (moved == Verdict::disagreement_shown) {
     lost = agreement_lost_finding(*this, at);
     findings.push_back(*lost);

@@ -7,6 +7,7 @@
 #include "core/base/event.hpp"
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
+#include "core/pair/comparison_change.hpp"
 #include "core/pair/comparison_view.hpp"
 #include "core/pair/pair.hpp"
 
@@ -40,8 +41,14 @@ class Comparison {
   /// The time of the oldest of the newest 500 pairs; the earliest time there is when no pair is older.
   [[nodiscard]] Instant kept_since() const;
 
+  /// The pair chart's signal is open or agreement is lost.
+  [[nodiscard]] bool changed() const;
+  /// While it is so.
+  [[nodiscard]] std::optional<ComparisonChange> change() const;
+
   [[nodiscard]] Verdict verdict() const;
-  /// `waiting` of the view is left 0: halves are the monitor's.
+  /// `waiting` of the view is left 0 and `diagnosis` and `look_back` empty: halves and check standards are
+  /// the monitor's.
   [[nodiscard]] ComparisonView view() const;
 
   struct State;  ///< what is remembered; defined for core/pair only

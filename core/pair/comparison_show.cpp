@@ -3,9 +3,12 @@
 #include "core/base/distributions.hpp"
 #include "core/chart/run_length.hpp"
 #include "core/pair/comparison_state.hpp"
+#include "core/pair/concordance.hpp"
 #include "core/pair/difference.hpp"
 #include "core/pair/level_errors.hpp"
+#include "core/pair/passing_bablok.hpp"
 #include "core/pair/scatter.hpp"
+#include "core/pair/second_opinion.hpp"
 
 namespace agreed {
 namespace {
@@ -105,6 +108,20 @@ FitView show_fit(const State& state) {
   view.slope_at_lambda_low = slope_at(state, state.ratio.low);
   view.slope_at_lambda_high = slope_at(state, state.ratio.high);
   return view;
+}
+
+// Also says in `warnings` when the two lines part at a decision level.
+std::optional<RobustView> show_robust(const State& state, std::vector<std::string>& warnings) {
+  const double confidence = state.config().confidence;
+  const std::span<const Point> points = state.window.points();
+  const PassingBablok line = passing_bablok(points, confidence);
+  if (!line.exists()) return std::nullopt;
+  if (state.fit.exists()) {
+    const double t = t_quantile_of_tail((1 - confidence) / 2, state.fit.degrees_of_freedom());
+    if (methods_disagree(points, state.fit, line, state.measurand().decision_levels, t))
+      warnings.emplace_back("methods_disagree");
+  }
+  return RobustView{line.slope, line.intercept, line.slope_interval, line.intercept_interval};
 }
 
 struct Said {
@@ -255,6 +272,8 @@ ComparisonView show(const State& state) {
   view.error = show_error(state);
   view.levels = show_levels(state);
   view.difference = describe_differences(state.window.points(), state.measurand().allowable);
+  view.robust = show_robust(state, view.warnings);
+  view.concordance = concordance(state.window.moments());
   if (state.fit.exists()) {
     view.fit = show_fit(state);
     const Point shares = state.window.error_shares();

@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "core/base/settings.hpp"
+#include "core/pair/agreement_record.hpp"
 #include "core/pair/comparison.hpp"
 #include "core/pair/drift_alarm.hpp"
 #include "core/pair/outlier.hpp"
@@ -43,6 +44,23 @@ struct RecentPair {
   double residual = 0, p = 1;  ///< at arrival, of those held or set aside
 };
 
+/// Of a pair older than those kept whole, for the look-back.
+struct OlderPair {
+  std::string sample;
+  Instant at{};
+};
+
+/// What a critical signal leaves of the stretch that ends at the estimated start. Further critical signals,
+/// until agreement is shown again, leave it as it is: the change in question is all that came since.
+struct RememberedStart {
+  Instant started_at{};
+  Period started_between{};
+  Moments before;                          ///< of the newest pairs before it
+  Instant since{};                         ///< start of that stretch
+  std::int64_t first_after = 0;            ///< number of the first pair after it
+  std::optional<PairMark> last_agreement;  ///< before the earliest likely start
+};
+
 struct Comparison::State {
   State(const Settings& all_settings, ComparisonIndex comparison);
 
@@ -61,7 +79,11 @@ struct Comparison::State {
   int pairs_since_renewal = 0;                  ///< pairs since the tests of a renewed window
   bool scatter_excess = false, curved = false;  ///< at the last full renewal of the window
   std::deque<RecentPair> recent;
+  std::deque<OlderPair> older;  ///< the 500 before those
   std::deque<BiasPoint> bias_history;
+  AgreementRecord agreement;
+  std::optional<Instant> first_pair_at;
+  std::optional<RememberedStart> restarted;  ///< at the first critical signal of those open
   std::int64_t pairs_total = 0;
   std::optional<Instant> last_at, stretch_from, last_agreement;
   /// The conditions that hold, as last found.
@@ -84,6 +106,7 @@ struct Comparison::State {
   [[nodiscard]] ErrorRatio ratio_of_replicates() const;
   void accept(const Pair& pair, std::int64_t serial, int later);
   void set_aside(const std::vector<HeldPair>& pairs, Instant at, std::vector<Finding>& findings);
+  void drop_oldest();
   RecentPair* recent_of(std::int64_t serial);
   void evaluate(Instant at, std::vector<Finding>& findings);
   void watch_for_change(Instant at, std::vector<Finding>& findings);
@@ -117,6 +140,10 @@ struct Comparison::State {
 
 /// What would decide the verdict; nothing without levels that speak.
 [[nodiscard]] std::optional<ProofPlan> proof_plan_of(const Comparison::State& state);
+/// The newest pair before `at` at which agreement was shown.
+[[nodiscard]] std::optional<PairMark> last_agreement_before(const Comparison::State& state, Instant at);
+/// At a critical signal, before the stretch restarts.
+[[nodiscard]] RememberedStart remember_start(const Comparison::State& state);
 
 /// The view of a state.
 [[nodiscard]] ComparisonView show(const Comparison::State& state);

@@ -2,6 +2,22 @@
 
 namespace agreed {
 
+const char* to_string(Moved moved) {
+  switch (moved) {
+    case Moved::x:
+      return "x";
+    case Moved::y:
+      return "y";
+    case Moved::both:
+      return "both";
+    case Moved::neither:
+      return "neither";
+    case Moved::undecided:
+      return "undecided";
+  }
+  return "";
+}
+
 const char* to_string(Verdict verdict) {
   switch (verdict) {
     case Verdict::gathering:

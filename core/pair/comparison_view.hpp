@@ -12,6 +12,10 @@
 
 namespace agreed {
 
+/// Who moved when the relation changed; `neither`: the samples differ; `undecided`: not known yet.
+enum class Moved { x, y, both, neither, undecided };
+[[nodiscard]] const char* to_string(Moved moved);
+
 enum class Verdict { gathering, inconclusive, agreement_shown, disagreement_shown };
 enum class PairChartState { learning, stable, unstable };
 [[nodiscard]] const char* to_string(Verdict verdict);
@@ -79,15 +83,29 @@ struct LevelView {
   bool operator==(const LevelView&) const = default;
 };
 
-struct DifferenceView {
+/// Mean, sd and limits of agreement of differences, in one unit.
+struct AgreementLimits {
   double mean = 0, sd = 0;
   Interval mean_interval{};
   double lower_limit = 0, upper_limit = 0;
   Interval lower_limit_interval{}, upper_limit_interval{};
+  bool operator==(const AgreementLimits&) const = default;
+};
+
+struct DifferenceView : AgreementLimits {
+  /// The same of 100 (y - x) / ((x + y) / 2), when what is allowable is given in percent only.
+  std::optional<AgreementLimits> percent;
   std::optional<int> within_count, within_of;
   std::optional<Interval> within_interval;
   std::optional<double> paired_t_p;
   bool operator==(const DifferenceView&) const = default;
+};
+
+/// The line by ranks (passing_bablok.hpp); intervals at the confidence of the fit.
+struct RobustView {
+  double slope = 1, intercept = 0;
+  std::optional<Interval> slope_interval, intercept_interval;
+  bool operator==(const RobustView&) const = default;
 };
 
 struct ScatterView {
@@ -146,6 +164,34 @@ struct PairView {
   bool operator==(const PairView&) const = default;
 };
 
+/// What the change found by the pair chart or the lost agreement goes back to (core/diagnosis).
+struct DiagnosisView {
+  Moved moved = Moved::undecided;
+  double probability = 0;                 ///< of the most probable explanation
+  std::array<double, 4> probabilities{};  ///< of x, y, both, neither
+  std::string evidence;                   ///< in plain words, with numbers and units
+  /// Shift of y - slope x of the pairs, and of the check standards, with standard errors.
+  std::optional<double> shift_pairs, se_pairs, shift_x, se_x, shift_y, se_y;
+  int pairs_before = 0, pairs_after = 0;
+  int x_readings_before = 0, x_readings_after = 0, y_readings_before = 0, y_readings_after = 0;
+  std::optional<Instant> started_at;
+  std::optional<Period> started_between;
+  bool operator==(const DiagnosisView&) const = default;
+};
+
+/// The results in doubt: from the last pair before the earliest likely start at which agreement was shown
+/// (else from the first pair of all) to the newest pair.
+struct LookBackView {
+  Instant from, to;
+  bool from_agreement = false;       ///< false: from the start of data
+  std::int64_t pairs = 0;            ///< after `from`; of all data: all
+  std::vector<std::string> samples;  ///< of the newest 1,000 of them, oldest first
+  double hours = 0;
+
+  [[nodiscard]] const char* from_is() const { return from_agreement ? "agreement_shown" : "start_of_data"; }
+  bool operator==(const LookBackView&) const = default;
+};
+
 /// The bias at each decision level as it stood at one pair, for the page's picture of bias over time.
 struct BiasPoint {
   Instant at;
@@ -171,9 +217,13 @@ struct ComparisonView {
   std::string fit_reason;  ///< why there is no fit, when there is none
   std::vector<LevelView> levels;
   std::optional<DifferenceView> difference;
+  std::optional<RobustView> robust;
+  std::optional<double> concordance;
   std::optional<ScatterView> scatter;
   std::optional<RangeView> range;
   PairChartView pair_chart;
+  std::optional<DiagnosisView> diagnosis;  ///< filled in by the monitor, which knows the check standards
+  std::optional<LookBackView> look_back;
   std::vector<OutlierView> outliers;
   std::vector<BiasPoint> bias_history;  ///< oldest first, at most 500
   std::vector<PairView> pairs;          ///< oldest first, at most the newest 500

@@ -1,6 +1,7 @@
 #include "core/pair/difference.hpp"
 
 #include <cmath>
+#include <vector>
 
 #include "core/base/distributions.hpp"
 
@@ -19,6 +20,40 @@ void count_within(std::span<const Point> points, const AllowableDifference& allo
   view.within_of = of;
   view.within_interval = proportion_interval(count, of, kConfidence);
 }
+
+// Of at least two differences.
+AgreementLimits limits_of(std::span<const double> differences) {
+  const double n = static_cast<double>(differences.size()), first = differences.front();
+  double mean = 0;
+  for (const double d : differences) mean += d - first;
+  mean = first + mean / n;
+  double squares = 0;
+  for (const double d : differences) squares += (d - mean) * (d - mean);
+
+  AgreementLimits limits;
+  limits.mean = mean;
+  limits.sd = std::sqrt(squares / (n - 1));
+  const double t = t_quantile_of_tail(kTail, n - 1);
+  const double mean_se = limits.sd / std::sqrt(n);
+  const double limit_se = limits.sd * std::sqrt(1 / n + kZ * kZ / (2 * (n - 1)));
+  limits.mean_interval = {mean - t * mean_se, mean + t * mean_se};
+  limits.lower_limit = mean - kZ * limits.sd;
+  limits.upper_limit = mean + kZ * limits.sd;
+  limits.lower_limit_interval = {limits.lower_limit - t * limit_se, limits.lower_limit + t * limit_se};
+  limits.upper_limit_interval = {limits.upper_limit - t * limit_se, limits.upper_limit + t * limit_se};
+  return limits;
+}
+
+std::optional<AgreementLimits> percent_limits(std::span<const Point> points) {
+  std::vector<double> percents;
+  percents.reserve(points.size());
+  for (const Point p : points) {
+    const double level = p.x + (p.y - p.x) / 2;
+    if (!(level > 0)) return std::nullopt;
+    percents.push_back(100 * (p.y - p.x) / level);
+  }
+  return limits_of(percents);
+}
 }  // namespace
 
 Interval proportion_interval(int count, int of, double confidence) {
@@ -30,27 +65,17 @@ Interval proportion_interval(int count, int of, double confidence) {
 std::optional<DifferenceView> describe_differences(std::span<const Point> points,
                                                    const std::optional<AllowableDifference>& allowable) {
   if (points.size() < 2) return std::nullopt;
-  const double n = static_cast<double>(points.size());
-  const double first = points.front().y - points.front().x;
-  double mean = 0;
-  for (const Point p : points) mean += (p.y - p.x) - first;
-  mean = first + mean / n;
-  double squares = 0;
-  for (const Point p : points) squares += ((p.y - p.x) - mean) * ((p.y - p.x) - mean);
+  std::vector<double> differences;
+  differences.reserve(points.size());
+  for (const Point p : points) differences.push_back(p.y - p.x);
 
   DifferenceView view;
-  view.mean = mean;
-  view.sd = std::sqrt(squares / (n - 1));
-  const double t = t_quantile_of_tail(kTail, n - 1);
-  const double mean_se = view.sd / std::sqrt(n);
-  const double limit_se = view.sd * std::sqrt(1 / n + kZ * kZ / (2 * (n - 1)));
-  view.mean_interval = {mean - t * mean_se, mean + t * mean_se};
-  view.lower_limit = mean - kZ * view.sd;
-  view.upper_limit = mean + kZ * view.sd;
-  view.lower_limit_interval = {view.lower_limit - t * limit_se, view.lower_limit + t * limit_se};
-  view.upper_limit_interval = {view.upper_limit - t * limit_se, view.upper_limit + t * limit_se};
-  if (mean_se > 0) view.paired_t_p = 2 * t_tail(std::abs(mean) / mean_se, n - 1);
-  if (allowable) count_within(points, *allowable, view);
+  static_cast<AgreementLimits&>(view) = limits_of(differences);
+  const double n = static_cast<double>(points.size()), mean_se = view.sd / std::sqrt(n);
+  if (mean_se > 0) view.paired_t_p = 2 * t_tail(std::abs(view.mean) / mean_se, n - 1);
+  if (!allowable) return view;
+  count_within(points, *allowable, view);
+  if (!allowable->absolute && allowable->percent) view.percent = percent_limits(points);
   return view;
 }
 

@@ -7,7 +7,10 @@
 //   0.975)); share within the allowable difference with its exact binomial interval (C. J. Clopper and E. S.
 //   Pearson, Biometrika 26 (1934) 404); paired t test.
 // Assumptions: differences independent and near normal, of constant spread.
-// Degenerate: fewer than 2 pairs: nothing. All differences equal: no paired t.
+//   When what is allowable is given in percent only, mean and limits also of 100 (y - x) / ((x + y) / 2)
+//   (same authors: the spread then grows with the level).
+// Degenerate: fewer than 2 pairs: nothing. All differences equal: no paired t. A pair whose mean is not
+//   positive: no percent.
 // Cost: O(n).
 #include <optional>
 #include <span>

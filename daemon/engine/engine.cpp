@@ -4,6 +4,7 @@
 
 #include <malloc.h>
 
+#include "core/alert/cause.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/log.hpp"
@@ -207,7 +208,8 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
                                 Instant now) {
   JournalHistory history(*journal_, *settings_);
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
-  const auto tell_of = [&](const Finding& finding) {
+  const auto tell_of = [&](Finding finding) {
+    explain(finding);
     journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
                           finding_json(finding));
     tell(book_->apply(finding, now), now);
@@ -216,7 +218,36 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   std::for_each(intake_findings.begin(), intake_findings.end(), tell_of);
   if (const auto subjects = refolded(outcome); !subjects.empty())
     reconcile(outcome, subjects, "late_data", now);
+  for (const ComparisonIndex comparison : monitor_.explained_anew(outcome)) {
+    outcome.comparisons_changed.insert(comparison);
+    tell_anew(comparison, now);
+  }
   return outcome;
+}
+
+const Alert* Engine::current_alert(const Finding& finding) const {
+  const auto current = book_->current();
+  const auto found = std::find_if(current.begin(), current.end(), [&](const Alert* alert) {
+    return alert->kind == finding.kind && alert->subject == finding.subject;
+  });
+  return found == current.end() ? nullptr : *found;
+}
+
+void Engine::explain(Finding& finding) const {
+  if (!has_cause(finding)) return;
+  for (std::uint32_t i = 0; i < settings_->comparisons.size(); ++i) {
+    if (settings_->comparisons[i].id != finding.subject.comparison) continue;
+    if (const auto change = monitor_.explain({i}))
+      add_cause(finding, change->diagnosis, change->look_back, current_alert(finding));
+  }
+}
+
+void Engine::tell_anew(ComparisonIndex comparison, Instant now) {
+  for (Finding& finding : monitor_.conditions(comparison)) {
+    if (!has_cause(finding) || current_alert(finding) == nullptr) continue;
+    explain(finding);
+    tell(book_->apply(finding, now), now);
+  }
 }
 
 void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
@@ -231,6 +262,7 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>
     add(monitor_.conditions(comparison));
     tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
   }
+  for (Finding& condition : conditions) explain(condition);
   tell(book_->reconcile(conditions, subjects, reason, now), now);
 }
 
@@ -288,10 +320,14 @@ void Engine::refresh_views(const std::set<ChartIndex>& charts, const std::set<Co
   }
   for (const ComparisonIndex index : comparisons) {
     const auto fold = std::make_shared<const Comparison>(monitor_.comparison(index));
-    next_.comparisons[index.value] =
-        LazyView<ComparisonView>([fold, settings = settings_, waiting = monitor_.waiting(index)] {
+    next_.comparisons[index.value] = LazyView<ComparisonView>(
+        [fold, settings = settings_, waiting = monitor_.waiting(index), change = monitor_.explain(index)] {
           ComparisonView view = fold->view();
           view.waiting = waiting;
+          if (change) {
+            view.diagnosis = change->diagnosis;
+            view.look_back = change->look_back;
+          }
           return view;
         });
   }

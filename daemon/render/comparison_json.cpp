@@ -89,17 +89,35 @@ Json within_of(const DifferenceView& difference) {
       {"interval", difference.within_interval ? interval_of(*difference.within_interval) : Json(nullptr)}};
 }
 
+Json limits_of(const AgreementLimits& limits) {
+  return {{"mean", json_number(limits.mean)},
+          {"sd", json_number(limits.sd)},
+          {"mean_interval", interval_of(limits.mean_interval)},
+          {"lower_limit", json_number(limits.lower_limit)},
+          {"upper_limit", json_number(limits.upper_limit)},
+          {"lower_limit_interval", interval_of(limits.lower_limit_interval)},
+          {"upper_limit_interval", interval_of(limits.upper_limit_interval)}};
+}
+
 Json difference_of(const std::optional<DifferenceView>& difference) {
   if (!difference) return nullptr;
-  return {{"mean", json_number(difference->mean)},
-          {"sd", json_number(difference->sd)},
-          {"mean_interval", interval_of(difference->mean_interval)},
-          {"lower_limit", json_number(difference->lower_limit)},
-          {"upper_limit", json_number(difference->upper_limit)},
-          {"lower_limit_interval", interval_of(difference->lower_limit_interval)},
-          {"upper_limit_interval", interval_of(difference->upper_limit_interval)},
-          {"within_allowable", within_of(*difference)},
-          {"paired_t_p", json_number(difference->paired_t_p)}};
+  Json json = limits_of(*difference);
+  json["within_allowable"] = within_of(*difference);
+  json["percent"] = difference->percent ? limits_of(*difference->percent) : Json(nullptr);
+  json["paired_t_p"] = json_number(difference->paired_t_p);
+  return json;
+}
+
+Json robust_of(const std::optional<RobustView>& robust) {
+  if (!robust) return nullptr;
+  const auto interval = [](const std::optional<Interval>& limits) {
+    return limits ? interval_of(*limits) : Json(nullptr);
+  };
+  return {{"method", "passing_bablok"},
+          {"slope", json_number(robust->slope)},
+          {"slope_interval", interval(robust->slope_interval)},
+          {"intercept", json_number(robust->intercept)},
+          {"intercept_interval", interval(robust->intercept_interval)}};
 }
 
 Json scatter_of(const std::optional<ScatterView>& scatter) {
@@ -131,6 +149,40 @@ Json pair_chart_of(const PairChartView& chart) {
           {"started_at", json_time(chart.started_at)},
           {"started_between", json_period(chart.started_between)},
           {"reason", chart.score ? Json(nullptr) : Json("the pair chart needs 7 pairs in this stretch")}};
+}
+
+Json diagnosis_of(const std::optional<DiagnosisView>& diagnosis) {
+  if (!diagnosis) return nullptr;
+  const auto& [x, y, both, neither] = diagnosis->probabilities;
+  return {{"moved", to_string(diagnosis->moved)},
+          {"evidence", diagnosis->evidence},
+          {"probability", json_number(diagnosis->probability)},
+          {"probabilities",
+           {{"x", json_number(x)},
+            {"y", json_number(y)},
+            {"both", json_number(both)},
+            {"neither", json_number(neither)}}},
+          {"shift_pairs", json_number(diagnosis->shift_pairs)},
+          {"shift_x", json_number(diagnosis->shift_x)},
+          {"shift_y", json_number(diagnosis->shift_y)},
+          {"se_shift_pairs", json_number(diagnosis->se_pairs)},
+          {"se_shift_x", json_number(diagnosis->se_x)},
+          {"se_shift_y", json_number(diagnosis->se_y)},
+          {"pairs_before", diagnosis->pairs_before},
+          {"pairs_after", diagnosis->pairs_after},
+          {"x_readings_before", diagnosis->x_readings_before},
+          {"x_readings_after", diagnosis->x_readings_after},
+          {"y_readings_before", diagnosis->y_readings_before},
+          {"y_readings_after", diagnosis->y_readings_after},
+          {"started_at", json_time(diagnosis->started_at)},
+          {"started_between", json_period(diagnosis->started_between)}};
+}
+
+Json look_back_of(const std::optional<LookBackView>& look_back) {
+  if (!look_back) return nullptr;
+  return {{"from", to_rfc3339(look_back->from)}, {"from_is", look_back->from_is()},
+          {"to", to_rfc3339(look_back->to)},     {"hours", json_number(look_back->hours)},
+          {"pairs", look_back->pairs},           {"samples", look_back->samples}};
 }
 
 Json proof_of(const std::optional<ProofView>& proof) {
@@ -215,13 +267,13 @@ Json comparison_of(const Snapshot& snapshot, ComparisonIndex index, int pairs) {
           {"fit_reason", json_words(view.fit_reason)},
           {"levels", levels_of(view)},
           {"difference", difference_of(view.difference)},
-          {"robust", nullptr},
-          {"concordance", nullptr},
+          {"robust", robust_of(view.robust)},
+          {"concordance", json_number(view.concordance)},
           {"scatter", scatter_of(view.scatter)},
           {"range", range_of(view.range)},
           {"pair_chart", pair_chart_of(view.pair_chart)},
-          {"diagnosis", nullptr},
-          {"look_back", nullptr},
+          {"diagnosis", diagnosis_of(view.diagnosis)},
+          {"look_back", look_back_of(view.look_back)},
           {"outliers", outliers_of(view)},
           {"pairs", pairs_of(view, pairs)}};
 }

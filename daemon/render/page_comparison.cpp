@@ -52,8 +52,39 @@ std::string range_words(const ComparisonScene& scene) {
                               : "; not every decision level is covered.");
 }
 
+std::string robust_words(const ComparisonScene& scene) {
+  if (!scene.view.robust) return {};
+  const RobustView& robust = *scene.view.robust;
+  std::string out = "Second opinion by ranks (Passing and Bablok): slope " + shown(robust.slope, 4);
+  if (robust.slope_interval)
+    out +=
+        " (" + shown(robust.slope_interval->at(0), 4) + " to " + shown(robust.slope_interval->at(1), 4) + ")";
+  out += ", intercept " + shown_signed(robust.intercept, scene.style.decimals);
+  if (scene.view.concordance) out += ". Concordance " + shown(*scene.view.concordance, 4);
+  return out + ".";
+}
+
 std::string paragraph(const std::string& words) {
   return words.empty() ? words : "<p>" + flowing_html(words) + "</p>";
+}
+
+std::string look_back_words(const std::optional<LookBackView>& look_back) {
+  if (!look_back) return {};
+  std::string out =
+      "In doubt: " + counted(look_back->pairs, "pair", "pairs") + " since " + time_words(look_back->from) +
+      (look_back->from_agreement ? ", when agreement was last shown before the change"
+                                 : ", when the data begin (agreement was never shown before the change)");
+  const auto& samples = look_back->samples;
+  for (std::size_t i = 0; i < samples.size(); ++i) out += (i == 0 ? "; samples " : ", ") + samples[i];
+  if (static_cast<std::int64_t>(samples.size()) < look_back->pairs) out += " (the newest of them)";
+  return out + ".";
+}
+
+/// What changed, which analyzer moved, which results are in doubt; empty when nothing is open.
+std::string change_html(const ComparisonView& view) {
+  if (!view.diagnosis) return {};
+  return "<section><h2>Which one moved</h2>" + paragraph(view.diagnosis->evidence) +
+         paragraph(look_back_words(view.look_back)) + "</section>";
 }
 
 }  // namespace
@@ -64,7 +95,7 @@ std::string comparison_html(const PageInput& input, ComparisonIndex index) {
                     " agree?</h1>" + answer_html(answer_for(scene), true);
   Subject subject;
   subject.comparison = scene.asked.id;
-  out += alerts_of_html(input, subject);
+  out += alerts_of_html(input, subject) + change_html(scene.view);
   out += "<section><h2>At the decision levels</h2>";
   out +=
       scene.view.levels.empty() ? paragraph("There is nothing to show yet.") : table_html(level_table(scene));
@@ -77,7 +108,7 @@ std::string comparison_html(const PageInput& input, ComparisonIndex index) {
          figure_html(differences_figure(scene, FigureDetail::full), 3) +
          figure_html(pair_chart_figure(scene, FigureDetail::full), 3) + "</div></section>";
   out += "<section><h2>What the figures rest on</h2>" + paragraph(error_words(scene)) +
-         paragraph(scatter_words(scene)) + paragraph(range_words(scene));
+         paragraph(scatter_words(scene)) + paragraph(range_words(scene)) + paragraph(robust_words(scene));
   return out + "</section>";
 }
 

@@ -133,6 +133,8 @@ std::string warning_words(const std::string& code) {
       {"baseline_short", "Fewer than 30 readings have been learned; limits are still wide."},
       {"range_not_covered", "The check standards do not span the decision levels."},
       {"error_grows_with_level", "The scatter grows with the level; the error model in use is constant."},
+      {"methods_disagree",
+       "At a decision level the fitted line and the line by ranks differ by more than either is uncertain."},
       {"lambda_uncertain", "Whether the relation changed depends on the uncertain error variance ratio."},
       {"curved", "The relation between the analyzers is curved; a straight line describes it badly."},
   };

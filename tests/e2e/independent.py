@@ -335,6 +335,7 @@ class Comparison:
         self.change = pair_change(*xy(self.stretch), error, self.relation)
         if self.change.score > self.critical_limit:
             self.severity, self.restarted, self.relation = "critical", True, None
+            self.before = self.stretch[:self.change.k]
             self.stretch = self.stretch[self.change.k:]
             self.change = None if len(self.stretch) < 7 else pair_change(*xy(self.stretch), error)
         elif self.change.score > self.warning_limit:

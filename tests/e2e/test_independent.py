@@ -9,6 +9,7 @@ from scipy import odr
 import independent
 import independent_chart
 import independent_classical
+import independent_diagnosis
 import independent_weighted
 from harness import CONFIG, SiteTest
 from plant import START, csv, rfc3339
@@ -191,11 +192,31 @@ class Independent(SiteTest):
                       for p in pairs]}, shown, "comparison")
         if len(folded.stretch) == capacity == len(window):  # the window has just been renewed
             self.assertEqual("curved" in shown["warnings"], independent.curvature_p(fit) < 0.01)
-        if shown["concordance"] is not None:
-            self.compare(independent.concordance(x, y), shown["concordance"], "concordance")
-        if shown["robust"] is not None:
+        self.compare(independent.concordance(x, y), shown["concordance"], "concordance")
+        if len(window) >= LEAST_PAIRS:  # fewer have no rank interval
             self.compare(independent.passing_bablok(x, y), shown["robust"], "robust")
+        self.compare_change(mill, charts, folded, error, shown)
         return folded
+
+    def compare_change(self, mill, charts, folded, error, shown):
+        """Who moved, and what is in doubt."""
+        if folded.severity is None:
+            self.compare({"diagnosis": None, "look_back": None}, shown, "comparison")
+            return
+        before, after = folded.before, folded.stretch
+        if folded.severity == "warning":
+            before, after = after[:folded.change.k], after[folded.change.k:]
+        read = {side: [[(time, value, point["set_aside"])
+                        for (time, value), point in zip(mill.checks[chart], charts[chart].points)]
+                       for chart in mill.checks if chart[0] == side] for side in ("line1", "line2")}
+        expected = independent_diagnosis.diagnosis(before, after, error.ratio, read["line1"], read["line2"], 0.001)
+        self.compare(expected, shown["diagnosis"], "diagnosis")
+        doubt = shown["look_back"]
+        self.assertLessEqual(doubt["from"], shown["diagnosis"]["started_between"][0])
+        known = doubt["from_is"] == "agreement_shown"
+        late = [p for p in folded.pairs if p.time > doubt["from"] or not known]
+        self.compare({"pairs": len(late), "samples": [p.sample for p in late], "to": folded.pairs[-1].time},
+                     doubt, "look_back")
 
     @staticmethod
     def pair_chart(folded):
@@ -268,6 +289,12 @@ class Independent(SiteTest):
 
     def test_a_large_step_of_the_pairs(self):
         _, comparison = self.follow(Mill(seed=7, pair=lambda i: 0.12 if i >= 24 else 0.0))
+        self.assertEqual(comparison.severity, "critical")
+
+    def test_a_step_of_line1_that_its_check_standard_shows(self):
+        step = 0.12
+        _, comparison = self.follow(Mill(seed=9, check=lambda i, noise: noise - (step if i >= 19 else 0),
+                                         pair=lambda i: step if i >= 24 else 0.0))
         self.assertEqual(comparison.severity, "critical")
 
     def test_pairs_that_keep_to_an_established_line(self):

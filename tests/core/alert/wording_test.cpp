@@ -481,3 +481,33 @@ TEST_CASE("whatever is missing, unknown or not a number: sentences stay whole an
       }
   }
 }
+
+TEST_CASE("the words of a diagnosis and of the look-back") {
+  const std::string evidence =
+      "Since 2026-02-05 06:00 UTC line2 reads higher. So line2 has moved (probability 97 %).";
+  const Alert named =
+      worded(begun(pair_alert(AlertKind::agreement_lost, Severity::critical,
+                              {{"bias", 0.35},
+                               {"moved", "y"},
+                               {"probability", 0.97},
+                               {"evidence", evidence},
+                               {"look_back_from", "2026-02-04T20:00:00.000Z"},
+                               {"look_back_from_is", "agreement_shown"},
+                               {"look_back_pairs", 7.0},
+                               {"look_back_samples", std::vector<std::string>{"S-1", "S-2"}}})));
+  CHECK(named.text.find("Likely cause: " + evidence) != std::string::npos);
+  CHECK(named.text.find(
+            "Agreement was last shown before that at 2026-02-04 20:00 UTC: 7 pairs since, samples S-1 "
+            "and S-2.") != std::string::npos);
+  const Alert open = worded(begun(pair_alert(AlertKind::agreement_drifting, Severity::warning,
+                                             {{"moved", "undecided"},
+                                              {"probability", 0.6},
+                                              {"evidence", "Too early to tell."},
+                                              {"look_back_from", "2026-02-04T20:00:00.000Z"},
+                                              {"look_back_from_is", "start_of_data"},
+                                              {"look_back_pairs", 1.0}})));
+  CHECK(open.text.find("Likely cause: not decided. Too early to tell.") != std::string::npos);
+  CHECK(
+      open.text.find("Agreement was never shown before that; the data begin at 2026-02-04 20:00 UTC: 1 pair "
+                     "since.") != std::string::npos);
+}

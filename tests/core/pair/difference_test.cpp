@@ -53,6 +53,23 @@ TEST_CASE("the share within the allowable difference is counted at each level") 
   CHECK(view->within_interval->at(0) == proportion_interval(2, 4, 0.95)[0]);
 }
 
+TEST_CASE("percent only: mean and limits in percent of the mean of the two, beside those in the unit") {
+  // 100 (y - x) / ((x + y) / 2) of 9.5 and 10.5 is 10, of 19 and 21 is 10, of 21 and 19 is -10.
+  const std::vector<Point> points = {{9.5, 10.5}, {19, 21}, {21, 19}};
+  const auto view = describe_differences(points, AllowableDifference{std::nullopt, 12.0});
+  REQUIRE(view);
+  REQUIRE(view->percent);
+  CHECK_CLOSE(view->percent->mean, 10.0 / 3, 1e-12);
+  CHECK_CLOSE(view->percent->sd, std::sqrt(400.0 / 3), 1e-12);
+  CHECK_CLOSE(view->percent->upper_limit, 10.0 / 3 + 1.9599639845400545 * view->percent->sd, 1e-12);
+  CHECK_CLOSE(view->mean, 1.0 / 3, 1e-12);
+  CHECK_FALSE(describe_differences(points, AllowableDifference{0.1, 12.0})->percent);
+  CHECK_FALSE(describe_differences(points, std::nullopt)->percent);
+  // No percentage of nothing.
+  CHECK_FALSE(
+      describe_differences(std::vector<Point>{{0, 0}, {1, 2}}, AllowableDifference{{}, 12.0})->percent);
+}
+
 TEST_CASE("too few or equal differences say so") {
   CHECK_FALSE(describe_differences(std::vector<Point>{{1, 2}}, std::nullopt));
   const auto view = describe_differences(std::vector<Point>{{1, 2}, {3, 4}, {5, 6}}, std::nullopt);

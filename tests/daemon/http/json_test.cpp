@@ -262,8 +262,31 @@ TEST_CASE("a comparison has the fields of the contract, in its order") {
         Json{{"count", 139}, {"of", 140}, {"interval", Json::array({0.96, 1.0})}});
   CHECK(comparison.at("levels")[1].at("single_result").is_null());
   CHECK(comparison.at("verdict_reason").is_null());
-  for (const char* later : {"robust", "concordance", "diagnosis", "look_back"})
-    CHECK(comparison.at(later).is_null());
+  check_fields(comparison.at("robust"),
+               {"method", "slope", "slope_interval", "intercept", "intercept_interval"});
+  CHECK(comparison.at("robust").at("method") == "passing_bablok");
+  CHECK(comparison.at("robust").at("slope_interval") == Json::array({0.99, 1.012}));
+  CHECK(comparison.at("robust").at("intercept_interval").is_null());
+  CHECK(comparison.at("concordance") == 0.998);
+  const Json& diagnosis = comparison.at("diagnosis");
+  check_fields(diagnosis, {"moved", "evidence", "probability", "shift_pairs", "shift_x", "shift_y",
+                           "started_at", "started_between"});
+  CHECK(diagnosis.at("moved") == "y");
+  CHECK(diagnosis.at("probabilities").at("both") == 0.02);
+  CHECK(diagnosis.at("shift_x").is_null());
+  CHECK(diagnosis.at("started_between").size() == 2);
+  check_fields(comparison.at("look_back"), {"from", "to", "pairs", "samples"});
+  CHECK(comparison.at("look_back").at("from_is") == "agreement_shown");
+  CHECK(comparison.at("look_back").at("samples") == Json::array({"S-105", "S-106"}));
+}
+
+TEST_CASE("a comparison with nothing to say has the same fields, null") {
+  Snapshot snapshot = full_snapshot();
+  snapshot.comparisons[0] = std::make_shared<const ComparisonView>();
+  const Json comparison = comparison_of(snapshot);
+  for (const char* name :
+       {"fit", "difference", "robust", "concordance", "scatter", "range", "diagnosis", "look_back"})
+    CHECK(comparison.at(name).is_null());
 }
 
 TEST_CASE("a number that is none becomes null everywhere: the text stays JSON without NaN or Infinity") {
