@@ -241,8 +241,9 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
     bars.push_back({on_axis(point.measured_at), *point.moving_range});
     extent.add(*point.moving_range);
   }
-  const auto limit = scene.view.classical ? scene.view.classical->moving_range_upper : std::nullopt;
-  if (limit) extent.add(*limit);
+  const bool limited = scene.view.classical && scene.view.classical->moving_range_upper;
+  const double limit = limited ? *scene.view.classical->moving_range_upper : 0;
+  if (limited) extent.add(limit);
   Plot plot(id, size, canvas.time, {0, extent.padded(0.15).high});
   plot.value_axis_y("moving range", 2);
   plot.time_axis_x();
@@ -250,7 +251,7 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
   plot.bars(bars, "bars");
   const auto mean = scene.view.baseline.moving_range_mean;
   if (mean) plot.across(*mean, "centre", shown(*mean, scene.style.decimals));
-  if (limit) plot.across(*limit, "limit", shown(*limit, scene.style.decimals));
+  if (limited) plot.across(limit, "limit", shown(limit, scene.style.decimals));
   return plot.svg(
       "Moving ranges of " + scene.name(),
       mean ? "Mean moving range " + with_unit(*mean, scene.style) + "." : "No mean moving range yet.");

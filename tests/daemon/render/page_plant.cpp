@@ -264,7 +264,7 @@ std::shared_ptr<ChartView> chart(const ChartSettings& asked, std::uint32_t index
   }
   if (readings > 31) view->marks = {{kBegin + hours(8) * 30 + hours(5), "consumable_changed"}};
   if (readings > 48) view->baseline.set_aside = 1;
-  if (protein && high) view->reference = ReferenceView{13.22, 0.08, 2, 0.013, 0.16};
+  if (protein && high) view->reference = ReferenceView{13.22, 0.08, 2, 0.013, 0.16, {}, false};
   if (readings > 0) finish_chart(*view, drift);
   return view;
 }
