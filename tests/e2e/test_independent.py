@@ -203,9 +203,10 @@ class Independent(SiteTest):
         if folded.severity is None:
             self.compare({"diagnosis": None, "look_back": None}, shown, "comparison")
             return
-        before, after = folded.before, folded.stretch
         if folded.severity == "warning":
-            before, after = after[:folded.change.k], after[folded.change.k:]
+            before, after = folded.stretch[:folded.change.k], folded.stretch[folded.change.k:]
+        else:
+            before, after = folded.before, folded.stretch
         read = {side: [[(time, value, point["set_aside"])
                         for (time, value), point in zip(mill.checks[chart], charts[chart].points)]
                        for chart in mill.checks if chart[0] == side] for side in ("line1", "line2")}
@@ -385,12 +386,13 @@ class Independent(SiteTest):
                 values.append(round(13.41 + (0.03 if values is after else 0) + generator.gauss(0, 0.02), 3))
                 rows.append(("check", rfc3339(time), "protein", "wheat-high", values[-1], 0))
         rows.append(("intervention", rfc3339(START + 38 * HOUR), "", "recalibrated", "", ""))
-        rows = [row for row in rows if row[3] != "wheat-low"] + [row for row in rows if row[3] == "wheat-low"]
         site = self.make_site(config=CONFIG.format(port=0, rescan="1s", decimals=3, routes="    []")).start()
-        site.drop("line1", "readings.csv", csv(rows).replace("item,value", "item,value,replicate"))
-        site.wait_taken()
+        for analyzer, of_runs in (("line1", False), ("line2", True)):  # what is done to line1 leaves line2's stretch alone
+            own = [row for row in rows if (row[3] == "wheat-low") == of_runs]
+            site.drop(analyzer, "readings.csv", csv(own).replace("item,value", "item,value,replicate"))
+            site.wait_taken()
         expected = independent_chart.runs_of_replicates(runs, CHART_RUN_LENGTH)
-        self.compare(expected, site.get("/api/charts/line1/wheat-low/protein?points=500"), "runs")
+        self.compare(expected, site.get("/api/charts/line2/wheat-low/protein?points=500"), "runs")
         shown = site.get("/api/charts/line1/wheat-high/protein")
         effect = independent_chart.effect(before, after)
         self.compare({**effect, "what": "recalibrated", "allowable": allowable(np.mean(before))},

@@ -206,7 +206,7 @@ TEST_CASE("when both drift together the charts tell and the pairs do not") {
 }
 
 TEST_CASE("samples that the analyzers read differently are told by the pairs alone") {
-  Life life(17);
+  Life life(18);
   life.until(kBefore);
   REQUIRE(life.opened() == 0);
   life.sample_moved = step_of(kLine2, 0.08, kBefore);

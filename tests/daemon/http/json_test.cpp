@@ -71,7 +71,8 @@ TEST_CASE("the status in full, byte for byte") {
       R"("largest_bias":{"level":13.0,"bias":0.02,"allowable":0.2},"alerts":1}],)"
       R"("alerts":{"open":1,"acknowledged":1},)"
       R"("alarm_budget":{"false_alerts_per_year":6.0,"expected":5.5,)"
-      R"("by_kind":{"agreement_drifting":1.5,"check_standard_unstable":4.0},"apart":{}},)"
+      R"("by_kind":{"agreement_drifting":1.5,"check_standard_unstable":4.0},"apart":{"agreement_lost":{"subjects":1,"share_at_most":0.06,)"
+      R"("of":"comparisons whose bias is exactly the allowable difference, within 1,000 pairs; far fewer below"}}},)"
       R"("chain":{"sequence":7,"sha256":"aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaa"}})";
   CHECK(json.dump() == expected);
   CHECK(status_json(snapshot) == status);
