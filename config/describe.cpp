@@ -148,7 +148,7 @@ std::string error_ratio_text(const ErrorRatioSettings& ratio) {
 }
 
 std::string fit_text(const ComparisonSettings& comparison) {
-  const std::string fit = comparison.fit == FitMethod::deming ? "deming" : "weighted_deming";
+  std::string fit = comparison.fit == FitMethod::deming ? "deming" : "weighted_deming";
   switch (comparison.error_growth) {
     case ErrorGrowth::constant:
       return fit + ", errors constant";

@@ -7,6 +7,7 @@
 #include <boost/math/distributions/normal.hpp>
 #include <boost/math/distributions/students_t.hpp>
 #include <boost/math/special_functions/beta.hpp>
+#include <boost/math/special_functions/gamma.hpp>
 #include <boost/math/special_functions/trigamma.hpp>
 
 namespace agreed {
@@ -51,6 +52,9 @@ double f_quantile(double p, double df1, double df2) {
 
 double beta_quantile(double p, double a, double b) {
   return bm::ibeta_inv(a, b, p, InDouble());
+}
+double gamma_half_step(double x) {
+  return 1 / bm::tgamma_delta_ratio(x, 0.5, InDouble());
 }
 double trigamma(double x) {
   return bm::trigamma(x, InDouble());

@@ -22,6 +22,8 @@ namespace agreed {
 [[nodiscard]] double f_quantile(double p, double df1, double df2);
 /// x with I_x(a, b) = p.
 [[nodiscard]] double beta_quantile(double p, double a, double b);
+/// Gamma(x + 1/2) / Gamma(x), x > 0.
+[[nodiscard]] double gamma_half_step(double x);
 /// Second derivative of ln Gamma, x > 0.
 [[nodiscard]] double trigamma(double x);
 

@@ -70,7 +70,7 @@ Chart::State::State(const Settings& all, ChartIndex at)
       level(limit_for(Score::level, chart().level_run_length)),
       precision(limit_for(Score::precision, chart().precision_run_length)),
       stretch(new_stretch({}, -1)) {
-  if (chart().method == ChartMethod::classical) classical.emplace(classical::Fold(chart()));
+  if (chart().method == ChartMethod::classical) classical = ClassicalPart{classical::Fold(chart()), {}, {}};
 }
 
 Stretch Chart::State::new_stretch(const Carried& carried, std::int64_t point_before) const {

@@ -54,13 +54,13 @@ TEST_CASE("the description shows the values in effect, defaults too") {
 }
 
 TEST_CASE("run lengths stand with their limits") {
-  // Worked example of the statistics design, 3.0 and 6: 3,650 readings: 4.08 and 3.62; 14,600 pairs: 4.31.
+  // By tests/data/run_lengths.csv.
   const std::string text = description();
   INFO(text);
   CHECK(has(text, "    level                 3650 readings, h = 4.08\n"));
   CHECK(has(text, "    precision             3650 readings, h = 3.62\n"));
-  CHECK(has(text, "    pair chart, warning   14600 pairs, h = 4.31\n"));
-  CHECK(has(text, "    pair chart, critical  146000 pairs, h = 4.83 (extrapolated)\n"));
+  CHECK(has(text, "    pair chart, warning   14600 pairs, h = 4.34\n"));
+  CHECK(has(text, "    pair chart, critical  146000 pairs, h = 4.88 (extrapolated)\n"));
   CHECK(has(text, "    outliers              set_aside, a false one every 29200 pairs\n"));
 }
 

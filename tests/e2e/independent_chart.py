@@ -5,14 +5,25 @@ readings at every step; nothing is updated, nothing is kept between steps, so th
 sums, blocks or look-ups cannot be repeated here.
 """
 import math
+import pathlib
 
 import numpy as np
 from scipy import optimize, special, stats
 
-# Mean readings between false signals at a constant limit (simulated for this design).
-LEVEL = ([3.3, 3.5, 3.7, 3.86, 4.0, 4.2, 4.4, 4.6, 4.8], [258, 483, 908, 1613, 2663, 5708, 12840, 30600, 75100])
-PRECISION = ([3.0, 3.3, 3.5, 3.7, 3.86, 4.0, 4.2, 4.4], [479, 1203, 2363, 4902, 9130, 15370, 35200, 84700])
-PAIRS = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6, 4.8], [795, 2670, 4440, 9490, 21300, 50500, 129000])
+def pooled(score):
+    """Limits and mean readings between false signals: the simulated runs, pooled by signals, to four digits."""
+    sums = {}
+    for line in (pathlib.Path(__file__).resolve().parents[1] / "data" / "run_lengths.csv").read_text().splitlines():
+        if line.startswith(score + ","):
+            limit, run_length, _, signals = (float(field) for field in line.split(",")[1:5])
+            of_limit = sums.setdefault(limit, [0.0, 0.0])
+            of_limit[0] += run_length * signals
+            of_limit[1] += signals
+    limits = sorted(sums)
+    return limits, [float(f"{sums[h][0] / sums[h][1]:.4g}") for h in limits]
+
+
+LEVEL, PRECISION, PAIRS = pooled("level"), pooled("precision"), pooled("pairs")
 PAIRS_ON_A_LINE = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6], [776, 2483, 3976, 8195, 18465, 41540])
 PAIRS_LAW = 1.11  # beyond a table of pairs ln(run length) goes on as h^2/2 - 1.11 ln h
 NOT_CONFIRMED = 0.9  # a score so far below its limit takes the signal back
@@ -24,7 +35,7 @@ def limit_for(table, run_length):
     limits, lengths = table
     assert lengths[0] <= run_length, "below the table"
     if run_length > lengths[-1]:
-        assert table is PAIRS_ON_A_LINE, "beyond the table"
+        assert table in (PAIRS, PAIRS_ON_A_LINE), "beyond the table"
 
         def beyond(h):
             return h * h / 2 - PAIRS_LAW * math.log(h)

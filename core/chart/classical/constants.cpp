@@ -69,7 +69,7 @@ RangeConstants range_constants(int n) {
 double c4(int n) {
   need_two(n);
   const double nu = n - 1;
-  return std::sqrt(2 / nu) * std::exp(std::lgamma((nu + 1) / 2) - std::lgamma(nu / 2));
+  return std::sqrt(2 / nu) * gamma_half_step(nu / 2);
 }
 
 }  // namespace agreed::classical

@@ -74,9 +74,10 @@ double individuals_run_length(double shift) {
       equations.add_branch(entries, 1);
       continue;
     }
-    const int side = row > branch ? 1 : -1;
+    const bool upper = row > branch;
+    const int side = upper ? 1 : -1;
     equations.add_branch(entries, side);
-    equations.add_part(entries, -side, kLargestRange - equations.nodes[(row - 1) % branch].x);
+    equations.add_part(entries, -side, kLargestRange - equations.nodes[row - 1 - (upper ? branch : 0)].x);
   }
   std::vector<double> system(n * n, 0.0);
   for (std::size_t i = 0; i < n * n; ++i) system[i] = (i % (n + 1) == 0 ? 1.0 : 0.0) - kernel[i];

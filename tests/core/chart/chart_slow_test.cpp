@@ -28,27 +28,6 @@ void check_within(const Mean& mean, double promised, const char* what) {
   CHECK(std::abs(mean.value() - promised) < 3 * mean.error());
 }
 
-// In control: readings tested, the first of them the `first`-th, until `signals(stretch)`.
-template <class Signals>
-Mean run_lengths(std::uint64_t seed, int streams, std::int64_t first, Signals signals) {
-  Readings next(seed);
-  Mean mean;
-  for (int i = 0; i < streams; ++i) {
-    Stretch stretch(400, {});
-    do stretch.append(Instant{}, next(), 0);
-    while (!signals(stretch));
-    mean.add(static_cast<double>(stretch.count() - first + 1));
-  }
-  return mean;
-}
-
-Mean level_run_lengths(std::uint64_t seed, double h) {
-  return run_lengths(seed, 4000, kLeastForLevel, [h](const Stretch& stretch) {
-    if (!has_level_splits(stretch)) return false;
-    return level_score_exceeds(best_level_split(stretch).t, stretch.count(), h);
-  });
-}
-
 constexpr int kBefore = 103;
 constexpr int kFollowed = 200;
 
@@ -114,19 +93,6 @@ Lives lives(std::uint64_t seed, int count, double r) {
   return all;
 }
 }  // namespace
-
-TEST_CASE("level: readings between false signals at h 3.3 and 3.5") {
-  check_within(level_run_lengths(101, 3.3), 258, "level, h 3.3");
-  check_within(level_run_lengths(102, 3.5), 483, "level, h 3.5");
-}
-
-TEST_CASE("precision: readings between false signals at h 3.0") {
-  std::vector<float> scratch;
-  const Mean mean = run_lengths(103, 3000, kLeastForPrecision, [&](const Stretch& stretch) {
-    return has_precision_splits(stretch) && best_precision_split(stretch, scratch).score > 3.0;
-  });
-  check_within(mean, 479, "precision, h 3.0");
-}
 
 TEST_CASE("a life of 2,000 readings in control keeps the promise of 1.11 false openings of either score") {
   Lives all = lives(104, 400, 0);

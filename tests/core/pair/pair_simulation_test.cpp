@@ -119,24 +119,6 @@ TEST_CASE("a step of one pair sd is told in about the promised number of pairs")
   CHECK(delays[100] <= 27);
 }
 
-TEST_CASE("the pair chart keeps the run length of its limit") {
-  // 3-statistics 3.2, row "pairs": 795 pairs between false signals at h = 3.5.
-  const double limit = evidence_of_score(3.5);
-  constexpr int streams = 400;
-  std::mt19937_64 random(103);
-  const Plant plant;
-  double pairs = 0;
-  for (int i = 0; i < streams; ++i) {
-    PairChart chart(400, 0);
-    do {
-      chart.insert(plant(random), {});
-      pairs += 1;
-    } while (chart.evidence(1).value_or(0) <= limit);
-  }
-  MESSAGE("run length " << pairs / streams);
-  CHECK(std::abs(pairs / streams - 795) < 3 * 795 / std::sqrt(1.0 * streams));
-}
-
 TEST_CASE("a bias that is just allowable is called a lost agreement in few comparisons") {
   // Stated for a bias of exactly A = 1 pair sd, window 200, two levels at the 10th and 90th percentile: 6 %
   // of comparisons within 1,000 pairs; for 0.8 A: 0.5 %.
