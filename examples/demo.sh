@@ -31,7 +31,7 @@ touch "$mill/told"
 pids="$!"
 while [ ! -s "$mill/receiver-port" ]; do sleep 0.1; done
 
-head -c 24 /dev/urandom | base64 | sed 's/^/whsec_/' >"$mill/secret"
+(umask 077; head -c 24 /dev/urandom | base64 | sed 's/^/whsec_/' >"$mill/secret")
 sed 's/port: 7480/port: 0/' examples/mill.yaml >"$mill/agreed.yaml"
 cat >>"$mill/agreed.yaml" <<END
 
@@ -50,6 +50,7 @@ while [ -z "$address" ]; do
   kill -0 "$service" 2>/dev/null || { cat "$mill/log" >&2; exit 1; }
   address=$(sed -n 's/.*\(http:[^ ]*\).*/\1/p' "$mill/out" | head -1)
 done
+sed -i "s/port: 0/port: ${address##*:}/" "$mill/agreed.yaml"  # started again, it answers at the same address
 until [ "$(curl -s -o /dev/null -w '%{http_code}' "$address/health/ready")" = 200 ]; do sleep 0.1; done
 ready_at=$(date +%s)
 
@@ -70,8 +71,11 @@ END
 pids="$! $pids"
 
 if [ "$seconds" -eq 0 ]; then
-  wait "$service"
-  exit
+  code=0
+  wait "$service" || code=$?
+  [ "$code" -eq 137 ] || exit "$code"
+  echo "the service was killed; results go on being dropped, and the receiver waits for it to be started again"
+  wait
 fi
 while [ $(($(date +%s) - ready_at)) -lt "$seconds" ]; do
   sleep 1
