@@ -99,13 +99,22 @@ std::string bias_words(const ComparisonAlert& pair) {
          pair.x + (level ? " at " + pair.numbers.result(*level) : "");
 }
 
-std::string repeat_checks(const ComparisonAlert& pair) {
-  return "Run the check standards on " + pair.both() + " now, to see which one moved.";
+/// The analyzer that has moved by the diagnosis, if it names one.
+std::string named(const ComparisonAlert& pair) {
+  const std::string moved = text_in(pair.alert.details, "moved").value_or("");
+  return moved == "x" ? pair.x : moved == "y" ? pair.y : "";
 }
 
-std::string look_at_both(const ComparisonAlert& pair) {
-  return "Look at what was last done to " + pair.both() +
-         " and what is due on them: parts changed, cleaning, calibration, sample cell, surroundings.";
+std::string repeat_checks(const ComparisonAlert& pair) {
+  const std::string one = named(pair);
+  return "Run the check standards on " + pair.both() + " now, to see " +
+         (one.empty() ? "which one moved." : "whether it is " + one + " that moved.");
+}
+
+std::string look_at_cause(const ComparisonAlert& pair) {
+  const std::string one = named(pair);
+  return "Look at what was last done to " + (one.empty() ? pair.both() : one) + " and what is due on " +
+         (one.empty() ? "them" : "it") + ": parts changed, cleaning, calibration, sample cell, surroundings.";
 }
 
 AlertWords lost_words(const ComparisonAlert& pair) {
@@ -128,7 +137,7 @@ AlertWords lost_words(const ComparisonAlert& pair) {
                 ", and decisions that took them as one." + look_back_words(pair);
   words.steps = {"Do not use " + pair.both() + " as one for " + pair.measurand +
                      "; hold the results in doubt" + earliest_start(pair.alert) + ".",
-                 repeat_checks(pair), look_at_both(pair),
+                 repeat_checks(pair), look_at_cause(pair),
                  "After a repair or a recalibration record it as an intervention and run split samples until "
                  "agreement is shown again."};
   return words;
@@ -171,7 +180,7 @@ AlertWords drifting_words(const ComparisonAlert& pair) {
                                 earliest_start(pair.alert) + " until the verdict is known again."
                           : "Keep samples of what is measured meanwhile, so that it can be measured again.",
                  "Run at least 8 split samples on both analyzers, spread over the range of use.",
-                 look_at_both(pair)};
+                 look_at_cause(pair)};
   return words;
 }
 

@@ -15,7 +15,7 @@ std::string known_hint(std::string_view name, const std::vector<std::string_view
   if (known.empty()) return "none is known";
   const std::vector<std::string> names(known.begin(), known.end());
   if (const auto meant = settings_file::nearest(name, names)) return "did you mean \"" + *meant + "\"?";
-  std::string hint = "known are: ";
+  std::string hint = "there are: ";
   for (std::size_t i = 0; i < std::min(known.size(), kMostShown); ++i)
     hint.append(i == 0 ? "" : ", ").append(known[i]);
   return known.size() > kMostShown ? hint + ", ..." : hint;

@@ -6,7 +6,7 @@
 
 namespace agreed {
 
-/// What to say after an unknown `name`: `did you mean "protein"?` if one of `known` is near, else `known are:
+/// What to say after an unknown `name`: `did you mean "protein"?` if one of `known` is near, else `there are:
 /// a, b, c`, at most ten of them.
 [[nodiscard]] std::string known_hint(std::string_view name, const std::vector<std::string_view>& known);
 

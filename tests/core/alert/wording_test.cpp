@@ -216,7 +216,7 @@ Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing 
 Since: most likely 2026-02-05 06:00 UTC; a start from 2026-02-04 22:00 UTC to 2026-02-05 22:00 UTC is possible.
 Likely cause: line2 has moved (probability 97 %).
 In doubt: protein results of line1 and line2 taken as one since 2026-02-04 22:00 UTC.
-Next: 1. Run the check standards on line1 and line2 now, to see which one moved. 2. Hold the protein results of both analyzers since 2026-02-04 22:00 UTC until the verdict is known again. 3. Run at least 8 split samples on both analyzers, spread over the range of use. 4. Look at what was last done to line1 and line2 and what is due on them: parts changed, cleaning, calibration, sample cell, surroundings. 5. Acknowledge this alert.
+Next: 1. Run the check standards on line1 and line2 now, to see whether it is line2 that moved. 2. Hold the protein results of both analyzers since 2026-02-04 22:00 UTC until the verdict is known again. 3. Run at least 8 split samples on both analyzers, spread over the range of use. 4. Look at what was last done to line2 and what is due on it: parts changed, cleaning, calibration, sample cell, surroundings. 5. Acknowledge this alert.
 )");
 }
 

@@ -141,7 +141,7 @@ TEST_CASE("an unknown name is refused with the nearest right one") {
   CHECK(says(refused("check,2026-01-05T06:00:00Z,protien,wheat-low,1,,,,,"), "did you mean \"protein\"?"));
   CHECK(says(refused("check,2026-01-05T06:00:00Z,protein,wheat-lo,1,,,,,"), "did you mean \"wheat-low\"?"));
   CHECK(
-      says(refused("check,2026-01-05T06:00:00Z,protein,barley,1,,,,,"), "known are: wheat-high, wheat-low"));
+      says(refused("check,2026-01-05T06:00:00Z,protein,barley,1,,,,,"), "there are: wheat-high, wheat-low"));
   CHECK(says(refused("intervention,2026-01-05T06:00:00Z,,repared,,,,,,"), "did you mean \"repaired\"?"));
   CHECK(says(refused("intervention,2026-01-05T06:00:00Z,,noted,,,,,,wheat"), "no check standard"));
   CHECK(says(refused("check,2026-01-05T06:00:00Z,protein,wheat-low,1,,,,line2,"),
