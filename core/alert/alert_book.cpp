@@ -55,7 +55,7 @@ AlertBook::AlertBook(AlertPolicy policy, std::shared_ptr<const Settings> setting
 
 std::vector<AlertTransition> AlertBook::apply(const Finding& finding, Instant now) {
   forget_what_cannot_reopen(now);
-  Alert* alert = find_current(finding.kind, finding.subject);
+  Alert* alert = edit_current(finding.kind, finding.subject);
   if (alert == nullptr) {
     if (!finding.holds) return {};
     return {open(finding, now)};
@@ -92,7 +92,7 @@ std::vector<AlertTransition> AlertBook::admit_outliers(const std::string& compar
                                                        Instant now) {
   Subject subject;
   subject.comparison = comparison;
-  Alert* alert = find_current(AlertKind::pair_outlier, subject);
+  Alert* alert = edit_current(AlertKind::pair_outlier, subject);
   if (alert == nullptr) return {};
   const auto samples = list_in(alert->details, collected_list(alert->kind));
   const bool one_stays = std::any_of(samples.begin(), samples.end(), [&](const std::string& sample) {
@@ -144,10 +144,15 @@ std::vector<const Alert*> AlertBook::current() const {
   return list;
 }
 
-Alert* AlertBook::find_current(AlertKind kind, const Subject& subject) {
-  for (auto& [id, alert] : alerts_)
+const Alert* AlertBook::find_current(AlertKind kind, const Subject& subject) const {
+  for (const auto& [id, alert] : alerts_)
     if (is_current(alert) && alert.kind == kind && alert.subject == subject) return &alert;
   return nullptr;
+}
+
+Alert* AlertBook::edit_current(AlertKind kind, const Subject& subject) {
+  const Alert* found = find_current(kind, subject);
+  return found == nullptr ? nullptr : &alerts_.at(found->id);
 }
 
 /// A blank alert for the finding: under the id of the newest resolved one that may reopen, else a new one.

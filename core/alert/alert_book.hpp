@@ -53,11 +53,13 @@ class AlertBook {
   /// Reminders of open alerts that nobody acknowledged; none when remind_every is zero.
   [[nodiscard]] std::vector<AlertTransition> tick(Instant now);
 
+  /// The open or acknowledged alert of that kind and subject, if there is one.
+  [[nodiscard]] const Alert* find_current(AlertKind kind, const Subject& subject) const;
   /// Open and acknowledged alerts, by id.
   [[nodiscard]] std::vector<const Alert*> current() const;
 
  private:
-  [[nodiscard]] Alert* find_current(AlertKind kind, const Subject& subject);
+  [[nodiscard]] Alert* edit_current(AlertKind kind, const Subject& subject);
   [[nodiscard]] Alert& begin(const Finding& finding);
   AlertTransition open(const Finding& finding, Instant now);
   std::vector<AlertTransition> add(Alert& alert, const Finding& finding, Instant now);

@@ -163,8 +163,8 @@ void Chart::State::mark(Instant at, const std::string& what) {
 void Chart::State::begin_stretch(Instant at, const std::string& what, const Carried& carried,
                                  std::vector<Finding>& findings) {
   if (carried.runs == 0) before_stretch = repeatability();
-  if (alarm) findings.push_back(ceased(at, "new_stretch", 0));
-  if (biased) findings.push_back(bias_ceased(at, "new_stretch"));
+  if (alarm) findings.push_back(calmed(at, "new_stretch", 0));
+  if (biased) findings.push_back(ceased(AlertKind::check_standard_biased, at, "new_stretch"));
   alarm.reset();
   if (classical) restart_classical(at, findings);
   biased = false;
@@ -289,7 +289,7 @@ void Chart::State::close(const Aftermath& aftermath, Instant at, std::vector<Fin
     taken = stretch.set_aside(alarm->start, aftermath.position);
     set_aside += taken;
   }
-  findings.push_back(ceased(at, "back_to_normal", taken));
+  findings.push_back(calmed(at, "back_to_normal", taken));
   alarm.reset();
 }
 
@@ -367,7 +367,8 @@ void Chart::State::judge_bias(Instant at, std::vector<Finding>& findings) {
   const bool exceeds = allowed && std::abs(mean->mean - reference->value) > *allowed;
   if (exceeds == biased) return;
   biased = exceeds;
-  findings.push_back(biased ? bias_finding() : bias_ceased(at, "back_to_normal"));
+  findings.push_back(biased ? bias_finding()
+                            : ceased(AlertKind::check_standard_biased, at, "back_to_normal"));
 }
 
 void Chart::add(std::span<const CheckReading> run, std::vector<Finding>& findings) {

@@ -154,9 +154,9 @@ Finding Chart::State::bias_finding() const {
   return finding;
 }
 
-Finding Chart::State::bias_ceased(Instant at, const char* reason) const {
+Finding Chart::State::ceased(AlertKind kind, Instant at, const char* reason) const {
   Finding finding;
-  finding.kind = AlertKind::check_standard_biased;
+  finding.kind = kind;
   finding.subject = subject();
   finding.holds = false;
   finding.at = at;
@@ -164,13 +164,8 @@ Finding Chart::State::bias_ceased(Instant at, const char* reason) const {
   return finding;
 }
 
-Finding Chart::State::ceased(Instant at, const char* reason, std::int64_t set_aside_now) const {
-  Finding finding;
-  finding.kind = AlertKind::check_standard_unstable;
-  finding.subject = subject();
-  finding.holds = false;
-  finding.at = at;
-  finding.resolved_reason = reason;
+Finding Chart::State::calmed(Instant at, const char* reason, std::int64_t set_aside_now) const {
+  Finding finding = ceased(AlertKind::check_standard_unstable, at, reason);
   finding.details.emplace_back("set_aside", static_cast<double>(set_aside_now));
   return finding;
 }

@@ -143,9 +143,10 @@ struct Chart::State {
   [[nodiscard]] std::optional<double> score_of(EndingRule rule) const;
   [[nodiscard]] bool matters(const Change& change) const;
   [[nodiscard]] Subject subject() const;
-  [[nodiscard]] Finding ceased(Instant at, const char* reason, std::int64_t set_aside_now) const;
+  [[nodiscard]] Finding ceased(AlertKind kind, Instant at, const char* reason) const;
+  /// It is unstable no more.
+  [[nodiscard]] Finding calmed(Instant at, const char* reason, std::int64_t set_aside_now) const;
   [[nodiscard]] Finding bias_finding() const;
-  [[nodiscard]] Finding bias_ceased(Instant at, const char* reason) const;
 
   // Of a classical chart.
   void judge_by_limits(std::span<const CheckReading> run, std::vector<Finding>& findings);

@@ -225,26 +225,19 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   return outcome;
 }
 
-const Alert* Engine::current_alert(const Finding& finding) const {
-  const auto current = book_->current();
-  const auto found = std::find_if(current.begin(), current.end(), [&](const Alert* alert) {
-    return alert->kind == finding.kind && alert->subject == finding.subject;
-  });
-  return found == current.end() ? nullptr : *found;
-}
-
 void Engine::explain(Finding& finding) const {
   if (!has_cause(finding)) return;
   for (std::uint32_t i = 0; i < settings_->comparisons.size(); ++i) {
     if (settings_->comparisons[i].id != finding.subject.comparison) continue;
     if (const auto change = monitor_.explain({i}))
-      add_cause(finding, change->diagnosis, change->look_back, current_alert(finding));
+      add_cause(finding, change->diagnosis, change->look_back,
+                book_->find_current(finding.kind, finding.subject));
   }
 }
 
 void Engine::tell_anew(ComparisonIndex comparison, Instant now) {
   for (Finding& finding : monitor_.conditions(comparison)) {
-    if (!has_cause(finding) || current_alert(finding) == nullptr) continue;
+    if (!has_cause(finding) || book_->find_current(finding.kind, finding.subject) == nullptr) continue;
     explain(finding);
     tell(book_->apply(finding, now), now);
   }

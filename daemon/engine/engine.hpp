@@ -48,7 +48,6 @@ class Engine final : public IntakeSink, public Service {
   void explain(Finding& finding) const;
   /// Brings the open alerts of a comparison up to what its diagnosis says now.
   void tell_anew(ComparisonIndex comparison, Instant now);
-  [[nodiscard]] const Alert* current_alert(const Finding& finding) const;
   [[nodiscard]] std::vector<Subject> refolded(const MonitorOutcome& outcome) const;
   /// Compares the alert book with what holds after a fold; `subjects` as in AlertBook::reconcile.
   void reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,

@@ -11,6 +11,7 @@
 // (c4 + 3 sqrt(1 - c4^2)) sigma. What is looked for upwards only: less spread is no fault.
 #include <optional>
 
+#include "core/chart/chart_view.hpp"
 #include "core/chart/classical/baseline.hpp"
 #include "core/chart/classical/level_tests.hpp"
 #include "core/chart/sliding_array.hpp"
@@ -18,14 +19,11 @@
 namespace agreed::classical {
 
 /// One run as it is shown; limits are there once the chart has them. In the measurand's unit.
-struct JudgedRun {
+struct JudgedRun : ClassicalPoint {
   int readings = 0;
   double mean = 0;
   std::optional<double> moving_range;  ///< of run means
-  std::optional<double> spread;        ///< range or standard deviation of its replicates
-  std::optional<double> upper, lower, moving_range_upper, spread_upper;
-  std::optional<double> ewma, ewma_upper, ewma_lower;
-  std::optional<double> cusum_upper, cusum_lower;  ///< in standard deviations
+  std::optional<double> upper, lower;
   Signals signals;
 };
 

@@ -39,13 +39,13 @@ void Chart::State::judge_by_limits(std::span<const CheckReading> run, std::vecto
       findings.push_back(classical_finding());
       break;
     case Turn::ended:
-      findings.push_back(ceased(taken.at, "back_to_normal", 0));
+      findings.push_back(calmed(taken.at, "back_to_normal", 0));
       break;
   }
 }
 
 void Chart::State::restart_classical(Instant at, std::vector<Finding>& findings) {
-  if (classical->fold.alarm()) findings.push_back(ceased(at, "new_stretch", 0));
+  if (classical->fold.alarm()) findings.push_back(calmed(at, "new_stretch", 0));
   classical->fold.restart();
   classical->baseline.reset();
 }
@@ -96,21 +96,6 @@ Finding Chart::State::classical_finding() const {
   return finding;
 }
 
-namespace {
-ClassicalPoint shown_point(const classical::JudgedRun& run) {
-  ClassicalPoint point;
-  point.moving_range_upper = run.moving_range_upper;
-  point.spread = run.spread;
-  point.spread_upper = run.spread_upper;
-  point.ewma = run.ewma;
-  point.ewma_upper = run.ewma_upper;
-  point.ewma_lower = run.ewma_lower;
-  point.cusum_upper = run.cusum_upper;
-  point.cusum_lower = run.cusum_lower;
-  return point;
-}
-}  // namespace
-
 void Chart::State::show_classical(ChartView& view) const {
   const classical::Fold& fold = classical->fold;
   const ClassicalSettings& chosen = chart().classical;
@@ -146,7 +131,7 @@ void Chart::State::show_classical(ChartView& view) const {
     point.upper = run.upper;
     point.lower = run.lower;
     point.signals = run.signals.all();
-    point.classical = shown_point(run);
+    point.classical = run;
   }
   view.classical = shown;
 }
