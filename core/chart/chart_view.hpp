@@ -168,6 +168,8 @@ struct ChartView {
   std::optional<double>
       correlation_allowed_for;  ///< about the two means at the best split; by the level score
   std::optional<ReferenceView> reference;
+  std::int64_t censored = 0;                 ///< results left out since they only say "below" or "above"; not
+                                             ///< folded, filled in by who keeps the results
   std::optional<ReplicatesView> replicates;  ///< none without any
   std::optional<EffectView> intervention_effect, since_first;
   std::optional<double> smallest_shift;  ///< below it a shift is a notice

@@ -33,9 +33,9 @@ struct Matrix {
     return by_mean.mean * by_slope.slope - by_slope.mean * by_mean.slope;
   }
   [[nodiscard]] Parameters solve(Pull right) const {
-    const double d = determinant();
-    return {(right.mean * by_slope.slope - by_slope.mean * right.slope) / d,
-            (by_mean.mean * right.slope - right.mean * by_mean.slope) / d};
+    const double inverse = 1 / determinant();
+    return {(right.mean * by_slope.slope - by_slope.mean * right.slope) * inverse,
+            (by_mean.mean * right.slope - right.mean * by_mean.slope) * inverse};
   }
 };
 Matrix operator-(const Matrix& a, const Matrix& b) {

@@ -12,7 +12,7 @@
 // Accuracy: standard errors within 0.2 % of n full refits from 20 pairs on, 0.005 % at 200, 1 % from 6 on (at
 //   most seen: 0.08, 0.001 and 0.13 %).
 // Degenerate: nothing, when without one of the pairs there is no line.
-// Cost: O(n), about 0.5 us a pair.
+// Cost: O(n), about 0.15 us a pair.
 #include <optional>
 
 #include "core/pair/weighted_line.hpp"

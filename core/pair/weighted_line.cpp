@@ -38,10 +38,6 @@ struct SecondSums {
 };
 }  // namespace
 
-PairErrors ErrorLaw::at(double level_x, double level_y) const {
-  return {x.variance_at(level_x), y.variance_at(level_y)};
-}
-
 bool ErrorLaw::needs_positive_levels() const {
   return !(x.at_zero > 0 && y.at_zero > 0);
 }
@@ -63,22 +59,6 @@ Weighing::Weighing(const ErrorLaw& law, Point origin, Point mean_shares)
   const double lambda = law.lambda * mean_shares.x / mean_shares.y;  // of the means of replicates
   x_part_ = lambda / (1 + lambda);
   y_part_ = 1 / (1 + lambda);
-}
-
-WeighedPair Weighing::operator()(Point pair, Point shares, LineParameters line) const {
-  WeighedPair p;
-  p.point = {pair.x - origin_.x, pair.y - origin_.y};
-  p.residual = p.point.y - line.at_origin - line.slope * p.point.x;
-  const double x_part = law_.lambda * shares.x * line.slope;
-  const double fitted = p.point.x + x_part * p.residual / (shares.y + x_part * line.slope);
-  const Point level = levels_of({origin_.x + fitted, origin_.y + line.at_origin + line.slope * fitted});
-  p.level = std::min(level.x, level.y);
-  p.errors = law_.at(level.x, level.y);
-  p.errors.x *= shares.x;
-  p.errors.y *= shares.y;
-  p.weight = 1 / (p.errors.y + line.slope * line.slope * p.errors.x);
-  p.adjusted = p.point.x + line.slope * p.errors.x * p.weight * p.residual;
-  return p;
 }
 
 LineParameters Weighing::parameters_of(const DemingLine& line) const {

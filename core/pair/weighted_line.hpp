@@ -16,6 +16,7 @@
 //   (89 to 94 % coverage of 95 % intervals); the jackknife serves there.
 // Degenerate: `reason` says why there is no line; a growing error needs fitted levels above zero.
 // Cost: O(n) a pass, 4 to 8 passes where the pairs go well together; at most 200.
+#include <algorithm>
 #include <span>
 #include <string_view>
 #include <vector>
@@ -37,7 +38,9 @@ struct ErrorLaw {
   bool common_level = false;  ///< both at one level: weighted Deming
 
   /// Of single results at the levels of x and y.
-  [[nodiscard]] PairErrors at(double level_x, double level_y) const;
+  [[nodiscard]] PairErrors at(double level_x, double level_y) const {
+    return {x.variance_at(level_x), y.variance_at(level_y)};
+  }
   /// Every variance goes down to zero with the level, so that levels must be above it.
   [[nodiscard]] bool needs_positive_levels() const;
 };
@@ -102,6 +105,23 @@ class Weighing {
   Point origin_, mean_shares_{1, 1};
   double x_part_ = 0, y_part_ = 0;  ///< of the other side's level in the level of x and of y
 };
+
+// Here, since a fit does it some twenty times with each pair.
+inline WeighedPair Weighing::operator()(Point pair, Point shares, LineParameters line) const {
+  WeighedPair p;
+  p.point = {pair.x - origin_.x, pair.y - origin_.y};
+  p.residual = p.point.y - line.at_origin - line.slope * p.point.x;
+  const double x_part = law_.lambda * shares.x * line.slope;
+  const double fitted = p.point.x + x_part * p.residual / (shares.y + x_part * line.slope);
+  const Point level = levels_of({origin_.x + fitted, origin_.y + line.at_origin + line.slope * fitted});
+  p.level = std::min(level.x, level.y);
+  p.errors = law_.at(level.x, level.y);
+  p.errors.x *= shares.x;
+  p.errors.y *= shares.y;
+  p.weight = 1 / (p.errors.y + line.slope * line.slope * p.errors.x);
+  p.adjusted = p.point.x + line.slope * p.errors.x * p.weight * p.residual;
+  return p;
+}
 
 /// What one pair adds to the estimating equations: both sums are zero at the fit.
 struct Pull {

@@ -38,7 +38,8 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       queue_(settings_->analyzers.size()),
       journal_(std::move(journal)),
       monitor_(settings_),
-      ledger_(settings_) {
+      ledger_(settings_),
+      censored_(settings_->charts.size()) {
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
@@ -173,18 +174,22 @@ bool Engine::anything_waits() const {
 
 void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers) {
   journal_->begin(now);
-  std::vector<Event> events;
-  std::vector<Finding> findings;
+  TakenIn taken;
   for (QueuedPiece& queued : work.pieces) {
     try {
-      const PieceAnswer answer = ledger_.take(queued.piece, now, *journal_, monitor_, events, findings);
+      const PieceAnswer answer = ledger_.take(queued.piece, now, *journal_, monitor_, taken);
       answers.emplace_back([&queued, answer] { queued.answer.set_value(answer); });
     } catch (const PieceOutOfOrder&) {
       answers.emplace_back(
           [&queued, error = std::current_exception()] { queued.answer.set_exception(error); });
     }
   }
-  const MonitorOutcome outcome = conclude(std::move(events), findings, now);
+  MonitorOutcome outcome = conclude(std::move(taken.events), taken.findings, now);
+  for (const auto& [analyzer, standard, measurand] : taken.censored)
+    if (const auto chart = monitor_.find_chart(analyzer, standard, measurand)) {
+      count_censored(*chart);
+      outcome.charts_changed.insert(*chart);
+    }
   for (const Task& task : work.tasks) task.inside(now);
   tell(book_->tick(now), now);
   journal_->commit();
@@ -287,6 +292,8 @@ void Engine::fold_from_journal(Instant now) {
   monitor_ = Monitor(settings_);
   JournalHistory history(*journal_, *settings_);
   const MonitorOutcome outcome = monitor_.fold_all(history);
+  if (journal_->totals().readings_censored > 0)
+    for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) count_censored({i});
   journal_->begin(now);
   const bool new_configuration = journal_->last_configuration_sha256() != config_sha256_;
   if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
@@ -296,6 +303,12 @@ void Engine::fold_from_journal(Instant now) {
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
+}
+
+void Engine::count_censored(ChartIndex index) {
+  const ChartSettings& chart = settings_->of(index);
+  censored_[index.value] = journal_->censored_checks(
+      settings_->of(chart.analyzer).id, settings_->of(chart.standard).id, settings_->of(chart.measurand).id);
 }
 
 void Engine::fail(Work& work, const std::string& why) {
@@ -308,7 +321,12 @@ void Engine::fail(Work& work, const std::string& why) {
 void Engine::refresh_views(const std::set<ChartIndex>& charts, const std::set<ComparisonIndex>& comparisons) {
   for (const ChartIndex index : charts) {
     const auto fold = std::make_shared<const Chart>(monitor_.chart(index));
-    next_.charts[index.value] = LazyView<ChartView>([fold, settings = settings_] { return fold->view(); });
+    next_.charts[index.value] =
+        LazyView<ChartView>([fold, settings = settings_, censored = censored_[index.value]] {
+          ChartView view = fold->view();
+          view.censored = censored;
+          return view;
+        });
     next_.chart_states[index.value] = fold->state();
   }
   for (const ComparisonIndex index : comparisons) {

@@ -54,6 +54,7 @@ class Engine final : public IntakeSink, public Service {
                  const std::string& reason, Instant now);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
   void fold_from_journal(Instant now);
+  void count_censored(ChartIndex index);
   void undo(const Work& work, const std::string& why);
   void end_trouble(bool written);
   [[nodiscard]] bool anything_waits() const;
@@ -76,6 +77,7 @@ class Engine final : public IntakeSink, public Service {
   std::unique_ptr<Journal> journal_;
   Monitor monitor_;
   FileLedger ledger_;
+  std::vector<std::int64_t> censored_;  ///< results of each chart that it leaves out
   std::unique_ptr<AlertBook> book_;
   std::set<std::string> routes_with_news_;
   std::string trouble_;  ///< why what waits could not be committed; empty when nothing was refused

@@ -27,8 +27,8 @@ Event event_of(const Row& row) {
 }  // namespace
 
 PieceAnswer FileLedger::take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor,
-                             std::vector<Event>& events, std::vector<Finding>& findings) {
-  const Hands hands{journal, monitor, events, findings, now};
+                             TakenIn& taken) {
+  const Hands hands{journal, monitor, taken, now};
   const Key key{piece.file.analyzer, piece.file.name, piece.file.sha256};
   if (piece.piece == 0) open_[key] = begin(piece, journal);
   const auto found = open_.find(key);
@@ -102,21 +102,24 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
                                      " stands under the same key; take that back (kind void) first"},
                                 hands);
     if (!is_news) return;
-    hands.findings.push_back({.kind = AlertKind::readings_conflict,
-                              .subject = {.analyzer = settings_->of(row.analyzer).id},
-                              .severity = Severity::warning,
-                              .at = row.measured_at,
-                              .details = {{"item", row.item},
-                                          {"measurand", settings_->of(*row.measurand).id},
-                                          {"measured_at", to_rfc3339(row.measured_at)},
-                                          {"value", row.value},
-                                          {"stored", result.stored_value},
-                                          {"line", static_cast<double>(row.line)}}});
+    hands.taken.findings.push_back({.kind = AlertKind::readings_conflict,
+                                    .subject = {.analyzer = settings_->of(row.analyzer).id},
+                                    .severity = Severity::warning,
+                                    .at = row.measured_at,
+                                    .details = {{"item", row.item},
+                                                {"measurand", settings_->of(*row.measurand).id},
+                                                {"measured_at", to_rfc3339(row.measured_at)},
+                                                {"value", row.value},
+                                                {"stored", result.stored_value},
+                                                {"line", static_cast<double>(row.line)}}});
     return;
   }
   ++file.good;
-  if (result.outcome == RowOutcome::accepted && row.censored == Censoring::none)
-    hands.events.push_back(event_of(row));
+  if (result.outcome != RowOutcome::accepted) return;
+  if (row.censored == Censoring::none)
+    hands.taken.events.push_back(event_of(row));
+  else if (row.kind == RowKind::check)
+    hands.taken.censored.emplace(row.analyzer, *row.standard, *row.measurand);
 }
 
 void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
@@ -143,6 +146,7 @@ void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
     if (standard == settings_->standards.end()) continue;
     const StandardIndex index{static_cast<std::uint32_t>(standard - settings_->standards.begin())};
     hands.monitor.take_back(row.analyzer, index, *row.measurand);
+    hands.taken.censored.emplace(row.analyzer, index, *row.measurand);
   }
 }
 
@@ -157,7 +161,7 @@ void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& 
   stored.note = row.note;
   stored.at = row.measured_at;
   if (!hands.journal.add_intervention(file.id, stored)) return;
-  hands.events.emplace_back(
+  hands.taken.events.emplace_back(
       Intervention{row.measured_at, row.analyzer, row.standard, row.measurand, row.intervention, row.note});
 }
 
@@ -188,16 +192,16 @@ PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, con
     return {FileOutcome::repeated, hands.now, ""};
   }
   if (file.rejected > 0 && (file.news || !file.finished))
-    hands.findings.push_back({.kind = AlertKind::file_rejected,
-                              .subject = {.analyzer = settings_->of(piece.file.analyzer).id},
-                              .severity = Severity::warning,
-                              .at = hands.now,
-                              .details = {{"file", printable(piece.file.name)},
-                                          {"line", static_cast<double>(file.first_line)},
-                                          {"column", static_cast<double>(file.first_column)},
-                                          {"reason", file.first_reason},
-                                          {"rows", static_cast<double>(file.rejected)},
-                                          {"good_rows", static_cast<double>(file.good)}}});
+    hands.taken.findings.push_back({.kind = AlertKind::file_rejected,
+                                    .subject = {.analyzer = settings_->of(piece.file.analyzer).id},
+                                    .severity = Severity::warning,
+                                    .at = hands.now,
+                                    .details = {{"file", printable(piece.file.name)},
+                                                {"line", static_cast<double>(file.first_line)},
+                                                {"column", static_cast<double>(file.first_column)},
+                                                {"reason", file.first_reason},
+                                                {"rows", static_cast<double>(file.rejected)},
+                                                {"good_rows", static_cast<double>(file.good)}}});
   const bool unusable = file.rejected > 0 && file.good == 0;
   if (!file.finished)
     hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");

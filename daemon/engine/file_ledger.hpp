@@ -25,15 +25,21 @@ class PieceOutOfOrder : public std::runtime_error {
   using std::runtime_error::runtime_error;
 };
 
+/// What came of the pieces of one batch.
+struct TakenIn {
+  std::vector<Event> events;      ///< new readings and interventions
+  std::vector<Finding> findings;  ///< what a person must know of the files
+  /// Check standards of which a censored reading came, or any reading was taken back.
+  std::set<std::tuple<AnalyzerIndex, StandardIndex, MeasurandIndex>> censored;
+};
+
 class FileLedger {
  public:
   explicit FileLedger(std::shared_ptr<const Settings> settings) : settings_(std::move(settings)) {}
 
-  /// Writes one piece within the open batch. New readings are appended to `events`, what a person must know
-  /// of the file to `findings`; the monitor hears what was taken back. Throws JournalError and
-  /// PieceOutOfOrder.
-  PieceAnswer take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor,
-                   std::vector<Event>& events, std::vector<Finding>& findings);
+  /// Writes one piece within the open batch and adds what came of it to `taken`; the monitor hears what was
+  /// taken back. Throws JournalError and PieceOutOfOrder.
+  PieceAnswer take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor, TakenIn& taken);
 
   /// Forgets every file that was begun and not finished (after a failed batch).
   void forget() { open_.clear(); }
@@ -57,8 +63,7 @@ class FileLedger {
   struct Hands {
     Journal& journal;
     Monitor& monitor;
-    std::vector<Event>& events;
-    std::vector<Finding>& findings;
+    TakenIn& taken;
     Instant now;
   };
   [[nodiscard]] OpenFile begin(const FilePiece& piece, Journal& journal) const;

@@ -8,7 +8,7 @@ namespace {
 // The statements are prepared anew each time: `take` may throw, or read the journal itself. The order comes
 // from the primary key, so nothing is sorted.
 constexpr const char* kStanding =
-    " AND r.censored = 0 AND NOT EXISTS (SELECT 1 FROM voids v WHERE v.analyzer = r.analyzer AND v.kind = "
+    " AND NOT EXISTS (SELECT 1 FROM voids v WHERE v.analyzer = r.analyzer AND v.kind = "
     "r.kind AND v.measurand = r.measurand AND v.item = r.item AND v.measured_at = r.measured_at AND "
     "v.replicate = r.replicate AND v.revision = r.revision) ";
 constexpr const char* kWhere =
@@ -25,7 +25,8 @@ std::string_view text_of(const SQLite::Column& column) {
 void each_of_item(SQLite::Database& database, StoredKind kind, std::string_view analyzer,
                   std::string_view measurand, std::string_view item, const TakeReading& take) {
   SQLite::Statement rows(database, std::string("SELECT r.measured_at, r.replicate, r.value") + kWhere +
-                                       " AND r.item = ?" + kStanding + "ORDER BY r.measured_at, r.replicate");
+                                       " AND r.item = ? AND r.censored = 0" + kStanding +
+                                       "ORDER BY r.measured_at, r.replicate");
   rows.bind(1, std::string(analyzer));
   rows.bind(2, static_cast<int>(kind));
   rows.bind(3, std::string(measurand));
@@ -37,7 +38,8 @@ void each_of_item(SQLite::Database& database, StoredKind kind, std::string_view 
 void each_split(SQLite::Database& database, std::string_view analyzer, std::string_view measurand,
                 const TakeSplit& take) {
   SQLite::Statement rows(database, std::string("SELECT r.item, r.measured_at, r.replicate, r.value") +
-                                       kWhere + kStanding + "ORDER BY r.item, r.measured_at, r.replicate");
+                                       kWhere + " AND r.censored = 0" + kStanding +
+                                       "ORDER BY r.item, r.measured_at, r.replicate");
   rows.bind(1, std::string(analyzer));
   rows.bind(2, static_cast<int>(StoredKind::split));
   rows.bind(3, std::string(measurand));
@@ -46,6 +48,18 @@ void each_split(SQLite::Database& database, std::string_view analyzer, std::stri
     take(text_of(sample), instant(rows.getColumn(1)), rows.getColumn(2).getInt(),
          rows.getColumn(3).getDouble());
   }
+}
+
+std::int64_t censored_checks(SQLite::Database& database, std::string_view analyzer,
+                             std::string_view measurand, std::string_view item) {
+  SQLite::Statement count(
+      database, std::string("SELECT count(*)") + kWhere + " AND r.item = ? AND r.censored <> 0" + kStanding);
+  count.bind(1, std::string(analyzer));
+  count.bind(2, static_cast<int>(StoredKind::check));
+  count.bind(3, std::string(measurand));
+  count.bind(4, std::string(item));
+  count.executeStep();
+  return count.getColumn(0).getInt64();
 }
 
 std::vector<JournalIntervention> interventions(SQLite::Database& database) {
@@ -93,6 +107,12 @@ void Journal::each_split_of(std::string_view analyzer, std::string_view measuran
   journal::translating(impl_->file, [&] {
     journal::each_of_item(*impl_->database, StoredKind::split, analyzer, measurand, sample, take);
   });
+}
+
+std::int64_t Journal::censored_checks(std::string_view analyzer, std::string_view item,
+                                      std::string_view measurand) {
+  return journal::translating(
+      impl_->file, [&] { return journal::censored_checks(*impl_->database, analyzer, measurand, item); });
 }
 
 std::vector<JournalIntervention> Journal::interventions() {

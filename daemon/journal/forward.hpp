@@ -18,6 +18,9 @@ void each_of_item(SQLite::Database& database, StoredKind kind, std::string_view 
 /// Standing, uncensored split results by (sample, measured_at, replicate).
 void each_split(SQLite::Database& database, std::string_view analyzer, std::string_view measurand,
                 const TakeSplit& take);
+/// How many censored ones of a check standard stand.
+[[nodiscard]] std::int64_t censored_checks(SQLite::Database& database, std::string_view analyzer,
+                                           std::string_view measurand, std::string_view item);
 /// By (at, id).
 [[nodiscard]] std::vector<JournalIntervention> interventions(SQLite::Database& database);
 /// The newest transition of each alert, by alert.

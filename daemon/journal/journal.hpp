@@ -75,6 +75,9 @@ class Journal {
                                            double value)>& take);  ///< by sample, time
   void each_split_of(std::string_view analyzer, std::string_view measurand, std::string_view sample,
                      const std::function<void(Instant, std::int32_t replicate, double value)>& take);
+  /// Standing censored results of a check standard: what `each_check` leaves out.
+  [[nodiscard]] std::int64_t censored_checks(std::string_view analyzer, std::string_view item,
+                                             std::string_view measurand);
   [[nodiscard]] std::vector<JournalIntervention> interventions();  ///< by time
   [[nodiscard]] std::vector<StoredTransition> last_transitions();
   /// Of the newest configuration recorded; empty when there is none.

@@ -171,6 +171,7 @@ Json chart_of(const Snapshot& snapshot, ChartIndex index, int points) {
                {"precision", precision_of(view.precision)},
                {"serial_correlation", json_number(view.serial_correlation)},
                {"serial_correlation_allowed_for", json_number(view.correlation_allowed_for)},
+               {"censored", view.censored},
                {"replicates", replicates_of(view.replicates)},
                {"smallest_shift", json_number(view.smallest_shift)},
                {"intervention_effect", effect_of(view.intervention_effect)},

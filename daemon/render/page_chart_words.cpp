@@ -147,6 +147,13 @@ std::string replicates_words(const ChartScene& scene) {
   return out + ".";
 }
 
+std::string censored_words(const ChartScene& scene) {
+  const std::int64_t count = scene.view.censored;
+  if (count == 0) return {};
+  return counted(static_cast<int>(count), "result only says", "results only say") +
+         " \"below\" or \"above\"; kept, and left out of this chart.";
+}
+
 std::string effects_words(const ChartScene& scene) {
   const auto difference = [&](const EffectView& effect) {
     std::string out = shown_signed(effect.difference, scene.style.decimals) + " " + scene.style.unit;

@@ -14,6 +14,8 @@ namespace agreed {
 [[nodiscard]] std::string precision_words(const ChartScene& scene);
 /// Empty without a reference value.
 [[nodiscard]] std::string reference_words(const ChartScene& scene);
+/// Of results that only say "below" or "above"; empty when there are none.
+[[nodiscard]] std::string censored_words(const ChartScene& scene);
 /// Empty without replicates.
 [[nodiscard]] std::string replicates_words(const ChartScene& scene);
 /// What the newest intervention did, and how far the mean is from that of the first stretch; empty without.

@@ -118,8 +118,8 @@ std::string chart_html(const PageInput& input, ChartIndex index) {
   if (range_not_covered(input.snapshot, index)) warnings.emplace_back("range_not_covered");
   std::string out = "<h1>" + escaped(scene.name()) + "</h1><p>" + chart_badge_html(scene.view.state) + "</p>";
   out += paragraph(chart_words(scene)) + paragraph(precision_words(scene)) +
-         paragraph(replicates_words(scene)) + paragraph(reference_words(scene)) +
-         paragraph(effects_words(scene)) + warnings_html(warnings);
+         paragraph(censored_words(scene)) + paragraph(replicates_words(scene)) +
+         paragraph(reference_words(scene)) + paragraph(effects_words(scene)) + warnings_html(warnings);
   Subject subject;
   subject.analyzer = scene.analyzer;
   subject.standard = scene.standard;

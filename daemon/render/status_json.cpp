@@ -1,6 +1,7 @@
 #include "daemon/render/status_json.hpp"
 
 #include <algorithm>
+#include <cmath>
 
 #include "daemon/render/json_parts.hpp"
 #include "daemon/version.hpp"
@@ -147,12 +148,17 @@ Json stated_apart(const Settings& settings) {
   return apart;
 }
 
+// Shares that were added up leave 4.799999999999999 where 4.8 is meant.
+double without_noise(double per_year) {
+  return std::round(per_year * 1e9) / 1e9;
+}
+
 Json budget_of(const Settings& settings) {
   const AlarmBudget& budget = settings.alarm_budget;
   Json by_kind = Json::object();
-  for (const auto& [kind, expected] : budget.by_kind) by_kind[kind] = json_number(expected);
+  for (const auto& [kind, expected] : budget.by_kind) by_kind[kind] = json_number(without_noise(expected));
   return {{"false_alerts_per_year", json_number(budget.allowed_per_year)},
-          {"expected", json_number(budget.expected_per_year)},
+          {"expected", json_number(without_noise(budget.expected_per_year))},
           {"by_kind", std::move(by_kind)},
           {"apart", stated_apart(settings)}};
 }

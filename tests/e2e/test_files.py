@@ -101,6 +101,21 @@ class Files(SiteTest):
         self.assertEqual([p["value"] for p in self.points()], [10.65])
         self.assertEqual(self.readings()["voided"], 1)
 
+    def test_a_censored_check_is_kept_and_counted_on_its_chart_and_left_out(self):
+        self.site.drop("line1", "1.csv", csv([check(0, 10.61), check(1, "<5"), check(2, ">20")]))
+        self.site.wait_taken()
+        self.assertEqual([p["value"] for p in self.points()], [10.61])
+        self.assertEqual(self.readings()["censored"], 2)
+        chart = "/api/charts/line1/wheat-low/protein"
+        self.assertEqual(self.site.get(chart)["censored"], 2)
+        self.assertIn("2 results only say", self.site.request("/charts/line1/wheat-low/protein")[2].decode())
+        self.site.drop("line1", "2.csv", csv([("void",) + check(1, "")[1:]]))
+        self.site.wait_taken()
+        self.assertEqual(self.site.get(chart)["censored"], 1)
+        self.site.kill()
+        self.site.start()
+        self.assertEqual(self.site.get(chart)["censored"], 1, "after a restart")
+
     def test_the_order_of_arrival_does_not_matter(self):
         plant = Plant(seed=7)
         checks, splits = plant.checks(0, 20), plant.splits(0, 30)

@@ -96,6 +96,30 @@ class PairStream {
   double evidence_ = 0;
 };
 
+/// Pairs about an established line: those before a split lie on it.
+class EstablishedLineStream {
+ public:
+  static constexpr Score score = Score::pairs_established_line;
+  static constexpr double limits[] = {3.5, 3.86, 4.0, 4.2, 4.4, 4.6};
+
+  bool take(std::mt19937_64& random) {
+    const double truth = sample_(random);
+    const double x = truth + error_(random);
+    chart_.insert({x, line.intercept + line.slope * truth + error_(random)}, Instant{});
+    const auto evidence = chart_.evidence(1);
+    evidence_ = evidence.value_or(0);
+    return evidence.has_value();
+  }
+  [[nodiscard]] bool exceeds(double h) const { return evidence_ > evidence_of_score(h); }
+
+ private:
+  static constexpr EstablishedLine line{0.1, 1.02};
+  std::uniform_real_distribution<double> sample_{9, 15};
+  std::normal_distribution<double> error_{0, 0.02};
+  PairChart chart_{kSplitMemory, 0, line};
+  double evidence_ = 0;
+};
+
 struct Tally {
   double limit = 0, sum = 0, squares = 0;
   int signals = 0;
