@@ -53,6 +53,7 @@ struct Config {
   std::string text;  ///< as read
   std::shared_ptr<const Settings> settings;
   std::filesystem::path state;
+  std::optional<double> least_free_mb;  ///< less room than this where the state lies is told
   Listen listen;
   std::optional<std::string> page_url;  ///< where people open the page; none: made of the address listened on
   std::vector<IntakeSettings> intake;

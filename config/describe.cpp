@@ -215,6 +215,8 @@ std::string route_text(const Route& route) {
   if (!route.analyzers.empty()) text += line("  analyzers", list_of(route.analyzers));
   if (!route.measurands.empty()) text += line("  measurands", list_of(route.measurands));
   if (!route.comparisons.empty()) text += line("  comparisons", list_of(route.comparisons));
+  if (route.unacknowledged_for) text += line("  unacknowledged_for", shown(*route.unacknowledged_for));
+  if (route.heartbeat) text += line("  heartbeat", shown(*route.heartbeat));
   if (route.ca_file) text += line("  ca_file", route.ca_file->string());
   return text;
 }
@@ -223,6 +225,8 @@ std::string alerts_text(const Config& config) {
   std::string text = "\nAlerts\n";
   text += line("remind_every", shown(config.alert_policy.remind_every));
   text += line("reopen_within", shown(config.alert_policy.reopen_within));
+  text += line("hold", shown(config.alert_policy.hold));
+  text += line("overdue_after", shown(config.alert_policy.overdue.patience) + " times the cadence");
   if (config.routes.empty()) text += line("routes", "none: nothing is sent");
   for (const Route& route : config.routes) text += route_text(route);
   return text;

@@ -154,12 +154,6 @@ void read_routes(const Section& top, const fs::path& folder, Draft& draft) {
       section.error("name", "found '" + route.name + "' twice, expected routes of different names");
     draft.config.routes.push_back(std::move(route));
   }
-  for (const Section& work : alerts.list("maintenance")) {
-    (void)reference<AnalyzerIndex>(work, "analyzer", draft.settings.analyzers);
-    const auto from = work.time("from"), to = work.time("to");
-    if (from && to && *to <= *from)
-      work.error("to", "found a time that is not after from, expected a later one");
-  }
 }
 
 }  // namespace agreed::settings_file

@@ -37,6 +37,7 @@ void read_service(const Section& top, const std::filesystem::path& folder, Draft
   config.page_url = top.text("page_url");
 
   const Section listen = top.section("listen");
+  config.least_free_mb = top.number("least_free_mb");
   config.listen.address = listen.text("address").value_or(config.listen.address);
   config.listen.port = listen.whole_number("port").value_or(config.listen.port);
   config.listen.open_to_network = listen.flag("open_to_network");
@@ -51,12 +52,6 @@ void read_service(const Section& top, const std::filesystem::path& folder, Draft
   for (const IntakeSettings& intake : config.intake)
     if (intake.inbox == config.state)
       top.error("state", "found the inbox of analyzer " + intake.analyzer + ", expected a folder of its own");
-
-  const Section alerts = top.section("alerts");
-  config.alert_policy.remind_every =
-      alerts.duration("remind_every").value_or(config.alert_policy.remind_every);
-  config.alert_policy.reopen_within =
-      alerts.duration("reopen_within").value_or(config.alert_policy.reopen_within);
 }
 
 }  // namespace agreed::settings_file

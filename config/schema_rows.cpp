@@ -34,6 +34,9 @@ Rows service_rows() {
           .within(0.01, 10'000),
       row("state", T::path, "state",
           "folder of journal, lock and backups; on a local disk, never a network share"),
+      row("least_free_mb", T::number, "",
+          "less free space for the state, in MB, is told; else 200, or a tenth of a small disk")
+          .within(0, 1'000'000'000),
       row("page_url", T::url, "", "where people open the page, for links in alerts; else made of listen"),
       row("listen", T::section, "", "where page and API answer"),
       row("listen.address", T::address, "127.0.0.1", "only this machine unless told otherwise"),
@@ -243,15 +246,14 @@ Rows alert_rows() {
       row("alerts.reopen_within", T::duration, "24h", "back within this, it is the same alert again")
           .within(0, 366 * kDay),
       row("alerts.hold", T::duration, "1h", "an intervention holds notifications of its analyzer this long")
-          .within(0, 30 * kDay)
-          .coming(Later::warned),
-      row("alerts.quiet", T::list, "", "hours in which nothing is expected, so nothing is overdue")
-          .coming(Later::warned),
+          .within(0, 30 * kDay),
+      row("alerts.overdue_after", T::number, "1.5", "times its cadence without anything, and it is overdue")
+          .within(1, 100),
+      row("alerts.quiet", T::list, "", "hours in which nothing is expected, so nothing is overdue"),
       row("alerts.quiet[].days", T::word_list, "", "else every day").one_of("mon|tue|wed|thu|fri|sat|sun"),
       row("alerts.quiet[].from", T::day_time, "00:00", "in UTC"),
       row("alerts.quiet[].to", T::day_time, "24:00", "earlier than from: on the next day"),
-      row("alerts.maintenance", T::list, "", "planned work; notifications are held, findings recorded")
-          .coming(Later::warned),
+      row("alerts.maintenance", T::list, "", "planned work; notifications are held, findings recorded"),
       row("alerts.maintenance[].analyzer", T::id, "", "whose").required(),
       row("alerts.maintenance[].from", T::time, "", "its start").required(),
       row("alerts.maintenance[].to", T::time, "", "its end").required(),
@@ -271,11 +273,9 @@ Rows alert_rows() {
       row("alerts.routes[].comparisons", T::id_list, "", "only alerts of these; else all"),
       row("alerts.routes[].heartbeat", T::duration, "",
           "a sign of life this often, so that silence is noticed")
-          .within(kMinute, 30 * kDay)
-          .coming(Later::warned),
+          .within(kMinute, 30 * kDay),
       row("alerts.routes[].unacknowledged_for", T::duration, "", "only what nobody acknowledged by then")
-          .within(kMinute, 30 * kDay)
-          .coming(Later::warned),
+          .within(kMinute, 30 * kDay),
       row("access", T::section, "", "who may read and write over HTTP"),
       row("access.tokens_file", T::path, "",
           "hashes of the tokens, written by agreed token; none: every POST is 401"),

@@ -38,6 +38,7 @@ struct Alert {
   std::optional<Period> started_between;
   Details details;
   Instant told_at{};  ///< when it was last told (opened, worse, reminder): reminders count from here
+  std::optional<AlertChange> held;  ///< what has still to be told, once its analyzer is no longer worked on
 
   bool operator==(const Alert&) const = default;
 };

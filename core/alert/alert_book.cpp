@@ -44,7 +44,7 @@ void take_over(Alert& alert, const Finding& finding) {
 
 AlertBook::AlertBook(AlertPolicy policy, std::shared_ptr<const Settings> settings,
                      std::vector<Alert> restored)
-    : policy_(policy), settings_(std::move(settings)) {
+    : policy_(std::move(policy)), settings_(std::move(settings)), holds_(policy_.maintenance, policy_.hold) {
   if (!settings_) throw std::invalid_argument("AlertBook: settings must not be null");
   for (auto& alert : restored) {
     next_id_ = std::max(next_id_, alert.id + 1);
@@ -115,26 +115,40 @@ std::vector<AlertTransition> AlertBook::acknowledge(std::int64_t id, const std::
   alert.state = AlertState::acknowledged;
   alert.acknowledged = Acknowledgement{by, now, note};
   alert.changed_at = now;
+  const bool told = std::exchange(alert.held, std::nullopt) != AlertChange::opened;
   write_words(alert, *settings_);
-  std::vector<AlertTransition> transitions{{AlertChange::acknowledged, now, true, alert}};
-  if (resolves_on_acknowledgement(alert.kind)) transitions.push_back(resolve(alert, "acknowledged", now));
+  std::vector<AlertTransition> transitions{{AlertChange::acknowledged, now, told, alert}};
+  if (resolves_on_acknowledgement(alert.kind)) {
+    transitions.push_back(resolve(alert, "acknowledged", now));
+    transitions.back().tell = told;
+  }
   return transitions;
 }
 
 std::vector<AlertTransition> AlertBook::tick(Instant now) {
   forget_what_cannot_reopen(now);
   std::vector<AlertTransition> transitions;
-  if (policy_.remind_every <= Duration::zero()) return transitions;
   for (auto& [id, alert] : alerts_) {
-    if (alert.state != AlertState::open) continue;
-    // A told_at far ahead of now: our clock was set back. Remind, rather than stay silent until it catches
-    // up.
-    const Duration since = now - alert.told_at;
-    if (since < policy_.remind_every && -since <= policy_.remind_every) continue;
-    alert.told_at = now;
-    transitions.push_back({AlertChange::reminder, now, true, alert});
+    if (alert.state != AlertState::open || held(alert, now)) continue;
+    if (auto transition = alert.held ? release(alert, now) : remind(alert, now))
+      transitions.push_back(std::move(*transition));
   }
   return transitions;
+}
+
+std::optional<AlertTransition> AlertBook::release(Alert& alert, Instant now) const {
+  const AlertChange change = *std::exchange(alert.held, std::nullopt);
+  alert.told_at = now;
+  return AlertTransition{change, now, true, alert};
+}
+
+std::optional<AlertTransition> AlertBook::remind(Alert& alert, Instant now) const {
+  if (policy_.remind_every <= Duration::zero()) return std::nullopt;
+  // A told_at far ahead of now: our clock was set back. Remind, rather than stay silent until it catches up.
+  const Duration since = now - alert.told_at;
+  if (since < policy_.remind_every && -since <= policy_.remind_every) return std::nullopt;
+  alert.told_at = now;
+  return AlertTransition{AlertChange::reminder, now, true, alert};
 }
 
 std::vector<const Alert*> AlertBook::current() const {
@@ -172,9 +186,10 @@ AlertTransition AlertBook::open(const Finding& finding, Instant now) {
   Alert& alert = begin(finding);
   alert.severity = finding.severity;
   alert.opened_at = alert.changed_at = alert.told_at = now;
+  if (held(alert, now)) alert.held = AlertChange::opened;
   take_over(alert, finding);
   write_words(alert, *settings_);
-  return {AlertChange::opened, now, true, alert};
+  return {AlertChange::opened, now, !alert.held, alert};
 }
 
 std::vector<AlertTransition> AlertBook::add(Alert& alert, const Finding& finding, Instant now) {
@@ -185,9 +200,16 @@ std::vector<AlertTransition> AlertBook::add(Alert& alert, const Finding& finding
   if (after == alert) return {};
   const bool worse = after.severity > alert.severity;
   after.changed_at = now;
-  if (worse) after.told_at = now;
+  AlertChange change = AlertChange::changed;
+  const bool tell = worse && !held(alert, now);
+  if (tell) {
+    change = std::exchange(after.held, std::nullopt).value_or(change);
+    after.told_at = now;
+  } else if (worse && !after.held) {
+    after.held = change;
+  }
   alert = std::move(after);
-  return {{AlertChange::changed, now, worse, alert}};
+  return {{change, now, tell, alert}};
 }
 
 AlertTransition AlertBook::resolve(Alert& alert, std::string_view reason, Instant now) {
@@ -195,8 +217,10 @@ AlertTransition AlertBook::resolve(Alert& alert, std::string_view reason, Instan
   alert.resolved_at = now;
   alert.resolved_reason = reason;
   alert.changed_at = now;
+  // Whoever never heard of it need not hear that it is over.
+  const bool told = std::exchange(alert.held, std::nullopt) != AlertChange::opened;
   write_words(alert, *settings_);
-  return {AlertChange::resolved, now, true, alert};
+  return {AlertChange::resolved, now, told, alert};
 }
 
 void AlertBook::forget_what_cannot_reopen(Instant now) {

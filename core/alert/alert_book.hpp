@@ -8,6 +8,8 @@
 #include <vector>
 
 #include "core/alert/alert.hpp"
+#include "core/alert/holds.hpp"
+#include "core/alert/overdue.hpp"
 #include "core/base/settings.hpp"
 
 namespace agreed {
@@ -15,6 +17,9 @@ namespace agreed {
 struct AlertPolicy {
   Duration remind_every = std::chrono::hours(8);
   Duration reopen_within = std::chrono::hours(24);
+  Duration hold = std::chrono::hours(1);  ///< after an intervention
+  std::vector<Maintenance> maintenance;
+  OverduePolicy overdue;
 };
 
 class AlertBook {
@@ -50,7 +55,11 @@ class AlertBook {
   [[nodiscard]] std::vector<AlertTransition> acknowledge(std::int64_t id, const std::string& by,
                                                          const std::string& note, Instant now);
 
-  /// Reminders of open alerts that nobody acknowledged; none when remind_every is zero.
+  /// Alerts of the analyzer are not told for a while; see Holds.
+  void hold(const Intervention& intervention) { holds_.add(intervention); }
+
+  /// What was held and may now be told; reminders of open alerts that nobody acknowledged (none when
+  /// remind_every is zero).
   [[nodiscard]] std::vector<AlertTransition> tick(Instant now);
 
   /// The open or acknowledged alert of that kind and subject, if there is one.
@@ -61,13 +70,19 @@ class AlertBook {
  private:
   [[nodiscard]] Alert* edit_current(AlertKind kind, const Subject& subject);
   [[nodiscard]] Alert& begin(const Finding& finding);
+  [[nodiscard]] bool held(const Alert& alert, Instant now) const {
+    return holds_.held(alert.subject, *settings_, now);
+  }
   AlertTransition open(const Finding& finding, Instant now);
+  std::optional<AlertTransition> release(Alert& alert, Instant now) const;
+  std::optional<AlertTransition> remind(Alert& alert, Instant now) const;
   std::vector<AlertTransition> add(Alert& alert, const Finding& finding, Instant now);
   AlertTransition resolve(Alert& alert, std::string_view reason, Instant now);
   void forget_what_cannot_reopen(Instant now);
 
   AlertPolicy policy_;
   std::shared_ptr<const Settings> settings_;
+  Holds holds_;
   std::map<std::int64_t, Alert> alerts_;
   std::int64_t next_id_ = 1;
 };

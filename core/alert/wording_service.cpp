@@ -1,4 +1,7 @@
 // The words of alerts about what came in, or did not, and about the service itself.
+#include <cmath>
+#include <utility>
+
 #include "core/alert/details.hpp"
 #include "core/alert/phrases.hpp"
 
@@ -116,6 +119,58 @@ AlertWords plain_words(const Alert& alert, const std::string& what, const std::s
   return words;
 }
 
+std::optional<Instant> time_in(const Details& details, std::string_view name) {
+  const auto text = text_in(details, name);
+  const auto parsed = text ? parse_rfc3339(*text) : std::nullopt;
+  return parsed ? std::optional(parsed->at) : std::nullopt;
+}
+
+/// "8 h", "90 min": the largest unit of which it is a whole number.
+std::string every_words(double seconds) {
+  for (const auto& [size, unit] :
+       {std::pair(86400.0, " d"), std::pair(3600.0, " h"), std::pair(60.0, " min")})
+    if (seconds >= size && std::fmod(seconds, size) < 1e-6 * size) return exact(seconds / size) + unit;
+  return exact(seconds) + " s";
+}
+
+/// Something that did not come although it was due.
+AlertWords missing_words(const Alert& alert, const std::string& what, const std::string& expected,
+                         const std::string& step) {
+  AlertWords words = plain_words(alert, what, step);
+  words.since.clear();
+  if (alert.started_at) words.since = "overdue since " + time_words(*alert.started_at) + ".";
+  if (const auto last = time_in(alert.details, "last_received_at"))
+    words.found += " The last came at " + time_words(*last) + ".";
+  if (const auto start = time_in(alert.details, "service_started_at"))
+    words.found += " None came since the service was started at " + time_words(*start) + ".";
+  if (const auto every = number_in(alert.details, "every_seconds"))
+    words.found += " " + expected + " every " + every_words(*every) + ".";
+  words.doubt = "nothing yet; but what happens meanwhile is not seen.";
+  return words;
+}
+
+AlertWords storage_words(const Alert& alert) {
+  AlertWords words = plain_words(alert, "Storage for the journal runs low",
+                                 "Make room on the disk that holds the state folder.");
+  const auto folder = text_in(alert.details, "folder");
+  const auto least = number_in(alert.details, "least_free_mb");
+  if (least)
+    words.found += " Less than " + exact(*least) + " MB are free" + (folder ? " for " + *folder : "") +
+                   ". When the disk is full nothing is taken in; files wait in the inboxes.";
+  words.doubt = "nothing that was taken in.";
+  return words;
+}
+
+AlertWords overdue_words(const Alert& alert, const std::string& analyzer) {
+  const auto standards = list_in(alert.details, "standards");
+  const std::string which = standards.empty()       ? std::string("A check standard is")
+                            : standards.size() == 1 ? "Check standard " + standards.front() + " is"
+                                                    : "Check standards " + list_words(standards) + " are";
+  return missing_words(
+      alert, which + " overdue on " + analyzer, "It is expected",
+      standards.size() > 1 ? "Run the check standards that are due." : "Run the check standard that is due.");
+}
+
 }  // namespace
 
 AlertWords service_words(const Alert& alert, const Settings& settings) {
@@ -130,18 +185,16 @@ AlertWords service_words(const Alert& alert, const Settings& settings) {
     case AlertKind::inbox_unreachable:
       return inbox_words(alert, settings);
     case AlertKind::check_overdue:
-      return plain_words(alert, "A check standard is overdue on " + analyzer,
-                         "Run the check standard that is due.");
+      return overdue_words(alert, analyzer);
     case AlertKind::pairs_overdue:
-      return plain_words(alert,
-                         "Split samples are overdue for " + or_else(alert.subject.comparison, "a comparison"),
-                         "Run a split sample on both analyzers.");
+      return missing_words(
+          alert, "Split samples are overdue for " + or_else(alert.subject.comparison, "a comparison"),
+          "A pair is expected", "Run a split sample on both analyzers.");
     case AlertKind::results_silent:
-      return plain_words(alert, "No results come from " + analyzer,
-                         "See whether it is running and its export reaches the inbox.");
+      return missing_words(alert, "No results come from " + analyzer, "Something is expected",
+                           "See whether it is running and its export reaches the inbox.");
     case AlertKind::storage_low:
-      return plain_words(alert, "Storage for the journal runs low",
-                         "Make room on the disk that holds the state folder.");
+      return storage_words(alert);
     case AlertKind::delivery_failing:
       return plain_words(
           alert, "Messages to " + or_else(alert.subject.service, "a webhook") + " cannot be delivered",

@@ -284,6 +284,7 @@ void Monitor::fold(const Event& event, MonitorOutcome& outcome) {
 
 void Monitor::fold(const DuePair& due, MonitorOutcome& outcome) {
   ComparisonStream& stream = comparisons_[due.comparison.value];
+  outcome.comparisons_paired.insert(due.comparison);
   if (stream.stale) return;
   // There is one: see mark_unjudged.
   const ErrorRatio ratio = ratio_at(stream, due.comparison, due.pair.at, nullptr).value();

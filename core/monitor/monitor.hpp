@@ -26,7 +26,8 @@ struct MonitorOutcome {
   std::vector<Finding> findings;        ///< in fold order; none from streams that were folded again
   std::set<ChartIndex> charts_changed;  ///< to be shown anew
   std::set<ComparisonIndex> comparisons_changed;
-  std::set<ChartIndex> charts_refolded;  ///< their conditions must be compared with the alert book
+  std::set<ComparisonIndex> comparisons_paired;  ///< a pair of them was made
+  std::set<ChartIndex> charts_refolded;          ///< their conditions must be compared with the alert book
   std::set<ComparisonIndex> comparisons_refolded;
   /// Of those folded again: the samples set aside anywhere in their history.
   std::map<ComparisonIndex, std::vector<std::string>> set_aside;

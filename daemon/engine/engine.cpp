@@ -7,9 +7,11 @@
 #include "core/alert/cause.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
+#include "daemon/engine/service_watch.hpp"
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/render/finding_json.hpp"
+#include "daemon/render/status_json.hpp"
 #include "daemon/sha256.hpp"
 #include "daemon/webhook/cloud_event.hpp"
 #include "daemon/webhook/routing.hpp"
@@ -21,6 +23,9 @@ namespace {
 constexpr Duration kIdle = std::chrono::minutes(1);
 // While the journal cannot be used: how long until it is tried again.
 constexpr Duration kTryAgain = std::chrono::seconds(2);
+// Between two looks at the clock, the disk and the endpoints, while batches follow each other.
+constexpr Duration kLookEvery = std::chrono::seconds(1);
+constexpr const char* kHeartbeat = "agreed.heartbeat";
 
 std::pair<AnalyzerIndex, std::string> file_of(const QueuedPiece& queued) {
   return {queued.piece.file.analyzer, queued.piece.file.name};
@@ -33,13 +38,16 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       routes_(config.routes),
       alert_policy_(config.alert_policy),
       state_folder_(config.state),
+      least_free_mb_(config.least_free_mb),
       config_sha256_(sha256_hex(config.text)),
       config_text_(config.text),
       queue_(settings_->analyzers.size()),
       journal_(std::move(journal)),
       monitor_(settings_),
       ledger_(settings_),
-      censored_(settings_->charts.size()) {
+      censored_(settings_->charts.size()),
+      arrivals_(*settings_, now_utc()) {
+  for (const IntakeSettings& intake : config.intake) inboxes_.push_back(intake.inbox);
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
@@ -184,14 +192,15 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
           [&queued, error = std::current_exception()] { queued.answer.set_exception(error); });
     }
   }
+  note_arrivals(taken, now);
   MonitorOutcome outcome = conclude(std::move(taken.events), taken.findings, now);
-  for (const auto& [analyzer, standard, measurand] : taken.censored)
-    if (const auto chart = monitor_.find_chart(analyzer, standard, measurand)) {
-      count_censored(*chart);
-      outcome.charts_changed.insert(*chart);
-    }
+  for (const ComparisonIndex comparison : outcome.comparisons_paired) arrivals_.add_pair(comparison, now);
+  for (const ChartIndex chart : charts_to_recount(taken)) {
+    count_censored(chart);
+    outcome.charts_changed.insert(chart);
+  }
   for (const Task& task : work.tasks) task.inside(now);
-  tell(book_->tick(now), now);
+  watch(now);
   journal_->commit();
   for (const QueuedPiece& queued : work.pieces)
     if (queued.piece.last) refused_.erase(file_of(queued));
@@ -215,8 +224,7 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
   const auto tell_of = [&](Finding finding) {
     explain(finding);
-    journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
-                          finding_json(finding));
+    record(finding);
     tell(book_->apply(finding, now), now);
   };
   std::for_each(outcome.findings.begin(), outcome.findings.end(), tell_of);
@@ -228,6 +236,69 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
     tell_anew(comparison, now);
   }
   return outcome;
+}
+
+void Engine::record(const Finding& finding) {
+  journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
+                        finding_json(finding));
+}
+
+void Engine::note_arrivals(const TakenIn& taken, Instant now) {
+  for (const Event& event : taken.events) {
+    arrivals_.add(event, now);
+    if (const auto* intervention = std::get_if<Intervention>(&event)) book_->hold(*intervention);
+  }
+  for (const CheckReading& reading : taken.censored) arrivals_.add(reading, now);
+}
+
+// What the clock, the disk and the endpoints say. A condition that goes on is told once.
+void Engine::watch(Instant now) {
+  if (now >= watched_at_ && now - watched_at_ < kLookEvery) return;
+  watched_at_ = now;
+  std::vector<Finding> findings = overdue_findings(*settings_, alert_policy_.overdue, arrivals_, now);
+  for (Finding& finding : inbox_findings(*settings_, inboxes_, queue_.inboxes(), now))
+    findings.push_back(std::move(finding));
+  if (const auto room = room_for(state_folder_))
+    if (auto finding = storage_finding(state_folder_, *room, least_free_mb_, now))
+      findings.push_back(std::move(*finding));
+  for (const Route& route : routes_)
+    if (auto finding = delivery_finding(route, journal_->failing(route.name), now))
+      findings.push_back(std::move(*finding));
+  for (const Finding& finding : findings) {
+    const auto transitions = book_->apply(finding, now);
+    if (transitions.empty()) continue;
+    record(finding);
+    tell(transitions, now);
+  }
+  tell(book_->tick(now), now);
+  tell_unacknowledged(now);
+  beat(now);
+}
+
+void Engine::tell_unacknowledged(Instant now) {
+  const auto current = book_->current();
+  for (const Escalation& due : escalations(current, routes_, *settings_, now)) {
+    const Alert& alert = *due.alert;
+    const std::string& route = routes_[due.route].name;
+    if (!escalated_.insert({alert.id, alert.opened_at, due.route}).second) continue;
+    if (journal_->has_message(alert.id, route, alert.opened_at)) continue;
+    send(route, {AlertChange::opened, now, true, alert}, alert_json(alert, base_url_), now);
+  }
+}
+
+// While the newest sign of life still waits to be delivered, another would say nothing more.
+void Engine::beat(Instant now) {
+  for (const Route& route : routes_) {
+    if (!route.heartbeat) continue;
+    const auto last = journal_->last_message(route.name, kHeartbeat);
+    if (last && (last->waits || (last->created_at <= now && now - last->created_at < *route.heartbeat)))
+      continue;
+    const std::string id = make_webhook_id();
+    put_in_outbox(
+        route.name, id, kHeartbeat,
+        to_json(heartbeat_event(journal_->source(), id, settings_->site, chain_json(journal_->head()), now)),
+        0, now);
+  }
 }
 
 void Engine::explain(Finding& finding) const {
@@ -269,19 +340,29 @@ void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) 
     const std::string body = alert_json(transition.alert, base_url_);
     journal_->add_transition({transition.alert.id, transition.at, to_string(transition.change), body});
     if (!transition.tell) continue;
-    for (const std::size_t position : routes_for(transition, routes_, *settings_)) {
-      const std::string& route = routes_[position].name;
-      OutboxMessage message;
-      message.webhook_id = make_webhook_id();
-      message.route = route;
-      message.type = event_type(transition.change);
-      message.body = to_json(alert_event(transition, journal_->source(), message.webhook_id, body));
-      message.alert = transition.alert.id;
-      message.created_at = message.due_at = now;
-      journal_->add_message(message);
-      routes_with_news_.insert(route);
-    }
+    for (const std::size_t position : routes_for(transition, routes_, *settings_))
+      send(routes_[position].name, transition, body, now);
   }
+}
+
+void Engine::send(const std::string& route, const AlertTransition& transition, const std::string& body,
+                  Instant now) {
+  const std::string id = make_webhook_id();
+  put_in_outbox(route, id, event_type(transition.change),
+                to_json(alert_event(transition, journal_->source(), id, body)), transition.alert.id, now);
+}
+
+void Engine::put_in_outbox(const std::string& route, const std::string& id, std::string type,
+                           std::string body, std::int64_t alert, Instant now) {
+  OutboxMessage message;
+  message.webhook_id = id;
+  message.route = route;
+  message.type = std::move(type);
+  message.body = std::move(body);
+  message.alert = alert;
+  message.created_at = message.due_at = now;
+  journal_->add_message(message);
+  routes_with_news_.insert(route);
 }
 
 void Engine::fold_from_journal(Instant now) {
@@ -290,7 +371,10 @@ void Engine::fold_from_journal(Instant now) {
     restored.push_back(alert_from_json(transition.body));
   book_ = std::make_unique<AlertBook>(alert_policy_, settings_, std::move(restored));
   monitor_ = Monitor(settings_);
+  escalated_.clear();
   JournalHistory history(*journal_, *settings_);
+  for (const Intervention& intervention : history.interventions())
+    if (intervention.at + alert_policy_.hold > now) book_->hold(intervention);
   const MonitorOutcome outcome = monitor_.fold_all(history);
   if (journal_->totals().readings_censored > 0)
     for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) count_censored({i});
@@ -303,6 +387,16 @@ void Engine::fold_from_journal(Instant now) {
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
+}
+
+std::set<ChartIndex> Engine::charts_to_recount(const TakenIn& taken) const {
+  std::set<ChartIndex> charts;
+  const auto add = [&](const CheckReading& of) {
+    if (const auto chart = monitor_.find_chart(of.analyzer, of.standard, of.measurand)) charts.insert(*chart);
+  };
+  std::for_each(taken.censored.begin(), taken.censored.end(), add);
+  std::for_each(taken.taken_back.begin(), taken.taken_back.end(), add);
+  return charts;
 }
 
 void Engine::count_censored(ChartIndex index) {

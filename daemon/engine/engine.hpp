@@ -54,7 +54,19 @@ class Engine final : public IntakeSink, public Service {
                  const std::string& reason, Instant now);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
   void fold_from_journal(Instant now);
+  [[nodiscard]] std::set<ChartIndex> charts_to_recount(const TakenIn& taken) const;
   void count_censored(ChartIndex index);
+  void record(const Finding& finding);
+  void note_arrivals(const TakenIn& taken, Instant now);
+  void watch(Instant now);
+  /// Routes that hear only of what nobody acknowledged in time.
+  void tell_unacknowledged(Instant now);
+  /// Signs of life to the routes that asked for them.
+  void beat(Instant now);
+  void send(const std::string& route, const AlertTransition& transition, const std::string& body,
+            Instant now);
+  void put_in_outbox(const std::string& route, const std::string& id, std::string type, std::string body,
+                     std::int64_t alert, Instant now);
   void undo(const Work& work, const std::string& why);
   void end_trouble(bool written);
   [[nodiscard]] bool anything_waits() const;
@@ -68,6 +80,8 @@ class Engine final : public IntakeSink, public Service {
   const std::vector<Route> routes_;
   const AlertPolicy alert_policy_;
   const std::filesystem::path state_folder_;
+  const std::optional<double> least_free_mb_;
+  std::vector<std::filesystem::path> inboxes_;
   const std::string config_sha256_;
   const std::string config_text_;
   std::string base_url_;
@@ -78,6 +92,10 @@ class Engine final : public IntakeSink, public Service {
   Monitor monitor_;
   FileLedger ledger_;
   std::vector<std::int64_t> censored_;  ///< results of each chart that it leaves out
+  Arrivals arrivals_;
+  Instant watched_at_{};
+  /// What was told so far of alerts that nobody acknowledged: alert, its opening, route.
+  std::set<std::tuple<std::int64_t, Instant, std::size_t>> escalated_;
   std::unique_ptr<AlertBook> book_;
   std::set<std::string> routes_with_news_;
   std::string trouble_;  ///< why what waits could not be committed; empty when nothing was refused

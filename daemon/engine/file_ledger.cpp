@@ -17,10 +17,12 @@ int censoring_of(Censoring censored) {
   return censored == Censoring::below ? -1 : 1;
 }
 
+CheckReading check_of(const Row& row) {
+  return {row.measured_at, row.analyzer, *row.standard, *row.measurand, row.replicate, row.value};
+}
+
 Event event_of(const Row& row) {
-  if (row.kind == RowKind::check)
-    return CheckReading{row.measured_at, row.analyzer,  *row.standard,
-                        *row.measurand,  row.replicate, row.value};
+  if (row.kind == RowKind::check) return check_of(row);
   return SplitReading{row.measured_at, row.analyzer, row.item, *row.measurand, row.replicate, row.value};
 }
 
@@ -119,7 +121,7 @@ void FileLedger::take_reading(const Row& row, OpenFile& file, const Hands& hands
   if (row.censored == Censoring::none)
     hands.taken.events.push_back(event_of(row));
   else if (row.kind == RowKind::check)
-    hands.taken.censored.emplace(row.analyzer, *row.standard, *row.measurand);
+    hands.taken.censored.push_back(check_of(row));
 }
 
 void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
@@ -146,7 +148,8 @@ void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
     if (standard == settings_->standards.end()) continue;
     const StandardIndex index{static_cast<std::uint32_t>(standard - settings_->standards.begin())};
     hands.monitor.take_back(row.analyzer, index, *row.measurand);
-    hands.taken.censored.emplace(row.analyzer, index, *row.measurand);
+    hands.taken.taken_back.push_back(
+        {row.measured_at, row.analyzer, index, *row.measurand, row.replicate, 0});
   }
 }
 

@@ -27,10 +27,10 @@ class PieceOutOfOrder : public std::runtime_error {
 
 /// What came of the pieces of one batch.
 struct TakenIn {
-  std::vector<Event> events;      ///< new readings and interventions
-  std::vector<Finding> findings;  ///< what a person must know of the files
-  /// Check standards of which a censored reading came, or any reading was taken back.
-  std::set<std::tuple<AnalyzerIndex, StandardIndex, MeasurandIndex>> censored;
+  std::vector<Event> events;             ///< new readings and interventions
+  std::vector<Finding> findings;         ///< what a person must know of the files
+  std::vector<CheckReading> censored;    ///< new ones that only say "below" or "above"
+  std::vector<CheckReading> taken_back;  ///< whose check standards a void concerned
 };
 
 class FileLedger {

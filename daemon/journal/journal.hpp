@@ -62,6 +62,12 @@ class Journal {
   void add_transition(const StoredTransition& transition);
   std::int64_t add_message(const OutboxMessage& message);
   void add_try(const DeliveryTry& attempt);
+  /// Whether this route was sent anything of this alert since then.
+  [[nodiscard]] bool has_message(std::int64_t alert, std::string_view route, Instant since);
+  /// The newest message of this type to this route.
+  [[nodiscard]] std::optional<LastMessage> last_message(std::string_view route, std::string_view type);
+  /// While the newest try to this route was in vain.
+  [[nodiscard]] std::optional<FailingDelivery> failing(std::string_view route);
   /// Makes a message due again, whatever became of it; false if there is none with that webhook-id.
   bool send_again(std::string_view webhook_id, Instant due_at);
   void add_configuration(std::string_view text, std::string_view sha256, Instant at);

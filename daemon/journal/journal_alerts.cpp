@@ -131,6 +131,49 @@ bool Journal::send_again(std::string_view webhook_id, Instant due_at) {
   });
 }
 
+bool Journal::has_message(std::int64_t alert, std::string_view route, Instant since) {
+  return journal::translating(impl_->file, [&] {
+    Query row = impl_->query("SELECT 1 FROM messages WHERE alert = ? AND route = ? AND created_at >= ?");
+    row->bind(1, alert);
+    row->bind(2, std::string(route));
+    row->bind(3, journal::milliseconds(since));
+    return row->executeStep();
+  });
+}
+
+std::optional<LastMessage> Journal::last_message(std::string_view route, std::string_view type) {
+  return journal::translating(impl_->file, [&]() -> std::optional<LastMessage> {
+    Query row = impl_->query(
+        "SELECT m.created_at, o.state = 'waiting' FROM messages m JOIN outbox o ON o.message = m.id "
+        "WHERE m.alert = 0 AND m.route = ? AND m.type = ? ORDER BY m.id DESC LIMIT 1");
+    row->bind(1, std::string(route));
+    row->bind(2, std::string(type));
+    if (!row->executeStep()) return std::nullopt;
+    return LastMessage{journal::instant(row->getColumn(0)), row->getColumn(1).getInt() != 0};
+  });
+}
+
+std::optional<FailingDelivery> Journal::failing(std::string_view route) {
+  return journal::translating(impl_->file, [&]() -> std::optional<FailingDelivery> {
+    // The newest try tells what the endpoint answers now; the oldest message tried in vain, since when. A
+    // route that is not among the newest thousand tries of all has nothing to do.
+    Query newest = impl_->query(
+        "SELECT t.delivered, t.status, m.created_at FROM (SELECT * FROM delivery_tries ORDER BY id DESC "
+        "LIMIT "
+        "1000) t JOIN messages m ON m.id = t.message WHERE m.route = ? ORDER BY t.id DESC LIMIT 1");
+    newest->bind(1, std::string(route));
+    if (!newest->executeStep() || newest->getColumn(0).getInt() != 0) return std::nullopt;
+    FailingDelivery failing{journal::instant(newest->getColumn(2)), newest->getColumn(1).getInt()};
+    Query oldest = impl_->query(
+        "SELECT m.created_at FROM outbox o JOIN messages m ON m.id = o.message WHERE o.route = ? AND "
+        "o.state = 'waiting' AND o.tries > 0 ORDER BY o.message LIMIT 1");
+    oldest->bind(1, std::string(route));
+    if (oldest->executeStep())
+      failing.since = std::min(failing.since, journal::instant(oldest->getColumn(0)));
+    return failing;
+  });
+}
+
 void Journal::add_configuration(std::string_view text, std::string_view sha256, Instant at) {
   impl_->in_open_batch(
       [&] { impl_->history.start(Table::configurations).time(at).text(sha256).text(text).insert(); });

@@ -93,6 +93,19 @@ struct OutboxMessage {
   int tries = 0;
 };
 
+/// When a message was made, and whether it still waits to be delivered.
+struct LastMessage {
+  Instant created_at{};
+  bool waits = false;
+};
+
+/// A route that fails: since when its oldest message tried in vain waits, and what the newest try was answered
+/// (0: nothing).
+struct FailingDelivery {
+  Instant since{};
+  int status = 0;
+};
+
 /// One try to deliver a message and what became of it.
 struct DeliveryTry {
   std::int64_t message = 0;

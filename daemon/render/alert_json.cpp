@@ -115,6 +115,14 @@ std::optional<Period> between_at(const Json& object) {
   return Period{instant_of(json[0], "started_between"), instant_of(json[1], "started_between")};
 }
 
+std::optional<AlertChange> held_at(const Json& object) {
+  if (!has(object, "held")) return std::nullopt;  // also of journals from before it was written
+  const std::string word = text_at(object, "held");
+  for (const AlertChange change : {AlertChange::opened, AlertChange::changed})
+    if (word == to_string(change)) return change;
+  refuse("held", "opened, changed or null");
+}
+
 Alert alert_of(const Json& json) {
   if (!json.is_object()) refuse("the whole", "an object");
   Alert alert;
@@ -134,6 +142,7 @@ Alert alert_of(const Json& json) {
   alert.details = details_at(json);
   alert.started_at = instant_or_none(json, "started_at");
   alert.told_at = instant_at(json, "told_at");
+  alert.held = held_at(json);
   return alert;
 }
 
@@ -160,6 +169,7 @@ std::string alert_json(const Alert& alert, std::string_view base_url) {
   json["url"] = url_of(alert, base_url);
   json["started_at"] = json_time(alert.started_at);
   json["told_at"] = to_rfc3339(alert.told_at);
+  json["held"] = alert.held ? Json(to_string(*alert.held)) : Json(nullptr);
   return json_text(json);
 }
 

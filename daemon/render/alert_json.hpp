@@ -8,9 +8,10 @@
 
 namespace agreed {
 
-/// Fields in the order of the API, then `started_at` and `told_at`, which only restoring needs. `url`: the
-/// page of the alert's chart or comparison, else its place on the page of alerts; `base_url` without a slash
-/// at the end. Bytes that are not UTF-8 are replaced; a number that is not finite becomes null.
+/// Fields in the order of the API, then `started_at`, `told_at` and `held`, which only restoring needs.
+/// `url`: the page of the alert's chart or comparison, else its place on the page of alerts; `base_url`
+/// without a slash at the end. Bytes that are not UTF-8 are replaced; a number that is not finite becomes
+/// null.
 [[nodiscard]] std::string alert_json(const Alert& alert, std::string_view base_url);
 
 /// Reads back what alert_json wrote (fields it does not know are passed over); throws std::invalid_argument

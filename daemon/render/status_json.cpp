@@ -148,6 +148,10 @@ Json stated_apart(const Settings& settings) {
   return apart;
 }
 
+Json chain_of(const ChainHead& head) {
+  return {{"sequence", head.sequence}, {"sha256", head.sha256}};
+}
+
 // Shares that were added up leave 4.799999999999999 where 4.8 is meant.
 double without_noise(double per_year) {
   return std::round(per_year * 1e9) / 1e9;
@@ -164,6 +168,10 @@ Json budget_of(const Settings& settings) {
 }
 
 }  // namespace
+
+std::string chain_json(const ChainHead& head) {
+  return json_text(chain_of(head));
+}
 
 const char* overall(const Snapshot& snapshot) {
   if (!snapshot.started) return "starting";
@@ -190,7 +198,7 @@ std::string status_json(const Snapshot& snapshot) {
       {"comparisons", comparisons_of(snapshot)},
       {"alerts", {{"open", snapshot.alerts_open}, {"acknowledged", snapshot.alerts_acknowledged}}},
       {"alarm_budget", budget_of(*snapshot.settings)},
-      {"chain", {{"sequence", snapshot.chain.sequence}, {"sha256", snapshot.chain.sha256}}}};
+      {"chain", chain_of(snapshot.chain)}};
   return json_text(status);
 }
 

@@ -11,6 +11,9 @@ namespace agreed {
 /// one inconclusive for longer than its prove_within; else `ok`.
 [[nodiscard]] const char* overall(const Snapshot& snapshot);
 
+/// {"sequence":..,"sha256":".."}, as in the status and in signs of life.
+[[nodiscard]] std::string chain_json(const ChainHead& head);
+
 /// Renders the status as JSON. Times are those of the snapshot, so equal snapshots give equal bytes.
 [[nodiscard]] std::string status_json(const Snapshot& snapshot);
 

@@ -17,13 +17,14 @@ std::string json_string(std::string_view text) {
   return Json(text).dump(-1, ' ', false, Json::error_handler_t::replace);
 }
 
+/// Without its last bracket.
 std::string site_data(std::string_view site, Instant now) {
-  return "{\"site\":" + json_string(site) + ",\"at\":" + json_string(to_rfc3339(now)) + "}";
+  return "{\"site\":" + json_string(site) + ",\"at\":" + json_string(to_rfc3339(now));
 }
 
 CloudEvent service_event(const char* type, std::string_view source, std::string_view webhook_id,
                          std::string_view site, Instant now) {
-  return {std::string(webhook_id), std::string(source), type, "", now, site_data(site, now)};
+  return {std::string(webhook_id), std::string(source), type, "", now, site_data(site, now) + "}"};
 }
 
 }  // namespace
@@ -58,8 +59,10 @@ CloudEvent alert_event(const AlertTransition& transition, std::string_view sourc
 }
 
 CloudEvent heartbeat_event(std::string_view source, std::string_view webhook_id, std::string_view site,
-                           Instant now) {
-  return service_event("agreed.heartbeat", source, webhook_id, site, now);
+                           std::string_view chain, Instant now) {
+  CloudEvent event = service_event("agreed.heartbeat", source, webhook_id, site, now);
+  event.data = site_data(site, now).append(",\"chain\":").append(chain) + "}";
+  return event;
 }
 
 CloudEvent test_event(std::string_view source, std::string_view webhook_id, std::string_view site,

@@ -26,9 +26,9 @@ struct CloudEvent {
 /// The event of a transition; `alert_body`: what alert_json made of its alert.
 [[nodiscard]] CloudEvent alert_event(const AlertTransition& transition, std::string_view source,
                                      std::string_view webhook_id, std::string_view alert_body);
-/// "agreed.heartbeat": only says that the service lives.
+/// "agreed.heartbeat": says that the service lives, and where its journal stands (`chain`: JSON).
 [[nodiscard]] CloudEvent heartbeat_event(std::string_view source, std::string_view webhook_id,
-                                         std::string_view site, Instant now);
+                                         std::string_view site, std::string_view chain, Instant now);
 /// "agreed.test": what `agreed send-test` sends.
 [[nodiscard]] CloudEvent test_event(std::string_view source, std::string_view webhook_id,
                                     std::string_view site, Instant now);

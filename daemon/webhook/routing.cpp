@@ -66,15 +66,14 @@ std::vector<std::size_t> routes_for(const AlertTransition& transition, std::span
 }
 
 std::vector<Escalation> escalations(std::span<const Alert* const> current, std::span<const Route> routes,
-                                    const Settings& settings, Instant before, Instant now) {
+                                    const Settings& settings, Instant now) {
   std::vector<Escalation> due;
   for (const Alert* alert : current) {
-    if (alert->state != AlertState::open) continue;
+    if (alert->state != AlertState::open || alert->held) continue;
     for (std::size_t i = 0; i < routes.size(); ++i) {
       const auto& wait = routes[i].unacknowledged_for;
       if (!wait) continue;
-      const Instant until = alert->opened_at + *wait;
-      if (before < until && until <= now && concerns(routes[i], *alert, settings)) due.push_back({alert, i});
+      if (alert->opened_at + *wait <= now && concerns(routes[i], *alert, settings)) due.push_back({alert, i});
     }
   }
   return due;

@@ -21,16 +21,16 @@ namespace agreed {
 [[nodiscard]] std::vector<std::size_t> routes_for(const AlertTransition& transition,
                                                   std::span<const Route> routes, const Settings& settings);
 
-/// An alert that a route with `unacknowledged_for` is now told of for the first time.
+/// An alert that a route with `unacknowledged_for` must have been told of by now.
 struct Escalation {
   const Alert* alert = nullptr;
   std::size_t route = 0;
 };
 
-/// Alerts among `current` that nobody has acknowledged and whose waiting time of a route ended in
-/// (`before`, `now`]; `before` is the `now` of the last call.
+/// Alerts among `current` that nobody has acknowledged and whose waiting time of a route is over. Held ones
+/// wait until they are released.
 [[nodiscard]] std::vector<Escalation> escalations(std::span<const Alert* const> current,
                                                   std::span<const Route> routes, const Settings& settings,
-                                                  Instant before, Instant now);
+                                                  Instant now);
 
 }  // namespace agreed

@@ -328,11 +328,6 @@ TEST_CASE("what is doubtful is a warning and the configuration counts") {
   const std::vector<Doubt> doubts = {
       {"alerts in the clear", with(url, "http://chat.harrow.example/a1"), 30, 26, "alerts.routes[0].url",
        "expected https://"},
-      {"a heartbeat", with("at_least: notice", "heartbeat: 1d"), 30, 74, "alerts.routes[0].heartbeat",
-       "has no effect"},
-      {"quiet hours", with("alerts:\n", "alerts:\n  quiet: [{days: [sat]}]\n"), 29, 3, "alerts.quiet",
-       "has no effect"},
-      {"a hold", with("alerts:\n", "alerts:\n  hold: 2h\n"), 29, 3, "alerts.hold", "has no effect"},
       {"no levels", with("    decision_levels: [10.5, 13.0]\n", ""), 19, 16, "comparisons.protein.measurand",
        "the verdict will stay gathering"},
       {"no check standard on one side", with("[line1, line2]", "[line1]"), 19, 3,

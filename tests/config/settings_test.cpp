@@ -200,3 +200,34 @@ TEST_CASE("others may reach the service once a token or an explicit word allows 
 TEST_CASE("the text is kept as read") {
   CHECK(parsed(kMill).text == kMill);
 }
+
+TEST_CASE("when alerts are held, what counts as overdue, and who waits for an acknowledgement") {
+  const Config config =
+      parsed(kMill +
+             "least_free_mb: 50\n"
+             "alerts:\n"
+             "  hold: 30min\n"
+             "  overdue_after: 2\n"
+             "  quiet: [{days: [sat, sun]}, {from: \"22:00\", to: \"06:30\"}]\n"
+             "  maintenance: [{analyzer: line2, from: 2026-03-02T08:00:00Z, to: "
+             "2026-03-02T16:00:00Z}]\n"
+             "  routes:\n"
+             "    - {name: chief, url: http://127.0.0.1:1/x, unsigned: true, heartbeat: 1d, "
+             "unacknowledged_for: 30min}\n");
+  const AlertPolicy& policy = config.alert_policy;
+  CHECK(config.least_free_mb.value_or(0) == Approx(50));
+  CHECK(policy.hold == 30min);
+  CHECK(policy.overdue.patience == Approx(2));
+  REQUIRE(policy.overdue.quiet.size() == 2);
+  CHECK(policy.overdue.quiet[0].days == std::array<bool, 7>{false, false, false, false, false, true, true});
+  CHECK(policy.overdue.quiet[0].from == 0min);
+  CHECK(policy.overdue.quiet[0].to == 24h);
+  CHECK(policy.overdue.quiet[1].days == std::array<bool, 7>{true, true, true, true, true, true, true});
+  CHECK(policy.overdue.quiet[1].from == 22h);
+  CHECK(policy.overdue.quiet[1].to == 6h + 30min);
+  REQUIRE(policy.maintenance.size() == 1);
+  CHECK(policy.maintenance[0].analyzer == AnalyzerIndex{1});
+  CHECK(policy.maintenance[0].to - policy.maintenance[0].from == 8h);
+  CHECK(config.routes[0].heartbeat == Duration(24h));
+  CHECK(config.routes[0].unacknowledged_for == Duration(30min));
+}

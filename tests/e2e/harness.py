@@ -54,7 +54,7 @@ class Receiver:
                 body = self.rfile.read(int(self.headers["Content-Length"]))
                 with outer.lock:
                     status = outer.answer(len(outer.got)) if callable(outer.answer) else outer.answer
-                    outer.got.append({"headers": dict(self.headers), "body": body, "event": json.loads(body),
+                    outer.got.append({"path": self.path, "headers": dict(self.headers), "body": body, "event": json.loads(body),
                                       "answered": status, "signed": outer.verify(self.headers, body)})
                 self.send_response(status)
                 self.send_header("Content-Length", "0")
@@ -81,7 +81,7 @@ class Receiver:
     def events(self, kind=None, type_=None):
         with self.lock:
             events = [g["event"] for g in self.got if 200 <= g["answered"] < 300]
-        return [e for e in events if (kind is None or e["data"]["kind"] == kind) and (type_ is None or e["type"] == type_)]
+        return [e for e in events if (kind is None or e["data"].get("kind") == kind) and (type_ is None or e["type"] == type_)]
 
     def close(self):
         self.server.shutdown()

@@ -44,7 +44,9 @@ TEST_CASE("every change has its type") {
 }
 
 TEST_CASE("heartbeat and test have no subject and name the site, whatever it is called") {
-  const auto beat = ordered_json::parse(to_json(heartbeat_event("s", "msg_1", "Harrow \"Mill\" \xff", kAt)));
+  const auto beat = ordered_json::parse(
+      to_json(heartbeat_event("s", "msg_1", "Harrow \"Mill\" \xff", "{\"sequence\":7}", kAt)));
+  CHECK(beat["data"]["chain"]["sequence"] == 7);
   CHECK(beat["type"] == "agreed.heartbeat");
   CHECK_FALSE(beat.contains("subject"));
   CHECK(beat["data"]["site"].get<std::string>().rfind("Harrow \"Mill\" ", 0) == 0);
