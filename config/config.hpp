@@ -6,6 +6,7 @@
 #include <string>
 #include <vector>
 
+#include "config/file_mode.hpp"
 #include "core/alert/alert_book.hpp"
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
@@ -23,7 +24,8 @@ struct IntakeSettings {
   Instant not_before{};
   Duration settle = std::chrono::seconds(2);
   Duration rescan = std::chrono::seconds(15);
-  BadRowPolicy on_bad_row = BadRowPolicy::keep_good;
+  FileMode mode = FileMode::whole;
+  BadRowPolicy on_bad_row = BadRowPolicy::keep_good;  ///< always keep_good for growing files
 };
 
 struct Listen {

@@ -19,6 +19,10 @@ void check_format(const Section& analyzer, const Section& top, const std::string
                  "found " + shown(format) + ", expected plain: mapped formats are not read by this version");
 }
 
+FileMode mode_of(const Section& analyzer) {
+  return analyzer.text("mode") == "growing" ? FileMode::growing : FileMode::whole;
+}
+
 IntakeSettings intake_of(const Section& analyzer, const Section& top, const std::filesystem::path& folder) {
   IntakeSettings intake;
   intake.analyzer = analyzer.id();
@@ -29,8 +33,14 @@ IntakeSettings intake_of(const Section& analyzer, const Section& top, const std:
   intake.not_before = analyzer.time("not_before").value_or(intake.not_before);
   intake.settle = analyzer.duration("settle").value_or(intake.settle);
   intake.rescan = analyzer.duration("rescan").value_or(intake.rescan);
+  intake.mode = mode_of(analyzer);
   const bool whole_file = analyzer.text("on_bad_row") == "reject_file";
   intake.on_bad_row = whole_file ? BadRowPolicy::reject_file : BadRowPolicy::keep_good;
+  if (whole_file && intake.mode == FileMode::growing) {
+    analyzer.error("on_bad_row",
+                   "found 'reject_file', expected keep_good: a file that grows is never there as a whole");
+    intake.on_bad_row = BadRowPolicy::keep_good;
+  }
   return intake;
 }
 

@@ -58,6 +58,9 @@ Rows analyzer_rows() {
           .within(0, kHour),
       row("analyzers.*.rescan", T::duration, "15s", "the folder is listed again this often, events or not")
           .within(kSecond, kHour),
+      row("analyzers.*.mode", T::word, "",
+          "written once, or one export that keeps growing; else as its format")
+          .one_of("whole|growing"),
       row("analyzers.*.on_bad_row", T::word, "keep_good", "whether one bad row spoils its whole file")
           .one_of("keep_good|reject_file"),
       row("formats", T::named, "", "the analyzers' own exports, mapped to the plain format"),

@@ -137,7 +137,10 @@ int serve(const Config& config, const StopSignals& signals) {
   for (std::uint32_t i = 0; i < config.intake.size(); ++i)
     watchers.push_back(
         std::make_unique<FolderWatcher>(config.intake[i], *config.settings, AnalyzerIndex{i}, engine));
-  for (const auto& watcher : watchers) watcher->start();
+  for (std::uint32_t i = 0; i < watchers.size(); ++i) {
+    engine.watch_over(AnalyzerIndex{i}, watchers[i]->pulse(), config.intake[i].rescan);
+    watchers[i]->start();
+  }
   sd_notify(0, "READY=1");
 
   signals.wait();

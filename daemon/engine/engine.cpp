@@ -5,6 +5,7 @@
 #include <malloc.h>
 
 #include "core/alert/cause.hpp"
+#include "core/base/rfc3339.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/log.hpp"
@@ -67,6 +68,12 @@ void Engine::start(std::string base_url, std::function<void(const std::string&)>
 void Engine::stop() {
   queue_.stop();
   if (thread_.joinable()) thread_.join();
+}
+
+void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) {
+  JournalReader(state_folder_).each_grown(settings_->of(analyzer).id, [&take](JournalFile&& file) {
+    take({std::move(file.name), file.size, file.mtime_ns, std::move(file.sha256)});
+  });
 }
 
 std::shared_ptr<const Snapshot> Engine::snapshot() const {
@@ -191,6 +198,7 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
       outcome.charts_changed.insert(*chart);
     }
   for (const Task& task : work.tasks) task.inside(now);
+  look_at_inboxes(now);
   tell(book_->tick(now), now);
   journal_->commit();
   for (const QueuedPiece& queued : work.pieces)
@@ -262,6 +270,29 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>
   }
   for (Finding& condition : conditions) explain(condition);
   tell(book_->reconcile(conditions, subjects, reason, now), now);
+}
+
+void Engine::look_at_inboxes(Instant now) {
+  const auto inboxes = queue_.inboxes();
+  for (std::size_t i = 0; i < inboxes.size(); ++i) {
+    const InboxState& inbox = inboxes[i];
+    const Subject subject{.analyzer = settings_->analyzers[i].id};
+    const bool told = book_->find_current(AlertKind::inbox_unreachable, subject) != nullptr;
+    // A folder that is there again at the next scan is no one's concern.
+    const bool lasts = inbox.hangs || inbox.failed_looks >= 2;
+    if (told ? !inbox.reachable : !lasts) continue;
+    Finding finding{.kind = AlertKind::inbox_unreachable, .subject = subject, .at = now};
+    finding.holds = !inbox.reachable;
+    if (finding.holds) {
+      finding.started_at = inbox.unreachable_since;
+      finding.details = {{"reason", inbox.reason}};
+    } else {
+      finding.resolved_reason = "reachable_again";
+    }
+    journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
+                          finding_json(finding));
+    tell(book_->apply(finding, now), now);
+  }
 }
 
 void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) {
@@ -361,9 +392,13 @@ void Engine::publish(Instant now) {
   next_.ready = next_.not_ready.empty();
   next_.started = next_.started || next_.ready;
   next_.pending_files = 0;
+  next_.remarks.clear();
   for (std::size_t i = 0; i < inboxes.size(); ++i) {
     next_.analyzers[i].inbox = inboxes[i];
     next_.pending_files += inboxes[i].pending;
+    if (inboxes[i].unreachable_since)
+      next_.remarks.push_back("the inbox of " + settings_->analyzers[i].id + " cannot be reached since " +
+                              to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
     next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
   }
   next_.totals = journal_->totals();

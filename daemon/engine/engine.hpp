@@ -30,7 +30,13 @@ class Engine final : public IntakeSink, public Service {
   void stop();
 
   std::future<PieceAnswer> submit(FilePiece piece) override { return queue_.put(std::move(piece)); }
+  void each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) override;
   void report(AnalyzerIndex analyzer, const InboxState& state) override { queue_.report(analyzer, state); }
+
+  /// As WorkQueue::watch_over.
+  void watch_over(AnalyzerIndex analyzer, std::shared_ptr<const Pulse> pulse, Duration rescan) {
+    queue_.watch_over(analyzer, std::move(pulse), rescan);
+  }
 
   [[nodiscard]] std::shared_ptr<const Snapshot> snapshot() const override;
   [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }
@@ -53,6 +59,8 @@ class Engine final : public IntakeSink, public Service {
   void reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
                  const std::string& reason, Instant now);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
+  /// Opens and resolves the alerts of inboxes that cannot be reached.
+  void look_at_inboxes(Instant now);
   void fold_from_journal(Instant now);
   void count_censored(ChartIndex index);
   void undo(const Work& work, const std::string& why);

@@ -108,6 +108,7 @@ class Reading {
     content_.each_block([&](std::string_view block) {
       hash.update(block);
       if (strict) strict->feed(block);
+      task_.step();
       return !task_.stop.stop_requested();
     });
     identity_.sha256 = hash.hex();
@@ -123,7 +124,9 @@ class Reading {
     try {
       const bool whole = content_.each_block([&](std::string_view block) {
         hash.update(block);
-        return rows.feed(block);
+        const bool go_on = rows.feed(block);
+        task_.step();
+        return go_on;
       });
       if (whole) rows.finish(task_.closed);
       if (has_changed() || (whole && hash.hex() != identity_.sha256)) return ReadOutcome::changed;
