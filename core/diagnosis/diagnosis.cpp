@@ -61,7 +61,9 @@ DiagnosisView diagnose(const ComparisonChange& change, const CheckShift& x, cons
   show_checks(x, view.shift_x, view.se_x, view.x_readings_before, view.x_readings_after);
   show_checks(y, view.shift_y, view.se_y, view.y_readings_before, view.y_readings_after);
   const double resolution = resolution_of(settings.of(settings.of(comparison).measurand));
-  const auto pairs = pair_shift(split.before, split.after, split.delta, resolution);
+  auto pairs = pair_shift(split.before, split.after, split.delta, resolution);
+  const auto& established = settings.of(comparison).relation;
+  if (!pairs && established) pairs = shift_from_line(*established, split.after, resolution);
   if (!pairs) {
     view.evidence = words.too_few_pairs(view);
     return view;

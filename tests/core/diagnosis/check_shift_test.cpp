@@ -138,6 +138,32 @@ TEST_CASE("the shift of the pairs: the step, whatever the levels on either side"
   CHECK(std::sqrt(squares) == doctest::Approx(se).epsilon(0.12));
 }
 
+TEST_CASE("from an established line the pairs after the moment tell their shift alone") {
+  std::mt19937_64 random(37);
+  std::normal_distribution<double> error(0, 0.02);
+  std::uniform_real_distribution<double> level(9, 15);
+  const EstablishedLine line{0.3, 0.98};
+  double mean = 0, squares = 0;
+  constexpr int rounds = 2000, pairs = 12;
+  for (int round = 0; round < rounds; ++round) {
+    std::vector<Point> after;
+    for (int i = 0; i < pairs; ++i) {
+      const double truth = level(random);
+      after.push_back({truth + error(random), 0.4 + 0.98 * truth + error(random)});
+    }
+    const auto found = shift_from_line(line, Moments(after), 0);
+    REQUIRE(found);
+    CHECK(found->slope == line.slope);
+    mean += found->shift.value / rounds;
+    squares += found->shift.se * found->shift.se / rounds;
+  }
+  const double variance = 0.02 * 0.02 * (1 + 0.98 * 0.98) / pairs;
+  CHECK(std::abs(mean - 0.1) < 4 * std::sqrt(variance / rounds));
+  // Widened by 11/9 for its 11 degrees of freedom.
+  CHECK(squares == doctest::Approx(variance * 11 / 9).epsilon(0.05));
+  CHECK_FALSE(shift_from_line(line, Moments(std::vector<Point>{{1, 1}, {2, 2}, {3, 3}}), 0));
+}
+
 TEST_CASE("pairs without a line shift by their differences; too few do not tell") {
   const std::vector<Point> before = {{10, 10}, {10, 10.1}, {10, 9.9}, {10, 10}}, after = {{10, 11}, {10, 11}};
   const auto found = pair_shift(Moments(before), Moments(after), 1, 0);
