@@ -8,15 +8,10 @@ namespace agreed::settings_file {
 namespace {
 
 void check_format(const Section& analyzer, const Section& top, const std::string& format) {
-  if (format == "plain") return;
   std::vector<std::string> known = {"plain"};
   for (const Section& mapped : top.named("formats")) known.push_back(mapped.id());
-  if (std::find(known.begin(), known.end(), format) == known.end()) {
+  if (std::find(known.begin(), known.end(), format) == known.end())
     analyzer.error("format", not_one_of(format, known));
-    return;
-  }
-  analyzer.error("format",
-                 "found " + shown(format) + ", expected plain: mapped formats are not read by this version");
 }
 
 IntakeSettings intake_of(const Section& analyzer, const Section& top, const std::filesystem::path& folder) {

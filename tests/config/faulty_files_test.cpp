@@ -231,10 +231,6 @@ std::vector<Fault> faults_between_keys() {
 
 std::vector<Fault> faults_of_what_comes_later() {
   return {
-      {"a mapped format",
-       with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: mill_export}") +
-           "formats: {mill_export: {type: csv, values: {protein: Prot}}}\n",
-       4, 38, "analyzers.line1.format", "mapped formats are not read by this version"},
       {"a format nobody knows",
        with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: plian}"), 4, 38,
        "analyzers.line1.format", "found 'plian', expected one of plain; did you mean plain?"},
