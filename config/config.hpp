@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "config/file_mode.hpp"
+#include "config/mapped_format.hpp"
 #include "core/alert/alert_book.hpp"
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
@@ -20,6 +21,7 @@ struct IntakeSettings {
   std::string analyzer;
   std::filesystem::path inbox;
   std::string format = "plain";
+  std::shared_ptr<const MappedFormat> mapped;  ///< what `format` names; null: plain
   std::string zone = "UTC";
   Instant not_before{};
   Duration settle = std::chrono::seconds(2);

@@ -31,7 +31,7 @@ namespace agreed {
 namespace {
 
 // SIGTERM has to end the service within two seconds, whatever a dead network mount holds on to.
-constexpr std::chrono::milliseconds kGrace{1'900};
+constexpr std::chrono::milliseconds kGrace{1'700};
 
 /// SIGTERM and SIGINT as something to wait for. Blocks them in this thread and all that it starts.
 class StopSignals {

@@ -179,7 +179,14 @@ bool GrowingFile::feed_lines(const FileContent& content, const std::function<voi
     if (got == 0 || !end) break;
     taken_ += each_block_between(content, taken_, *end, [&](std::string_view bytes) { feed(bytes); });
   }
-  return taken_ > begin;
+  if (taken_ == begin) return false;
+  // In UTF-16 with the low byte first the line end has a second byte.
+  char next = '\n';
+  if (content.read(taken_, {&next, 1}) == 1 && next == '\0') {
+    feed({&next, 1});
+    ++taken_;
+  }
+  return true;
 }
 
 void GrowingFile::remember(const FileContent& content) {
