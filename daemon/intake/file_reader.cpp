@@ -108,7 +108,6 @@ class Reading {
     content_.each_block([&](std::string_view block) {
       hash.update(block);
       if (strict) strict->feed(block);
-      task_.step();
       return !task_.stop.stop_requested();
     });
     identity_.sha256 = hash.hex();
@@ -125,7 +124,6 @@ class Reading {
       const bool whole = content_.each_block([&](std::string_view block) {
         hash.update(block);
         const bool go_on = rows.feed(block);
-        task_.step();
         return go_on;
       });
       if (whole) rows.finish(task_.closed);

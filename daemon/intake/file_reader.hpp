@@ -32,7 +32,6 @@ struct ReadTask {
   BadRowPolicy on_bad_row = BadRowPolicy::keep_good;
   ReadLimits limits;
   std::stop_token stop;
-  std::function<void()> step = [] {};  ///< called before each access to the file
 };
 
 /// Gives the file piece by piece to `give` until that returns false. An unusable file is one piece that says

@@ -39,11 +39,9 @@ std::string fingerprint_of(const FileContent& content, std::uint64_t size) {
 }
 
 /// The position behind the first line end at or after `from`; nothing if there is none. In bounded memory.
-std::optional<std::uint64_t> line_end_after(const FileContent& content, std::uint64_t from,
-                                            const std::function<void()>& step) {
+std::optional<std::uint64_t> line_end_after(const FileContent& content, std::uint64_t from) {
   std::vector<char> block(kBlock);
   for (std::uint64_t at = from;;) {
-    step();
     const std::size_t got = content.read(at, block);
     if (got == 0) return std::nullopt;
     const std::size_t end = std::string_view(block.data(), got).find('\n');
@@ -118,12 +116,12 @@ bool GrowingFile::begins_as_taken(const FileContent& content) const {
 }
 
 std::optional<FilePiece> GrowingFile::read_on(const FileContent& content, const std::string& name,
-                                              Instant now, const std::function<void()>& step) {
-  if (unusable_ || !line_end_after(content, taken_, step)) return std::nullopt;
-  if (!reader_) begin_reader(content, step);
+                                              Instant now) {
+  if (unusable_ || !line_end_after(content, taken_)) return std::nullopt;
+  if (!reader_) begin_reader(content);
   reader_->set_now(now);
   const FileStamp stamp = content.stamp();
-  if (!feed_lines(content, step)) return std::nullopt;
+  if (!feed_lines(content)) return std::nullopt;
   reader_->pause();
   sha256_ = hash_.hex_so_far();
   remember(content);
@@ -138,14 +136,11 @@ std::optional<FilePiece> GrowingFile::read_on(const FileContent& content, const 
   return piece;
 }
 
-void GrowingFile::begin_reader(const FileContent& content, const std::function<void()>& step) {
+void GrowingFile::begin_reader(const FileContent& content) {
   rows_ = std::make_unique<Collected>();
   reader_ = std::make_unique<PlainReader>(context_, syntax_, *rows_);
   hash_.start_over();
-  each_block_between(content, 0, taken_, [&](std::string_view bytes) {
-    step();
-    feed(bytes);
-  });
+  each_block_between(content, 0, taken_, [&](std::string_view bytes) { feed(bytes); });
   reader_->pause();
   rows_->wanted = true;
   if (hash_.hex_so_far() == sha256_) return;
@@ -160,14 +155,13 @@ void GrowingFile::feed(std::string_view bytes) {
 }
 
 /// Feeds whole lines until there are enough rows; false if there was none.
-bool GrowingFile::feed_lines(const FileContent& content, const std::function<void()>& step) {
+bool GrowingFile::feed_lines(const FileContent& content) {
   std::vector<char> block(kBlock);
   const std::uint64_t begin = taken_;
   const auto enough = [&] {
     return rows_->rows.size() + rows_->bad_rows.size() >= limits_.piece_rows || !reader_->unusable().empty();
   };
   while (!enough()) {
-    step();
     const std::size_t got = content.read(taken_, block);
     const std::size_t last = std::string_view(block.data(), got).rfind('\n');
     if (last != std::string_view::npos) {
@@ -175,7 +169,7 @@ bool GrowingFile::feed_lines(const FileContent& content, const std::function<voi
       taken_ += last + 1;
       continue;
     }
-    const auto end = line_end_after(content, taken_ + got, step);  // of a line longer than a block
+    const auto end = line_end_after(content, taken_ + got);  // of a line longer than a block
     if (got == 0 || !end) break;
     taken_ += each_block_between(content, taken_, *end, [&](std::string_view bytes) { feed(bytes); });
   }

@@ -36,9 +36,9 @@ class GrowingFile {
   [[nodiscard]] bool begins_as_taken(const FileContent& content) const;
 
   /// The next lines that are complete, about a thousand; nothing if there is none, or if the file as a whole
-  /// cannot be read and that was said before. `step` is called before each access to the file.
+  /// cannot be read and that was said before.
   [[nodiscard]] std::optional<FilePiece> read_on(const FileContent& content, const std::string& name,
-                                                 Instant now, const std::function<void()>& step);
+                                                 Instant now);
   /// The bytes taken.
   [[nodiscard]] std::uint64_t taken() const { return taken_; }
   /// Hex, of the bytes taken.
@@ -49,8 +49,8 @@ class GrowingFile {
  private:
   struct Collected;
 
-  void begin_reader(const FileContent& content, const std::function<void()>& step);
-  [[nodiscard]] bool feed_lines(const FileContent& content, const std::function<void()>& step);
+  void begin_reader(const FileContent& content);
+  [[nodiscard]] bool feed_lines(const FileContent& content);
   void feed(std::string_view bytes);
   void remember(const FileContent& content);
   void forget_all();

@@ -88,13 +88,14 @@ void GrowingIntake::take_due(int folder, const std::stop_token& stop) {
 
 void GrowingIntake::take(Followed& followed, int folder, const std::stop_token& stop) {
   load_known();
-  watcher_.step();
-  const FileContent content(folder, followed.name);
-  const FileStamp stamp = content.stamp();
-  if (stamp.device != followed.seen.device || stamp.inode != followed.seen.inode) {
-    followed.due.reset();  // renamed away a moment ago; the next scan says where to
+  watcher_.pulse.step();
+  const auto found = stamp_of(folder, followed.name);
+  if (!found || found->device != followed.seen.device || found->inode != followed.seen.inode) {
+    followed.due.reset();  // renamed away a moment ago; an event or the next scan says where to
     return;
   }
+  const FileContent content(folder, followed.name, &watcher_.pulse);
+  const FileStamp stamp = content.stamp();
   place(followed, content);
   if (!read_on(followed, content, stop)) return try_later(followed);
   const FileStamp left = content.stamp();
@@ -129,7 +130,7 @@ void GrowingIntake::place(Followed& followed, const FileContent& content) {
 }
 
 bool GrowingIntake::read_on(Followed& followed, const FileContent& content, const std::stop_token& stop) {
-  while (auto piece = followed.file->read_on(content, followed.name, utc_now(), watcher_.step)) {
+  while (auto piece = followed.file->read_on(content, followed.name, utc_now())) {
     const FileIdentity file = piece->file;
     const bool usable = piece->unusable.empty();
     if (!hand_over(followed, content.stamp(), std::move(*piece), stop)) return false;

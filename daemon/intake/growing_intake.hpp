@@ -31,7 +31,7 @@ class GrowingIntake {
     IntakeSink& sink;
     AnswerQueue& queue;
     std::function<PlainContext()> context;
-    std::function<void()> step;  ///< called before each access to the folder
+    Pulse& pulse;
     std::function<void(const std::string& what, const std::string& words)> tell;  ///< a warning, once
   };
 

@@ -51,11 +51,11 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
                settle(file, answer, error);
              }) {
   if (intake.mode != FileMode::growing) return;
-  growing_.emplace(
-      intake.settle, limits,
-      GrowingIntake::Watcher{
-          analyzer, sink, queue_, [this] { return context(); }, [this] { pulse_->step(); },
-          [this](const std::string& what, const std::string& words) { tell_once(what, words); }});
+  growing_.emplace(intake.settle, limits,
+                   GrowingIntake::Watcher{analyzer, sink, queue_, [this] { return context(); }, *pulse_,
+                                          [this](const std::string& what, const std::string& words) {
+                                            tell_once(what, words);
+                                          }});
 }
 
 void WatchLoop::run(const std::stop_token& stop) noexcept {
@@ -188,7 +188,7 @@ void WatchLoop::take(const std::string& name, const WaitingFile& waiting, const 
   if (!found->regular)
     return refuse(name, *found, "it is no regular file (a link, a pipe or a device); a file was expected",
                   stop);
-  const FileContent content(inbox_.folder(), name);
+  const FileContent content(inbox_.folder(), name, pulse_.get());
   const FileStamp stamp = content.stamp();
   const Tick now = Clock::now();
   if (!waiting.finished() && !waiting.stamp.same_content(stamp)) return waiting_.changed(name, stamp, now);
@@ -215,7 +215,7 @@ void WatchLoop::refuse(const std::string& name, const FileStamp& stamp, std::str
 
 void WatchLoop::read(const FileContent& content, const std::shared_ptr<TakenFile>& file, bool closed,
                      const std::stop_token& stop) {
-  const ReadTask task{file->name, closed, intake_.on_bad_row, limits_.read, stop, [this] { pulse_->step(); }};
+  const ReadTask task{file->name, closed, intake_.on_bad_row, limits_.read, stop};
   const ReadOutcome outcome = read_file(content, task, context(), [&](FilePiece&& piece) {
     return queue_.submit(file, std::move(piece), stop);
   });
@@ -225,7 +225,7 @@ void WatchLoop::read(const FileContent& content, const std::shared_ptr<TakenFile
 void WatchLoop::look_again(Tick now, const std::stop_token& stop) {
   for (const MovedFiles::Moved& moved : moved_.look(inbox_.folder(), now)) {
     try {
-      const FileContent content(inbox_.folder(), moved.path);
+      const FileContent content(inbox_.folder(), moved.path, pulse_.get());
       const bool stands_still = now - moved.changed >= limits_.unfinished;
       if (!ends_complete(content, moved.name) && !stands_still) continue;
       auto file = std::make_shared<TakenFile>();

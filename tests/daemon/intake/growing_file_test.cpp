@@ -50,7 +50,7 @@ struct Export {
                                            PlainSyntax::csv, limits);
       file->place(content, taken);
     }
-    while (auto piece = file->read_on(content, "a.csv", kNow, [] {})) {
+    while (auto piece = file->read_on(content, "a.csv", kNow)) {
       taken.push_back({"a.csv", piece->file.size, piece->file.mtime_ns, piece->file.sha256});
       pieces.push_back(std::move(*piece));
     }
