@@ -28,6 +28,7 @@ Draft read_all(const TreeNode& root, const fs::path& file, Problems& problems) {
   read_measurands(top, draft);
   read_standards(top, draft);
   read_comparisons(top, draft);
+  read_formats(top, draft);
   read_service(top, folder, draft);
   read_alerts(top, draft);
   read_routes(top, folder, draft);

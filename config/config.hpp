@@ -6,6 +6,8 @@
 #include <string>
 #include <vector>
 
+#include "config/file_mode.hpp"
+#include "config/mapped_format.hpp"
 #include "core/alert/alert_book.hpp"
 #include "core/base/finding.hpp"
 #include "core/base/settings.hpp"
@@ -19,11 +21,13 @@ struct IntakeSettings {
   std::string analyzer;
   std::filesystem::path inbox;
   std::string format = "plain";
+  std::shared_ptr<const MappedFormat> mapped;  ///< what `format` names; null: plain
   std::string zone = "UTC";
   Instant not_before{};
   Duration settle = std::chrono::seconds(2);
   Duration rescan = std::chrono::seconds(15);
-  BadRowPolicy on_bad_row = BadRowPolicy::keep_good;
+  FileMode mode = FileMode::whole;
+  BadRowPolicy on_bad_row = BadRowPolicy::keep_good;  ///< always keep_good for growing files
 };
 
 struct Listen {

@@ -26,6 +26,7 @@ void read_analyzers(const Section& top, const std::filesystem::path& folder, Dra
 void read_measurands(const Section& top, Draft& draft);
 void read_standards(const Section& top, Draft& draft);
 void read_comparisons(const Section& top, Draft& draft);
+void read_formats(const Section& top, Draft& draft);
 void read_service(const Section& top, const std::filesystem::path& folder, Draft& draft);
 void read_alerts(const Section& top, Draft& draft);
 void read_routes(const Section& top, const std::filesystem::path& folder, Draft& draft);

@@ -1,5 +1,7 @@
 #include <algorithm>
 #include <map>
+#include <optional>
+#include <string>
 
 #include "config/parts.hpp"
 #include "config/value_text.hpp"
@@ -8,15 +10,18 @@ namespace agreed::settings_file {
 namespace {
 
 void check_format(const Section& analyzer, const Section& top, const std::string& format) {
-  if (format == "plain") return;
   std::vector<std::string> known = {"plain"};
   for (const Section& mapped : top.named("formats")) known.push_back(mapped.id());
-  if (std::find(known.begin(), known.end(), format) == known.end()) {
+  if (std::find(known.begin(), known.end(), format) == known.end())
     analyzer.error("format", not_one_of(format, known));
-    return;
-  }
-  analyzer.error("format",
-                 "found " + shown(format) + ", expected plain: mapped formats are not read by this version");
+}
+
+/// Its own, or that of its format.
+FileMode mode_of(const Section& analyzer, const Section& top, const std::string& format) {
+  std::optional<std::string> mode = analyzer.text("mode");
+  for (const Section& mapped : top.named("formats"))
+    if (!mode && mapped.id() == format) mode = mapped.text("mode");
+  return mode == "growing" ? FileMode::growing : FileMode::whole;
 }
 
 IntakeSettings intake_of(const Section& analyzer, const Section& top, const std::filesystem::path& folder) {
@@ -29,8 +34,14 @@ IntakeSettings intake_of(const Section& analyzer, const Section& top, const std:
   intake.not_before = analyzer.time("not_before").value_or(intake.not_before);
   intake.settle = analyzer.duration("settle").value_or(intake.settle);
   intake.rescan = analyzer.duration("rescan").value_or(intake.rescan);
+  intake.mode = mode_of(analyzer, top, intake.format);
   const bool whole_file = analyzer.text("on_bad_row") == "reject_file";
   intake.on_bad_row = whole_file ? BadRowPolicy::reject_file : BadRowPolicy::keep_good;
+  if (whole_file && intake.mode == FileMode::growing) {
+    analyzer.error("on_bad_row",
+                   "found 'reject_file', expected keep_good: a file that grows is never there as a whole");
+    intake.on_bad_row = BadRowPolicy::keep_good;
+  }
   return intake;
 }
 

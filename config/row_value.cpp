@@ -124,6 +124,8 @@ std::string expected(const SettingRow& row) {
       return "the name of an environment variable such as AGREED_HOOK";
     case Type::id_list:
       return "a list of ids such as [line1, line2]";
+    case Type::text_list:
+      return "a list of texts of 1 to 200 bytes such as [Date, Time]";
     case Type::word_list:
       return "a list of " + enumerated(words_of(row.choices));
     case Type::number_list:
@@ -138,12 +140,14 @@ std::string expected_element(const SettingRow& row) {
   if (row.type == Type::word_list) return "one of " + enumerated(words_of(row.choices));
   if (row.type == Type::number_list) return "a number";
   if (row.type == Type::texts_or_sections) return "a text, or a section";
+  if (row.type == Type::text_list) return "a text of 1 to 200 bytes in one line";
   return expected(row);
 }
 
 bool is_good(const SettingRow& row, std::string_view text) {
   switch (row.type) {
     case Type::texts_or_sections:
+    case Type::text_list:
     case Type::text:
       return one_line(text, kLongestText);
     case Type::path:

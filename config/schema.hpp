@@ -31,6 +31,7 @@ enum class Type {
   address,
   variable,  ///< name of an environment variable; never shown either, in case it is the secret itself
   id_list,
+  text_list,
   word_list,  ///< each one of `choices`
   number_list,
 };

@@ -61,29 +61,86 @@ Rows analyzer_rows() {
           .within(0, kHour),
       row("analyzers.*.rescan", T::duration, "15s", "the folder is listed again this often, events or not")
           .within(kSecond, kHour),
+      row("analyzers.*.mode", T::word, "",
+          "written once, or one export that keeps growing; else as its format")
+          .one_of("whole|growing"),
       row("analyzers.*.on_bad_row", T::word, "keep_good", "whether one bad row spoils its whole file")
           .one_of("keep_good|reject_file"),
+  };
+}
+
+/// How a file of a mapped format is built.
+Rows format_rows() {
+  return {
       row("formats", T::named, "", "the analyzers' own exports, mapped to the plain format"),
       row("formats.*.type", T::word, "csv", "how the file is built").one_of("csv|jsonl|json"),
-      row("formats.*.delimiter", T::text, ",", "between two columns"),
-      row("formats.*.decimal", T::text, ".", "the decimal sign"),
-      row("formats.*.encoding", T::text, "utf-8", "character set of the file"),
+      row("formats.*.delimiter", T::text, ",", "between two columns: one character, or tab"),
+      row("formats.*.decimal", T::text, ".", "the decimal sign: . or ,"),
+      row("formats.*.thousands", T::text, "", "between groups of three digits; else there are none"),
+      row("formats.*.encoding", T::word, "utf-8", "character set of the file")
+          .one_of(
+              "utf-8|utf-16|utf-16le|utf-16be|windows-1252|windows-1250|windows-1251|iso-8859-1|iso-8859-15"),
+      row("formats.*.skip_lines", T::whole_number, "0", "lines before the header").within(0, 1'000),
+      row("formats.*.header", T::flag, "true", "false: columns are named by their number, from 1"),
       row("formats.*.mode", T::word, "whole", "written once, or one export that keeps growing")
           .one_of("whole|growing"),
       row("formats.*.files", T::text, "*", "names of the files to take"),
-      row("formats.*.time", T::section, "", "when the result was measured"),
+      row("formats.*.ignore", T::text_list, "", "names of files to leave where they are"),
+  };
+}
+
+/// What the columns of a mapped format mean.
+Rows mapping_rows() {
+  return {
+      row("formats.*.time", T::section, "", "when the result was measured").required(),
       row("formats.*.time.column", T::text, "", "its column"),
+      row("formats.*.time.columns", T::text_list, "", "or two, date and time; read with a space between"),
       row("formats.*.time.pattern", T::text, "", "how it is written; else RFC 3339"),
+      row("formats.*.time.zone", T::zone, "", "of times without an offset; else the analyzer's"),
       row("formats.*.item", T::section, "", "what was measured"),
-      row("formats.*.item.column", T::text, "", "its column"),
+      row("formats.*.item.column", T::text, "", "its column").required(),
+      row("formats.*.items", T::text_map, "", "names on the instrument: names here"),
       row("formats.*.kind", T::section, "", "what kind of result a row is"),
       row("formats.*.kind.check_when_item_matches", T::text, "", "pattern of the check standards' names"),
       row("formats.*.kind.otherwise", T::word, "split", "kind of all others").one_of("check|split"),
-      row("formats.*.items", T::text_map, "", "names on the instrument: names here"),
-      row("formats.*.values", T::texts_or_sections, "", "column of each measurand"),
+      row("formats.*.kind.column", T::text, "", "or a column that says it"),
+      row("formats.*.kind.words", T::text_map, "", "its words: check, split, intervention or void"),
+      row("formats.*.values", T::texts_or_sections, "", "several results a row: column of each measurand"),
       row("formats.*.values.*.column", T::text, "", "its column"),
       row("formats.*.values.*.factor", T::number, "1", "turns the instrument's unit into ours")
           .above(0, kAny),
+      row("formats.*.measurand", T::section, "", "one result a row: what was measured of the item"),
+      row("formats.*.measurand.column", T::text, "", "its column").required(),
+      row("formats.*.measurand.names", T::text_map, "", "names on the instrument: measurands"),
+      row("formats.*.value", T::section, "", "one result a row: the result"),
+      row("formats.*.value.column", T::text, "", "its column").required(),
+      row("formats.*.value.factor", T::number, "1", "turns the instrument's unit into ours").above(0, kAny),
+      row("formats.*.x", T::section, "", "finished pairs: the result of the comparison's x"),
+      row("formats.*.x.column", T::text, "", "its column").required(),
+      row("formats.*.x.factor", T::number, "1", "turns its unit into ours").above(0, kAny),
+      row("formats.*.y", T::section, "", "finished pairs: the result of the comparison's y"),
+      row("formats.*.y.column", T::text, "", "its column").required(),
+      row("formats.*.y.factor", T::number, "1", "turns its unit into ours").above(0, kAny),
+      row("formats.*.columns", T::section, "", "where the rest stands, each with its column"),
+      row("formats.*.columns.replicate", T::text, "", "number of the repeated measurement"),
+      row("formats.*.columns.operator", T::text, "", "who measured"),
+      row("formats.*.columns.note", T::text, "", "what was noted"),
+      row("formats.*.columns.analyzer", T::text, "", "must name the folder's analyzer"),
+      row("formats.*.columns.standard", T::text, "", "check standard of an intervention"),
+      row("formats.*.columns.comparison", T::text, "", "of a finished pair"),
+      row("formats.*.constants", T::section, "", "what every row of the export has"),
+      row("formats.*.constants.measurand", T::id, "", "when there is one only"),
+      row("formats.*.constants.comparison", T::id, "", "of finished pairs"),
+      row("formats.*.constants.item", T::text, "", "when everything is measured on one thing"),
+      row("formats.*.constants.replicate", T::whole_number, "", "number of the repeated measurement")
+          .within(0, 2'147'483'647),
+      row("formats.*.constants.operator", T::text, "", "who measured"),
+      row("formats.*.constants.note", T::text, "", "what to note with each"),
+      row("formats.*.notes", T::text_list, "", "columns that are kept in the note"),
+      row("formats.*.no_value", T::text_list, "", "texts that say that there is no result, as nothing does"),
+      row("formats.*.skip_rows", T::section, "", "rows that are no results, such as means"),
+      row("formats.*.skip_rows.column", T::text, "", "the column that tells them").required(),
+      row("formats.*.skip_rows.matches", T::text, "", "pattern of its text").required(),
   };
 }
 
@@ -287,8 +344,8 @@ Rows alert_rows() {
 const std::vector<SettingRow>& schema() {
   static const Rows all = [] {
     Rows rows;
-    for (const Rows& part : {service_rows(), analyzer_rows(), measurand_rows(), standard_rows(), chart_rows(),
-                             comparison_rows(), alert_rows()})
+    for (const Rows& part : {service_rows(), analyzer_rows(), format_rows(), mapping_rows(), measurand_rows(),
+                             standard_rows(), chart_rows(), comparison_rows(), alert_rows()})
       rows.insert(rows.end(), part.begin(), part.end());
     return rows;
   }();

@@ -92,6 +92,17 @@ std::vector<double> Section::numbers(const std::string& name) const {
   return all;
 }
 
+std::map<std::string, std::string> Section::texts(const std::string& name) const {
+  std::map<std::string, std::string> all;
+  const TreeNode* node = find(name);
+  (void)row(name);
+  if (node == nullptr || node->kind != NodeKind::map) return all;
+  for (const TreeNode& child : node->children)
+    if (child.kind == NodeKind::scalar && !element_complaint(row(name), child.text))
+      all.emplace(child.key, child.text);
+  return all;
+}
+
 Section Section::section(const std::string& name) const {
   const TreeNode* node = find(name);
   const bool is_map = node != nullptr && node->kind == NodeKind::map;
@@ -144,6 +155,20 @@ void Section::error(const std::string& name, std::string message) const {
 void Section::error(const std::string& name, std::size_t element, std::string message) const {
   problems_->error(where(name, element), joined(path_, name) + '[' + std::to_string(element) + ']',
                    std::move(message));
+}
+
+void Section::error(const std::string& name, const std::string& key, std::string message) const {
+  const TreeNode* node = find(name);
+  const TreeNode* child = node == nullptr ? nullptr : node->find(key);
+  problems_->error(child == nullptr ? where(name) : child->at, joined(joined(path_, name), key),
+                   std::move(message));
+}
+
+void Section::warning(const std::string& name, const std::string& key, std::string message) const {
+  const TreeNode* node = find(name);
+  const TreeNode* child = node == nullptr ? nullptr : node->find(key);
+  problems_->warning(child == nullptr ? where(name) : child->at, joined(joined(path_, name), key),
+                     std::move(message));
 }
 
 void Section::warning(const std::string& name, std::string message) const {

@@ -1,6 +1,7 @@
 #pragma once
 // A section of the tree read by type. Whatever is absent or wrong (and then reported by the validation)
 // gives its default, so that reading goes on and finds all other errors.
+#include <map>
 #include <optional>
 #include <string>
 #include <vector>
@@ -41,6 +42,9 @@ class Section {
   /// The usable elements of a list.
   [[nodiscard]] std::vector<double> numbers(const std::string& name) const;
 
+  /// The usable texts under the keys of a map, as its keys stand.
+  [[nodiscard]] std::map<std::string, std::string> texts(const std::string& name) const;
+
   [[nodiscard]] Section section(const std::string& name) const;
   /// The sections under ids, sorted by id.
   [[nodiscard]] std::vector<Section> named(const std::string& name) const;
@@ -54,6 +58,9 @@ class Section {
 
   void error(const std::string& name, std::string message) const;
   void error(const std::string& name, std::size_t element, std::string message) const;
+  /// About the text under `key` of a map.
+  void error(const std::string& name, const std::string& key, std::string message) const;
+  void warning(const std::string& name, const std::string& key, std::string message) const;
   void warning(const std::string& name, std::string message) const;
   /// About the section itself.
   void error_here(std::string message) const;

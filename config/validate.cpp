@@ -84,6 +84,7 @@ class Validator {
       case Type::list:
         return list(node, row, path);
       case Type::id_list:
+      case Type::text_list:
       case Type::word_list:
       case Type::number_list:
         return scalar_list(node, row, path);

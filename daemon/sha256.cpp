@@ -48,6 +48,14 @@ Sha256::Digest Sha256::digest() {
   return digest;
 }
 
+std::string Sha256::hex_so_far() const {
+  const std::unique_ptr<EVP_MD_CTX, Free> copy(EVP_MD_CTX_new());
+  Digest digest{};
+  require(copy != nullptr && EVP_MD_CTX_copy_ex(copy.get(), impl_->context.get()) == 1 &&
+          EVP_DigestFinal_ex(copy.get(), digest.data(), nullptr) == 1);
+  return to_hex(digest);
+}
+
 std::string Sha256::hex() {
   return to_hex(digest());
 }

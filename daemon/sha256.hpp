@@ -20,6 +20,8 @@ class Sha256 {
   /// Forgets what came: a new stream begins.
   void start_over();
   void update(std::string_view bytes);
+  /// The hash of all bytes so far, in lower-case hex; the stream goes on.
+  [[nodiscard]] std::string hex_so_far() const;
   /// The hash of all bytes since the construction, start_over() or digest(); a new stream begins.
   [[nodiscard]] Digest digest();
   /// The same in lower-case hex.

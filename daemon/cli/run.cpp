@@ -31,7 +31,7 @@ namespace agreed {
 namespace {
 
 // SIGTERM has to end the service within two seconds, whatever a dead network mount holds on to.
-constexpr std::chrono::milliseconds kGrace{1'900};
+constexpr std::chrono::milliseconds kGrace{1'700};
 
 /// SIGTERM and SIGINT as something to wait for. Blocks them in this thread and all that it starts.
 class StopSignals {
@@ -137,7 +137,10 @@ int serve(const Config& config, const StopSignals& signals) {
   for (std::uint32_t i = 0; i < config.intake.size(); ++i)
     watchers.push_back(
         std::make_unique<FolderWatcher>(config.intake[i], *config.settings, AnalyzerIndex{i}, engine));
-  for (const auto& watcher : watchers) watcher->start();
+  for (std::uint32_t i = 0; i < watchers.size(); ++i) {
+    engine.watch_over(AnalyzerIndex{i}, watchers[i]->pulse(), config.intake[i].rescan);
+    watchers[i]->start();
+  }
   sd_notify(0, "READY=1");
 
   signals.wait();

@@ -5,6 +5,7 @@
 #include <malloc.h>
 
 #include "core/alert/cause.hpp"
+#include "core/base/rfc3339.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/engine/service_watch.hpp"
@@ -75,6 +76,12 @@ void Engine::start(std::string base_url, std::function<void(const std::string&)>
 void Engine::stop() {
   queue_.stop();
   if (thread_.joinable()) thread_.join();
+}
+
+void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) {
+  JournalReader(state_folder_).each_grown(settings_->of(analyzer).id, [&take](JournalFile&& file) {
+    take({std::move(file.name), file.size, file.mtime_ns, std::move(file.sha256)});
+  });
 }
 
 std::shared_ptr<const Snapshot> Engine::snapshot() const {
@@ -455,9 +462,13 @@ void Engine::publish(Instant now) {
   next_.ready = next_.not_ready.empty();
   next_.started = next_.started || next_.ready;
   next_.pending_files = 0;
+  next_.remarks.clear();
   for (std::size_t i = 0; i < inboxes.size(); ++i) {
     next_.analyzers[i].inbox = inboxes[i];
     next_.pending_files += inboxes[i].pending;
+    if (inboxes[i].unreachable_since)
+      next_.remarks.push_back("the inbox of " + settings_->analyzers[i].id + " cannot be reached since " +
+                              to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
     next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
   }
   next_.totals = journal_->totals();

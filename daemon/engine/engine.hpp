@@ -30,7 +30,13 @@ class Engine final : public IntakeSink, public Service {
   void stop();
 
   std::future<PieceAnswer> submit(FilePiece piece) override { return queue_.put(std::move(piece)); }
+  void each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) override;
   void report(AnalyzerIndex analyzer, const InboxState& state) override { queue_.report(analyzer, state); }
+
+  /// As WorkQueue::watch_over.
+  void watch_over(AnalyzerIndex analyzer, std::shared_ptr<const Pulse> pulse, Duration rescan) {
+    queue_.watch_over(analyzer, std::move(pulse), rescan);
+  }
 
   [[nodiscard]] std::shared_ptr<const Snapshot> snapshot() const override;
   [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }

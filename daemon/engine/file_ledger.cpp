@@ -54,7 +54,9 @@ FileLedger::OpenFile FileLedger::begin(const FilePiece& piece, Journal& journal)
   const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
                            piece.file.mtime_ns};
   OpenFile file;
-  file.repeated = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
+  // The rows of a growing file are judged one by one: its content is never known as a whole.
+  file.repeated =
+      !piece.growing && piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
   if (const auto begun = journal.begun_file(record)) {
     file.id = begun->id;
     file.finished = begun->finished;
@@ -205,9 +207,11 @@ PieceAnswer FileLedger::finish(const FilePiece& piece, const OpenFile& file, con
                                                 {"reason", file.first_reason},
                                                 {"rows", static_cast<double>(file.rejected)},
                                                 {"good_rows", static_cast<double>(file.good)}}});
-  const bool unusable = file.rejected > 0 && file.good == 0;
+  const bool no_good = file.rejected > 0 && file.good == 0;
+  const bool unusable = piece.growing ? !piece.unusable.empty() : no_good;
+  const char* const taken = piece.growing ? kGrownOutcome : "done";
   if (!file.finished)
-    hands.journal.finish_file(file.id, unusable ? "rejected" : "done", unusable ? file.first_reason : "");
+    hands.journal.finish_file(file.id, unusable ? "rejected" : taken, unusable ? file.first_reason : "");
   if (unusable) return {FileOutcome::rejected, hands.now, file.reasons};
   return {FileOutcome::done, hands.now, ""};
 }

@@ -11,6 +11,8 @@ constexpr auto kFailingFor = std::chrono::hours(1);
 constexpr double kMegabyte = 1e6;
 constexpr double kLeastMegabytes = 200;
 constexpr double kLeastShare = 0.1;
+// A folder that is there again at the next scan is no one's concern.
+constexpr std::uint32_t kLasting = 2;
 constexpr int kGone = 410;
 // Room comes and goes by a little all the time: an alert ends only with some to spare.
 constexpr double kSpare = 1.1;
@@ -28,16 +30,16 @@ std::vector<Finding> inbox_findings(const Settings& settings, std::span<const st
                                     std::span<const InboxState> states, Instant now) {
   std::vector<Finding> findings;
   for (std::size_t i = 0; i < states.size(); ++i) {
+    const InboxState& inbox = states[i];
     const Subject subject{.analyzer = settings.analyzers.at(i).id};
-    if (states[i].reachable)
+    if (inbox.reachable) {
       findings.push_back(ceased(AlertKind::inbox_unreachable, subject, "reachable_again", now));
-    else if (!states[i].reason.empty())
-      findings.push_back(
-          {.kind = AlertKind::inbox_unreachable,
-           .subject = subject,
-           .severity = Severity::warning,
-           .at = now,
-           .details = {{"inbox", printable(inboxes[i].string())}, {"reason", states[i].reason}}});
+    } else if (inbox.hangs || inbox.failed_looks >= kLasting) {
+      Finding finding{.kind = AlertKind::inbox_unreachable, .subject = subject, .at = now};
+      finding.started_at = inbox.unreachable_since;
+      finding.details = {{"inbox", printable(inboxes[i].string())}, {"reason", inbox.reason}};
+      findings.push_back(std::move(finding));
+    }
   }
   return findings;
 }

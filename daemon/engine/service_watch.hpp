@@ -15,7 +15,7 @@
 
 namespace agreed {
 
-/// One for each analyzer whose inbox was looked at; lists by AnalyzerIndex.
+/// Of inboxes that are reachable, or have not been for more than one look; lists by AnalyzerIndex.
 [[nodiscard]] std::vector<Finding> inbox_findings(const Settings& settings,
                                                   std::span<const std::filesystem::path> inboxes,
                                                   std::span<const InboxState> states, Instant now);

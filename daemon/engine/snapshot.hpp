@@ -30,6 +30,7 @@ struct Snapshot {
   bool started = false;                ///< the first fold and the first scans are done
   bool ready = false;                  ///< and results can be taken in
   std::vector<std::string> not_ready;  ///< why not, in words
+  std::vector<std::string> remarks;    ///< what is wrong although it is ready, in words
   std::shared_ptr<const Settings> settings;
   IntakeTotals totals;
   std::uint64_t pending_files = 0;

@@ -1,11 +1,19 @@
 #include "daemon/engine/work_queue.hpp"
 
 #include <algorithm>
+#include <optional>
 #include <stdexcept>
 #include <utility>
 
+#include "daemon/clock.hpp"
+
 namespace agreed {
 namespace {
+
+using Clock = Pulse::Clock;
+
+/// One access to a folder that takes longer than this: the folder hangs.
+constexpr std::chrono::seconds kHangs{10};
 
 constexpr std::size_t kLaneRows = 2 * WorkQueue::kBatchRows;
 constexpr std::size_t kLanePieces = 2 * WorkQueue::kBatchFiles;
@@ -14,6 +22,14 @@ constexpr std::size_t kLanePieces = 2 * WorkQueue::kBatchFiles;
 constexpr std::size_t kBacklogRows = WorkQueue::kBatchRows / 2;
 constexpr std::size_t kBacklogFiles = WorkQueue::kBatchFiles / 2;
 constexpr std::chrono::milliseconds kPatienceWithLaggards{50};
+
+/// How long its folder has not answered, if it is long.
+std::optional<Clock::duration> hangs_for(const Pulse& pulse) {
+  const auto step = pulse.stepping_since();
+  const auto now = Clock::now();
+  if (!step || now - *step < kHangs) return std::nullopt;
+  return now - *step;
+}
 
 Instant oldest_of(const FilePiece& piece) {
   Instant oldest{Duration::max()};
@@ -50,7 +66,10 @@ bool WorkQueue::put(Task task) {
 
 void WorkQueue::report(AnalyzerIndex analyzer, const InboxState& state) {
   const std::lock_guard lock(mutex_);
-  lanes_.at(analyzer.value).inbox = state;
+  Lane& lane = lanes_.at(analyzer.value);
+  lane.inbox = state;
+  lane.reported = Clock::now();
+  lane.hang_noticed = false;
   tick_ = true;
   changed_.notify_one();
 }
@@ -81,6 +100,38 @@ void WorkQueue::stop() {
     if (task.after) task.after(why);
 }
 
+void WorkQueue::watch_over(AnalyzerIndex analyzer, std::shared_ptr<const Pulse> pulse, Duration rescan) {
+  const std::lock_guard lock(mutex_);
+  Lane& lane = lanes_.at(analyzer.value);
+  lane.pulse = std::move(pulse);
+  lane.rescan = rescan;
+  lane.reported = Clock::now() - rescan;  // its first scan is due now
+  changed_.notify_one();
+}
+
+Clock::time_point WorkQueue::next_look() const {
+  auto next = Clock::time_point::max();
+  for (const Lane& lane : lanes_) {
+    if (!lane.pulse || lane.hang_noticed) continue;
+    const auto step = lane.pulse->stepping_since();
+    next = std::min(next, (step ? *step : lane.reported + lane.rescan) + kHangs);
+  }
+  return next;
+}
+
+bool WorkQueue::notice_hangs() {
+  bool found = false;
+  for (Lane& lane : lanes_) {
+    if (!lane.pulse || lane.hang_noticed) continue;
+    if (hangs_for(*lane.pulse)) {
+      lane.hang_noticed = found = true;
+    } else if (lane.reported + lane.rescan + kHangs <= Clock::now()) {
+      lane.reported = Clock::now();  // late, yet at work or waiting for us
+    }
+  }
+  return found;
+}
+
 WorkQueue::Lane* WorkQueue::oldest_lane() {
   Lane* oldest = nullptr;
   for (Lane& lane : lanes_) {
@@ -106,8 +157,9 @@ void WorkQueue::wait_for_laggards(std::unique_lock<std::mutex>& lock) {
 
 Work WorkQueue::take(Duration patience) {
   std::unique_lock lock(mutex_);
-  changed_.wait_for(lock, patience,
-                    [this] { return stop_ || tick_ || !tasks_.empty() || oldest_lane() != nullptr; });
+  changed_.wait_until(lock, std::min(Clock::now() + patience, next_look()),
+                      [this] { return stop_ || tick_ || !tasks_.empty() || oldest_lane() != nullptr; });
+  if (notice_hangs()) tick_ = true;
   wait_for_laggards(lock);
   Work work;
   work.tasks.swap(tasks_);
@@ -131,7 +183,16 @@ Work WorkQueue::take(Duration patience) {
 std::vector<InboxState> WorkQueue::inboxes() const {
   const std::lock_guard lock(mutex_);
   std::vector<InboxState> states;
-  for (const Lane& lane : lanes_) states.push_back(lane.inbox);
+  for (const Lane& lane : lanes_) {
+    states.push_back(lane.inbox);
+    const auto since = lane.pulse ? hangs_for(*lane.pulse) : std::nullopt;
+    if (!since) continue;
+    InboxState& state = states.back();
+    state.reachable = false;
+    state.hangs = true;
+    state.reason = "the folder does not answer";
+    if (!state.unreachable_since) state.unreachable_since = now_utc() - std::chrono::floor<Duration>(*since);
+  }
   return states;
 }
 

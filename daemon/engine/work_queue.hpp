@@ -5,10 +5,12 @@
 #include <deque>
 #include <functional>
 #include <future>
+#include <memory>
 #include <mutex>
 #include <string>
 #include <vector>
 
+#include "daemon/intake/pulse.hpp"
 #include "daemon/intake/row.hpp"
 #include "daemon/intake/sink.hpp"
 
@@ -45,6 +47,9 @@ class WorkQueue {
   /// Never blocks. False once stopped.
   bool put(Task task);
   void report(AnalyzerIndex analyzer, const InboxState& state);
+  /// The analyzer's watcher, which reports at least once in `rescan` unless its folder holds it up: then
+  /// inboxes() says so.
+  void watch_over(AnalyzerIndex analyzer, std::shared_ptr<const Pulse> pulse, Duration rescan);
   /// What was taken of the analyzer could not be committed: at least one file of it waits, until its next
   /// report.
   void still_waits(AnalyzerIndex analyzer);
@@ -62,8 +67,16 @@ class WorkQueue {
     std::deque<QueuedPiece> waiting;
     std::size_t rows = 0;
     InboxState inbox;
+    std::shared_ptr<const Pulse> pulse;
+    Duration rescan{};
+    Pulse::Clock::time_point reported{};
+    bool hang_noticed = false;
   };
   [[nodiscard]] Lane* oldest_lane();
+  /// When to look at the pulses next, unless something is reported before.
+  [[nodiscard]] Pulse::Clock::time_point next_look() const;
+  /// True if a folder was found not to answer that answered before.
+  bool notice_hangs();
   void wait_for_laggards(std::unique_lock<std::mutex>& lock);
 
   mutable std::mutex mutex_;

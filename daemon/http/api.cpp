@@ -163,7 +163,7 @@ HttpAnswer Api::live(const HttpRequest&, const Target&) {
 
 HttpAnswer Api::ready(const HttpRequest& request, const Target&) {
   const auto snapshot = service_.snapshot();
-  if (snapshot->ready) return json_answer(ready_json());
+  if (snapshot->ready) return json_answer(ready_json(snapshot->remarks));
   return {503, "application/problem+json", not_ready_json(snapshot->not_ready, request.target), "", {}};
 }
 

@@ -16,6 +16,7 @@ bool AnswerQueue::submit(const std::shared_ptr<TakenFile>& file, FilePiece&& pie
   if (file->failed) return false;
   if (stop.stop_requested()) throw Stopping{};
   Waiting waiting{file, {}, rows, piece.last};
+  pulse_.rest();
   try {
     waiting.answer = sink_.submit(std::move(piece));
   } catch (...) {  // the answer tells, in its turn
@@ -23,6 +24,7 @@ bool AnswerQueue::submit(const std::shared_ptr<TakenFile>& file, FilePiece&& pie
     refused.set_exception(std::current_exception());
     waiting.answer = refused.get_future();
   }
+  pulse_.step();
   ++file->unanswered;
   rows_ += rows;
   waiting_.push_back(std::move(waiting));
@@ -34,8 +36,10 @@ void AnswerQueue::drain(const std::stop_token& stop) {
 }
 
 void AnswerQueue::take_answer(const std::stop_token& stop) {
+  pulse_.rest();
   while (waiting_.front().answer.wait_for(kLookForStop) != std::future_status::ready)
     if (stop.stop_requested()) throw Stopping{};
+  pulse_.step();
   Waiting waiting = std::move(waiting_.front());
   waiting_.pop_front();
   rows_ -= waiting.rows;

@@ -10,6 +10,7 @@
 #include <string>
 
 #include "daemon/intake/file_content.hpp"
+#include "daemon/intake/pulse.hpp"
 #include "daemon/intake/sink.hpp"
 
 namespace agreed {
@@ -17,6 +18,7 @@ namespace agreed {
 /// A file being taken in.
 struct TakenFile {
   std::string name;        ///< that it came with
+  bool growing = false;    ///< it stays where it is
   std::string moved_path;  ///< relative to the inbox, of a file that grew after its move; else empty
   FileStamp stamp;         ///< as it was read
   std::size_t unanswered = 0;
@@ -38,8 +40,9 @@ class AnswerQueue {
   /// TakenFile::failed says so and `error` why.
   using Settle = std::function<void(TakenFile&, const PieceAnswer&, const std::string& error)>;
 
-  AnswerQueue(IntakeSink& sink, QueueLimits limits, Settle settle)
-      : sink_(sink), limits_(limits), settle_(std::move(settle)) {}
+  /// `pulse` rests while the queue waits for the engine.
+  AnswerQueue(IntakeSink& sink, QueueLimits limits, Pulse& pulse, Settle settle)
+      : sink_(sink), limits_(limits), pulse_(pulse), settle_(std::move(settle)) {}
 
   /// Hands over a piece of `file`, after waiting for room. False if a piece of it has failed: give no more.
   /// The last of several pieces is handed over only when the others are committed, so that a file is never
@@ -61,6 +64,7 @@ class AnswerQueue {
 
   IntakeSink& sink_;
   QueueLimits limits_;
+  Pulse& pulse_;
   Settle settle_;
   std::deque<Waiting> waiting_;
   std::size_t rows_ = 0;

@@ -78,6 +78,10 @@ class CsvRows final : public RowFormat {
     });
   }
 
+  void pause() override {
+    if (unusable_.empty()) give_up_open();
+  }
+
   void finish(bool closed) override {
     if (!unusable_.empty()) return;
     if (lines_.has_rest() && !closed && have_header_) {
@@ -171,7 +175,7 @@ class CsvRows final : public RowFormat {
   }
 
   void record(std::uint32_t line, std::string_view whole) {
-    if (!have_header_) return header();
+    if (!have_header_ || is_header_again()) return header();
     if (parser_.size() != columns_.size()) {
       refuse(line, whole,
              "the row has " + std::to_string(parser_.size()) + " fields; the header has " +
@@ -191,7 +195,22 @@ class CsvRows final : public RowFormat {
     maker_.make(raw_, taker_);
   }
 
+  /// Exports that are joined, or that go on after a restart of their program, have further header rows,
+  /// perhaps with other columns. A row that names all the needed columns is no result.
+  [[nodiscard]] bool is_header_again() const {
+    bool names_kind = false;
+    for (std::size_t i = 0; i < parser_.size(); ++i)
+      names_kind = names_kind || parser_[i] == name_of(PlainColumn::kind);
+    if (!names_kind) return false;
+    std::vector<std::string> names;
+    for (std::size_t i = 0; i < parser_.size(); ++i) names.emplace_back(parser_[i]);
+    return header_fault(names).empty();
+  }
+
   void header() {
+    names_.clear();
+    columns_.clear();
+    raw_ = {};
     for (std::size_t i = 0; i < parser_.size(); ++i) names_.emplace_back(parser_[i]);
     unusable_ = header_fault(names_);
     if (!unusable_.empty()) return;

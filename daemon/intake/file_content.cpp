@@ -38,8 +38,8 @@ std::optional<FileStamp> stamp_of(int folder, const std::string& name) {
   fail("stat");
 }
 
-FileContent::FileContent(int folder, const std::string& name)
-    : file_(::openat(folder, name.c_str(), O_RDONLY | O_NOFOLLOW | O_NONBLOCK | O_CLOEXEC)) {
+FileContent::FileContent(int folder, const std::string& name, Pulse* pulse)
+    : file_(::openat(folder, name.c_str(), O_RDONLY | O_NOFOLLOW | O_NONBLOCK | O_CLOEXEC)), pulse_(pulse) {
   if (!file_.valid()) fail("open");
 }
 
@@ -50,6 +50,7 @@ FileStamp FileContent::stamp() const {
 }
 
 std::size_t FileContent::read(std::uint64_t offset, std::span<char> into) const {
+  if (pulse_ != nullptr) pulse_->step();
   for (;;) {
     const ssize_t got = ::pread(file_.get(), into.data(), into.size(), static_cast<off_t>(offset));
     if (got >= 0) return static_cast<std::size_t>(got);

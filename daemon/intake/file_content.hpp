@@ -8,6 +8,7 @@
 #include <string_view>
 
 #include "daemon/descriptor.hpp"
+#include "daemon/intake/pulse.hpp"
 
 namespace agreed {
 
@@ -31,8 +32,8 @@ class FileContent {
  public:
   /// Opens `name` in the folder (a descriptor) for reading: no symbolic link is followed, nothing blocks.
   /// Throws std::system_error; ENOENT and ELOOP tell a vanished file and a link. Look at stamp().regular
-  /// before reading.
-  FileContent(int folder, const std::string& name);
+  /// before reading. `pulse`, which must outlive the content, steps before each reading.
+  FileContent(int folder, const std::string& name, Pulse* pulse = nullptr);
 
   /// As it is now.
   [[nodiscard]] FileStamp stamp() const;
@@ -46,6 +47,7 @@ class FileContent {
 
  private:
   Descriptor file_;
+  Pulse* pulse_;
 };
 
 }  // namespace agreed

@@ -123,7 +123,8 @@ class Reading {
     try {
       const bool whole = content_.each_block([&](std::string_view block) {
         hash.update(block);
-        return rows.feed(block);
+        const bool go_on = rows.feed(block);
+        return go_on;
       });
       if (whole) rows.finish(task_.closed);
       if (has_changed() || (whole && hash.hex() != identity_.sha256)) return ReadOutcome::changed;

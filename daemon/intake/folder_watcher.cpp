@@ -40,6 +40,10 @@ void FolderWatcher::stop() {
   if (impl_->thread.joinable()) impl_->thread.join();
 }
 
+std::shared_ptr<const Pulse> FolderWatcher::pulse() const {
+  return impl_->loop.pulse();
+}
+
 bool FolderWatcher::stopped() const {
   return !impl_->running;
 }

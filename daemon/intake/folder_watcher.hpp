@@ -6,6 +6,7 @@
 #include "config/config.hpp"
 #include "daemon/intake/answer_queue.hpp"
 #include "daemon/intake/file_reader.hpp"
+#include "daemon/intake/pulse.hpp"
 #include "daemon/intake/sink.hpp"
 
 namespace agreed {
@@ -34,6 +35,8 @@ class FolderWatcher {
   /// Asks and waits. Takes well under a second unless the folder hangs or the sink blocks in submit: unblock
   /// the sink first. Files whose answers are outstanding stay in the inbox.
   void stop();
+  /// Tells whether the thread is held up by its folder; outlives the watcher.
+  [[nodiscard]] std::shared_ptr<const Pulse> pulse() const;
   /// True once the thread has ended, or before it began.
   [[nodiscard]] bool stopped() const;
 

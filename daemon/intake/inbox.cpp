@@ -23,6 +23,11 @@ std::string words(int error) {
   return std::generic_category().message(error);
 }
 
+bool is_symbolic_link(const std::filesystem::path& path) {
+  struct stat status {};
+  return ::lstat(path.c_str(), &status) == 0 && S_ISLNK(status.st_mode);
+}
+
 std::vector<std::string> names_in(int folder) {
   const int copy = ::openat(folder, ".", O_RDONLY | O_DIRECTORY | O_CLOEXEC);
   DIR* const stream = copy < 0 ? nullptr : ::fdopendir(copy);
@@ -45,8 +50,10 @@ std::vector<std::string> names_in(int folder) {
 
 }  // namespace
 
-Inbox::Inbox(std::filesystem::path path)
-    : path_(std::move(path)),
+Inbox::Inbox(std::filesystem::path path, bool changes)
+    // Without a slash at the end, with which a link in its place would be followed.
+    : path_(path.has_filename() ? std::move(path) : path.parent_path()),
+      changes_(changes),
       wake_(::eventfd(0, EFD_NONBLOCK | EFD_CLOEXEC)),
       notify_(::inotify_init1(IN_NONBLOCK | IN_CLOEXEC)) {
   if (!notify_.valid()) no_events_ = "no inotify: " + words(errno);
@@ -54,12 +61,16 @@ Inbox::Inbox(std::filesystem::path path)
 }
 
 std::string Inbox::open() {
-  folder_.reset(::open(path_.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC));
+  // A link is followed if the configuration names one, and not if the folder is replaced by one later.
+  const int no_link = is_link_.value_or(true) ? 0 : O_NOFOLLOW;
+  folder_.reset(::open(path_.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC | no_link));
   struct stat status {};
   if (!folder_.valid() || ::fstat(folder_.get(), &status) != 0) {
     const int error = errno;
     close();
     forget_watch();
+    if (no_link != 0 && is_symbolic_link(path_))
+      return "a symbolic link has taken the place of the folder; it is not followed";
     return "the folder cannot be opened: " + words(error);
   }
   // An empty folder on another device is what is left when a share is not mounted.
@@ -68,6 +79,7 @@ std::string Inbox::open() {
     return "the folder is empty and on another device than before; is it mounted?";
   }
   home_device_ = status.st_dev;
+  if (!is_link_) is_link_ = is_symbolic_link(path_);
   if (watch_ < 0 || device_ != status.st_dev || inode_ != status.st_ino) {
     forget_watch();
     device_ = status.st_dev;
@@ -81,7 +93,7 @@ void Inbox::watch() {
   if (!notify_.valid()) return;
   // By descriptor, so that it is the folder just opened and no other that took its path.
   const std::string self = "/proc/self/fd/" + std::to_string(folder_.get());
-  watch_ = ::inotify_add_watch(notify_.get(), self.c_str(), kEvents);
+  watch_ = ::inotify_add_watch(notify_.get(), self.c_str(), changes_ ? kEvents | IN_MODIFY : kEvents);
   no_events_ = watch_ < 0 ? "no inotify: " + words(errno) : "";
 }
 
@@ -126,6 +138,7 @@ void Inbox::read_events(InboxEvents& events) {
       if ((event.mask & IN_ISDIR) != 0 || event.len == 0) continue;
       if ((event.mask & IN_CLOSE_WRITE) != 0) events.named.push_back({Notice::closed, name});
       if ((event.mask & IN_MOVED_TO) != 0) events.named.push_back({Notice::renamed_in, name});
+      if ((event.mask & IN_MODIFY) != 0) events.named.push_back({Notice::scan, name});
       if ((event.mask & IN_CREATE) != 0) events.named.push_back({Notice::created, name});
     }
   }

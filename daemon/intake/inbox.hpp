@@ -24,8 +24,9 @@ struct InboxEvents {
 
 class Inbox {
  public:
-  /// Throws std::system_error if the process has no descriptors left.
-  explicit Inbox(std::filesystem::path path);
+  /// `changes`: tell of every change of a file too, not only of its close. Throws std::system_error if the
+  /// process has no descriptors left.
+  explicit Inbox(std::filesystem::path path, bool changes = false);
 
   /// Opens the folder that is at the path now, and watches it if it is another one than before; empty, or why
   /// it cannot be used. The folder is never created.
@@ -52,11 +53,13 @@ class Inbox {
   void read_events(InboxEvents& events);
 
   std::filesystem::path path_;
+  bool changes_;
   Descriptor wake_, notify_, folder_;
   std::string no_events_;
   int watch_ = -1;
   std::uint64_t device_ = 0, inode_ = 0;  ///< of the watched folder
   std::optional<std::uint64_t> home_device_;
+  std::optional<bool> is_link_;  ///< whether the path was a symbolic link when it was first opened
 };
 
 }  // namespace agreed

@@ -29,6 +29,10 @@ bool PlainReader::feed(std::string_view block) {
   return unusable().empty();
 }
 
+void PlainReader::pause() {
+  if (unusable().empty()) format_->pause();
+}
+
 void PlainReader::finish(bool closed) {
   format_->finish(closed);
 }

@@ -23,6 +23,10 @@ class PlainReader {
 
   /// Takes the next bytes, cut anywhere; false once the file is known to be unusable.
   bool feed(std::string_view block);
+  /// The file ends here for now, after a line end; more may be fed later.
+  void pause();
+  /// From now on rows are judged as of `now` (PlainContext::now).
+  void set_now(Instant now) { maker_.set_now(now); }
   /// The end of the file. `closed`: its writer is known to have finished, so a last line without line end
   /// counts; else that line is a bad row.
   void finish(bool closed);

@@ -56,6 +56,7 @@ struct FilePiece {
   std::vector<Row> rows;
   std::vector<BadRow> bad;
   std::string unusable;
+  bool growing = false;  ///< further lines of a file that stays; `file` describes its bytes up to their end
 };
 
 enum class FileOutcome { more, done, repeated, rejected };

@@ -29,6 +29,7 @@ class RowMaker {
 
   /// Gives `taker` one Row, two for a row with both sides of a pair, or one BadRow.
   void make(const RawRow& raw, RowTaker& taker) const;
+  void set_now(Instant now) { context_.now = now; }
 
  private:
   PlainContext context_;

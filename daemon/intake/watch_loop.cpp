@@ -19,6 +19,14 @@ Instant utc_now() {
   return std::chrono::floor<Duration>(std::chrono::system_clock::now());
 }
 
+bool same_growth(const InboxState& a, const InboxState& b) {
+  return std::equal(a.growing.begin(), a.growing.end(), b.growing.begin(), b.growing.end(),
+                    [](const GrowingState& one, const GrowingState& other) {
+                      return one.name == other.name && one.taken == other.taken &&
+                             one.unfinished == other.unfinished;
+                    });
+}
+
 /// Whether the file ends as a complete one of its syntax does.
 bool ends_complete(const FileContent& content, const std::string& name) {
   if (plain_syntax_of(name) == PlainSyntax::json_array) return content.last_mark() == ']';
@@ -35,12 +43,20 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
       sink_(sink),
       limits_(limits),
       zone_(std::make_shared<LocalZone>(intake.zone)),
-      inbox_(intake.inbox),
+      pulse_(std::make_shared<Pulse>()),
+      inbox_(intake.inbox, intake.mode == FileMode::growing),
       waiting_(intake.settle, limits.unfinished),
-      queue_(sink, limits.queue,
+      queue_(sink, limits.queue, *pulse_,
              [this](TakenFile& file, const PieceAnswer& answer, const std::string& error) {
                settle(file, answer, error);
-             }) {}
+             }) {
+  if (intake.mode != FileMode::growing) return;
+  growing_.emplace(intake.settle, limits,
+                   GrowingIntake::Watcher{analyzer, sink, queue_, [this] { return context(); }, *pulse_,
+                                          [this](const std::string& what, const std::string& words) {
+                                            tell_once(what, words);
+                                          }});
+}
 
 void WatchLoop::run(const std::stop_token& stop) noexcept {
   while (!stop.stop_requested()) {
@@ -53,6 +69,7 @@ void WatchLoop::run(const std::stop_token& stop) noexcept {
       try {
         log_warning("{}: {}", intake_.analyzer, std::string("intake is held up: ") + error.what());
         next_scan_ = Clock::now() + intake_.rescan;
+        pulse_->rest();
         (void)inbox_.wait(next_scan_);
       } catch (...) {
         next_scan_ = {};
@@ -62,6 +79,7 @@ void WatchLoop::run(const std::stop_token& stop) noexcept {
 }
 
 void WatchLoop::turn(const std::stop_token& stop) {
+  pulse_->step();
   if (Clock::now() >= next_scan_) scan(Clock::now(), stop);
   if (state_.reachable) {
     take_due(stop);
@@ -69,9 +87,12 @@ void WatchLoop::turn(const std::stop_token& stop) {
   }
   report(false);
   inbox_.close();
+  pulse_->rest();
   Tick until = next_scan_;
-  if (state_.reachable) until = std::min(until, waiting_.next_due().value_or(until));
-  note(inbox_.wait(until), Clock::now());
+  if (state_.reachable) until = std::min(until, next_due().value_or(until));
+  const InboxEvents events = inbox_.wait(until);
+  pulse_->step();
+  note(events, Clock::now());
 }
 
 void WatchLoop::scan(Tick now, const std::stop_token& stop) {
@@ -86,6 +107,7 @@ void WatchLoop::scan(Tick now, const std::stop_token& stop) {
   } catch (const std::system_error& error) {
     reachable(std::string("the folder cannot be read: ") + error.what());
   }
+  if (!state_.reachable) ++state_.failed_looks;
   if (!inbox_.no_events().empty())
     tell_once("events", inbox_.no_events() + "; files are found by scans only");
   report(true);
@@ -93,17 +115,34 @@ void WatchLoop::scan(Tick now, const std::stop_token& stop) {
 
 void WatchLoop::list(Tick now) {
   waiting_.begin_scan();
+  if (growing_) growing_->begin_scan(now);
   for (const std::string& name : inbox_.names()) notice(name, Notice::scan, now);
   waiting_.end_scan();
+  if (growing_) growing_->end_scan();
   state_.scanned_once = true;
 }
 
 void WatchLoop::notice(const std::string& name, Notice notice, Tick now) {
+  pulse_->step();
+  if (growing_) return notice_growing(name, notice, now);
   if (is_ignored_name(name) || unmoved_.contains(name)) return;
   if (const auto stamp = stamp_of(inbox_.folder(), name))
     waiting_.see(name, *stamp, notice, now);
   else
     waiting_.forget_unless_due(name);
+}
+
+void WatchLoop::notice_growing(const std::string& name, Notice notice, Tick now) {
+  const auto stamp = stamp_of(inbox_.folder(), name);
+  if (!stamp) return;
+  if (is_ignored_name(name))
+    growing_->see_other(name, *stamp, now);
+  else
+    growing_->see(name, *stamp, notice, now);
+}
+
+std::optional<Tick> WatchLoop::next_due() const {
+  return growing_ ? growing_->next_due() : waiting_.next_due();
 }
 
 void WatchLoop::note(const InboxEvents& events, Tick now) {
@@ -120,6 +159,7 @@ void WatchLoop::note(const InboxEvents& events, Tick now) {
 }
 
 void WatchLoop::take_due(const std::stop_token& stop) {
+  if (growing_) return take_due_growing(stop);
   const auto due = waiting_.take_due(Clock::now());
   if (!due.empty() && !inbox_.is_open()) reachable(inbox_.open());
   for (const auto& [name, waiting] : due) {
@@ -136,13 +176,19 @@ void WatchLoop::take_due(const std::stop_token& stop) {
   }
 }
 
+void WatchLoop::take_due_growing(const std::stop_token& stop) {
+  if (growing_->next_due().value_or(Tick::max()) > Clock::now()) return;
+  if (!inbox_.is_open()) reachable(inbox_.open());
+  if (state_.reachable) growing_->take_due(inbox_.folder(), stop);
+}
+
 void WatchLoop::take(const std::string& name, const WaitingFile& waiting, const std::stop_token& stop) {
   const auto found = stamp_of(inbox_.folder(), name);
   if (!found || found->directory) return waiting_.forget(name);
   if (!found->regular)
     return refuse(name, *found, "it is no regular file (a link, a pipe or a device); a file was expected",
                   stop);
-  const FileContent content(inbox_.folder(), name);
+  const FileContent content(inbox_.folder(), name, pulse_.get());
   const FileStamp stamp = content.stamp();
   const Tick now = Clock::now();
   if (!waiting.finished() && !waiting.stamp.same_content(stamp)) return waiting_.changed(name, stamp, now);
@@ -179,7 +225,7 @@ void WatchLoop::read(const FileContent& content, const std::shared_ptr<TakenFile
 void WatchLoop::look_again(Tick now, const std::stop_token& stop) {
   for (const MovedFiles::Moved& moved : moved_.look(inbox_.folder(), now)) {
     try {
-      const FileContent content(inbox_.folder(), moved.path);
+      const FileContent content(inbox_.folder(), moved.path, pulse_.get());
       const bool stands_still = now - moved.changed >= limits_.unfinished;
       if (!ends_complete(content, moved.name) && !stands_still) continue;
       auto file = std::make_shared<TakenFile>();
@@ -199,10 +245,11 @@ void WatchLoop::settle(TakenFile& file, const PieceAnswer& answer, const std::st
   const bool in_inbox = file.moved_path.empty();
   if (file.failed) {
     tell_once("commit", "a commit failed, the files stay and are tried again at the next scan: " + error);
-    if (in_inbox) waiting_.retry_at_scan(file.name);
+    if (in_inbox && !growing_) waiting_.retry_at_scan(file.name);
     return;
   }
   told_.erase("commit");
+  if (growing_) return;
   if (!in_inbox) return moved_.read_again(file.moved_path, file.stamp);
   try {
     move(file, answer);
@@ -253,9 +300,12 @@ void WatchLoop::reachable(const std::string& why_not) {
   state_.reachable = why_not.empty();
   state_.reason = why_not;
   if (state_.reachable) {
+    state_.unreachable_since.reset();
+    state_.failed_looks = 0;
     if (!was_reachable) log_info("{}: {}", intake_.analyzer, "watching " + in_quotes(intake_.inbox.string()));
     told_.erase("inbox");
   } else {
+    if (!state_.unreachable_since) state_.unreachable_since = utc_now();
     tell_once("inbox",
               in_quotes(intake_.inbox.string()) + ": " + why_not + "; it is tried again at each scan");
   }
@@ -263,11 +313,15 @@ void WatchLoop::reachable(const std::string& why_not) {
 
 void WatchLoop::report(bool always) {
   state_.pending = waiting_.size();
+  if (growing_) {
+    state_.pending = growing_->pending();
+    state_.growing = growing_->states();
+  }
   const Tick now = Clock::now();
   const bool news = state_.reachable != reported_.reachable || state_.reason != reported_.reason ||
                     state_.scanned_once != reported_.scanned_once;
-  const bool count_is_old =
-      state_.pending != reported_.pending && (now - last_report_ >= kReportWithin || state_.pending == 0);
+  const bool count_is_old = (state_.pending != reported_.pending || !same_growth(state_, reported_)) &&
+                            (now - last_report_ >= kReportWithin || state_.pending == 0);
   if (!always && !news && !count_is_old) return;
   sink_.report(analyzer_, state_);
   reported_ = state_;

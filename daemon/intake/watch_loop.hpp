@@ -3,14 +3,17 @@
 #include <list>
 #include <map>
 #include <memory>
+#include <optional>
 #include <stop_token>
 #include <string>
 
 #include "core/base/settings.hpp"
 #include "daemon/intake/answer_queue.hpp"
 #include "daemon/intake/folder_watcher.hpp"
+#include "daemon/intake/growing_intake.hpp"
 #include "daemon/intake/inbox.hpp"
 #include "daemon/intake/moved_files.hpp"
+#include "daemon/intake/pulse.hpp"
 #include "daemon/intake/waiting_files.hpp"
 
 namespace agreed {
@@ -26,6 +29,7 @@ class WatchLoop {
   void run(const std::stop_token& stop) noexcept;
   /// Ends a wait, from any thread.
   void wake() const { inbox_.wake(); }
+  [[nodiscard]] std::shared_ptr<const Pulse> pulse() const { return pulse_; }
 
  private:
   /// A file that was committed and could not be moved: tried again at each scan, not read again.
@@ -39,8 +43,11 @@ class WatchLoop {
   void list(Tick now);
   void note(const InboxEvents& events, Tick now);
   void notice(const std::string& name, Notice notice, Tick now);
+  void notice_growing(const std::string& name, Notice notice, Tick now);
+  [[nodiscard]] std::optional<Tick> next_due() const;
 
   void take_due(const std::stop_token& stop);
+  void take_due_growing(const std::stop_token& stop);
   void take(const std::string& name, const WaitingFile& waiting, const std::stop_token& stop);
   void refuse(const std::string& name, const FileStamp& stamp, std::string why, const std::stop_token& stop);
   void read(const FileContent& content, const std::shared_ptr<TakenFile>& file, bool closed,
@@ -62,10 +69,12 @@ class WatchLoop {
   IntakeSink& sink_;
   WatcherLimits limits_;
   std::shared_ptr<const LocalZone> zone_;
+  std::shared_ptr<Pulse> pulse_;
   Inbox inbox_;
   WaitingFiles waiting_;
   MovedFiles moved_;
   AnswerQueue queue_;
+  std::optional<GrowingIntake> growing_;  ///< of a folder whose files grow; then nothing is ever moved
   std::map<std::string, Unmoved> unmoved_;
   std::map<std::string, std::string> told_;  ///< warnings already logged, so that none repeats at every scan
   InboxState state_, reported_;

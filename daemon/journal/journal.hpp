@@ -44,7 +44,7 @@ class Journal {
   [[nodiscard]] std::optional<BegunFile> begun_file(const JournalFile& file);
   /// Begins a file; `outcome` is set by finish_file in this batch or a later one.
   std::int64_t add_file(const JournalFile& file);
-  /// outcome: done, repeated or rejected. `reason` for rejected.
+  /// outcome: done, repeated, rejected, or kGrownOutcome. `reason` for rejected.
   void finish_file(std::int64_t file, std::string_view outcome, std::string_view reason);
   JournalRowResult add_reading(std::int64_t file, const JournalReading& reading);
   /// Takes back what matches (analyzer, measurand, item, measured_at, replicate) whatever the kind; empty if

@@ -86,6 +86,8 @@ class JournalReader {
   /// The oldest undelivered, not given up message of `route`, whether due or not: order per route is kept.
   [[nodiscard]] std::optional<OutboxMessage> next_message(std::string_view route);
   [[nodiscard]] std::vector<FileRow> files(std::string_view outcome, int limit, std::int64_t before_id);
+  /// Every file of the analyzer with kGrownOutcome, oldest first.
+  void each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take);
   [[nodiscard]] std::vector<ReadingRow> readings(const ReadingQuery& query);
 
   // As in Journal, as of the last commit; for replay and report.

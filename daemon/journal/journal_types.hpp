@@ -56,6 +56,10 @@ struct JournalIntervention {
   Instant at{};
 };
 
+/// Outcome of a file that stands for what was taken of a growing file at one time: its bytes from the start
+/// up to the end of the last line taken.
+inline constexpr const char* kGrownOutcome = "grown";
+
 struct JournalFile {
   std::string analyzer, name, sha256;
   std::uint64_t size = 0;

@@ -171,6 +171,21 @@ std::optional<OutboxMessage> JournalReader::next_message(std::string_view route)
   });
 }
 
+void JournalReader::each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take) {
+  journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(
+        *impl_->database,
+        "SELECT f.name, f.sha256, f.size, f.mtime_ns FROM files f JOIN file_outcomes o ON "
+        "o.file = f.id JOIN names n ON n.id = f.analyzer WHERE o.outcome = ? AND n.text = ? "
+        "ORDER BY o.file");
+    rows.bind(1, kGrownOutcome);
+    rows.bind(2, std::string(analyzer));
+    while (rows.executeStep())
+      take({std::string(analyzer), rows.getColumn(0).getString(), rows.getColumn(1).getString(),
+            static_cast<std::uint64_t>(rows.getColumn(2).getInt64()), rows.getColumn(3).getInt64()});
+  });
+}
+
 std::vector<FileRow> JournalReader::files(std::string_view outcome, int limit, std::int64_t before_id) {
   return journal::translating(impl_->file, [&] {
     const Moment moment(*impl_->database);

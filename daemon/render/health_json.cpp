@@ -8,8 +8,8 @@ std::string live_json() {
   return json_text(Json{{"live", true}});
 }
 
-std::string ready_json() {
-  return json_text(Json{{"ready", true}, {"reasons", Json::array()}});
+std::string ready_json(const std::vector<std::string>& remarks) {
+  return json_text(Json{{"ready", true}, {"reasons", Json::array()}, {"remarks", remarks}});
 }
 
 std::string not_ready_json(const std::vector<std::string>& reasons, const std::string& instance) {

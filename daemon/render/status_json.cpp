@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "daemon/printable.hpp"
 #include "daemon/render/json_parts.hpp"
 #include "daemon/version.hpp"
 
@@ -60,6 +61,14 @@ Json chart_counts(const Snapshot& snapshot, AnalyzerIndex analyzer) {
   return {{"stable", stable}, {"unstable", unstable}, {"learning", learning}};
 }
 
+Json growing_of(const InboxState& inbox) {
+  Json list = Json::array();
+  for (const GrowingState& file : inbox.growing)
+    list.push_back(
+        {{"file", printable(file.name)}, {"taken_bytes", file.taken}, {"unfinished_bytes", file.unfinished}});
+  return list;
+}
+
 Json analyzers_of(const Snapshot& snapshot) {
   Json list = Json::array();
   for (std::uint32_t i = 0; i < snapshot.settings->analyzers.size(); ++i) {
@@ -70,7 +79,9 @@ Json analyzers_of(const Snapshot& snapshot) {
                     {"inbox",
                      {{"reachable", status.inbox.reachable},
                       {"reason", json_words(status.inbox.reason)},
-                      {"pending", status.inbox.pending}}},
+                      {"since", json_time(status.inbox.unreachable_since)},
+                      {"pending", status.inbox.pending},
+                      {"growing", growing_of(status.inbox)}}},
                     {"last_reading_at", json_time(status.last_reading_at)},
                     {"charts", chart_counts(snapshot, AnalyzerIndex{i})}});
   }

@@ -1,6 +1,6 @@
 """The figures of the service beside their references, measured in one run on one machine.
 
-bench.py [part ...]   parts: intake start pairs webhook status idle (default: all)
+bench.py [part ...]   parts: intake start pairs webhook status idle backlog large many (default: all)
 """
 import ctypes
 import json
@@ -259,8 +259,113 @@ def bench_idle(seconds=40):
         site.close()
 
 
+def latencies_ms(site, while_true, at_least=0):
+    """How long GET /api/status takes, asked again and again, as a page does: ten times a second."""
+    times = []
+    while while_true() or len(times) < at_least:
+        begun = time.monotonic()
+        site.get("/api/status")
+        times.append((time.monotonic() - begun) * 1e3)
+        time.sleep(max(0.0, 0.1 - times[-1] / 1e3))
+    return times
+
+
+def percentile(values, share):
+    return sorted(values)[min(len(values) - 1, int(share * len(values)))]
+
+
+def bench_backlog(files=100_000):
+    """So many files waiting at the start, one row each: how fast they go, and what a reader notices of it."""
+    site = Site(config=LARGE).start()
+    try:
+        idle = latencies_ms(site, lambda: False, at_least=100)
+        site.stop()
+        for i in range(files):
+            (site.inbox("line1") / f"{i:06d}.csv").write_text(
+                f"kind,measured_at,measurand,item,value\ncheck,{rfc3339(START - 400 * 86400 + 60 * i)},protein,wheat-low,{10.6 + i % 7 / 100:.2f}\n")
+        site.start(wait_ready=False)
+        begun = time.monotonic()
+        taken = lambda: site.get("/api/status")["intake"]["readings"]["accepted"]
+        busy = latencies_ms(site, lambda: taken() < files)
+        seconds = time.monotonic() - begun
+        say(f"{files:,} waiting files: {files / seconds:,.0f} files/s; GET /api/status meanwhile: median "
+            f"{statistics.median(busy):.1f} ms, 99th percentile {percentile(busy, 0.99):.1f} ms; idle: "
+            f"{statistics.median(idle):.1f} and {percentile(idle, 0.99):.1f} ms; ratio of the 99th percentiles "
+            f"{percentile(busy, 0.99) / percentile(idle, 0.99):.1f} (budget 2); resident {resident_mb(site):.1f} MB")
+    finally:
+        site.close()
+
+
+def bench_large(megabytes=200):
+    """One large file, rows of about 200 bytes."""
+    site = Site(config=LARGE).start()
+    try:
+        path = site.folder / "large.csv"
+        rows = megabytes * 5_000
+        with open(path, "w") as out:
+            out.write("kind,measured_at,measurand,item,value,note\n")
+            for i in range(rows):
+                out.write(f"check,{rfc3339(START - 400 * 86400 + 30 * i)},protein,{STANDARDS[i % 4]},{10.62 + i % 4 + i % 11 / 100:.2f},{i:0130d}\n")
+        size = path.stat().st_size / 1e6
+        seconds = take_in(site, [path], rows)
+        peak = next(int(l.split()[1]) / 1024 for l in open(f"/proc/{site.process.pid}/status") if l.startswith("VmHWM"))
+        say(f"a file of {size:.0f} MB, {rows:,} rows: {seconds:.1f} s, {size / seconds:.1f} MB/s; "
+            f"resident at most {peak:.1f} MB (budget 64)")
+    finally:
+        site.close()
+
+
+def many_config(analyzers, measurands):
+    lines = ["site: Harrow Mill", "state: state", "listen: {address: 127.0.0.1, port: 0}", "analyzers:"]
+    lines += [f"  a{i}: {{inbox: drop/a{i}, settle: 200ms}}" for i in range(analyzers)]
+    lines += ["measurands:"]
+    lines += [f"  m{i}: {{unit: g/100 g, decision_levels: [10.5, 13.0], allowable_difference: {{absolute: 0.2}}}}" for i in range(measurands)]
+    lines += ["check_standards:", "  wheat-low: {measurands: {" + ", ".join(f"m{i}: {{}}" for i in range(measurands)) + "}}", "comparisons:"]
+    lines += [f"  c{i}: {{measurand: m{i % measurands}, x: a{2 * i}, y: a{2 * i + 1}}}" for i in range(analyzers // 2)]
+    return "\n".join(lines) + "\n"
+
+
+def bench_many(seconds=60, analyzers=100, measurands=20, rate=5_000, rows=100):
+    """A hundred analyzers at so many readings a second in files of a hundred rows: does the queue grow? The reference
+    is the rate that was offered."""
+    import random
+    rng = random.Random(11)
+    site = Site(config=many_config(analyzers, measurands))
+    for i in range(analyzers):
+        (site.folder / "drop" / f"a{i}").mkdir()
+    site.start()
+    try:
+        begun, sent, pending, late = time.monotonic(), 0, [], 0.0
+        while time.monotonic() - begun < seconds:
+            analyzer = (sent // rows) % analyzers
+            turn = sent // rows // analyzers
+            at = START - 100 * 86400 + 60 * turn
+            text = ["kind,measured_at,measurand,item,value"]
+            for i in range(rows):
+                m = i % measurands
+                if i < 2 * measurands:
+                    text.append(f"check,{rfc3339(at + i // measurands)},m{m},wheat-low,{10.62 + rng.gauss(0, 0.02):.4f}")
+                else:  # the same samples on both analyzers of a pair
+                    text.append(f"split,{rfc3339(at + i)},m{m},S-{analyzer // 2}-{turn}-{i},{10 + i % 40 / 10 + rng.gauss(0, 0.02):.4f}")
+            site.drop(f"a{analyzer}", f"{turn}.csv", "\n".join(text) + "\n")
+            sent += rows
+            if sent % (rate // 5) == 0:
+                pending.append(site.get("/api/status")["intake"]["pending_files"])
+            ahead = begun + sent / rate - time.monotonic()
+            late = max(late, -ahead)
+            time.sleep(max(0.0, ahead))
+        offered = sent / (time.monotonic() - begun)
+        behind = sent - site.get("/api/status")["intake"]["readings"]["accepted"]
+        half = len(pending) // 2
+        say(f"{analyzers} analyzers, {offered:,.0f} readings/s for {seconds} s in files of {rows} rows: waiting files, first half "
+            f"at most {max(pending[:half])}, second half at most {max(pending[half:])}; behind at the end {behind:,} rows; "
+            f"the writer was late by at most {late:.2f} s; resident {resident_mb(site):.1f} MB")
+    finally:
+        site.close()
+
+
 if __name__ == "__main__":
-    parts = sys.argv[1:] or ["pairs", "intake", "start", "webhook", "status", "idle"]
+    parts = sys.argv[1:] or ["pairs", "intake", "start", "webhook", "status", "idle", "backlog", "large", "many"]
     say(f"{time.strftime('%Y-%m-%d')}, {os.cpu_count()} cores, "
         + next(l.split(":")[1].strip() for l in open("/proc/cpuinfo") if l.startswith("model name")))
     for part in parts:

@@ -84,6 +84,10 @@ std::vector<Fault> structural_faults() {
       {"no site", with("site: Harrow Mill\n", ""), 1, 1, "site", "missing"},
       {"no value", with("every: 8h", "every:"), 14, 5, "check_standards.wheat-low.every",
        "found no value, expected a duration"},
+      {"a whole file expected of one that grows",
+       with("line1: {inbox: drop/line1}",
+            "line1: {inbox: drop/line1, mode: growing, on_bad_row: reject_file}"),
+       4, 57, "analyzers.line1.on_bad_row", "a file that grows is never there as a whole"},
       {"a list for a section", with("{baseline: 30}", "[baseline]"), 17, 9, "charts",
        "found a list, expected a section"},
       {"a text for a list", with("[line1, line2]", "line1"), 15, 16, "check_standards.wheat-low.analyzers",
@@ -231,10 +235,6 @@ std::vector<Fault> faults_between_keys() {
 
 std::vector<Fault> faults_of_what_comes_later() {
   return {
-      {"a mapped format",
-       with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: mill_export}") +
-           "formats: {mill_export: {type: csv, values: {protein: Prot}}}\n",
-       4, 38, "analyzers.line1.format", "mapped formats are not read by this version"},
       {"a format nobody knows",
        with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: plian}"), 4, 38,
        "analyzers.line1.format", "found 'plian', expected one of plain; did you mean plain?"},

@@ -103,6 +103,21 @@ TEST_CASE("lots follow each other, each with its own reference value or the stan
   CHECK(settings.charts[1].lots[0].reference->expanded_uncertainty.value() == Approx(0.08));
 }
 
+TEST_CASE("files are written once unless the analyzer or its format says that they grow") {
+  const auto modes = [](const std::string& first, const std::string& second) {
+    std::string text = kMill;
+    text.replace(text.find("title: Second"), 13, second);
+    text.replace(text.find("/srv/drop/line1"), 15, "/srv/drop/line1" + first);
+    text += "formats:\n  mill: {mode: growing, time: {column: t}, item: {column: i}, values: {protein: p}}\n";
+    const Config config = parsed(text);
+    return std::pair(config.intake[0].mode, config.intake[1].mode);
+  };
+  using enum FileMode;
+  CHECK(modes("", "title: Second") == std::pair(whole, whole));
+  CHECK(modes(", mode: growing", "format: mill") == std::pair(growing, growing));
+  CHECK(modes(", format: mill, mode: whole", "mode: whole") == std::pair(whole, whole));
+}
+
 TEST_CASE("a cadence that is not given serves the budget and calls nothing overdue") {
   const Settings settings = *parsed(kMill).settings;
   CHECK(settings.charts[0].overdue);

@@ -135,9 +135,9 @@ class Site:
         self.process = None
         self.base = None
 
-    def start(self, wait_ready=True):
+    def start(self, wait_ready=True, user=None):
         self.log = open(self.folder / "log", "ab")
-        self.process = subprocess.Popen([AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log)
+        self.process = subprocess.Popen([AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log, user=user)
         line = self.process.stdout.readline().decode()
         if "http://" not in line:
             self.process.wait(10)
@@ -200,6 +200,13 @@ class Site:
         temporary = self.folder / f".{analyzer}-{name}"
         temporary.write_bytes(text if isinstance(text, bytes) else text.encode())
         os.rename(temporary, inbox / name)
+
+    @staticmethod
+    def drop_into(folder, name, text):
+        """The same for any folder."""
+        temporary = folder / f".{name}"
+        temporary.write_text(text)
+        os.rename(temporary, folder / name)
 
     def inbox(self, analyzer):
         return self.folder / "drop" / analyzer

@@ -94,6 +94,23 @@ class Faults(SiteTest):
         state = self.mount_state(site, "size=1m,ro")
         self.assertIn(str(state), self.refusal(site))
 
+    def test_a_damaged_journal_is_refused_with_the_way_to_restore(self):
+        site = self.make_site().start()
+        site.drop("line1", "a.csv", csv([check(i) for i in range(2000)]))
+        site.wait_taken()
+        site.stop()
+        journal = site.folder / "state" / "journal.sqlite"
+        sound = journal.read_bytes()
+        for damaged in (sound[: len(sound) // 2], b"\0" * 4096 + sound[4096:], b""):
+            journal.write_bytes(damaged)
+            words = self.refusal(site)
+            self.assertIn(str(journal), words)
+            self.assertIn("backup", words)
+            self.assertEqual(journal.read_bytes(), damaged, "what is damaged is left as it is")
+        journal.write_bytes(sound)
+        site.start()
+        self.assertEqual(self.readings(site)["accepted"], 2000)
+
     def test_a_crash_within_a_large_file_and_the_file_once_more(self):
         site = self.make_site().start()
         rows = [check(i, 10.6 if i % 7000 else 9.9) for i in range(ROWS)]

@@ -12,21 +12,29 @@ namespace {
 constexpr Instant kNow{std::chrono::seconds(1770271200)};
 }
 
-TEST_CASE("an inbox that cannot be reached is told, one that was not looked at is not") {
+TEST_CASE("an inbox that stays out of reach is told; one that only missed a look, or had none yet, is not") {
   Settings settings;
-  settings.analyzers = {{"line1", ""}, {"line2", ""}, {"line3", ""}};
-  const std::vector<std::filesystem::path> inboxes = {"/a", "/b", "/c"};
-  const std::vector<InboxState> states = {
-      {.reachable = true, .reason = "", .pending = 0, .scanned_once = true},
-      {.reachable = false, .reason = "No such file or directory", .pending = 0, .scanned_once = true},
-      {}};
+  std::vector<InboxState> states(5);
+  std::vector<std::filesystem::path> inboxes;
+  for (std::size_t i = 0; i < states.size(); ++i) {
+    settings.analyzers.push_back({"line" + std::to_string(i), ""});
+    inboxes.push_back("/drop/line" + std::to_string(i));
+  }
+  states[0].reachable = true;
+  states[1].failed_looks = 1;
+  states[2].failed_looks = 2;
+  states[2].reason = "No such file or directory";
+  states[2].unreachable_since = kNow - 30s;
+  states[3].hangs = true;
   const auto findings = inbox_findings(settings, inboxes, states, kNow);
-  REQUIRE(findings.size() == 2);
+  REQUIRE(findings.size() == 3);
   CHECK_FALSE(findings[0].holds);
-  CHECK(findings[0].subject.analyzer == "line1");
+  CHECK(findings[0].subject.analyzer == "line0");
   CHECK(findings[1].holds);
   CHECK(findings[1].subject.analyzer == "line2");
   CHECK(findings[1].severity == Severity::warning);
+  CHECK(findings[1].started_at == kNow - 30s);
+  CHECK(findings[2].subject.analyzer == "line3");
 }
 
 TEST_CASE("little room is critical, and it is over only with some to spare") {

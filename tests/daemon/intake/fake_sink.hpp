@@ -29,6 +29,11 @@ class FakeSink final : public IntakeSink {
     if (!withhold_) answer_all();
     return future;
   }
+  void each_portion(AnalyzerIndex, const std::function<void(TakenPortion&&)>& take) override {
+    for (const FilePiece& piece : pieces())
+      if (piece.growing && piece.unusable.empty())
+        take({piece.file.name, piece.file.size, piece.file.mtime_ns, piece.file.sha256});
+  }
   void report(AnalyzerIndex, const InboxState& state) override {
     const std::lock_guard lock(mutex_);
     state_ = state;
