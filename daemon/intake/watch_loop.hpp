@@ -39,6 +39,7 @@ class WatchLoop {
   void list(Tick now);
   void note(const InboxEvents& events, Tick now);
   void notice(const std::string& name, Notice notice, Tick now);
+  void leave(const std::string& name);
 
   void take_due(const std::stop_token& stop);
   void take(const std::string& name, const WaitingFile& waiting, const std::stop_token& stop);
