@@ -81,15 +81,11 @@ class Cursor {
     return count == 0 ? std::nullopt : std::optional(value);
   }
 
-  /// The position of the name, whole or its first three letters (with a point after them or not).
+  /// The position of the name, whole or its first three letters.
   template <std::size_t N>
   std::optional<int> name(const std::array<std::string_view, N>& names) {
-    for (std::size_t i = 0; i < N; ++i) {
-      if (word(names[i])) return static_cast<int>(i);
-      if (!word(names[i].substr(0, kShortName))) continue;
-      (void)take('.');
-      return static_cast<int>(i);
-    }
+    for (std::size_t i = 0; i < N; ++i)
+      if (word(names[i]) || word(names[i].substr(0, kShortName))) return static_cast<int>(i);
     return std::nullopt;
   }
 

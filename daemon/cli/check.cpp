@@ -5,6 +5,7 @@
 
 #include "config/config.hpp"
 #include "config/describe.hpp"
+#include "daemon/cli/check_sample.hpp"
 #include "daemon/exit_codes.hpp"
 
 namespace agreed {
@@ -24,8 +25,12 @@ void print_json(const ConfigResult& result) {
 
 }  // namespace
 
-int check_configuration(const std::filesystem::path& file, bool json) {
+int check_configuration(const CheckCommand& command) {
+  const std::filesystem::path& file = command.config;
+  const bool json = command.json;
   const ConfigResult result = read_config(file);
+  const bool sample_wanted = !command.sample.empty() && result.config;
+  if (sample_wanted) return check_sample(*result.config, command.sample, command.analyzer, json);
   if (json) {
     print_json(result);
   } else {

@@ -45,11 +45,21 @@ Command parse_command_line(std::span<const std::string> arguments) {
   run_app->footer("Example:\n  agreed run /etc/agreed/agreed.yaml");
 
   CheckCommand check;
-  CLI::App* check_app =
-      app.add_subcommand("check", "validates a configuration and shows the values in effect");
+  CLI::App* check_app = app.add_subcommand(
+      "check",
+      "validates a configuration and shows the values in effect, or how a sample file would be read");
   check_app->add_option("CONFIG", check.config, "the configuration file")->required();
   check_app->add_flag("--json", check.json, "print for programs");
-  check_app->footer("Example:\n  agreed check /etc/agreed/agreed.yaml");
+  CLI::Option* sample =
+      check_app->add_option("--sample", check.sample, "show how this file would be read, row by row");
+  CLI::Option* analyzer =
+      check_app->add_option("--analyzer", check.analyzer, "whose file the sample is: an id of analyzers");
+  sample->needs(analyzer);
+  analyzer->needs(sample);
+  check_app->footer(
+      "Example:\n  agreed check /etc/agreed/agreed.yaml\n"
+      "  agreed check /etc/agreed/agreed.yaml --sample export.csv --analyzer line2\n\n"
+      "With --sample nothing is taken in; exit status 1 if a row could not be used.");
 
   ExampleCommand example;
   CLI::App* example_app = app.add_subcommand(

@@ -12,6 +12,8 @@ struct RunCommand {
 };
 struct CheckCommand {
   std::filesystem::path config;
+  std::filesystem::path sample;  ///< empty: none
+  std::string analyzer;          ///< whose file the sample is
   bool json = false;
 };
 struct ExampleCommand {

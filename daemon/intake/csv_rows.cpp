@@ -1,254 +1,91 @@
 #include "daemon/intake/csv_rows.hpp"
 
-#include <new>
+#include <algorithm>
 #include <optional>
-#include <utility>
+#include <vector>
 
-#include <csv.h>
-
-#include "daemon/intake/line_splitter.hpp"
-#include "daemon/intake/text.hpp"
+#include "daemon/intake/csv_records.hpp"
 
 namespace agreed {
 namespace {
 
-/// libcsv, fed line by line so that each record's line and text are known.
-class CsvParser {
+/// Records to rows of the plain format.
+class PlainRecords final : public RecordTaker {
  public:
-  enum class Step { record, blank, open, broken };  ///< open: within quotes at the end of the line
+  PlainRecords(const RowMaker& maker, RowTaker& taker) : maker_(maker), taker_(taker) {}
 
-  CsvParser() { reset(); }
-  ~CsvParser() { csv_free(&parser_); }
-  CsvParser(const CsvParser&) = delete;
-  CsvParser& operator=(const CsvParser&) = delete;
-
-  Step parse(std::string_view line) {
-    if (done_) clear();
-    if (csv_parse(&parser_, line.data(), line.size(), on_field, on_record, this) != line.size() ||
-        csv_parse(&parser_, "\n", 1, on_field, on_record, this) != 1) {
-      reset();
-      return Step::broken;
-    }
-    if (done_) return Step::record;
-    return parser_.pstate == 0 ? Step::blank : Step::open;  // 0: no row begun
+  std::string header(std::span<const std::string_view> names) override {
+    names_.assign(names.begin(), names.end());
+    columns_.clear();
+    raw_ = {};
+    std::string fault = header_fault(names_);
+    for (const std::string& name : names_) columns_.push_back(plain_column(name));
+    return fault;
   }
 
-  void reset() {
-    csv_free(&parser_);
-    parser_ = {};
-    if (csv_init(&parser_, CSV_STRICT) != 0) throw std::bad_alloc();
-    csv_set_term_func(&parser_, [](unsigned char c) { return c == CSV_LF ? 1 : 0; });
-    clear();
-  }
-
-  [[nodiscard]] std::size_t size() const { return ends_.size(); }
-  [[nodiscard]] std::string_view operator[](std::size_t i) const {
-    const std::size_t begin = i == 0 ? 0 : ends_[i - 1];
-    return std::string_view(text_).substr(begin, ends_[i] - begin);
-  }
-
- private:
-  static void on_field(void* text, std::size_t size, void* self) {
-    auto& parser = *static_cast<CsvParser*>(self);
-    parser.text_.append(static_cast<const char*>(text), size);
-    parser.ends_.push_back(parser.text_.size());
-  }
-  static void on_record(int, void* self) { static_cast<CsvParser*>(self)->done_ = true; }
-
-  void clear() {
-    text_.clear();
-    ends_.clear();
-    done_ = false;
-  }
-
-  csv_parser parser_{};
-  std::string text_;               ///< the fields of a record, one after the other
-  std::vector<std::size_t> ends_;  ///< where each ends
-  bool done_ = false;
-};
-
-class CsvRows final : public RowFormat {
- public:
-  CsvRows(const RowMaker& maker, RowTaker& taker) : maker_(maker), taker_(taker) {}
-
-  void feed(std::string_view block) override {
-    if (!unusable_.empty()) return;
-    lines_.feed(block, [this](std::string_view line, std::uint32_t number, bool too_long) {
-      return take(line, number, too_long);
-    });
-  }
-
-  void pause() override {
-    if (unusable_.empty()) give_up_open();
-  }
-
-  void finish(bool closed) override {
-    if (!unusable_.empty()) return;
-    if (lines_.has_rest() && !closed && have_header_) {
-      give_up_open();
-      refuse(lines_.next_line(), lines_.rest(), "the last line has no line end, so it may be incomplete");
-    } else {
-      lines_.finish([this](std::string_view line, std::uint32_t number, bool too_long) {
-        return take(line, number, too_long);
-      });
-      give_up_open();
-    }
-    if (!have_header_ && unusable_.empty()) unusable_ = "the file is empty; a header row was expected";
-  }
-
- private:
-  using Step = CsvParser::Step;
-
-  bool take(std::string_view line, std::uint32_t number, bool too_long) {
-    if (number == 1 && line.starts_with("\xEF\xBB\xBF")) line.remove_prefix(3);
-    if (line.ends_with('\r')) line.remove_suffix(1);
-    if (!have_header_ && !may_be_header(line)) return false;
-    if (too_long) {
-      give_up_open();
-      refuse(number, line, "the line is longer than 1 MiB");
-    } else {
-      step(line, number);
-      read_again();
-    }
-    return unusable_.empty();
-  }
-
-  bool may_be_header(std::string_view line) {
-    if (line.starts_with("\xFF\xFE") || line.starts_with("\xFE\xFF"))
-      unusable_ = "the file is in UTF-16; UTF-8 was expected";
-    else if (line.find('\0') != std::string_view::npos || line.size() >= kMostLineBytes)
-      unusable_ =
-          "the file is not text: its first line is " + in_quotes(line) + "; a header row was expected";
-    return unusable_.empty();
-  }
-
-  void step(std::string_view line, std::uint32_t number) {
-    const Step step = parser_.parse(line);
-    if (open_.empty() && step != Step::open) {
-      if (step == Step::record) record(number, line);
-      if (step == Step::broken) refuse_quotes(number, line);
+  void record(std::uint32_t line, std::string_view whole, std::span<const std::string_view> fields) override {
+    if (is_header_again(fields)) {
+      header(fields);
       return;
     }
-    if (open_.empty()) open_line_ = number;
-    open_.append(line).push_back('\n');
-    if (step == Step::record) {
-      record(open_line_, open_);
-      open_.clear();
-    } else if (step == Step::broken || open_.size() > kMostLineBytes) {
-      break_open();
-    }
-  }
-
-  /// Gives up the open record: its first line is bad, the others are to be read again on their own.
-  void break_open() {
-    parser_.reset();
-    const std::size_t rest = open_.find('\n') + 1;
-    refuse_quotes(open_line_, std::string_view(open_).substr(0, rest - 1));
-    if (reading_again_) {
-      again_at_ -= open_.size() - rest;  // a record opened meanwhile consists of the lines read last
-    } else {
-      again_ = open_.substr(rest);
-      again_at_ = 0;
-    }
-    again_line_ = open_line_ + 1;
-    open_.clear();
-  }
-
-  void read_again() {
-    reading_again_ = true;
-    while (again_at_ < again_.size() && unusable_.empty()) {
-      const std::size_t end = again_.find('\n', again_at_);
-      const std::string_view line = std::string_view(again_).substr(again_at_, end - again_at_);
-      again_at_ = end + 1;
-      step(line, again_line_++);
-    }
-    reading_again_ = false;
-    again_.clear();
-    again_at_ = 0;
-  }
-
-  void give_up_open() {
-    while (!open_.empty() && unusable_.empty()) {
-      break_open();
-      read_again();
-    }
-  }
-
-  void record(std::uint32_t line, std::string_view whole) {
-    if (!have_header_ || is_header_again()) return header();
-    if (parser_.size() != columns_.size()) {
-      refuse(line, whole,
-             "the row has " + std::to_string(parser_.size()) + " fields; the header has " +
-                 std::to_string(columns_.size()));
-      return;
-    }
+    if (fields.size() != columns_.size())
+      return taker_.bad(bad_row(line, 0, whole,
+                                "the row has " + std::to_string(fields.size()) + " fields; the header has " +
+                                    std::to_string(columns_.size())));
     raw_.line = line;
     raw_.whole = whole;
     raw_.others.clear();
     for (std::size_t i = 0; i < columns_.size(); ++i) {
       const auto column = static_cast<std::uint32_t>(i + 1);
       if (columns_[i])
-        raw_.fields[static_cast<std::size_t>(*columns_[i])] = {parser_[i], column};
+        raw_.fields[static_cast<std::size_t>(*columns_[i])] = {fields[i], column};
       else
-        raw_.others.push_back({names_[i], parser_[i], column});
+        raw_.others.push_back({names_[i], fields[i], column});
     }
     maker_.make(raw_, taker_);
   }
 
+  void bad(BadRow&& row) override { taker_.bad(std::move(row)); }
+
+ private:
   /// Exports that are joined, or that go on after a restart of their program, have further header rows,
   /// perhaps with other columns. A row that names all the needed columns is no result.
-  [[nodiscard]] bool is_header_again() const {
-    bool names_kind = false;
-    for (std::size_t i = 0; i < parser_.size(); ++i)
-      names_kind = names_kind || parser_[i] == name_of(PlainColumn::kind);
-    if (!names_kind) return false;
-    std::vector<std::string> names;
-    for (std::size_t i = 0; i < parser_.size(); ++i) names.emplace_back(parser_[i]);
-    return header_fault(names).empty();
-  }
-
-  void header() {
-    names_.clear();
-    columns_.clear();
-    raw_ = {};
-    for (std::size_t i = 0; i < parser_.size(); ++i) names_.emplace_back(parser_[i]);
-    unusable_ = header_fault(names_);
-    if (!unusable_.empty()) return;
-    for (const std::string& name : names_) columns_.push_back(plain_column(name));
-    have_header_ = true;
-  }
-
-  void refuse_quotes(std::uint32_t line, std::string_view whole) {
-    refuse(line, whole, "a quote is misplaced or not closed");
-  }
-
-  void refuse(std::uint32_t line, std::string_view whole, std::string reason) {
-    if (have_header_)
-      taker_.bad(bad_row(line, 0, whole, std::move(reason)));
-    else
-      unusable_ = "no header row: in line " + std::to_string(line) + " " + reason;
+  [[nodiscard]] static bool is_header_again(std::span<const std::string_view> fields) {
+    return std::find(fields.begin(), fields.end(), name_of(PlainColumn::kind)) != fields.end() &&
+           header_fault({fields.begin(), fields.end()}).empty();
   }
 
   const RowMaker& maker_;
   RowTaker& taker_;
-  LineSplitter lines_;
-  CsvParser parser_;
-  bool have_header_ = false;
   std::vector<std::optional<PlainColumn>> columns_;
   std::vector<std::string> names_;
   RawRow raw_;
-  std::string open_;  ///< lines of a record within quotes
-  std::uint32_t open_line_ = 0;
-  std::string again_;  ///< lines to be read again
-  bool reading_again_ = false;
-  std::size_t again_at_ = 0;
-  std::uint32_t again_line_ = 0;
+};
+
+class PlainCsvRows final : public RowFormat {
+ public:
+  PlainCsvRows(const RowMaker& maker, RowTaker& taker)
+      : rows_(maker, taker), records_(make_csv_records({}, rows_)) {}
+
+  void feed(std::string_view block) override {
+    records_->feed(block);
+    unusable_ = records_->unusable();
+  }
+  void pause() override { records_->pause(); }
+  void finish(bool closed) override {
+    records_->finish(closed);
+    unusable_ = records_->unusable();
+  }
+
+ private:
+  PlainRecords rows_;
+  std::unique_ptr<RowFormat> records_;
 };
 
 }  // namespace
 
 std::unique_ptr<RowFormat> make_csv_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<CsvRows>(maker, taker);
+  return std::make_unique<PlainCsvRows>(maker, taker);
 }
 
 }  // namespace agreed

@@ -79,8 +79,11 @@ char FileContent::last_mark() const {
 
 bool FileContent::ends_with_line_end() const {
   const std::uint64_t size = stamp().size;
-  char last = 0;
-  return size > 0 && read(size - 1, {&last, 1}) == 1 && last == '\n';
+  if (size == 0) return false;
+  std::array<char, 2> end{};
+  const std::uint64_t from = size < end.size() ? 0 : size - end.size();
+  const std::string_view text(end.data(), read(from, end));
+  return text.ends_with('\n') || text == std::string_view("\n\0", 2);
 }
 
 }  // namespace agreed

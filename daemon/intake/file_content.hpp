@@ -43,6 +43,7 @@ class FileContent {
   bool each_block(const std::function<bool(std::string_view)>& take) const;
   /// The last byte that is no white space, of the last KiB; 0 if there is none.
   [[nodiscard]] char last_mark() const;
+  /// Also that of UTF-16, either way round.
   [[nodiscard]] bool ends_with_line_end() const;
 
  private:

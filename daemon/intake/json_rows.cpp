@@ -1,6 +1,5 @@
 #include "daemon/intake/json_rows.hpp"
 
-#include "daemon/intake/json_object.hpp"
 #include "daemon/intake/line_splitter.hpp"
 #include "daemon/intake/text.hpp"
 
@@ -10,9 +9,9 @@ namespace {
 constexpr std::string_view kByteOrderMark = "\xEF\xBB\xBF";
 constexpr std::string_view kJsonSpace = " \t\r\n";
 
-class JsonLineRows final : public RowFormat {
+class JsonLines final : public RowFormat {
  public:
-  JsonLineRows(const RowMaker& maker, RowTaker& taker) : objects_(maker, taker), taker_(taker) {}
+  JsonLines(JsonShape shape, ObjectTaker& taker) : objects_(shape, taker), taker_(taker) {}
 
   void feed(std::string_view block) override {
     lines_.feed(block, [this](std::string_view line, std::uint32_t number, bool too_long) {
@@ -47,15 +46,15 @@ class JsonLineRows final : public RowFormat {
 
   LineSplitter lines_;
   JsonObjectReader objects_;
-  RowTaker& taker_;
+  ObjectTaker& taker_;
   bool any_ = false;
 };
 
 /// Cuts the array into its elements by brackets and quotes alone; what an element holds is not looked at
 /// here, so a wrong element costs no other as long as its brackets and quotes are balanced.
-class JsonArrayRows final : public RowFormat {
+class JsonArray final : public RowFormat {
  public:
-  JsonArrayRows(const RowMaker& maker, RowTaker& taker) : objects_(maker, taker), taker_(taker) {}
+  JsonArray(JsonShape shape, ObjectTaker& taker) : objects_(shape, taker), taker_(taker) {}
 
   void feed(std::string_view block) override {
     while (!block.empty() && unusable_.empty()) {
@@ -152,7 +151,7 @@ class JsonArrayRows final : public RowFormat {
   }
 
   JsonObjectReader objects_;
-  RowTaker& taker_;
+  ObjectTaker& taker_;
   State state_ = State::before;
   std::size_t mark_ = 0;  ///< bytes of the byte order mark seen
   std::string element_;
@@ -161,14 +160,70 @@ class JsonArrayRows final : public RowFormat {
   std::size_t depth_ = 0;
 };
 
+/// Objects to rows of the plain format.
+class PlainObjects final : public ObjectTaker {
+ public:
+  PlainObjects(const RowMaker& maker, RowTaker& taker) : maker_(maker), taker_(taker) {}
+
+  void object(std::uint32_t line, std::string_view whole, std::span<const JsonMember> members) override {
+    raw_.line = line;
+    raw_.whole = whole;
+    raw_.fields.fill({});
+    raw_.others.clear();
+    for (std::size_t i = 0; i < members.size(); ++i) {
+      const auto column = static_cast<std::uint32_t>(i + 1);
+      if (const auto known = plain_column(members[i].name))
+        raw_.fields[static_cast<std::size_t>(*known)] = {members[i].text, column};
+      else
+        raw_.others.push_back({members[i].name, members[i].text, column});
+    }
+    maker_.make(raw_, taker_);
+  }
+  void bad(BadRow&& row) override { taker_.bad(std::move(row)); }
+
+ private:
+  const RowMaker& maker_;
+  RowTaker& taker_;
+  RawRow raw_;
+};
+
+class PlainJsonRows final : public RowFormat {
+ public:
+  PlainJsonRows(bool array, const RowMaker& maker, RowTaker& taker)
+      : rows_(maker, taker),
+        objects_(array ? make_json_array_objects(JsonShape::flat, rows_)
+                       : make_json_line_objects(JsonShape::flat, rows_)) {}
+
+  void feed(std::string_view block) override {
+    objects_->feed(block);
+    unusable_ = objects_->unusable();
+  }
+  void finish(bool closed) override {
+    objects_->finish(closed);
+    unusable_ = objects_->unusable();
+  }
+
+ private:
+  PlainObjects rows_;
+  std::unique_ptr<RowFormat> objects_;
+};
+
 }  // namespace
 
+std::unique_ptr<RowFormat> make_json_line_objects(JsonShape shape, ObjectTaker& taker) {
+  return std::make_unique<JsonLines>(shape, taker);
+}
+
+std::unique_ptr<RowFormat> make_json_array_objects(JsonShape shape, ObjectTaker& taker) {
+  return std::make_unique<JsonArray>(shape, taker);
+}
+
 std::unique_ptr<RowFormat> make_json_line_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<JsonLineRows>(maker, taker);
+  return std::make_unique<PlainJsonRows>(false, maker, taker);
 }
 
 std::unique_ptr<RowFormat> make_json_array_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<JsonArrayRows>(maker, taker);
+  return std::make_unique<PlainJsonRows>(true, maker, taker);
 }
 
 }  // namespace agreed

@@ -58,6 +58,16 @@ std::optional<PlainColumn> plain_column(std::string_view name) {
   return static_cast<PlainColumn>(found - kNames.begin());
 }
 
+std::string_view RawRow::name(PlainColumn column) const {
+  const auto at = static_cast<std::size_t>(column);
+  return own != nullptr && !own->names[at].empty() ? own->names[at] : name_of(column);
+}
+
+std::string_view RawRow::written(PlainColumn column) const {
+  const auto at = static_cast<std::size_t>(column);
+  return own != nullptr && !own->names[at].empty() ? own->written[at] : fields[at].text;
+}
+
 BadRow bad_row(std::uint32_t line, std::uint32_t column, std::string_view whole, std::string reason) {
   return {line, column, std::string(whole.substr(0, kMostQuotedBytes)), std::move(reason)};
 }

@@ -7,6 +7,7 @@
 #include <string_view>
 #include <vector>
 
+#include "core/base/rfc3339.hpp"
 #include "daemon/intake/row.hpp"
 
 namespace agreed {
@@ -45,15 +46,29 @@ struct OtherField {
   std::uint32_t column = 0;
 };
 
+/// How the file itself names and writes the fields of a row that was mapped, for messages; and what the
+/// mapping has read already.
+struct OwnWords {
+  std::array<std::string_view, kPlainColumns> names, written;
+  std::string_view result_example;  ///< "12,34, <0,05 or >20"
+  ParsedTime time;                  ///< of measured_at
+};
+
 struct RawRow {
   std::uint32_t line = 0;
   std::string_view whole;  ///< as read
   std::array<RawField, kPlainColumns> fields;
   std::vector<OtherField> others;  ///< columns the plain format does not know
 
+  const OwnWords* own = nullptr;  ///< of a mapped row
+
   [[nodiscard]] const RawField& operator[](PlainColumn column) const {
     return fields[static_cast<std::size_t>(column)];
   }
+  /// The column as the file names it.
+  [[nodiscard]] std::string_view name(PlainColumn column) const;
+  /// The field as the file has it.
+  [[nodiscard]] std::string_view written(PlainColumn column) const;
 };
 
 /// Where parsed rows go, in the order of the file.

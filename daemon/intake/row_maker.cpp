@@ -70,15 +70,17 @@ class Work {
 
  private:
   [[nodiscard]] std::string_view text(Column column) const { return raw_[column].text; }
+  /// The field as the file has it, for messages.
+  [[nodiscard]] std::string quoted(Column column) const { return in_quotes(raw_.written(column)); }
 
   bool refuse(Column column, std::string reason) {
     problem_column_ = raw_[column].column;
-    problem_ = std::string(name_of(column)) + ": " + std::move(reason);
+    problem_ = printable(raw_.name(column)) + ": " + std::move(reason);
     return false;
   }
 
   bool refuse_name(Column column, const std::vector<std::string_view>& known) {
-    return refuse(column, (text(column).empty() ? "empty; " : in_quotes(text(column)) + " is not known; ") +
+    return refuse(column, (text(column).empty() ? "empty; " : quoted(column) + " is not known; ") +
                               known_hint(text(column), known));
   }
 
@@ -98,8 +100,8 @@ class Work {
   }
 
   bool time() {
-    const std::string_view written = text(Column::measured_at);
-    const auto parsed = parse_rfc3339(written);
+    const std::string_view written = raw_.written(Column::measured_at);
+    const auto parsed = raw_.own != nullptr ? std::optional(raw_.own->time) : parse_rfc3339(written);
     if (!parsed)
       return refuse(Column::measured_at,
                     in_quotes(written) + " is no time; one like 2026-01-05T06:00:00Z was expected");
@@ -192,7 +194,7 @@ class Work {
     if (row_.kind != RowKind::split && has_sides()) {
       for (const Column side : {Column::x, Column::y, Column::comparison})
         if (!text(side).empty())
-          return refuse(side, in_quotes(text(side)) + " given; only a split row has both sides");
+          return refuse(side, quoted(side) + " given; only a split row has both sides");
     }
     switch (row_.kind) {
       case RowKind::check:
@@ -222,7 +224,7 @@ class Work {
     std::vector<std::string_view> known;
     for (const StandardIndex standard : context_.standards)
       known.emplace_back(context_.settings.of(standard).id);
-    return refuse(column, in_quotes(text(column)) + " is no check standard of \"" +
+    return refuse(column, quoted(column) + " is no check standard of \"" +
                               context_.settings.of(context_.analyzer).id + "\"; " +
                               known_hint(text(column), known));
   }
@@ -232,7 +234,7 @@ class Work {
     if (!found) return refuse_name(Column::item, {kInterventions.begin(), kInterventions.end()});
     row_.intervention = static_cast<InterventionKind>(*found);
     if (!text(Column::value).empty())
-      return refuse(Column::value, in_quotes(text(Column::value)) + " given; an intervention has no value");
+      return refuse(Column::value, quoted(Column::value) + " given; an intervention has no value");
     if (text(Column::standard).empty()) return true;
     row_.standard = standard_named(text(Column::standard));
     return row_.standard.has_value() || refuse_standard(Column::standard);
@@ -250,9 +252,9 @@ class Work {
     if (!found) return refuse_name(Column::comparison, ids_of(context_.settings.comparisons));
     const ComparisonSettings& comparison = context_.settings.comparisons[*found];
     if (row_.measurand && *row_.measurand != comparison.measurand)
-      return refuse(Column::measurand, in_quotes(text(Column::measurand)) + " given; comparison \"" +
-                                           comparison.id + "\" is about \"" +
-                                           context_.settings.of(comparison.measurand).id + "\"");
+      return refuse(Column::measurand, quoted(Column::measurand) + " given; comparison \"" + comparison.id +
+                                           "\" is about \"" + context_.settings.of(comparison.measurand).id +
+                                           "\"");
     row_.measurand = comparison.measurand;
     comparison_ = &comparison;
     return result(Column::x, x_) && result(Column::y, y_);
@@ -272,11 +274,11 @@ class Work {
       into = *read;
       return true;
     }
-    if (written.empty()) return refuse(column, "empty; a result like 12.34, <0.05 or >20 was expected");
-    const bool comma = written.find(',') != std::string_view::npos;
-    return refuse(column, in_quotes(written) +
-                              " is no result; a decimal number like 12.34, <0.05 or >20 was expected" +
-                              (comma ? " (the decimal sign is \".\")" : ""));
+    const std::string example(raw_.own != nullptr ? raw_.own->result_example : "12.34, <0.05 or >20");
+    if (written.empty()) return refuse(column, "empty; a result like " + example + " was expected");
+    const bool comma = raw_.own == nullptr && written.find(',') != std::string_view::npos;
+    return refuse(column, quoted(column) + " is no result; a decimal number like " + example +
+                              " was expected" + (comma ? " (the decimal sign is \".\")" : ""));
   }
 
   static void set(Row& row, const ResultText& result) {

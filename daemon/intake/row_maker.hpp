@@ -4,6 +4,7 @@
 #include <string>
 #include <vector>
 
+#include "config/mapped_format.hpp"
 #include "core/base/settings.hpp"
 #include "daemon/intake/local_zone.hpp"
 #include "daemon/intake/plain_columns.hpp"
@@ -18,6 +19,8 @@ struct PlainContext {
   std::shared_ptr<const LocalZone> zone;  ///< of times without an offset; never null
   Instant not_before{};                   ///< rows measured before are refused
   Instant now{};                          ///< rows measured more than 5 min after it are refused
+  std::shared_ptr<const MappedFormat> mapped =
+      nullptr;  ///< how its files are written; null: the plain format
 };
 
 /// The check standards that have a chart on `analyzer`, ascending.

@@ -28,8 +28,8 @@ bool same_growth(const InboxState& a, const InboxState& b) {
 }
 
 /// Whether the file ends as a complete one of its syntax does.
-bool ends_complete(const FileContent& content, const std::string& name) {
-  if (plain_syntax_of(name) == PlainSyntax::json_array) return content.last_mark() == ']';
+bool ends_complete(const FileContent& content, const PlainContext& context, const std::string& name) {
+  if (is_json_array(context, name)) return content.last_mark() == ']';
   return content.ends_with_line_end();
 }
 
@@ -126,6 +126,7 @@ void WatchLoop::notice(const std::string& name, Notice notice, Tick now) {
   pulse_->step();
   if (growing_) return notice_growing(name, notice, now);
   if (is_ignored_name(name) || unmoved_.contains(name)) return;
+  if (intake_.mapped && !is_wanted_name(intake_.mapped->files, name)) return leave(name);
   if (const auto stamp = stamp_of(inbox_.folder(), name))
     waiting_.see(name, *stamp, notice, now);
   else
@@ -135,7 +136,7 @@ void WatchLoop::notice(const std::string& name, Notice notice, Tick now) {
 void WatchLoop::notice_growing(const std::string& name, Notice notice, Tick now) {
   const auto stamp = stamp_of(inbox_.folder(), name);
   if (!stamp) return;
-  if (is_ignored_name(name))
+  if (is_ignored_name(name) || (intake_.mapped && !is_wanted_name(intake_.mapped->files, name)))
     growing_->see_other(name, *stamp, now);
   else
     growing_->see(name, *stamp, notice, now);
@@ -143,6 +144,13 @@ void WatchLoop::notice_growing(const std::string& name, Notice notice, Tick now)
 
 std::optional<Tick> WatchLoop::next_due() const {
   return growing_ ? growing_->next_due() : waiting_.next_due();
+}
+
+void WatchLoop::leave(const std::string& name) {
+  const auto stamp = stamp_of(inbox_.folder(), name);
+  if (!stamp || stamp->directory) return;
+  tell_once("left " + name, in_quotes(name) + " is left where it is: format " + intake_.mapped->id +
+                                " does not take files of that name (files, ignore)");
 }
 
 void WatchLoop::note(const InboxEvents& events, Tick now) {
@@ -192,7 +200,8 @@ void WatchLoop::take(const std::string& name, const WaitingFile& waiting, const 
   const FileStamp stamp = content.stamp();
   const Tick now = Clock::now();
   if (!waiting.finished() && !waiting.stamp.same_content(stamp)) return waiting_.changed(name, stamp, now);
-  const bool incomplete = stamp.size == 0 || (!waiting.finished() && !ends_complete(content, name));
+  const bool incomplete =
+      stamp.size == 0 || (!waiting.finished() && !ends_complete(content, context(), name));
   if (incomplete && waiting_.wait_unfinished(name, now)) return;
   if (stamp.size == 0)
     return refuse(name, stamp, "the file is empty; a header row or JSON was expected", stop);
@@ -227,7 +236,7 @@ void WatchLoop::look_again(Tick now, const std::stop_token& stop) {
     try {
       const FileContent content(inbox_.folder(), moved.path, pulse_.get());
       const bool stands_still = now - moved.changed >= limits_.unfinished;
-      if (!ends_complete(content, moved.name) && !stands_still) continue;
+      if (!ends_complete(content, context(), moved.name) && !stands_still) continue;
       auto file = std::make_shared<TakenFile>();
       file->name = moved.name;
       file->moved_path = moved.path;
@@ -337,7 +346,8 @@ void WatchLoop::tell_once(const std::string& what, const std::string& words) {
 }
 
 PlainContext WatchLoop::context() const {
-  return {settings_, analyzer_, standards_of(settings_, analyzer_), zone_, intake_.not_before, utc_now()};
+  return {settings_, analyzer_,     standards_of(settings_, analyzer_), zone_, intake_.not_before,
+          utc_now(), intake_.mapped};
 }
 
 }  // namespace agreed

@@ -45,6 +45,7 @@ class WatchLoop {
   void notice(const std::string& name, Notice notice, Tick now);
   void notice_growing(const std::string& name, Notice notice, Tick now);
   [[nodiscard]] std::optional<Tick> next_due() const;
+  void leave(const std::string& name);
 
   void take_due(const std::stop_token& stop);
   void take_due_growing(const std::stop_token& stop);
