@@ -15,9 +15,9 @@ class PlainRecords final : public RecordTaker {
   PlainRecords(const RowMaker& maker, RowTaker& taker) : maker_(maker), taker_(taker) {}
 
   std::string header(std::span<const std::string_view> names) override {
-    raw_ = {};
-    columns_.clear();
     names_.assign(names.begin(), names.end());
+    columns_.clear();
+    raw_ = {};
     std::string fault = header_fault(names_);
     for (const std::string& name : names_) columns_.push_back(plain_column(name));
     return fault;
@@ -51,8 +51,8 @@ class PlainRecords final : public RecordTaker {
   /// Exports that are joined, or that go on after a restart of their program, have further header rows,
   /// perhaps with other columns. A row that names all the needed columns is no result.
   [[nodiscard]] static bool is_header_again(std::span<const std::string_view> fields) {
-    if (std::find(fields.begin(), fields.end(), name_of(PlainColumn::kind)) == fields.end()) return false;
-    return header_fault({fields.begin(), fields.end()}).empty();
+    return std::find(fields.begin(), fields.end(), name_of(PlainColumn::kind)) != fields.end() &&
+           header_fault({fields.begin(), fields.end()}).empty();
   }
 
   const RowMaker& maker_;

@@ -7,9 +7,9 @@
 
 namespace agreed {
 
-/// As make_csv_records; no column may hold control characters, so a row over several lines is a bad one. A
-/// further row that names all needed columns is a header too: its columns hold from there on. References must
-/// outlive the result.
+/// As make_csv_records; a further row that names all needed columns is a header too: its columns hold from
+/// there on; no column may hold control characters, so a row over several lines is a bad one.
+/// References must outlive the result.
 [[nodiscard]] std::unique_ptr<RowFormat> make_csv_rows(const RowMaker& maker, RowTaker& taker);
 
 }  // namespace agreed

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <charconv>
 #include <optional>
+#include <tuple>
 #include <utility>
 
 #include "daemon/intake/csv_records.hpp"
@@ -40,11 +41,7 @@ class MappedRecords final : public RecordTaker {
   }
 
   void record(std::uint32_t line, std::string_view whole, std::span<const std::string_view> fields) override {
-    if (is_header_again(fields)) {
-      if (std::string fault = header(fields); !fault.empty())
-        taker_.bad(bad_row(line, 0, whole, std::move(fault)));
-      return;
-    }
+    if (is_header_again(fields)) return begin_anew(line, whole, fields);
     if (const std::string fault = size_fault(fields); !fault.empty())
       return taker_.bad(bad_row(line, 0, whole, fault));
     for (std::size_t i = 0; i < places_.size(); ++i)
@@ -76,12 +73,19 @@ class MappedRecords final : public RecordTaker {
     return fault;
   }
 
-  /// Of an export that was appended to by a program started anew, perhaps with other columns: a row that
-  /// names all columns that are needed is no result.
+  void begin_anew(std::uint32_t line, std::string_view whole, std::span<const std::string_view> names) {
+    const auto before = std::pair(header_, places_);
+    std::string fault = header(names);
+    if (fault.empty()) return;
+    std::tie(header_, places_) = before;
+    taker_.bad(bad_row(line, 0, whole, std::move(fault)));
+  }
+
+  /// Of an export that was appended to by a program started anew, perhaps with other columns.
   [[nodiscard]] bool is_header_again(std::span<const std::string_view> fields) const {
     return !header_.empty() &&
-           std::all_of(mapper_.columns().begin(), mapper_.columns().end(), [&](const auto& name) {
-             return std::find(fields.begin(), fields.end(), name) != fields.end();
+           std::all_of(mapper_.columns().begin(), mapper_.columns().end(), [&](const auto& column) {
+             return std::find(fields.begin(), fields.end(), column) != fields.end();
            });
   }
 
@@ -157,7 +161,9 @@ class MappedRows final : public RowFormat {
     unusable_ = rows_->unusable();
   }
 
-  void pause() override { rows_->pause(); }
+  void pause() override {
+    if (unusable_.empty()) rows_->pause();
+  }
 
   void finish(bool closed) override {
     if (!unusable_.empty()) return;
