@@ -49,8 +49,8 @@ PieceAnswer FileLedger::take(const FilePiece& piece, Instant now, Journal& journ
 
 FileLedger::OpenFile FileLedger::begin(const FilePiece& piece, Journal& journal) const {
   const std::string& analyzer = settings_->of(piece.file.analyzer).id;
-  const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
-                           piece.file.mtime_ns};
+  const JournalFile record{analyzer,        piece.file.name,     piece.file.sha256,
+                           piece.file.size, piece.file.mtime_ns, piece.file.status_ns};
   OpenFile file;
   file.repeated = piece.unusable.empty() && journal.knows_content(analyzer, piece.file.sha256);
   if (const auto begun = journal.begun_file(record)) {
