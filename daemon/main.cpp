@@ -6,6 +6,7 @@
 #include "daemon/cli/check.hpp"
 #include "daemon/cli/command_line.hpp"
 #include "daemon/cli/example.hpp"
+#include "daemon/cli/journal_commands.hpp"
 #include "daemon/cli/run.hpp"
 #include "daemon/exit_codes.hpp"
 
@@ -19,6 +20,9 @@ struct Doer {
   int operator()(const agreed::ExampleCommand& command) const {
     return agreed::write_example(command.folder);
   }
+  int operator()(const agreed::VerifyCommand& command) const { return agreed::verify_command(command); }
+  int operator()(const agreed::BackupCommand& command) const { return agreed::backup_command(command); }
+  int operator()(const agreed::RestoreCommand& command) const { return agreed::restore_command(command); }
   int operator()(const agreed::Say& say) const {
     std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
     return say.code;

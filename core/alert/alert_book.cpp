@@ -66,7 +66,7 @@ std::vector<AlertTransition> AlertBook::apply(const Finding& finding, Instant no
 
 std::vector<AlertTransition> AlertBook::reconcile(std::span<const Finding> conditions,
                                                   std::span<const Subject> streams, std::string_view reason,
-                                                  Instant now) {
+                                                  Instant now, bool news) {
   const auto compared = [&](AlertKind kind, const Subject& subject) {
     return folded_by_the_monitor(kind) &&
            (streams.empty() || std::find(streams.begin(), streams.end(), subject) != streams.end());
@@ -82,6 +82,7 @@ std::vector<AlertTransition> AlertBook::reconcile(std::span<const Finding> condi
   }
   for (const auto& finding : conditions) {
     if (!finding.holds || !compared(finding.kind, finding.subject)) continue;
+    if (!news && find_current(finding.kind, finding.subject) != nullptr) continue;
     for (auto& transition : apply(finding, now)) transitions.push_back(std::move(transition));
   }
   return transitions;

@@ -37,11 +37,13 @@ class AlertBook {
 
   /// After a fold: `conditions` is all that holds now. Opens what has no open alert, resolves with `reason`
   /// what no longer holds; alerts of kinds that are not the monitor's, and kinds that resolve on
-  /// acknowledgement, are left alone. What still holds is brought up to date as by apply. `streams`: only
-  /// alerts of these subjects are compared; empty = all.
+  /// acknowledgement, are left alone. What still holds is brought up to date as by apply, unless nothing is
+  /// `news` (a restart: an alert must read the same as if there had been none). `streams`: only alerts of
+  /// these subjects are compared; empty = all.
   [[nodiscard]] std::vector<AlertTransition> reconcile(std::span<const Finding> conditions,
                                                        std::span<const Subject> streams,
-                                                       std::string_view reason, Instant now);
+                                                       std::string_view reason, Instant now,
+                                                       bool news = true);
 
   /// Resolves the pair_outlier alert of a comparison if none of its samples is still set aside (reason
   /// `late_data`).

@@ -1,6 +1,7 @@
 #include "daemon/cli/command_line.hpp"
 
 #include <algorithm>
+#include <charconv>
 #include <vector>
 
 #include <CLI/CLI.hpp>
@@ -23,6 +24,75 @@ std::string unknown_command(const CLI::App& app, const std::string& word) {
   std::string text = "agreed: there is no command '" + word + "'";
   text += settings_file::did_you_mean(word, names_of(app));
   return text + "\nagreed --help lists them\n";
+}
+
+constexpr std::size_t kHashDigits = 64;
+
+/// "17:" and 64 hexadecimal digits, as verify, /api/status and the documents show it.
+std::optional<ChainHead> head_of(const std::string& text) {
+  ChainHead head;
+  const char* const end = text.data() + text.size();
+  const auto [at, error] = std::from_chars(text.data(), end, head.sequence);
+  if (error != std::errc{} || head.sequence < 0 || at == end || *at != ':') return std::nullopt;
+  head.sha256.assign(at + 1, end);
+  const bool is_hash = head.sha256.size() == kHashDigits &&
+                       head.sha256.find_first_not_of("0123456789abcdef") == std::string::npos;
+  return is_hash ? std::optional(head) : std::nullopt;
+}
+
+void add_verify(CLI::App& app, VerifyCommand& verify) {
+  CLI::App* const sub =
+      app.add_subcommand("verify", "proves that nothing in the journal was changed and nothing is missing");
+  sub->add_option("CONFIG", verify.config, "the configuration file")->required();
+  sub->add_option_function<std::vector<std::string>>(
+         "--head",
+         [&verify](const std::vector<std::string>& texts) {
+           for (const std::string& text : texts) {
+             const auto head = head_of(text);
+             if (!head)
+               throw CLI::ValidationError(
+                   "--head",
+                   "expected SEQUENCE:SHA256 as verify prints it (64 digits 0-9a-f), found '" + text + "'");
+             verify.heads.push_back(*head);
+           }
+         },
+         "a head of the chain noted elsewhere (\"chain\" in /api/status); a tail that was cut off or written "
+         "anew "
+         "shows only against one")
+      ->type_name("SEQUENCE:SHA256");
+  sub->add_option("--file", verify.file,
+                  "a backup, or a journal that was put aside, instead of the service's own");
+  sub->add_flag("--json", verify.json, "print for programs");
+  sub->footer(
+      "May run while the service does. Exit status: 0 nothing was changed, 1 something was or is missing,\n"
+      "2 wrong use or configuration, 3 the journal could not be read.\n"
+      "Example:\n  agreed verify /etc/agreed/agreed.yaml");
+}
+
+void add_backup(CLI::App& app, BackupCommand& backup) {
+  CLI::App* const sub = app.add_subcommand("backup", "copies the journal, also while the service runs");
+  sub->add_option("CONFIG", backup.config, "the configuration file")->required();
+  sub->add_option("FILE", backup.file, "the copy; must not exist")->required();
+  sub->add_flag("--json", backup.json, "print for programs");
+  sub->footer(
+      "The copy is whole and on the disk when this ends, and was verified.\n"
+      "Exit status: 0 done, 1 copied, but the journal and so the copy has faults, 2 wrong use or "
+      "configuration,\n"
+      "3 could not do it (FILE exists, no room, ...).\n"
+      "Example:\n  agreed backup /etc/agreed/agreed.yaml /backup/agreed-$(date +%F).sqlite");
+}
+
+void add_restore(CLI::App& app, RestoreCommand& restore) {
+  CLI::App* const sub =
+      app.add_subcommand("restore", "puts a backup in the journal's place; what was there is kept beside it");
+  sub->add_option("CONFIG", restore.config, "the configuration file")->required();
+  sub->add_option("FILE", restore.file, "a file that `agreed backup` wrote")->required();
+  sub->add_flag("--json", restore.json, "print for programs");
+  sub->footer(
+      "The service must be stopped. The backup is verified first.\n"
+      "Exit status: 0 done, 1 nothing was done because the backup has faults, 2 wrong use or configuration,\n"
+      "3 could not do it (the service runs, no such file, ...).\n"
+      "Example:\n  agreed restore /etc/agreed/agreed.yaml /backup/agreed-2026-01-05.sqlite");
 }
 
 }  // namespace
@@ -67,6 +137,13 @@ Command parse_command_line(std::span<const std::string> arguments) {
   example_app->add_option("DIR", example.folder, "a folder that does not exist yet, or is empty")->required();
   example_app->footer("Example:\n  agreed example mill");
 
+  VerifyCommand verify;
+  add_verify(app, verify);
+  BackupCommand backup;
+  add_backup(app, backup);
+  RestoreCommand restore;
+  add_restore(app, restore);
+
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
     if (std::find(names.begin(), names.end(), arguments.front()) == names.end())
@@ -86,6 +163,9 @@ Command parse_command_line(std::span<const std::string> arguments) {
   }
   if (run_app->parsed()) return run;
   if (check_app->parsed()) return check;
+  if (app.got_subcommand("verify")) return verify;
+  if (app.got_subcommand("backup")) return backup;
+  if (app.got_subcommand("restore")) return restore;
   return example;
 }
 

@@ -1,9 +1,13 @@
 #pragma once
 // The command line as a value: parsing never exits and never prints.
 #include <filesystem>
+#include <optional>
 #include <span>
 #include <string>
 #include <variant>
+#include <vector>
+
+#include "daemon/journal/journal_types.hpp"
 
 namespace agreed {
 
@@ -19,13 +23,28 @@ struct CheckCommand {
 struct ExampleCommand {
   std::filesystem::path folder;
 };
+struct VerifyCommand {
+  std::filesystem::path config;
+  std::vector<ChainHead> heads;               ///< noted elsewhere; must still be in the chain
+  std::optional<std::filesystem::path> file;  ///< instead of the journal in the state folder
+  bool json = false;
+};
+struct BackupCommand {
+  std::filesystem::path config, file;
+  bool json = false;
+};
+struct RestoreCommand {
+  std::filesystem::path config, file;
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
   std::string text;
 };
 
-using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, Say>;
+using Command =
+    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

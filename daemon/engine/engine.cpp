@@ -162,6 +162,7 @@ void Engine::undo(const Work& work, const std::string& why) {
   for (const QueuedPiece& queued : work.pieces) {
     refused_.insert(file_of(queued));
     queue_.still_waits(queued.piece.file.analyzer);
+    queue_.refuse_waiting(queued.piece.file.analyzer, why);
   }
   folded_ = false;
   book_.reset();  // what it says was not committed; the snapshot keeps what was
@@ -179,6 +180,7 @@ void Engine::end_trouble(bool written) {
   log_info("the journal can be used again");
   trouble_.clear();
   refused_.clear();
+  kept_fold_.reset();
 }
 
 bool Engine::anything_waits() const {
@@ -327,7 +329,7 @@ void Engine::tell_anew(ComparisonIndex comparison, Instant now) {
 }
 
 void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
-                       const std::string& reason, Instant now) {
+                       const std::string& reason, Instant now, bool news) {
   std::vector<Finding> conditions;
   const auto add = [&conditions](std::vector<Finding> more) {
     conditions.insert(conditions.end(), std::make_move_iterator(more.begin()),
@@ -339,7 +341,7 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>
     tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
   }
   for (Finding& condition : conditions) explain(condition);
-  tell(book_->reconcile(conditions, subjects, reason, now), now);
+  tell(book_->reconcile(conditions, subjects, reason, now, news), now);
 }
 
 void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) {
@@ -372,24 +374,37 @@ void Engine::put_in_outbox(const std::string& route, const std::string& id, std:
   routes_with_news_.insert(route);
 }
 
+MonitorOutcome Engine::fold_all() {
+  const ChainHead head = journal_->head();
+  if (kept_fold_ && kept_fold_->head == head) {
+    monitor_ = kept_fold_->monitor;
+    return kept_fold_->outcome;
+  }
+  monitor_ = Monitor(settings_);
+  JournalHistory history(*journal_, *settings_);
+  MonitorOutcome outcome = monitor_.fold_all(history);
+  kept_fold_.reset();
+  if (!trouble_.empty()) kept_fold_.emplace(Folded{head, monitor_, outcome});
+  return outcome;
+}
+
 void Engine::fold_from_journal(Instant now) {
+  journal_->recover();
   std::vector<Alert> restored;
   for (const StoredTransition& transition : journal_->last_transitions())
     restored.push_back(alert_from_json(transition.body));
   book_ = std::make_unique<AlertBook>(alert_policy_, settings_, std::move(restored));
-  monitor_ = Monitor(settings_);
   escalated_.clear();
-  JournalHistory history(*journal_, *settings_);
-  for (const Intervention& intervention : history.interventions())
+  for (const Intervention& intervention : JournalHistory(*journal_, *settings_).interventions())
     if (intervention.at + alert_policy_.hold > now) book_->hold(intervention);
-  const MonitorOutcome outcome = monitor_.fold_all(history);
+  const MonitorOutcome outcome = fold_all();
   if (journal_->totals().readings_censored > 0)
     for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) count_censored({i});
   journal_->begin(now);
   const bool new_configuration = journal_->last_configuration_sha256() != config_sha256_;
   if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
   // Of all subjects: what is no longer configured holds no longer.
-  reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now);
+  reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   malloc_trim(0);  // a whole history went through memory; give it back

@@ -5,6 +5,7 @@
 #include <functional>
 #include <memory>
 #include <mutex>
+#include <optional>
 #include <set>
 #include <string>
 #include <thread>
@@ -55,9 +56,9 @@ class Engine final : public IntakeSink, public Service {
   /// Brings the open alerts of a comparison up to what its diagnosis says now.
   void tell_anew(ComparisonIndex comparison, Instant now);
   [[nodiscard]] std::vector<Subject> refolded(const MonitorOutcome& outcome) const;
-  /// Compares the alert book with what holds after a fold; `subjects` as in AlertBook::reconcile.
+  /// Compares the alert book with what holds after a fold; `subjects` and `news` as in AlertBook::reconcile.
   void reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
-                 const std::string& reason, Instant now);
+                 const std::string& reason, Instant now, bool news = true);
   void tell(const std::vector<AlertTransition>& transitions, Instant now);
   void fold_from_journal(Instant now);
   [[nodiscard]] std::set<ChartIndex> charts_to_recount(const TakenIn& taken) const;
@@ -73,6 +74,7 @@ class Engine final : public IntakeSink, public Service {
             Instant now);
   void put_in_outbox(const std::string& route, const std::string& id, std::string type, std::string body,
                      std::int64_t alert, Instant now);
+  [[nodiscard]] MonitorOutcome fold_all();
   void undo(const Work& work, const std::string& why);
   void end_trouble(bool written);
   [[nodiscard]] bool anything_waits() const;
@@ -107,6 +109,14 @@ class Engine final : public IntakeSink, public Service {
   std::string trouble_;  ///< why what waits could not be committed; empty when nothing was refused
   std::set<std::pair<AnalyzerIndex, std::string>> refused_;  ///< files that wait since
   bool folded_ = false;
+
+  /// What the journal folds to. Kept only while batches fail, so that each try need not fold it all again.
+  struct Folded {
+    ChainHead head;
+    Monitor monitor;
+    MonitorOutcome outcome;
+  };
+  std::optional<Folded> kept_fold_;
   bool configuration_recorded_ = false;
 
   Snapshot next_;  ///< the snapshot in the making

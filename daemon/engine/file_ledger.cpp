@@ -51,8 +51,8 @@ PieceAnswer FileLedger::take(const FilePiece& piece, Instant now, Journal& journ
 
 FileLedger::OpenFile FileLedger::begin(const FilePiece& piece, Journal& journal) const {
   const std::string& analyzer = settings_->of(piece.file.analyzer).id;
-  const JournalFile record{analyzer, piece.file.name, piece.file.sha256, piece.file.size,
-                           piece.file.mtime_ns};
+  const JournalFile record{analyzer,        piece.file.name,     piece.file.sha256,
+                           piece.file.size, piece.file.mtime_ns, piece.file.status_ns};
   OpenFile file;
   // The rows of a growing file are judged one by one: its content is never known as a whole.
   file.repeated =

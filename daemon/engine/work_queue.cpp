@@ -80,6 +80,19 @@ void WorkQueue::still_waits(AnalyzerIndex analyzer) {
   inbox.pending = std::max(inbox.pending, decltype(inbox.pending){1});
 }
 
+void WorkQueue::refuse_waiting(AnalyzerIndex analyzer, const std::string& why) {
+  std::deque<QueuedPiece> refused;
+  {
+    const std::lock_guard lock(mutex_);
+    Lane& lane = lanes_.at(analyzer.value);
+    refused.swap(lane.waiting);
+    lane.rows = 0;
+    has_room_.notify_all();
+  }
+  const auto error = std::make_exception_ptr(std::runtime_error(why));
+  for (QueuedPiece& queued : refused) queued.answer.set_exception(error);
+}
+
 void WorkQueue::stop() {
   std::vector<Lane> left(lanes_.size());
   std::vector<Task> tasks;

@@ -53,6 +53,8 @@ class WorkQueue {
   /// What was taken of the analyzer could not be committed: at least one file of it waits, until its next
   /// report.
   void still_waits(AnalyzerIndex analyzer);
+  /// What waits of the analyzer fails too: nothing may be committed before what came earlier.
+  void refuse_waiting(AnalyzerIndex analyzer, const std::string& why);
   /// Refuses whatever comes from now on, and what waits.
   void stop();
 

@@ -76,14 +76,26 @@ bool rename_free(int from, const std::string& name, int to, const std::string& n
   return true;
 }
 
-/// False if the name is taken.
-bool write_new(int folder, const std::string& name, const std::string& text) {
-  const Descriptor file(
-      ::openat(folder, name.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_NOFOLLOW | O_CLOEXEC, 0666));
-  if (!file.valid()) {
-    if (errno == EEXIST) return false;
-    fail("write reason", errno);
+/// Whether the file holds `text`, or only its beginning: what a crash left of writing it.
+bool is_begun(int folder, const std::string& name, const std::string& text) {
+  const Descriptor file(::openat(folder, name.c_str(), O_RDONLY | O_NOFOLLOW | O_NONBLOCK | O_CLOEXEC));
+  std::string found(text.size() + 1, '\0');
+  std::size_t length = 0;
+  for (ssize_t more = 1; more > 0 && length < found.size(); length += static_cast<std::size_t>(more)) {
+    more = file.valid() ? ::read(file.get(), found.data() + length, found.size() - length) : -1;
+    if (more < 0) return false;
   }
+  return length <= text.size() && text.starts_with(std::string_view(found).substr(0, length));
+}
+
+/// False if the name is taken by another text.
+bool write_new(int folder, const std::string& name, const std::string& text) {
+  Descriptor file(::openat(folder, name.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_NOFOLLOW | O_CLOEXEC, 0666));
+  if (!file.valid() && errno == EEXIST) {
+    if (!is_begun(folder, name, text)) return false;
+    file.reset(::openat(folder, name.c_str(), O_WRONLY | O_TRUNC | O_NOFOLLOW | O_CLOEXEC));
+  }
+  if (!file.valid()) fail("write reason", errno);
   for (std::size_t done = 0; done < text.size();) {
     const ssize_t wrote = ::write(file.get(), text.data() + done, text.size() - done);
     if (wrote < 0 && errno == EINTR) continue;

@@ -23,6 +23,7 @@ FileStamp stamp_from(const struct stat& status) {
   stamp.inode = status.st_ino;
   stamp.size = static_cast<std::uint64_t>(status.st_size);
   stamp.mtime_ns = std::int64_t{status.st_mtim.tv_sec} * 1'000'000'000 + status.st_mtim.tv_nsec;
+  stamp.status_ns = std::int64_t{status.st_ctim.tv_sec} * 1'000'000'000 + status.st_ctim.tv_nsec;
   stamp.links = status.st_nlink;
   stamp.regular = S_ISREG(status.st_mode);
   stamp.directory = S_ISDIR(status.st_mode);

@@ -17,6 +17,8 @@ struct FileStamp {
   std::uint64_t device = 0, inode = 0, size = 0;
   std::int64_t mtime_ns = 0;
   std::uint64_t links = 1;  ///< hard links; not compared
+  std::int64_t status_ns =
+      0;  ///< when it was last written, renamed or its rights changed (ctime); not compared
   bool regular = true, directory = false;
 
   [[nodiscard]] bool same_content(const FileStamp& other) const {

@@ -86,7 +86,8 @@ class Reading {
       : content_(content), task_(task), context_(context), give_(give), stamp_(content.stamp()) {}
 
   ReadOutcome run() {
-    identity_ = {context_.analyzer, task_.name, stamp_.size, stamp_.mtime_ns, Sha256().hex()};
+    identity_ = {context_.analyzer, task_.name,     stamp_.size,
+                 stamp_.mtime_ns,   Sha256().hex(), stamp_.status_ns};
     if (stamp_.size > task_.limits.file_bytes)
       return refuse("the file has " + std::to_string(stamp_.size) + " bytes; at most " +
                     std::to_string(task_.limits.file_bytes) + " are read");

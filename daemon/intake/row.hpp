@@ -1,6 +1,7 @@
 #pragma once
 // What a drop file says, row by row, after parsing and before the journal has judged it.
 #include <cstdint>
+#include <limits>
 #include <optional>
 #include <string>
 #include <vector>
@@ -45,6 +46,8 @@ struct FileIdentity {
   std::uint64_t size = 0;
   std::int64_t mtime_ns = 0;
   std::string sha256;  ///< hex of the whole content
+  /// When it was last written or renamed, ns since 1970; not known: as if just now.
+  std::int64_t status_ns = std::numeric_limits<std::int64_t>::max();
 };
 
 /// A piece of one file, about a thousand rows; the last piece of a file says so. If the file as a whole is

@@ -26,8 +26,10 @@ void WaitingFiles::see(const std::string& name, const FileStamp& stamp, Notice n
   file.scan = scan_;
   if (file.due) return;  // it is looked at again when its answer has come
   const bool has_changed = is_new || !file.stamp.same_content(stamp);
+  if (has_changed) file.first = is_new && notice == Notice::scan && stamp.regular && stamp.size > 0;
+  const bool try_again = std::exchange(file.retry, false);
   if (notice == Notice::scan) {
-    if (file.retry) return plan(name, file, now);
+    if (try_again) return plan(name, file, now);
     if (!has_changed) return;
     if (file.finished()) file.notice = Notice::created;  // somebody opened it again
   } else {
@@ -67,12 +69,33 @@ void WaitingFiles::events_lost(Tick now) {
   }
 }
 
+// The oldest file that newer ones have to wait for.
+std::optional<WaitingFiles::Barrier> WaitingFiles::barrier(Tick now) const {
+  std::optional<Barrier> oldest;
+  for (const auto& [name, file] : files_) {
+    if (!file.first || file.due || (!file.retry && file.due_at <= now)) continue;
+    Place place{file.stamp.mtime_ns, name};
+    if (oldest && oldest->place < place) continue;
+    oldest = Barrier{std::move(place), file.retry ? std::nullopt : std::optional(file.due_at)};
+  }
+  return oldest;
+}
+
 std::vector<std::pair<std::string, WaitingFile>> WaitingFiles::take_due(Tick now) {
   std::vector<std::pair<std::string, WaitingFile>> due;
+  if (plan_.empty() || plan_.begin()->first > now) return due;
+  const auto hold = barrier(now);
   while (!plan_.empty() && plan_.begin()->first <= now) {
     const std::string name = plan_.begin()->second;
     plan_.erase(plan_.begin());
     WaitingFile& file = files_.at(name);
+    if (hold && hold->place < Place{file.stamp.mtime_ns, name}) {
+      if (hold->until)
+        plan(name, file, *hold->until);
+      else
+        file.retry = true;
+      continue;
+    }
     file.due = true;
     file.retry = false;
     due.emplace_back(name, file);
@@ -88,6 +111,7 @@ void WaitingFiles::changed(const std::string& name, const FileStamp& stamp, Tick
   file.stamp = stamp;
   file.changed = now;
   file.due = false;
+  file.first = false;
   // A change after the close: its writer is at work again.
   if (file.finished()) file.notice = Notice::created;
   plan(name, file, settled_at(file));
@@ -98,15 +122,17 @@ bool WaitingFiles::wait_unfinished(const std::string& name, Tick now) {
   const Tick until = file.changed + unfinished_;
   if (now >= until) return false;
   file.due = false;
+  file.first = false;
   plan(name, file, until);
   return true;
 }
 
-void WaitingFiles::retry_at_scan(const std::string& name) {
+void WaitingFiles::retry_at_scan(const std::string& name, bool in_order) {
   WaitingFile& file = files_.at(name);
   unplan(name, file);
   file.due = false;
   file.retry = true;
+  file.first = in_order;
 }
 
 std::optional<Tick> WaitingFiles::next_due() const {

@@ -27,6 +27,9 @@ struct WaitingFile {
   Tick changed{};      ///< when a change of it was last seen
   bool due = false;    ///< taken out by take_due and not yet put back or forgotten
   bool retry = false;  ///< to be taken again at the next scan
+  /// Newer files wait for it: it stood still since a scan found it, or could not be committed. A void must
+  /// not overtake the reading that it takes back.
+  bool first = false;
   Tick due_at{};
   std::uint64_t scan = 0;
 
@@ -51,19 +54,27 @@ class WaitingFiles {
   /// Events were lost: a close may have been among them, so what is known is as if found by a scan.
   void events_lost(Tick now);
 
-  /// The files that have settled, by mtime, then name. They stay due until forgotten or put back.
+  /// The files that have settled, by mtime, then name. They stay due until forgotten or put back. One that is
+  /// newer than a file found by a scan waits until that one has stood still for its time too (after a restart
+  /// events bring the newer files, and only a scan the older ones), or has been tried again.
   [[nodiscard]] std::vector<std::pair<std::string, WaitingFile>> take_due(Tick now);
   /// Puts a due file back: it was seen to change.
   void changed(const std::string& name, const FileStamp& stamp, Tick now);
   /// Puts a due file back until it has been unchanged for `unfinished`; false if it has been.
   [[nodiscard]] bool wait_unfinished(const std::string& name, Tick now);
-  /// Puts a due file back for the next scan.
-  void retry_at_scan(const std::string& name);
+  /// Puts a due file back for the next scan. `in_order`: newer ones wait for it.
+  void retry_at_scan(const std::string& name, bool in_order = false);
 
   [[nodiscard]] std::size_t size() const { return files_.size(); }
   [[nodiscard]] std::optional<Tick> next_due() const;
 
  private:
+  using Place = std::pair<std::int64_t, std::string>;  ///< mtime and name: the order of arrival
+  struct Barrier {
+    Place place;
+    std::optional<Tick> until;  ///< nothing: the next scan
+  };
+  [[nodiscard]] std::optional<Barrier> barrier(Tick now) const;
   void plan(const std::string& name, WaitingFile& file, Tick due_at);
   void unplan(const std::string& name, const WaitingFile& file);
   [[nodiscard]] Tick settled_at(const WaitingFile& file) const;

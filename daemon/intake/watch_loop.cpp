@@ -170,16 +170,17 @@ void WatchLoop::note(const InboxEvents& events, Tick now) {
 }
 
 void WatchLoop::take_due(const std::stop_token& stop) {
+  commit_failed_ = false;
   if (growing_) return take_due_growing(stop);
   const auto due = waiting_.take_due(Clock::now());
   if (!due.empty() && !inbox_.is_open()) reachable(inbox_.open());
   for (const auto& [name, waiting] : due) {
     if (stop.stop_requested()) throw Stopping{};
     try {
-      if (state_.reachable)
+      if (state_.reachable && !commit_failed_)
         take(name, waiting, stop);
       else
-        waiting_.retry_at_scan(name);
+        waiting_.retry_at_scan(name, commit_failed_);
     } catch (const std::exception& error) {
       tell_once(name, in_quotes(name) + " cannot be read now and is tried again: " + error.what());
       waiting_.retry_at_scan(name);
@@ -257,7 +258,8 @@ void WatchLoop::settle(TakenFile& file, const PieceAnswer& answer, const std::st
   const bool in_inbox = file.moved_path.empty();
   if (file.failed) {
     tell_once("commit", "a commit failed, the files stay and are tried again at the next scan: " + error);
-    if (in_inbox && !growing_) waiting_.retry_at_scan(file.name);
+    if (in_inbox && !growing_) waiting_.retry_at_scan(file.name, true);
+    commit_failed_ = true;
     return;
   }
   told_.erase("commit");

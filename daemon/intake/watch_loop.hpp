@@ -81,6 +81,7 @@ class WatchLoop {
   std::map<std::string, Unmoved> unmoved_;
   std::map<std::string, std::string> told_;  ///< warnings already logged, so that none repeats at every scan
   InboxState state_, reported_;
+  bool commit_failed_ = false;  ///< in this round: what is newer must not overtake what failed
   Tick next_scan_{};
   Tick last_report_{};
 };

@@ -1,5 +1,9 @@
 #include "daemon/journal/backup.hpp"
 
+#include <system_error>
+
+#include <unistd.h>
+
 #include "daemon/journal/connection.hpp"
 #include "daemon/journal/durable.hpp"
 #include "daemon/journal/schema.hpp"
@@ -10,21 +14,45 @@ namespace {
 namespace fs = std::filesystem;
 using journal::with_suffix;
 
-/// A whole, lasting copy of the journal `from` at `to`, which must not exist.
+/// A whole, lasting copy of the journal `from` at `to`, which must not exist; nothing is left there if it
+/// fails.
 void copy_journal(const fs::path& from, const fs::path& to) {
-  journal::remove_unfinished(to);
-  journal::translating(from, [&] {
-    const auto database = journal::open_reader(from);
-    journal::check_usable(*database, from);
-    journal::copy_database(*database, to);
-  });
+  try {
+    journal::translating(from, [&] {
+      const auto database = journal::open_reader(from);
+      journal::check_usable(*database, from);
+      journal::copy_database(*database, to);
+    });
+  } catch (...) {
+    std::error_code ignored;
+    for (const char* suffix : {"", "-journal"}) fs::remove(with_suffix(to, suffix), ignored);
+    throw;
+  }
+}
+
+/// Where a backup grows: beside its target, hidden, and of this process alone.
+fs::path unfinished(const fs::path& target) {
+  const std::string name =
+      "." + target.filename().string() + "." + std::to_string(::getpid()) + ".unfinished";
+  return target.parent_path() / name;
+}
+
+/// A name under which neither a journal nor its log is in the way. A log without its journal is no obstacle
+/// if there is no log to keep now: an interrupted restore has kept it there.
+fs::path name_to_keep(const fs::path& folder, bool with_log) {
+  for (int i = 0;; ++i) {
+    const std::string number = i == 0 ? "" : "." + std::to_string(i);
+    fs::path name = folder / ("journal.replaced" + number + ".sqlite");
+    if (!fs::exists(name) && !(with_log && fs::exists(with_suffix(name, "-wal")))) return name;
+  }
 }
 
 /// The log goes first: a journal beside the log of another would be worse than one without.
 fs::path set_aside(const fs::path& file) {
-  fs::path kept = journal::free_name(file.parent_path() / "journal.replaced", ".sqlite");
   const fs::path log = with_suffix(file, "-wal");
-  if (fs::exists(log)) fs::rename(log, with_suffix(kept, "-wal"));
+  const bool has_log = fs::exists(log);
+  fs::path kept = name_to_keep(file.parent_path(), has_log);
+  if (has_log) fs::rename(log, with_suffix(kept, "-wal"));
   fs::remove(with_suffix(file, "-shm"));
   if (!fs::exists(file)) return {};
   fs::rename(file, kept);
@@ -33,29 +61,39 @@ fs::path set_aside(const fs::path& file) {
 
 }  // namespace
 
-void backup_journal(const fs::path& folder, const fs::path& target) {
-  if (fs::exists(target))
+JournalProof backup_journal(const fs::path& folder, const fs::path& target) {
+  if (fs::exists(fs::symlink_status(target)))
     throw JournalError(target.string() + " is there already and is not overwritten. Name another file.",
                        false);
-  journal::translating(target, [&] {
-    const fs::path part = with_suffix(target, ".part");
+  const fs::path whole = fs::absolute(target), part = unfinished(whole);
+  return journal::translating(target, [&] {
+    journal::remove_unfinished(part);
     copy_journal(journal::database_file(folder), part);
-    fs::rename(part, target);
-    journal::make_lasting(fs::absolute(target).parent_path());
+    journal::rename_to_free(part, whole);
+    journal::make_lasting(whole.parent_path());
+    return verify_database(whole);
   });
 }
 
-fs::path restore_journal(const fs::path& folder, const fs::path& backup) {
+Restored restore_journal(const fs::path& folder, const fs::path& backup) {
   if (!fs::exists(backup)) throw JournalError("There is no backup " + backup.string() + ".", false);
   const StateLock lock(folder);
   const fs::path file = journal::database_file(folder);
   return journal::translating(file, [&] {
-    const fs::path fresh = with_suffix(file, ".new");
+    Restored restored{verify_database(backup), {}};
+    if (!restored.proof.faults.empty()) return restored;
+    const fs::path fresh = with_suffix(file, ".new"), next = journal::restoring_file(file);
+    journal::remove_unfinished(fresh);
     copy_journal(backup, fresh);
-    fs::path kept = set_aside(file);
-    fs::rename(fresh, file);
+    // From here until the last rename the service refuses to start: it would find a journal without its log,
+    // or none.
+    fs::rename(fresh, next);
     journal::make_lasting(folder);
-    return kept;
+    restored.kept = set_aside(file);
+    journal::make_lasting(folder);
+    fs::rename(next, file);
+    journal::make_lasting(folder);
+    return restored;
   });
 }
 

@@ -3,18 +3,26 @@
 #include <filesystem>
 
 #include "daemon/journal/journal.hpp"
+#include "daemon/journal/verify.hpp"
 
 namespace agreed {
 
-/// Copies the journal of `folder` to `target`, also while the service runs. The target appears whole or not
-/// at all; an existing one is not overwritten. Throws JournalError.
-void backup_journal(const std::filesystem::path& folder, const std::filesystem::path& target);
+/// Copies the journal of `folder` to `target`, also while the service runs. The target appears whole,
+/// lasting, or not at all; an existing one is not overwritten. What the finished copy proves to be: a copy of
+/// a journal with faults has them too. Throws JournalError.
+JournalProof backup_journal(const std::filesystem::path& folder, const std::filesystem::path& target);
 
-/// Puts `backup` in the place of the journal of `folder`, holding the folder's lock meanwhile. What was there
-/// is kept beside it; returns its name (journal.replaced.sqlite, journal.replaced.1.sqlite, ...), empty if
-/// there was nothing. Throws JournalError, also when a service runs or the backup is no usable journal; then
-/// nothing was changed.
-std::filesystem::path restore_journal(const std::filesystem::path& folder,
-                                      const std::filesystem::path& backup);
+struct Restored {
+  JournalProof proof;  ///< of the backup
+  /// Where what was there is kept: journal.replaced.sqlite, journal.replaced.1.sqlite, ...; empty if nothing
+  /// was.
+  std::filesystem::path kept;
+};
+
+/// Puts `backup` in the place of the journal of `folder`, holding the folder's lock meanwhile; nothing is
+/// deleted. Throws JournalError, also when a service runs or the backup is no usable journal; then nothing
+/// was changed. With faults in the proof nothing was changed either.
+[[nodiscard]] Restored restore_journal(const std::filesystem::path& folder,
+                                       const std::filesystem::path& backup);
 
 }  // namespace agreed

@@ -30,7 +30,8 @@ std::string advice(int code) {
       return "Another process has locked it; end whatever writes to it. Nothing is lost, it is tried again.";
     case SQLITE_READONLY:
     case SQLITE_CANTOPEN:
-      return "The service must be able to write this file and its folder; check owner and permissions.";
+      return "The service must be able to write this file and its folder; check owner, permissions and that "
+             "the disk is not mounted read-only.";
     case SQLITE_IOERR:
       return "The disk did not do what was asked. Nothing is lost, it is tried again.";
     default:
@@ -76,12 +77,22 @@ JournalError damaged(const std::filesystem::path& file, std::string_view how) {
   return JournalError("The journal " + file.string() + " is damaged: " + std::string(how) +
                           ". Stop the service, keep a copy of the file, and put back a backup with `agreed "
                           "restore CONFIG FILE`.",
-                      false);
+                      false, true);
+}
+
+bool is_damage(const SQLite::Exception& error) {
+  const int code = error.getErrorCode() & 0xff;
+  return code == SQLITE_NOTADB || code == SQLITE_CORRUPT;
+}
+
+bool is_disk_trouble(const SQLite::Exception& error) {
+  const int code = error.getErrorCode() & 0xff;
+  return code == SQLITE_IOERR || code == SQLITE_CORRUPT || code == SQLITE_NOTADB || code == SQLITE_CANTOPEN;
 }
 
 JournalError to_journal_error(const SQLite::Exception& error, const std::filesystem::path& file) {
+  if (is_damage(error)) return damaged(file, error.what());
   const int code = error.getErrorCode() & 0xff;
-  if (code == SQLITE_NOTADB || code == SQLITE_CORRUPT) return damaged(file, error.what());
   return JournalError("The journal " + file.string() + " could not be used: " + error.what() + " (SQLite " +
                           std::to_string(error.getExtendedErrorCode()) + "). " + advice(code),
                       may_pass(code));

@@ -20,6 +20,12 @@ namespace agreed::journal {
 [[nodiscard]] std::unique_ptr<SQLite::Database> open_writer(const std::filesystem::path& file);
 [[nodiscard]] std::unique_ptr<SQLite::Database> open_reader(const std::filesystem::path& file);
 
+/// Whether the file itself is at fault, and not the disk or another process.
+[[nodiscard]] bool is_damage(const SQLite::Exception& error);
+
+/// Whether the disk failed, so that what the connection holds in memory is not trusted any more.
+[[nodiscard]] bool is_disk_trouble(const SQLite::Exception& error);
+
 /// What went wrong, where and what to do, for people; `retry` is set for causes that may pass.
 [[nodiscard]] JournalError to_journal_error(const SQLite::Exception& error,
                                             const std::filesystem::path& file);

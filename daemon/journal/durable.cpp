@@ -1,5 +1,9 @@
 #include "daemon/journal/durable.hpp"
 
+#include <cerrno>
+#include <cstdio>
+#include <system_error>
+
 #include <fcntl.h>
 #include <unistd.h>
 
@@ -19,6 +23,18 @@ void make_lasting(const fs::path& path) {
   const bool done = descriptor >= 0 && ::fsync(descriptor) == 0;
   if (descriptor >= 0) ::close(descriptor);
   if (!done) throw JournalError("Cannot write " + path.string() + " to the disk.", true);
+}
+
+void rename_to_free(const fs::path& from, const fs::path& to) {
+  if (::renameat2(AT_FDCWD, from.c_str(), AT_FDCWD, to.c_str(), RENAME_NOREPLACE) == 0) return;
+  // Where the file system cannot rename so, looking first has to do.
+  const bool cannot = errno == EINVAL || errno == ENOSYS;
+  if (errno == EEXIST || (cannot && fs::exists(to)))
+    throw JournalError(to.string() + " came to be meanwhile and is not overwritten. Name another file.",
+                       false);
+  if (!cannot)
+    throw fs::filesystem_error("rename", from, to, std::error_code(errno, std::generic_category()));
+  fs::rename(from, to);
 }
 
 void remove_unfinished(const fs::path& database) {

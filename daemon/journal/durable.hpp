@@ -12,6 +12,9 @@ namespace agreed::journal {
 /// is open in this process: closing it here would drop SQLite's locks.
 void make_lasting(const std::filesystem::path& path);
 
+/// Renames, but never onto something that is there; throws JournalError.
+void rename_to_free(const std::filesystem::path& from, const std::filesystem::path& to);
+
 /// Removes a database of ours that was never finished, with its side files.
 void remove_unfinished(const std::filesystem::path& database);
 

@@ -38,13 +38,39 @@ void Store::load_identity() {
   if (newest.executeStep()) head = {newest.getColumn(0).getInt64(), newest.getColumn(1).getString()};
 }
 
+bool Store::continues(const std::string& source_before, const ChainHead& head_before) {
+  if (source != source_before) return false;
+  if (head_before.sequence == 0) return true;
+  Query then = query("SELECT sha256 FROM batches WHERE sequence = ?");
+  then->bind(1, head_before.sequence);
+  return then->executeStep() && then->getColumn(0).getString() == head_before.sha256;
+}
+
+// What is written to a file that was moved or deleted is gone with the process.
+void Store::must_be_in_place() {
+  int moved = 0;
+  sqlite3_file_control(database->getHandle(), "main", SQLITE_FCNTL_HAS_MOVED, &moved);
+  if (moved != 0)
+    throw JournalError(
+        "The journal " + file.string() +
+            " was moved, deleted or replaced while the service ran. Results wait in the inboxes: put "
+            "it back, or stop the service, restore a backup and start it again.",
+        true);
+}
+
 void Store::begin(Instant at) {
   if (in_batch) {
     rollback();
     throw JournalError("A batch was begun inside another (a fault of ours)", false);
   }
+  must_be_in_place();
   // IMMEDIATE: another writer is met here and waited for, not in the middle of the batch.
-  translating(file, [this] { database->exec("BEGIN IMMEDIATE"); });
+  try {
+    database->exec("BEGIN IMMEDIATE");
+  } catch (const SQLite::Exception& error) {
+    doubtful = doubtful || is_disk_trouble(error);
+    throw to_journal_error(error, file);
+  }
   in_batch = true;
   now = at;
   committed = tallies;
@@ -140,6 +166,24 @@ void Journal::commit() {
 }
 void Journal::rollback() noexcept {
   impl_->rollback();
+}
+void Journal::recover() {
+  if (!impl_->doubtful) return;
+  const auto file = impl_->file;
+  journal::translating(file, [&] {
+    if (!std::filesystem::exists(file))
+      throw JournalError("The journal " + file.string() + " is gone.", true);
+    // The old connection goes last: as long as one is open, what was not committed does not come back from
+    // the log.
+    auto fresh = std::make_unique<Impl>(file.parent_path());
+    if (!fresh->continues(impl_->source, impl_->head))
+      throw JournalError(
+          "The journal " + file.string() +
+              " is not the one that was open, or lacks what was committed. Stop the service and restore a "
+              "backup with `agreed restore CONFIG FILE`.",
+          false);
+    impl_ = std::move(fresh);
+  });
 }
 
 }  // namespace agreed

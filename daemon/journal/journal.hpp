@@ -35,12 +35,17 @@ class Journal {
   void begin(Instant now);
   void commit();
   void rollback() noexcept;
+  /// To be called after a failed batch, before anything is read: if a write or a sync went wrong, what the
+  /// connection holds in memory is not trusted, and the database is opened anew. It must be the same journal,
+  /// with nothing of what was committed missing; throws JournalError.
+  void recover();
 
   /// The file's row id if `analyzer` gave this content before and it was read without a rejected row.
   [[nodiscard]] bool knows_content(std::string_view analyzer, std::string_view sha256);
   /// The same file (analyzer, name, content) if it was begun and not finished: after a crash between two
-  /// of its batches it is gone through again under that id. Also if it was finished as done or repeated and
-  /// has the same mtime: after a crash between its last commit and its move.
+  /// of its batches it is gone through again under that id. Also if it was finished and has the same mtime:
+  /// after a crash between its last commit and its move. A rejected one only if it was not renamed since: one
+  /// that somebody moved back from rejected/ is a new file.
   [[nodiscard]] std::optional<BegunFile> begun_file(const JournalFile& file);
   /// Begins a file; `outcome` is set by finish_file in this batch or a later one.
   std::int64_t add_file(const JournalFile& file);

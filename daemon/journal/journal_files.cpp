@@ -36,12 +36,15 @@ std::optional<BegunFile> Journal::begun_file(const JournalFile& file) {
     if (!analyzer) return std::nullopt;
     Query row = impl_->query(
         "SELECT f.id, o.file IS NOT NULL FROM files f LEFT JOIN file_outcomes o ON o.file = f.id "
-        "WHERE f.analyzer = ? AND f.sha256 = ? AND f.name = ? AND "
-        "(o.file IS NULL OR (o.outcome <> 'rejected' AND f.mtime_ns = ?)) ORDER BY f.id DESC LIMIT 1");
+        "WHERE f.analyzer = ? AND f.sha256 = ? AND f.name = ? AND (o.file IS NULL OR (f.mtime_ns = ? AND "
+        "(o.outcome <> 'rejected' OR "
+        " ? < (SELECT committed_at + 1 FROM batches WHERE sequence = o.batch) * 1000000))) "
+        "ORDER BY f.id DESC LIMIT 1");
     row->bind(1, *analyzer);
     row->bind(2, file.sha256);
     row->bind(3, file.name.data(), static_cast<int>(file.name.size()));  // a BLOB, as stored
     row->bind(4, file.mtime_ns);
+    row->bind(5, file.status_ns);
     if (!row->executeStep()) return std::nullopt;
     BegunFile begun{row->getColumn(0).getInt64(), row->getColumn(1).getInt() != 0, {}};
     Query rejected = impl_->query("SELECT line, field FROM rejected_rows WHERE file = ?");

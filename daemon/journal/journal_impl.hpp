@@ -39,7 +39,11 @@ struct Store {
   std::string source;
   ChainHead head;
   bool in_batch = false;
+  bool doubtful = false;  ///< the disk did not do what was asked: the connection is not trusted
   Instant now{};
+
+  /// Whether the chain of this store goes on from `head` of the journal `source`.
+  [[nodiscard]] bool continues(const std::string& source_before, const ChainHead& head_before);
 
   void begin(Instant at);
   void commit();
@@ -55,6 +59,7 @@ struct Store {
       return step();
     } catch (const SQLite::Exception& error) {
       const JournalError told = to_journal_error(error, file);
+      doubtful = doubtful || is_disk_trouble(error);
       rollback();
       throw told;
     } catch (...) {
@@ -71,6 +76,7 @@ struct Store {
   [[nodiscard]] std::int64_t analyzer_of_file(std::int64_t id);
 
  private:
+  void must_be_in_place();
   void write_arrivals();
   void write_batch(const ChainHead& next);
   void load_identity();

@@ -1,6 +1,7 @@
 #pragma once
 // What goes into the journal and comes out of it.
 #include <cstdint>
+#include <limits>
 #include <optional>
 #include <stdexcept>
 #include <string>
@@ -13,11 +14,14 @@
 namespace agreed {
 
 /// The journal cannot be used or a batch could not be written; what() is for people. `retry`: the cause may
-/// go away by itself (disk full, locked), so keep the work and try again.
+/// go away by itself (disk full, locked), so keep the work and try again. `damaged`: the file itself cannot
+/// be trusted.
 class JournalError : public std::runtime_error {
  public:
-  JournalError(const std::string& what, bool retry_later) : std::runtime_error(what), retry(retry_later) {}
+  JournalError(const std::string& what, bool retry_later, bool is_damaged = false)
+      : std::runtime_error(what), retry(retry_later), damaged(is_damaged) {}
   bool retry;
+  bool damaged;
 };
 
 enum class StoredKind : std::uint8_t { check = 0, split = 1 };
@@ -64,6 +68,7 @@ struct JournalFile {
   std::string analyzer, name, sha256;
   std::uint64_t size = 0;
   std::int64_t mtime_ns = 0;
+  std::int64_t status_ns = std::numeric_limits<std::int64_t>::max();  ///< as in FileIdentity; not stored
 };
 
 /// A file of which some batches were committed (`finished`: all), and where its rejected rows so far were
@@ -86,6 +91,8 @@ struct IntakeTotals {
 struct ChainHead {
   std::int64_t sequence = 0;
   std::string sha256;  ///< hex
+
+  friend bool operator==(const ChainHead&, const ChainHead&) = default;
 };
 
 /// A message in the outbox.

@@ -48,8 +48,12 @@ int pragma(SQLite::Database& database, const char* name) {
 }
 
 void copy_before(SQLite::Database& database, const fs::path& file, int schema) {
+  // Under its name only when it is whole: a start that fails here must not leave half a copy each time.
+  const fs::path part = file.parent_path() / "journal.before-schema.unfinished";
   const std::string stem = "journal.before-schema-" + std::to_string(schema + 1);
-  copy_database(database, free_name(file.parent_path() / stem, ".sqlite"));
+  remove_unfinished(part);
+  copy_database(database, part);
+  rename_to_free(part, free_name(file.parent_path() / stem, ".sqlite"));
   make_lasting(file.parent_path());
 }
 
@@ -67,9 +71,19 @@ void apply(SQLite::Database& database, const Migration& step) {
 
 }  // namespace
 
+fs::path restoring_file(const fs::path& file) {
+  return file.parent_path() / "journal.restoring.sqlite";
+}
+
 void create_if_missing(const fs::path& file, Instant now) {
   std::error_code failure;
   fs::create_directories(file.parent_path(), failure);
+  if (fs::exists(restoring_file(file)))
+    throw JournalError(
+        "A restore of the journal " + file.string() +
+            " was interrupted: what it put aside may lack its write-ahead log. Run `agreed restore "
+            "CONFIG FILE` once more.",
+        false);
   if (fs::exists(file)) {
     if (fs::file_size(file) == 0) throw damaged(file, "it is empty");
     return;
@@ -96,6 +110,8 @@ void copy_database(SQLite::Database& database, const fs::path& copy) {
 void check_usable(SQLite::Database& database, const fs::path& file, int schema) {
   translating(file, [&] {
     const int id = pragma(database, "application_id"), version = pragma(database, "user_version");
+    std::error_code ignored;
+    if (fs::file_size(file, ignored) == 0) throw damaged(file, "it is empty");
     if (id != kApplicationId)
       throw JournalError(file.string() +
                              " is a SQLite database but not a journal of this program. Move it away, or name "

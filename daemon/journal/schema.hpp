@@ -24,6 +24,9 @@ struct Migration {
 /// that is gone while its write-ahead log is still there.
 void create_if_missing(const std::filesystem::path& file, Instant now);
 
+/// Where a restored journal waits while what it replaces is put aside. A service does not start beside it.
+[[nodiscard]] std::filesystem::path restoring_file(const std::filesystem::path& file);
+
 /// A consistent, lasting copy at `copy`, which must not exist.
 void copy_database(SQLite::Database& database, const std::filesystem::path& copy);
 

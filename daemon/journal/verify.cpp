@@ -54,25 +54,35 @@ class RowStream {
 
 class Verifier {
  public:
-  explicit Verifier(SQLite::Database& database) : database_(database) {
-    for (std::size_t i = 0; i < journal::kTables; ++i)
-      tables_.push_back(
-          std::make_unique<RowStream>(database, journal::shape_of(static_cast<journal::Table>(i))));
-  }
+  Verifier(SQLite::Database& database, std::span<const ChainHead> kept) : database_(database), kept_(kept) {}
 
   JournalProof run() {
-    check_structure();
-    start_chain();
-    SQLite::Statement batches(
-        database_, "SELECT sequence, previous, sha256, committed_at FROM batches ORDER BY sequence");
-    while (batches.executeStep()) check_batch(batches);
-    if (first_waiting() != nullptr) fault("There are rows of batches after the newest one");
+    try {
+      check_structure();
+      check_outbox();
+      check_chain();
+      check_kept_beyond_the_end();
+    } catch (const SQLite::Exception& error) {
+      if (!journal::is_damage(error)) throw;
+      fault(std::string("The database cannot be read to its end: ") + error.what());
+    }
     return std::move(proof_);
   }
 
  private:
   void fault(const std::string& words) {
     if (proof_.faults.size() < kMostFaults) proof_.faults.push_back(words);
+  }
+
+  void check_chain() {
+    for (std::size_t i = 0; i < journal::kTables; ++i)
+      tables_.push_back(
+          std::make_unique<RowStream>(database_, journal::shape_of(static_cast<journal::Table>(i))));
+    start_chain();
+    SQLite::Statement batches(
+        database_, "SELECT sequence, previous, sha256, committed_at FROM batches ORDER BY sequence");
+    while (batches.executeStep()) check_batch(batches);
+    if (first_waiting() != nullptr) fault("There are rows of batches after the newest one");
   }
 
   void check_structure() {
@@ -87,10 +97,49 @@ class Verifier {
             foreign.getColumn(2).getString() + " that is not there");
   }
 
+  // The outbox has no hash of its own: it must say what the messages and the tries say.
+  void check_outbox() {
+    SQLite::Statement wrong(database_, R"sql(
+      SELECT m.id, o.message IS NULL OR o.route <> m.route FROM messages m LEFT JOIN outbox o ON o.message = m.id
+      WHERE o.message IS NULL OR o.route <> m.route OR o.state <> coalesce((
+        SELECT e.state FROM (
+          SELECT batch, position, CASE WHEN delivered THEN 'delivered' WHEN given_up THEN 'undeliverable'
+                                       ELSE 'waiting' END AS state FROM delivery_tries WHERE message = m.id
+          UNION ALL SELECT batch, position, 'waiting' FROM resends WHERE message = m.id) e
+        ORDER BY e.batch DESC, e.position DESC LIMIT 1), 'waiting'))sql");
+    while (wrong.executeStep()) {
+      const std::string which = "Message " + std::to_string(wrong.getColumn(0).getInt64());
+      fault(which + (wrong.getColumn(1).getInt() != 0
+                         ? " is missing in the outbox or goes to another route there"
+                         : " has another state in the outbox than its tries give"));
+    }
+  }
+
   void start_chain() {
     SQLite::Statement meta(database_, "SELECT source, created_at FROM meta");
     meta.executeStep();
     proof_.head.sha256 = journal::chain_start(meta.getColumn(0).getString(), instant(meta.getColumn(1)));
+    look_for_kept();
+  }
+
+  /// Compares the batch the chain has come to with what was kept elsewhere.
+  void look_for_kept() {
+    for (const ChainHead& kept : kept_) {
+      if (kept.sequence != proof_.head.sequence || kept == proof_.head) continue;
+      proof_.not_found.push_back(kept);
+      fault("Batch " + std::to_string(kept.sequence) +
+            " has another hash than the one kept elsewhere: history up to it was written anew");
+    }
+  }
+
+  void check_kept_beyond_the_end() {
+    for (const ChainHead& kept : kept_) {
+      if (kept.sequence <= proof_.head.sequence) continue;
+      proof_.not_found.push_back(kept);
+      fault("The chain ends with batch " + std::to_string(proof_.head.sequence) +
+            ", and the head kept elsewhere is batch " + std::to_string(kept.sequence) +
+            ": what came after was cut off");
+    }
   }
 
   /// The stream whose next row was written first; null when all are read.
@@ -119,6 +168,7 @@ class Verifier {
       fault(which + ": its rows do not give its hash; a row was changed, added or removed");
     ++proof_.batches;
     proof_.head = {sequence, stored};
+    look_for_kept();
   }
 
   void write_rows(std::int64_t sequence, const std::string& which) {
@@ -137,6 +187,7 @@ class Verifier {
   }
 
   SQLite::Database& database_;
+  std::span<const ChainHead> kept_;
   std::vector<std::unique_ptr<RowStream>> tables_;
   BatchText text_;
   JournalProof proof_;
@@ -144,14 +195,26 @@ class Verifier {
 
 }  // namespace
 
-JournalProof verify_journal(const std::filesystem::path& folder) {
-  const auto file = journal::database_file(folder);
-  return journal::translating(file, [&file] {
-    const auto database = journal::open_reader(file);
-    journal::check_usable(*database, file);
-    database->exec("BEGIN");
-    return Verifier(*database).run();
-  });
+JournalProof verify_database(const std::filesystem::path& database, std::span<const ChainHead> kept) {
+  try {
+    return journal::translating(database, [&] {
+      const auto connection = journal::open_reader(database);
+      journal::check_usable(*connection, database);
+      connection->exec("BEGIN");
+      return Verifier(*connection, kept).run();
+    });
+  } catch (const JournalError& error) {
+    if (!error.damaged) throw;
+    return {.batches = 0, .rows = 0, .head = {}, .not_found = {}, .faults = {error.what()}};
+  }
+}
+
+std::filesystem::path database_of(const std::filesystem::path& folder) {
+  return journal::database_file(folder);
+}
+
+JournalProof verify_journal(const std::filesystem::path& folder, std::span<const ChainHead> kept) {
+  return verify_database(journal::database_file(folder), kept);
 }
 
 }  // namespace agreed

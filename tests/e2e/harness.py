@@ -51,7 +51,11 @@ class Receiver:
             protocol_version = "HTTP/1.1"
 
             def do_POST(self):
-                body = self.rfile.read(int(self.headers["Content-Length"]))
+                length = int(self.headers["Content-Length"])
+                body = self.rfile.read(length)
+                if len(body) < length:  # the sender is gone in the middle of it
+                    self.close_connection = True
+                    return
                 with outer.lock:
                     status = outer.answer(len(outer.got)) if callable(outer.answer) else outer.answer
                     outer.got.append({"path": self.path, "headers": dict(self.headers), "body": body, "event": json.loads(body),
@@ -134,10 +138,14 @@ class Site:
         self.config.write_text(config or CONFIG.format(port=port, rescan=rescan, decimals=decimals, routes=routes))
         self.process = None
         self.base = None
+        self.environment = {}  # what the service gets beside this process's own
 
     def start(self, wait_ready=True, user=None):
+        if hasattr(self, "log"):
+            self.log.close()
         self.log = open(self.folder / "log", "ab")
-        self.process = subprocess.Popen([AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log, user=user)
+        self.process = subprocess.Popen([AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log, user=user,
+                                        env={**os.environ, **self.environment})
         line = self.process.stdout.readline().decode()
         if "http://" not in line:
             self.process.wait(10)

@@ -262,6 +262,22 @@ TEST_CASE("after a fold: opens what holds, resolves what does not, leaves others
   CHECK(book.reconcile(std::vector{lost}, {}, "late_data", at_hour(2)).empty());
 }
 
+TEST_CASE("after a restart an alert that still holds reads as it was told; what is missing is opened") {
+  auto book = empty_book();
+  (void)book.apply(unstable(), at_hour(0));
+  auto later = unstable();
+  later.details = {{"readings_since", 18.0}};
+  later.started_at = at_hour(-5);
+  auto other = unstable();
+  other.subject.standard = "wheat-high";
+  const auto told = *book.find_current(later.kind, later.subject);
+  const auto transitions = book.reconcile(std::vector{later, other}, {}, "late_data", at_hour(1), false);
+  CHECK(only(transitions).alert.subject == other.subject);
+  CHECK(*book.find_current(later.kind, later.subject) == told);
+  CHECK(only(book.reconcile(std::vector{later, other}, {}, "configuration_changed", at_hour(2))).change ==
+        AlertChange::changed);
+}
+
 TEST_CASE("after a fold of some streams only their alerts are compared") {
   auto book = empty_book();
   (void)book.apply(unstable(), at_hour(0));

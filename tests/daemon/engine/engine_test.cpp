@@ -7,6 +7,7 @@
 
 #include <doctest/doctest.h>
 
+#include "core/alert/details.hpp"
 #include "mill_engine.hpp"
 
 using namespace agreed;
@@ -171,6 +172,19 @@ TEST_CASE("a rejected file that is moved back is a new one") {
   for (int i = 1; i <= 2; ++i) {
     CHECK(mill.give(file("bad.csv", {}, {bad_row(2)})).outcome == FileOutcome::rejected);
     CHECK(mill.now()->totals.files_rejected == i);
+  }
+}
+
+TEST_CASE("a rejected file that a crash kept from being moved is the same one, and told once") {
+  Mill mill;
+  mill.start();
+  FilePiece piece = file("bad.csv", {}, {bad_row(2)});
+  piece.file.status_ns = 1;  // not renamed since it was committed
+  for (int i = 0; i < 2; ++i) {
+    CHECK(mill.give(piece).outcome == FileOutcome::rejected);
+    CHECK(mill.now()->totals.files_rejected == 1);
+    CHECK(mill.now()->totals.readings_rejected == 1);
+    CHECK(number_in(find(*mill.now(), AlertKind::file_rejected)->details, "count") == 1.0);
   }
 }
 

@@ -75,3 +75,13 @@ TEST_CASE("nothing to do: take comes back after its patience") {
   CHECK(queue.take(1s).tick);
   CHECK(queue.inboxes()[0].reachable);
 }
+
+TEST_CASE("what waits behind a piece that failed fails too, of that analyzer only") {
+  WorkQueue queue(2);
+  auto later = queue.put(piece(0, 2h));
+  auto other = queue.put(piece(1, 3h));
+  queue.refuse_waiting({0}, "disk full");
+  CHECK_THROWS_WITH((void)later.get(), "disk full");
+  CHECK(other.wait_for(0s) == std::future_status::timeout);
+  CHECK(queue.take(1s).pieces.size() == 1);
+}

@@ -129,3 +129,49 @@ TEST_CASE("what a scan does not show is forgotten, unless it is being taken") {
   CHECK(waiting.files.size() == 2);
   CHECK(waiting.due(100s) == Names{"there"});
 }
+
+TEST_CASE("a newer file waits for an older one that a scan found, and they come in order") {
+  Waiting waiting;
+  waiting.files.see("reading", stamp(5, 1), Notice::scan, waiting.at(0s));
+  waiting.files.see("void", stamp(5, 2), Notice::renamed_in, waiting.at(1s));
+  waiting.files.see("backfill", stamp(5, 0), Notice::renamed_in, waiting.at(1s));
+  CHECK(waiting.due(1s) == Names{"backfill"});  // older than what waits
+  CHECK(waiting.files.next_due() == waiting.at(2s));
+  CHECK(waiting.due(2s) == Names{"reading", "void"});
+}
+
+TEST_CASE("an older file that is still being written, empty or unfinished holds nothing up") {
+  Waiting waiting;
+  waiting.files.see("written", stamp(5, 1), Notice::scan, waiting.at(0s));
+  waiting.files.see("written", stamp(6, 2), Notice::scan, waiting.at(1s));
+  waiting.files.see("created", stamp(6, 2), Notice::created, waiting.at(1s));
+  waiting.files.see("empty", stamp(0, 2), Notice::scan, waiting.at(1s));
+  waiting.files.see("unfinished", stamp(5, 2), Notice::scan, waiting.at(-2s));
+  CHECK(waiting.due(1s) == Names{"unfinished"});
+  CHECK(waiting.files.wait_unfinished("unfinished", waiting.at(1s)));
+  waiting.files.see("new", stamp(5, 3), Notice::closed, waiting.at(1s));
+  CHECK(waiting.due(1s) == Names{"new"});
+}
+
+TEST_CASE(
+    "a newer file waits for an older one that could not be committed, but not for one that cannot be read") {
+  Waiting waiting;
+  waiting.files.see("a", stamp(5, 1), Notice::closed, waiting.at(0s));
+  CHECK(waiting.due(0s) == Names{"a"});
+  SUBCASE("could not be committed") {
+    waiting.files.retry_at_scan("a", true);
+    waiting.files.see("b", stamp(5, 2), Notice::closed, waiting.at(1s));
+    CHECK(waiting.due(1s).empty());
+    CHECK_FALSE(waiting.files.next_due());  // the next scan is what they wait for
+    waiting.files.begin_scan();
+    waiting.files.see("b", stamp(5, 2), Notice::scan, waiting.at(3s));
+    waiting.files.see("a", stamp(5, 1), Notice::scan, waiting.at(3s));
+    waiting.files.end_scan();
+    CHECK(waiting.due(3s) == Names{"a", "b"});
+  }
+  SUBCASE("cannot be read") {
+    waiting.files.retry_at_scan("a");
+    waiting.files.see("b", stamp(5, 2), Notice::closed, waiting.at(1s));
+    CHECK(waiting.due(1s) == Names{"b"});
+  }
+}
