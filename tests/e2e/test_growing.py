@@ -198,6 +198,64 @@ class Growing(SiteTest):
         self.wait_for(rows)
 
 
+MILL_EXPORT = """\
+formats:
+  mill_export:
+    delimiter: ";"
+    decimal: ","
+    encoding: utf-16le
+    mode: growing
+    files: "*.csv"
+    time: {column: Datum, pattern: "%d.%m.%Y %H:%M:%S"}
+    item: {column: Probe}
+    kind: {check_when_item_matches: "^CS-", otherwise: split}
+    items: {"CS-LOW": wheat-low}
+    values: {protein: "Prot %"}
+"""
+
+
+class GrowingMapped(SiteTest):
+    """The analyzer's own export, in a character set of two bytes."""
+
+    def test_it_is_read_on_through_rotation_half_characters_and_another_order_of_columns(self):
+        config = CONFIG.format(port=0, rescan="1s", decimals=2, routes="    []")
+        site = self.make_site(config=config.replace("line1: {inbox", "line1: {format: mill_export, inbox") + MILL_EXPORT).start()
+        export = site.inbox("line1") / "export.csv"
+        rows = [f"CS-LOW;0{i + 1}.02.2026 06:00:00;10,6{i}\r\n" for i in range(6)]
+        header = "Probe;Datum;Prot %\r\n"
+
+        def append(text, path=export, cut=0):
+            data = text.encode("utf-16le")
+            with open(path, "ab") as file:
+                file.write(data[:len(data) - cut])
+            return data[len(data) - cut:]
+
+        def wait_for(count):
+            wait_until(lambda: site.get("/api/status")["intake"]["readings"]["accepted"] == count, f"{count} readings are taken in")
+            self.assertEqual(site.get("/api/status")["intake"]["readings"]["rejected"], 0)
+        append(header + rows[0])
+        wait_for(1)
+        rest = append(rows[1], cut=1)  # between the two bytes of the line end
+        with open(export, "ab") as file:
+            file.write(rest)
+        wait_for(2)
+        old = export.with_name("export.old")  # a name that is not read
+        os.rename(export, old)
+        append(rows[2], old)
+        append(header + rows[3])
+        wait_for(4)
+        turned = lambda row: ";".join(reversed(row.strip().split(";"))) + "\r\n"
+        append(turned(header) + turned(rows[4]))
+        wait_for(5)
+        site.kill()
+        append(turned(rows[5]))
+        site.start()
+        wait_for(6)
+        values = [p["value"] for p in site.get("/api/charts/line1/wheat-low/protein?points=500")["points"]]
+        self.assertEqual(values, [10.60, 10.61, 10.62, 10.63, 10.64, 10.65])
+        self.assertEqual(site.get("/api/status")["intake"]["readings"]["repeated"], 0)
+
+
 if __name__ == "__main__":
     import unittest
     unittest.main()
