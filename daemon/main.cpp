@@ -14,9 +14,7 @@ namespace {
 
 struct Doer {
   int operator()(const agreed::RunCommand& command) const { return agreed::run_service(command.config); }
-  int operator()(const agreed::CheckCommand& command) const {
-    return agreed::check_configuration(command);
-  }
+  int operator()(const agreed::CheckCommand& command) const { return agreed::check_configuration(command); }
   int operator()(const agreed::ExampleCommand& command) const {
     return agreed::write_example(command.folder);
   }
