@@ -110,8 +110,8 @@ struct LastMessage {
   bool waits = false;
 };
 
-/// A route that fails: since when its oldest message tried in vain waits, and what the newest try was answered
-/// (0: nothing).
+/// A route that fails: since when its oldest message tried in vain waits, and what the newest try was
+/// answered (0: nothing).
 struct FailingDelivery {
   Instant since{};
   int status = 0;

@@ -14,10 +14,11 @@ extern "C" int LLVMFuzzerTestOneInput(const std::uint8_t* data, std::size_t size
   const Gated gated = look_at(bytes, limits);
   if (gated.head_complete && gated.refusal.status == 0) {
     if (gated.head_length > limits.head + 4 || gated.body_length > limits.body) std::abort();
-    // What the library gets is what was looked at: looking at it again changes nothing.
-    const Gated again = look_at(gated.head, limits);
-    if (again.refusal.status != 0 || again.target != gated.target || again.body_length != gated.body_length)
-      std::abort();
+    // The library gets one request, the one that was looked at.
+    const std::string begin = gated.method + " " + gated.target + " HTTP/1.";
+    if (!gated.head.starts_with(begin) || gated.head.find("\r\n\r\n") != gated.head.size() - 4) std::abort();
+    for (std::size_t i = 0; i < gated.head.size(); ++i)
+      if ((gated.head[i] == '\n' && gated.head[i - 1] != '\r') || gated.head[i] == '\0') std::abort();
     if (const auto target = take_apart(gated.target)) {
       for (const std::string& segment : target->segments)
         if (segment.empty() || segment.size() > 64 || segment == ".." || segment == ".") std::abort();
