@@ -36,13 +36,6 @@ enum class Type {
   number_list,
 };
 
-/// What this version does not do yet with a key, or with some of its words.
-enum class Later {
-  no,
-  warned,   ///< accepted, with a warning that it has no effect
-  refused,  ///< an error, since ignoring it would mislead
-};
-
 struct SettingRow {
   std::string_view key;  ///< "analyzers.*.inbox"; of a row `like` another the rows below are the other's
   Type type = Type::text;
@@ -53,8 +46,6 @@ struct SettingRow {
   double least = 0, most = 0;  ///< of numbers, and of durations in milliseconds; both 0: any
   bool above_least = false;    ///< `least` itself is too little
   bool is_required = false;
-  Later later = Later::no;
-  std::string_view later_choices;  ///< only these words; empty: the key as such
 
   [[nodiscard]] constexpr SettingRow within(double low, double high) const {
     SettingRow row = *this;
@@ -80,12 +71,6 @@ struct SettingRow {
   [[nodiscard]] constexpr SettingRow required() const {
     SettingRow row = *this;
     row.is_required = true;
-    return row;
-  }
-  [[nodiscard]] constexpr SettingRow coming(Later what, std::string_view words = "") const {
-    SettingRow row = *this;
-    row.later = what;
-    row.later_choices = words;
     return row;
   }
   [[nodiscard]] bool has_range() const { return least < most; }

@@ -11,8 +11,6 @@
 namespace agreed::settings_file {
 namespace {
 
-constexpr const char* kNotYet = "not available in this version yet";
-
 std::string kind_words(const TreeNode& node) {
   switch (node.kind) {
     case NodeKind::empty:
@@ -72,7 +70,6 @@ class Validator {
   }
 
   void value(const TreeNode& node, const SettingRow& row, const std::string& path) {
-    not_yet(node, row, path);
     switch (row.type) {
       case Type::section:
         return fixed_section(node, row, path);
@@ -92,20 +89,6 @@ class Validator {
         return node.kind == NodeKind::map ? fixed_section(node, row, path) : scalar(node, row, path);
       default:
         return scalar(node, row, path);
-    }
-  }
-
-  void not_yet(const TreeNode& node, const SettingRow& row, const std::string& path) {
-    if (row.later == Later::no) return;
-    const auto words = words_of(row.later_choices);
-    if (!words.empty()) {
-      const bool concerned =
-          node.kind == NodeKind::scalar && std::find(words.begin(), words.end(), node.text) != words.end();
-      if (concerned) problems_.error(node.at, path, "found " + shown(node.text) + ", which is " + kNotYet);
-    } else if (row.later == Later::refused) {
-      problems_.error(node.key_at, path, kNotYet);
-    } else {
-      problems_.warning(node.key_at, path, std::string(kNotYet) + "; it has no effect");
     }
   }
 

@@ -228,6 +228,7 @@ std::vector<GrowingState> GrowingIntake::states() const {
   std::sort(newest.begin(), newest.end(),
             [](const Followed* a, const Followed* b) { return a->name < b->name; });
   std::vector<GrowingState> states;
+  states.reserve(newest.size());
   for (const Followed* followed : newest)
     states.push_back({followed->name, followed->taken,
                       followed->seen.size > followed->taken ? followed->seen.size - followed->taken : 0});

@@ -15,7 +15,8 @@ constexpr char kUnreadable = '\xFF';
 
 TextDecoder::TextDecoder(const std::string& encoding)
     : state_(iconv_open("UTF-8", encoding.c_str())), unit_(encoding.starts_with("utf-16") ? 2 : 1) {
-  if (state_ == reinterpret_cast<iconv_t>(-1))
+  if (state_ ==
+      reinterpret_cast<iconv_t>(-1))  // NOLINT(performance-no-int-to-ptr): iconv's own sign of failure
     throw std::runtime_error("the system knows no character set " + encoding);
 }
 

@@ -233,7 +233,7 @@ std::vector<Fault> faults_between_keys() {
   };
 }
 
-std::vector<Fault> faults_of_what_comes_later() {
+std::vector<Fault> faults_of_formats() {
   return {
       {"a format nobody knows",
        with("line1: {inbox: drop/line1}", "line1: {inbox: drop/line1, format: plian}"), 4, 38,
@@ -294,8 +294,59 @@ TEST_CASE("faults of values are told at their place") {
 TEST_CASE("faults between keys are told at their place") {
   check_each(faults_between_keys());
 }
-TEST_CASE("what this version cannot do yet is an error where ignoring it would mislead") {
-  check_each(faults_of_what_comes_later());
+TEST_CASE("a format that is not there is told with the nearest") {
+  check_each(faults_of_formats());
+}
+TEST_CASE("faults of a format are told at their key") {
+  const std::string format =
+      "formats:\n"
+      "  mill:\n"
+      "    delimiter: \";\"\n"
+      "    time: {column: Datum, pattern: \"%d.%m.%Y %H:%M:%S\"}\n"
+      "    item: {column: Probe}\n"
+      "    kind: {check_when_item_matches: \"^CS-\"}\n"
+      "    values: {protein: \"Prot %\"}\n";
+  REQUIRE(parse_config(kGood + format, "/nowhere/agreed.yaml").config);
+  struct FormatFault {
+    const char *find, *replacement, *key, *message;
+  };
+  const std::vector<FormatFault> faults = {
+      {"delimiter: \";\"", "delimiter: ab", "formats.mill.delimiter", "one character"},
+      {"delimiter: \";\"", "decimal: x", "formats.mill.decimal", "expected"},
+      {"delimiter: \";\"", "decimal: \",\"\n    thousands: \",\"", "formats.mill.thousands",
+       "which is the decimal sign"},
+      {"delimiter: \";\"", "type: json\n    mode: growing", "formats.mill.mode", "cannot be appended to"},
+      {"delimiter: \";\"", "header: false", "formats.mill.time.column", "the file has no header"},
+      {"delimiter: \";\"", "encoding: latin-77", "formats.mill.encoding", "expected"},
+      {"delimiter: \";\"", "delimitter: \";\"", "formats.mill.delimitter", "delimiter"},
+      {"column: Datum, ", "", "formats.mill.time", "found no column"},
+      {"column: Datum, ", "columns: [Datum], ", "formats.mill.time.columns", "expected two"},
+      {"%d.%m.%Y", "%d.%q.%Y", "formats.mill.time.pattern", "expected a pattern"},
+      {"    item: {column: Probe}\n", "", "formats.mill", "found no item"},
+      {"\"^CS-\"", "\"^CS-(\"", "formats.mill.kind.check_when_item_matches", "expected a pattern"},
+      {"protein: \"Prot %\"", "protien: \"Prot %\"", "formats.mill.values.protien", "protein"},
+      {"    values: {protein: \"Prot %\"}\n", "", "formats.mill", "found no results"},
+      {"    values: {protein: \"Prot %\"}\n", "    value: {column: V}\n", "formats.mill",
+       "without its measurand"},
+      {"    values:", "    x: X\n    values:", "formats.mill", "the one or the other"},
+  };
+  for (const FormatFault& fault : faults) {
+    std::string text = format;
+    const std::size_t at = text.find(fault.find);
+    REQUIRE_MESSAGE(at != std::string::npos, fault.find);
+    text.replace(at, std::string(fault.find).size(), fault.replacement);
+    const ConfigResult result = parse_config(kGood + text, "/nowhere/agreed.yaml");
+    INFO(text);
+    CHECK_FALSE(result.config.has_value());
+    const bool told =
+        std::any_of(result.problems.begin(), result.problems.end(), [&](const ConfigProblem& p) {
+          return !p.warning && p.line > 30 && p.key == fault.key &&
+                 p.message.find(fault.message) != std::string::npos;
+        });
+    std::string all;
+    for (const ConfigProblem& problem : result.problems) all += to_string(problem, "f") + '\n';
+    CHECK_MESSAGE(told, fault.key << ": " << all);
+  }
 }
 
 TEST_CASE("all faults are told at once, in the order of the file") {
