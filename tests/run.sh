@@ -7,4 +7,5 @@ sh deploy/build.sh
 labels=${AGREED_TESTS:-quick e2e slow}
 pattern=$(printf '%s' "$labels" | sed 's/  */|/g')
 cd "${AGREED_BUILD_DIR:-build}"
-exec ctest --output-on-failure -j2 -L "^($pattern)\$"
+# One more at a time than processors: many of them mostly wait.
+exec ctest --output-on-failure -j"$(($(nproc) + 1))" -L "^($pattern)\$"

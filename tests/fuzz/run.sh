@@ -15,9 +15,20 @@ run() {
   "$build/tests/fuzz/fuzz_$1" -max_total_time="$seconds" -max_len=4096 -timeout=20 -rss_limit_mb=2048 \
     -artifact_prefix="$build/crash-$1-" "$build/found/$1" "tests/fuzz/corpus/$1" > "$build/fuzz_$1.log" 2>&1
 }
+targets="${*:-csv json_lines json_array mapped config http}"
+mkdir -p "$build/clean"
+# As many at a time as there are processors.
+started=0
+for target in $targets; do
+  rm -f "$build/clean/$target"
+  (if run "$target"; then : > "$build/clean/$target"; fi) &
+  started=$((started + 1))
+  [ $((started % $(nproc))) -ne 0 ] || wait
+done
+wait
 bad=0
-for target in ${*:-csv json_lines json_array mapped config http}; do
-  if run "$target"; then
+for target in $targets; do
+  if [ -e "$build/clean/$target" ]; then
     echo "fuzz_$target: $(grep -o 'Done [0-9]* runs in [0-9]* second(s)' "$build/fuzz_$target.log")"
   else
     tail -40 "$build/fuzz_$target.log"
