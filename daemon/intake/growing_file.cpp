@@ -1,8 +1,11 @@
 #include "daemon/intake/growing_file.hpp"
 
 #include <algorithm>
+#include <array>
 #include <system_error>
 #include <utility>
+
+#include "daemon/intake/line_end.hpp"
 
 namespace agreed {
 namespace {
@@ -38,15 +41,23 @@ std::string fingerprint_of(const FileContent& content, std::uint64_t size) {
   return hash.hex();
 }
 
-/// The position behind the first line end at or after `from`; nothing if there is none. In bounded memory.
-std::optional<std::uint64_t> line_end_after(const FileContent& content, std::uint64_t from) {
+LineEnd line_end_of(const PlainContext& context, const FileContent& content) {
+  std::array<char, 2> begin{};
+  const std::size_t got = content.read(0, begin);
+  return {context.mapped ? context.mapped->encoding : "utf-8", {begin.data(), got}};
+}
+
+/// The position behind the first line end at or after `from`, where a character begins; nothing if there is
+/// none. In bounded memory.
+std::optional<std::uint64_t> behind_line_end(const FileContent& content, const LineEnd& line_end,
+                                             std::uint64_t from) {
   std::vector<char> block(kBlock);
   for (std::uint64_t at = from;;) {
     const std::size_t got = content.read(at, block);
-    if (got == 0) return std::nullopt;
-    const std::size_t end = std::string_view(block.data(), got).find('\n');
-    if (end != std::string_view::npos) return at + end + 1;
-    at += got;
+    if (const auto behind = line_end.behind_first({block.data(), got})) return at + *behind;
+    const std::size_t whole = got - got % line_end.unit();
+    if (whole == 0) return std::nullopt;
+    at += whole;
   }
 }
 
@@ -117,11 +128,13 @@ bool GrowingFile::begins_as_taken(const FileContent& content) const {
 
 std::optional<FilePiece> GrowingFile::read_on(const FileContent& content, const std::string& name,
                                               Instant now) {
-  if (unusable_ || !line_end_after(content, taken_)) return std::nullopt;
+  if (unusable_) return std::nullopt;
+  const LineEnd line_end = line_end_of(context_, content);
+  if (!behind_line_end(content, line_end, taken_)) return std::nullopt;
   if (!reader_) begin_reader(content);
   reader_->set_now(now);
   const FileStamp stamp = content.stamp();
-  if (!feed_lines(content)) return std::nullopt;
+  if (!feed_lines(content, line_end)) return std::nullopt;
   reader_->pause();
   sha256_ = hash_.hex_so_far();
   remember(content);
@@ -155,7 +168,7 @@ void GrowingFile::feed(std::string_view bytes) {
 }
 
 /// Feeds whole lines until there are enough rows; false if there was none.
-bool GrowingFile::feed_lines(const FileContent& content) {
+bool GrowingFile::feed_lines(const FileContent& content, const LineEnd& line_end) {
   std::vector<char> block(kBlock);
   const std::uint64_t begin = taken_;
   const auto enough = [&] {
@@ -163,24 +176,16 @@ bool GrowingFile::feed_lines(const FileContent& content) {
   };
   while (!enough()) {
     const std::size_t got = content.read(taken_, block);
-    const std::size_t last = std::string_view(block.data(), got).rfind('\n');
-    if (last != std::string_view::npos) {
-      feed({block.data(), last + 1});
-      taken_ += last + 1;
+    if (const auto behind = line_end.behind_last({block.data(), got})) {
+      feed({block.data(), *behind});
+      taken_ += *behind;
       continue;
     }
-    const auto end = line_end_after(content, taken_ + got);  // of a line longer than a block
-    if (got == 0 || !end) break;
+    const auto end = behind_line_end(content, line_end, taken_);  // of a line longer than a block
+    if (!end) break;
     taken_ += each_block_between(content, taken_, *end, [&](std::string_view bytes) { feed(bytes); });
   }
-  if (taken_ == begin) return false;
-  // In UTF-16 with the low byte first the line end has a second byte.
-  char next = '\n';
-  if (content.read(taken_, {&next, 1}) == 1 && next == '\0') {
-    feed({&next, 1});
-    ++taken_;
-  }
-  return true;
+  return taken_ != begin;
 }
 
 void GrowingFile::remember(const FileContent& content) {

@@ -15,6 +15,8 @@
 
 namespace agreed {
 
+class LineEnd;
+
 /// Remembers how many bytes of a file were taken and what they were. A portion that is read counts as taken
 /// at once: when it could not be committed, throw this object away and place a new one. What stands before is
 /// recognised in full up to 1 MiB, beyond that by its first and last 512 KiB; place() always looks at all of
@@ -50,7 +52,7 @@ class GrowingFile {
   struct Collected;
 
   void begin_reader(const FileContent& content);
-  [[nodiscard]] bool feed_lines(const FileContent& content);
+  [[nodiscard]] bool feed_lines(const FileContent& content, const LineEnd& line_end);
   void feed(std::string_view bytes);
   void remember(const FileContent& content);
   void forget_all();

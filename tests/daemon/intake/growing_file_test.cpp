@@ -7,6 +7,7 @@
 #include <doctest/doctest.h>
 #include <fcntl.h>
 
+#include "tests/daemon/intake/read_mapped.hpp"
 #include "tests/daemon/intake/read_plain.hpp"
 #include "tests/daemon/intake/watched_folder.hpp"
 
@@ -25,6 +26,7 @@ struct Export {
   std::vector<TakenPortion> taken;
   std::vector<FilePiece> pieces;
   std::unique_ptr<GrowingFile> file;
+  std::shared_ptr<const MappedFormat> mapped;  ///< none: the plain format
 
   Export() { write_file(temp.path() / "a.csv", ""); }
 
@@ -46,7 +48,8 @@ struct Export {
                                                         standards_of(settings, {0}),
                                                         std::make_shared<LocalZone>("Europe/Dublin"),
                                                         {},
-                                                        kNow},
+                                                        kNow,
+                                                        mapped},
                                            PlainSyntax::csv, limits);
       file->place(content, taken);
     }
@@ -122,6 +125,50 @@ TEST_CASE(
     }
     REQUIRE(bad.size() == whole.bad_rows.size());
     for (std::size_t i = 0; i < bad.size(); ++i) CHECK(bad[i].line == whole.bad_rows[i].line);
+  }
+}
+
+TEST_CASE("a line of two-byte characters counts once both bytes of its end have come, wherever it was cut") {
+  for (const char* encoding : {"utf-16le", "utf-16be", "utf-16"}) {
+    CAPTURE(encoding);
+    const ConfigResult config = mill_with(std::string("    encoding: ") + encoding +
+                                          "\n"
+                                          "    time: {column: time}\n"
+                                          "    item: {column: item}\n"
+                                          "    notes: [remark]\n"
+                                          "    values: {protein: result}\n");
+    REQUIRE(config.config);
+    const bool big = encoding == std::string("utf-16be");
+    const auto wide = [&](std::u16string_view text) {
+      std::string bytes;
+      for (const char16_t c : text) {
+        const char low = static_cast<char>(c & 0xff), high = static_cast<char>(c >> 8);
+        bytes += {big ? high : low, big ? low : high};
+      }
+      return bytes;
+    };
+    // The remark has the bytes of a line end in it, and across two characters.
+    const std::string header = wide(encoding == std::string("utf-16") ? u"\uFEFF"
+                                                                        u"time,item,remark,result\r\n"
+                                                                      : u"time,item,remark,result\r\n");
+    const std::string row = wide(u"2026-01-05T06:00:00Z,S-1,\u010A\u0A41\u0100\u0A0A\u0100\u0A41,11.5\r\n");
+    const std::string other = wide(u"2026-01-05T07:00:00Z,S-2,,11.6\r\n");
+    for (std::size_t cut = 0; cut < row.size(); ++cut) {
+      CAPTURE(cut);
+      Export file;
+      file.mapped = config.config->intake[0].mapped;
+      file.append(header + row.substr(0, cut));
+      file.read();
+      CHECK(file.rows() == 0);
+      if (cut % 3 == 0) file.forget();
+      file.append(row.substr(cut));
+      file.read();
+      CHECK(file.rows() == 1);
+      file.forget();
+      file.append(other);
+      file.read();
+      CHECK(file.rows() == 2);
+    }
   }
 }
 
