@@ -6,6 +6,7 @@
 #include "config/config.hpp"
 #include "config/describe.hpp"
 #include "daemon/cli/check_sample.hpp"
+#include "daemon/cli/say_problems.hpp"
 #include "daemon/exit_codes.hpp"
 
 namespace agreed {
@@ -34,7 +35,7 @@ int check_configuration(const CheckCommand& command) {
   if (json) {
     print_json(result);
   } else {
-    for (const ConfigProblem& problem : result.problems) fmt::print(stderr, "{}\n", to_string(problem, file));
+    say_problems(result.problems, file);
     if (result.config) fmt::print("{}", describe(*result.config));
   }
   return result.config ? kDone : kWrongUse;

@@ -2,7 +2,6 @@
 
 #include <algorithm>
 #include <array>
-#include <chrono>
 #include <fstream>
 #include <memory>
 #include <optional>
@@ -13,6 +12,7 @@
 
 #include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
+#include "daemon/clock.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/intake/file_names.hpp"
 #include "daemon/intake/nearest_known.hpp"
@@ -146,7 +146,7 @@ PlainContext context_of(const Config& config, std::size_t analyzer) {
           standards_of(*config.settings, index),
           std::make_shared<LocalZone>(intake.zone),
           intake.not_before,
-          std::chrono::floor<Duration>(std::chrono::system_clock::now()),
+          now_utc(),
           intake.mapped};
 }
 

@@ -40,11 +40,51 @@ std::optional<ChainHead> head_of(const std::string& text) {
   return is_hash ? std::optional(head) : std::nullopt;
 }
 
+/// A command that reads a configuration.
+CLI::App& add_command(CLI::App& app, const char* name, const char* what, std::filesystem::path& config) {
+  CLI::App& sub = *app.add_subcommand(name, what);
+  sub.add_option("CONFIG", config, "the configuration file")->required();
+  return sub;
+}
+
+void add_json(CLI::App& sub, bool& json) {
+  sub.add_flag("--json", json, "print for programs");
+}
+
+void add_run(CLI::App& app, RunCommand& run) {
+  add_command(app, "run", "the service, in the foreground; SIGTERM or Ctrl-C ends it", run.config)
+      .footer("Example:\n  agreed run /etc/agreed/agreed.yaml");
+}
+
+void add_check(CLI::App& app, CheckCommand& check) {
+  CLI::App& sub = add_command(
+      app, "check",
+      "validates a configuration and shows the values in effect, or how a sample file would be read",
+      check.config);
+  add_json(sub, check.json);
+  CLI::Option* const sample =
+      sub.add_option("--sample", check.sample, "show how this file would be read, row by row");
+  CLI::Option* const analyzer =
+      sub.add_option("--analyzer", check.analyzer, "whose file the sample is: an id of analyzers");
+  sample->needs(analyzer);
+  analyzer->needs(sample);
+  sub.footer(
+      "Example:\n  agreed check /etc/agreed/agreed.yaml\n"
+      "  agreed check /etc/agreed/agreed.yaml --sample export.csv --analyzer line2\n\n"
+      "With --sample nothing is taken in; exit status 1 if a row could not be used.");
+}
+
+void add_example(CLI::App& app, ExampleCommand& example) {
+  CLI::App& sub = *app.add_subcommand(
+      "example", "writes a complete working configuration and a day's drop files to start from");
+  sub.add_option("DIR", example.folder, "a folder that does not exist yet, or is empty")->required();
+  sub.footer("Example:\n  agreed example mill");
+}
+
 void add_verify(CLI::App& app, VerifyCommand& verify) {
-  CLI::App* const sub =
-      app.add_subcommand("verify", "proves that nothing in the journal was changed and nothing is missing");
-  sub->add_option("CONFIG", verify.config, "the configuration file")->required();
-  sub->add_option_function<std::vector<std::string>>(
+  CLI::App& sub = add_command(
+      app, "verify", "proves that nothing in the journal was changed and nothing is missing", verify.config);
+  sub.add_option_function<std::vector<std::string>>(
          "--head",
          [&verify](const std::vector<std::string>& texts) {
            for (const std::string& text : texts) {
@@ -60,21 +100,21 @@ void add_verify(CLI::App& app, VerifyCommand& verify) {
          "anew "
          "shows only against one")
       ->type_name("SEQUENCE:SHA256");
-  sub->add_option("--file", verify.file,
-                  "a backup, or a journal that was put aside, instead of the service's own");
-  sub->add_flag("--json", verify.json, "print for programs");
-  sub->footer(
+  sub.add_option("--file", verify.file,
+                 "a backup, or a journal that was put aside, instead of the service's own");
+  add_json(sub, verify.json);
+  sub.footer(
       "May run while the service does. Exit status: 0 nothing was changed, 1 something was or is missing,\n"
       "2 wrong use or configuration, 3 the journal could not be read.\n"
       "Example:\n  agreed verify /etc/agreed/agreed.yaml");
 }
 
 void add_backup(CLI::App& app, BackupCommand& backup) {
-  CLI::App* const sub = app.add_subcommand("backup", "copies the journal, also while the service runs");
-  sub->add_option("CONFIG", backup.config, "the configuration file")->required();
-  sub->add_option("FILE", backup.file, "the copy; must not exist")->required();
-  sub->add_flag("--json", backup.json, "print for programs");
-  sub->footer(
+  CLI::App& sub =
+      add_command(app, "backup", "copies the journal, also while the service runs", backup.config);
+  sub.add_option("FILE", backup.file, "the copy; must not exist")->required();
+  add_json(sub, backup.json);
+  sub.footer(
       "The copy is whole and on the disk when this ends, and was verified.\n"
       "Exit status: 0 done, 1 copied, but the journal and so the copy has faults, 2 wrong use or "
       "configuration,\n"
@@ -83,12 +123,12 @@ void add_backup(CLI::App& app, BackupCommand& backup) {
 }
 
 void add_restore(CLI::App& app, RestoreCommand& restore) {
-  CLI::App* const sub =
-      app.add_subcommand("restore", "puts a backup in the journal's place; what was there is kept beside it");
-  sub->add_option("CONFIG", restore.config, "the configuration file")->required();
-  sub->add_option("FILE", restore.file, "a file that `agreed backup` wrote")->required();
-  sub->add_flag("--json", restore.json, "print for programs");
-  sub->footer(
+  CLI::App& sub =
+      add_command(app, "restore", "puts a backup in the journal's place; what was there is kept beside it",
+                  restore.config);
+  sub.add_option("FILE", restore.file, "a file that `agreed backup` wrote")->required();
+  add_json(sub, restore.json);
+  sub.footer(
       "The service must be stopped. The backup is verified first.\n"
       "Exit status: 0 done, 1 nothing was done because the backup has faults, 2 wrong use or configuration,\n"
       "3 could not do it (the service runs, no such file, ...).\n"
@@ -110,33 +150,11 @@ Command parse_command_line(std::span<const std::string> arguments) {
       "Exit status: 0 done, 1 the answer is no, 2 wrong use or configuration, 3 could not do it.");
 
   RunCommand run;
-  CLI::App* run_app = app.add_subcommand("run", "the service, in the foreground; SIGTERM or Ctrl-C ends it");
-  run_app->add_option("CONFIG", run.config, "the configuration file")->required();
-  run_app->footer("Example:\n  agreed run /etc/agreed/agreed.yaml");
-
+  add_run(app, run);
   CheckCommand check;
-  CLI::App* check_app = app.add_subcommand(
-      "check",
-      "validates a configuration and shows the values in effect, or how a sample file would be read");
-  check_app->add_option("CONFIG", check.config, "the configuration file")->required();
-  check_app->add_flag("--json", check.json, "print for programs");
-  CLI::Option* sample =
-      check_app->add_option("--sample", check.sample, "show how this file would be read, row by row");
-  CLI::Option* analyzer =
-      check_app->add_option("--analyzer", check.analyzer, "whose file the sample is: an id of analyzers");
-  sample->needs(analyzer);
-  analyzer->needs(sample);
-  check_app->footer(
-      "Example:\n  agreed check /etc/agreed/agreed.yaml\n"
-      "  agreed check /etc/agreed/agreed.yaml --sample export.csv --analyzer line2\n\n"
-      "With --sample nothing is taken in; exit status 1 if a row could not be used.");
-
+  add_check(app, check);
   ExampleCommand example;
-  CLI::App* example_app = app.add_subcommand(
-      "example", "writes a complete working configuration and a day's drop files to start from");
-  example_app->add_option("DIR", example.folder, "a folder that does not exist yet, or is empty")->required();
-  example_app->footer("Example:\n  agreed example mill");
-
+  add_example(app, example);
   VerifyCommand verify;
   add_verify(app, verify);
   BackupCommand backup;
@@ -161,8 +179,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
         used.empty() ? "agreed --help" : "agreed " + used.front()->get_name() + " --help";
     return Say{kWrongUse, std::string("agreed: ") + error.what() + "\nsee " + help + '\n'};
   }
-  if (run_app->parsed()) return run;
-  if (check_app->parsed()) return check;
+  if (app.got_subcommand("run")) return run;
+  if (app.got_subcommand("check")) return check;
   if (app.got_subcommand("verify")) return verify;
   if (app.got_subcommand("backup")) return backup;
   if (app.got_subcommand("restore")) return restore;

@@ -8,6 +8,7 @@
 #include <nlohmann/json.hpp>
 
 #include "config/config.hpp"
+#include "daemon/cli/say_problems.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/journal/backup.hpp"
 #include "daemon/journal/verify.hpp"
@@ -56,8 +57,7 @@ template <class Work>
 int in_state_of(const fs::path& config_file, bool json, const Work& work) {
   const ConfigResult result = read_config(config_file);
   if (!result.config) {
-    for (const ConfigProblem& problem : result.problems)
-      fmt::print(stderr, "{}\n", to_string(problem, config_file));
+    say_problems(result.problems, config_file);
     return kWrongUse;
   }
   try {

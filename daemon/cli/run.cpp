@@ -16,6 +16,7 @@
 #include <unistd.h>
 
 #include "config/config.hpp"
+#include "daemon/cli/say_problems.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/engine.hpp"
 #include "daemon/exit_codes.hpp"
@@ -158,8 +159,7 @@ int serve(const Config& config, const StopSignals& signals) {
 
 int run_service(const std::filesystem::path& config_file) {
   const ConfigResult result = read_config(config_file);
-  for (const ConfigProblem& problem : result.problems)
-    fmt::print(stderr, "{}\n", to_string(problem, config_file));
+  say_problems(result.problems, config_file);
   if (!result.config) return kWrongUse;
   const StopSignals signals;
   try {

@@ -62,30 +62,11 @@ class PlainRecords final : public RecordTaker {
   RawRow raw_;
 };
 
-class PlainCsvRows final : public RowFormat {
- public:
-  PlainCsvRows(const RowMaker& maker, RowTaker& taker)
-      : rows_(maker, taker), records_(make_csv_records({}, rows_)) {}
-
-  void feed(std::string_view block) override {
-    records_->feed(block);
-    unusable_ = records_->unusable();
-  }
-  void pause() override { records_->pause(); }
-  void finish(bool closed) override {
-    records_->finish(closed);
-    unusable_ = records_->unusable();
-  }
-
- private:
-  PlainRecords rows_;
-  std::unique_ptr<RowFormat> records_;
-};
-
 }  // namespace
 
 std::unique_ptr<RowFormat> make_csv_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<PlainCsvRows>(maker, taker);
+  return std::make_unique<RowsThrough<PlainRecords>>(
+      PlainRecords(maker, taker), [](PlainRecords& records) { return make_csv_records({}, records); });
 }
 
 }  // namespace agreed

@@ -4,6 +4,7 @@
 #include <chrono>
 #include <tuple>
 
+#include "daemon/clock.hpp"
 #include "daemon/intake/text.hpp"
 
 namespace agreed {
@@ -13,10 +14,6 @@ using Clock = std::chrono::steady_clock;
 constexpr std::size_t kMostRecent = 5'000;  // portions by which a renamed file is recognised
 constexpr std::size_t kMostOpen = 16;       // files whose reader is kept between two changes
 constexpr std::size_t kMostShown = 20;
-
-Instant utc_now() {
-  return std::chrono::floor<Duration>(std::chrono::system_clock::now());
-}
 
 }  // namespace
 
@@ -130,7 +127,7 @@ void GrowingIntake::place(Followed& followed, const FileContent& content) {
 }
 
 bool GrowingIntake::read_on(Followed& followed, const FileContent& content, const std::stop_token& stop) {
-  while (auto piece = followed.file->read_on(content, followed.name, utc_now())) {
+  while (auto piece = followed.file->read_on(content, followed.name, now_utc())) {
     const FileIdentity file = piece->file;
     const bool usable = piece->unusable.empty();
     if (!hand_over(followed, content.stamp(), std::move(*piece), stop)) return false;

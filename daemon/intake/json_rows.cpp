@@ -187,27 +187,6 @@ class PlainObjects final : public ObjectTaker {
   RawRow raw_;
 };
 
-class PlainJsonRows final : public RowFormat {
- public:
-  PlainJsonRows(bool array, const RowMaker& maker, RowTaker& taker)
-      : rows_(maker, taker),
-        objects_(array ? make_json_array_objects(JsonShape::flat, rows_)
-                       : make_json_line_objects(JsonShape::flat, rows_)) {}
-
-  void feed(std::string_view block) override {
-    objects_->feed(block);
-    unusable_ = objects_->unusable();
-  }
-  void finish(bool closed) override {
-    objects_->finish(closed);
-    unusable_ = objects_->unusable();
-  }
-
- private:
-  PlainObjects rows_;
-  std::unique_ptr<RowFormat> objects_;
-};
-
 }  // namespace
 
 std::unique_ptr<RowFormat> make_json_line_objects(JsonShape shape, ObjectTaker& taker) {
@@ -219,11 +198,15 @@ std::unique_ptr<RowFormat> make_json_array_objects(JsonShape shape, ObjectTaker&
 }
 
 std::unique_ptr<RowFormat> make_json_line_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<PlainJsonRows>(false, maker, taker);
+  return std::make_unique<RowsThrough<PlainObjects>>(PlainObjects(maker, taker), [](PlainObjects& objects) {
+    return make_json_line_objects(JsonShape::flat, objects);
+  });
 }
 
 std::unique_ptr<RowFormat> make_json_array_rows(const RowMaker& maker, RowTaker& taker) {
-  return std::make_unique<PlainJsonRows>(true, maker, taker);
+  return std::make_unique<RowsThrough<PlainObjects>>(PlainObjects(maker, taker), [](PlainObjects& objects) {
+    return make_json_array_objects(JsonShape::flat, objects);
+  });
 }
 
 }  // namespace agreed

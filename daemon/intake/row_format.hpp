@@ -1,7 +1,9 @@
 #pragma once
 // A syntax that rows of the plain format are written in: CSV, JSON lines, one JSON array.
+#include <memory>
 #include <string>
 #include <string_view>
+#include <utility>
 
 namespace agreed {
 
@@ -21,6 +23,29 @@ class RowFormat {
 
  protected:
   std::string unusable_;
+};
+
+/// A syntax whose records (objects, ...) go to a taker that makes rows of them.
+template <class Taker>
+class RowsThrough final : public RowFormat {
+ public:
+  /// `syntax` reads on behalf of the taker it is given.
+  template <class MakeSyntax>
+  RowsThrough(Taker taker, const MakeSyntax& syntax) : taker_(std::move(taker)), records_(syntax(taker_)) {}
+
+  void feed(std::string_view block) override {
+    records_->feed(block);
+    unusable_ = records_->unusable();
+  }
+  void pause() override { records_->pause(); }
+  void finish(bool closed) override {
+    records_->finish(closed);
+    unusable_ = records_->unusable();
+  }
+
+ private:
+  Taker taker_;
+  std::unique_ptr<RowFormat> records_;
 };
 
 }  // namespace agreed

@@ -74,9 +74,9 @@ std::optional<WaitingFiles::Barrier> WaitingFiles::barrier(Tick now) const {
   std::optional<Barrier> oldest;
   for (const auto& [name, file] : files_) {
     if (!file.first || file.due || (!file.retry && file.due_at <= now)) continue;
-    Place place{file.stamp.mtime_ns, name};
-    if (oldest && oldest->place < place) continue;
-    oldest = Barrier{std::move(place), file.retry ? std::nullopt : std::optional(file.due_at)};
+    if (oldest && std::tie(oldest->place.first, oldest->place.second) < std::tie(file.stamp.mtime_ns, name))
+      continue;
+    oldest = Barrier{{file.stamp.mtime_ns, name}, file.retry ? std::nullopt : std::optional(file.due_at)};
   }
   return oldest;
 }

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <system_error>
 
+#include "daemon/clock.hpp"
 #include "daemon/intake/archive.hpp"
 #include "daemon/intake/file_names.hpp"
 #include "daemon/intake/text.hpp"
@@ -14,10 +15,6 @@ namespace {
 using Clock = std::chrono::steady_clock;
 constexpr std::size_t kMostTold = 10'000;
 constexpr auto kReportWithin = std::chrono::seconds(1);
-
-Instant utc_now() {
-  return std::chrono::floor<Duration>(std::chrono::system_clock::now());
-}
 
 bool same_growth(const InboxState& a, const InboxState& b) {
   return std::equal(a.growing.begin(), a.growing.end(), b.growing.begin(), b.growing.end(),
@@ -319,7 +316,7 @@ void WatchLoop::reachable(const std::string& why_not) {
     if (!was_reachable) log_info("{}: {}", intake_.analyzer, "watching " + in_quotes(intake_.inbox.string()));
     told_.erase("inbox");
   } else {
-    if (!state_.unreachable_since) state_.unreachable_since = utc_now();
+    if (!state_.unreachable_since) state_.unreachable_since = now_utc();
     tell_once("inbox",
               in_quotes(intake_.inbox.string()) + ": " + why_not + "; it is tried again at each scan");
   }
@@ -352,7 +349,7 @@ void WatchLoop::tell_once(const std::string& what, const std::string& words) {
 
 PlainContext WatchLoop::context() const {
   return {settings_, analyzer_,     standards_of(settings_, analyzer_), zone_, intake_.not_before,
-          utc_now(), intake_.mapped};
+          now_utc(), intake_.mapped};
 }
 
 }  // namespace agreed

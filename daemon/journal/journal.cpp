@@ -1,6 +1,7 @@
 // Opening the journal, and the life of a batch.
 #include "daemon/journal/journal.hpp"
 
+#include "daemon/clock.hpp"
 #include "daemon/journal/chain.hpp"
 #include "daemon/journal/journal_impl.hpp"
 #include "daemon/journal/schema.hpp"
@@ -10,7 +11,7 @@ namespace {
 
 std::unique_ptr<SQLite::Database> open_and_migrate(const std::filesystem::path& file) {
   return translating(file, [&file] {
-    create_if_missing(file, std::chrono::time_point_cast<Duration>(std::chrono::system_clock::now()));
+    create_if_missing(file, now_utc());
     auto database = open_writer(file);
     check_usable(*database, file);
     migrate(*database, file, migrations());

@@ -7,6 +7,7 @@
 #include <random>
 #include <thread>
 
+#include "daemon/clock.hpp"
 #include "daemon/webhook/retry_after.hpp"
 
 namespace agreed {
@@ -19,10 +20,6 @@ constexpr int kGone = 410;
 constexpr Duration kLastRecord = std::chrono::milliseconds(500);
 constexpr Duration kPoll = std::chrono::milliseconds(20);
 constexpr Duration kLongestTrouble = std::chrono::minutes(1);
-
-Instant wall_now() {
-  return std::chrono::floor<Duration>(std::chrono::system_clock::now());
-}
 
 }  // namespace
 
@@ -75,7 +72,7 @@ class WebhookSender::Lane {
   Duration time_until_due(const OutboxMessage& message) {
     if (message_ != message.id) {
       message_ = message.id;
-      set_due(message.tries > 0 ? Duration::zero() : message.due_at - wall_now());
+      set_due(message.tries > 0 ? Duration::zero() : message.due_at - now_utc());
     }
     return std::chrono::ceil<Duration>(due_ - Steady::now());
   }
@@ -85,15 +82,15 @@ class WebhookSender::Lane {
   }
 
   void attempt(const OutboxMessage& message, const std::stop_token& stop) {
-    const Instant at = wall_now();
+    const Instant at = now_utc();
     const CallOutcome outcome = call(message, at, stop);
     if (outcome.status == 0 && stop.stop_requested()) return;  // nothing is known of it: made again at start
     const double chance = std::uniform_real_distribution<double>(0.0, 1.0)(random_);
-    const DeliveryTry result = judge(message, outcome, wall_now(), chance, options_.retry);
+    const DeliveryTry result = judge(message, outcome, now_utc(), chance, options_.retry);
     if (!record(result, stop)) return;
     if (result.status == kGone) ended_ = true;
     if (result.next_due)
-      set_due(*result.next_due - wall_now());
+      set_due(*result.next_due - now_utc());
     else
       message_ = 0;
   }
@@ -102,7 +99,7 @@ class WebhookSender::Lane {
     try {
       const PostAnswer answer =
           deliver(endpoint_, message.webhook_id, message.body, at, options_.limits, stop);
-      return {answer.status, answer.error, parse_retry_after(answer.retry_after, wall_now())};
+      return {answer.status, answer.error, parse_retry_after(answer.retry_after, now_utc())};
     } catch (const std::exception& failure) {
       return {0, std::string("the message could not be sent: ") + failure.what(), std::nullopt};
     }

@@ -18,14 +18,7 @@ ReadFile read_row(const std::string& row, const HowToRead& how = {}) {
 
 /// The one bad row that `row` makes.
 BadRow refused(const std::string& row, const HowToRead& how = {}) {
-  const ReadFile file = read_row(row, how);
-  CAPTURE(row);
-  CHECK(file.unusable == "");
-  CHECK(file.rows.empty());
-  REQUIRE(file.bad_rows.size() == 1);
-  CHECK(file.bad_rows[0].line == 2);
-  CHECK(file.bad_rows[0].text == row);
-  return file.bad_rows[0];
+  return only_bad_row(read_row(row, how), row);
 }
 
 Row accepted(const std::string& row, const HowToRead& how = {}) {

@@ -43,10 +43,7 @@ inline ReadFile read_mapped(const std::string& format, std::string_view text, st
                              config.intake[0].mapped};
   ReadFile file;
   PlainReader reader(context, PlainSyntax::csv, file);
-  while (!text.empty() && reader.feed(text.substr(0, block)))
-    text.remove_prefix(std::min(block, text.size()));
-  reader.finish(true);
-  file.unusable = reader.unusable();
+  read_all(reader, text, block, true, file);
   return file;
 }
 
