@@ -226,6 +226,7 @@ void Chart::State::open(EndingRule rule, std::size_t position, const char* patte
                         std::vector<Finding>& findings) {
   alarm = Alarm{rule, pattern, {}, stretch.prefix(position), 0, {}};
   alarm->score = score_of(rule);
+  alarm->limit = rule == EndingRule::level ? level_limit(stretch.count()) : precision.h;
   const Change change = describe();
   alarm->started_at = change.started_at;
   findings.push_back(finding(change));
@@ -241,8 +242,9 @@ void Chart::State::test(PointRecord& record, std::vector<Finding>& findings) {
   if (scatter) record.precision_score = scatter->score;
   if (alarm) return;
 
-  if (level_split && level_score_exceeds(level_split->t, level_split->counted, level.h) &&
-      (n < kCorrelationFrom || holds_with_serial_correlation(stretch, *level_split, level.h)))
+  const double limit = level_limit(n);
+  if (level_split && level_score_exceeds(level_split->t, level_split->counted, limit) &&
+      (n < kCorrelationFrom || holds_with_serial_correlation(stretch, *level_split, limit)))
     record.level_signal = signal_of(*level_split);
   record.scatter_signal = scatter && scatter->score > precision.h;
   if (record.level_signal)
@@ -264,6 +266,7 @@ void Chart::State::follow_up(const PointRecord& record, std::vector<Finding>& fi
     case Outcome::becomes_scatter:
       alarm->rule = EndingRule::precision;
       alarm->score = score_of(alarm->rule);
+      alarm->limit = precision.h;
       alarm->start = stretch.prefix(aftermath.position);
       break;
     case Outcome::ends:

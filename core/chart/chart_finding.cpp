@@ -113,7 +113,7 @@ Details Chart::State::details(const Change& change) const {
   number("readings_since", static_cast<double>(change.after.n));
   const bool of_level = alarm->rule == EndingRule::level;
   if (alarm->score) number("score", *alarm->score);
-  number("limit", of_level ? level.h : precision.h);
+  number("limit", alarm->limit);
   number("in_control_run_length", of_level ? chart().level_run_length : chart().precision_run_length);
   details.emplace_back("score_of", std::string(of_level ? "level" : "precision"));
   return details;

@@ -51,6 +51,7 @@ struct Alarm {
   Prefix start;                 ///< the stretch up to the start at the signal
   std::int64_t readings = 0;    ///< since the signal
   std::optional<double> score;  ///< at the signal, of the rule that signalled
+  double limit = 0;             ///< likewise
 };
 
 /// The change as it is best described now.
@@ -141,6 +142,11 @@ struct Chart::State {
   [[nodiscard]] Finding finding(const Change& change) const;
   [[nodiscard]] Details details(const Change& change) const;
   [[nodiscard]] std::optional<double> score_of(EndingRule rule) const;
+  /// The limit of the level at the n-th reading of the stretch. What is carried over from earlier lots makes
+  /// its first readings no new question, for them it is the constant one.
+  [[nodiscard]] double level_limit(std::int64_t n) const {
+    return stretch.carried().degrees > 0 ? level.h : level_limit_at(n, level.h);
+  }
   [[nodiscard]] bool matters(const Change& change) const;
   [[nodiscard]] Subject subject() const;
   [[nodiscard]] Finding ceased(AlertKind kind, Instant at, const char* reason) const;

@@ -80,7 +80,9 @@ ChartPoint Chart::State::shown(const PointRecord& record) const {
   if (record.t) point.score = level_score(*record.t, record.counted);
   point.precision_score = record.precision_score;
   if (record.degrees > 0 && record.sd > 0) {
-    const double half = prediction_factor(record.learned, record.degrees, level.h) * record.sd;
+    const bool of_one_lot = record.degrees < record.learned;
+    const double limit = of_one_lot ? level_limit_at(record.learned + 1, level.h) : level.h;
+    const double half = prediction_factor(record.learned, record.degrees, limit) * record.sd;
     point.upper = record.mean + half;
     point.lower = record.mean - half;
   }
@@ -96,6 +98,7 @@ ChartPoint Chart::State::shown(const PointRecord& record) const {
 ChangeView Chart::State::change_view() const {
   ChangeView view;
   view.limit = level.h;
+  view.limit_now = level_limit(stretch.count());
   view.extrapolated = level.extrapolated;
   view.in_control_run_length = chart().level_run_length;
   if (has_level_splits(stretch)) view.score = level_score(best_level_split(stretch).t, stretch.counted());
@@ -282,7 +285,8 @@ ChartView Chart::view() const {
   }
   const Sums known = s.learned().sums;
   if (s.has_limits(known) && s.sd_of(known) > 0) {
-    const double half = prediction_factor(known.n, s.degrees_of(known), s.level.h) * s.sd_of(known);
+    const double half =
+        prediction_factor(known.n, s.degrees_of(known), s.level_limit(known.n + 1)) * s.sd_of(known);
     view.upper_limit = s.mean_of(known) + half;
     view.lower_limit = s.mean_of(known) - half;
   }

@@ -67,7 +67,8 @@ struct ChartPoint {
 
 struct ChangeView {
   std::optional<double> score;
-  double limit = 0;
+  double limit = 0;      ///< from the 30th reading of a stretch on
+  double limit_now = 0;  ///< at its newest reading
   double in_control_run_length = 0;
   bool extrapolated = false;  ///< the limit lies beyond the simulated table
   std::optional<Instant> started_at;

@@ -3,7 +3,7 @@
 // Hawkins, Qiu and Kang, J. Qual. Technol. 35 (2003) 355. Split after k readings (3 <= k <= n-1):
 // B_k = k(n-k)/n (mean after - mean before)^2, t_k = sqrt((n-2) B_k / (S - B_k)) on n-2 degrees of freedom,
 // S - B_k not below (n-2) r^2/12 for readings of resolution r. The score is the normal score of the largest
-// t_k, with its sign. From 5 readings on; O(readings held).
+// t_k, with its sign. From 5 readings on; O(readings held). Its limit: run_length.hpp, level_limit_at.
 //
 // In a new lot of the standard, the scatter carried over from earlier lots (C, on c degrees of freedom) is
 // added: t_k on n-2+c degrees of freedom with S - B_k + C for S - B_k. Readings 2 to 4 are then asked alone

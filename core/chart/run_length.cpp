@@ -2,9 +2,11 @@
 
 #include <algorithm>
 #include <cmath>
+#include <iterator>
 #include <span>
 #include <stdexcept>
 #include <string>
+#include <utility>
 
 namespace agreed {
 namespace {
@@ -13,11 +15,11 @@ struct Entry {
 };
 
 // Mean readings (pairs) between false signals of normal readings, from tests/data/run_lengths.csv, which
-// holds the seeds, the program and the errors: 1 % where 10,000 signals were counted, 3 % at the last
-// entries.
-constexpr Entry kLevel[] = {{2.6, 40.28}, {2.8, 66.2},  {3, 113.2},   {3.15, 173.2}, {3.3, 263.7},
-                            {3.5, 490.1}, {3.7, 945.1}, {3.86, 1630}, {4, 2684},     {4.2, 5698},
-                            {4.4, 12680}, {4.6, 30920}, {4.8, 74350}};
+// holds the seeds, the program and the errors: 1 % where 10,000 signals were counted (the level everywhere),
+// 3 % at the last entries.
+constexpr Entry kLevel[] = {{2.6, 40.2},  {2.8, 65.91}, {3, 112.9},   {3.15, 171.9}, {3.3, 264.4},
+                            {3.5, 491.6}, {3.7, 938.6}, {3.86, 1617}, {4, 2666},     {4.2, 5700},
+                            {4.4, 12660}, {4.6, 29910}, {4.8, 72810}};
 constexpr Entry kPrecision[] = {{2.4, 92.53},  {2.6, 154.2}, {2.8, 264.1}, {3, 468.5},
                                 {3.15, 745.5}, {3.3, 1198},  {3.5, 2358},  {3.7, 4848},
                                 {3.86, 8860},  {4, 14830},   {4.2, 35620}, {4.4, 82910}};
@@ -65,6 +67,33 @@ Law law_of(Score score) {
   throw std::domain_error("score: not one of those known");
 }
 
+// How far the limit of the level score lies from the later one at the first readings of a stretch, by that
+// later limit: tests/data/first_limits.csv, smoothed over neighbouring readings.
+constexpr double kLaterLimits[] = {2.6, 3.0, 3.5, 4.0, 4.4, 4.8};
+struct FirstLimits {
+  std::int64_t n;
+  double beyond[std::size(kLaterLimits)];
+};
+constexpr FirstLimits kFirstLimits[] = {{5, {-0.099, -0.153, -0.215, -0.258, -0.285, -0.293}},
+                                        {6, {-0.050, -0.094, -0.145, -0.188, -0.213, -0.231}},
+                                        {7, {-0.005, -0.040, -0.092, -0.130, -0.154, -0.146}},
+                                        {8, {0.021, -0.004, -0.052, -0.095, -0.121, -0.120}},
+                                        {9, {0.033, 0.017, -0.024, -0.066, -0.098, -0.097}},
+                                        {10, {0.039, 0.028, -0.008, -0.048, -0.068, -0.080}},
+                                        {12, {0.043, 0.042, 0.016, -0.019, -0.044, -0.057}},
+                                        {15, {0.040, 0.045, 0.030, 0.006, -0.015, -0.024}},
+                                        {20, {0.029, 0.041, 0.033, 0.016, 0.000, 0.003}},
+                                        {29, {0.013, 0.029, 0.028, 0.021, 0.009, 0.023}}};
+
+// Position of `value` among ascending knots: the one before it and the share of the way to the next.
+template <class Knots, class Of>
+std::pair<std::size_t, double> between(const Knots& knots, Of of, double value) {
+  std::size_t i = 0;
+  while (i + 2 < std::size(knots) && value > of(knots[i + 1])) ++i;
+  const double low = of(knots[i]), high = of(knots[i + 1]);
+  return {i, std::clamp((value - low) / (high - low), 0.0, 1.0)};
+}
+
 // Below this the fitted law no longer rises with h; no run length shorter than its own is of use.
 constexpr double kLeastLimit = 1.1;
 constexpr double kLargestLimit = 37;
@@ -73,6 +102,18 @@ constexpr double kLargestLimit = 37;
 double run_length_for(Score score, double h) {
   if (!std::isfinite(h)) throw std::domain_error("h: expected a finite limit");
   return std::exp(law_of(score).at(std::clamp(h, kLeastLimit, kLargestLimit)));
+}
+
+double level_limit_at(std::int64_t n, double h) {
+  if (n < kFirstLimits[0].n || n > std::rbegin(kFirstLimits)->n) return h;
+  const auto [row, down] = between(
+      kFirstLimits, [](const FirstLimits& e) { return static_cast<double>(e.n); }, static_cast<double>(n));
+  const auto [column, right] = between(
+      kLaterLimits, [](double e) { return e; }, h);
+  const auto beyond = [column = column, right = right](const FirstLimits& e) {
+    return std::lerp(e.beyond[column], e.beyond[column + 1], right);
+  };
+  return h + std::lerp(beyond(kFirstLimits[row]), beyond(kFirstLimits[row + 1]), down);
 }
 
 ChangeLimit limit_for(Score score, double run_length) {

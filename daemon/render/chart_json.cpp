@@ -34,6 +34,7 @@ Json change_of(const ChangeView& change) {
   return {
       {"score", json_number(change.score)},
       {"limit", json_number(change.limit)},
+      {"limit_now", json_number(change.limit_now)},
       {"in_control_run_length", json_number(change.in_control_run_length)},
       {"limit_extrapolated", change.extrapolated},
       {"started_at", json_time(change.started_at)},

@@ -105,7 +105,7 @@ std::string chart_words(const ChartScene& scene) {
   if (view.lower_limit && view.upper_limit)
     out += " The next reading is expected between " + shown(*view.lower_limit, scene.style.decimals) +
            " and " + with_unit(*view.upper_limit, scene.style) + ".";
-  return out + " Change score " + score_words(view.change.score, view.change.limit) + ".";
+  return out + " Change score " + score_words(view.change.score, view.change.limit_now) + ".";
 }
 
 std::string precision_words(const ChartScene& scene) {

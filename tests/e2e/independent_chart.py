@@ -23,6 +23,25 @@ def pooled(score):
     return limits, [float(f"{sums[h][0] / sums[h][1]:.4g}") for h in limits]
 
 
+def first_limits():
+    """How far the limit of the level lies from its later one at the first readings: the simulated limits, means over
+    neighbouring readings (noisier at the larger limits), to three decimals."""
+    simulated = {}
+    for line in (pathlib.Path(__file__).resolve().parents[1] / "data" / "first_limits.csv").read_text().splitlines():
+        if line[0].isdigit():
+            later, n, limit = (float(field) for field in line.split(",")[:3])
+            simulated[int(n), later] = limit - later
+
+    def smoothed(n, later):
+        reach = 0 if n < 10 else 2 if later > 4.1 else 1
+        near = [simulated[m, later] for m in range(n - reach, n + reach + 1)
+                if (m, later) in simulated and (m >= 9 or reach < 2)]
+        return round(sum(near) / len(near), 3)
+    return {n: [smoothed(n, later) for later in LATER_LIMITS] for n in (5, 6, 7, 8, 9, 10, 12, 15, 20, 29)}
+
+
+LATER_LIMITS = (2.6, 3.0, 3.5, 4.0, 4.4, 4.8)
+FIRST_LIMITS = first_limits()
 LEVEL, PRECISION, PAIRS = pooled("level"), pooled("precision"), pooled("pairs")
 PAIRS_ON_A_LINE = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6], [776, 2483, 3976, 8195, 18465, 41540])
 PAIRS_LAW = 1.11  # beyond a table of pairs ln(run length) goes on as h^2/2 - 1.11 ln h
@@ -42,6 +61,13 @@ def limit_for(table, run_length):
         return optimize.brentq(lambda h: math.log(lengths[-1]) + beyond(h) - beyond(limits[-1]) - math.log(run_length),
                                limits[-1], 10, xtol=1e-13)
     return float(np.interp(math.log(run_length), np.log(lengths), limits))
+
+
+def level_limit_at(n, later):
+    if not 5 <= n <= 29:
+        return later
+    rows = sorted(FIRST_LIMITS)
+    return later + float(np.interp(n, rows, [np.interp(later, LATER_LIMITS, FIRST_LIMITS[row]) for row in rows]))
 
 
 def normal_score(tail):
@@ -196,9 +222,10 @@ class Chart:
 
     def open(self, point):
         v, n = self.values(), len(self.kept)
-        level = self.level is not None and self.level.at(self.limit)
+        limit = level_limit_at(n, self.limit)
+        level = self.level is not None and self.level.at(limit)
         if level and n >= 15:
-            level = level_allowing_for_correlation(v, self.level.k, step_of(v, self.decimals)) > self.limit
+            level = level_allowing_for_correlation(v, self.level.k, step_of(v, self.decimals)) > limit
         scatter = self.precision is not None and self.precision.score > self.precision_limit
         if level:
             word = "single" if self.level.k == n - 1 else "shift"
@@ -245,7 +272,7 @@ class Chart:
         """What the service shows of it; reference: (value, expanded uncertainty, coverage factor)."""
         v = self.learned()
         n, mean, sd = len(v), float(v.mean()), float(v.std(ddof=1))
-        half = t_quantile(stats.norm.cdf(self.limit), n - 1) * sd * math.sqrt(1 + 1 / n)
+        half = t_quantile(stats.norm.cdf(level_limit_at(n + 1, self.limit)), n - 1) * sd * math.sqrt(1 + 1 / n)
         out = {
             "baseline": {"readings": n, "center": mean, "sd": sd, "sd_degrees_of_freedom": n - 1,
                          "carried_over": 0, "sigma": moving_range_mean(v) / D2,
@@ -253,7 +280,8 @@ class Chart:
                          "moving_range_mean": moving_range_mean(v),
                          "set_aside": sum(p["set_aside"] for p in self.points)},
             "limits": {"upper": mean + half, "lower": mean - half},
-            "change": {"score": self.level.score, "limit": self.limit, "in_control_run_length": self.run_length},
+            "change": {"score": self.level.score, "limit": self.limit,
+                       "limit_now": level_limit_at(len(self.kept), self.limit), "in_control_run_length": self.run_length},
             "precision": {"score": self.precision.score, "limit": self.precision_limit,
                           "in_control_run_length": self.run_length, "ratio_of_sd": self.precision.ratio},
             "serial_correlation": lag_one(v, n),

@@ -40,7 +40,11 @@ class LevelStream {
     t_ = best_level_split(stretch_).t;
     return true;
   }
-  [[nodiscard]] bool exceeds(double h) const { return level_score_exceeds(t_, stretch_.count(), h); }
+  [[nodiscard]] bool exceeds(double h) const {
+    const std::int64_t n = stretch_.count();
+    return level_score_exceeds(t_, n, level_limit_at(n, h));
+  }
+  [[nodiscard]] double t() const { return t_; }
 
  private:
   std::normal_distribution<double> normal_;

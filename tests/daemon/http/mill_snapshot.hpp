@@ -64,7 +64,7 @@ inline ChartView full_chart() {
   view.baseline = {30, 30, 10.62, 0.022, 0.021, 17.97, 0.0237, 29, 0, at_hour(0), at_hour(9), 1};
   view.upper_limit = 10.71;
   view.lower_limit = 10.53;
-  view.change = {4.5, 4.08, 3650, false, at_hour(7), Period{at_hour(6), at_hour(8)}, 0.08};
+  view.change = {4.5, 4.08, 4.08, 3650, false, at_hour(7), Period{at_hour(6), at_hour(8)}, 0.08};
   view.precision = {0.4, 3.62, 3650, false, {}};
   view.serial_correlation = 0.05;
   view.reference = ReferenceView{10.62, 0.08, 2, 0.003, 0.04, {}, false};

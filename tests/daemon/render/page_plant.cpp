@@ -228,7 +228,7 @@ void finish_chart(ChartView& view, double drift) {
   view.upper_limit = mean + 4.3 * s;
   view.lower_limit = mean - 4.3 * s;
   view.state = n >= 30 ? ChartState::stable : ChartState::learning;
-  view.change = {0.9, 4.08, 3650, false, {}, {}, {}};
+  view.change = {0.9, 4.08, 4.08, 3650, false, {}, {}, {}};
   view.precision = {0.4, 3.62, 3650, false, {}};
   if (n < 30) view.warnings = {"baseline_short"};
   if (drift <= 0) return;
