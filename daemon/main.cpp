@@ -8,6 +8,7 @@
 #include "daemon/cli/example.hpp"
 #include "daemon/cli/journal_commands.hpp"
 #include "daemon/cli/run.hpp"
+#include "daemon/cli/token.hpp"
 #include "daemon/exit_codes.hpp"
 
 namespace {
@@ -21,6 +22,7 @@ struct Doer {
   int operator()(const agreed::VerifyCommand& command) const { return agreed::verify_command(command); }
   int operator()(const agreed::BackupCommand& command) const { return agreed::backup_command(command); }
   int operator()(const agreed::RestoreCommand& command) const { return agreed::restore_command(command); }
+  int operator()(const agreed::TokenCommand& command) const { return agreed::token_command(command); }
   int operator()(const agreed::Say& say) const {
     std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
     return say.code;

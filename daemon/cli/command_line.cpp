@@ -135,6 +135,33 @@ void add_restore(CLI::App& app, RestoreCommand& restore) {
       "Example:\n  agreed restore /etc/agreed/agreed.yaml /backup/agreed-2026-01-05.sqlite");
 }
 
+void add_token(CLI::App& app, TokenCommand& token) {
+  CLI::App& sub = add_command(
+      app, "token", "makes a token for the HTTP side, shows it once and stores its hash", token.config);
+  sub.add_option_function<std::string>(
+         "--role",
+         [&token](const std::string& role) {
+           if (role != "reader" && role != "operator")
+             throw CLI::ValidationError("--role",
+                                        "expected reader or operator, found '" + role + "'" +
+                                            settings_file::did_you_mean(role, {"reader", "operator"}));
+           token.role = role == "operator" ? Role::operator_ : Role::reader;
+         },
+         "reader: may read where the service asks for a token; operator: may also acknowledge alerts, send\n"
+         "messages again, ...")
+      ->type_name("ROLE")
+      ->required();
+  sub.add_option("--name", token.name, "whose it is, for the tokens file; else the role and a number");
+  add_json(sub, token.json);
+  sub.footer(
+      "The tokens file is access.tokens_file of the configuration; it holds hashes only. The service reads "
+      "it\n"
+      "again when it changes, so run this as the user of the service, or let it read the file.\n"
+      "Exit status: 0 done, 2 wrong use or configuration (no tokens file, name taken), 3 it could not be "
+      "stored.\n"
+      "Example:\n  agreed token /etc/agreed/agreed.yaml --role operator --name shift-leader");
+}
+
 }  // namespace
 
 Command parse_command_line(std::span<const std::string> arguments) {
@@ -161,6 +188,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_backup(app, backup);
   RestoreCommand restore;
   add_restore(app, restore);
+  TokenCommand token;
+  add_token(app, token);
 
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
@@ -184,6 +213,7 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("verify")) return verify;
   if (app.got_subcommand("backup")) return backup;
   if (app.got_subcommand("restore")) return restore;
+  if (app.got_subcommand("token")) return token;
   return example;
 }
 

@@ -7,6 +7,7 @@
 #include <variant>
 #include <vector>
 
+#include "daemon/http/tokens.hpp"
 #include "daemon/journal/journal_types.hpp"
 
 namespace agreed {
@@ -37,14 +38,20 @@ struct RestoreCommand {
   std::filesystem::path config, file;
   bool json = false;
 };
+struct TokenCommand {
+  std::filesystem::path config;
+  Role role = Role::reader;
+  std::string name;  ///< empty: one is made of the role
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
   std::string text;
 };
 
-using Command =
-    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand, Say>;
+using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand,
+                             RestoreCommand, TokenCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);
