@@ -8,6 +8,7 @@
 #include "daemon/cli/example.hpp"
 #include "daemon/cli/journal_commands.hpp"
 #include "daemon/cli/run.hpp"
+#include "daemon/cli/send_test.hpp"
 #include "daemon/cli/token.hpp"
 #include "daemon/exit_codes.hpp"
 
@@ -23,6 +24,7 @@ struct Doer {
   int operator()(const agreed::BackupCommand& command) const { return agreed::backup_command(command); }
   int operator()(const agreed::RestoreCommand& command) const { return agreed::restore_command(command); }
   int operator()(const agreed::TokenCommand& command) const { return agreed::token_command(command); }
+  int operator()(const agreed::SendTestCommand& command) const { return agreed::send_test_command(command); }
   int operator()(const agreed::Say& say) const {
     std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
     return say.code;

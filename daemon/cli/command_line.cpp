@@ -162,6 +162,19 @@ void add_token(CLI::App& app, TokenCommand& token) {
       "Example:\n  agreed token /etc/agreed/agreed.yaml --role operator --name shift-leader");
 }
 
+void add_send_test(CLI::App& app, SendTestCommand& test) {
+  CLI::App& sub =
+      add_command(app, "send-test", "sends a test message to a webhook and prints the answer", test.config);
+  sub.add_option("ROUTE", test.route, "a name of alerts.routes; without it, every one");
+  add_json(sub, test.json);
+  sub.footer(
+      "One event of type agreed.test, signed and sent as alerts are: redirects are not followed, "
+      "certificates\n"
+      "are verified, 10 s at most. It is not journaled and not tried again; the service need not run.\n"
+      "Exit status: 0 delivered (answered 2xx), 1 not, 2 no such route, wrong use or configuration.\n"
+      "Example:\n  agreed send-test /etc/agreed/agreed.yaml engineer");
+}
+
 }  // namespace
 
 Command parse_command_line(std::span<const std::string> arguments) {
@@ -190,6 +203,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_restore(app, restore);
   TokenCommand token;
   add_token(app, token);
+  SendTestCommand send_test;
+  add_send_test(app, send_test);
 
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
@@ -214,6 +229,7 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("backup")) return backup;
   if (app.got_subcommand("restore")) return restore;
   if (app.got_subcommand("token")) return token;
+  if (app.got_subcommand("send-test")) return send_test;
   return example;
 }
 

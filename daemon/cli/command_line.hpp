@@ -44,6 +44,11 @@ struct TokenCommand {
   std::string name;  ///< empty: one is made of the role
   bool json = false;
 };
+struct SendTestCommand {
+  std::filesystem::path config;
+  std::string route;  ///< empty: every one
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
@@ -51,7 +56,7 @@ struct Say {
 };
 
 using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand,
-                             RestoreCommand, TokenCommand, Say>;
+                             RestoreCommand, TokenCommand, SendTestCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

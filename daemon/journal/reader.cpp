@@ -135,6 +135,14 @@ JournalReader::JournalReader(const std::filesystem::path& folder) {
 JournalReader::~JournalReader() = default;
 JournalReader::JournalReader(JournalReader&&) noexcept = default;
 
+std::string JournalReader::source() {
+  return journal::translating(impl_->file, [&]() -> std::string {
+    SQLite::Statement row(*impl_->database, "SELECT source FROM meta");
+    row.executeStep();
+    return row.getColumn(0).getString();
+  });
+}
+
 std::vector<AlertRecord> JournalReader::alerts(const AlertQuery& query) {
   return journal::translating(impl_->file, [&] {
     const Moment moment(*impl_->database);

@@ -70,3 +70,58 @@ class Token(Commands):
         lost = self.agreed("token", "--role", "reader")
         self.assertEqual((lost.returncode, lost.stdout), (3, ""))
         self.assertIn("no/such/folder/tokens", lost.stderr)
+
+
+class SendTest(Commands):
+    def test_a_test_message_arrives_signed_whether_or_not_the_service_runs(self):
+        receiver = self.make_receiver()
+        self.site = self.make_site(receiver_port=receiver.port)
+        done = self.agreed("send-test")
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertRegex(done.stdout, r"^engineer: delivered, answered 204 after \d+ ms \(msg_[0-9a-f]{32}\)\n$")
+        self.assertEqual(receiver.got[0]["event"]["source"], "urn:uuid:00000000-0000-0000-0000-000000000000")
+        self.site.start()
+        done = self.agreed("send-test", "engineer", "--json")
+        self.assertEqual(done.returncode, 0, done.stderr)
+        said = json.loads(done.stdout)
+        got = receiver.got[1]
+        self.assertTrue(all(g["signed"] for g in receiver.got))
+        self.assertEqual(said["routes"], [{"route": "engineer", "delivered": True, "message": got["headers"]["webhook-id"], "status": 204,
+                                           "took_ms": said["routes"][0]["took_ms"], "error": None}])
+        self.assertEqual((got["event"]["type"], got["event"]["id"], got["event"]["data"]["site"]),
+                         ("agreed.test", got["headers"]["webhook-id"], "Harrow Mill"))
+        self.site.drop("line1", "bad.csv", BAD_FILE)
+        alert = wait_until(lambda: receiver.events("file_rejected"), "an alert arrives")[0]
+        self.assertEqual(got["event"]["source"], alert["source"], "a test has the source that alerts have")
+
+    def test_what_does_not_arrive_is_told_with_its_reason(self):
+        receiver = self.make_receiver()
+        self.site = self.make_site(receiver_port=receiver.port)
+        for status, words in ((500, "the endpoint answered 500"), (302, "redirects are not followed"), (410, "(gone)")):
+            receiver.answer = status
+            done = self.agreed("send-test", "engineer")
+            self.assertEqual(done.returncode, 1)
+            self.assertIn("engineer: NOT delivered", done.stdout)
+            self.assertIn(words, done.stdout)
+        self.assertEqual(len(receiver.got), 3, "each is sent once")
+        receiver.close()
+        done = self.agreed("send-test", "--json")
+        self.assertEqual(done.returncode, 1)
+        result = json.loads(done.stdout)["routes"][0]
+        self.assertEqual((result["status"], result["error"]), (None, "no connection could be made"))
+
+    def test_wrong_use(self):
+        receiver = self.make_receiver()
+        self.site = self.make_site(receiver_port=receiver.port)
+        unknown = self.agreed("send-test", "enginer")
+        self.assertEqual((unknown.returncode, unknown.stdout), (2, ""))
+        self.assertIn("did you mean engineer?", unknown.stderr)
+        (self.site.folder / "secret").write_text("\n")
+        secretless = self.agreed("send-test")
+        self.assertEqual(secretless.returncode, 2)
+        self.assertIn("secret_file", secretless.stderr)
+        self.site = self.make_site()
+        none = self.agreed("send-test")
+        self.assertEqual(none.returncode, 2)
+        self.assertIn("alerts.routes", none.stderr)
+        self.assertEqual(receiver.got, [])

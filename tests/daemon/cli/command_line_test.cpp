@@ -25,7 +25,7 @@ bool holds(const std::string& text, const std::string& part) {
 }
 
 const std::vector<std::string> kCommands = {"run",    "check",   "example", "verify",
-                                            "backup", "restore", "token"};
+                                            "backup", "restore", "token",   "send-test"};
 
 }  // namespace
 

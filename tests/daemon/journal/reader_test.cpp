@@ -98,6 +98,7 @@ TEST_CASE("messages of a route keep their order: the oldest not settled one come
   CHECK_FALSE(reader.next_message("c").has_value());
   const auto first = reader.next_message("a");
   REQUIRE(first.has_value());
+  CHECK(reader.source() == journal.source());
   CHECK(first->id == a1);
   CHECK(first->webhook_id == "a1");
   CHECK(first->route == "a");
