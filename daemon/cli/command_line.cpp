@@ -175,6 +175,45 @@ void add_send_test(CLI::App& app, SendTestCommand& test) {
       "Example:\n  agreed send-test /etc/agreed/agreed.yaml engineer");
 }
 
+void add_token_file(CLI::App& sub, std::filesystem::path& file) {
+  sub.add_option("--token-file", file, "a file whose first line is the token; else AGREED_TOKEN is used");
+}
+
+void add_resend(CLI::App& app, ResendCommand& resend) {
+  CLI::App& sub = add_command(
+      app, "resend", "lets the running service send a message once more, under the same id", resend.config);
+  sub.add_option("ID", resend.message, "the message: webhook-id, as deliveries of /api/alerts/{id} have it")
+      ->required();
+  add_token_file(sub, resend.token_file);
+  sub.add_option("--url", resend.url, "where the service is, if not where the configuration says it listens");
+  add_json(sub, resend.json);
+  sub.footer(
+      "For a message that was given up (undeliverable), or one that arrived and was lost there. An endpoint\n"
+      "that said it was gone (410) is tried again. Needs an operator token (agreed token): from "
+      "--token-file,\n"
+      "or from the environment variable AGREED_TOKEN; never as an argument, which others can see.\n"
+      "Exit status: 0 queued, 1 no such message, or it waits to be sent anyway, 2 wrong use, configuration "
+      "or\n"
+      "token, 3 the service cannot be reached.\n"
+      "Example:\n  agreed resend /etc/agreed/agreed.yaml msg_0123456789abcdef0123456789abcdef "
+      "--token-file ~/.agreed-token");
+}
+
+void add_status(CLI::App& app, StatusCommand& status) {
+  CLI::App& sub = *app.add_subcommand("status", "what the running service says, in one screen");
+  sub.add_option("TARGET", status.target, "the configuration file, or the URL of a service")->required();
+  add_token_file(sub, status.token_file);
+  add_json(sub, status.json);
+  sub.footer(
+      "A service that can be reached from outside asks for a reader token (agreed token): from "
+      "--token-file,\n"
+      "or from the environment variable AGREED_TOKEN. --json prints /api/status as it is. Colour only on a\n"
+      "terminal and unless NO_COLOR is set.\n"
+      "Exit status: 0 everything agrees, 1 not everything, 2 wrong use, configuration or token,\n"
+      "3 the service cannot be reached.\n"
+      "Example:\n  agreed status /etc/agreed/agreed.yaml\n  agreed status http://127.0.0.1:7480 --json");
+}
+
 }  // namespace
 
 Command parse_command_line(std::span<const std::string> arguments) {
@@ -205,6 +244,10 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_token(app, token);
   SendTestCommand send_test;
   add_send_test(app, send_test);
+  ResendCommand resend;
+  add_resend(app, resend);
+  StatusCommand status;
+  add_status(app, status);
 
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
@@ -230,6 +273,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("restore")) return restore;
   if (app.got_subcommand("token")) return token;
   if (app.got_subcommand("send-test")) return send_test;
+  if (app.got_subcommand("resend")) return resend;
+  if (app.got_subcommand("status")) return status;
   return example;
 }
 

@@ -50,7 +50,8 @@ std::vector<DeliveryRow> deliveries_of(SQLite::Database& database, std::int64_t 
   std::vector<DeliveryRow> deliveries;
   SQLite::Statement rows(
       database,
-      "SELECT m.webhook_id, m.route, m.type, o.state, m.created_at, o.due_at, o.tries, l.status, l.error, "
+      "SELECT m.webhook_id, m.route, m.type, o.state, m.created_at, o.due_at, "
+      "(SELECT count(*) FROM delivery_tries c WHERE c.message = m.id), l.status, l.error, "
       "(SELECT max(at) FROM delivery_tries d WHERE d.message = m.id AND d.delivered = 1) "
       "FROM messages m JOIN outbox o ON o.message = m.id LEFT JOIN delivery_tries l ON l.id = "
       "(SELECT max(id) FROM delivery_tries t WHERE t.message = m.id) WHERE m.alert = ? ORDER BY m.id");
