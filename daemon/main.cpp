@@ -7,7 +7,11 @@
 #include "daemon/cli/command_line.hpp"
 #include "daemon/cli/example.hpp"
 #include "daemon/cli/journal_commands.hpp"
+#include "daemon/cli/resend.hpp"
 #include "daemon/cli/run.hpp"
+#include "daemon/cli/send_test.hpp"
+#include "daemon/cli/status.hpp"
+#include "daemon/cli/token.hpp"
 #include "daemon/exit_codes.hpp"
 
 namespace {
@@ -21,6 +25,10 @@ struct Doer {
   int operator()(const agreed::VerifyCommand& command) const { return agreed::verify_command(command); }
   int operator()(const agreed::BackupCommand& command) const { return agreed::backup_command(command); }
   int operator()(const agreed::RestoreCommand& command) const { return agreed::restore_command(command); }
+  int operator()(const agreed::TokenCommand& command) const { return agreed::token_command(command); }
+  int operator()(const agreed::SendTestCommand& command) const { return agreed::send_test_command(command); }
+  int operator()(const agreed::ResendCommand& command) const { return agreed::resend_command(command); }
+  int operator()(const agreed::StatusCommand& command) const { return agreed::status_command(command); }
   int operator()(const agreed::Say& say) const {
     std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
     return say.code;

@@ -6,13 +6,14 @@
 #include "config/config.hpp"
 #include "config/describe.hpp"
 #include "daemon/cli/check_sample.hpp"
+#include "daemon/cli/print_json.hpp"
 #include "daemon/cli/say_problems.hpp"
 #include "daemon/exit_codes.hpp"
 
 namespace agreed {
 namespace {
 
-void print_json(const ConfigResult& result) {
+void print_result(const ConfigResult& result) {
   nlohmann::ordered_json problems = nlohmann::ordered_json::array();
   for (const ConfigProblem& problem : result.problems)
     problems.push_back({{"line", problem.line},
@@ -21,7 +22,7 @@ void print_json(const ConfigResult& result) {
                         {"message", problem.message},
                         {"warning", problem.warning}});
   const nlohmann::ordered_json answer{{"valid", result.config.has_value()}, {"problems", problems}};
-  fmt::print("{}\n", answer.dump(2, ' ', false, nlohmann::ordered_json::error_handler_t::replace));
+  print_json(answer);
 }
 
 }  // namespace
@@ -33,7 +34,7 @@ int check_configuration(const CheckCommand& command) {
   const bool sample_wanted = !command.sample.empty() && result.config;
   if (sample_wanted) return check_sample(*result.config, command.sample, command.analyzer, json);
   if (json) {
-    print_json(result);
+    print_result(result);
   } else {
     say_problems(result.problems, file);
     if (result.config) fmt::print("{}", describe(*result.config));

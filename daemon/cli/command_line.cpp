@@ -135,6 +135,85 @@ void add_restore(CLI::App& app, RestoreCommand& restore) {
       "Example:\n  agreed restore /etc/agreed/agreed.yaml /backup/agreed-2026-01-05.sqlite");
 }
 
+void add_token(CLI::App& app, TokenCommand& token) {
+  CLI::App& sub = add_command(
+      app, "token", "makes a token for the HTTP side, shows it once and stores its hash", token.config);
+  sub.add_option_function<std::string>(
+         "--role",
+         [&token](const std::string& role) {
+           if (role != "reader" && role != "operator")
+             throw CLI::ValidationError("--role",
+                                        "expected reader or operator, found '" + role + "'" +
+                                            settings_file::did_you_mean(role, {"reader", "operator"}));
+           token.role = role == "operator" ? Role::operator_ : Role::reader;
+         },
+         "reader: may read where the service asks for a token; operator: may also acknowledge alerts, send\n"
+         "messages again, ...")
+      ->type_name("ROLE")
+      ->required();
+  sub.add_option("--name", token.name, "whose it is, for the tokens file; else the role and a number");
+  add_json(sub, token.json);
+  sub.footer(
+      "The tokens file is access.tokens_file of the configuration; it holds hashes only. The service reads "
+      "it\n"
+      "again when it changes, so run this as the user of the service, or let it read the file.\n"
+      "Exit status: 0 done, 2 wrong use or configuration (no tokens file, name taken), 3 it could not be "
+      "stored.\n"
+      "Example:\n  agreed token /etc/agreed/agreed.yaml --role operator --name shift-leader");
+}
+
+void add_send_test(CLI::App& app, SendTestCommand& test) {
+  CLI::App& sub =
+      add_command(app, "send-test", "sends a test message to a webhook and prints the answer", test.config);
+  sub.add_option("ROUTE", test.route, "a name of alerts.routes; without it, every one");
+  add_json(sub, test.json);
+  sub.footer(
+      "One event of type agreed.test, signed and sent as alerts are: redirects are not followed, "
+      "certificates\n"
+      "are verified, 10 s at most. It is not journaled and not tried again; the service need not run.\n"
+      "Exit status: 0 delivered (answered 2xx), 1 not, 2 no such route, wrong use or configuration.\n"
+      "Example:\n  agreed send-test /etc/agreed/agreed.yaml engineer");
+}
+
+void add_token_file(CLI::App& sub, std::filesystem::path& file) {
+  sub.add_option("--token-file", file, "a file whose first line is the token; else AGREED_TOKEN is used");
+}
+
+void add_resend(CLI::App& app, ResendCommand& resend) {
+  CLI::App& sub = add_command(
+      app, "resend", "lets the running service send a message once more, under the same id", resend.config);
+  sub.add_option("ID", resend.message, "the message: webhook-id, as deliveries of /api/alerts/{id} have it")
+      ->required();
+  add_token_file(sub, resend.token_file);
+  sub.add_option("--url", resend.url, "where the service is, if not where the configuration says it listens");
+  add_json(sub, resend.json);
+  sub.footer(
+      "For a message that was given up (undeliverable), or one that arrived and was lost there. An endpoint\n"
+      "that said it was gone (410) is tried again. Needs an operator token (agreed token): from "
+      "--token-file,\n"
+      "or from the environment variable AGREED_TOKEN; never as an argument, which others can see.\n"
+      "Exit status: 0 queued, 1 no such message, or it waits to be sent anyway, 2 wrong use, configuration "
+      "or\n"
+      "token, 3 the service cannot be reached.\n"
+      "Example:\n  agreed resend /etc/agreed/agreed.yaml msg_0123456789abcdef0123456789abcdef "
+      "--token-file ~/.agreed-token");
+}
+
+void add_status(CLI::App& app, StatusCommand& status) {
+  CLI::App& sub = *app.add_subcommand("status", "what the running service says, in one screen");
+  sub.add_option("TARGET", status.target, "the configuration file, or the URL of a service")->required();
+  add_token_file(sub, status.token_file);
+  add_json(sub, status.json);
+  sub.footer(
+      "A service that can be reached from outside asks for a reader token (agreed token): from "
+      "--token-file,\n"
+      "or from the environment variable AGREED_TOKEN. --json prints /api/status as it is. Colour only on a\n"
+      "terminal and unless NO_COLOR is set.\n"
+      "Exit status: 0 everything agrees, 1 not everything, 2 wrong use, configuration or token,\n"
+      "3 the service cannot be reached.\n"
+      "Example:\n  agreed status /etc/agreed/agreed.yaml\n  agreed status http://127.0.0.1:7480 --json");
+}
+
 }  // namespace
 
 Command parse_command_line(std::span<const std::string> arguments) {
@@ -161,6 +240,14 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_backup(app, backup);
   RestoreCommand restore;
   add_restore(app, restore);
+  TokenCommand token;
+  add_token(app, token);
+  SendTestCommand send_test;
+  add_send_test(app, send_test);
+  ResendCommand resend;
+  add_resend(app, resend);
+  StatusCommand status;
+  add_status(app, status);
 
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
@@ -184,6 +271,10 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("verify")) return verify;
   if (app.got_subcommand("backup")) return backup;
   if (app.got_subcommand("restore")) return restore;
+  if (app.got_subcommand("token")) return token;
+  if (app.got_subcommand("send-test")) return send_test;
+  if (app.got_subcommand("resend")) return resend;
+  if (app.got_subcommand("status")) return status;
   return example;
 }
 

@@ -7,6 +7,7 @@
 #include <variant>
 #include <vector>
 
+#include "daemon/http/tokens.hpp"
 #include "daemon/journal/journal_types.hpp"
 
 namespace agreed {
@@ -37,6 +38,29 @@ struct RestoreCommand {
   std::filesystem::path config, file;
   bool json = false;
 };
+struct TokenCommand {
+  std::filesystem::path config;
+  Role role = Role::reader;
+  std::string name;  ///< empty: one is made of the role
+  bool json = false;
+};
+struct SendTestCommand {
+  std::filesystem::path config;
+  std::string route;  ///< empty: every one
+  bool json = false;
+};
+struct ResendCommand {
+  std::filesystem::path config;
+  std::string message;               ///< its webhook-id
+  std::filesystem::path token_file;  ///< empty: AGREED_TOKEN; likewise below
+  std::string url;                   ///< empty: where the configuration says the service listens
+  bool json = false;
+};
+struct StatusCommand {
+  std::string target;  ///< a configuration file, or the URL of a service
+  std::filesystem::path token_file;
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
@@ -44,7 +68,8 @@ struct Say {
 };
 
 using Command =
-    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand, Say>;
+    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand,
+                 TokenCommand, SendTestCommand, ResendCommand, StatusCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

@@ -1,14 +1,14 @@
 #include "daemon/cli/journal_commands.hpp"
 
 #include <filesystem>
-#include <optional>
 #include <string>
 
 #include <fmt/format.h>
 #include <nlohmann/json.hpp>
 
 #include "config/config.hpp"
-#include "daemon/cli/say_problems.hpp"
+#include "daemon/cli/print_json.hpp"
+#include "daemon/cli/with_configuration.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/journal/backup.hpp"
 #include "daemon/journal/verify.hpp"
@@ -18,10 +18,6 @@ namespace {
 
 namespace fs = std::filesystem;
 using Json = nlohmann::ordered_json;
-
-void print(const Json& json) {
-  fmt::print("{}\n", json.dump(2, ' ', false, Json::error_handler_t::replace));
-}
 
 std::string in_words(const ChainHead& head) {
   return std::to_string(head.sequence) + ":" + head.sha256;
@@ -50,23 +46,6 @@ void print_proof(const JournalProof& proof, const fs::path& file) {
                proof.faults.size() == 1 ? "1 fault" : "faults, the first of them below");
   for (const std::string& fault : proof.faults) fmt::print("fault    {}\n", fault);
   fmt::print("head     {}\n", in_words(proof.head));
-}
-
-/// Reads the configuration and does `work` with its state folder; what cannot be done is said.
-template <class Work>
-int in_state_of(const fs::path& config_file, bool json, const Work& work) {
-  const ConfigResult result = read_config(config_file);
-  if (!result.config) {
-    say_problems(result.problems, config_file);
-    return kWrongUse;
-  }
-  try {
-    return work(result.config->state);
-  } catch (const std::exception& error) {
-    fmt::print(stderr, "agreed: {}\n", error.what());
-    if (json) print({{"error", error.what()}});
-    return kCouldNotDoIt;
-  }
 }
 
 /// Nothing is created by looking: a journal that is not there is said to be missing.
@@ -104,12 +83,12 @@ void say_restored(const Restored& restored, const fs::path& state, const fs::pat
 }  // namespace
 
 int verify_command(const VerifyCommand& command) {
-  return in_state_of(command.config, command.json, [&](const fs::path& state) {
-    const fs::path file = command.file ? *command.file : database_of(state);
+  return with_configuration(command.config, command.json, [&](const Config& config) {
+    const fs::path file = command.file ? *command.file : database_of(config.state);
     must_exist(file);
     const JournalProof proof = verify_database(file, command.heads);
     if (command.json)
-      print(to_json(proof, file));
+      print_json(to_json(proof, file));
     else
       print_proof(proof, file);
     return proof.faults.empty() ? kDone : kAnswerIsNo;
@@ -117,11 +96,11 @@ int verify_command(const VerifyCommand& command) {
 }
 
 int backup_command(const BackupCommand& command) {
-  return in_state_of(command.config, command.json, [&](const fs::path& state) {
-    must_exist(database_of(state));
-    const JournalProof proof = backup_journal(state, command.file);
+  return with_configuration(command.config, command.json, [&](const Config& config) {
+    must_exist(database_of(config.state));
+    const JournalProof proof = backup_journal(config.state, command.file);
     if (command.json)
-      print(to_json(proof, command.file));
+      print_json(to_json(proof, command.file));
     else
       say_backup(proof, command.file);
     return proof.faults.empty() ? kDone : kAnswerIsNo;
@@ -129,15 +108,15 @@ int backup_command(const BackupCommand& command) {
 }
 
 int restore_command(const RestoreCommand& command) {
-  return in_state_of(command.config, command.json, [&](const fs::path& state) {
-    const Restored restored = restore_journal(state, command.file);
+  return with_configuration(command.config, command.json, [&](const Config& config) {
+    const Restored restored = restore_journal(config.state, command.file);
     if (command.json) {
       Json answer = to_json(restored.proof, command.file);
       answer["restored"] = restored.proof.faults.empty();
       answer["kept"] = restored.kept.empty() ? Json() : Json(restored.kept.string());
-      print(answer);
+      print_json(answer);
     } else {
-      say_restored(restored, state, command.file);
+      say_restored(restored, config.state, command.file);
     }
     return restored.proof.faults.empty() ? kDone : kAnswerIsNo;
   });

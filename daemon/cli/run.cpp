@@ -16,6 +16,7 @@
 #include <unistd.h>
 
 #include "config/config.hpp"
+#include "daemon/cli/listen_url.hpp"
 #include "daemon/cli/say_problems.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/engine.hpp"
@@ -108,11 +109,6 @@ class EngineStop {
   Engine& engine_;
 };
 
-std::string url_host(const std::string& address) {
-  if (address == "0.0.0.0" || address == "::") return "127.0.0.1";
-  return address.find(':') == std::string::npos ? address : '[' + address + ']';
-}
-
 /// The service from the first file descriptor to the last; destructors end it in the reverse order.
 int serve(const Config& config, const StopSignals& signals) {
   std::filesystem::create_directories(config.state);
@@ -125,14 +121,15 @@ int serve(const Config& config, const StopSignals& signals) {
                 [](const std::string& trouble) { log_warning("http: {}", trouble); });
   WebhookSender sender(endpoints_of(config), outbox_of(config.state),
                        [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });
-  const std::string address = fmt::format("http://{}:{}", url_host(config.listen.address), http.port());
+  const std::string address = listen_url(config.listen.address, http.port());
   http.start();
   fmt::print("agreed {} answers on {}\n", version(), address);
   std::fflush(stdout);
   log_info("agreed {} answers on {}, state in {}", version(), address, config.state.string());
 
-  engine.start(config.page_url.value_or(address),
-               [&sender](const std::string& route) { sender.wake(route); });
+  engine.start(
+      config.page_url.value_or(address), [&sender](const std::string& route) { sender.wake(route); },
+      [&sender](const std::string& route) { sender.resume(route); });
   const EngineStop engine_stop(engine);
   std::vector<std::unique_ptr<FolderWatcher>> watchers;
   for (std::uint32_t i = 0; i < config.intake.size(); ++i)

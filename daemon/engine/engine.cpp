@@ -67,9 +67,11 @@ Engine::~Engine() {
   stop();
 }
 
-void Engine::start(std::string base_url, std::function<void(const std::string&)> wake_sender) {
+void Engine::start(std::string base_url, std::function<void(const std::string&)> wake_sender,
+                   std::function<void(const std::string&)> resume_sender) {
   base_url_ = std::move(base_url);
   wake_sender_ = std::move(wake_sender);
+  resume_sender_ = std::move(resume_sender);
   thread_ = std::thread([this] { run(); });
 }
 
@@ -89,26 +91,55 @@ std::shared_ptr<const Snapshot> Engine::snapshot() const {
   return snapshot_;
 }
 
-std::future<AskAnswer> Engine::acknowledge(std::int64_t alert, std::string by, std::string note) {
+std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> inside,
+                                   std::function<void(const AskAnswer&)> after) {
   auto promise = std::make_shared<std::promise<AskAnswer>>();
   auto answer = std::make_shared<AskAnswer>();
   auto future = promise->get_future();
   Task task;
-  task.inside = [this, alert, by = std::move(by), note = std::move(note), answer](Instant now) {
-    try {
-      tell(book_->acknowledge(alert, by, note, now), now);
-    } catch (const std::out_of_range&) {
-      *answer = {AskOutcome::not_found, "there is no alert " + std::to_string(alert)};
-    } catch (const std::logic_error& error) {
-      *answer = {AskOutcome::not_possible, error.what()};
-    }
-  };
-  task.after = [promise, answer](const std::string& failure) {
+  task.inside = [inside = std::move(inside), answer](Instant now) { inside(*answer, now); };
+  task.after = [promise, answer, after = std::move(after)](const std::string& failure) {
     if (!failure.empty()) *answer = {AskOutcome::unavailable, failure};
+    after(*answer);
     promise->set_value(*answer);
   };
   if (!queue_.put(std::move(task))) promise->set_value({AskOutcome::unavailable, "the service is stopping"});
   return future;
+}
+
+std::future<AskAnswer> Engine::acknowledge(std::int64_t alert, std::string by, std::string note) {
+  return ask([this, alert, by = std::move(by), note = std::move(note)](AskAnswer& answer, Instant now) {
+    try {
+      tell(book_->acknowledge(alert, by, note, now), now);
+    } catch (const std::out_of_range&) {
+      answer = {AskOutcome::not_found, "There is no alert " + std::to_string(alert) + "."};
+    } catch (const std::logic_error& error) {
+      answer = {AskOutcome::not_possible, error.what()};
+    }
+  });
+}
+
+std::future<AskAnswer> Engine::resend(std::string message) {
+  return ask([this, message = std::move(message)](AskAnswer& answer,
+                                                  Instant now) { answer = send_again(message, now); },
+             [this](const AskAnswer& answer) {
+               if (answer.outcome == AskOutcome::done) resume_sender_(answer.words);
+             });
+}
+
+AskAnswer Engine::send_again(const std::string& message, Instant now) {
+  const AskedAgain asked = journal_->ask_again(message);
+  if (asked.answer == SendAgain::unknown)
+    return {AskOutcome::not_found, "There is no message " + message + "."};
+  if (asked.answer == SendAgain::waits_already)
+    return {AskOutcome::not_possible,
+            "The message waits to be sent to route " + asked.route + " anyway; its deliveries tell when."};
+  if (std::none_of(routes_.begin(), routes_.end(),
+                   [&](const Route& route) { return route.name == asked.route; }))
+    return {AskOutcome::not_possible,
+            "The message's route " + asked.route + " is not in the configuration any more."};
+  journal_->send_again(message, now);
+  return {AskOutcome::done, asked.route};
 }
 
 std::future<void> Engine::record(DeliveryTry attempt) {

@@ -25,8 +25,11 @@ class Engine final : public IntakeSink, public Service {
   ~Engine() override;
 
   /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were
-  /// committed.
-  void start(std::string base_url, std::function<void(const std::string& route)> wake_sender);
+  /// committed, `resume_sender(route)` after somebody asked for one again: also an endpoint that is gone
+  /// (410) is then tried.
+  void start(
+      std::string base_url, std::function<void(const std::string& route)> wake_sender,
+      std::function<void(const std::string& route)> resume_sender = [](const std::string&) {});
   /// Ends after the batch in hand; nothing is taken from then on.
   void stop();
 
@@ -42,10 +45,16 @@ class Engine final : public IntakeSink, public Service {
   [[nodiscard]] std::shared_ptr<const Snapshot> snapshot() const override;
   [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }
   std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) override;
+  std::future<AskAnswer> resend(std::string message) override;
   /// Journals a try to deliver a message; the future throws if it could not be committed.
   std::future<void> record(DeliveryTry attempt);
 
  private:
+  /// A task whose answer is given once it is committed.
+  std::future<AskAnswer> ask(
+      std::function<void(AskAnswer&, Instant now)> inside,
+      std::function<void(const AskAnswer&)> after = [](const AskAnswer&) {});
+  [[nodiscard]] AskAnswer send_again(const std::string& message, Instant now);
   void run() noexcept;
   void turn(Work work);
   void take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers);
@@ -93,7 +102,7 @@ class Engine final : public IntakeSink, public Service {
   const std::string config_sha256_;
   const std::string config_text_;
   std::string base_url_;
-  std::function<void(const std::string&)> wake_sender_;
+  std::function<void(const std::string&)> wake_sender_, resume_sender_;
 
   WorkQueue queue_;
   std::unique_ptr<Journal> journal_;

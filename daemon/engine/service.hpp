@@ -15,7 +15,7 @@ enum class AskOutcome { done, not_found, not_possible, unavailable };
 
 struct AskAnswer {
   AskOutcome outcome = AskOutcome::done;
-  std::string words;  ///< why not
+  std::string words;  ///< why not; of what was done, see there
 };
 
 class Service {
@@ -26,6 +26,10 @@ class Service {
   [[nodiscard]] virtual std::filesystem::path state() const = 0;
   /// Answered after COMMIT. Unknown alert: not_found; already resolved: not_possible.
   virtual std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) = 0;
+  /// Puts a delivered or undeliverable message (its webhook-id) in the outbox again; `words` of what was done
+  /// name its route. Answered after COMMIT. Unknown message: not_found; it waits anyway, or its route is not
+  /// configured any more: not_possible.
+  virtual std::future<AskAnswer> resend(std::string message) = 0;
 };
 
 }  // namespace agreed

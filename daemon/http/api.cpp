@@ -10,6 +10,7 @@
 #include "daemon/render/chart_json.hpp"
 #include "daemon/render/comparison_json.hpp"
 #include "daemon/render/health_json.hpp"
+#include "daemon/render/message_json.hpp"
 #include "daemon/render/status_json.hpp"
 
 namespace agreed {
@@ -124,30 +125,50 @@ HttpAnswer Api::acknowledge(const HttpRequest& request, const Target& target) {
   if (!body.error.empty()) return problem(400, body.error, request.target);
   const auto id = whole_number(target.segments[2]);
   if (!id) return no_such_alert(request, target.segments[2]);
-  if (!waiting_places_.try_acquire())
-    return unavailable(request, "Other acknowledgements are still waiting to be stored; try again.");
-  std::optional<AskAnswer> asked;
-  try {
-    asked = wait_for(service_.acknowledge(*id, std::move(body.by), std::move(body.note)));
-  } catch (const std::exception&) {
-    asked = AskAnswer{AskOutcome::unavailable, "The acknowledgement could not be stored; try again."};
-  }
-  waiting_places_.release();
-  if (!asked)
-    return unavailable(request, "The acknowledgement is not stored yet and may still be; look again.");
-  switch (asked->outcome) {
-    case AskOutcome::done:
-      break;
-    case AskOutcome::not_found:
-      return no_such_alert(request, target.segments[2]);
-    case AskOutcome::not_possible:
-      return problem(409, asked->words, request.target);
-    case AskOutcome::unavailable:
-      return unavailable(request, asked->words);
-  }
+  std::string words;
+  if (auto refusal = refused_by(
+          request, [&] { return service_.acknowledge(*id, std::move(body.by), std::move(body.note)); },
+          words))
+    return *std::move(refusal);
   HttpAnswer answer = alert(request, target);
   answer.etag.clear();
   return answer;
+}
+
+HttpAnswer Api::resend(const HttpRequest& request, const Target& target) {
+  const std::string& message = target.segments[2];
+  std::string route;
+  if (auto refusal = refused_by(
+          request, [&] { return service_.resend(message); }, route))
+    return *std::move(refusal);
+  return {202, "application/json", queued_message_json(message, route), "", {}};
+}
+
+std::optional<HttpAnswer> Api::refused_by(const HttpRequest& request,
+                                          const std::function<std::future<AskAnswer>()>& ask,
+                                          std::string& words) {
+  if (!waiting_places_.try_acquire())
+    return unavailable(request, "Other wishes are still waiting to be stored; try again.");
+  std::optional<AskAnswer> asked;
+  try {
+    asked = wait_for(ask());
+  } catch (const std::exception&) {
+    asked = AskAnswer{AskOutcome::unavailable, "It could not be stored; try again."};
+  }
+  waiting_places_.release();
+  if (!asked) return unavailable(request, "It is not stored yet and may still be; look again.");
+  words = std::move(asked->words);
+  switch (asked->outcome) {
+    case AskOutcome::done:
+      return std::nullopt;
+    case AskOutcome::not_found:
+      return problem(404, words.empty() ? "There is no such thing." : words, request.target);
+    case AskOutcome::not_possible:
+      return problem(409, words, request.target);
+    case AskOutcome::unavailable:
+      break;
+  }
+  return unavailable(request, words);
 }
 
 std::optional<AskAnswer> Api::wait_for(std::future<AskAnswer> asked) const {

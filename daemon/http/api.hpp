@@ -26,10 +26,15 @@ class Api {
   [[nodiscard]] HttpAnswer alerts(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer alert(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer acknowledge(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer resend(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer live(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
 
  private:
+  /// What the engine answered to a wish; nothing when it was done, then `words` is what it said.
+  [[nodiscard]] std::optional<HttpAnswer> refused_by(const HttpRequest& request,
+                                                     const std::function<std::future<AskAnswer>()>& ask,
+                                                     std::string& words);
   [[nodiscard]] std::optional<AskAnswer> wait_for(std::future<AskAnswer> asked) const;
 
   Service& service_;

@@ -20,7 +20,7 @@ struct ApiRoute {
   Endpoint endpoint;
 };
 
-constexpr std::array<ApiRoute, 10> kRoutes = {{
+constexpr std::array<ApiRoute, 11> kRoutes = {{
     {"GET", "/api/status", &Api::status},
     {"GET", "/api/charts", &Api::charts},
     {"GET", "/api/charts/*/*/*", &Api::chart},
@@ -29,6 +29,7 @@ constexpr std::array<ApiRoute, 10> kRoutes = {{
     {"GET", "/api/alerts", &Api::alerts},
     {"GET", "/api/alerts/*", &Api::alert},
     {"POST", "/api/alerts/*/acknowledge", &Api::acknowledge},
+    {"POST", "/api/messages/*/resend", &Api::resend},
     {"GET", "/health/live", &Api::live},
     {"GET", "/health/ready", &Api::ready},
 }};

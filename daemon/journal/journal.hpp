@@ -73,8 +73,12 @@ class Journal {
   [[nodiscard]] std::optional<LastMessage> last_message(std::string_view route, std::string_view type);
   /// While the newest try to this route was in vain.
   [[nodiscard]] std::optional<FailingDelivery> failing(std::string_view route);
-  /// Makes a message due again, whatever became of it; false if there is none with that webhook-id.
-  bool send_again(std::string_view webhook_id, Instant due_at);
+  /// Where the message with that webhook-id goes, and whether it can be sent again: it can, unless it is
+  /// unknown or waits to be sent anyway.
+  [[nodiscard]] AskedAgain ask_again(std::string_view webhook_id);
+  /// Makes a message due again if that can be; its tries are counted anew, so it is not given up at the first
+  /// failure.
+  AskedAgain send_again(std::string_view webhook_id, Instant due_at);
   void add_configuration(std::string_view text, std::string_view sha256, Instant at);
 
   // Reading forward, voided and censored readings left out; within the open batch its rows are seen.

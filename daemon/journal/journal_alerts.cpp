@@ -56,11 +56,20 @@ void note_try(Store& store, const DeliveryTry& attempt) {
   row->exec();
 }
 
-std::optional<std::int64_t> message_of(Store& store, std::string_view webhook_id) {
-  Query row = store.query("SELECT id FROM messages WHERE webhook_id = ?");
+struct FoundMessage {
+  std::int64_t id = 0;
+  AskedAgain asked;
+};
+
+FoundMessage message_of(Store& store, std::string_view webhook_id) {
+  Query row = store.query(
+      "SELECT m.id, m.route, o.state = 'waiting' FROM messages m JOIN outbox o ON o.message = m.id "
+      "WHERE m.webhook_id = ?");
   row->bind(1, std::string(webhook_id));
-  if (!row->executeStep()) return std::nullopt;
-  return row->getColumn(0).getInt64();
+  if (!row->executeStep()) return {0, {SendAgain::unknown, ""}};
+  const bool waits = row->getColumn(2).getInt() != 0;
+  return {row->getColumn(0).getInt64(),
+          {waits ? SendAgain::waits_already : SendAgain::queued, row->getColumn(1).getString()}};
 }
 
 }  // namespace
@@ -118,16 +127,21 @@ void Journal::add_try(const DeliveryTry& attempt) {
   });
 }
 
-bool Journal::send_again(std::string_view webhook_id, Instant due_at) {
+AskedAgain Journal::ask_again(std::string_view webhook_id) {
+  return journal::translating(impl_->file, [&] { return message_of(*impl_, webhook_id).asked; });
+}
+
+AskedAgain Journal::send_again(std::string_view webhook_id, Instant due_at) {
   return impl_->in_open_batch([&] {
-    const auto message = message_of(*impl_, webhook_id);
-    if (!message) return false;
-    impl_->history.start(Table::resends).integer(*message).time(due_at).insert();
-    Query row = impl_->query("UPDATE outbox SET state = 'waiting', due_at = ?2 WHERE message = ?1");
-    row->bind(1, *message);
+    FoundMessage message = message_of(*impl_, webhook_id);
+    if (message.asked.answer != SendAgain::queued) return std::move(message.asked);
+    impl_->history.start(Table::resends).integer(message.id).time(due_at).insert();
+    Query row =
+        impl_->query("UPDATE outbox SET state = 'waiting', due_at = ?2, tries = 0 WHERE message = ?1");
+    row->bind(1, message.id);
     row->bind(2, journal::milliseconds(due_at));
     row->exec();
-    return true;
+    return std::move(message.asked);
   });
 }
 

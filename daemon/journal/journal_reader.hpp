@@ -81,6 +81,7 @@ class JournalReader {
   ~JournalReader();
   JournalReader(JournalReader&&) noexcept;
 
+  [[nodiscard]] std::string source();  ///< as Journal::source
   [[nodiscard]] std::vector<AlertRecord> alerts(const AlertQuery& query);
   [[nodiscard]] std::optional<AlertRecord> alert(std::int64_t id);
   /// The oldest undelivered, not given up message of `route`, whether due or not: order per route is kept.

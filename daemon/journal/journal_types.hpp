@@ -104,6 +104,15 @@ struct OutboxMessage {
   int tries = 0;
 };
 
+/// What became of asking for a message to be sent again.
+enum class SendAgain { queued, unknown, waits_already };
+
+/// A message as it is asked for again: whether it will be, and where it goes.
+struct AskedAgain {
+  SendAgain answer = SendAgain::queued;
+  std::string route;  ///< empty when unknown
+};
+
 /// When a message was made, and whether it still waits to be delivered.
 struct LastMessage {
   Instant created_at{};

@@ -50,7 +50,8 @@ std::vector<DeliveryRow> deliveries_of(SQLite::Database& database, std::int64_t 
   std::vector<DeliveryRow> deliveries;
   SQLite::Statement rows(
       database,
-      "SELECT m.webhook_id, m.route, m.type, o.state, m.created_at, o.due_at, o.tries, l.status, l.error, "
+      "SELECT m.webhook_id, m.route, m.type, o.state, m.created_at, o.due_at, "
+      "(SELECT count(*) FROM delivery_tries c WHERE c.message = m.id), l.status, l.error, "
       "(SELECT max(at) FROM delivery_tries d WHERE d.message = m.id AND d.delivered = 1) "
       "FROM messages m JOIN outbox o ON o.message = m.id LEFT JOIN delivery_tries l ON l.id = "
       "(SELECT max(id) FROM delivery_tries t WHERE t.message = m.id) WHERE m.alert = ? ORDER BY m.id");
@@ -134,6 +135,14 @@ JournalReader::JournalReader(const std::filesystem::path& folder) {
 }
 JournalReader::~JournalReader() = default;
 JournalReader::JournalReader(JournalReader&&) noexcept = default;
+
+std::string JournalReader::source() {
+  return journal::translating(impl_->file, [&]() -> std::string {
+    SQLite::Statement row(*impl_->database, "SELECT source FROM meta");
+    row.executeStep();
+    return row.getColumn(0).getString();
+  });
+}
 
 std::vector<AlertRecord> JournalReader::alerts(const AlertQuery& query) {
   return journal::translating(impl_->file, [&] {

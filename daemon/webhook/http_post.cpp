@@ -134,11 +134,11 @@ std::string words_for(httplib::Error error) {
 httplib::Request library_request(const PostRequest& request, const std::string& path, std::size_t most,
                                  const std::shared_ptr<Call>& call) {
   httplib::Request posted;
-  posted.method = "POST";
+  posted.method = request.method;
   posted.path = path;
   posted.body = request.body;
   for (const auto& [name, value] : request.headers) posted.headers.emplace(name, value);
-  posted.headers.emplace("Content-Type", request.content_type);
+  if (!request.content_type.empty()) posted.headers.emplace("Content-Type", request.content_type);
   posted.response_handler = [call](const httplib::Response& response) {
     call->head(response.status, response.get_header_value("Retry-After"));
     return true;

@@ -1,6 +1,6 @@
 #pragma once
-// One POST under one hard deadline. The only unit that knows the HTTP library's client, which by itself has
-// no total deadline, no limit on an answer, and cannot be interrupted while it connects.
+// One POST, or GET, under one hard deadline. The only unit that knows the HTTP library's client, which by
+// itself has no total deadline, no limit on an answer, and cannot be interrupted while it connects.
 #include <cstddef>
 #include <filesystem>
 #include <optional>
@@ -14,7 +14,8 @@
 namespace agreed {
 
 struct PostRequest {
-  std::string url;  ///< http:// or https://, without user or fragment
+  std::string method = "POST";  ///< or "GET", then without content_type and body
+  std::string url;              ///< http:// or https://, without user or fragment
   std::vector<std::pair<std::string, std::string>> headers;
   std::string content_type;
   std::string body;                              ///< sent byte for byte

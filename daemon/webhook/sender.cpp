@@ -36,6 +36,10 @@ class WebhookSender::Lane {
     ++wakes_;
     changed_.notify_all();
   }
+  void resume() {
+    ended_ = false;
+    wake();
+  }
   void request_stop() { thread_.request_stop(); }
   void join() {
     if (thread_.joinable()) thread_.join();
@@ -46,7 +50,7 @@ class WebhookSender::Lane {
  private:
   void run(const std::stop_token& stop) {
     Duration trouble = options_.after_trouble;
-    while (!stop.stop_requested() && !ended_) {
+    while (!stop.stop_requested()) {
       try {
         step(stop);
         trouble = options_.after_trouble;
@@ -61,6 +65,7 @@ class WebhookSender::Lane {
   /// Sends the oldest message if it is due, else waits for that, or for news.
   void step(const std::stop_token& stop) {
     const std::uint64_t news = wakes();
+    if (ended_) return pause(stop, options_.longest_wait, news);
     const auto message = next_(endpoint_.route);
     if (!message) return pause(stop, options_.longest_wait, news);
     const Duration wait = time_until_due(*message);
@@ -87,8 +92,9 @@ class WebhookSender::Lane {
     if (outcome.status == 0 && stop.stop_requested()) return;  // nothing is known of it: made again at start
     const double chance = std::uniform_real_distribution<double>(0.0, 1.0)(random_);
     const DeliveryTry result = judge(message, outcome, now_utc(), chance, options_.retry);
-    if (!record(result, stop)) return;
+    // Before it is recorded: whoever sees the message given up may ask for it again at once.
     if (result.status == kGone) ended_ = true;
+    if (!record(result, stop)) return;
     if (result.next_due)
       set_due(*result.next_due - now_utc());
     else
@@ -172,6 +178,11 @@ WebhookSender::~WebhookSender() {
 void WebhookSender::wake(const std::string& route) {
   for (const auto& lane : lanes_)
     if (lane->route() == route) lane->wake();
+}
+
+void WebhookSender::resume(const std::string& route) {
+  for (const auto& lane : lanes_)
+    if (lane->route() == route) lane->resume();
 }
 
 std::vector<std::string> WebhookSender::ended() const {

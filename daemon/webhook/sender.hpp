@@ -43,8 +43,12 @@ class WebhookSender {
   /// New messages of the route were committed. Any thread.
   void wake(const std::string& route);
 
-  /// Routes whose endpoint answered 410: nothing is sent there any more until the next start; what waits is
-  /// kept.
+  /// Somebody asks for a message of the route again: as wake(), and an endpoint that answered 410 is tried
+  /// again. Any thread.
+  void resume(const std::string& route);
+
+  /// Routes whose endpoint answered 410: nothing is sent there any more until resume() or the next start;
+  /// what waits is kept.
   [[nodiscard]] std::vector<std::string> ended() const;
 
   /// Ends the threads, in less than a second even during a call; such a call is not recorded and made again

@@ -187,8 +187,21 @@ class FakeService : public Service {
     } else if (alert == 18) {
       promise.set_value({AskOutcome::not_possible, "Alert 18 is resolved already."});
     } else {
-      promise.set_value({AskOutcome::not_found, ""});
+      promise.set_value({AskOutcome::not_found, "There is no alert " + std::to_string(alert) + "."});
     }
+    return promise.get_future();
+  }
+  /// Knows msg_1, which can be sent again, and msg_2, which waits.
+  std::future<AskAnswer> resend(std::string message) override {
+    std::promise<AskAnswer> promise;
+    if (down)
+      promise.set_value({AskOutcome::unavailable, "The disk is full."});
+    else if (message == "msg_1")
+      promise.set_value({AskOutcome::done, "engineer"});
+    else if (message == "msg_2")
+      promise.set_value({AskOutcome::not_possible, "The message waits anyway."});
+    else
+      promise.set_value({AskOutcome::not_found, "There is no message " + message + "."});
     return promise.get_future();
   }
 

@@ -396,3 +396,20 @@ TEST_CASE("an address others can reach needs a reader's token, or to be opened o
   CHECK_FALSE(reads_need_token({"192.0.2.7", 7480, true}));
   CHECK_FALSE(reads_need_token({"127.0.0.1", 7480, false}));
 }
+
+TEST_CASE("a message is sent again for an operator, once it is known and does not wait") {
+  House house;
+  const auto ask = [&](const std::string& id, const std::string& token = "ooo") {
+    return house.ask("/api/messages/" + id + "/resend", "POST", token);
+  };
+  const HttpAnswer done = ask("msg_1");
+  CHECK(done.status == 202);
+  CHECK(json::parse(done.body) == json{{"message", "msg_1"}, {"route", "engineer"}, {"state", "waiting"}});
+  check_problem(ask("msg_1", ""), 401);
+  check_problem(ask("msg_1", "rrr"), 403);
+  check_problem(ask("msg_2"), 409);
+  check_problem(ask("msg_9"), 404);
+  check_problem(house.ask("/api/messages/msg_1/resend"), 405);
+  house.service.down = true;
+  check_problem(ask("msg_1"), 503);
+}

@@ -98,6 +98,7 @@ TEST_CASE("messages of a route keep their order: the oldest not settled one come
   CHECK_FALSE(reader.next_message("c").has_value());
   const auto first = reader.next_message("a");
   REQUIRE(first.has_value());
+  CHECK(reader.source() == journal.source());
   CHECK(first->id == a1);
   CHECK(first->webhook_id == "a1");
   CHECK(first->route == "a");
@@ -118,9 +119,14 @@ TEST_CASE("messages of a route keep their order: the oldest not settled one come
   CHECK(reader.next_message("b")->webhook_id == "b1");
 
   in_batch(journal, 4, [&] {
-    CHECK(journal.send_again("a1", at(700)));
-    CHECK_FALSE(journal.send_again("nobody", at(700)));
+    CHECK(journal.ask_again("a1").answer == SendAgain::queued);
+    const AskedAgain asked = journal.send_again("a1", at(700));
+    CHECK(asked.answer == SendAgain::queued);
+    CHECK(asked.route == "a");
+    CHECK(journal.send_again("a1", at(701)).answer == SendAgain::waits_already);
+    CHECK(journal.send_again("nobody", at(700)).answer == SendAgain::unknown);
   });
+  CHECK(reader.next_message("a")->tries == 0);
   CHECK(reader.next_message("a")->id == a1);
   CHECK(reader.next_message("a")->due_at == at(700));
 }

@@ -175,7 +175,7 @@ TEST_CASE("410 ends the endpoint: that message is given up, the others are kept"
   outbox.add("shift", 1);
   outbox.add("shift", 2);
   outbox.add("engineer", 3);
-  Receiver gone({answer(410)}), alive({answer(200)});
+  Receiver gone({answer(410), answer(200)}), alive({answer(200)});
   auto sender = sender_of(outbox, {endpoint("shift", gone.url()), endpoint("engineer", alive.url())});
   (void)outbox.wait_for(2);
   sender.wake("shift");
@@ -184,6 +184,13 @@ TEST_CASE("410 ends the endpoint: that message is given up, the others are kept"
   CHECK(sender.ended() == std::vector<std::string>{"shift"});
   CHECK(outbox.next("shift")->id == 2);
   for (const auto& result : outbox.wait_for(2)) CHECK(result.given_up == (result.message == 1));
+
+  sender.resume("shift");
+  const auto tries = outbox.wait_for(3);
+  REQUIRE(tries.size() == 3);
+  CHECK(tries.back().message == 2);
+  CHECK(tries.back().delivered);
+  CHECK(sender.ended().empty());
 }
 
 TEST_CASE("Retry-After is waited for") {
