@@ -18,9 +18,10 @@ struct ChangeLimit {
 [[nodiscard]] ChangeLimit limit_for(Score score, double run_length);
 
 /// The limit of the level score at the n-th reading of a stretch, 5 or more, that later has the limit h. The
-/// first readings have fewer splits, each reading of them is nearly a new question, and a constant limit would
-/// call too rarely at the 5th to 9th reading and too often at the 10th to 30th; this one keeps the promised
-/// chance at each of them (Hawkins, Qiu and Kang 2003 calibrate theirs so). From the 30th on it is h.
+/// first readings have fewer splits, each reading of them is nearly a new question, and a constant limit
+/// would call too rarely at the 5th to 9th reading and too often at the 10th to 30th; this one keeps the
+/// promised chance at each of them (Hawkins, Qiu and Kang 2003 calibrate theirs so). From the 30th on it is
+/// h.
 [[nodiscard]] double level_limit_at(std::int64_t n, double h);
 
 /// The inverse of limit_for.
