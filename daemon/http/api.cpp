@@ -4,13 +4,17 @@
 
 #include "daemon/http/acknowledgement.hpp"
 #include "daemon/http/etag.hpp"
+#include "daemon/http/intake_parameters.hpp"
+#include "daemon/http/media_type.hpp"
 #include "daemon/http/parameters.hpp"
 #include "daemon/http/problem.hpp"
 #include "daemon/render/alert_record_json.hpp"
 #include "daemon/render/chart_json.hpp"
 #include "daemon/render/comparison_json.hpp"
+#include "daemon/render/files_json.hpp"
 #include "daemon/render/health_json.hpp"
 #include "daemon/render/message_json.hpp"
+#include "daemon/render/readings_text.hpp"
 #include "daemon/render/status_json.hpp"
 
 namespace agreed {
@@ -21,6 +25,12 @@ constexpr auto kLongestWait = std::chrono::seconds(5);
 HttpAnswer json_answer(std::string body) {
   HttpAnswer answer{200, "application/json", std::move(body), "", {}};
   answer.etag = etag_of(answer.body);
+  return answer;
+}
+
+/// `answer` with a link to the following page, if there is one (RFC 8288).
+HttpAnswer with_next(HttpAnswer answer, const Target& target, const std::optional<std::string>& next) {
+  if (next) answer.headers.emplace_back("Link", "<" + next_page(target, *next) + R"(>; rel="next")");
   return answer;
 }
 
@@ -53,8 +63,11 @@ std::optional<ComparisonIndex> find_comparison(const Settings& settings, const s
 
 }  // namespace
 
-Api::Api(Service& service, AlertSource alerts, std::function<bool()> stopping)
-    : service_(service), alerts_(std::move(alerts)), stopping_(std::move(stopping)) {}
+Api::Api(Service& service, AlertSource alerts, IntakeSource intake, std::function<bool()> stopping)
+    : service_(service),
+      alerts_(std::move(alerts)),
+      intake_(std::move(intake)),
+      stopping_(std::move(stopping)) {}
 
 HttpAnswer Api::status(const HttpRequest&, const Target&) {
   const auto snapshot = service_.snapshot();
@@ -176,6 +189,44 @@ std::optional<AskAnswer> Api::wait_for(std::future<AskAnswer> asked) const {
   while (asked.wait_for(std::chrono::milliseconds(50)) != std::future_status::ready)
     if (stopping_() || std::chrono::steady_clock::now() > last) return std::nullopt;
   return asked.get();
+}
+
+HttpAnswer Api::files(const HttpRequest& request, const Target& target) {
+  auto query = file_query(target);
+  if (!query.error.empty()) return problem(400, query.error, request.target);
+  const auto limit = static_cast<std::size_t>(query.value.limit);
+  ++query.value.limit;  // one more than asked for shows whether there is a next page
+  auto files = intake_.files(query.value);
+  if (const auto unknown = unknown_name(target, *service_.snapshot()->settings);
+      files.empty() && !unknown.empty())
+    return problem(400, unknown, request.target);
+  std::optional<std::string> next;
+  if (files.size() > limit) {
+    files.resize(limit);
+    next = std::to_string(files.back().id);
+  }
+  return with_next(json_answer(files_json(files, next)), target, next);
+}
+
+HttpAnswer Api::readings(const HttpRequest& request, const Target& target) {
+  auto query = reading_query(target);
+  if (!query.error.empty()) return problem(400, query.error, request.target);
+  const auto limit = static_cast<std::size_t>(query.value.limit);
+  ++query.value.limit;
+  auto readings = intake_.readings(query.value);
+  if (const auto unknown = unknown_name(target, *service_.snapshot()->settings);
+      readings.empty() && !unknown.empty())
+    return problem(400, unknown, request.target);
+  std::optional<std::string> next;
+  if (readings.size() > limit) {
+    readings.resize(limit);
+    next = reading_cursor(readings.back());
+  }
+  const bool csv = prefers_csv(request.accept);
+  HttpAnswer answer = json_answer(csv ? readings_csv(readings) : readings_json(readings, next));
+  if (csv) answer.content_type = "text/csv; charset=utf-8; header=present";
+  answer.headers.emplace_back("Vary", "Accept");
+  return with_next(std::move(answer), target, next);
 }
 
 HttpAnswer Api::live(const HttpRequest&, const Target&) {

@@ -6,6 +6,7 @@
 #include "daemon/engine/service.hpp"
 #include "daemon/http/alert_source.hpp"
 #include "daemon/http/answer_cache.hpp"
+#include "daemon/http/intake_source.hpp"
 #include "daemon/http/message.hpp"
 #include "daemon/http/target.hpp"
 
@@ -16,7 +17,7 @@ namespace agreed {
 class Api {
  public:
   /// `service` outlives the Api. `stopping` tells a waiting acknowledgement to give up.
-  Api(Service& service, AlertSource alerts, std::function<bool()> stopping);
+  Api(Service& service, AlertSource alerts, IntakeSource intake, std::function<bool()> stopping);
 
   [[nodiscard]] HttpAnswer status(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer charts(const HttpRequest& request, const Target& target);
@@ -27,6 +28,8 @@ class Api {
   [[nodiscard]] HttpAnswer alert(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer acknowledge(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer resend(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer files(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer readings(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer live(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
 
@@ -39,6 +42,7 @@ class Api {
 
   Service& service_;
   const AlertSource alerts_;
+  const IntakeSource intake_;
   const std::function<bool()> stopping_;
   AnswerCache cache_;
   // A worker waits while the engine commits; some must stay free for those who only look.

@@ -31,13 +31,13 @@ std::optional<std::int64_t> whole_number(std::string_view text) {
   return number;
 }
 
-Parameter<int> count_parameter(const Target& target, std::string_view name) {
-  constexpr int usual = 100, most = 500;
+Parameter<int> count_parameter(const Target& target, std::string_view name, int most) {
+  constexpr int usual = 100;
   const std::string* text = target.parameter(name);
   if (!text) return {usual, ""};
   const auto count = whole_number(*text);
   if (!count || *count < 1 || *count > most)
-    return {0, std::string(name) + " must be a whole number from 1 to 500."};
+    return {0, std::string(name) + " must be a whole number from 1 to " + std::to_string(most) + "."};
   return {static_cast<int>(*count), ""};
 }
 
@@ -55,9 +55,10 @@ Parameter<AlertQuery> alert_query(const Target& target) {
     else
       query.value.since = time->at;
   }
-  if (const std::string* cursor = target.parameter("cursor"); cursor && query.error.empty()) {
+  const std::string name = target.parameter("cursor") ? "cursor" : "after";
+  if (const std::string* cursor = target.parameter(name); cursor && query.error.empty()) {
     const auto id = whole_number(*cursor);
-    if (!id || *id < 1) query.error = "cursor must be the value of `next` in an earlier answer.";
+    if (!id || *id < 1) query.error = name + " must be the value of `next` in an earlier answer.";
     query.value.before_id = id.value_or(0);
   }
   return query;

@@ -20,7 +20,7 @@ struct ApiRoute {
   Endpoint endpoint;
 };
 
-constexpr std::array<ApiRoute, 11> kRoutes = {{
+constexpr std::array<ApiRoute, 13> kRoutes = {{
     {"GET", "/api/status", &Api::status},
     {"GET", "/api/charts", &Api::charts},
     {"GET", "/api/charts/*/*/*", &Api::chart},
@@ -30,6 +30,8 @@ constexpr std::array<ApiRoute, 11> kRoutes = {{
     {"GET", "/api/alerts/*", &Api::alert},
     {"POST", "/api/alerts/*/acknowledge", &Api::acknowledge},
     {"POST", "/api/messages/*/resend", &Api::resend},
+    {"GET", "/api/files", &Api::files},
+    {"GET", "/api/readings", &Api::readings},
     {"GET", "/health/live", &Api::live},
     {"GET", "/health/ready", &Api::ready},
 }};
@@ -78,7 +80,7 @@ HttpAnswer unless_known(const HttpRequest& request, HttpAnswer answer) {
 
 struct Router::Impl {
   explicit Impl(RouterParts given)
-      : parts(std::move(given)), api(parts.service, parts.alerts, parts.stopping) {}
+      : parts(std::move(given)), api(parts.service, parts.alerts, parts.intake, parts.stopping) {}
 
   HttpAnswer page(const HttpRequest& request, const Target& target) const {
     std::string path;

@@ -7,6 +7,7 @@
 
 #include "daemon/engine/service.hpp"
 #include "daemon/http/alert_source.hpp"
+#include "daemon/http/intake_source.hpp"
 #include "daemon/http/message.hpp"
 #include "daemon/http/tokens.hpp"
 
@@ -27,6 +28,7 @@ struct RouterParts {
   Service& service;  ///< outlives the router
   Tokens& tokens;    ///< outlives the router
   AlertSource alerts;
+  IntakeSource intake;
   PageHook pages;                 ///< may be empty
   bool reads_need_token = false;  ///< GET and HEAD, health excepted
   std::function<bool()> stopping = [] { return false; };

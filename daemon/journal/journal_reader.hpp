@@ -45,9 +45,18 @@ struct RejectedRow {
 struct FileRow {
   std::int64_t id = 0;
   std::string analyzer, name, sha256, outcome, reason;
-  Instant received_at{};
+  std::int64_t size = 0;
+  Instant received_at{};                ///< commit of its first batch
+  std::optional<Instant> committed_at;  ///< commit of its last one; nothing while it is being taken in
   std::int64_t accepted = 0, repeated = 0, rejected = 0;
   std::vector<RejectedRow> rejected_rows;  ///< at most 20
+};
+
+/// Which files, a page at a time, newest first.
+struct FileQuery {
+  std::string outcome, analyzer;  ///< empty: all
+  int limit = 100;
+  std::int64_t before_id = 0;  ///< cursor: ids below it; 0 = from the newest
 };
 
 /// One stored reading, also a voided or censored one.
@@ -58,21 +67,24 @@ struct ReadingRow {
   std::int32_t replicate = 0;
   std::int64_t revision = 0;  ///< 0, or how many corrections came before
   double value = 0;
-  int censored = 0;  ///< as in JournalReading
-  bool voided = false, clock_ambiguous = false;
+  int censored = 0;        ///< as in JournalReading
+  bool voided = false;     ///< taken back
+  bool corrected = false;  ///< and another stands in its place
+  bool clock_ambiguous = false;
   std::int64_t file = 0;
   std::uint32_t line = 0;
   std::string by, note;
 };
 
-/// Which readings, a page at a time, in the order of the key: item, measured_at, replicate, revision.
+/// Which readings, a page at a time, in the order of the key: analyzer, kind, measurand, item, measured_at,
+/// replicate, revision (analyzers and measurands in the order in which the journal met them).
 struct ReadingQuery {
-  std::string analyzer, measurand;  ///< both needed
-  StoredKind kind{};
+  std::string analyzer, measurand;  ///< empty: all
+  std::optional<StoredKind> kind;
   std::string item;                 ///< empty: all
   std::optional<Instant> from, to;  ///< measured_at, from <= at < to
   int limit = 100;
-  std::optional<ReadingRow> after;  ///< the last row of the page before (its item, time, replicate, revision)
+  std::optional<ReadingRow> after;  ///< the last row of the page before (its key)
 };
 
 class JournalReader {
@@ -86,7 +98,7 @@ class JournalReader {
   [[nodiscard]] std::optional<AlertRecord> alert(std::int64_t id);
   /// The oldest undelivered, not given up message of `route`, whether due or not: order per route is kept.
   [[nodiscard]] std::optional<OutboxMessage> next_message(std::string_view route);
-  [[nodiscard]] std::vector<FileRow> files(std::string_view outcome, int limit, std::int64_t before_id);
+  [[nodiscard]] std::vector<FileRow> files(const FileQuery& query);
   /// Every file of the analyzer with kGrownOutcome, oldest first.
   void each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take);
   [[nodiscard]] std::vector<ReadingRow> readings(const ReadingQuery& query);

@@ -1,4 +1,6 @@
 // Read-only views of the journal for HTTP, the sender and the command line.
+#include <limits>
+
 #include "daemon/journal/journal_impl.hpp"
 #include "daemon/journal/reader_impl.hpp"
 
@@ -114,6 +116,8 @@ FileRow file_row(SQLite::Database& database, SQLite::Statement& row) {
   f.accepted = row.getColumn(7).getInt64();
   f.repeated = row.getColumn(8).getInt64();
   f.rejected = row.getColumn(9).getInt64();
+  f.size = row.getColumn(10).getInt64();
+  if (!row.getColumn(11).isNull()) f.committed_at = instant(row.getColumn(11));
   if (f.rejected > 0) f.rejected_rows = rejected_rows_of(database, f.id);
   return f;
 }
@@ -122,11 +126,19 @@ constexpr const char* kFiles =
     "SELECT f.id, n.text, f.name, f.sha256, coalesce(o.outcome, ''), coalesce(o.reason, ''), b.committed_at, "
     "(SELECT coalesce(sum(accepted), 0) FROM arrivals a WHERE a.file = f.id), "
     "(SELECT coalesce(sum(repeated), 0) FROM arrivals a WHERE a.file = f.id), "
-    "(SELECT coalesce(sum(rejected), 0) FROM arrivals a WHERE a.file = f.id) "
+    "(SELECT coalesce(sum(rejected), 0) FROM arrivals a WHERE a.file = f.id), f.size, "
+    "(SELECT e.committed_at FROM batches e WHERE e.sequence = o.batch) "
     "FROM files f JOIN names n ON n.id = f.analyzer JOIN batches b ON b.sequence = f.batch ";
-constexpr const char* kAnyOutcome = "LEFT JOIN file_outcomes o ON o.file = f.id WHERE (?1 = 0 OR f.id < ?1) ";
+constexpr const char* kAnyOutcome = "LEFT JOIN file_outcomes o ON o.file = f.id WHERE f.id < ?1 ";
 constexpr const char* kOneOutcome =
-    "JOIN file_outcomes o ON o.file = f.id WHERE (?1 = 0 OR f.id < ?1) AND o.outcome = ?3 ";
+    "JOIN file_outcomes o ON o.file = f.id WHERE f.id < ?1 AND o.file < ?1 AND o.outcome = ?3 ";
+constexpr const char* kOfAnalyzer = "AND f.analyzer = (SELECT id FROM names WHERE text = ?4) ";
+constexpr const char* kFilesPage = "ORDER BY f.id DESC LIMIT ?2";
+
+std::string sql_of(const FileQuery& query) {
+  return std::string(kFiles) + (query.outcome.empty() ? kAnyOutcome : kOneOutcome) +
+         (query.analyzer.empty() ? "" : kOfAnalyzer) + kFilesPage;
+}
 
 }  // namespace
 
@@ -195,15 +207,14 @@ void JournalReader::each_grown(std::string_view analyzer, const std::function<vo
   });
 }
 
-std::vector<FileRow> JournalReader::files(std::string_view outcome, int limit, std::int64_t before_id) {
+std::vector<FileRow> JournalReader::files(const FileQuery& query) {
   return journal::translating(impl_->file, [&] {
     const Moment moment(*impl_->database);
-    SQLite::Statement rows(
-        *impl_->database,
-        std::string(kFiles) + (outcome.empty() ? kAnyOutcome : kOneOutcome) + "ORDER BY f.id DESC LIMIT ?2");
-    rows.bind(1, before_id);
-    rows.bind(2, limit);
-    if (!outcome.empty()) rows.bind(3, std::string(outcome));
+    SQLite::Statement rows(*impl_->database, sql_of(query));
+    rows.bind(1, query.before_id == 0 ? std::numeric_limits<std::int64_t>::max() : query.before_id);
+    rows.bind(2, query.limit);
+    if (!query.outcome.empty()) rows.bind(3, query.outcome);
+    if (!query.analyzer.empty()) rows.bind(4, query.analyzer);
     std::vector<FileRow> found;
     while (rows.executeStep()) found.push_back(file_row(*impl_->database, rows));
     return found;

@@ -61,6 +61,8 @@ struct House {
                    return found;
                  },
                  [](std::int64_t id) { return id == 17 ? std::optional(record(17)) : std::nullopt; }},
+                {[](const FileQuery&) { return std::vector<FileRow>(1); },
+                 [](const ReadingQuery&) { return std::vector<ReadingRow>(1); }},
                 [](const std::string& path, const std::string& query) -> std::optional<Page> {
                   if (path == "/") return Page{200, "text/html; charset=utf-8", "<title>Harrow Mill</title>"};
                   if (path == "/charts/line1/wheat-low/protein")
@@ -116,8 +118,8 @@ TEST_CASE("every path of the table answers") {
   House house;
   for (const char* path : {"/api/status", "/api/charts", "/api/charts/line1/wheat-low/protein",
                            "/api/charts/line1/wheat%2Dlow/protein?points=3", "/api/comparisons",
-                           "/api/comparisons/protein?pairs=2", "/api/alerts", "/api/alerts/17",
-                           "/health/live", "/health/ready"}) {
+                           "/api/comparisons/protein?pairs=2", "/api/alerts", "/api/alerts/17", "/api/files",
+                           "/api/readings", "/health/live", "/health/ready"}) {
     CAPTURE(path);
     const HttpAnswer answer = house.ask(path);
     CHECK(answer.status == 200);
@@ -243,12 +245,13 @@ TEST_CASE("alerts: state, since, limit and cursor reach the journal; bad ones ar
   CHECK(list.at("alerts")[0].at("id") == "20");
   CHECK(list.at("next") == "18");
   const json second = json::parse(house.ask("/api/alerts?limit=500&cursor=18").body);
+  CHECK(json::parse(house.ask("/api/alerts?limit=500&after=18").body) == second);
   CHECK(second.at("alerts").size() == 7);
   CHECK(second.at("alerts")[0].at("id") == "17");
   CHECK(second.at("next").is_null());
   for (const char* query :
        {"state=opened", "state=", "state=open,", "since=yesterday", "since=2026-01-05T06:00:00",
-        "since=2026-01-05T06:00:00+01:00", "cursor=0", "cursor=x", "limit=0"}) {
+        "since=2026-01-05T06:00:00+01:00", "cursor=0", "cursor=x", "after=0", "limit=0"}) {
     CAPTURE(query);
     check_problem(house.ask(std::string("/api/alerts?") + query), 400);
   }

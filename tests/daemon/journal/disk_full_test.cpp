@@ -78,7 +78,7 @@ TEST_CASE("disk full: the batch is to be retried, nothing is half written, and i
     CHECK(journal.head().sha256 == head.sha256);
     CHECK(checks_of(journal, "wheat-low").size() == 5000);
   }
-  CHECK_NOTHROW(JournalReader(disk.path()).files("", 10, 0));
+  CHECK_NOTHROW(JournalReader(disk.path()).files({"", "", 10, 0}));
   fs::remove(ballast);
   take_rows(journal, 2);
   CHECK(journal.totals().readings_accepted == 10'000);

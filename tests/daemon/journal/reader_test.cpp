@@ -152,14 +152,14 @@ TEST_CASE("files come newest first, with their counts and at most 20 of their re
     for (std::uint32_t line = 2; line < 30; ++line)
       journal.add_rejected_row(first, line, 3, std::string("a\0\xff", 3), "no number");
   });
-  CHECK(reader.files("", 10, 0).at(0).outcome.empty());
+  CHECK(reader.files({"", "", 10, 0}).at(0).outcome.empty());
   in_batch(journal, 20, [&] {
     journal.add_reading(first, check("wheat-low", 1, 1));
     journal.add_reading(first, check("wheat-low", 1, 1));
     journal.finish_file(first, "done", "");
     journal.finish_file(journal.add_file(file_of("s2")), "rejected", "no header");
   });
-  const auto files = reader.files("", 10, 0);
+  const auto files = reader.files({"", "", 10, 0});
   REQUIRE(files.size() == 2);
   CHECK(files[0].outcome == "rejected");
   CHECK(files[0].reason == "no header");
@@ -167,6 +167,8 @@ TEST_CASE("files come newest first, with their counts and at most 20 of their re
   CHECK(files[1].name == "odd\xff\nname.csv");
   CHECK(files[1].analyzer == "line1");
   CHECK(files[1].received_at == at(10));
+  CHECK(files[1].committed_at == at(20));
+  CHECK(files[1].size == static_cast<std::int64_t>(file_of("s1").size));
   CHECK(files[1].accepted == 2);
   CHECK(files[1].repeated == 1);
   CHECK(files[1].rejected == 28);
@@ -174,10 +176,12 @@ TEST_CASE("files come newest first, with their counts and at most 20 of their re
   CHECK(files[1].rejected_rows[0].line == 2);
   CHECK(files[1].rejected_rows[0].column == 3);
   CHECK(files[1].rejected_rows[0].text == std::string("a\0\xff", 3));
-  CHECK(reader.files("done", 10, 0).size() == 1);
-  CHECK(reader.files("repeated", 10, 0).empty());
-  CHECK(reader.files("", 1, 0).at(0).outcome == "rejected");
-  CHECK(reader.files("", 10, files[0].id).at(0).id == first);
+  CHECK(reader.files({"done", "", 10, 0}).size() == 1);
+  CHECK(reader.files({"repeated", "", 10, 0}).empty());
+  CHECK(reader.files({"done", "line1", 10, 0}).size() == 1);
+  CHECK(reader.files({"", "line9", 10, 0}).empty());
+  CHECK(reader.files({"", "", 1, 0}).at(0).outcome == "rejected");
+  CHECK(reader.files({"", "", 10, files[0].id}).at(0).id == first);
 }
 
 TEST_CASE("a reader sees no half batch and does not hold up the writer") {
@@ -221,6 +225,8 @@ TEST_CASE("stored readings come in pages by key, with voided, corrected and cens
   CHECK(first[1].note == "cup 2");
   CHECK(first[1].clock_ambiguous);
   CHECK(first[2].voided);
+  CHECK(first[2].corrected);
+  CHECK_FALSE(first[0].corrected);
   CHECK(first[2].received_at == at(10));
   query.after = first.back();
   const auto second = reader.readings(query);
@@ -236,6 +242,15 @@ TEST_CASE("stored readings come in pages by key, with voided, corrected and cens
   query.from = at(3);
   query.to = at(7);
   CHECK(reader.readings(query).size() == 1);
+  // Without a filter the pages of one row each show every reading once.
+  ReadingQuery every;
+  every.limit = 1;
+  std::vector<double> values;
+  for (auto page = reader.readings(every); !page.empty(); page = reader.readings(every)) {
+    values.push_back(page[0].value);
+    every.after = page[0];
+  }
+  CHECK(values == std::vector{9.0, 2.0, 0.05, 1.0, 1.5});
   query.analyzer = "line9";
   CHECK(reader.readings(query).empty());
 
