@@ -116,6 +116,7 @@ std::string not_configured(const Target& target, std::string_view what, const Th
   const std::string* name = target.parameter(what);
   if (!name) return {};
   std::vector<std::string_view> known;
+  known.reserve(things.size());
   for (const auto& thing : things) known.push_back(thing.id);
   if (std::find(known.begin(), known.end(), *name) != known.end()) return {};
   return "There is no " + std::string(what) + " " + printable(*name) + "; " + known_hint(*name, known);

@@ -19,7 +19,7 @@ const char* censoring_of(const ReadingRow& row) {
 }
 
 std::string value_of(const ReadingRow& row) {
-  const std::string number = exact(row.value);
+  std::string number = exact(row.value);
   if (row.censored == 0) return number;
   return (row.censored < 0 ? "<" : ">") + number;
 }
@@ -69,7 +69,7 @@ bool is_plain_number(std::string_view text) {
 std::string csv_cell(const std::string& text) {
   const bool computed =
       !text.empty() && std::string_view("=+-@").find(text.front()) != std::string_view::npos;
-  const std::string harmless = computed && !is_plain_number(text) ? "'" + text : text;
+  std::string harmless = computed && !is_plain_number(text) ? "'" + text : text;
   if (harmless.find_first_of(",\"\r\n") == std::string::npos) return harmless;
   std::string quoted = "\"";
   for (const char c : harmless) quoted.append(c == '"' ? 2 : 1, c);
