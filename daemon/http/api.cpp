@@ -34,6 +34,21 @@ HttpAnswer with_next(HttpAnswer answer, const Target& target, const std::optiona
   return answer;
 }
 
+/// What `rows_of` gives for the query, cut to one page, and the cursor of the next, if there is one: one row
+/// more than asked for shows that.
+template <class Query, class RowsOf, class CursorOf>
+auto page_of(Query query, const RowsOf& rows_of, const CursorOf& cursor_of) {
+  const auto limit = static_cast<std::size_t>(query.limit);
+  ++query.limit;
+  auto rows = rows_of(query);
+  std::optional<std::string> next;
+  if (rows.size() > limit) {
+    rows.resize(limit);
+    next = cursor_of(rows.back());
+  }
+  return std::pair(std::move(rows), std::move(next));
+}
+
 HttpAnswer no_such_alert(const HttpRequest& request, const std::string& id) {
   return problem(404, "There is no alert " + id + ".", request.target);
 }
@@ -113,16 +128,11 @@ HttpAnswer Api::comparison(const HttpRequest& request, const Target& target) {
 }
 
 HttpAnswer Api::alerts(const HttpRequest& request, const Target& target) {
-  auto query = alert_query(target);
+  const auto query = alert_query(target);
   if (!query.error.empty()) return problem(400, query.error, request.target);
-  const auto limit = static_cast<std::size_t>(query.value.limit);
-  ++query.value.limit;  // one more than asked for shows whether there is a next page
-  auto records = alerts_.alerts(query.value);
-  std::optional<std::int64_t> next;
-  if (records.size() > limit) {
-    records.resize(limit);
-    next = alert_record_id(records.back());
-  }
+  const auto [records, next] = page_of(query.value, alerts_.alerts, [](const AlertRecord& record) {
+    return std::to_string(alert_record_id(record));
+  });
   return json_answer(alert_records_json(records, next));
 }
 
@@ -192,41 +202,31 @@ std::optional<AskAnswer> Api::wait_for(std::future<AskAnswer> asked) const {
 }
 
 HttpAnswer Api::files(const HttpRequest& request, const Target& target) {
-  auto query = file_query(target);
+  const auto query = file_query(target);
   if (!query.error.empty()) return problem(400, query.error, request.target);
-  const auto limit = static_cast<std::size_t>(query.value.limit);
-  ++query.value.limit;  // one more than asked for shows whether there is a next page
-  auto files = intake_.files(query.value);
-  if (const auto unknown = unknown_name(target, *service_.snapshot()->settings);
-      files.empty() && !unknown.empty())
-    return problem(400, unknown, request.target);
-  std::optional<std::string> next;
-  if (files.size() > limit) {
-    files.resize(limit);
-    next = std::to_string(files.back().id);
-  }
+  const auto [files, next] =
+      page_of(query.value, intake_.files, [](const FileRow& file) { return std::to_string(file.id); });
+  if (auto refusal = refused_empty(files.empty(), request, target)) return *std::move(refusal);
   return with_next(json_answer(files_json(files, next)), target, next);
 }
 
 HttpAnswer Api::readings(const HttpRequest& request, const Target& target) {
-  auto query = reading_query(target);
+  const auto query = reading_query(target);
   if (!query.error.empty()) return problem(400, query.error, request.target);
-  const auto limit = static_cast<std::size_t>(query.value.limit);
-  ++query.value.limit;
-  auto readings = intake_.readings(query.value);
-  if (const auto unknown = unknown_name(target, *service_.snapshot()->settings);
-      readings.empty() && !unknown.empty())
-    return problem(400, unknown, request.target);
-  std::optional<std::string> next;
-  if (readings.size() > limit) {
-    readings.resize(limit);
-    next = reading_cursor(readings.back());
-  }
+  const auto [readings, next] = page_of(query.value, intake_.readings, reading_cursor);
+  if (auto refusal = refused_empty(readings.empty(), request, target)) return *std::move(refusal);
   const bool csv = prefers_csv(request.accept);
   HttpAnswer answer = json_answer(csv ? readings_csv(readings) : readings_json(readings, next));
   if (csv) answer.content_type = "text/csv; charset=utf-8; header=present";
   answer.headers.emplace_back("Vary", "Accept");
   return with_next(std::move(answer), target, next);
+}
+
+std::optional<HttpAnswer> Api::refused_empty(bool empty, const HttpRequest& request,
+                                             const Target& target) const {
+  const std::string unknown = empty ? unknown_name(target, *service_.snapshot()->settings) : "";
+  if (unknown.empty()) return std::nullopt;
+  return problem(400, unknown, request.target);
 }
 
 HttpAnswer Api::live(const HttpRequest&, const Target&) {

@@ -34,6 +34,10 @@ class Api {
   [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
 
  private:
+  /// A list is empty: because it was asked for something that neither is configured nor ever was? Names of
+  /// former configurations still have rows, so only an empty answer makes a name wrong.
+  [[nodiscard]] std::optional<HttpAnswer> refused_empty(bool empty, const HttpRequest& request,
+                                                        const Target& target) const;
   /// What the engine answered to a wish; nothing when it was done, then `words` is what it said.
   [[nodiscard]] std::optional<HttpAnswer> refused_by(const HttpRequest& request,
                                                      const std::function<std::future<AskAnswer>()>& ask,

@@ -55,13 +55,9 @@ std::string alert_record_json(const AlertRecord& record) {
   return json_text(alert_of(record));
 }
 
-std::string alert_records_json(const std::vector<AlertRecord>& records, std::optional<std::int64_t> next) {
-  Json list = Json::array();
-  for (const AlertRecord& record : records) list.push_back(alert_of(record));
-  Json answer = Json::object();
-  answer["alerts"] = std::move(list);
-  answer["next"] = next ? Json(std::to_string(*next)) : Json(nullptr);
-  return json_text(answer);
+std::string alert_records_json(const std::vector<AlertRecord>& records,
+                               const std::optional<std::string>& next) {
+  return json_page("alerts", records, alert_of, next);
 }
 
 std::int64_t alert_record_id(const AlertRecord& record) {

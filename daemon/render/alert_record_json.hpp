@@ -16,7 +16,7 @@ namespace agreed {
 
 /// {"alerts":[...],"next":...}: `next` is the cursor of the following page, null on the last one.
 [[nodiscard]] std::string alert_records_json(const std::vector<AlertRecord>& records,
-                                             std::optional<std::int64_t> next);
+                                             const std::optional<std::string>& next);
 
 /// The id of a stored alert.
 [[nodiscard]] std::int64_t alert_record_id(const AlertRecord& record);

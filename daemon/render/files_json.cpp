@@ -33,12 +33,7 @@ Json file_of(const FileRow& file) {
 }  // namespace
 
 std::string files_json(const std::vector<FileRow>& files, const std::optional<std::string>& next) {
-  Json list = Json::array();
-  for (const FileRow& file : files) list.push_back(file_of(file));
-  Json answer = Json::object();
-  answer["files"] = std::move(list);
-  answer["next"] = next ? Json(*next) : Json(nullptr);
-  return json_text(answer);
+  return json_page("files", files, file_of, next);
 }
 
 }  // namespace agreed

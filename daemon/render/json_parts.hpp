@@ -40,6 +40,23 @@ using Json = nlohmann::ordered_json;
   return period ? Json::array({to_rfc3339(period->first), to_rfc3339(period->last)}) : Json(nullptr);
 }
 
+/// The text of `json`; bytes that are not UTF-8 become the replacement character instead of an exception.
+[[nodiscard]] inline std::string json_text(const Json& json) {
+  return json.dump(-1, ' ', false, Json::error_handler_t::replace);
+}
+
+/// One page of a list as every list is told: {"NAME":[..],"next":..}.
+template <class Rows, class Tell>
+[[nodiscard]] std::string json_page(const char* name, const Rows& rows, const Tell& tell,
+                                    const std::optional<std::string>& next) {
+  Json list = Json::array();
+  for (const auto& row : rows) list.push_back(tell(row));
+  Json page = Json::object();
+  page[name] = std::move(list);
+  page["next"] = next ? Json(*next) : Json(nullptr);
+  return json_text(page);
+}
+
 /// The parts a subject has.
 [[nodiscard]] inline Json json_subject(const Subject& subject) {
   Json json = Json::object();
@@ -63,11 +80,6 @@ using Json = nlohmann::ordered_json;
         },
         detail);
   return json;
-}
-
-/// The text of `json`; bytes that are not UTF-8 become the replacement character instead of an exception.
-[[nodiscard]] inline std::string json_text(const Json& json) {
-  return json.dump(-1, ' ', false, Json::error_handler_t::replace);
 }
 
 }  // namespace agreed

@@ -77,12 +77,7 @@ std::string csv_cell(const std::string& text) {
 }
 
 std::string readings_json(const std::vector<ReadingRow>& readings, const std::optional<std::string>& next) {
-  Json list = Json::array();
-  for (const ReadingRow& row : readings) list.push_back(reading_of(row));
-  Json answer = Json::object();
-  answer["readings"] = std::move(list);
-  answer["next"] = next ? Json(*next) : Json(nullptr);
-  return json_text(answer);
+  return json_page("readings", readings, reading_of, next);
 }
 
 std::string readings_csv(const std::vector<ReadingRow>& readings) {
