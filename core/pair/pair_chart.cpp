@@ -56,6 +56,7 @@ struct Prefixes {
 // Gain in the explained sum of squares of v by a line in w on each side of a split over none, for the first
 // `splits` ones. No branches, so that the loop runs in vectors: a side without spread gets an endless
 // denominator instead.
+[[gnu::target_clones("avx2", "default")]]
 std::vector<double> gains_of(const Prefixes& before, const Sums& all, std::size_t splits) {
   const double least_spread = kNoSpread * all.ww;
   const double about_one_line = all.v * all.v / all.weight;

@@ -438,6 +438,7 @@ void Engine::fold_from_journal(Instant now) {
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  journal_->release_memory();
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
 }

@@ -9,8 +9,8 @@
 namespace agreed::journal {
 namespace {
 
-// Of 4 KiB: 16 MiB of log are written back when nothing waits, 64 MiB in any case.
-constexpr int kLogPages = 4000, kLongLogPages = 16000;
+// Of 4 KiB: 16 MiB of log are written back when nothing waits, 32 MiB in any case.
+constexpr int kLogPages = 4000, kLongLogPages = 8000;
 
 std::unique_ptr<SQLite::Database> open_and_migrate(const std::filesystem::path& file) {
   return translating(file, [&file] {
@@ -186,6 +186,9 @@ void Journal::rollback() noexcept {
 }
 void Journal::write_back(bool something_waits) noexcept {
   impl_->write_back(something_waits);
+}
+void Journal::release_memory() noexcept {
+  sqlite3_db_release_memory(impl_->database->getHandle());
 }
 void Journal::recover() {
   if (!impl_->doubtful) return;
