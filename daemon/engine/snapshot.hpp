@@ -39,7 +39,7 @@ struct Snapshot {
   std::vector<LazyView<ChartView>> charts;            ///< by ChartIndex
   std::vector<ChartState> chart_states;               ///< by ChartIndex, without looking at the view
   std::vector<LazyView<ComparisonView>> comparisons;  ///< by ComparisonIndex
-  std::shared_ptr<const std::vector<Alert>> alerts;   ///< open and acknowledged
+  std::vector<SharedAlert> alerts;                    ///< open and acknowledged
   int alerts_open = 0, alerts_acknowledged = 0, alerts_critical = 0;  ///< critical: those open
   std::map<std::string, int> alerts_of_comparison;  ///< open and acknowledged, by comparison id
   ChainHead chain;

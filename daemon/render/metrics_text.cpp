@@ -177,8 +177,7 @@ void tell_comparisons(OpenMetrics& out, const Snapshot& snapshot) {
 
 void tell_alerts(OpenMetrics& out, const Snapshot& snapshot) {
   std::map<std::tuple<AlertKind, Severity, AlertState>, int> alerts;
-  if (snapshot.alerts)
-    for (const Alert& alert : *snapshot.alerts) ++alerts[{alert.kind, alert.severity, alert.state}];
+  for (const SharedAlert& alert : snapshot.alerts) ++alerts[{alert->kind, alert->severity, alert->state}];
   out.begin({"agreed_alerts", gauge, "", "Alerts that are not resolved, by kind, severity and state."});
   for (const AlertKind kind : all_alert_kinds())
     for (const Severity severity : kSeverities)
