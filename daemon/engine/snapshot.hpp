@@ -32,6 +32,7 @@ struct Snapshot {
   std::vector<std::string> not_ready;  ///< why not, in words
   std::vector<std::string> remarks;    ///< what is wrong although it is ready, in words
   std::shared_ptr<const Settings> settings;
+  std::vector<std::string> routes;  ///< configured, by name
   IntakeTotals totals;
   std::uint64_t pending_files = 0;
   std::vector<AnalyzerStatus> analyzers;              ///< by AnalyzerIndex

@@ -195,6 +195,18 @@ std::optional<OutboxMessage> JournalReader::next_message(std::string_view route)
   });
 }
 
+std::vector<MessageCount> JournalReader::message_counts() {
+  return journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(*impl_->database,
+                           "SELECT route, state, count(*) FROM outbox GROUP BY route, state");
+    std::vector<MessageCount> counts;
+    while (rows.executeStep())
+      counts.push_back(
+          {rows.getColumn(0).getString(), rows.getColumn(1).getString(), rows.getColumn(2).getInt64()});
+    return counts;
+  });
+}
+
 void JournalReader::each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take) {
   journal::translating(impl_->file, [&] {
     SQLite::Statement rows(
