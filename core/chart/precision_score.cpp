@@ -6,6 +6,8 @@
 #include <cstdint>
 #include <limits>
 
+#include "core/base/wide_vectors.hpp"
+
 namespace agreed {
 namespace {
 // Ratios beyond these count as these, so that single precision can hold them.
@@ -61,8 +63,7 @@ float rough_cube_root(float x) {
   return kThird * (2 * root + x / (root * root));
 }
 
-// With the wider vectors of a processor that has them; every element is worked out alike, to the last bit.
-[[gnu::target_clones("avx2", "default")]]
+AGREED_WIDE_VECTORS
 void rough_scores(const Sides& sides, int first, int end, float* rough) {
   constexpr float kTwoNinths = 2.0F / 9.0F;
   for (int j = first; j < end; ++j) {
