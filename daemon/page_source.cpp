@@ -36,8 +36,9 @@ PageHook pages_of(const Service& service, AlertSource alerts) {
     const std::map<std::string, std::string> parameters =
         target ? std::map<std::string, std::string>(target->parameters.begin(), target->parameters.end())
                : std::map<std::string, std::string>();
-    auto page =
-        render_page(path, parameters, *snapshot, *snapshot->alerts, recently_resolved(alerts), now_utc());
+    std::vector<Alert> current;
+    for (const SharedAlert& alert : snapshot->alerts) current.push_back(*alert);
+    auto page = render_page(path, parameters, *snapshot, current, recently_resolved(alerts), now_utc());
     if (!page) return std::nullopt;
     return Page{page->status, std::move(page->content_type), std::move(page->body)};
   };

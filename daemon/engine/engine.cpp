@@ -52,7 +52,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
-  next_.alerts = std::make_shared<const std::vector<Alert>>();
+  for (const Route& route : routes_) next_.routes.push_back(route.name);
   for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
     next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
     next_.chart_states.push_back(ChartState::learning);
@@ -184,8 +184,9 @@ void Engine::turn(Work work) {
     answers = {[this, &work] { fail(work, trouble_); }};
   }
   publish(now);
-  for (const auto& answer : answers) answer();
   for (const std::string& route : std::exchange(routes_with_news_, {})) wake_sender_(route);
+  for (const auto& answer : answers) answer();
+  journal_->write_back(anything_waits());
 }
 
 void Engine::undo(const Work& work, const std::string& why) {
@@ -438,6 +439,7 @@ void Engine::fold_from_journal(Instant now) {
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  journal_->release_memory();
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
 }
@@ -520,16 +522,14 @@ void Engine::publish(Instant now) {
   next_.totals = journal_->totals();
   next_.chain = journal_->head();
   if (book_) {
-    std::vector<Alert> current;
-    for (const Alert* alert : book_->current()) current.push_back(*alert);
+    next_.alerts = book_->current();
     next_.alerts_open = next_.alerts_acknowledged = next_.alerts_critical = 0;
     next_.alerts_of_comparison.clear();
-    for (const Alert& alert : current) {
-      ++(alert.state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
-      if (alert.severity == Severity::critical && alert.state == AlertState::open) ++next_.alerts_critical;
-      if (!alert.subject.comparison.empty()) ++next_.alerts_of_comparison[alert.subject.comparison];
+    for (const SharedAlert& alert : next_.alerts) {
+      ++(alert->state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
+      if (alert->severity == Severity::critical && alert->state == AlertState::open) ++next_.alerts_critical;
+      if (!alert->subject.comparison.empty()) ++next_.alerts_of_comparison[alert->subject.comparison];
     }
-    next_.alerts = std::make_shared<const std::vector<Alert>>(std::move(current));
   }
   auto snapshot = std::make_shared<const Snapshot>(next_);
   const std::lock_guard lock(snapshot_mutex_);

@@ -20,7 +20,7 @@ struct ApiRoute {
   Endpoint endpoint;
 };
 
-constexpr std::array<ApiRoute, 13> kRoutes = {{
+constexpr std::array<ApiRoute, 14> kRoutes = {{
     {"GET", "/api/status", &Api::status},
     {"GET", "/api/charts", &Api::charts},
     {"GET", "/api/charts/*/*/*", &Api::chart},
@@ -32,6 +32,7 @@ constexpr std::array<ApiRoute, 13> kRoutes = {{
     {"POST", "/api/messages/*/resend", &Api::resend},
     {"GET", "/api/files", &Api::files},
     {"GET", "/api/readings", &Api::readings},
+    {"GET", "/metrics", &Api::metrics},
     {"GET", "/health/live", &Api::live},
     {"GET", "/health/ready", &Api::ready},
 }};
@@ -103,7 +104,7 @@ struct Router::Impl {
       allowed = candidate.method == "GET" ? "GET, HEAD" : "POST";
       if (candidate.method == method) route = &candidate;
     }
-    const bool is_page = !begins(target, "api") && !begins(target, "health");
+    const bool is_page = !begins(target, "api") && !begins(target, "health") && !begins(target, "metrics");
     if (is_page) allowed = "GET, HEAD";
     if (allowed && !route && !(is_page && method == "GET")) return not_allowed(request, allowed);
     if (auto refusal = refuse(request, target)) return *refusal;

@@ -1,4 +1,6 @@
 // The life of a batch: all or nothing, and the same after the journal is opened again.
+#include <algorithm>
+
 #include <doctest/doctest.h>
 
 #include "scratch.hpp"
@@ -204,4 +206,20 @@ TEST_CASE("rows of a file that is not there are refused") {
   journal.begin(at(0));
   CHECK_THROWS_AS(journal.add_rejected_row(7, 1, 1, "", ""), JournalError);
   CHECK_NOTHROW(journal.begin(at(0)));
+}
+
+TEST_CASE("the log is written back between batches, so that it does not grow with what was ever written") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  const std::string body(1'000'000, 'x');
+  std::uintmax_t longest = 0;
+  for (int i = 0; i < 60; ++i) {
+    journal.begin(at(i));
+    journal.add_finding(at(i), "check_standard_unstable", "{}", body);
+    journal.commit();
+    journal.write_back(false);
+    longest = std::max(longest, std::filesystem::file_size(folder.database().string() + "-wal"));
+  }
+  CHECK(longest < 20'000'000);
+  CHECK(std::filesystem::file_size(folder.database()) > 40'000'000);
 }
