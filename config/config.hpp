@@ -34,6 +34,7 @@ struct Listen {
   std::string address = "127.0.0.1";
   int port = 7480;  ///< 0: any free one
   bool open_to_network = false;
+  bool behind_proxy = false;  ///< a reverse proxy brings others here, whatever the address
 };
 
 /// Where an endpoint's signing secrets come from: `secret_file` (up to two lines) or `secret_env` (up to two

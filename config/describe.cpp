@@ -48,8 +48,8 @@ std::string service_text(const Config& config) {
   std::string text = config.settings->site + "\n";
   text += line("file", config.file.string());
   text += line("state", config.state.string());
-  text +=
-      line("listen", listen.address + ", " + port + (listen.open_to_network ? ", open to the network" : ""));
+  text += line("listen", listen.address + ", " + port + (listen.behind_proxy ? ", behind a proxy" : "") +
+                             (listen.open_to_network ? ", open to the network" : ""));
   if (config.page_url) text += line("page_url", *config.page_url);
   text +=
       line("tokens_file", config.tokens_file ? config.tokens_file->string() : "none: every POST is refused");

@@ -41,6 +41,7 @@ void read_service(const Section& top, const std::filesystem::path& folder, Draft
   config.listen.address = listen.text("address").value_or(config.listen.address);
   config.listen.port = listen.whole_number("port").value_or(config.listen.port);
   config.listen.open_to_network = listen.flag("open_to_network");
+  config.listen.behind_proxy = listen.flag("behind_proxy");
   if (const auto tokens = top.section("access").text("tokens_file"))
     config.tokens_file = resolved(folder, *tokens);
   const bool guarded = config.tokens_file || config.listen.open_to_network;
@@ -49,6 +50,10 @@ void read_service(const Section& top, const std::filesystem::path& folder, Draft
                  "found '" + config.listen.address +
                      "', which others can reach; expected access.tokens_file, or open_to_network: true "
                      "to let everyone read");
+  if (config.listen.behind_proxy && !guarded)
+    listen.error("behind_proxy",
+                 "found true, so others can reach the service through the proxy; expected "
+                 "access.tokens_file, or open_to_network: true to let everyone read");
   for (const IntakeSettings& intake : config.intake)
     if (intake.inbox == config.state)
       top.error("state", "found the inbox of analyzer " + intake.analyzer + ", expected a folder of its own");

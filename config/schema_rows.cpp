@@ -43,6 +43,8 @@ Rows service_rows() {
       row("listen.port", T::whole_number, "7480", "0 picks a free one and prints it").within(0, 65'535),
       row("listen.open_to_network", T::flag, "false",
           "true lets anyone who reaches the port read, without a token"),
+      row("listen.behind_proxy", T::flag, "false",
+          "true when a reverse proxy brings others here: reading then needs a token on loopback too"),
   };
 }
 

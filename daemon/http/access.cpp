@@ -26,13 +26,15 @@ HttpAnswer unauthorized(const HttpRequest& request, const std::string& detail, c
 }  // namespace
 
 bool reads_need_token(const Listen& listen) {
-  return !settings_file::is_loopback(listen.address) && !listen.open_to_network;
+  const bool reachable = listen.behind_proxy || !settings_file::is_loopback(listen.address);
+  return reachable && !listen.open_to_network;
 }
 
 void require_reader_token(const Listen& listen, Tokens& tokens) {
   if (!reads_need_token(listen) || tokens.any()) return;
-  throw std::runtime_error("listen.address " + listen.address +
-                           " can be reached by others, and no reader token is there to ask for: make one"
+  throw std::runtime_error("listen.address " + listen.address + " can be reached by others" +
+                           (listen.behind_proxy ? " through the proxy (listen.behind_proxy)" : "") +
+                           ", and no reader token is there to ask for: make one"
                            " (agreed token CONFIG --role reader), or set listen.open_to_network: true");
 }
 

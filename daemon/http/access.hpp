@@ -9,7 +9,8 @@
 
 namespace agreed {
 
-/// Whether reading needs a token: on an address others can reach, unless it was opened on purpose.
+/// Whether reading needs a token: on an address others can reach, by themselves or through a proxy, unless it
+/// was opened on purpose.
 [[nodiscard]] bool reads_need_token(const Listen& listen);
 
 /// Throws std::runtime_error, saying what to do, when `listen` would be reachable by others with nothing to

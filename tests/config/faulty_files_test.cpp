@@ -198,6 +198,8 @@ std::vector<Fault> faults_between_keys() {
        "comparisons.protein.error_ratio", "expected either both sd_x and sd_y or lambda alone"},
       {"open to others without a token", with("127.0.0.1, port", "0.0.0.0, port"), 2, 19, "listen.address",
        "expected access.tokens_file, or open_to_network: true"},
+      {"behind a proxy without a token", with("127.0.0.1, port", "127.0.0.1, behind_proxy: true, port"), 2,
+       44, "listen.behind_proxy", "expected access.tokens_file, or open_to_network: true"},
       {"no secret and no word of it", with(route, "at_least: notice"), 30, 7, "alerts.routes[0]",
        "found no signing secret, expected secret_file or secret_env, or unsigned: true"},
       {"unsigned, with a secret", with(route, "unsigned: true, secret_env: PATH"), 30, 7, "alerts.routes[0]",

@@ -178,6 +178,7 @@ TEST_CASE("defaults of the schema are those of the settings' own types") {
   CHECK(config.listen.address == Listen{}.address);
   CHECK(config.listen.port == Listen{}.port);
   CHECK(config.listen.open_to_network == Listen{}.open_to_network);
+  CHECK(config.listen.behind_proxy == Listen{}.behind_proxy);
   CHECK(config.alert_policy.remind_every == AlertPolicy{}.remind_every);
   CHECK(config.alert_policy.reopen_within == AlertPolicy{}.reopen_within);
   const IntakeSettings& intake = config.intake[0];

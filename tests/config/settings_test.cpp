@@ -210,6 +210,7 @@ TEST_CASE("others may reach the service once a token or an explicit word allows 
   CHECK(parsed(kMill + "listen: {address: 0.0.0.0, open_to_network: true}\n").listen.open_to_network);
   CHECK(parsed(kMill + "listen: {address: 0.0.0.0, port: 0}\naccess: {tokens_file: t}\n").listen.port == 0);
   CHECK(parsed(kMill + "listen: {address: \"::1\"}\n").listen.address == "::1");
+  CHECK(parsed(kMill + "listen: {behind_proxy: true}\naccess: {tokens_file: t}\n").listen.behind_proxy);
 }
 
 TEST_CASE("the text is kept as read") {

@@ -7,6 +7,7 @@ import os
 import pathlib
 import shutil
 import signal
+import socket
 import subprocess
 import sys
 import tempfile
@@ -33,6 +34,13 @@ def wait_until(condition, what, seconds=None):
         if time.monotonic() > end:
             raise AssertionError(f"waited in vain until {what}; last seen: {value!r}")
         time.sleep(0.02)
+
+
+def free_port():
+    """A port nobody listens on just now."""
+    with socket.socket() as probe:
+        probe.bind(("127.0.0.1", 0))
+        return probe.getsockname()[1]
 
 
 class Receiver:

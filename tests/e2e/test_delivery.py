@@ -4,7 +4,6 @@ import hashlib
 import os
 import pathlib
 import signal
-import socket
 import ssl
 import subprocess
 import tempfile
@@ -13,7 +12,7 @@ import time
 
 import harness
 from faults import set_clock_ahead
-from harness import SECRET, SiteTest, wait_until
+from harness import SECRET, SiteTest, free_port, wait_until
 from plant import START, csv, rfc3339
 from scripted import Scripted, answer, endless, hang, raw, reset, trickle
 from signed import key_of, signature, verifies
@@ -40,12 +39,6 @@ def tell_four_times(site):
 
 def told(requests):
     return [(r.event["type"], r.event["data"]["kind"], r.event["data"]["id"]) for r in requests]
-
-
-def free_port():
-    with socket.socket() as probe:
-        probe.bind(("127.0.0.1", 0))
-        return probe.getsockname()[1]
 
 
 class Delivery(SiteTest):

@@ -1,8 +1,7 @@
 """Alerts that arrive: told once, signed, in order, whatever the receiver does."""
 import hashlib
-import socket
 
-from harness import SiteTest, wait_until
+from harness import SiteTest, free_port, wait_until
 from plant import START, Plant, csv, rfc3339
 
 
@@ -63,9 +62,7 @@ class Webhooks(SiteTest):
         self.assertEqual(len(set(accepted)), len(accepted))
 
     def test_a_receiver_that_is_down_over_a_restart(self):
-        with socket.socket() as probe:
-            probe.bind(("127.0.0.1", 0))
-            port = probe.getsockname()[1]
+        port = free_port()
         site = self.make_site(receiver_port=port).start()
         site.drop("line1", "bad.csv", "nonsense\n")
         site.wait_taken()

@@ -420,6 +420,10 @@ TEST_CASE("an address others can reach needs a reader's token, or to be opened o
   CHECK(reads_need_token({"192.0.2.7", 7480, false}));
   CHECK_FALSE(reads_need_token({"192.0.2.7", 7480, true}));
   CHECK_FALSE(reads_need_token({"127.0.0.1", 7480, false}));
+  CHECK(reads_need_token({"127.0.0.1", 7480, false, true}));
+  CHECK_FALSE(reads_need_token({"127.0.0.1", 7480, true, true}));
+  CHECK_THROWS_WITH_AS(require_reader_token({"127.0.0.1", 7480, false, true}, none),
+                       doctest::Contains("behind_proxy"), std::runtime_error);
 }
 
 TEST_CASE("a message is sent again for an operator, once it is known and does not wait") {
