@@ -4,6 +4,7 @@
 #include <system_error>
 
 #include "daemon/clock.hpp"
+#include "daemon/give_way.hpp"
 #include "daemon/intake/archive.hpp"
 #include "daemon/intake/file_names.hpp"
 #include "daemon/intake/text.hpp"
@@ -56,6 +57,7 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
 }
 
 void WatchLoop::run(const std::stop_token& stop) noexcept {
+  give_way();
   while (!stop.stop_requested()) {
     try {
       turn(stop);
