@@ -9,7 +9,6 @@
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/engine/service_watch.hpp"
-#include "daemon/give_way.hpp"
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/render/finding_json.hpp"
@@ -158,7 +157,6 @@ std::future<void> Engine::record(DeliveryTry attempt) {
 }
 
 void Engine::run() noexcept {
-  give_way();
   Work work{.pieces = {}, .tasks = {}, .tick = true, .stop = false};
   while (!work.stop) {
     try {

@@ -4,7 +4,6 @@
 #include <system_error>
 
 #include "daemon/clock.hpp"
-#include "daemon/give_way.hpp"
 #include "daemon/intake/archive.hpp"
 #include "daemon/intake/file_names.hpp"
 #include "daemon/intake/text.hpp"
@@ -57,7 +56,6 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
 }
 
 void WatchLoop::run(const std::stop_token& stop) noexcept {
-  give_way();
   while (!stop.stop_requested()) {
     try {
       turn(stop);
