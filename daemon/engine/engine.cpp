@@ -52,6 +52,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
+  next_.overdue = alert_policy_.overdue;
   next_.alerts = std::make_shared<const std::vector<Alert>>();
   for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
     next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
