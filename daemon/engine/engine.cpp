@@ -53,6 +53,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
   for (const Route& route : routes_) next_.routes.push_back(route.name);
+  next_.overdue = alert_policy_.overdue;
   for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
     next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
     next_.chart_states.push_back(ChartState::learning);
