@@ -520,6 +520,10 @@ void Engine::publish(Instant now) {
                               to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
     next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
   }
+  if (const auto bytes = journal_->overlong_log_bytes())
+    next_.remarks.push_back("the journal's write-ahead log has grown to " +
+                            std::to_string(*bytes / 1'000'000) +
+                            " MB: another program keeps the journal open for reading; end it");
   next_.totals = journal_->totals();
   next_.chain = journal_->head();
   if (book_) {
