@@ -34,4 +34,9 @@ AcknowledgeBody read_acknowledge(const std::string& body) {
   return read;
 }
 
+std::string write_acknowledge(const std::string& by, const std::string& note) {
+  const nlohmann::json json = {{"by", by}, {"note", note}};
+  return json.dump(-1, ' ', false, nlohmann::json::error_handler_t::replace);
+}
+
 }  // namespace agreed

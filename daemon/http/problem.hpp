@@ -13,4 +13,7 @@ namespace agreed {
 /// type about:blank, title, status, detail, instance (the path as sent, without the query).
 [[nodiscard]] HttpAnswer problem(int status, const std::string& detail, std::string_view target);
 
+/// The detail of a problem document; of another answer its status in words.
+[[nodiscard]] std::string problem_detail(const HttpAnswer& answer);
+
 }  // namespace agreed

@@ -1,12 +1,11 @@
 #include "daemon/http/responder.hpp"
 
-#include <array>
-#include <cstdio>
 #include <cstring>
 #include <ctime>
 
 #include <httplib.h>
 
+#include "daemon/http/http_date.hpp"
 #include "daemon/http/problem.hpp"
 
 namespace agreed {
@@ -40,21 +39,6 @@ class MemoryStream final : public httplib::Stream {
   std::string_view input_;
   std::string output_;
 };
-
-/// "Tue, 01 Dec 2026 15:18:02 GMT" (RFC 9110, 5.6.7), whatever the locale.
-std::string http_date(std::time_t now) {
-  constexpr std::array<const char*, 7> days = {"Sun", "Mon", "Tue", "Wed", "Thu", "Fri", "Sat"};
-  constexpr std::array<const char*, 12> months = {"Jan", "Feb", "Mar", "Apr", "May", "Jun",
-                                                  "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"};
-  std::tm utc{};
-  if (!::gmtime_r(&now, &utc)) return {};
-  std::array<char, 64> text{};
-  const int length = std::snprintf(text.data(), text.size(), "%s, %02d %s %04d %02d:%02d:%02d GMT",
-                                   days.at(static_cast<std::size_t>(utc.tm_wday)), utc.tm_mday,
-                                   months.at(static_cast<std::size_t>(utc.tm_mon)), utc.tm_year + 1900,
-                                   utc.tm_hour, utc.tm_min, utc.tm_sec);
-  return {text.data(), static_cast<std::size_t>(length)};
-}
 
 /// A field of the head that the gate made, as it was sent; empty when it is not there. The library would undo
 /// percent escapes in it: a token with a % would be another one, and %0D%0A would become a line end.
@@ -97,7 +81,8 @@ class Responder::Library final : public httplib::Server {
       : handler_(std::move(handler)), tell_(std::move(tell)) {
     set_keep_alive_timeout(idle.count());
     set_keep_alive_max_count(static_cast<std::size_t>(requests));
-    set_default_headers({{"Content-Security-Policy", "default-src 'self'"},
+    set_default_headers({{"Content-Security-Policy",
+                          "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'"},
                          {"X-Content-Type-Options", "nosniff"},
                          {"Referrer-Policy", "no-referrer"},
                          {"Cache-Control", "no-cache"},

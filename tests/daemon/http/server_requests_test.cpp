@@ -17,7 +17,8 @@ TEST_CASE("an answer comes in one piece with the headers that protect it, and th
     const std::string answer = client.read_answer();
     CHECK(status_of(answer) == 200);
     CHECK(body_of(answer) == "/a []");
-    CHECK(header_of(answer, "Content-Security-Policy") == "default-src 'self'");
+    CHECK(header_of(answer, "Content-Security-Policy") ==
+          "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'");
     CHECK(header_of(answer, "X-Content-Type-Options") == "nosniff");
     CHECK(header_of(answer, "Referrer-Policy") == "no-referrer");
     CHECK(header_of(answer, "Cache-Control") == "no-cache");
