@@ -29,6 +29,13 @@ std::string cut(Rows& rows, int most, const CursorOf& cursor_of) {
   return cursor_of(rows.back());
 }
 
+std::vector<Alert> copies_of(const std::vector<SharedAlert>& alerts) {
+  std::vector<Alert> copies;
+  copies.reserve(alerts.size());
+  for (const SharedAlert& alert : alerts) copies.push_back(*alert);
+  return copies;
+}
+
 /// One request for a page, and what it is answered from.
 class PageMaker {
  public:
@@ -38,7 +45,8 @@ class PageMaker {
         intake_(intake),
         path_(ask.path),
         target_(take_apart("/?" + ask.query).value_or(Target{})),
-        input_{snapshot, *snapshot.alerts, now_utc()} {
+        current_(copies_of(snapshot.alerts)),
+        input_{snapshot, current_, now_utc()} {
     input_.visitor = ask.visitor;
     input_.here = ask.path + (ask.query.empty() ? "" : "?" + ask.query);
     input_.notice = ask.notice;
@@ -108,6 +116,7 @@ class PageMaker {
   const IntakeSource& intake_;
   const std::string path_;
   const Target target_;
+  const std::vector<Alert> current_;
   PageInput input_;
 };
 

@@ -5,8 +5,8 @@ packages="g++ cmake ninja-build ccache pkg-config git
   libsqlitecpp-dev libsqlite3-dev sqlite3 libcpp-httplib-dev libssl-dev zlib1g-dev libbrotli-dev
   libyaml-cpp-dev libspdlog-dev libfmt-dev doctest-dev libeigen3-dev nlohmann-json3-dev libboost-dev
   libboost-math-dev libcli11-dev libcsv-dev libhowardhinnant-date-dev libsystemd-dev libre2-dev tzdata
-  clang clang-format clang-tidy libclang-rt-14-dev python3 python3-numpy python3-scipy curl openssl procps wrk
-  chromium"
+  clang clang-format clang-tidy libclang-rt-14-dev python3 python3-numpy python3-scipy
+  python3-prometheus-client curl openssl procps wrk chromium"
 missing=""
 for package in $packages; do
   dpkg-query -W -f='${db:Status-Status}' "$package" 2>/dev/null | grep -qx installed || missing="$missing $package"

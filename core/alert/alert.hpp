@@ -1,6 +1,7 @@
 #pragma once
 // An alert: a condition that a person must know of, with a life (open, acknowledged, resolved).
 #include <cstdint>
+#include <memory>
 #include <optional>
 #include <string>
 #include <string_view>
@@ -42,6 +43,9 @@ struct Alert {
 
   bool operator==(const Alert&) const = default;
 };
+
+/// As the book keeps it: never written to, replaced when it changes, so that whoever looks at it may keep it.
+using SharedAlert = std::shared_ptr<const Alert>;
 
 /// One step in an alert's life, and the alert as it stands after it. `tell`: it goes to the routes (a further
 /// finding added to an open alert does not).

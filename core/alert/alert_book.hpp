@@ -67,25 +67,24 @@ class AlertBook {
   /// The open or acknowledged alert of that kind and subject, if there is one.
   [[nodiscard]] const Alert* find_current(AlertKind kind, const Subject& subject) const;
   /// Open and acknowledged alerts, by id.
-  [[nodiscard]] std::vector<const Alert*> current() const;
+  [[nodiscard]] std::vector<SharedAlert> current() const;
 
  private:
-  [[nodiscard]] Alert* edit_current(AlertKind kind, const Subject& subject);
-  [[nodiscard]] Alert& begin(const Finding& finding);
+  [[nodiscard]] SharedAlert* edit_current(AlertKind kind, const Subject& subject);
+  [[nodiscard]] Alert blank_for(const Finding& finding);
   [[nodiscard]] bool held(const Alert& alert, Instant now) const {
     return holds_.held(alert.subject, *settings_, now);
   }
   AlertTransition open(const Finding& finding, Instant now);
-  std::optional<AlertTransition> release(Alert& alert, Instant now) const;
-  std::optional<AlertTransition> remind(Alert& alert, Instant now) const;
-  std::vector<AlertTransition> add(Alert& alert, const Finding& finding, Instant now);
-  AlertTransition resolve(Alert& alert, std::string_view reason, Instant now);
+  std::optional<AlertTransition> remind(SharedAlert& alert, Instant now) const;
+  std::vector<AlertTransition> add(SharedAlert& alert, const Finding& finding, Instant now);
+  AlertTransition resolve(SharedAlert& alert, std::string_view reason, Instant now);
   void forget_what_cannot_reopen(Instant now);
 
   AlertPolicy policy_;
   std::shared_ptr<const Settings> settings_;
   Holds holds_;
-  std::map<std::int64_t, Alert> alerts_;
+  std::map<std::int64_t, SharedAlert> alerts_;
   std::int64_t next_id_ = 1;
 };
 

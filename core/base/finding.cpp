@@ -29,6 +29,11 @@ const char* to_string(AlertKind kind) {
 const char* to_string(Severity severity) {
   return kSeverities.at(static_cast<std::size_t>(severity));
 }
+std::vector<AlertKind> all_alert_kinds() {
+  std::vector<AlertKind> kinds;
+  for (std::size_t i = 0; i < kKinds.size(); ++i) kinds.push_back(static_cast<AlertKind>(i));
+  return kinds;
+}
 std::optional<AlertKind> alert_kind_from(const std::string& name) {
   return find_name<AlertKind>(kKinds, name);
 }

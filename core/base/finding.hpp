@@ -35,6 +35,8 @@ enum class Severity { notice, warning, critical };
 
 [[nodiscard]] const char* to_string(AlertKind kind);
 [[nodiscard]] const char* to_string(Severity severity);
+/// In the order of the enumeration.
+[[nodiscard]] std::vector<AlertKind> all_alert_kinds();
 [[nodiscard]] std::optional<AlertKind> alert_kind_from(const std::string& name);
 [[nodiscard]] std::optional<Severity> severity_from(const std::string& name);
 

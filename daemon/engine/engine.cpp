@@ -52,8 +52,8 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
+  for (const Route& route : routes_) next_.routes.push_back(route.name);
   next_.overdue = alert_policy_.overdue;
-  next_.alerts = std::make_shared<const std::vector<Alert>>();
   for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
     next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
     next_.chart_states.push_back(ChartState::learning);
@@ -185,8 +185,9 @@ void Engine::turn(Work work) {
     answers = {[this, &work] { fail(work, trouble_); }};
   }
   publish(now);
-  for (const auto& answer : answers) answer();
   for (const std::string& route : std::exchange(routes_with_news_, {})) wake_sender_(route);
+  for (const auto& answer : answers) answer();
+  journal_->write_back(anything_waits());
 }
 
 void Engine::undo(const Work& work, const std::string& why) {
@@ -439,6 +440,7 @@ void Engine::fold_from_journal(Instant now) {
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  journal_->release_memory();
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
 }
@@ -518,19 +520,21 @@ void Engine::publish(Instant now) {
                               to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
     next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
   }
+  if (const auto bytes = journal_->overlong_log_bytes())
+    next_.remarks.push_back("the journal's write-ahead log has grown to " +
+                            std::to_string(*bytes / 1'000'000) +
+                            " MB: another program keeps the journal open for reading; end it");
   next_.totals = journal_->totals();
   next_.chain = journal_->head();
   if (book_) {
-    std::vector<Alert> current;
-    for (const Alert* alert : book_->current()) current.push_back(*alert);
+    next_.alerts = book_->current();
     next_.alerts_open = next_.alerts_acknowledged = next_.alerts_critical = 0;
     next_.alerts_of_comparison.clear();
-    for (const Alert& alert : current) {
-      ++(alert.state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
-      if (alert.severity == Severity::critical && alert.state == AlertState::open) ++next_.alerts_critical;
-      if (!alert.subject.comparison.empty()) ++next_.alerts_of_comparison[alert.subject.comparison];
+    for (const SharedAlert& alert : next_.alerts) {
+      ++(alert->state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
+      if (alert->severity == Severity::critical && alert->state == AlertState::open) ++next_.alerts_critical;
+      if (!alert->subject.comparison.empty()) ++next_.alerts_of_comparison[alert->subject.comparison];
     }
-    next_.alerts = std::make_shared<const std::vector<Alert>>(std::move(current));
   }
   auto snapshot = std::make_shared<const Snapshot>(next_);
   const std::lock_guard lock(snapshot_mutex_);

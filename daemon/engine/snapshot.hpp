@@ -33,14 +33,15 @@ struct Snapshot {
   std::vector<std::string> not_ready;  ///< why not, in words
   std::vector<std::string> remarks;    ///< what is wrong although it is ready, in words
   std::shared_ptr<const Settings> settings;
-  OverduePolicy overdue;  ///< when something with a cadence counts as overdue
+  std::vector<std::string> routes;  ///< configured, by name
+  OverduePolicy overdue;            ///< when something with a cadence counts as overdue
   IntakeTotals totals;
   std::uint64_t pending_files = 0;
   std::vector<AnalyzerStatus> analyzers;              ///< by AnalyzerIndex
   std::vector<LazyView<ChartView>> charts;            ///< by ChartIndex
   std::vector<ChartState> chart_states;               ///< by ChartIndex, without looking at the view
   std::vector<LazyView<ComparisonView>> comparisons;  ///< by ComparisonIndex
-  std::shared_ptr<const std::vector<Alert>> alerts;   ///< open and acknowledged
+  std::vector<SharedAlert> alerts;                    ///< open and acknowledged
   int alerts_open = 0, alerts_acknowledged = 0, alerts_critical = 0;  ///< critical: those open
   std::map<std::string, int> alerts_of_comparison;  ///< open and acknowledged, by comparison id
   ChainHead chain;

@@ -13,7 +13,8 @@ AlertSource journal_alerts(std::filesystem::path state) {
           },
           [shared](std::int64_t id) {
             return shared->ask([&](JournalReader& reader) { return reader.alert(id); });
-          }};
+          },
+          [shared] { return shared->ask([](JournalReader& reader) { return reader.message_counts(); }); }};
 }
 
 }  // namespace agreed

@@ -9,10 +9,11 @@
 
 namespace agreed {
 
-/// Both may throw (JournalError) and are called from several threads at once.
+/// All may throw (JournalError) and are called from several threads at once.
 struct AlertSource {
   std::function<std::vector<AlertRecord>(const AlertQuery&)> alerts;
   std::function<std::optional<AlertRecord>(std::int64_t id)> alert;
+  std::function<std::vector<MessageCount>()> messages = [] { return std::vector<MessageCount>(); };
 };
 
 /// Reads the journal in `state` over one read-only connection, opened at the first question and opened anew

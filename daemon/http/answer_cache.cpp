@@ -8,7 +8,7 @@ constexpr std::size_t kMostBytes = 4'000'000;
 }
 
 HttpAnswer AnswerCache::get(const std::shared_ptr<const Snapshot>& snapshot, const std::string& key,
-                            const std::function<std::string()>& render) {
+                            const std::function<std::string()>& render, const char* content_type) {
   {
     const std::scoped_lock lock(mutex_);
     if (snapshot_ != snapshot) {
@@ -19,7 +19,7 @@ HttpAnswer AnswerCache::get(const std::shared_ptr<const Snapshot>& snapshot, con
     const auto found = answers_.find(key);
     if (found != answers_.end()) return found->second;
   }
-  HttpAnswer answer{200, "application/json", render(), "", {}};
+  HttpAnswer answer{200, content_type, render(), "", {}};
   answer.etag = etag_of(answer.body);
   const std::scoped_lock lock(mutex_);
   const std::size_t size = key.size() + answer.body.size();

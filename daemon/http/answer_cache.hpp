@@ -13,10 +13,11 @@ namespace agreed {
 
 class AnswerCache {
  public:
-  /// The JSON answer called `key` of `snapshot`, rendered now if it is not kept. Bodies beyond 4 MB together
-  /// are made anew each time.
+  /// The answer called `key` of `snapshot`, JSON unless said otherwise, rendered now if it is not kept.
+  /// Bodies beyond 4 MB together are made anew each time.
   [[nodiscard]] HttpAnswer get(const std::shared_ptr<const Snapshot>& snapshot, const std::string& key,
-                               const std::function<std::string()>& render);
+                               const std::function<std::string()>& render,
+                               const char* content_type = "application/json");
 
  private:
   std::mutex mutex_;

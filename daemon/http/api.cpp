@@ -14,6 +14,8 @@
 #include "daemon/render/files_json.hpp"
 #include "daemon/render/health_json.hpp"
 #include "daemon/render/message_json.hpp"
+#include "daemon/render/metrics_text.hpp"
+#include "daemon/render/open_metrics.hpp"
 #include "daemon/render/readings_text.hpp"
 #include "daemon/render/status_json.hpp"
 
@@ -227,6 +229,20 @@ std::optional<HttpAnswer> Api::refused_empty(bool empty, const HttpRequest& requ
   const std::string unknown = empty ? unknown_name(target, *service_.snapshot()->settings) : "";
   if (unknown.empty()) return std::nullopt;
   return problem(400, unknown, request.target);
+}
+
+HttpAnswer Api::metrics(const HttpRequest&, const Target&) {
+  const auto snapshot = service_.snapshot();
+  const auto render = [&] {
+    std::optional<std::vector<MessageCount>> messages;
+    try {
+      messages = alerts_.messages();
+    } catch (const JournalError&) {
+      // Whoever watches must hear of everything else, of `ready` above all.
+    }
+    return metrics_text(*snapshot, messages);
+  };
+  return cache_.get(snapshot, "metrics", render, kOpenMetricsType);
 }
 
 HttpAnswer Api::live(const HttpRequest&, const Target&) {

@@ -30,6 +30,7 @@ class Api {
   [[nodiscard]] HttpAnswer resend(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer files(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer readings(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer metrics(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer live(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
 

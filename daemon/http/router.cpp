@@ -22,7 +22,7 @@ struct ApiRoute {
   Endpoint endpoint;
 };
 
-constexpr std::array<ApiRoute, 13> kRoutes = {{
+constexpr std::array<ApiRoute, 14> kRoutes = {{
     {"GET", "/api/status", &Api::status},
     {"GET", "/api/charts", &Api::charts},
     {"GET", "/api/charts/*/*/*", &Api::chart},
@@ -34,6 +34,7 @@ constexpr std::array<ApiRoute, 13> kRoutes = {{
     {"POST", "/api/messages/*/resend", &Api::resend},
     {"GET", "/api/files", &Api::files},
     {"GET", "/api/readings", &Api::readings},
+    {"GET", "/metrics", &Api::metrics},
     {"GET", "/health/live", &Api::live},
     {"GET", "/health/ready", &Api::ready},
 }};
@@ -110,7 +111,8 @@ struct Router::Impl {
       allowed = candidate.method == "GET" ? "GET, HEAD" : "POST";
       if (candidate.method == method) route = &candidate;
     }
-    if (!begins(target, "api") && !begins(target, "health")) return pages.answer(request, target);
+    if (!begins(target, "api") && !begins(target, "health") && !begins(target, "metrics"))
+      return pages.answer(request, target);
     if (allowed && !route) return not_allowed(request, allowed);
     if (auto refusal = refuse(request, target)) return *refusal;
     return route ? (api.*route->endpoint)(request, target) : not_found(request);

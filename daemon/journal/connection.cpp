@@ -53,11 +53,11 @@ std::filesystem::path database_file(const std::filesystem::path& folder) {
 std::unique_ptr<SQLite::Database> open_writer(const std::filesystem::path& file) {
   auto database = std::make_unique<SQLite::Database>(file.string(),
                                                      SQLite::OPEN_READWRITE | SQLite::OPEN_NOMUTEX, kBusyMs);
-  // Values are never secret here, so pages need no wiping when they split; 16 MiB of WAL between checkpoints
-  // lets a page that many batches touch be written back once.
+  // Values are never secret here, so pages need no wiping when they split. The log is written back between
+  // batches (Journal::write_back), not within a commit that somebody waits for.
   database->exec(
-      "PRAGMA foreign_keys = ON; PRAGMA synchronous = FULL; PRAGMA mmap_size = 0; PRAGMA cache_size = -24576;"
-      "PRAGMA secure_delete = OFF; PRAGMA wal_autocheckpoint = 4000; PRAGMA journal_size_limit = 67108864");
+      "PRAGMA foreign_keys = ON; PRAGMA synchronous = FULL; PRAGMA mmap_size = 0; PRAGMA cache_size = -16384;"
+      "PRAGMA secure_delete = OFF; PRAGMA wal_autocheckpoint = 0; PRAGMA journal_size_limit = 67108864");
   const std::string mode = database->execAndGet("PRAGMA journal_mode = WAL").getString();
   if (mode != "wal")
     throw JournalError("The journal " + file.string() +

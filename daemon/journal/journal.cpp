@@ -9,6 +9,10 @@
 namespace agreed::journal {
 namespace {
 
+// Of 4 KiB: 16 MiB of log are written back when nothing waits, 32 MiB in any case.
+constexpr int kLogPages = 4000, kLongLogPages = 8000, kOverlongLogPages = 32000;
+constexpr std::int64_t kPageBytes = 4096;
+
 std::unique_ptr<SQLite::Database> open_and_migrate(const std::filesystem::path& file) {
   return translating(file, [&file] {
     create_if_missing(file, now_utc());
@@ -28,6 +32,11 @@ Store::Store(const std::filesystem::path& folder)
       history(*database),
       tallies(load_tallies(*database)) {
   load_identity();
+  const auto note_pages = [](void* pages, sqlite3*, const char*, int in_log) {
+    *static_cast<int*>(pages) = in_log;
+    return SQLITE_OK;
+  };
+  sqlite3_wal_hook(database->getHandle(), note_pages, &log_pages);
 }
 
 void Store::load_identity() {
@@ -132,6 +141,14 @@ void Store::rollback() noexcept {
   history.forget_batch();
 }
 
+// A page that many batches touch is written back once. What cannot be written back now stays in the log.
+void Store::write_back(bool something_waits) noexcept {
+  if (log_pages < written_back) written_back = 0;  // the log began anew
+  if (in_batch || log_pages - written_back < (something_waits ? kLongLogPages : kLogPages)) return;
+  written_back = log_pages;
+  sqlite3_wal_checkpoint_v2(database->getHandle(), nullptr, SQLITE_CHECKPOINT_PASSIVE, nullptr, nullptr);
+}
+
 Query Store::query(const char* sql) {
   auto& statement = queries_[sql];
   if (!statement) statement = std::make_unique<SQLite::Statement>(*database, sql);
@@ -167,6 +184,16 @@ void Journal::commit() {
 }
 void Journal::rollback() noexcept {
   impl_->rollback();
+}
+void Journal::write_back(bool something_waits) noexcept {
+  impl_->write_back(something_waits);
+}
+std::optional<std::int64_t> Journal::overlong_log_bytes() const {
+  if (impl_->log_pages < journal::kOverlongLogPages) return std::nullopt;
+  return impl_->log_pages * journal::kPageBytes;
+}
+void Journal::release_memory() noexcept {
+  sqlite3_db_release_memory(impl_->database->getHandle());
 }
 void Journal::recover() {
   if (!impl_->doubtful) return;

@@ -41,6 +41,8 @@ struct Store {
   bool in_batch = false;
   bool doubtful = false;  ///< the disk did not do what was asked: the connection is not trusted
   Instant now{};
+  int log_pages = 0;     ///< in the write-ahead log after the last commit
+  int written_back = 0;  ///< of them, when it was last written back
 
   /// Whether the chain of this store goes on from `head` of the journal `source`.
   [[nodiscard]] bool continues(const std::string& source_before, const ChainHead& head_before);
@@ -48,6 +50,7 @@ struct Store {
   void begin(Instant at);
   void commit();
   void rollback() noexcept;
+  void write_back(bool something_waits) noexcept;
 
   /// Runs one step of a batch; if it throws, the batch is rolled back, and what SQLite threw comes out as
   /// JournalError.

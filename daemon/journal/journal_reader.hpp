@@ -29,6 +29,12 @@ struct DeliveryRow {
   std::string last_error;
 };
 
+/// How many messages of a route are in a state (as in DeliveryRow).
+struct MessageCount {
+  std::string route, state;
+  std::int64_t messages = 0;
+};
+
 /// An alert with its whole record.
 struct AlertRecord {
   std::string body;  ///< newest transition's JSON
@@ -98,6 +104,8 @@ class JournalReader {
   [[nodiscard]] std::optional<AlertRecord> alert(std::int64_t id);
   /// The oldest undelivered, not given up message of `route`, whether due or not: order per route is kept.
   [[nodiscard]] std::optional<OutboxMessage> next_message(std::string_view route);
+  /// Messages of every route that ever had one.
+  [[nodiscard]] std::vector<MessageCount> message_counts();
   [[nodiscard]] std::vector<FileRow> files(const FileQuery& query);
   /// Every file of the analyzer with kGrownOutcome, oldest first.
   void each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take);

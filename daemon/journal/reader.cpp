@@ -179,16 +179,31 @@ std::optional<AlertRecord> JournalReader::alert(std::int64_t id) {
 
 std::optional<OutboxMessage> JournalReader::next_message(std::string_view route) {
   return journal::translating(impl_->file, [&]() -> std::optional<OutboxMessage> {
-    SQLite::Statement row(*impl_->database,
-                          "SELECT m.id, m.webhook_id, m.route, m.type, m.body, m.alert, m.created_at, "
-                          "o.due_at, o.tries FROM outbox o JOIN messages m ON m.id = o.message WHERE "
-                          "o.route = ? AND o.state = 'waiting' ORDER BY o.message LIMIT 1");
-    row.bind(1, std::string(route));
-    if (!row.executeStep()) return std::nullopt;
+    if (!impl_->next_message)
+      impl_->next_message.emplace(
+          *impl_->database,
+          "SELECT m.id, m.webhook_id, m.route, m.type, m.body, m.alert, m.created_at, "
+          "o.due_at, o.tries FROM outbox o JOIN messages m ON m.id = o.message WHERE "
+          "o.route = ? AND o.state = 'waiting' ORDER BY o.message LIMIT 1");
+    journal::Query row(*impl_->next_message);
+    row->bind(1, std::string(route));
+    if (!row->executeStep()) return std::nullopt;
     return OutboxMessage{
-        row.getColumn(0).getInt64(),  row.getColumn(1).getString(), row.getColumn(2).getString(),
-        row.getColumn(3).getString(), row.getColumn(4).getString(), row.getColumn(5).getInt64(),
-        instant(row.getColumn(6)),    instant(row.getColumn(7)),    row.getColumn(8).getInt()};
+        row->getColumn(0).getInt64(),  row->getColumn(1).getString(), row->getColumn(2).getString(),
+        row->getColumn(3).getString(), row->getColumn(4).getString(), row->getColumn(5).getInt64(),
+        instant(row->getColumn(6)),    instant(row->getColumn(7)),    row->getColumn(8).getInt()};
+  });
+}
+
+std::vector<MessageCount> JournalReader::message_counts() {
+  return journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(*impl_->database,
+                           "SELECT route, state, count(*) FROM outbox GROUP BY route, state");
+    std::vector<MessageCount> counts;
+    while (rows.executeStep())
+      counts.push_back(
+          {rows.getColumn(0).getString(), rows.getColumn(1).getString(), rows.getColumn(2).getInt64()});
+    return counts;
   });
 }
 

@@ -1,6 +1,7 @@
 #pragma once
 // A read-only connection to a journal that may be used. Private to daemon/journal.
 #include <memory>
+#include <optional>
 
 #include "daemon/journal/connection.hpp"
 #include "daemon/journal/journal.hpp"
@@ -16,6 +17,7 @@ struct JournalReader::Impl {
 
   std::filesystem::path file;
   std::unique_ptr<SQLite::Database> database;
+  std::optional<SQLite::Statement> next_message;  ///< kept: the senders ask again and again
 };
 
 }  // namespace agreed

@@ -65,15 +65,16 @@ std::vector<std::size_t> routes_for(const AlertTransition& transition, std::span
   return chosen;
 }
 
-std::vector<Escalation> escalations(std::span<const Alert* const> current, std::span<const Route> routes,
+std::vector<Escalation> escalations(std::span<const SharedAlert> current, std::span<const Route> routes,
                                     const Settings& settings, Instant now) {
   std::vector<Escalation> due;
-  for (const Alert* alert : current) {
+  for (const SharedAlert& alert : current) {
     if (alert->state != AlertState::open || alert->held) continue;
     for (std::size_t i = 0; i < routes.size(); ++i) {
       const auto& wait = routes[i].unacknowledged_for;
       if (!wait) continue;
-      if (alert->opened_at + *wait <= now && concerns(routes[i], *alert, settings)) due.push_back({alert, i});
+      if (alert->opened_at + *wait <= now && concerns(routes[i], *alert, settings))
+        due.push_back({alert.get(), i});
     }
   }
   return due;

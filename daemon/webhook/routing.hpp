@@ -29,7 +29,7 @@ struct Escalation {
 
 /// Alerts among `current` that nobody has acknowledged and whose waiting time of a route is over. Held ones
 /// wait until they are released.
-[[nodiscard]] std::vector<Escalation> escalations(std::span<const Alert* const> current,
+[[nodiscard]] std::vector<Escalation> escalations(std::span<const SharedAlert> current,
                                                   std::span<const Route> routes, const Settings& settings,
                                                   Instant now);
 

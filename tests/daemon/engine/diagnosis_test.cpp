@@ -35,11 +35,11 @@ std::vector<Row> checks(double h, int i, double shift_y) {
 }
 
 const Alert& drifting(const Snapshot& snapshot) {
-  const auto found = std::find_if(snapshot.alerts->begin(), snapshot.alerts->end(), [](const Alert& alert) {
-    return alert.kind == AlertKind::agreement_drifting;
-  });
-  REQUIRE(found != snapshot.alerts->end());
-  return *found;
+  const auto found =
+      std::find_if(snapshot.alerts.begin(), snapshot.alerts.end(),
+                   [](const SharedAlert& alert) { return alert->kind == AlertKind::agreement_drifting; });
+  REQUIRE(found != snapshot.alerts.end());
+  return **found;
 }
 }  // namespace
 

@@ -32,17 +32,17 @@ std::vector<FilePiece> three_pieces() {
 }
 
 const Alert* find(const Snapshot& snapshot, AlertKind kind) {
-  const auto found = std::find_if(snapshot.alerts->begin(), snapshot.alerts->end(),
-                                  [&](const Alert& alert) { return alert.kind == kind; });
-  return found == snapshot.alerts->end() ? nullptr : &*found;
+  const auto found = std::find_if(snapshot.alerts.begin(), snapshot.alerts.end(),
+                                  [&](const SharedAlert& alert) { return alert->kind == kind; });
+  return found == snapshot.alerts.end() ? nullptr : found->get();
 }
 
 void check_same_alerts(const Snapshot& a, const Snapshot& b) {
-  REQUIRE(a.alerts->size() == b.alerts->size());
-  for (std::size_t i = 0; i < a.alerts->size(); ++i) {
-    CHECK((*a.alerts)[i].kind == (*b.alerts)[i].kind);
-    CHECK((*a.alerts)[i].id == (*b.alerts)[i].id);
-    CHECK((*a.alerts)[i].details == (*b.alerts)[i].details);
+  REQUIRE(a.alerts.size() == b.alerts.size());
+  for (std::size_t i = 0; i < a.alerts.size(); ++i) {
+    CHECK(a.alerts[i]->kind == b.alerts[i]->kind);
+    CHECK(a.alerts[i]->id == b.alerts[i]->id);
+    CHECK(a.alerts[i]->details == b.alerts[i]->details);
   }
 }
 
@@ -63,7 +63,7 @@ TEST_CASE(
   Mill mill;
   mill.start();
   mill.give(file("first.csv", {check(0, 10.6)}, {bad_row(3)}));
-  const auto before = *mill.now()->alerts;
+  const auto before = mill.now()->alerts;
   mill.break_journal();
   mill.engine->report({0}, {true, "", 1, true});
   CHECK_THROWS_WITH(mill.give(file("second.csv", {check(1, 10.61)}, {bad_row(3)})),
@@ -74,7 +74,7 @@ TEST_CASE(
   REQUIRE(snapshot->not_ready.size() == 1);
   CHECK(snapshot->not_ready[0].find("broken by the test") != std::string::npos);
   CHECK(snapshot->totals.readings_accepted == 1);
-  CHECK(*snapshot->alerts == before);
+  CHECK(snapshot->alerts == before);
   CHECK(mill.values(kLowOnLine1) == std::vector<double>{10.6});
   CHECK(mill.engine->acknowledge(1, "Ann", "").get().outcome == AskOutcome::unavailable);
 
@@ -85,10 +85,10 @@ TEST_CASE(
   CHECK(snapshot->totals.readings_accepted == 2);
   CHECK(snapshot->totals.readings_rejected == 2);
   CHECK(mill.values(kLowOnLine1) == std::vector<double>{10.6, 10.61});
-  REQUIRE(snapshot->alerts->size() == 1);
-  const auto files =
-      std::find_if((*snapshot->alerts)[0].details.begin(), (*snapshot->alerts)[0].details.end(),
-                   [](const auto& detail) { return detail.first == "files"; });
+  REQUIRE(snapshot->alerts.size() == 1);
+  const Details& details = snapshot->alerts[0]->details;
+  const auto files = std::find_if(details.begin(), details.end(),
+                                  [](const auto& detail) { return detail.first == "files"; });
   CHECK(std::get<std::vector<std::string>>(files->second) ==
         std::vector<std::string>{"first.csv", "second.csv"});
 }
@@ -279,9 +279,9 @@ TEST_CASE("a reminder due with the batch that ends its alert does not open it ag
   mill.give(file("bad.csv", {check(0, 10.6)}, {bad_row(3)}));
   std::this_thread::sleep_for(std::chrono::milliseconds(5));
   CHECK(mill.engine->acknowledge(1, "Ann", "seen").get().outcome == AskOutcome::done);
-  CHECK(mill.now()->alerts->empty());
+  CHECK(mill.now()->alerts.empty());
   mill.start();
-  CHECK(mill.now()->alerts->empty());
+  CHECK(mill.now()->alerts.empty());
 }
 
 TEST_CASE("an intervention by file counts once and begins a stretch; an accepted level keeps the readings") {
@@ -313,7 +313,7 @@ TEST_CASE("an alert about what is no longer configured resolves, its readings ar
 
   mill.configure(one_standard());
   mill.start();
-  CHECK(mill.now()->alerts->empty());
+  CHECK(mill.now()->alerts.empty());
   CHECK(mill.now()->totals.readings_accepted == 60);
   const auto told =
       JournalReader(mill.config.state).alerts({.states = {"resolved"}, .since = {}, .limit = 10});

@@ -60,7 +60,11 @@ struct House {
                      if (query.before_id == 0 || id < query.before_id) found.push_back(record(id));
                    return found;
                  },
-                 [](std::int64_t id) { return id == 17 ? std::optional(record(17)) : std::nullopt; }},
+                 [](std::int64_t id) { return id == 17 ? std::optional(record(17)) : std::nullopt; },
+                 [this]() -> std::vector<MessageCount> {
+                   if (journal_gone) throw JournalError("The journal is not there.", true);
+                   return {{"engineer", "waiting", 2}};
+                 }},
                 {[](const FileQuery&) { return std::vector<FileRow>(1); },
                  [](const ReadingQuery&) { return std::vector<ReadingRow>(1); }},
                 [](const PageAsk& ask) -> std::optional<Page> {
@@ -87,7 +91,7 @@ struct House {
     return ask("/api/alerts/" + id + "/acknowledge", "POST", token, body);
   }
 
-  bool stopping = false;
+  bool stopping = false, journal_gone = false;
   AlertQuery asked;
   TokensFile file;
   std::string told;
@@ -128,6 +132,24 @@ TEST_CASE("every path of the table answers") {
     CHECK(json::accept(answer.body));
     CHECK(answer.etag == etag_of(answer.body));
   }
+}
+
+TEST_CASE("the metrics are OpenMetrics text, asked for like the API and not like a page") {
+  House house;
+  const HttpAnswer answer = house.ask("/metrics");
+  CHECK(answer.status == 200);
+  CHECK(answer.content_type == "application/openmetrics-text; version=1.0.0; charset=utf-8");
+  CHECK(answer.body.find("\nagreed_messages{route=\"engineer\",state=\"waiting\"} 2\n") != std::string::npos);
+  CHECK(house.ask("/metrics", "GET", "", "", answer.etag).status == 304);
+  check_problem(house.ask("/metrics", "POST", "ooo"), 405);
+  check_problem(house.ask("/metrics/more"), 404);
+  House closed(true);
+  check_problem(closed.ask("/metrics"), 401);
+  CHECK(closed.ask("/metrics", "GET", "rrr").status == 200);
+  House dark;
+  dark.journal_gone = true;
+  CHECK(dark.ask("/metrics").status == 200);
+  CHECK(dark.ask("/metrics").body.find("agreed_messages") == std::string::npos);
 }
 
 TEST_CASE("an ETag sent back gives 304 without a body, in a list, weak, or as *") {

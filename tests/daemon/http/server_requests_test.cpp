@@ -253,3 +253,9 @@ TEST_CASE("header values cannot bring in fields of their own") {
   CHECK(answer.find("Set-Cookie") == std::string::npos);
   CHECK(header_of(answer, "Content-Encoding").empty());
 }
+
+TEST_CASE("percent escapes in header values stay as they were sent") {
+  Running running;
+  const std::string answer = running.ask(get("/a", "Authorization: Bearer a%41%0d%0aSet-Cookie: b=c\r\n"));
+  CHECK(body_of(answer) == "/a []Bearer a%41%0d%0aSet-Cookie: b=c");
+}

@@ -105,22 +105,23 @@ TEST_CASE("an escalation is due when the waiting time is over, unless somebody a
   routes[1].unacknowledged_for = std::chrono::hours(1);
   routes[2].unacknowledged_for = std::chrono::hours(3);
   routes[2].at_least = Severity::critical;
-  Alert open = transition(AlertKind::check_standard_unstable, kChart, Severity::warning).alert;
-  Alert seen = open;
-  seen.state = AlertState::acknowledged;
-  const std::vector<const Alert*> current = {&open, &seen};
+  const auto open = std::make_shared<Alert>(
+      transition(AlertKind::check_standard_unstable, kChart, Severity::warning).alert);
+  const auto seen = std::make_shared<Alert>(*open);
+  seen->state = AlertState::acknowledged;
+  const std::vector<SharedAlert> current = {open, seen};
   const auto due_at = [&](int hour) {
     return escalations(current, routes, *test::harrow_mill(), at_hour(hour));
   };
   CHECK(due_at(0).empty());
   const auto due = due_at(1);
   REQUIRE(due.size() == 1);
-  CHECK(due[0].alert == &open);
+  CHECK(due[0].alert == open.get());
   CHECK(due[0].route == 1);
   CHECK(due_at(5).size() == 1);
-  open.severity = Severity::critical;
+  open->severity = Severity::critical;
   CHECK(due_at(2).size() == 1);
   CHECK(due_at(5).size() == 2);
-  open.held = AlertChange::opened;
+  open->held = AlertChange::opened;
   CHECK(due_at(5).empty());
 }
