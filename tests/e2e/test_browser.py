@@ -138,6 +138,12 @@ class Page(SiteTest):
                         wide = self.browser.run("document.documentElement.scrollWidth - document.documentElement.clientWidth")
                         self.assertLessEqual(wide, 0, "the page is wider than the screen")
                         self.assertEqual(self.browser.run(CONTRAST), [])
+            with self.subTest(path=path, size="A4"):  # 186 mm between the margins, at 96 to the inch
+                self.browser.look_like(703, 1000, "light")
+                self.browser.call("Emulation.setEmulatedMedia", media="print")
+                wide = self.browser.run("document.documentElement.scrollWidth - document.documentElement.clientWidth")
+                self.browser.call("Emulation.setEmulatedMedia", media="")
+                self.assertLessEqual(wide, 0, "the page is wider than the paper")
             levels = self.browser.run("Array.from(document.querySelectorAll('h1,h2,h3,h4'), (h) => +h.tagName[1])")
             self.assertEqual(levels[0], 1)
             self.assertTrue(all(b - a <= 1 for a, b in zip(levels, levels[1:])), f"{path}: a heading is left out: {levels}")
