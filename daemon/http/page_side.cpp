@@ -80,7 +80,7 @@ std::string plain_path(const Target& target) {
 }
 
 bool open_to_all(const std::string& path) {
-  return path == "/sign-in" || path == "/page.css" || path == "/page.js";
+  return path == "/sign-in" || path == "/page.css" || path == "/page.js" || path == "/page.svg";
 }
 
 /// The alert that POST of `path` acknowledges; empty when it is no such path.

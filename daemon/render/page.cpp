@@ -6,6 +6,11 @@
 namespace agreed {
 namespace {
 
+// Two results on one line.
+constexpr const char* kIcon =
+    R"(<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 16 16"><path fill="#1b6b45" d="M0 0h16v16H0z"/>)"
+    R"(<path stroke="#fff" d="M2 12L14 4"/><path fill="#fff" d="M3 9h4v4H3zM9 3h4v4H9z"/></svg>)";
+
 std::optional<ComparisonIndex> find_comparison(const Settings& settings, std::string_view path) {
   constexpr std::string_view prefix = "/comparisons/";
   if (!path.starts_with(prefix)) return std::nullopt;
@@ -45,6 +50,7 @@ std::optional<PageAnswer> render_page(std::string_view path,
     return PageAnswer{200, "text/css; charset=utf-8", std::string(page_style_sheet()), {}};
   if (path == "/page.js")
     return PageAnswer{200, "text/javascript; charset=utf-8", std::string(page_script()), {}};
+  if (path == "/page.svg") return PageAnswer{200, "image/svg+xml", kIcon, {}};
   const Snapshot& snapshot = input.snapshot;
   if (path == "/") return document(input, "Do the analyzers agree?", overview_html(input));
   if (!snapshot.settings) return std::nullopt;

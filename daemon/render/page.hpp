@@ -48,10 +48,10 @@ struct FileList {
 };
 
 /// Answers GET of `path` (decoded, without its query): `/`, `/comparisons/{id}`,
-/// `/charts/{analyzer}/{standard}/{measurand}`, `/page.css`, `/page.js`; nothing for any other, and for ids
-/// that are not configured. `parameters`: `points` or `pairs` and `from` cut what is drawn (page_range.hpp);
-/// a wrong one makes status 400 and is told. Before the first fold every page but the assets says `starting`.
-/// Two answers with one fingerprint show the same, but for the time of the figures.
+/// `/charts/{analyzer}/{standard}/{measurand}`, `/page.css`, `/page.js`, `/page.svg`; nothing for any other,
+/// and for ids that are not configured. `parameters`: `points` or `pairs` and `from` cut what is drawn
+/// (page_range.hpp); a wrong one makes status 400 and is told. Before the first fold every page but the
+/// assets says `starting`. Two answers with one fingerprint show the same, but for the time of the figures.
 [[nodiscard]] std::optional<PageAnswer> render_page(std::string_view path,
                                                     const std::map<std::string, std::string>& parameters,
                                                     const PageInput& input);

@@ -74,7 +74,8 @@ std::string head_html(const PageInput& input, std::string_view title) {
          "<meta name=\"viewport\" content=\"width=device-width, initial-scale=1\">"
          "<meta name=\"color-scheme\" content=\"light dark\"><title>" +
          escaped(whole_title) +
-         "</title><link rel=\"stylesheet\" href=\"/page.css\">"
+         "</title><link rel=\"icon\" type=\"image/svg+xml\" href=\"/page.svg\">"
+         "<link rel=\"stylesheet\" href=\"/page.css\">"
          "<script src=\"/page.js\" defer></script></head><body>"
          "<a class=\"skip\" href=\"#main\">Skip to the contents</a><header class=\"top\"><p class=\"site\">" +
          escaped(site.empty() ? std::string("agreed") : site) + "</p>" + nav_html(input) +
