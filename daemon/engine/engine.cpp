@@ -40,6 +40,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       alert_policy_(config.alert_policy),
       state_folder_(config.state),
       least_free_mb_(config.least_free_mb),
+      interventions_(settings_, config.intake),
       config_sha256_(sha256_hex(config.text)),
       config_text_(config.text),
       queue_(settings_->analyzers.size()),
@@ -93,11 +94,16 @@ std::shared_ptr<const Snapshot> Engine::snapshot() const {
 
 std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> inside,
                                    std::function<void(const AskAnswer&)> after) {
-  auto promise = std::make_shared<std::promise<AskAnswer>>();
   auto answer = std::make_shared<AskAnswer>();
-  auto future = promise->get_future();
   Task task;
   task.inside = [inside = std::move(inside), answer](Instant now) { inside(*answer, now); };
+  return answered(std::move(task), std::move(answer), std::move(after));
+}
+
+std::future<AskAnswer> Engine::answered(Task task, std::shared_ptr<AskAnswer> answer,
+                                        std::function<void(const AskAnswer&)> after) {
+  auto promise = std::make_shared<std::promise<AskAnswer>>();
+  auto future = promise->get_future();
   task.after = [promise, answer, after = std::move(after)](const std::string& failure) {
     if (!failure.empty()) *answer = {AskOutcome::unavailable, failure};
     after(*answer);
@@ -125,6 +131,35 @@ std::future<AskAnswer> Engine::resend(std::string message) {
              [this](const AskAnswer& answer) {
                if (answer.outcome == AskOutcome::done) resume_sender_(answer.words);
              });
+}
+
+std::future<AskAnswer> Engine::intervene(ToldIntervention told) {
+  auto read = interventions_.read(told, now_utc());
+  if (const auto* fault = std::get_if<FieldFault>(&read)) {
+    std::promise<AskAnswer> at_once;
+    at_once.set_value({AskOutcome::not_usable, fault->reason, std::string(fault->field)});
+    return at_once.get_future();
+  }
+  auto answer = std::make_shared<AskAnswer>();
+  Task task;
+  task.take_in = [this, row = std::get<Row>(std::move(read)), answer](TakenIn& taken) {
+    *answer = take_told(row, taken);
+  };
+  return answered(std::move(task), std::move(answer), [](const AskAnswer&) {});
+}
+
+AskAnswer Engine::take_told(const Row& row, TakenIn& taken) {
+  KeptIntervention kept = ledger_.take_told(row, *journal_, taken);
+  AskAnswer answer;
+  if (!kept.is_new) {
+    const JournalIntervention& stands = kept.stored;
+    answer.outcome = AskOutcome::done_before;
+    if (stands.by != row.by || stands.note != row.note)
+      return {AskOutcome::not_possible, "The same intervention is known already, told by \"" + stands.by +
+                                            "\" with the note \"" + stands.note + "\", and stands."};
+  }
+  answer.intervention = std::move(kept.stored);
+  return answer;
 }
 
 AskAnswer Engine::send_again(const std::string& message, Instant now) {
@@ -233,6 +268,8 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
           [&queued, error = std::current_exception()] { queued.answer.set_exception(error); });
     }
   }
+  for (const Task& task : work.tasks)
+    if (task.take_in) task.take_in(taken);
   note_arrivals(taken, now);
   MonitorOutcome outcome = conclude(std::move(taken.events), taken.findings, now);
   for (const ComparisonIndex comparison : outcome.comparisons_paired) arrivals_.add_pair(comparison, now);
@@ -240,7 +277,8 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
     count_censored(chart);
     outcome.charts_changed.insert(chart);
   }
-  for (const Task& task : work.tasks) task.inside(now);
+  for (const Task& task : work.tasks)
+    if (task.inside) task.inside(now);
   watch(now);
   journal_->commit();
   for (const QueuedPiece& queued : work.pieces)

@@ -46,6 +46,7 @@ class Engine final : public IntakeSink, public Service {
   [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }
   std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) override;
   std::future<AskAnswer> resend(std::string message) override;
+  std::future<AskAnswer> intervene(ToldIntervention told) override;
   /// Journals a try to deliver a message; the future throws if it could not be committed.
   std::future<void> record(DeliveryTry attempt);
 
@@ -54,6 +55,10 @@ class Engine final : public IntakeSink, public Service {
   std::future<AskAnswer> ask(
       std::function<void(AskAnswer&, Instant now)> inside,
       std::function<void(const AskAnswer&)> after = [](const AskAnswer&) {});
+  /// Puts `task` into the queue; `answer`, which it fills, is given when its batch is through.
+  std::future<AskAnswer> answered(Task task, std::shared_ptr<AskAnswer> answer,
+                                  std::function<void(const AskAnswer&)> after);
+  [[nodiscard]] AskAnswer take_told(const Row& row, TakenIn& taken);
   [[nodiscard]] AskAnswer send_again(const std::string& message, Instant now);
   void run() noexcept;
   void turn(Work work);
@@ -99,6 +104,7 @@ class Engine final : public IntakeSink, public Service {
   const std::filesystem::path state_folder_;
   const std::optional<double> least_free_mb_;
   std::vector<std::filesystem::path> inboxes_;
+  const InterventionReader interventions_;
   const std::string config_sha256_;
   const std::string config_text_;
   std::string base_url_;

@@ -10,7 +10,9 @@ namespace agreed {
 /// The reason phrase of a status we use (RFC 9110), for the `title`.
 [[nodiscard]] const char* status_title(int status);
 
-/// type about:blank, title, status, detail, instance (the path as sent, without the query).
-[[nodiscard]] HttpAnswer problem(int status, const std::string& detail, std::string_view target);
+/// type about:blank, title, status, detail, instance (the path as sent, without the query); `field`, if it is
+/// named, of the body that is at fault.
+[[nodiscard]] HttpAnswer problem(int status, const std::string& detail, std::string_view target,
+                                 const std::string& field = "");
 
 }  // namespace agreed

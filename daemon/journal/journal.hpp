@@ -65,6 +65,9 @@ class Journal {
   /// False if the same one (analyzer, standard, measurand, kind, at) is known. `file` 0: it came by another
   /// way.
   bool add_intervention(std::int64_t file, const JournalIntervention& intervention);
+  /// The one that is known under the key of `like` (analyzer, standard, measurand, kind, at); within the open
+  /// batch its rows are seen.
+  [[nodiscard]] std::optional<JournalIntervention> find_intervention(const JournalIntervention& like);
   void add_rejected_row(std::int64_t file, std::uint32_t line, std::uint32_t column, std::string_view text,
                         std::string_view reason);
   void add_finding(Instant at, std::string_view kind, std::string_view subject, std::string_view body);

@@ -29,7 +29,8 @@ TEST_CASE("the samples say what the snapshot says") {
   alert.severity = Severity::critical;
   Alert seen = alert;
   seen.state = AlertState::acknowledged;
-  for (const Alert& each : {alert, alert, seen}) snapshot.alerts.push_back(std::make_shared<const Alert>(each));
+  for (const Alert& each : {alert, alert, seen})
+    snapshot.alerts.push_back(std::make_shared<const Alert>(each));
   const std::string text =
       metrics_text(snapshot, {{{"engineer", "waiting", 3}, {"former", "undeliverable", 1}}});
   const auto value = [&](const std::string& sample) { return value_of(text, sample); };
