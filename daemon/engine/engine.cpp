@@ -48,7 +48,8 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       monitor_(settings_),
       ledger_(settings_),
       censored_(settings_->charts.size()),
-      arrivals_(*settings_, now_utc()) {
+      arrivals_(*settings_, now_utc()),
+      lonely_(*settings_) {
   for (const IntakeSettings& intake : config.intake) inboxes_.push_back(intake.inbox);
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
@@ -273,12 +274,14 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
   note_arrivals(taken, now);
   MonitorOutcome outcome = conclude(std::move(taken.events), taken.findings, now);
   for (const ComparisonIndex comparison : outcome.comparisons_paired) arrivals_.add_pair(comparison, now);
+  lonely_.settle(lacks_partner());
   for (const ChartIndex chart : charts_to_recount(taken)) {
     count_censored(chart);
     outcome.charts_changed.insert(chart);
   }
   for (const Task& task : work.tasks)
     if (task.inside) task.inside(now);
+  tell_lonely(now);
   watch(now);
   journal_->commit();
   for (const QueuedPiece& queued : work.pieces)
@@ -325,6 +328,7 @@ void Engine::record(const Finding& finding) {
 void Engine::note_arrivals(const TakenIn& taken, Instant now) {
   for (const Event& event : taken.events) {
     arrivals_.add(event, now);
+    if (const auto* split = std::get_if<SplitReading>(&event)) lonely_.add(*split, now);
     if (const auto* intervention = std::get_if<Intervention>(&event)) book_->hold(*intervention);
   }
   for (const CheckReading& reading : taken.censored) arrivals_.add(reading, now);
@@ -352,6 +356,35 @@ void Engine::watch(Instant now) {
   tell(book_->tick(now), now);
   tell_unacknowledged(now);
   beat(now);
+}
+
+LonelyHalves::LacksPartner Engine::lacks_partner() const {
+  return [this](ComparisonIndex comparison, const SplitReading& result) {
+    return monitor_.lacks_partner(comparison, result);
+  };
+}
+
+void Engine::tell_lonely(Instant now) {
+  for (const Finding& finding : lonely_.due(now, lacks_partner())) {
+    record(finding);
+    tell(book_->apply(finding, now), now);
+  }
+}
+
+void Engine::remember_lonely() {
+  lonely_.clear();
+  const auto last_commit = journal_->last_commit();
+  if (!last_commit) return;
+  Duration longest{};
+  for (const ComparisonSettings& comparison : settings_->comparisons)
+    longest = std::max(longest, comparison.pair_within);
+  JournalHistory(*journal_, *settings_)
+      .each_split_received(
+          *last_commit - longest - kIdle,
+          [this](const SplitReading& result, Instant received) { lonely_.add(result, received); });
+  lonely_.settle(lacks_partner());
+  // Every batch tells of those that are due: these were told of then.
+  (void)lonely_.due(*last_commit, lacks_partner());
 }
 
 void Engine::tell_unacknowledged(Instant now) {
@@ -468,6 +501,7 @@ void Engine::fold_from_journal(Instant now) {
   for (const Intervention& intervention : JournalHistory(*journal_, *settings_).interventions())
     if (intervention.at + alert_policy_.hold > now) book_->hold(intervention);
   const MonitorOutcome outcome = fold_all();
+  remember_lonely();
   if (journal_->totals().readings_censored > 0)
     for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) count_censored({i});
   journal_->begin(now);
@@ -475,6 +509,7 @@ void Engine::fold_from_journal(Instant now) {
   if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
   // Of all subjects: what is no longer configured holds no longer.
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
+  tell_lonely(now);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   malloc_trim(0);  // a whole history went through memory; give it back

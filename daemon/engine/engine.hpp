@@ -12,6 +12,7 @@
 
 #include "config/config.hpp"
 #include "core/alert/alert_book.hpp"
+#include "core/alert/lonely_halves.hpp"
 #include "core/monitor/monitor.hpp"
 #include "daemon/engine/file_ledger.hpp"
 #include "daemon/engine/service.hpp"
@@ -80,6 +81,11 @@ class Engine final : public IntakeSink, public Service {
   void record(const Finding& finding);
   void note_arrivals(const TakenIn& taken, Instant now);
   void watch(Instant now);
+  /// Halves of split samples whose partner did not come in time.
+  void tell_lonely(Instant now);
+  /// Those that the journal has, but not what was told of before its last commit.
+  void remember_lonely();
+  [[nodiscard]] LonelyHalves::LacksPartner lacks_partner() const;
   /// Routes that hear only of what nobody acknowledged in time.
   void tell_unacknowledged(Instant now);
   /// Signs of life to the routes that asked for them.
@@ -116,6 +122,7 @@ class Engine final : public IntakeSink, public Service {
   FileLedger ledger_;
   std::vector<std::int64_t> censored_;  ///< results of each chart that it leaves out
   Arrivals arrivals_;
+  LonelyHalves lonely_;
   Instant watched_at_{};
   /// What was told so far of alerts that nobody acknowledged: alert, its opening, route.
   std::set<std::tuple<std::int64_t, Instant, std::size_t>> escalated_;

@@ -97,6 +97,12 @@ class Journal {
                                            double value)>& take);  ///< by sample, time
   void each_split_of(std::string_view analyzer, std::string_view measurand, std::string_view sample,
                      const std::function<void(Instant, std::int32_t replicate, double value)>& take);
+  /// Every result of a split sample that was taken in after `since`, whatever became of it, oldest first.
+  void each_split_received(
+      Instant since, const std::function<void(std::string_view analyzer, std::string_view measurand,
+                                              std::string_view sample, Instant, Instant received)>& take);
+  /// When the newest batch was committed; nothing when there is none.
+  [[nodiscard]] std::optional<Instant> last_commit();
   /// Standing censored results of a check standard: what `each_check` leaves out.
   [[nodiscard]] std::int64_t censored_checks(std::string_view analyzer, std::string_view item,
                                              std::string_view measurand);
