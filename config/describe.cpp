@@ -2,8 +2,12 @@
 
 #include <algorithm>
 #include <cmath>
+#include <map>
+#include <utility>
 #include <vector>
 
+#include "config/describe_format.hpp"
+#include "config/describe_line.hpp"
 #include "config/url.hpp"
 #include "config/value_text.hpp"
 #include "core/base/number_text.hpp"
@@ -19,12 +23,6 @@ std::string rounded(double value) {
   return fixed(value, 0);
 }
 
-std::string list_of(const std::vector<std::string>& words) {
-  std::string text;
-  for (const std::string& word : words) text += (text.empty() ? "" : ", ") + word;
-  return text;
-}
-
 /// "3650 readings, h = 4.08"
 std::string run_length(double length, const char* of_what, Score score) {
   const ChangeLimit limit = limit_for(score, length);
@@ -34,12 +32,6 @@ std::string run_length(double length, const char* of_what, Score score) {
 
 std::string cadence(Duration every, bool overdue) {
   return shown(every) + (overdue ? "" : " (assumed for the alarm budget, never called overdue)");
-}
-
-/// "  name            value"
-std::string line(const std::string& name, const std::string& value) {
-  constexpr std::size_t kWidth = 24;
-  return "  " + name + std::string(name.size() < kWidth ? kWidth - name.size() : 1, ' ') + value + '\n';
 }
 
 std::string service_text(const Config& config) {
@@ -68,6 +60,20 @@ std::string analyzers_text(const Config& config) {
     text += line("  settle, rescan", shown(intake.settle) + ", " + shown(intake.rescan));
     text += line("  on_bad_row", intake.on_bad_row == BadRowPolicy::keep_good ? "keep_good" : "reject_file");
   }
+  return text;
+}
+
+/// By format, so that one which several analyzers use is shown once.
+std::string formats_text(const Config& config) {
+  std::map<std::string, std::pair<const MappedFormat*, std::vector<std::string>>> formats;
+  for (const IntakeSettings& intake : config.intake) {
+    if (!intake.mapped) continue;
+    auto& [format, analyzers] = formats[intake.mapped->id];
+    format = intake.mapped.get();
+    analyzers.push_back(intake.analyzer);
+  }
+  std::string text = formats.empty() ? "" : "\nFormats\n";
+  for (const auto& [id, format] : formats) text += describe_format(*format.first, list_of(format.second));
   return text;
 }
 
@@ -245,7 +251,8 @@ std::string without_trailing_spaces(const std::string& text) {
 
 std::string describe(const Config& config) {
   const Settings& settings = *config.settings;
-  std::string text = service_text(config) + analyzers_text(config) + measurands_text(settings);
+  std::string text =
+      service_text(config) + analyzers_text(config) + formats_text(config) + measurands_text(settings);
   if (!settings.charts.empty()) text += charts_text(settings);
   if (!settings.comparisons.empty()) text += "\nComparisons\n";
   for (const ComparisonSettings& comparison : settings.comparisons)

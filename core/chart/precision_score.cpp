@@ -6,6 +6,8 @@
 #include <cstdint>
 #include <limits>
 
+#include "core/base/wide_vectors.hpp"
+
 namespace agreed {
 namespace {
 // Ratios beyond these count as these, so that single precision can hold them.
@@ -60,6 +62,18 @@ float rough_cube_root(float x) {
   root = kThird * (2 * root + x / (root * root));
   return kThird * (2 * root + x / (root * root));
 }
+
+AGREED_WIDE_VECTORS
+void rough_scores(const Sides& sides, int first, int end, float* rough) {
+  constexpr float kTwoNinths = 2.0F / 9.0F;
+  for (int j = first; j < end; ++j) {
+    const float root = rough_cube_root(static_cast<float>(sides.ratio(j)));
+    const float b = kTwoNinths * static_cast<float>(sides.inverse_degrees_before[j]);
+    const float a = kTwoNinths * static_cast<float>(sides.inverse_degrees_after[j]);
+    rough[j] = ((1 - b) * root - (1 - a)) / std::sqrt(b * root * root + a);
+  }
+}
+
 PrecisionSplit best_split_of_replicates(const Stretch& stretch) {
   const Within carried = stretch.carried().within;
   const Within all = stretch.last().sums.within;
@@ -133,13 +147,7 @@ PrecisionSplit best_precision_split(const Stretch& stretch, std::vector<float>& 
   const int end = sides.held - 1;
   scratch.resize(static_cast<std::size_t>(end));
   float* rough = scratch.data();
-  constexpr float kTwoNinths = 2.0F / 9.0F;
-  for (int j = first; j < end; ++j) {
-    const float root = rough_cube_root(static_cast<float>(sides.ratio(j)));
-    const float b = kTwoNinths * static_cast<float>(sides.inverse_degrees_before[j]);
-    const float a = kTwoNinths * static_cast<float>(sides.inverse_degrees_after[j]);
-    rough[j] = ((1 - b) * root - (1 - a)) / std::sqrt(b * root * root + a);
-  }
+  rough_scores(sides, first, end, rough);
   const float largest = *std::max_element(rough + first, rough + end);
   const float candidate = largest - (1e-3F + 2e-5F * std::abs(largest));
 

@@ -6,6 +6,7 @@
 #include <utility>
 
 #include "core/base/distributions.hpp"
+#include "core/base/wide_vectors.hpp"
 #include "core/pair/deming.hpp"
 #include "core/pair/window_fit.hpp"
 
@@ -56,6 +57,7 @@ struct Prefixes {
 // Gain in the explained sum of squares of v by a line in w on each side of a split over none, for the first
 // `splits` ones. No branches, so that the loop runs in vectors: a side without spread gets an endless
 // denominator instead.
+AGREED_WIDE_VECTORS
 std::vector<double> gains_of(const Prefixes& before, const Sums& all, std::size_t splits) {
   const double least_spread = kNoSpread * all.ww;
   const double about_one_line = all.v * all.v / all.weight;

@@ -22,6 +22,7 @@
 #include "daemon/engine/engine.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/http/http_side.hpp"
+#include "daemon/http/intake_source.hpp"
 #include "daemon/intake/folder_watcher.hpp"
 #include "daemon/journal/journal.hpp"
 #include "daemon/log.hpp"
@@ -117,7 +118,8 @@ int serve(const Config& config, const StopSignals& signals) {
 
   Engine engine(config, std::move(journal));
   const AlertSource alerts = journal_alerts(config.state);
-  HttpSide http(config.listen, config.tokens_file, engine, alerts, pages_of(engine, alerts),
+  HttpSide http(config.listen, config.tokens_file, engine, alerts,
+                pages_of(engine, alerts, journal_intake(config.state)),
                 [](const std::string& trouble) { log_warning("http: {}", trouble); });
   WebhookSender sender(endpoints_of(config), outbox_of(config.state),
                        [&engine](const DeliveryTry& attempt) { return engine.record(attempt); });

@@ -55,6 +55,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
   next_.config_sha256 = config_sha256_;
   next_.settings = settings_;
   for (const Route& route : routes_) next_.routes.push_back(route.name);
+  next_.overdue = alert_policy_.overdue;
   for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) {
     next_.charts.emplace_back(std::make_shared<const ChartView>(monitor_.chart({i}).view()));
     next_.chart_states.push_back(ChartState::learning);
@@ -512,6 +513,7 @@ void Engine::fold_from_journal(Instant now) {
   tell_lonely(now);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
+  journal_->release_memory();
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
 }
@@ -591,6 +593,10 @@ void Engine::publish(Instant now) {
                               to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
     next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
   }
+  if (const auto bytes = journal_->overlong_log_bytes())
+    next_.remarks.push_back("the journal's write-ahead log has grown to " +
+                            std::to_string(*bytes / 1'000'000) +
+                            " MB: another program keeps the journal open for reading; end it");
   next_.totals = journal_->totals();
   next_.chain = journal_->head();
   if (book_) {

@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "core/alert/alert.hpp"
+#include "core/alert/overdue.hpp"
 #include "core/base/instant.hpp"
 #include "core/base/settings.hpp"
 #include "core/chart/chart_view.hpp"
@@ -33,6 +34,7 @@ struct Snapshot {
   std::vector<std::string> remarks;    ///< what is wrong although it is ready, in words
   std::shared_ptr<const Settings> settings;
   std::vector<std::string> routes;  ///< configured, by name
+  OverduePolicy overdue;            ///< when something with a cadence counts as overdue
   IntakeTotals totals;
   std::uint64_t pending_files = 0;
   std::vector<AnalyzerStatus> analyzers;              ///< by AnalyzerIndex

@@ -3,6 +3,8 @@
 #include <array>
 #include <string_view>
 
+#include <nlohmann/json.hpp>
+
 #include "daemon/http/text_fields.hpp"
 
 namespace agreed {
@@ -25,6 +27,11 @@ AcknowledgeBody read_acknowledge(const std::string& body) {
     return wrong("The field by must name who acknowledges, in 1 to 100 bytes.");
   if (read.note.size() > kLongestNote) return wrong("The field note may have 1000 bytes at most.");
   return read;
+}
+
+std::string write_acknowledge(const std::string& by, const std::string& note) {
+  const nlohmann::json json = {{"by", by}, {"note", note}};
+  return json.dump(-1, ' ', false, nlohmann::json::error_handler_t::replace);
 }
 
 }  // namespace agreed

@@ -14,4 +14,7 @@ struct AcknowledgeBody {
 /// note is not lost unseen.
 [[nodiscard]] AcknowledgeBody read_acknowledge(const std::string& body);
 
+/// The body that says so; bytes that are not UTF-8 are replaced.
+[[nodiscard]] std::string write_acknowledge(const std::string& by, const std::string& note);
+
 }  // namespace agreed

@@ -12,6 +12,7 @@ bool etag_matches(std::string_view sent, std::string_view etag) {
   const auto first = sent.find_first_not_of(" \t");
   if (first == std::string_view::npos || etag.empty()) return false;
   if (sent.substr(first, sent.find_last_not_of(" \t") - first + 1) == "*") return true;
+  if (etag.starts_with("W/")) etag.remove_prefix(2);
   // Our tags hold no comma and no quote, so the quoted text may simply be looked for, piece by piece.
   for (auto open = sent.find('"'); open != std::string_view::npos;) {
     const auto close = sent.find('"', open + 1);

@@ -30,7 +30,8 @@ struct Gated {
   bool close = false;          ///< the client wants, or its version means, no further request
   bool expects_100 = false;    ///< it waits for 100 Continue before it sends the body
   std::string method, target;  ///< as sent
-  std::string head;  ///< the request for the library: the request line and the few fields that matter
+  std::string head;  ///< the request for the library: the request line and the few fields that matter, their
+                     ///< names in small letters
 };
 
 /// Refused are: a line without CRLF, control characters, folded or nameless fields, a head beyond the limits

@@ -55,4 +55,11 @@ HttpAnswer problem(int status, const std::string& detail, std::string_view targe
   return {status, "application/problem+json", json_text(document), "", {}};
 }
 
+std::string problem_detail(const HttpAnswer& answer) {
+  const Json document = Json::parse(answer.body, nullptr, false);
+  if (document.is_object() && document.contains("detail") && document.at("detail").is_string())
+    return document.at("detail").get<std::string>();
+  return status_title(answer.status);
+}
+
 }  // namespace agreed

@@ -15,4 +15,7 @@ namespace agreed {
 [[nodiscard]] HttpAnswer problem(int status, const std::string& detail, std::string_view target,
                                  const std::string& field = "");
 
+/// The detail of a problem document; of another answer its status in words.
+[[nodiscard]] std::string problem_detail(const HttpAnswer& answer);
+
 }  // namespace agreed

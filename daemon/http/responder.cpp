@@ -1,12 +1,11 @@
 #include "daemon/http/responder.hpp"
 
-#include <array>
-#include <cstdio>
 #include <cstring>
 #include <ctime>
 
 #include <httplib.h>
 
+#include "daemon/http/http_date.hpp"
 #include "daemon/http/problem.hpp"
 
 namespace agreed {
@@ -41,28 +40,23 @@ class MemoryStream final : public httplib::Stream {
   std::string output_;
 };
 
-/// "Tue, 01 Dec 2026 15:18:02 GMT" (RFC 9110, 5.6.7), whatever the locale.
-std::string http_date(std::time_t now) {
-  constexpr std::array<const char*, 7> days = {"Sun", "Mon", "Tue", "Wed", "Thu", "Fri", "Sat"};
-  constexpr std::array<const char*, 12> months = {"Jan", "Feb", "Mar", "Apr", "May", "Jun",
-                                                  "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"};
-  std::tm utc{};
-  if (!::gmtime_r(&now, &utc)) return {};
-  std::array<char, 64> text{};
-  const int length = std::snprintf(text.data(), text.size(), "%s, %02d %s %04d %02d:%02d:%02d GMT",
-                                   days.at(static_cast<std::size_t>(utc.tm_wday)), utc.tm_mday,
-                                   months.at(static_cast<std::size_t>(utc.tm_mon)), utc.tm_year + 1900,
-                                   utc.tm_hour, utc.tm_min, utc.tm_sec);
-  return {text.data(), static_cast<std::size_t>(length)};
+/// A field of the head that the gate made, as it was sent; empty when it is not there. The library would undo
+/// percent escapes in it: a token with a % would be another one, and %0D%0A would become a line end.
+std::string field_of(std::string_view head, std::string_view name) {
+  const std::string begin = std::string("\r\n").append(name).append(": ");
+  const auto found = head.find(begin);
+  if (found == std::string_view::npos) return {};
+  const auto value = head.substr(found + begin.size());
+  return std::string(value.substr(0, value.find("\r\n")));
 }
 
-HttpRequest request_of(const httplib::Request& from) {
+HttpRequest request_of(const httplib::Request& from, std::string_view head) {
   return {from.method,
           from.target,
-          from.get_header_value("Authorization"),
-          from.get_header_value("If-None-Match"),
-          from.get_header_value("Accept"),
-          from.get_header_value("Cookie"),
+          field_of(head, "authorization"),
+          field_of(head, "if-none-match"),
+          field_of(head, "accept"),
+          field_of(head, "cookie"),
           from.body};
 }
 
@@ -87,7 +81,8 @@ class Responder::Library final : public httplib::Server {
       : handler_(std::move(handler)), tell_(std::move(tell)) {
     set_keep_alive_timeout(idle.count());
     set_keep_alive_max_count(static_cast<std::size_t>(requests));
-    set_default_headers({{"Content-Security-Policy", "default-src 'self'"},
+    set_default_headers({{"Content-Security-Policy",
+                          "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'"},
                          {"X-Content-Type-Options", "nosniff"},
                          {"Referrer-Policy", "no-referrer"},
                          {"Cache-Control", "no-cache"},
@@ -101,6 +96,7 @@ class Responder::Library final : public httplib::Server {
 
   std::string process(std::string_view head, std::string_view body, bool close) {
     MemoryStream stream(head);
+    head_ = head;
     bool closed = false;
     process_request(stream, close, closed, [&](httplib::Request& request) { request.body = body; });
     return stream.take_output();
@@ -117,7 +113,7 @@ class Responder::Library final : public httplib::Server {
 
  private:
   HttpAnswer answer_to(const httplib::Request& from) const {
-    const HttpRequest request = request_of(from);
+    const HttpRequest request = request_of(from, head_);
     std::string what = "an exception of unknown type";
     try {
       return handler_(request);
@@ -133,6 +129,7 @@ class Responder::Library final : public httplib::Server {
   const std::function<void(const std::string&)> tell_;
   const Refusal* refusal_ = nullptr;
   std::string_view target_;
+  std::string_view head_;  ///< of the request being answered
 };
 
 Responder::Responder(HttpHandler handler, std::function<void(const std::string&)> tell,

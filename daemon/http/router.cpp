@@ -5,8 +5,10 @@
 #include <string_view>
 
 #include "daemon/http/access.hpp"
+#include "daemon/http/acknowledgement.hpp"
 #include "daemon/http/api.hpp"
 #include "daemon/http/etag.hpp"
+#include "daemon/http/page_side.hpp"
 #include "daemon/http/problem.hpp"
 
 namespace agreed {
@@ -83,17 +85,22 @@ HttpAnswer unless_known(const HttpRequest& request, HttpAnswer answer) {
 
 struct Router::Impl {
   explicit Impl(RouterParts given)
-      : parts(std::move(given)), api(parts.service, parts.alerts, parts.intake, parts.stopping) {}
+      : parts(std::move(given)),
+        api(parts.service, parts.alerts, parts.intake, parts.stopping),
+        pages(parts.pages, parts.tokens, parts.reads_need_token,
+              [this](const std::string& alert, const std::string& by, const std::string& note) {
+                return acknowledge(alert, by, note);
+              }) {}
 
-  HttpAnswer page(const HttpRequest& request, const Target& target) const {
-    std::string path;
-    for (const std::string& segment : target.segments) path.append(1, '/').append(segment);
-    if (path.empty()) path.push_back('/');
-    auto found = parts.pages ? parts.pages(path, target.query) : std::nullopt;
-    if (!found) return not_found(request);
-    HttpAnswer answer{found->status, std::move(found->content_type), std::move(found->body), "", {}};
-    answer.etag = etag_of(answer.body);
-    return answer;
+  /// What the page's form asks for is what the API would be asked for.
+  HttpAnswer acknowledge(const std::string& alert, const std::string& by, const std::string& note) {
+    HttpRequest request;
+    request.method = "POST";
+    request.target = "/api/alerts/" + alert + "/acknowledge";
+    request.body = write_acknowledge(by, note);
+    Target target;
+    target.segments = {"api", "alerts", alert, "acknowledge"};
+    return api.acknowledge(request, target);
   }
 
   /// Method, then token, then existence: whether a thing exists is told only to those who may know.
@@ -106,11 +113,10 @@ struct Router::Impl {
       allowed = candidate.method == "GET" ? "GET, HEAD" : "POST";
       if (candidate.method == method) route = &candidate;
     }
-    const bool is_page = !begins(target, "api") && !begins(target, "health") && !begins(target, "metrics");
-    if (is_page) allowed = "GET, HEAD";
-    if (allowed && !route && !(is_page && method == "GET")) return not_allowed(request, allowed);
+    if (!begins(target, "api") && !begins(target, "health") && !begins(target, "metrics"))
+      return pages.answer(request, target);
+    if (allowed && !route) return not_allowed(request, allowed);
     if (auto refusal = refuse(request, target)) return *refusal;
-    if (is_page) return page(request, target);
     return route ? (api.*route->endpoint)(request, target) : not_found(request);
   }
 
@@ -122,6 +128,7 @@ struct Router::Impl {
 
   RouterParts parts;
   Api api;
+  PageSide pages;
 };
 
 Router::Router(RouterParts parts) : impl_(std::make_unique<Impl>(std::move(parts))) {}

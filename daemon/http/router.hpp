@@ -9,20 +9,10 @@
 #include "daemon/http/alert_source.hpp"
 #include "daemon/http/intake_source.hpp"
 #include "daemon/http/message.hpp"
+#include "daemon/http/page_hook.hpp"
 #include "daemon/http/tokens.hpp"
 
 namespace agreed {
-
-/// A document of the status page, or a file that belongs to it.
-struct Page {
-  int status = 200;
-  std::string content_type;
-  std::string body;
-};
-
-/// Gives the page at `path` (decoded, nothing in it leads out; the query as sent); nothing if there is none.
-/// Called from several threads at once.
-using PageHook = std::function<std::optional<Page>(const std::string& path, const std::string& query)>;
 
 struct RouterParts {
   Service& service;  ///< outlives the router

@@ -33,15 +33,19 @@ Tokens::Tokens(std::optional<std::filesystem::path> file, std::function<void(con
     : file_(std::move(file)), tell_(std::move(tell)) {}
 
 std::optional<Role> Tokens::role_of(std::string_view token) {
-  const Hash hash = sha256(token);
+  const auto holder = holder_of(sha256(token));
+  return holder ? std::optional(holder->role) : std::nullopt;
+}
+
+std::optional<TokenHolder> Tokens::holder_of(const Sha256::Digest& hash) {
   const std::scoped_lock lock(mutex_);
   read_if_changed();
-  std::optional<Role> role;
+  const Entry* found = nullptr;
   for (const Entry& entry : entries_)  // all of them, found or not: no early exit to time
     if (CRYPTO_memcmp(entry.sha256.data(), hash.data(), hash.size()) == 0) {
-      if (!role || entry.role == Role::operator_) role = entry.role;
+      if (!found || entry.holder.role == Role::operator_) found = &entry;
     }
-  return role;
+  return found ? std::optional(found->holder) : std::nullopt;
 }
 
 bool Tokens::any() {
@@ -84,7 +88,7 @@ std::optional<Tokens::Entry> Tokens::entry_of(const std::string& line, std::size
   words >> name >> hex >> more;
   const auto hash = hash_from_hex(hex);
   if ((role == "reader" || role == "operator") && hash && more.empty())
-    return Entry{role == "operator" ? Role::operator_ : Role::reader, *hash};
+    return Entry{{role == "operator" ? Role::operator_ : Role::reader, name}, *hash};
   // Not the line itself: someone may have put a token there.
   tell_("tokens file " + file_->string() + ":" + std::to_string(number) +
         ": expected `reader|operator NAME SHA256` (64 hexadecimal digits); the line is passed over");

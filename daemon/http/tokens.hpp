@@ -15,6 +15,12 @@ namespace agreed {
 
 enum class Role { reader, operator_ };
 
+/// Whose token it is.
+struct TokenHolder {
+  Role role{};
+  std::string name;
+};
+
 class Tokens {
  public:
   /// No file: no token is known. `tell` gets a message per line that cannot be used, or when the file cannot
@@ -25,12 +31,16 @@ class Tokens {
   /// near.
   [[nodiscard]] std::optional<Role> role_of(std::string_view token);
 
+  /// The same by its hash, with the name its line has; for who keeps a hash and asks again whether it still
+  /// stands in the file.
+  [[nodiscard]] std::optional<TokenHolder> holder_of(const Sha256::Digest& hash);
+
   /// Whether any token, of either role, may read.
   [[nodiscard]] bool any();
 
  private:
   struct Entry {
-    Role role;
+    TokenHolder holder;
     Sha256::Digest sha256;
   };
   struct Stamp {

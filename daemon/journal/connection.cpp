@@ -56,7 +56,7 @@ std::unique_ptr<SQLite::Database> open_writer(const std::filesystem::path& file)
   // Values are never secret here, so pages need no wiping when they split. The log is written back between
   // batches (Journal::write_back), not within a commit that somebody waits for.
   database->exec(
-      "PRAGMA foreign_keys = ON; PRAGMA synchronous = FULL; PRAGMA mmap_size = 0; PRAGMA cache_size = -24576;"
+      "PRAGMA foreign_keys = ON; PRAGMA synchronous = FULL; PRAGMA mmap_size = 0; PRAGMA cache_size = -16384;"
       "PRAGMA secure_delete = OFF; PRAGMA wal_autocheckpoint = 0; PRAGMA journal_size_limit = 67108864");
   const std::string mode = database->execAndGet("PRAGMA journal_mode = WAL").getString();
   if (mode != "wal")

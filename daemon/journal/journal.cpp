@@ -9,8 +9,9 @@
 namespace agreed::journal {
 namespace {
 
-// Of 4 KiB: 16 MiB of log are written back when nothing waits, 64 MiB in any case.
-constexpr int kLogPages = 4000, kLongLogPages = 16000;
+// Of 4 KiB: 16 MiB of log are written back when nothing waits, 32 MiB in any case.
+constexpr int kLogPages = 4000, kLongLogPages = 8000, kOverlongLogPages = 32000;
+constexpr std::int64_t kPageBytes = 4096;
 
 std::unique_ptr<SQLite::Database> open_and_migrate(const std::filesystem::path& file) {
   return translating(file, [&file] {
@@ -186,6 +187,13 @@ void Journal::rollback() noexcept {
 }
 void Journal::write_back(bool something_waits) noexcept {
   impl_->write_back(something_waits);
+}
+std::optional<std::int64_t> Journal::overlong_log_bytes() const {
+  if (impl_->log_pages < journal::kOverlongLogPages) return std::nullopt;
+  return impl_->log_pages * journal::kPageBytes;
+}
+void Journal::release_memory() noexcept {
+  sqlite3_db_release_memory(impl_->database->getHandle());
 }
 void Journal::recover() {
   if (!impl_->doubtful) return;

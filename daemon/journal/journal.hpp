@@ -39,6 +39,11 @@ class Journal {
   /// To be called between batches: writes a long write-ahead log back into the file, while `something_waits`
   /// only a very long one. What fails is tried again later.
   void write_back(bool something_waits) noexcept;
+  /// How long the write-ahead log has become that cannot be written back, because somebody reads the journal
+  /// without end; nothing while it is as long as it may be.
+  [[nodiscard]] std::optional<std::int64_t> overlong_log_bytes() const;
+  /// Gives back what the database keeps in memory, after much was read that is not needed again.
+  void release_memory() noexcept;
   /// To be called after a failed batch, before anything is read: if a write or a sync went wrong, what the
   /// connection holds in memory is not trusted, and the database is opened anew. It must be the same journal,
   /// with nothing of what was committed missing; throws JournalError.

@@ -14,7 +14,7 @@ std::string url_of(const Alert& alert, std::string_view base_url) {
   if (!s.comparison.empty()) return url + "/comparisons/" + s.comparison;
   if (!s.analyzer.empty() && !s.standard.empty() && !s.measurand.empty())
     return url + "/charts/" + s.analyzer + "/" + s.standard + "/" + s.measurand;
-  return url + "/alerts#" + std::to_string(alert.id);
+  return url + "/alerts/" + std::to_string(alert.id);
 }
 
 [[noreturn]] void refuse(const std::string& field, const std::string& expected) {

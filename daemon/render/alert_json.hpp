@@ -9,7 +9,7 @@
 namespace agreed {
 
 /// Fields in the order of the API, then `started_at`, `told_at` and `held`, which only restoring needs.
-/// `url`: the page of the alert's chart or comparison, else its place on the page of alerts; `base_url`
+/// `url`: the page of the alert's chart or comparison, else its own page; `base_url`
 /// without a slash at the end. Bytes that are not UTF-8 are replaced; a number that is not finite becomes
 /// null.
 [[nodiscard]] std::string alert_json(const Alert& alert, std::string_view base_url);

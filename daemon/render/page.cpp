@@ -6,12 +6,6 @@
 namespace agreed {
 namespace {
 
-constexpr const char* kHtml = "text/html; charset=utf-8";
-
-PageAnswer page(const PageInput& input, std::string_view title, const std::string& main) {
-  return {200, kHtml, document_html(input, title, main)};
-}
-
 std::optional<ComparisonIndex> find_comparison(const Settings& settings, std::string_view path) {
   constexpr std::string_view prefix = "/comparisons/";
   if (!path.starts_with(prefix)) return std::nullopt;
@@ -32,30 +26,45 @@ std::optional<ChartIndex> find_chart(const Settings& settings, std::string_view 
   return std::nullopt;
 }
 
+/// A page whose parameters may be wrong: then it says so and shows what it can.
+template <class Contents>
+PageAnswer ranged(PageInput input, const std::string& title, const PageRange& range,
+                  const Contents& contents) {
+  if (!range.error.empty()) input.notice = range.error;
+  const bool started = input.snapshot.started;
+  return document(input, title, started ? contents(input) : overview_html(input),
+                  {range.error.empty() ? 200 : 400, true});
+}
+
 }  // namespace
 
 std::optional<PageAnswer> render_page(std::string_view path,
-                                      const std::map<std::string, std::string>& /*query*/,
-                                      const Snapshot& snapshot, std::span<const Alert> current,
-                                      std::span<const Alert> resolved, Instant now,
-                                      std::string_view program_version) {
-  if (path == "/page.css") return PageAnswer{200, "text/css; charset=utf-8", std::string(page_style_sheet())};
+                                      const std::map<std::string, std::string>& parameters,
+                                      const PageInput& input) {
+  if (path == "/page.css")
+    return PageAnswer{200, "text/css; charset=utf-8", std::string(page_style_sheet()), {}};
   if (path == "/page.js")
-    return PageAnswer{200, "text/javascript; charset=utf-8", std::string(page_script())};
-  const PageInput input{snapshot, current, resolved, now, program_version};
-  const bool started = snapshot.started && snapshot.settings;
-  if (path == "/") return page(input, "Do the analyzers agree?", overview_html(input));
-  if (path == "/alerts") return page(input, "Alerts", started ? alerts_html(input) : overview_html(input));
+    return PageAnswer{200, "text/javascript; charset=utf-8", std::string(page_script()), {}};
+  const Snapshot& snapshot = input.snapshot;
+  if (path == "/") return document(input, "Do the analyzers agree?", overview_html(input));
   if (!snapshot.settings) return std::nullopt;
   if (const auto comparison = find_comparison(*snapshot.settings, path)) {
-    const std::string title = comparison_scene(snapshot, *comparison).name();
-    return page(input, title, started ? comparison_html(input, *comparison) : overview_html(input));
+    const PageRange range = read_range(parameters, "pairs");
+    return ranged(input, comparison_scene(snapshot, *comparison).name(), range,
+                  [&](const PageInput& told) { return comparison_html(told, *comparison, range); });
   }
   if (const auto chart = find_chart(*snapshot.settings, path)) {
-    const std::string title = chart_scene(snapshot, *chart).name();
-    return page(input, title, started ? chart_html(input, *chart) : overview_html(input));
+    const PageRange range = read_range(parameters, "points");
+    return ranged(input, chart_scene(snapshot, *chart).name(), range,
+                  [&](const PageInput& told) { return chart_html(told, *chart, range); });
   }
   return std::nullopt;
+}
+
+PageAnswer render_words(const PageInput& input, std::string_view title, int status) {
+  return document(input, title,
+                  "<h1>" + escaped(title) + "</h1><p>" + link_html("/", "To the overview") + "</p>",
+                  {status, false});
 }
 
 }  // namespace agreed

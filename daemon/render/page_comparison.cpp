@@ -1,6 +1,7 @@
 // All of one comparison, and all of one chart.
 #include "daemon/render/chart_range.hpp"
 #include "daemon/render/page_chart_words.hpp"
+#include "daemon/render/page_freshness.hpp"
 #include "daemon/render/page_views.hpp"
 #include "daemon/render/svg_figures.hpp"
 
@@ -89,34 +90,45 @@ std::string change_html(const ComparisonView& view) {
 
 }  // namespace
 
-std::string comparison_html(const PageInput& input, ComparisonIndex index) {
+std::string comparison_html(const PageInput& input, ComparisonIndex index, const PageRange& range) {
   const ComparisonScene scene = comparison_scene(input.snapshot, index);
+  Answer answer = current_answer(input.snapshot, scene);
+  tell_interrupted(answer, input.snapshot);
   std::string out = "<h1>" + escaped(scene.name()) + ": do " + escaped(scene.x) + " and " + escaped(scene.y) +
-                    " agree?</h1>" + answer_html(answer_for(scene), true);
+                    " agree?</h1>" + answer_html(answer, true);
   Subject subject;
   subject.comparison = scene.asked.id;
   out += alerts_of_html(input, subject) + change_html(scene.view);
   out += "<section><h2>At the decision levels</h2>";
   out +=
       scene.view.levels.empty() ? paragraph("There is nothing to show yet.") : table_html(level_table(scene));
+  const std::vector<Instant> times = times_of(scene.view);
+  const RangeCut cut = cut_of(times, range);
+  out += range_html(comparison_path(scene.asked), "pairs", "pairs", times, range, cut);
+  const ComparisonView part = cut_to(scene.view, cut);
+  const ComparisonScene drawn = with_view(scene, part);
   out += "<div class=\"figures broad\">";
   for (std::size_t level = 0; level < scene.view.levels.size(); ++level)
-    out += figure_html(bias_figure(scene, level, FigureDetail::full), 3);
+    out += figure_html(bias_figure(drawn, level, FigureDetail::full), 3);
   out += "</div></section><section><h2>The pairs</h2>" + paragraph(window_words(scene)) +
          warnings_html(scene.view.warnings) + "<div class=\"figures broad\">" +
-         figure_html(pairs_figure(scene, FigureDetail::full), 3) +
-         figure_html(differences_figure(scene, FigureDetail::full), 3) +
-         figure_html(pair_chart_figure(scene, FigureDetail::full), 3) + "</div></section>";
+         figure_html(pairs_figure(drawn, FigureDetail::full), 3) +
+         figure_html(differences_figure(drawn, FigureDetail::full), 3) +
+         figure_html(pair_chart_figure(drawn, FigureDetail::full), 3) + "</div></section>";
   out += "<section><h2>What the figures rest on</h2>" + paragraph(error_words(scene)) +
          paragraph(scatter_words(scene)) + paragraph(range_words(scene)) + paragraph(robust_words(scene));
   return out + "</section>";
 }
 
-std::string chart_html(const PageInput& input, ChartIndex index) {
+std::string chart_html(const PageInput& input, ChartIndex index, const PageRange& range) {
   const ChartScene scene = chart_scene(input.snapshot, index);
   std::vector<std::string> warnings = scene.view.warnings;
   if (range_not_covered(input.snapshot, index)) warnings.emplace_back("range_not_covered");
+  const Freshness fresh = freshness_of(input.snapshot, scene);
   std::string out = "<h1>" + escaped(scene.name()) + "</h1><p>" + chart_badge_html(scene.view.state) + "</p>";
+  if (!fresh.words.empty())
+    out += std::string("<p class=\"age") + (fresh.overdue ? " overdue" : "") + "\">" +
+           flowing_html(fresh.words) + "</p>";
   out += paragraph(chart_words(scene)) + paragraph(precision_words(scene)) +
          paragraph(censored_words(scene)) + paragraph(replicates_words(scene)) +
          paragraph(reference_words(scene)) + paragraph(effects_words(scene)) + warnings_html(warnings);
@@ -125,8 +137,14 @@ std::string chart_html(const PageInput& input, ChartIndex index) {
   subject.standard = scene.standard;
   subject.measurand = scene.measurand.id;
   out += alerts_of_html(input, subject);
-  return out + "<section><h2>Readings</h2><div class=\"figures broad\">" +
-         figure_html(control_chart_figure(scene, FigureDetail::full), 3) + "</div></section>";
+  const std::vector<Instant> times = times_of(scene.view);
+  const RangeCut cut = cut_of(times, range);
+  const ChartView part = cut_to(scene.view, cut);
+  return out + "<section><h2>Readings</h2>" +
+         range_html(chart_path(scene.settings, scene.asked), "points", "readings", times, range, cut) +
+         "<div class=\"figures broad\">" +
+         figure_html(control_chart_figure(with_view(scene, part), FigureDetail::full), 3) +
+         "</div></section>";
 }
 
 }  // namespace agreed

@@ -42,7 +42,8 @@ std::string list_html(const PageInput& input) {
     const ComparisonScene scene = comparison_scene(input.snapshot, ComparisonIndex{i});
     out += "<tr role=\"row\"><th role=\"rowheader\" scope=\"row\">" +
            link_html(comparison_path(scene.asked), scene.name()) + "</th>" + cell +
-           answer_badge_html(answer_for(scene)) + "</td>" + cell + bias_cell(scene) + "</td>" + cell +
+           answer_badge_html(current_answer(input.snapshot, scene)) + "</td>" + cell + bias_cell(scene) +
+           "</td>" + cell +
            (scene.view.verdict_since
                 ? "<span class=\"narrow-only\">since </span>" + time_html(*scene.view.verdict_since)
                 : std::string("no verdict yet")) +
@@ -58,11 +59,11 @@ bool needs_a_look(const PageInput& input, const ComparisonScene& scene) {
          (alerts != input.snapshot.alerts_of_comparison.end() && alerts->second > 0);
 }
 
-std::string comparison_section(const ComparisonScene& scene, bool alone) {
+std::string comparison_section(const PageInput& input, const ComparisonScene& scene, bool alone) {
   std::string out = "<section class=\"comparison\" id=\"comparison." + id_part(scene.asked.id) + "\"><h3>" +
                     link_html(comparison_path(scene.asked), scene.name()) + " <small>" + escaped(scene.x) +
                     " and " + escaped(scene.y) + "</small></h3>";
-  if (!alone) out += answer_html(answer_for(scene), false);
+  if (!alone) out += answer_html(current_answer(input.snapshot, scene), false);
   out += "<div class=\"figures\">";
   for (std::size_t level = 0; level < scene.view.levels.size(); ++level)
     out += figure_html(bias_figure(scene, level, FigureDetail::small), 4);
@@ -82,7 +83,7 @@ std::string comparisons_html(const PageInput& input) {
   for (std::uint32_t i = 0; i < count && drawn < kDrawnComparisons; ++i) {
     const ComparisonScene scene = comparison_scene(input.snapshot, ComparisonIndex{i});
     if (count > kDrawnComparisons && !needs_a_look(input, scene)) continue;
-    out += comparison_section(scene, count == 1);
+    out += comparison_section(input, scene, count == 1);
     ++drawn;
   }
   if (drawn < count)
@@ -170,16 +171,6 @@ std::string overview_html(const PageInput& input) {
   out += current_alerts_html(input) + comparisons_html(input) + analyzers_html(input);
   const std::string budget = budget_words(input.snapshot.settings->alarm_budget);
   return budget.empty() ? out : out + "<p>" + escaped(budget) + "</p>";
-}
-
-std::string alerts_html(const PageInput& input) {
-  std::string out = "<h1>Alerts</h1><section><h2>Current</h2>";
-  if (input.current.empty()) out += "<p>None.</p>";
-  for (const Alert& alert : input.current) out += alert_html(input, alert, 3);
-  out += "</section><section><h2>Recently resolved</h2>";
-  if (input.resolved.empty()) out += "<p>None.</p>";
-  for (const Alert& alert : input.resolved) out += alert_html(input, alert, 3);
-  return out + "</section>";
 }
 
 }  // namespace agreed

@@ -1,6 +1,5 @@
-// What the pages share: answers, badges, alerts.
-#include <algorithm>
-
+// What the pages share: answers and badges.
+#include "daemon/journal/journal_types.hpp"
 #include "daemon/render/page_chart_words.hpp"
 #include "daemon/render/page_views.hpp"
 
@@ -19,6 +18,11 @@ constexpr std::string_view kSquareBar = "<path d=\"M3 3h18v18H3z\"/><path d=\"M8
 constexpr std::string_view kRhombus =
     "<path d=\"M12 1.5L22.5 12L12 22.5L1.5 12z\"/><path d=\"M8 12h.01M12 12h.01M16 12h.01\"/>";
 constexpr std::string_view kHourglass = "<path d=\"M6 3h12L12 12L18 21H6L12 12z\"/>";
+constexpr std::string_view kClock = "<circle cx=\"12\" cy=\"12\" r=\"10\"/><path d=\"M12 6v6l-4 3\"/>";
+constexpr std::string_view kBrokenCircle =
+    "<path d=\"M9 2.5a10 10 0 0 0 0 19M15 2.5a10 10 0 0 1 0 19M9 8v8M15 8v8\"/>";
+constexpr std::string_view kTwice = "<path d=\"M3 3h13v13H3zM8 16v5h13V8h-5\"/>";
+constexpr std::string_view kGrowing = "<path d=\"M4 21h16M12 17V3M6 9l6-6l6 6\"/>";
 constexpr std::string_view kTriangle = "<path d=\"M12 2.5L22.5 21H1.5z\"/><path d=\"M12 9v6M12 18h.01\"/>";
 constexpr std::string_view kFlag = "<path d=\"M5 22V3h13l-3 4.5l3 4.5H5\"/>";
 
@@ -30,6 +34,10 @@ std::string_view answer_icon(AnswerKind kind) {
       return kSquareBar;
     case AnswerKind::starting:
       return kHourglass;
+    case AnswerKind::out_of_date:
+      return kClock;
+    case AnswerKind::interrupted:
+      return kBrokenCircle;
     case AnswerKind::not_yet:
       break;
   }
@@ -44,6 +52,9 @@ std::string answer_css(AnswerKind kind) {
       return "no";
     case AnswerKind::starting:
       return "starting";
+    case AnswerKind::out_of_date:
+    case AnswerKind::interrupted:
+      return "old";
     case AnswerKind::not_yet:
       break;
   }
@@ -53,51 +64,6 @@ std::string answer_css(AnswerKind kind) {
 std::string_view severity_icon(Severity severity) {
   if (severity == Severity::critical) return kSquareBar;
   return severity == Severity::warning ? kTriangle : kFlag;
-}
-
-/// The text of an alert, a paragraph a line.
-std::string paragraphs(const std::string& text) {
-  std::string out;
-  for (std::size_t at = 0; at < text.size();) {
-    const std::size_t end = std::min(text.find('\n', at), text.size());
-    if (end > at) out += "<p>" + flowing_html(std::string_view(text).substr(at, end - at)) + "</p>";
-    at = end + 1;
-  }
-  return out;
-}
-
-std::string subject_link(const PageInput& input, const Subject& subject) {
-  if (!input.snapshot.settings) return {};
-  const Settings& settings = *input.snapshot.settings;
-  for (const ComparisonSettings& comparison : settings.comparisons)
-    if (comparison.id == subject.comparison) return link_html(comparison_path(comparison), "Its comparison");
-  for (const ChartSettings& chart : settings.charts)
-    if (settings.of(chart.analyzer).id == subject.analyzer &&
-        settings.of(chart.standard).id == subject.standard &&
-        settings.of(chart.measurand).id == subject.measurand)
-      return link_html(chart_path(settings, chart), "Its chart");
-  return {};
-}
-
-std::string state_html(const Alert& alert) {
-  if (alert.state == AlertState::resolved)
-    return "<p>Resolved" + (alert.resolved_at ? " " + time_html(*alert.resolved_at) : std::string()) +
-           (alert.resolved_reason.empty() ? "" : ": " + escaped(spaced(alert.resolved_reason))) + ".</p>";
-  if (alert.acknowledged)
-    return "<p>Acknowledged by " + escaped(alert.acknowledged->by) + " " + time_html(alert.acknowledged->at) +
-           (alert.acknowledged->note.empty() ? "." : ": " + escaped(alert.acknowledged->note)) + "</p>";
-  const std::string id = std::to_string(alert.id);
-  return "<p class=\"hint\">Not acknowledged. To acknowledge it: <code>POST /api/alerts/" + id +
-         "/acknowledge</code> with <code>{&quot;by&quot;: &quot;\u2026&quot;, &quot;note&quot;: "
-         "&quot;\u2026&quot;}</code>"
-         " and an operator token.</p>";
-}
-
-std::string told_since(const Alert& alert) {
-  std::string out = "since " + time_html(alert.opened_at);
-  if (alert.started_at || alert.started_between)
-    out += "; begun " + flowing_html(beginning_words(alert.started_at, alert.started_between));
-  return out;
 }
 
 }  // namespace
@@ -110,12 +76,18 @@ std::string answer_html(const Answer& answer, bool foremost) {
   std::string out = "<div class=\"answer " + answer_css(answer.kind) + (foremost ? " foremost" : "") + "\">";
   out += "<p class=\"word\">" + icon(answer_icon(answer.kind)) + "<span>" + escaped(answer.word) +
          "</span></p><div>";
+  if (foremost) out += "<p class=\"before\" hidden></p>";
   if (!answer.since.empty() || !answer.verdict.empty())
     out += "<p class=\"since\">" + escaped(answer.verdict) +
            (answer.since.empty() ? "" : " " + flowing_html(answer.since)) + "</p>";
+  if (!answer.age.empty()) out += "<p class=\"age\">" + flowing_html(answer.age) + "</p>";
   if (!answer.sentence.empty()) out += "<p class=\"sentence\">" + flowing_html(answer.sentence) + "</p>";
   for (const std::string& more : answer.more) out += "<p class=\"more\">" + flowing_html(more) + "</p>";
   return out + "</div></div>";
+}
+
+std::string starting_html(const PageInput& input) {
+  return input.snapshot.started ? std::string() : answer_html(overall_answer(input.snapshot), true);
 }
 
 std::string answer_badge_html(const Answer& answer) {
@@ -131,17 +103,20 @@ std::string chart_badge_html(ChartState state) {
          "</span>";
 }
 
-std::string alert_html(const PageInput& input, const Alert& alert, int level) {
-  const std::string severity = to_string(alert.severity);
-  const std::string h = "h" + std::to_string(level);
-  std::string out = "<article class=\"alert " + severity +
-                    (alert.state == AlertState::resolved ? " resolved" : "") + "\" id=\"alert." +
-                    std::to_string(alert.id) + "\">";
-  out += "<" + h + "><span class=\"badge " + severity + "\">" + icon(severity_icon(alert.severity)) +
-         severity + "</span> " + escaped(alert.title) + "</" + h + ">";
-  out += "<p class=\"since\">" + told_since(alert) + "</p>" + paragraphs(alert.text) + state_html(alert);
-  const std::string link = subject_link(input, alert.subject);
-  return out + (link.empty() ? "" : "<p>" + link + "</p>") + "</article>";
+std::string severity_badge_html(Severity severity) {
+  const std::string word = to_string(severity);
+  return "<span class=\"badge " + word + "\">" + icon(severity_icon(severity)) + word + "</span>";
+}
+
+std::string file_badge_html(const std::string& outcome) {
+  const auto badge = [](std::string_view css, std::string_view shape, std::string_view words) {
+    return "<span class=\"badge " + std::string(css) + "\">" + icon(shape) + std::string(words) + "</span>";
+  };
+  if (outcome == "done") return badge("yes", kRoundTick, "taken in");
+  if (outcome == "repeated") return badge("starting", kTwice, "came before");
+  if (outcome == "rejected") return badge("no", kSquareBar, "rejected");
+  if (outcome == kGrownOutcome) return badge("starting", kGrowing, "taken so far");
+  return badge("notyet", kHourglass, "being taken in");
 }
 
 std::string warnings_html(const std::vector<std::string>& warnings) {
@@ -149,16 +124,6 @@ std::string warnings_html(const std::vector<std::string>& warnings) {
   std::string out = "<ul class=\"warnings\">";
   for (const std::string& code : warnings) out += "<li>Note: " + escaped(warning_words(code)) + "</li>";
   return out + "</ul>";
-}
-
-std::string alerts_of_html(const PageInput& input, const Subject& subject) {
-  std::string out;
-  for (const Alert& alert : input.current)
-    if (alert.subject.comparison == subject.comparison && alert.subject.analyzer == subject.analyzer &&
-        alert.subject.standard == subject.standard && alert.subject.measurand == subject.measurand)
-      out += alert_html(input, alert, 3);
-  return out.empty() ? out
-                     : "<section aria-label=\"Current alerts\"><h2>Current alerts</h2>" + out + "</section>";
 }
 
 }  // namespace agreed

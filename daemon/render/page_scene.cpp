@@ -70,6 +70,15 @@ ChartScene chart_scene(const Snapshot& snapshot, ChartIndex index) {
           snapshot.at};
 }
 
+ComparisonScene with_view(const ComparisonScene& scene, const ComparisonView& view) {
+  return {scene.settings, scene.asked, scene.measurand, view, scene.x, scene.y, scene.style, scene.at};
+}
+
+ChartScene with_view(const ChartScene& scene, const ChartView& view) {
+  return {scene.settings, scene.asked,    scene.measurand, view,
+          scene.analyzer, scene.standard, scene.style,     scene.at};
+}
+
 std::string comparison_path(const ComparisonSettings& comparison) {
   return "/comparisons/" + path_segment(comparison.id);
 }

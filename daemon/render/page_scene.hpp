@@ -38,6 +38,10 @@ struct ChartScene {
 [[nodiscard]] ComparisonScene comparison_scene(const Snapshot& snapshot, ComparisonIndex index);
 [[nodiscard]] ChartScene chart_scene(const Snapshot& snapshot, ChartIndex index);
 
+/// The same with another view, which outlives the scene.
+[[nodiscard]] ComparisonScene with_view(const ComparisonScene& scene, const ComparisonView& view);
+[[nodiscard]] ChartScene with_view(const ChartScene& scene, const ChartView& view);
+
 [[nodiscard]] std::string title_or_id(const std::string& title, const std::string& id);
 [[nodiscard]] std::string comparison_path(const ComparisonSettings& comparison);
 [[nodiscard]] std::string chart_path(const Settings& settings, const ChartSettings& chart);

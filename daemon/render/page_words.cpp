@@ -6,11 +6,6 @@
 namespace agreed {
 namespace {
 
-std::string since_words(const std::optional<Instant>& since, Instant now) {
-  if (!since) return {};
-  return "since " + time_words(*since) + (now > *since ? " (" + shown_span(now - *since) + ")" : "");
-}
-
 std::string at_level(const ComparisonScene& scene, double level) {
   return "at " + shortest(level) + (scene.style.unit.empty() ? "" : " " + scene.style.unit);
 }
@@ -84,10 +79,6 @@ std::string not_shown_again(const ComparisonScene& scene) {
   return "the pairs since then neither show it nor the opposite";
 }
 
-bool drifting(const ComparisonView& view) {
-  return view.pair_chart.state == PairChartState::unstable;
-}
-
 void add_more(Answer& answer, const ComparisonScene& scene) {
   const ComparisonView& view = scene.view;
   if (drifting(view))
@@ -100,11 +91,6 @@ void add_more(Answer& answer, const ComparisonScene& scene) {
   const bool said = view.agreement_lost && view.verdict_reason == "restarted_after_change";
   if (!view.verdict_reason.empty() && view.verdict != Verdict::gathering && !said)
     answer.more.push_back(reason_words(view.verdict_reason));
-}
-
-/// Agreement was lost and the verdict says neither that it is back nor, any more, that it is not.
-bool is_lost(const ComparisonView& view) {
-  return view.agreement_lost && (view.verdict == Verdict::inconclusive || view.verdict == Verdict::gathering);
 }
 
 /// An open alert says that agreement is lost: an answer of "not shown" beside it would play that down.
@@ -124,11 +110,6 @@ bool speaks(const LevelView& level) {
   return level.bias && level.allowable && *level.allowable > 0;
 }
 
-/// How much of the allowable difference the bias takes; only of a level that speaks.
-double share_taken(const LevelView& level) {
-  return std::abs(*level.bias) / *level.allowable;
-}
-
 template <class Admit>
 std::optional<std::size_t> largest_share(const ComparisonView& view, Admit&& admit) {
   std::optional<std::size_t> best;
@@ -137,17 +118,6 @@ std::optional<std::size_t> largest_share(const ComparisonView& view, Admit&& adm
     if (!best || share_taken(view.levels[i]) > share_taken(view.levels[*best])) best = i;
   }
   return best;
-}
-
-/// The level that carries the sentence: among those that have the comparison's verdict when it is not good,
-/// else among all.
-std::optional<std::size_t> speaking_level(const ComparisonView& view) {
-  if (view.verdict != Verdict::agreement_shown) {
-    const auto own =
-        largest_share(view, [&](const LevelView& level) { return level.verdict == view.verdict; });
-    if (own) return own;
-  }
-  return foremost_level(view);
 }
 
 /// What the level says now, which the confirmed verdict may not say yet, or no more.
@@ -159,24 +129,33 @@ std::string sentence_of(const ComparisonScene& scene, const LevelView& level) {
   return level.verdict == scene.view.verdict ? words : words + " That is not confirmed yet.";
 }
 
-/// The sentence with the comparison's name in front.
-std::string named(const ComparisonScene& scene, std::string sentence) {
-  if (!sentence.empty() && sentence[0] >= 'A' && sentence[0] <= 'Z')
-    sentence[0] = static_cast<char>(sentence[0] - 'A' + 'a');
-  return scene.name() + ": " + sentence;
-}
-
-std::string several_sentence(const std::vector<std::string>& names, std::size_t of, std::string_view what) {
-  constexpr std::size_t kNamed = 3;
-  std::string out =
-      std::to_string(names.size()) + " of " + std::to_string(of) + " comparisons " + std::string(what) + ": ";
-  for (std::size_t i = 0; i < names.size() && i < kNamed; ++i)
-    out += (i ? ", " : "") + shortened(names[i], 60);
-  if (names.size() > kNamed) out += " and " + std::to_string(names.size() - kNamed) + " more";
-  return out + ".";
-}
-
 }  // namespace
+
+std::string since_words(const std::optional<Instant>& since, Instant now) {
+  if (!since) return {};
+  return "since " + time_words(*since) + (now > *since ? " (" + shown_span(now - *since) + ")" : "");
+}
+
+bool drifting(const ComparisonView& view) {
+  return view.pair_chart.state == PairChartState::unstable;
+}
+
+bool is_lost(const ComparisonView& view) {
+  return view.agreement_lost && (view.verdict == Verdict::inconclusive || view.verdict == Verdict::gathering);
+}
+
+double share_taken(const LevelView& level) {
+  return std::abs(*level.bias) / *level.allowable;
+}
+
+std::optional<std::size_t> speaking_level(const ComparisonView& view) {
+  if (view.verdict != Verdict::agreement_shown) {
+    const auto own =
+        largest_share(view, [&](const LevelView& level) { return level.verdict == view.verdict; });
+    if (own) return own;
+  }
+  return foremost_level(view);
+}
 
 std::optional<std::size_t> foremost_level(const ComparisonView& view) {
   return largest_share(view, [](const LevelView&) { return true; });
@@ -252,95 +231,6 @@ Answer answer_for(const ComparisonScene& scene) {
   return answer;
 }
 
-namespace {
-
-Answer starting_answer(const Snapshot& snapshot) {
-  Answer answer{AnswerKind::starting, "Starting", "starting", {}, {}, snapshot.not_ready};
-  answer.sentence = "The service is reading its journal; the answer follows when that is done.";
-  return answer;
-}
-
-/// What the comparisons of one verdict say together.
-struct Group {
-  std::vector<std::string> names;
-  std::optional<Instant> earliest, latest;
-  double most = -1;      ///< largest share of its allowable difference that a bias takes
-  std::string sentence;  ///< of that comparison
-};
-
-void add_to(Group& group, const ComparisonScene& scene) {
-  group.names.push_back(scene.name());
-  if (const auto since = is_lost(scene.view) ? scene.view.agreement_lost : scene.view.verdict_since) {
-    group.earliest = group.earliest ? std::min(*group.earliest, *since) : *since;
-    group.latest = group.latest ? std::max(*group.latest, *since) : *since;
-  }
-  const auto level = speaking_level(scene.view);
-  const double share = level ? share_taken(scene.view.levels[*level]) : -0.5;
-  if (share <= group.most) return;
-  group.most = share;
-  group.sentence = named(scene, answer_for(scene).sentence);
-}
-
-Answer answer_of_several(const Snapshot& snapshot) {
-  Group yes, no, waiting;
-  bool changing = false, lost = false;
-  const std::size_t count = snapshot.settings->comparisons.size();
-  for (std::uint32_t i = 0; i < count; ++i) {
-    const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{i});
-    const Verdict verdict = scene.view.verdict;
-    add_to(verdict == Verdict::agreement_shown                             ? yes
-           : verdict == Verdict::disagreement_shown || is_lost(scene.view) ? no
-                                                                           : waiting,
-           scene);
-    lost = lost || is_lost(scene.view);
-    changing = changing || drifting(scene.view);
-  }
-  Answer answer;
-  if (!no.names.empty()) {
-    answer = {AnswerKind::no,
-              "No",
-              lost ? "agreement lost" : "disagreement shown",
-              since_words(no.earliest, snapshot.at),
-              no.sentence,
-              {}};
-    answer.more.push_back(
-        several_sentence(no.names, count, lost ? "disagree or have lost agreement" : "disagree"));
-  } else if (waiting.names.empty()) {
-    answer = {AnswerKind::yes,   changing ? "Yes, but changing" : "Yes",
-              "agreement shown", since_words(yes.latest, snapshot.at),
-              yes.sentence,      {}};
-    answer.more.push_back("Agreement is shown in all " + std::to_string(count) + " comparisons.");
-  } else {
-    answer = {AnswerKind::not_yet,
-              yes.names.empty() ? "Not yet" : "Not all",
-              yes.names.empty() ? "not shown yet" : "not shown everywhere",
-              {},
-              waiting.sentence,
-              {}};
-    answer.more.push_back(several_sentence(waiting.names, count, "do not show agreement"));
-  }
-  if (changing) answer.more.push_back("In at least one comparison a change is under way.");
-  return answer;
-}
-
-Answer answer_of_all(const Snapshot& snapshot) {
-  const std::size_t count = snapshot.settings->comparisons.size();
-  if (count == 0)
-    return {AnswerKind::not_yet,
-            "Nothing compared",
-            "no comparison",
-            {},
-            "The configuration names no comparison, so nothing is said about agreement.",
-            {}};
-  if (count > 1) return answer_of_several(snapshot);
-  const ComparisonScene scene = comparison_scene(snapshot, ComparisonIndex{0});
-  Answer answer = answer_for(scene);
-  answer.sentence = named(scene, answer.sentence);
-  return answer;
-}
-
-}  // namespace
-
 std::string budget_words(const AlarmBudget& budget) {
   if (!(budget.expected_per_year > 0)) return {};
   std::string out = "By chance alone " + shown(budget.expected_per_year, 1) +
@@ -352,15 +242,6 @@ std::string budget_words(const AlarmBudget& budget) {
     before = ", ";
   }
   return out + ".";
-}
-
-Answer overall_answer(const Snapshot& snapshot) {
-  if (!snapshot.started || !snapshot.settings) return starting_answer(snapshot);
-  Answer answer = answer_of_all(snapshot);
-  if (!snapshot.ready)
-    for (const std::string& reason : snapshot.not_ready)
-      answer.more.push_back("At present no results are taken in: " + reason);
-  return answer;
 }
 
 }  // namespace agreed

@@ -1,6 +1,6 @@
 """The figures of the service beside their references, measured in one run on one machine.
 
-bench.py [part ...]   parts: intake start pairs webhook status idle backlog large many (default: all)
+bench.py [part ...]   parts: intake start pairs webhook status writer idle backlog large many (default: all)
 """
 import ctypes
 import json
@@ -13,11 +13,12 @@ import sys
 import tempfile
 import threading
 import time
+import urllib.request
 
 ROOT = pathlib.Path(__file__).resolve().parents[2]
 sys.path[:0] = [str(ROOT / "tests" / "e2e"), str(ROOT / "examples")]
 os.environ.setdefault("AGREED", str(ROOT / "build" / "agreed"))
-from harness import Receiver, Site  # noqa: E402
+from harness import Receiver, Site, wait_until  # noqa: E402
 from plant import START, rfc3339  # noqa: E402
 
 STANDARDS = ("wheat-low", "wheat-mid", "wheat-high", "wheat-rye")
@@ -230,31 +231,96 @@ def wrk(url):
     return float(out.split("Requests/sec:")[1].split()[0])
 
 
-def bench_status():
+class BareServer:
+    """The same HTTP library answering with a constant of so many bytes."""
+
+    def __init__(self, size, port=17481):
+        self.url = f"http://127.0.0.1:{port}/"
+        self.process = subprocess.Popen([str(ROOT / "build/tests/bench/bench_bare_server"), str(port), str(size)], stdin=subprocess.PIPE)
+        wait_until(self.answers, "the bare server answers")
+
+    def answers(self):
+        try:
+            return urllib.request.urlopen(self.url, timeout=5).status == 200
+        except OSError:
+            return False
+
+    def close(self):
+        self.process.stdin.close()
+        self.process.wait()
+
+
+def bench_status(rounds=3):
+    """Ours and the bare server in turn, so that a busy moment hits both."""
     site = Site().start()
     try:
         body = site.request("/api/status")[2]
-        ours = wrk(site.base + "/api/status")
-        bare = subprocess.Popen([str(ROOT / "build/tests/bench/bench_bare_server"), "17481", str(len(body))], stdin=subprocess.PIPE)
-        time.sleep(0.5)
-        theirs = wrk("http://127.0.0.1:17481/")
-        bare.stdin.close()
-        bare.wait()
+        bare = BareServer(len(body))
+        pairs = [(wrk(site.base + "/api/status"), wrk(bare.url)) for _ in range(rounds)]
+        bare.close()
+        ours, theirs = (statistics.median(side) for side in zip(*pairs))
+        ratio = statistics.median(a / b for a, b in pairs)
         say(f"/api/status ({len(body)} bytes), 16 connections: {ours:,.0f} requests/s; bare server {theirs:,.0f}; "
-            f"ratio {ours / theirs:.2f} (budget 0.7)")
+            f"ratio {ratio:.2f} (budget 0.7)")
     finally:
         site.close()
 
 
-def bench_idle(seconds=40):
+def intake_beside(rows, url=None):
+    """Seconds for `rows` on a fresh site, while 16 connections ask `url` ("": the site's own status) all the time."""
+    site = Site(config=LARGE).start()
+    load = None
+    try:
+        paths = write_large(site.folder, rows // 2)
+        if url is not None:
+            load = subprocess.Popen(["wrk", "-t1", "-c16", "-d600s", url or site.base + "/api/status"], stdout=subprocess.DEVNULL)
+            time.sleep(0.5)
+        return take_in(site, paths, rows)
+    finally:
+        if load:
+            load.terminate()
+            load.wait()
+        site.close()
+
+
+def bench_writer(rows=100_000, rounds=3):
+    """What readers cost the writer. The reference has the same load beside it, on the bare server: what the processors
+    are busy with is the same, so the difference is what readers and writer have in common."""
+    bare = BareServer(1200)
+    try:
+        alone = statistics.median(intake_beside(rows) for _ in range(rounds))
+        pairs = [(intake_beside(rows, bare.url), intake_beside(rows, "")) for _ in range(rounds)]
+        beside, asked = (statistics.median(side) for side in zip(*pairs))
+        slower = statistics.median(b / a for a, b in pairs) - 1
+        say(f"{rows:,} rows taken in: alone {alone:.2f} s; while 16 connections ask a bare server beside it {beside:.2f} s; while they "
+            f"ask /api/status {asked:.2f} s: slower by {100 * slower:.1f} % (budget 5)")
+    finally:
+        bare.close()
+
+
+def by_thread(site, file, value):
+    """A figure of each of the service's threads, by thread id."""
+    found = {}
+    for thread in pathlib.Path(f"/proc/{site.process.pid}/task").iterdir():
+        found[thread.name] = value((thread / file).read_text())
+    return found
+
+
+def bench_idle(seconds=45):
+    """No client: processor time from the scheduler's nanoseconds; wake-ups are the times that a thread went to sleep."""
     site = Site(rescan="15s").start()
     try:
         time.sleep(5)
-        ticks = lambda: sum(map(int, open(f"/proc/{site.process.pid}/stat").read().rsplit(")", 1)[1].split()[11:13]))
-        before = ticks()
+        spent = lambda: sum(by_thread(site, "schedstat", lambda text: int(text.split()[0])).values())
+        slept = lambda: by_thread(site, "status", lambda text: int(text.split("\nvoluntary_ctxt_switches:")[1].split()[0]))
+        before, asleep = spent(), slept()
         time.sleep(seconds)
-        share = (ticks() - before) / os.sysconf("SC_CLK_TCK") / seconds * 100
-        say(f"idle: {share:.2f} % of one core (budget 0.5); resident {resident_mb(site):.1f} MB")
+        share = (spent() - before) / 1e9 / seconds * 100
+        woken = {thread: count - asleep.get(thread, 0) for thread, count in slept().items()}
+        most = max(woken.values())
+        say(f"idle: {share:.4f} % of one core (budget 0.5); {sum(woken.values())} wake-ups of {len(woken)} threads in {seconds} s with "
+            f"{seconds // 15} rescans of 2 folders, {sum(1 for n in woken.values() if n)} threads woke at all, the busiest {most} times; "
+            f"resident {resident_mb(site):.1f} MB")
     finally:
         site.close()
 
@@ -365,7 +431,7 @@ def bench_many(seconds=60, analyzers=100, measurands=20, rate=5_000, rows=100):
 
 
 if __name__ == "__main__":
-    parts = sys.argv[1:] or ["pairs", "intake", "start", "webhook", "status", "idle", "backlog", "large", "many"]
+    parts = sys.argv[1:] or ["pairs", "intake", "start", "webhook", "status", "writer", "idle", "backlog", "large", "many"]
     say(f"{time.strftime('%Y-%m-%d')}, {os.cpu_count()} cores, "
         + next(l.split(":")[1].strip() for l in open("/proc/cpuinfo") if l.startswith("model name")))
     for part in parts:

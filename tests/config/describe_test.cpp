@@ -81,3 +81,37 @@ TEST_CASE("of a webhook only the place is shown, since its path may be a secret"
   CHECK(has(text, "    kinds                 agreement_lost\n"));
   CHECK_FALSE(has(text, "hidden"));
 }
+
+TEST_CASE("an export format is shown once, with the analyzers that use it and what its columns mean") {
+  const ConfigResult result = parse_config(
+      "site: Harrow Mill\n"
+      "listen: {port: 0}\n"
+      "analyzers: {line1: {inbox: drop/line1, format: run_list}, line2: {inbox: drop/line2, format: "
+      "run_list}}\n"
+      "formats:\n"
+      "  run_list:\n"
+      "    delimiter: tab\n"
+      "    decimal: \",\"\n"
+      "    skip_lines: 1\n"
+      "    files: \"*.txt\"\n"
+      "    time: {columns: [Day, Hour], pattern: \"%d.%m.%Y %H:%M\", zone: Europe/Berlin}\n"
+      "    item: {column: Sample}\n"
+      "    items: {LOW: wheat-low}\n"
+      "    kind: {check_when_item_matches: \"^LOW$\"}\n"
+      "    values: {protein: {column: Reading, factor: 0.1}}\n"
+      "measurands: {protein: {unit: g/100 g}}\n"
+      "check_standards: {wheat-low: {measurands: {protein: {}}}}\n",
+      "/etc/agreed/agreed.yaml");
+  REQUIRE(result.config.has_value());
+  CHECK(has(describe(*result.config),
+            "\nFormats\n"
+            "  run_list                of line1, line2\n"
+            "    syntax                delimited by tab, header row, skips 1 line\n"
+            "    encoding, numbers     utf-8, decimal ','\n"
+            "    files                 '*.txt', whole\n"
+            "    time                  Day, Hour as '%d.%m.%Y %H:%M', zone Europe/Berlin\n"
+            "    item                  Sample (LOW = wheat-low)\n"
+            "    kind                  check where the item matches '^LOW$', else split\n"
+            "    results               protein = Reading x 0.1\n"
+            "\nMeasurands\n"));
+}

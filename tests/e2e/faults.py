@@ -1,4 +1,4 @@
-"""Steers tests/support/faults/faulty_calls.cpp, preloaded into the real service: which call fails, or kills it."""
+"""Steers tests/support/faults, preloaded into the real service: which call fails, or kills it; how far ahead its clock is."""
 import mmap
 import os
 import pathlib
@@ -13,6 +13,17 @@ NAMES = {WRITE: "write", SYNC: "sync", RENAME: "rename", OPEN: "open", CREATE: "
          READ: "read", SEND: "send"}
 
 
+def preloaded():
+    # A sanitizer's run-time library wants to be the first one.
+    asan = os.environ.get("ASAN_OPTIONS", "")
+    return {"LD_PRELOAD": LIBRARY, "ASAN_OPTIONS": ":".join(filter(None, [asan, "verify_asan_link_order=0"]))}
+
+
+def set_clock_ahead(site, seconds):
+    """From the site's next start on."""
+    site.environment = {**site.environment, **preloaded(), "AGREED_CLOCK_AHEAD": str(int(seconds))}
+
+
 class Faults:
     """The shared file of one site. Calls count from `arm` on."""
 
@@ -21,10 +32,7 @@ class Faults:
         file.write_bytes(bytes(256))
         self.file = open(file, "r+b")
         self.memory = mmap.mmap(self.file.fileno(), 256)
-        # A sanitizer's run-time library wants to be the first one.
-        asan = os.environ.get("ASAN_OPTIONS", "")
-        site.environment = {"LD_PRELOAD": LIBRARY, "AGREED_FAULTS": str(file), "AGREED_FAULTS_BELOW": f"{site.folder}/",
-                            "ASAN_OPTIONS": ":".join(filter(None, [asan, "verify_asan_link_order=0"]))}
+        site.environment = {**preloaded(), "AGREED_FAULTS": str(file), "AGREED_FAULTS_BELOW": f"{site.folder}/"}
 
     def arm(self, kinds, action, target=0, error=0):
         struct.pack_into("<I", self.memory, 0, 0)

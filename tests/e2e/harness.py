@@ -1,7 +1,5 @@
 """Starts the real service with real folders, a real webhook receiver and real signals. Standard library only."""
 import base64
-import hashlib
-import hmac
 import http.client
 import http.server
 import json
@@ -15,8 +13,8 @@ import tempfile
 import threading
 import time
 import unittest
-import urllib.error
-import urllib.request
+
+from signed import verifies
 
 sys.path.insert(0, str(pathlib.Path(__file__).resolve().parents[2] / "examples"))
 
@@ -76,11 +74,7 @@ class Receiver:
         self.thread.start()
 
     def verify(self, headers, body):
-        """The published rule of Standard Webhooks 1.0.0, written independently of the service."""
-        key = base64.b64decode(self.secret[len("whsec_"):])
-        signed = f"{headers['webhook-id']}.{headers['webhook-timestamp']}.".encode() + body
-        expected = "v1," + base64.b64encode(hmac.new(key, signed, hashlib.sha256).digest()).decode()
-        return expected in headers["webhook-signature"].split(" ")
+        return verifies(self.secret, headers, body)
 
     def events(self, kind=None, type_=None):
         with self.lock:

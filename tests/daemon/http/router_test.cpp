@@ -67,10 +67,11 @@ struct House {
                  }},
                 {[](const FileQuery&) { return std::vector<FileRow>(1); },
                  [](const ReadingQuery&) { return std::vector<ReadingRow>(1); }},
-                [](const std::string& path, const std::string& query) -> std::optional<Page> {
-                  if (path == "/") return Page{200, "text/html; charset=utf-8", "<title>Harrow Mill</title>"};
-                  if (path == "/charts/line1/wheat-low/protein")
-                    return Page{200, "text/html", "chart " + query};
+                [](const PageAsk& ask) -> std::optional<Page> {
+                  if (ask.path == "/")
+                    return Page{200, "text/html; charset=utf-8", "<title>Harrow Mill</title>"};
+                  if (ask.path == "/charts/line1/wheat-low/protein")
+                    return Page{200, "text/html", "chart " + ask.query};
                   return std::nullopt;
                 },
                 reads_need_token,

@@ -17,7 +17,8 @@ TEST_CASE("an answer comes in one piece with the headers that protect it, and th
     const std::string answer = client.read_answer();
     CHECK(status_of(answer) == 200);
     CHECK(body_of(answer) == "/a []");
-    CHECK(header_of(answer, "Content-Security-Policy") == "default-src 'self'");
+    CHECK(header_of(answer, "Content-Security-Policy") ==
+          "default-src 'self'; base-uri 'none'; form-action 'self'; frame-ancestors 'none'");
     CHECK(header_of(answer, "X-Content-Type-Options") == "nosniff");
     CHECK(header_of(answer, "Referrer-Policy") == "no-referrer");
     CHECK(header_of(answer, "Cache-Control") == "no-cache");
@@ -251,4 +252,10 @@ TEST_CASE("header values cannot bring in fields of their own") {
   CHECK(body_of(answer) == "/a []");
   CHECK(answer.find("Set-Cookie") == std::string::npos);
   CHECK(header_of(answer, "Content-Encoding").empty());
+}
+
+TEST_CASE("percent escapes in header values stay as they were sent") {
+  Running running;
+  const std::string answer = running.ask(get("/a", "Authorization: Bearer a%41%0d%0aSet-Cookie: b=c\r\n"));
+  CHECK(body_of(answer) == "/a []Bearer a%41%0d%0aSet-Cookie: b=c");
 }

@@ -1,6 +1,7 @@
 // The life of a batch: all or nothing, and the same after the journal is opened again.
 #include <algorithm>
 
+#include <SQLiteCpp/SQLiteCpp.h>
 #include <doctest/doctest.h>
 
 #include "scratch.hpp"
@@ -230,4 +231,25 @@ TEST_CASE("the log is written back between batches, so that it does not grow wit
   }
   CHECK(longest < 20'000'000);
   CHECK(std::filesystem::file_size(folder.database()) > 40'000'000);
+}
+
+TEST_CASE("a reader without end keeps the log from being written back, and that is told") {
+  const ScratchFolder folder;
+  Journal journal(folder.path());
+  const std::string body(5'000'000, 'x');
+  const auto add = [&] {
+    journal.begin(at(0));
+    journal.add_finding(at(0), "check_standard_unstable", "{}", body);
+    journal.commit();
+    journal.write_back(false);
+  };
+  add();
+  SQLite::Database other(folder.database().string());
+  other.exec("BEGIN");
+  CHECK(other.execAndGet("SELECT count(*) FROM findings").getInt() == 1);
+  for (int i = 0; i < 30; ++i) add();
+  CHECK(journal.overlong_log_bytes().value_or(0) > 130'000'000);
+  other.exec("COMMIT");
+  for (int i = 0; i < 6; ++i) add();
+  CHECK_FALSE(journal.overlong_log_bytes().has_value());
 }

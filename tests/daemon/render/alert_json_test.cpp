@@ -110,8 +110,8 @@ TEST_CASE("the link leads to the chart, the comparison, or the alert itself") {
   };
   CHECK(url({"line1", "wheat-low", "protein", "", ""}) == "http://mill:7480/charts/line1/wheat-low/protein");
   CHECK(url({"", "", "", "protein", ""}) == "http://mill:7480/comparisons/protein");
-  CHECK(url({"line1", "", "", "", ""}) == "http://mill:7480/alerts#9");
-  CHECK(url({"", "", "", "", "agreed"}) == "http://mill:7480/alerts#9");
+  CHECK(url({"line1", "", "", "", ""}) == "http://mill:7480/alerts/9");
+  CHECK(url({"", "", "", "", "agreed"}) == "http://mill:7480/alerts/9");
 }
 
 TEST_CASE("neither a number that is not finite nor a broken character makes broken JSON") {

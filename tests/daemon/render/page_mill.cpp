@@ -1,5 +1,6 @@
 #include "tests/daemon/render/page_mill.hpp"
 
+#include "daemon/render/alert_json.hpp"
 #include "tests/daemon/render/page_plant.hpp"
 
 namespace agreed::mill {
@@ -45,6 +46,20 @@ Story drifting() {
   out.snapshot.alerts_acknowledged = 1;
   out.snapshot.alerts_critical = 1;
   out.snapshot.alerts_of_comparison["protein"] = 1;
+  for (const char* outcome : {"done", "rejected", "repeated", "grown", ""}) {
+    FileRow file;
+    file.id = static_cast<std::int64_t>(out.files.size()) + 8;
+    file.analyzer = "line1";
+    file.name = "shift-000" + std::to_string(file.id) + ".csv";
+    file.outcome = outcome;
+    file.received_at = at - hours(file.id);
+    file.accepted = 12;
+    out.files.push_back(file);
+  }
+  out.files[1].reason = "value: \"abc\" is no result";
+  out.files[1].accepted = 0;
+  out.files[1].rejected = 1;
+  out.files[1].rejected_rows = {{9, 2, 5, "check,protein,abc", out.files[1].reason}};
   return out;
 }
 
@@ -127,7 +142,49 @@ Story hostile(const std::string& text) {
   resolved.resolved_reason = text;
   out.resolved = {resolved};
   out.snapshot.not_ready = {text};
+  for (FileRow& file : out.files) {
+    file.name = file.reason = file.analyzer = text;
+    for (RejectedRow& row : file.rejected_rows) row.text = row.reason = text;
+  }
   return out;
+}
+
+namespace {
+
+AlertRecord record_of(const Alert& alert) {
+  AlertRecord record{alert_json(alert, "http://mill:7480"), {}, {}};
+  record.history = {{alert.id, alert.opened_at, "opened", record.body}};
+  if (alert.acknowledged)
+    record.history.push_back({alert.id, alert.acknowledged->at, "acknowledged", record.body});
+  DeliveryRow delivery;
+  delivery.message = "msg_1";
+  delivery.route = "shift-leader";
+  delivery.type = "agreed.alert.opened";
+  delivery.state = "waiting";
+  delivery.created_at = alert.opened_at;
+  delivery.next_try_at = alert.opened_at + hours(1);
+  delivery.tries = 3;
+  delivery.last_status = 503;
+  record.deliveries = {delivery};
+  return record;
+}
+
+}  // namespace
+
+std::optional<PageAnswer> ask(const Story& story, const std::string& path,
+                              const std::map<std::string, std::string>& parameters, Duration late,
+                              const PageVisitor& visitor) {
+  PageInput input{story.snapshot, story.current, story.snapshot.at + late, "9.8.7", visitor, path, {}};
+  AlertList list{{}, "open,acknowledged,resolved", "", "12"};
+  for (const auto* alerts : {&story.current, &story.resolved})
+    for (const Alert& alert : *alerts) {
+      list.records.push_back(record_of(alert));
+      if (path == "/alerts/" + std::to_string(alert.id)) return render_alert(input, list.records.back());
+    }
+  if (path == "/alerts") return render_alerts(input, list);
+  if (path == "/files") return render_files(input, {story.files, "", "", "", "7"});
+  if (path == "/sign-in") return render_sign_in(input, "/alerts");
+  return render_page(path, parameters, input);
 }
 
 }  // namespace agreed::mill

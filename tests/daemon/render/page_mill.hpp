@@ -1,17 +1,21 @@
 #pragma once
 // Invented snapshots of Harrow Mill for the tests of the page and its preview. The figures are drawn from a
 // seeded generator and worked out by simple means; they look right and prove nothing.
+#include <map>
+#include <optional>
 #include <string>
 #include <vector>
 
 #include "core/alert/alert.hpp"
 #include "daemon/engine/snapshot.hpp"
+#include "daemon/render/page.hpp"
 
 namespace agreed::mill {
 
 struct Story {
   Snapshot snapshot;
   std::vector<Alert> current, resolved;
+  std::vector<FileRow> files;
 };
 
 [[nodiscard]] Story agreeing();
@@ -26,5 +30,11 @@ struct Story {
 [[nodiscard]] Story many(int count);
 /// Every text that others write carries markup.
 [[nodiscard]] Story hostile(const std::string& text);
+
+/// What the page answers to GET of `path` `late` after the snapshot was made, to whoever `visitor` is: of the
+/// version 9.8.7, the alerts and files from the story.
+[[nodiscard]] std::optional<PageAnswer> ask(const Story& story, const std::string& path,
+                                            const std::map<std::string, std::string>& parameters = {},
+                                            Duration late = {}, const PageVisitor& visitor = {});
 
 }  // namespace agreed::mill

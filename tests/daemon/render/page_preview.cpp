@@ -11,8 +11,7 @@ namespace {
 
 void write(const std::filesystem::path& file, const agreed::mill::Story& story, const std::string& path,
            agreed::Duration late = {}) {
-  const auto answer = agreed::render_page(path, {}, story.snapshot, story.current, story.resolved,
-                                          story.snapshot.at + late, "preview");
+  const auto answer = agreed::mill::ask(story, path, {}, late);
   if (!answer) {
     std::fprintf(stderr, "no page for %s\n", path.c_str());
     return;
