@@ -64,6 +64,7 @@ std::variant<Row, FieldFault> InterventionReader::read(const ToldIntervention& t
                                   [&](const Analyzer& analyzer) { return analyzer.id == told.analyzer; });
   if (found == analyzers.end()) {
     std::vector<std::string_view> known;
+    known.reserve(analyzers.size());
     for (const Analyzer& analyzer : analyzers) known.emplace_back(analyzer.id);
     return FieldFault{"analyzer",
                       in_quotes(told.analyzer) + " is not known; " + known_hint(told.analyzer, known)};
