@@ -328,6 +328,13 @@ bool Monitor::concerns(const Intervention& intervention, const ComparisonSetting
          (!intervention.measurand || *intervention.measurand == comparison.measurand);
 }
 
+bool Monitor::lacks_partner(ComparisonIndex index, const SplitReading& result) const {
+  const ComparisonSettings& of = settings_->of(index);
+  const SampleRows* rows = comparisons_.at(index.value).memory.find(result.sample);
+  return rows != nullptr &&
+         agreed::lacks_partner(*rows, result.analyzer == of.x, result.measured_at, of.pair_within);
+}
+
 std::optional<ChartIndex> Monitor::find_chart(AnalyzerIndex analyzer, StandardIndex standard,
                                               MeasurandIndex measurand) const {
   const auto key = std::tie(analyzer, standard, measurand);

@@ -72,6 +72,9 @@ class Monitor {
   [[nodiscard]] std::int64_t waiting(ComparisonIndex index) const {
     return comparisons_.at(index.value).memory.waiting();
   }
+  /// Whether the half that this result belongs to has no partner in the comparison. False for a result that
+  /// was taken back, or of a sample so long ago that it is not remembered.
+  [[nodiscard]] bool lacks_partner(ComparisonIndex index, const SplitReading& result) const;
   [[nodiscard]] std::optional<ChartIndex> find_chart(AnalyzerIndex analyzer, StandardIndex standard,
                                                      MeasurandIndex measurand) const;
 

@@ -49,6 +49,24 @@ Duration distance(Instant a, Instant b) {
   return a < b ? b - a : a - b;
 }
 
+/// Nearest in time first; no half twice.
+std::vector<Match> matches_of(const std::vector<Half>& xs, const std::vector<Half>& ys, Duration within) {
+  std::vector<Match> possible;
+  for (std::size_t i = 0; i < xs.size(); ++i)
+    for (std::size_t j = 0; j < ys.size(); ++j)
+      if (const auto apart = distance(xs[i].first, ys[j].first); apart <= within)
+        possible.push_back({apart, std::max(xs[i].first, ys[j].first), i, j});
+  std::sort(possible.begin(), possible.end());
+  std::vector<bool> x_taken(xs.size()), y_taken(ys.size());
+  std::vector<Match> matches;
+  for (const Match& match : possible) {
+    if (x_taken[match.x] || y_taken[match.y]) continue;
+    x_taken[match.x] = y_taken[match.y] = true;
+    matches.push_back(match);
+  }
+  return matches;
+}
+
 Instant newest_of(const SampleRows& rows) {
   Instant newest{Duration::min()};
   if (!rows.x.empty()) newest = std::max(newest, rows.x.back().at);
@@ -68,21 +86,22 @@ void SampleRows::add(bool to_x, const SideRow& row) {
 
 std::vector<Pair> pairs_of(const std::string& sample, const SampleRows& rows, Duration within) {
   const auto xs = halves_of(rows.x, within), ys = halves_of(rows.y, within);
-  std::vector<Match> matches;
-  for (std::size_t i = 0; i < xs.size(); ++i)
-    for (std::size_t j = 0; j < ys.size(); ++j)
-      if (const auto apart = distance(xs[i].first, ys[j].first); apart <= within)
-        matches.push_back({apart, std::max(xs[i].first, ys[j].first), i, j});
-  std::sort(matches.begin(), matches.end());
-  std::vector<bool> x_taken(xs.size()), y_taken(ys.size());
   std::vector<Pair> pairs;
-  for (const Match& match : matches) {
-    if (x_taken[match.x] || y_taken[match.y]) continue;
-    x_taken[match.x] = y_taken[match.y] = true;
+  for (const Match& match : matches_of(xs, ys, within))
     pairs.push_back(pair_of(sample, xs[match.x], ys[match.y]));
-  }
   std::sort(pairs.begin(), pairs.end(), [](const Pair& a, const Pair& b) { return a.at < b.at; });
   return pairs;
+}
+
+bool lacks_partner(const SampleRows& rows, bool on_x, Instant at, Duration within) {
+  const auto& side = on_x ? rows.x : rows.y;
+  if (std::none_of(side.begin(), side.end(), [&](const SideRow& row) { return row.at == at; })) return false;
+  const auto xs = halves_of(rows.x, within), ys = halves_of(rows.y, within);
+  const auto matches = matches_of(xs, ys, within);
+  return std::none_of(matches.begin(), matches.end(), [&](const Match& match) {
+    const Instant first = on_x ? xs[match.x].first : ys[match.y].first;
+    return first <= at && at - first <= within;
+  });
 }
 
 const SampleRows* SampleMemory::find(const std::string& sample) const {

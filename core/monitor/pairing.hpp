@@ -34,6 +34,10 @@ struct SampleRows {
 /// The pairs of one sample, by time.
 [[nodiscard]] std::vector<Pair> pairs_of(const std::string& sample, const SampleRows& rows, Duration within);
 
+/// Whether the half that a row measured at `at` on one side belongs to is without a partner; false when there
+/// is no such row (it was taken back).
+[[nodiscard]] bool lacks_partner(const SampleRows& rows, bool on_x, Instant at, Duration within);
+
 /// The samples a comparison saw last, so that a half finds its partner and a late replicate its pair.
 /// Bounded: the oldest are forgotten, and `may_have_forgotten` says when the journal must be asked.
 class SampleMemory {

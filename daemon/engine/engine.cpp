@@ -40,6 +40,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       alert_policy_(config.alert_policy),
       state_folder_(config.state),
       least_free_mb_(config.least_free_mb),
+      interventions_(settings_, config.intake),
       config_sha256_(sha256_hex(config.text)),
       config_text_(config.text),
       queue_(settings_->analyzers.size()),
@@ -47,7 +48,8 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       monitor_(settings_),
       ledger_(settings_),
       censored_(settings_->charts.size()),
-      arrivals_(*settings_, now_utc()) {
+      arrivals_(*settings_, now_utc()),
+      lonely_(*settings_) {
   for (const IntakeSettings& intake : config.intake) inboxes_.push_back(intake.inbox);
   next_.started_at = now_utc();
   next_.config_sha256 = config_sha256_;
@@ -94,11 +96,16 @@ std::shared_ptr<const Snapshot> Engine::snapshot() const {
 
 std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> inside,
                                    std::function<void(const AskAnswer&)> after) {
-  auto promise = std::make_shared<std::promise<AskAnswer>>();
   auto answer = std::make_shared<AskAnswer>();
-  auto future = promise->get_future();
   Task task;
   task.inside = [inside = std::move(inside), answer](Instant now) { inside(*answer, now); };
+  return answered(std::move(task), std::move(answer), std::move(after));
+}
+
+std::future<AskAnswer> Engine::answered(Task task, std::shared_ptr<AskAnswer> answer,
+                                        std::function<void(const AskAnswer&)> after) {
+  auto promise = std::make_shared<std::promise<AskAnswer>>();
+  auto future = promise->get_future();
   task.after = [promise, answer, after = std::move(after)](const std::string& failure) {
     if (!failure.empty()) *answer = {AskOutcome::unavailable, failure};
     after(*answer);
@@ -126,6 +133,35 @@ std::future<AskAnswer> Engine::resend(std::string message) {
              [this](const AskAnswer& answer) {
                if (answer.outcome == AskOutcome::done) resume_sender_(answer.words);
              });
+}
+
+std::future<AskAnswer> Engine::intervene(ToldIntervention told) {
+  auto read = interventions_.read(told, now_utc());
+  if (const auto* fault = std::get_if<FieldFault>(&read)) {
+    std::promise<AskAnswer> at_once;
+    at_once.set_value({AskOutcome::not_usable, fault->reason, std::string(fault->field)});
+    return at_once.get_future();
+  }
+  auto answer = std::make_shared<AskAnswer>();
+  Task task;
+  task.take_in = [this, row = std::get<Row>(std::move(read)), answer](TakenIn& taken) {
+    *answer = take_told(row, taken);
+  };
+  return answered(std::move(task), std::move(answer), [](const AskAnswer&) {});
+}
+
+AskAnswer Engine::take_told(const Row& row, TakenIn& taken) {
+  KeptIntervention kept = ledger_.take_told(row, *journal_, taken);
+  AskAnswer answer;
+  if (!kept.is_new) {
+    const JournalIntervention& stands = kept.stored;
+    answer.outcome = AskOutcome::done_before;
+    if (stands.by != row.by || stands.note != row.note)
+      return {AskOutcome::not_possible, "The same intervention is known already, told by \"" + stands.by +
+                                            "\" with the note \"" + stands.note + "\", and stands."};
+  }
+  answer.intervention = std::move(kept.stored);
+  return answer;
 }
 
 AskAnswer Engine::send_again(const std::string& message, Instant now) {
@@ -234,14 +270,19 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
           [&queued, error = std::current_exception()] { queued.answer.set_exception(error); });
     }
   }
+  for (const Task& task : work.tasks)
+    if (task.take_in) task.take_in(taken);
   note_arrivals(taken, now);
   MonitorOutcome outcome = conclude(std::move(taken.events), taken.findings, now);
   for (const ComparisonIndex comparison : outcome.comparisons_paired) arrivals_.add_pair(comparison, now);
+  lonely_.settle(lacks_partner());
   for (const ChartIndex chart : charts_to_recount(taken)) {
     count_censored(chart);
     outcome.charts_changed.insert(chart);
   }
-  for (const Task& task : work.tasks) task.inside(now);
+  for (const Task& task : work.tasks)
+    if (task.inside) task.inside(now);
+  tell_lonely(now);
   watch(now);
   journal_->commit();
   for (const QueuedPiece& queued : work.pieces)
@@ -288,6 +329,7 @@ void Engine::record(const Finding& finding) {
 void Engine::note_arrivals(const TakenIn& taken, Instant now) {
   for (const Event& event : taken.events) {
     arrivals_.add(event, now);
+    if (const auto* split = std::get_if<SplitReading>(&event)) lonely_.add(*split, now);
     if (const auto* intervention = std::get_if<Intervention>(&event)) book_->hold(*intervention);
   }
   for (const CheckReading& reading : taken.censored) arrivals_.add(reading, now);
@@ -315,6 +357,35 @@ void Engine::watch(Instant now) {
   tell(book_->tick(now), now);
   tell_unacknowledged(now);
   beat(now);
+}
+
+LonelyHalves::LacksPartner Engine::lacks_partner() const {
+  return [this](ComparisonIndex comparison, const SplitReading& result) {
+    return monitor_.lacks_partner(comparison, result);
+  };
+}
+
+void Engine::tell_lonely(Instant now) {
+  for (const Finding& finding : lonely_.due(now, lacks_partner())) {
+    record(finding);
+    tell(book_->apply(finding, now), now);
+  }
+}
+
+void Engine::remember_lonely() {
+  lonely_.clear();
+  const auto last_commit = journal_->last_commit();
+  if (!last_commit) return;
+  Duration longest{};
+  for (const ComparisonSettings& comparison : settings_->comparisons)
+    longest = std::max(longest, comparison.pair_within);
+  JournalHistory(*journal_, *settings_)
+      .each_split_received(
+          *last_commit - longest - kIdle,
+          [this](const SplitReading& result, Instant received) { lonely_.add(result, received); });
+  lonely_.settle(lacks_partner());
+  // Every batch tells of those that are due: these were told of then.
+  (void)lonely_.due(*last_commit, lacks_partner());
 }
 
 void Engine::tell_unacknowledged(Instant now) {
@@ -431,6 +502,7 @@ void Engine::fold_from_journal(Instant now) {
   for (const Intervention& intervention : JournalHistory(*journal_, *settings_).interventions())
     if (intervention.at + alert_policy_.hold > now) book_->hold(intervention);
   const MonitorOutcome outcome = fold_all();
+  remember_lonely();
   if (journal_->totals().readings_censored > 0)
     for (std::uint32_t i = 0; i < settings_->charts.size(); ++i) count_censored({i});
   journal_->begin(now);
@@ -438,6 +510,7 @@ void Engine::fold_from_journal(Instant now) {
   if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
   // Of all subjects: what is no longer configured holds no longer.
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
+  tell_lonely(now);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   journal_->release_memory();

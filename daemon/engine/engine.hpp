@@ -12,6 +12,7 @@
 
 #include "config/config.hpp"
 #include "core/alert/alert_book.hpp"
+#include "core/alert/lonely_halves.hpp"
 #include "core/monitor/monitor.hpp"
 #include "daemon/engine/file_ledger.hpp"
 #include "daemon/engine/service.hpp"
@@ -46,6 +47,7 @@ class Engine final : public IntakeSink, public Service {
   [[nodiscard]] std::filesystem::path state() const override { return state_folder_; }
   std::future<AskAnswer> acknowledge(std::int64_t alert, std::string by, std::string note) override;
   std::future<AskAnswer> resend(std::string message) override;
+  std::future<AskAnswer> intervene(ToldIntervention told) override;
   /// Journals a try to deliver a message; the future throws if it could not be committed.
   std::future<void> record(DeliveryTry attempt);
 
@@ -54,6 +56,10 @@ class Engine final : public IntakeSink, public Service {
   std::future<AskAnswer> ask(
       std::function<void(AskAnswer&, Instant now)> inside,
       std::function<void(const AskAnswer&)> after = [](const AskAnswer&) {});
+  /// Puts `task` into the queue; `answer`, which it fills, is given when its batch is through.
+  std::future<AskAnswer> answered(Task task, std::shared_ptr<AskAnswer> answer,
+                                  std::function<void(const AskAnswer&)> after);
+  [[nodiscard]] AskAnswer take_told(const Row& row, TakenIn& taken);
   [[nodiscard]] AskAnswer send_again(const std::string& message, Instant now);
   void run() noexcept;
   void turn(Work work);
@@ -75,6 +81,11 @@ class Engine final : public IntakeSink, public Service {
   void record(const Finding& finding);
   void note_arrivals(const TakenIn& taken, Instant now);
   void watch(Instant now);
+  /// Halves of split samples whose partner did not come in time.
+  void tell_lonely(Instant now);
+  /// Those that the journal has, but not what was told of before its last commit.
+  void remember_lonely();
+  [[nodiscard]] LonelyHalves::LacksPartner lacks_partner() const;
   /// Routes that hear only of what nobody acknowledged in time.
   void tell_unacknowledged(Instant now);
   /// Signs of life to the routes that asked for them.
@@ -99,6 +110,7 @@ class Engine final : public IntakeSink, public Service {
   const std::filesystem::path state_folder_;
   const std::optional<double> least_free_mb_;
   std::vector<std::filesystem::path> inboxes_;
+  const InterventionReader interventions_;
   const std::string config_sha256_;
   const std::string config_text_;
   std::string base_url_;
@@ -110,6 +122,7 @@ class Engine final : public IntakeSink, public Service {
   FileLedger ledger_;
   std::vector<std::int64_t> censored_;  ///< results of each chart that it leaves out
   Arrivals arrivals_;
+  LonelyHalves lonely_;
   Instant watched_at_{};
   /// What was told so far of alerts that nobody acknowledged: alert, its opening, route.
   std::set<std::tuple<std::int64_t, Instant, std::size_t>> escalated_;

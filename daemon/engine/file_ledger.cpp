@@ -157,6 +157,16 @@ void FileLedger::take_void(const Row& row, OpenFile& file, const Hands& hands) {
 
 void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& hands) {
   ++file.good;
+  keep(row, intervention_of(row), file.id, hands.journal, hands.taken);
+}
+
+KeptIntervention FileLedger::take_told(const Row& row, Journal& journal, TakenIn& taken) const {
+  const JournalIntervention told = intervention_of(row);
+  const bool is_new = keep(row, told, 0, journal, taken);
+  return {journal.find_intervention(told).value(), is_new};
+}
+
+JournalIntervention FileLedger::intervention_of(const Row& row) const {
   JournalIntervention stored;
   stored.analyzer = settings_->of(row.analyzer).id;
   if (row.standard) stored.standard = settings_->of(*row.standard).id;
@@ -165,9 +175,15 @@ void FileLedger::take_intervention(const Row& row, OpenFile& file, const Hands& 
   stored.by = row.by;
   stored.note = row.note;
   stored.at = row.measured_at;
-  if (!hands.journal.add_intervention(file.id, stored)) return;
-  hands.taken.events.emplace_back(
+  return stored;
+}
+
+bool FileLedger::keep(const Row& row, const JournalIntervention& stored, std::int64_t file, Journal& journal,
+                      TakenIn& taken) {
+  if (!journal.add_intervention(file, stored)) return false;
+  taken.events.emplace_back(
       Intervention{row.measured_at, row.analyzer, row.standard, row.measurand, row.intervention, row.note});
+  return true;
 }
 
 bool FileLedger::reject(OpenFile& file, const BadRow& bad, const Hands& hands) {

@@ -33,6 +33,12 @@ struct TakenIn {
   std::vector<CheckReading> taken_back;  ///< whose check standards a void concerned
 };
 
+/// An intervention as it stands in the journal.
+struct KeptIntervention {
+  JournalIntervention stored;
+  bool is_new = false;  ///< else one was known under its key, and stands
+};
+
 class FileLedger {
  public:
   explicit FileLedger(std::shared_ptr<const Settings> settings) : settings_(std::move(settings)) {}
@@ -40,6 +46,10 @@ class FileLedger {
   /// Writes one piece within the open batch and adds what came of it to `taken`; the monitor hears what was
   /// taken back. Throws JournalError and PieceOutOfOrder.
   PieceAnswer take(const FilePiece& piece, Instant now, Journal& journal, Monitor& monitor, TakenIn& taken);
+
+  /// Writes an intervention that came by no file within the open batch, with the same effect on `taken` as
+  /// from a file. Throws JournalError.
+  [[nodiscard]] KeptIntervention take_told(const Row& row, Journal& journal, TakenIn& taken) const;
 
   /// Forgets every file that was begun and not finished (after a failed batch).
   void forget() { open_.clear(); }
@@ -71,6 +81,10 @@ class FileLedger {
   void take_reading(const Row& row, OpenFile& file, const Hands& hands);
   void take_void(const Row& row, OpenFile& file, const Hands& hands);
   void take_intervention(const Row& row, OpenFile& file, const Hands& hands);
+  /// False if it was known. `file` 0: it came by none.
+  static bool keep(const Row& row, const JournalIntervention& stored, std::int64_t file, Journal& journal,
+                   TakenIn& taken);
+  [[nodiscard]] JournalIntervention intervention_of(const Row& row) const;
   /// False if the row was rejected and told of before the reading of its file was interrupted.
   static bool reject(OpenFile& file, const BadRow& bad, const Hands& hands);
   PieceAnswer finish(const FilePiece& piece, const OpenFile& file, const Hands& hands) const;

@@ -69,6 +69,16 @@ std::vector<SplitReading> JournalHistory::splits(ComparisonIndex comparison) {
   return rows;
 }
 
+void JournalHistory::each_split_received(Instant since,
+                                         const std::function<void(const SplitReading&, Instant)>& take) {
+  journal_.each_split_received(since, [&](std::string_view analyzer, std::string_view measurand,
+                                          std::string_view sample, Instant at, Instant received) {
+    const auto of = find_id<AnalyzerIndex>(settings_.analyzers, std::string(analyzer));
+    const auto what = find_id<MeasurandIndex>(settings_.measurands, std::string(measurand));
+    if (of && what) take({at, *of, std::string(sample), *what, 0, 0}, received);
+  });
+}
+
 std::vector<SplitReading> JournalHistory::splits_of(ComparisonIndex comparison, std::string_view sample) {
   const ComparisonSettings& of = settings_.of(comparison);
   std::vector<SplitReading> rows;

@@ -1,5 +1,6 @@
 #pragma once
 // The monitor's view of the past, read from the journal.
+#include <functional>
 #include <memory>
 
 #include "core/base/settings.hpp"
@@ -17,6 +18,10 @@ class JournalHistory final : public History {
   std::vector<SplitReading> splits(ComparisonIndex comparison) override;
   std::vector<SplitReading> splits_of(ComparisonIndex comparison, std::string_view sample) override;
   std::vector<Intervention> interventions() override;
+
+  /// Gives each result of a split sample taken in after `since`, and when it was; without its value.
+  void each_split_received(Instant since,
+                           const std::function<void(const SplitReading&, Instant received)>& take);
 
  private:
   Journal& journal_;

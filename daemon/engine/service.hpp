@@ -8,14 +8,17 @@
 
 #include "core/base/event.hpp"
 #include "daemon/engine/snapshot.hpp"
+#include "daemon/intake/told_intervention.hpp"
 
 namespace agreed {
 
-enum class AskOutcome { done, not_found, not_possible, unavailable };
+enum class AskOutcome { done, done_before, not_usable, not_found, not_possible, unavailable };
 
 struct AskAnswer {
   AskOutcome outcome = AskOutcome::done;
-  std::string words;  ///< why not; of what was done, see there
+  std::string words{};                                ///< why not; of what was done, see there
+  std::string field{};                                ///< of what was asked, which part is not usable
+  std::optional<JournalIntervention> intervention{};  ///< as it is stored
 };
 
 class Service {
@@ -30,6 +33,10 @@ class Service {
   /// name its route. Answered after COMMIT. Unknown message: not_found; it waits anyway, or its route is not
   /// configured any more: not_possible.
   virtual std::future<AskAnswer> resend(std::string message) = 0;
+  /// Takes an intervention in as from a file; answered after COMMIT, when the snapshot shows its effect. A
+  /// field that a file could not have: not_usable. It is known with the same `by` and `note`: done_before;
+  /// with others: not_possible.
+  virtual std::future<AskAnswer> intervene(ToldIntervention told) = 0;
 };
 
 }  // namespace agreed

@@ -22,10 +22,14 @@ struct QueuedPiece {
   std::promise<PieceAnswer> answer;
 };
 
-/// Something done inside a batch; `after` hears whether it was committed (nothing) or why not.
+struct TakenIn;
+
+/// Something done inside a batch; `after` hears whether it was committed (nothing) or why not. Each may be
+/// empty.
 struct Task {
-  std::function<void(Instant now)> inside;
-  std::function<void(const std::string& failure)> after;
+  std::function<void(Instant now)> inside{};
+  std::function<void(const std::string& failure)> after{};
+  std::function<void(TakenIn& taken)> take_in{};  ///< beside the pieces, before they are concluded upon
 };
 
 struct Work {

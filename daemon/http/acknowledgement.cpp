@@ -1,12 +1,16 @@
 #include "daemon/http/acknowledgement.hpp"
 
+#include <array>
+#include <string_view>
+
 #include <nlohmann/json.hpp>
+
+#include "daemon/http/text_fields.hpp"
 
 namespace agreed {
 namespace {
 
 constexpr std::size_t kLongestBy = 100, kLongestNote = 1000;
-constexpr int kDeepest = 2;
 
 AcknowledgeBody wrong(const std::string& what) {
   return {"", "", what + R"( Expected: {"by": "who", "note": "what was found or done"}.)"};
@@ -15,19 +19,10 @@ AcknowledgeBody wrong(const std::string& what) {
 }  // namespace
 
 AcknowledgeBody read_acknowledge(const std::string& body) {
-  bool too_deep = false;
-  const auto watch = [&](int depth, nlohmann::json::parse_event_t, nlohmann::json&) {
-    too_deep = too_deep || depth > kDeepest;
-    return !too_deep;
-  };
-  const nlohmann::json json = nlohmann::json::parse(body, watch, false);
-  if (too_deep || !json.is_object()) return wrong("The body is not a JSON object.");
-  AcknowledgeBody read;
-  for (const auto& [name, value] : json.items()) {
-    if (name != "by" && name != "note") return wrong("The body has a field other than by and note.");
-    if (!value.is_string()) return wrong("The field " + name + " is not text.");
-    (name == "by" ? read.by : read.note) = value.get<std::string>();
-  }
+  constexpr std::array<std::string_view, 2> fields = {"by", "note"};
+  const TextFields given = read_text_fields(body, fields);
+  if (!given.error.empty()) return wrong(given.error);
+  AcknowledgeBody read{given["by"], given["note"], ""};
   if (read.by.find_first_not_of(" \t\r\n") == std::string::npos || read.by.size() > kLongestBy)
     return wrong("The field by must name who acknowledges, in 1 to 100 bytes.");
   if (read.note.size() > kLongestNote) return wrong("The field note may have 1000 bytes at most.");

@@ -5,7 +5,9 @@
 #include "daemon/http/acknowledgement.hpp"
 #include "daemon/http/etag.hpp"
 #include "daemon/http/intake_parameters.hpp"
+#include "daemon/http/intervention_body.hpp"
 #include "daemon/http/media_type.hpp"
+#include "daemon/http/openapi.hpp"
 #include "daemon/http/parameters.hpp"
 #include "daemon/http/problem.hpp"
 #include "daemon/render/alert_record_json.hpp"
@@ -13,6 +15,7 @@
 #include "daemon/render/comparison_json.hpp"
 #include "daemon/render/files_json.hpp"
 #include "daemon/render/health_json.hpp"
+#include "daemon/render/intervention_json.hpp"
 #include "daemon/render/message_json.hpp"
 #include "daemon/render/metrics_text.hpp"
 #include "daemon/render/open_metrics.hpp"
@@ -150,10 +153,10 @@ HttpAnswer Api::acknowledge(const HttpRequest& request, const Target& target) {
   if (!body.error.empty()) return problem(400, body.error, request.target);
   const auto id = whole_number(target.segments[2]);
   if (!id) return no_such_alert(request, target.segments[2]);
-  std::string words;
+  AskAnswer asked;
   if (auto refusal = refused_by(
           request, [&] { return service_.acknowledge(*id, std::move(body.by), std::move(body.note)); },
-          words))
+          asked))
     return *std::move(refusal);
   HttpAnswer answer = alert(request, target);
   answer.etag.clear();
@@ -162,16 +165,27 @@ HttpAnswer Api::acknowledge(const HttpRequest& request, const Target& target) {
 
 HttpAnswer Api::resend(const HttpRequest& request, const Target& target) {
   const std::string& message = target.segments[2];
-  std::string route;
+  AskAnswer asked;
   if (auto refusal = refused_by(
-          request, [&] { return service_.resend(message); }, route))
+          request, [&] { return service_.resend(message); }, asked))
     return *std::move(refusal);
-  return {202, "application/json", queued_message_json(message, route), "", {}};
+  return {202, "application/json", queued_message_json(message, asked.words), "", {}};
+}
+
+HttpAnswer Api::intervene(const HttpRequest& request, const Target&) {
+  InterventionBody body = read_intervention_body(request.body);
+  if (!body.error.empty()) return problem(400, body.error, request.target, body.field);
+  AskAnswer asked;
+  if (auto refusal = refused_by(
+          request, [&] { return service_.intervene(std::move(body.told)); }, asked))
+    return *std::move(refusal);
+  const int status = asked.outcome == AskOutcome::done ? 201 : 200;
+  return {status, "application/json", intervention_json(asked.intervention.value()), "", {}};
 }
 
 std::optional<HttpAnswer> Api::refused_by(const HttpRequest& request,
                                           const std::function<std::future<AskAnswer>()>& ask,
-                                          std::string& words) {
+                                          AskAnswer& answer) {
   if (!waiting_places_.try_acquire())
     return unavailable(request, "Other wishes are still waiting to be stored; try again.");
   std::optional<AskAnswer> asked;
@@ -182,18 +196,21 @@ std::optional<HttpAnswer> Api::refused_by(const HttpRequest& request,
   }
   waiting_places_.release();
   if (!asked) return unavailable(request, "It is not stored yet and may still be; look again.");
-  words = std::move(asked->words);
-  switch (asked->outcome) {
+  answer = *std::move(asked);
+  switch (answer.outcome) {
     case AskOutcome::done:
+    case AskOutcome::done_before:
       return std::nullopt;
+    case AskOutcome::not_usable:
+      return problem(422, answer.field + ": " + answer.words, request.target, answer.field);
     case AskOutcome::not_found:
-      return problem(404, words.empty() ? "There is no such thing." : words, request.target);
+      return problem(404, answer.words.empty() ? "There is no such thing." : answer.words, request.target);
     case AskOutcome::not_possible:
-      return problem(409, words, request.target);
+      return problem(409, answer.words, request.target);
     case AskOutcome::unavailable:
       break;
   }
-  return unavailable(request, words);
+  return unavailable(request, answer.words);
 }
 
 std::optional<AskAnswer> Api::wait_for(std::future<AskAnswer> asked) const {
@@ -229,6 +246,11 @@ std::optional<HttpAnswer> Api::refused_empty(bool empty, const HttpRequest& requ
   const std::string unknown = empty ? unknown_name(target, *service_.snapshot()->settings) : "";
   if (unknown.empty()) return std::nullopt;
   return problem(400, unknown, request.target);
+}
+
+HttpAnswer Api::openapi(const HttpRequest&, const Target&) {
+  static const HttpAnswer answer = json_answer(openapi_document());
+  return answer;
 }
 
 HttpAnswer Api::metrics(const HttpRequest&, const Target&) {

@@ -27,9 +27,11 @@ class Api {
   [[nodiscard]] HttpAnswer alerts(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer alert(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer acknowledge(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer intervene(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer resend(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer files(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer readings(const HttpRequest& request, const Target& target);
+  [[nodiscard]] HttpAnswer openapi(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer metrics(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer live(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer ready(const HttpRequest& request, const Target& target);
@@ -39,10 +41,10 @@ class Api {
   /// former configurations still have rows, so only an empty answer makes a name wrong.
   [[nodiscard]] std::optional<HttpAnswer> refused_empty(bool empty, const HttpRequest& request,
                                                         const Target& target) const;
-  /// What the engine answered to a wish; nothing when it was done, then `words` is what it said.
+  /// Why a wish was not done; nothing when it was, now or before, then `answer` is what the engine said.
   [[nodiscard]] std::optional<HttpAnswer> refused_by(const HttpRequest& request,
                                                      const std::function<std::future<AskAnswer>()>& ask,
-                                                     std::string& words);
+                                                     AskAnswer& answer);
   [[nodiscard]] std::optional<AskAnswer> wait_for(std::future<AskAnswer> asked) const;
 
   Service& service_;

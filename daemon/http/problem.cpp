@@ -28,6 +28,8 @@ const char* status_title(int status) {
       return "URI Too Long";
     case 415:
       return "Unsupported Media Type";
+    case 422:
+      return "Unprocessable Content";
     case 431:
       return "Request Header Fields Too Large";
     case 500:
@@ -43,12 +45,13 @@ const char* status_title(int status) {
   }
 }
 
-HttpAnswer problem(int status, const std::string& detail, std::string_view target) {
+HttpAnswer problem(int status, const std::string& detail, std::string_view target, const std::string& field) {
   Json document = {{"type", "about:blank"},
                    {"title", status_title(status)},
                    {"status", status},
                    {"detail", detail},
                    {"instance", json_words(std::string(target.substr(0, target.find('?'))))}};
+  if (!field.empty()) document["field"] = field;
   return {status, "application/problem+json", json_text(document), "", {}};
 }
 

@@ -22,7 +22,7 @@ struct ApiRoute {
   Endpoint endpoint;
 };
 
-constexpr std::array<ApiRoute, 14> kRoutes = {{
+constexpr std::array<ApiRoute, 16> kRoutes = {{
     {"GET", "/api/status", &Api::status},
     {"GET", "/api/charts", &Api::charts},
     {"GET", "/api/charts/*/*/*", &Api::chart},
@@ -31,9 +31,11 @@ constexpr std::array<ApiRoute, 14> kRoutes = {{
     {"GET", "/api/alerts", &Api::alerts},
     {"GET", "/api/alerts/*", &Api::alert},
     {"POST", "/api/alerts/*/acknowledge", &Api::acknowledge},
+    {"POST", "/api/interventions", &Api::intervene},
     {"POST", "/api/messages/*/resend", &Api::resend},
     {"GET", "/api/files", &Api::files},
     {"GET", "/api/readings", &Api::readings},
+    {"GET", "/api/openapi.json", &Api::openapi},
     {"GET", "/metrics", &Api::metrics},
     {"GET", "/health/live", &Api::live},
     {"GET", "/health/ready", &Api::ready},

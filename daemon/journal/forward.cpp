@@ -115,6 +115,33 @@ std::int64_t Journal::censored_checks(std::string_view analyzer, std::string_vie
       impl_->file, [&] { return journal::censored_checks(*impl_->database, analyzer, measurand, item); });
 }
 
+void Journal::each_split_received(
+    Instant since,
+    const std::function<void(std::string_view, std::string_view, std::string_view, Instant, Instant)>& take) {
+  journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(
+        *impl_->database,
+        "SELECT a.text, m.text, r.item, r.measured_at, b.committed_at FROM readings r "
+        "JOIN batches b ON b.sequence = r.batch JOIN names a ON a.id = r.analyzer "
+        "JOIN names m ON m.id = r.measurand WHERE r.kind = 1 AND r.batch >= "
+        "(SELECT min(sequence) FROM batches WHERE committed_at > ?1) AND b.committed_at > ?1 "
+        "ORDER BY r.batch, r.position");
+    rows.bind(1, journal::milliseconds(since));
+    while (rows.executeStep())
+      take(rows.getColumn(0).getString(), rows.getColumn(1).getString(), rows.getColumn(2).getString(),
+           journal::instant(rows.getColumn(3)), journal::instant(rows.getColumn(4)));
+  });
+}
+
+std::optional<Instant> Journal::last_commit() {
+  return journal::translating(impl_->file, [&]() -> std::optional<Instant> {
+    SQLite::Statement row(*impl_->database,
+                          "SELECT committed_at FROM batches ORDER BY sequence DESC LIMIT 1");
+    if (!row.executeStep()) return std::nullopt;
+    return journal::instant(row.getColumn(0));
+  });
+}
+
 std::vector<JournalIntervention> Journal::interventions() {
   return journal::translating(impl_->file, [&] { return journal::interventions(*impl_->database); });
 }

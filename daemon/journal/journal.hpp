@@ -70,6 +70,9 @@ class Journal {
   /// False if the same one (analyzer, standard, measurand, kind, at) is known. `file` 0: it came by another
   /// way.
   bool add_intervention(std::int64_t file, const JournalIntervention& intervention);
+  /// The one that is known under the key of `like` (analyzer, standard, measurand, kind, at); within the open
+  /// batch its rows are seen.
+  [[nodiscard]] std::optional<JournalIntervention> find_intervention(const JournalIntervention& like);
   void add_rejected_row(std::int64_t file, std::uint32_t line, std::uint32_t column, std::string_view text,
                         std::string_view reason);
   void add_finding(Instant at, std::string_view kind, std::string_view subject, std::string_view body);
@@ -99,6 +102,12 @@ class Journal {
                                            double value)>& take);  ///< by sample, time
   void each_split_of(std::string_view analyzer, std::string_view measurand, std::string_view sample,
                      const std::function<void(Instant, std::int32_t replicate, double value)>& take);
+  /// Every result of a split sample that was taken in after `since`, whatever became of it, oldest first.
+  void each_split_received(
+      Instant since, const std::function<void(std::string_view analyzer, std::string_view measurand,
+                                              std::string_view sample, Instant, Instant received)>& take);
+  /// When the newest batch was committed; nothing when there is none.
+  [[nodiscard]] std::optional<Instant> last_commit();
   /// Standing censored results of a check standard: what `each_check` leaves out.
   [[nodiscard]] std::int64_t censored_checks(std::string_view analyzer, std::string_view item,
                                              std::string_view measurand);

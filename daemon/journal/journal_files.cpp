@@ -107,4 +107,23 @@ bool Journal::add_intervention(std::int64_t file, const JournalIntervention& int
   });
 }
 
+std::optional<JournalIntervention> Journal::find_intervention(const JournalIntervention& like) {
+  return journal::translating(impl_->file, [&]() -> std::optional<JournalIntervention> {
+    Query row = impl_->query(
+        "SELECT id, by, note FROM interventions WHERE analyzer = ? AND standard = ? AND measurand = ? AND "
+        "kind = ? AND at = ?");
+    row->bind(1, like.analyzer);
+    row->bind(2, like.standard);
+    row->bind(3, like.measurand);
+    row->bind(4, like.kind);
+    row->bind(5, journal::milliseconds(like.at));
+    if (!row->executeStep()) return std::nullopt;
+    JournalIntervention known = like;
+    known.id = row->getColumn(0).getInt64();
+    known.by = row->getColumn(1).getString();
+    known.note = row->getColumn(2).getString();
+    return known;
+  });
+}
+
 }  // namespace agreed

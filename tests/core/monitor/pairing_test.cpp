@@ -1,6 +1,7 @@
 #include "core/monitor/pairing.hpp"
 
 #include <algorithm>
+#include <optional>
 #include <random>
 
 #include <doctest/doctest.h>
@@ -81,6 +82,41 @@ TEST_CASE("the pairs of a sample do not depend on the order its rows came in") {
         CHECK(pairs[i].x == found[0][i].x);
         CHECK(pairs[i].y == found[0][i].y);
       }
+    }
+  }
+}
+
+TEST_CASE("a half lacks a partner while nothing near enough is left for it, and not when it was taken back") {
+  const SampleRows two_on_x = rows({{at(1h), 0, 1}, {at(2h), 1, 1}, {at(40h), 0, 1}}, {{at(41h), 0, 1}});
+  CHECK(lacks_partner(two_on_x, true, at(1h), kDay));
+  CHECK(lacks_partner(two_on_x, true, at(2h), kDay));  // a replicate of the same half
+  CHECK_FALSE(lacks_partner(two_on_x, true, at(40h), kDay));
+  CHECK_FALSE(lacks_partner(two_on_x, false, at(41h), kDay));
+  CHECK_FALSE(lacks_partner(two_on_x, true, at(3h), kDay));    // no row of it
+  CHECK_FALSE(lacks_partner(two_on_x, false, at(40h), kDay));  // it is the other side's
+  CHECK(lacks_partner(rows({{at(0h), 0, 1}}, {{at(25h), 0, 1}}), true, at(0h), kDay));
+}
+
+TEST_CASE("of all halves of a side, those in a pair and those without a partner are all") {
+  std::mt19937 random(11);
+  for (int round = 0; round < 300; ++round) {
+    SampleRows sample;
+    for (int i = 0, count = static_cast<int>(random() % 9); i < count; ++i)
+      sample.add(random() % 2 == 0, {at(Duration(random() % 12) * 3'600'000), i, 1.0});
+    const Duration within = 2h;
+    const auto pairs = pairs_of("S", sample, within).size();
+    for (const bool on_x : {true, false}) {
+      std::size_t halves = 0, lonely = 0;
+      std::optional<Instant> first;
+      for (const SideRow& row : on_x ? sample.x : sample.y) {
+        if (!first || row.at - *first > within) {
+          first = row.at;
+          ++halves;
+          lonely += lacks_partner(sample, on_x, row.at, within);
+        }
+        CHECK(lacks_partner(sample, on_x, row.at, within) == lacks_partner(sample, on_x, *first, within));
+      }
+      CHECK(halves == pairs + lonely);
     }
   }
 }

@@ -205,7 +205,23 @@ class FakeService : public Service {
     return promise.get_future();
   }
 
+  /// Knows line1; noted at 06:00 is known already, at 07:00 too, told otherwise.
+  std::future<AskAnswer> intervene(ToldIntervention told) override {
+    std::promise<AskAnswer> promise;
+    told_interventions.push_back(told);
+    AskAnswer answer;
+    answer.intervention = JournalIntervention{5,         told.analyzer, told.standard, told.measurand,
+                                              told.kind, told.by,       told.note,     at_hour(6)};
+    if (told.at == "2026-01-05T06:00:00Z") answer.outcome = AskOutcome::done_before;
+    if (told.at == "2026-01-05T07:00:00Z") answer = {AskOutcome::not_possible, "Told otherwise."};
+    if (told.analyzer != "line1") answer = {AskOutcome::not_usable, "is not known", "analyzer"};
+    if (down) answer = {AskOutcome::unavailable, "The disk is full."};
+    promise.set_value(std::move(answer));
+    return promise.get_future();
+  }
+
   bool down = false, hangs = false;
+  std::vector<ToldIntervention> told_interventions;
   std::vector<std::promise<AskAnswer>> hanging;
   std::string acknowledged_by, acknowledged_note;
 

@@ -124,7 +124,7 @@ TEST_CASE("every path of the table answers") {
   for (const char* path : {"/api/status", "/api/charts", "/api/charts/line1/wheat-low/protein",
                            "/api/charts/line1/wheat%2Dlow/protein?points=3", "/api/comparisons",
                            "/api/comparisons/protein?pairs=2", "/api/alerts", "/api/alerts/17", "/api/files",
-                           "/api/readings", "/health/live", "/health/ready"}) {
+                           "/api/readings", "/api/openapi.json", "/health/live", "/health/ready"}) {
     CAPTURE(path);
     const HttpAnswer answer = house.ask(path);
     CHECK(answer.status == 200);
@@ -331,6 +331,55 @@ TEST_CASE("bad bodies of an acknowledgement are 400 and say what is expected") {
     CHECK(answer.body.find("Expected") != std::string::npos);
   }
   CHECK(house.service.acknowledged_by.empty());
+}
+
+TEST_CASE("an intervention told by an operator is stored, or its field at fault is named") {
+  House house;
+  const auto tell = [&](const std::string& body, const std::string& token = "ooo") {
+    return house.ask("/api/interventions", "POST", token, body);
+  };
+  const std::string body = R"({"analyzer":"line1","measurand":"protein","standard":null,"kind":"repaired",)"
+                           R"("by":"A. Miller","note":"lamp"})";
+  check_problem(tell(body, "rrr"), 403);
+  check_problem(tell("nonsense", "wrong"), 401);
+  check_problem(house.ask("/api/interventions", "GET", "ooo"), 405);
+  CHECK(house.service.told_interventions.empty());
+  const HttpAnswer done = tell(body);
+  CHECK(done.status == 201);
+  CHECK(json::parse(done.body) ==
+        json::parse(R"({"id":"5","analyzer":"line1","standard":null,)"
+                    R"("measurand":"protein","kind":"repaired",)"
+                    R"("at":"2026-01-05T06:00:00.000Z","by":"A. Miller","note":"lamp"})"));
+  const std::string begin = R"({"analyzer":"line1","kind":"noted","by":"a",)";
+  CHECK(tell(begin + R"("at":"2026-01-05T06:00:00Z"})").status == 200);
+  check_problem(tell(begin + R"("at":"2026-01-05T07:00:00Z"})"), 409);
+  const HttpAnswer unknown = tell(R"({"analyzer":"line3","kind":"noted","by":"a"})");
+  check_problem(unknown, 422);
+  CHECK(json::parse(unknown.body).at("field") == "analyzer");
+  CHECK(json::parse(unknown.body).at("detail") == "analyzer: is not known");
+  const std::size_t asked = house.service.told_interventions.size();
+  for (const auto& [wrong, field] : std::vector<std::pair<std::string, std::string>>{
+           {"", ""},
+           {"[]", ""},
+           {"{}", "analyzer"},
+           {R"({"analyzer":"line1"})", "kind"},
+           {R"({"analyzer":"line1","kind":"noted"})", "by"},
+           {begin + R"("by":"b"})", "by"},
+           {begin + R"("notes":"b"})", "notes"},
+           {begin + R"("note":1})", "note"},
+           {begin + R"("at":17})", "at"},
+           {R"({"analyzer":"line1","kind":"noted","by":null})", "by"},
+           {begin + R"("note":{"a":{"b":[]}}})", ""},
+           {begin + "\"note\":\"\xff\"}", ""}}) {
+    CAPTURE(wrong);
+    const HttpAnswer answer = tell(wrong);
+    check_problem(answer, 400);
+    CHECK(answer.body.find("Expected") != std::string::npos);
+    CHECK(json::parse(answer.body).value("field", "") == field);
+  }
+  CHECK(house.service.told_interventions.size() == asked);
+  house.service.down = true;
+  check_problem(tell(body), 503);
 }
 
 TEST_CASE("a service that cannot store makes 503, also when it does not answer and we stop") {

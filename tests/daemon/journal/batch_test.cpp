@@ -187,6 +187,14 @@ TEST_CASE("an intervention is known by its key, wherever it came from") {
   REQUIRE(all.size() == 2);
   CHECK(all[0].at == at(40));
   CHECK(all[1].note == "lamp");
+  lamp.at = at(50);
+  const auto known = journal.find_intervention(lamp);
+  REQUIRE(known.has_value());
+  CHECK(known->id == all[1].id);
+  CHECK(known->by == "A");
+  CHECK(known->note == "lamp");
+  lamp.measurand = "protein";
+  CHECK_FALSE(journal.find_intervention(lamp).has_value());
 }
 
 TEST_CASE("a finished file cannot be finished twice, and the batch that tries is gone") {
