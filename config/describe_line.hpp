@@ -21,6 +21,7 @@ inline std::string list_of(const std::vector<std::string>& words) {
 /// "operator = user, replicate = cup"
 inline std::string pairs_of(const std::map<std::string, std::string>& texts) {
   std::vector<std::string> words;
+  words.reserve(texts.size());
   for (const auto& [name, text] : texts) words.push_back(name + " = " + text);
   return list_of(words);
 }

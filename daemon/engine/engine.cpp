@@ -99,10 +99,10 @@ std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> insi
   auto answer = std::make_shared<AskAnswer>();
   Task task;
   task.inside = [inside = std::move(inside), answer](Instant now) { inside(*answer, now); };
-  return answered(std::move(task), std::move(answer), std::move(after));
+  return answered(std::move(task), answer, std::move(after));
 }
 
-std::future<AskAnswer> Engine::answered(Task task, std::shared_ptr<AskAnswer> answer,
+std::future<AskAnswer> Engine::answered(Task task, const std::shared_ptr<AskAnswer>& answer,
                                         std::function<void(const AskAnswer&)> after) {
   auto promise = std::make_shared<std::promise<AskAnswer>>();
   auto future = promise->get_future();
@@ -147,7 +147,7 @@ std::future<AskAnswer> Engine::intervene(ToldIntervention told) {
   task.take_in = [this, row = std::get<Row>(std::move(read)), answer](TakenIn& taken) {
     *answer = take_told(row, taken);
   };
-  return answered(std::move(task), std::move(answer), [](const AskAnswer&) {});
+  return answered(std::move(task), answer, [](const AskAnswer&) {});
 }
 
 AskAnswer Engine::take_told(const Row& row, TakenIn& taken) {

@@ -57,7 +57,7 @@ class Engine final : public IntakeSink, public Service {
       std::function<void(AskAnswer&, Instant now)> inside,
       std::function<void(const AskAnswer&)> after = [](const AskAnswer&) {});
   /// Puts `task` into the queue; `answer`, which it fills, is given when its batch is through.
-  std::future<AskAnswer> answered(Task task, std::shared_ptr<AskAnswer> answer,
+  std::future<AskAnswer> answered(Task task, const std::shared_ptr<AskAnswer>& answer,
                                   std::function<void(const AskAnswer&)> after);
   [[nodiscard]] AskAnswer take_told(const Row& row, TakenIn& taken);
   [[nodiscard]] AskAnswer send_again(const std::string& message, Instant now);
