@@ -56,7 +56,8 @@ ready_at=$(date +%s)
 
 cat <<END
 
-Harrow Mill is running; four weeks of history are in, and a shift goes by every two seconds.
+Harrow Mill is running; four weeks of history are in, and a shift goes by every two seconds. The newest result is twelve
+days old, which the page says, until the feed has caught up with the clock.
 In about 25 s line2's lamp begins to wear and its protein results drift upward.
 
   page      $address/
