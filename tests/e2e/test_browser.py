@@ -2,6 +2,7 @@
 import datetime
 import hashlib
 import random
+import re
 import unittest
 
 from chromium import Browser
@@ -104,6 +105,7 @@ class Page(SiteTest):
                 f"{role} {name} {hashlib.sha256(token.encode()).hexdigest()}\n"
                 for role, name, token in (("operator", "shift-leader", "ooo"), ("reader", "wall", "rrr"))))
         site.start()
+        self.addCleanup(self.browser.go, "about:blank")  # before the site goes, so that nothing is asked of it then
         for analyzer, text in results(minutes_ago=minutes_ago).items():
             site.drop(analyzer, "results.csv", text)
         site.drop("line1", "broken.csv", "nonsense\n")
@@ -119,7 +121,9 @@ class Page(SiteTest):
         self.browser.loading(lambda: self.browser.run("document.querySelector('form.sign-in button').click()"))
 
     def quiet(self, site):
-        self.assertEqual(self.browser.complaints(), [])
+        # What the browser still asked of an earlier site that is gone (an icon) is no fault of this one's pages.
+        late = re.compile(r"net::ERR_CONNECTION_\w+ http://127\.0\.0\.1:(?!%s/)" % site.base.rsplit(":", 1)[1])
+        self.assertEqual([c for c in self.browser.complaints() if not late.search(c)], [])
         outside = [url for url in self.browser.asked_for() if not url.startswith(site.base + "/")]
         self.assertEqual([url for url in outside if not url.startswith("about:")], [])
 
