@@ -4,18 +4,11 @@
 
 #include <malloc.h>
 
-#include "core/alert/cause.hpp"
-#include "core/base/rfc3339.hpp"
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
-#include "daemon/engine/service_watch.hpp"
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
-#include "daemon/render/finding_json.hpp"
-#include "daemon/render/status_json.hpp"
 #include "daemon/sha256.hpp"
-#include "daemon/webhook/cloud_event.hpp"
-#include "daemon/webhook/routing.hpp"
 
 namespace agreed {
 namespace {
@@ -24,9 +17,6 @@ namespace {
 constexpr Duration kIdle = std::chrono::minutes(1);
 // While the journal cannot be used: how long until it is tried again.
 constexpr Duration kTryAgain = std::chrono::seconds(2);
-// Between two looks at the clock, the disk and the endpoints, while batches follow each other.
-constexpr Duration kLookEvery = std::chrono::seconds(1);
-constexpr const char* kHeartbeat = "agreed.heartbeat";
 
 std::pair<AnalyzerIndex, std::string> file_of(const QueuedPiece& queued) {
   return {queued.piece.file.analyzer, queued.piece.file.name};
@@ -87,110 +77,6 @@ void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(Taken
   JournalReader(state_folder_).each_grown(settings_->of(analyzer).id, [&take](JournalFile&& file) {
     take({std::move(file.name), file.size, file.mtime_ns, std::move(file.sha256)});
   });
-}
-
-std::shared_ptr<const Snapshot> Engine::snapshot() const {
-  const std::lock_guard lock(snapshot_mutex_);
-  return snapshot_;
-}
-
-std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> inside,
-                                   std::function<void(const AskAnswer&)> after) {
-  auto answer = std::make_shared<AskAnswer>();
-  Task task;
-  task.inside = [inside = std::move(inside), answer](Instant now) { inside(*answer, now); };
-  return answered(std::move(task), answer, std::move(after));
-}
-
-std::future<AskAnswer> Engine::answered(Task task, const std::shared_ptr<AskAnswer>& answer,
-                                        std::function<void(const AskAnswer&)> after) {
-  auto promise = std::make_shared<std::promise<AskAnswer>>();
-  auto future = promise->get_future();
-  task.after = [promise, answer, after = std::move(after)](const std::string& failure) {
-    if (!failure.empty()) *answer = {AskOutcome::unavailable, failure};
-    after(*answer);
-    promise->set_value(*answer);
-  };
-  if (!queue_.put(std::move(task))) promise->set_value({AskOutcome::unavailable, "the service is stopping"});
-  return future;
-}
-
-std::future<AskAnswer> Engine::acknowledge(std::int64_t alert, std::string by, std::string note) {
-  return ask([this, alert, by = std::move(by), note = std::move(note)](AskAnswer& answer, Instant now) {
-    try {
-      tell(book_->acknowledge(alert, by, note, now), now);
-    } catch (const std::out_of_range&) {
-      answer = {AskOutcome::not_found, "There is no alert " + std::to_string(alert) + "."};
-    } catch (const std::logic_error& error) {
-      answer = {AskOutcome::not_possible, error.what()};
-    }
-  });
-}
-
-std::future<AskAnswer> Engine::resend(std::string message) {
-  return ask([this, message = std::move(message)](AskAnswer& answer,
-                                                  Instant now) { answer = send_again(message, now); },
-             [this](const AskAnswer& answer) {
-               if (answer.outcome == AskOutcome::done) resume_sender_(answer.words);
-             });
-}
-
-std::future<AskAnswer> Engine::intervene(ToldIntervention told) {
-  auto read = interventions_.read(told, now_utc());
-  if (const auto* fault = std::get_if<FieldFault>(&read)) {
-    std::promise<AskAnswer> at_once;
-    at_once.set_value({AskOutcome::not_usable, fault->reason, std::string(fault->field)});
-    return at_once.get_future();
-  }
-  auto answer = std::make_shared<AskAnswer>();
-  Task task;
-  task.take_in = [this, row = std::get<Row>(std::move(read)), answer](TakenIn& taken) {
-    *answer = take_told(row, taken);
-  };
-  return answered(std::move(task), answer, [](const AskAnswer&) {});
-}
-
-AskAnswer Engine::take_told(const Row& row, TakenIn& taken) {
-  KeptIntervention kept = ledger_.take_told(row, *journal_, taken);
-  AskAnswer answer;
-  if (!kept.is_new) {
-    const JournalIntervention& stands = kept.stored;
-    answer.outcome = AskOutcome::done_before;
-    if (stands.by != row.by || stands.note != row.note)
-      return {AskOutcome::not_possible, "The same intervention is known already, told by \"" + stands.by +
-                                            "\" with the note \"" + stands.note + "\", and stands."};
-  }
-  answer.intervention = std::move(kept.stored);
-  return answer;
-}
-
-AskAnswer Engine::send_again(const std::string& message, Instant now) {
-  const AskedAgain asked = journal_->ask_again(message);
-  if (asked.answer == SendAgain::unknown)
-    return {AskOutcome::not_found, "There is no message " + message + "."};
-  if (asked.answer == SendAgain::waits_already)
-    return {AskOutcome::not_possible,
-            "The message waits to be sent to route " + asked.route + " anyway; its deliveries tell when."};
-  if (std::none_of(routes_.begin(), routes_.end(),
-                   [&](const Route& route) { return route.name == asked.route; }))
-    return {AskOutcome::not_possible,
-            "The message's route " + asked.route + " is not in the configuration any more."};
-  journal_->send_again(message, now);
-  return {AskOutcome::done, asked.route};
-}
-
-std::future<void> Engine::record(DeliveryTry attempt) {
-  auto promise = std::make_shared<std::promise<void>>();
-  auto future = promise->get_future();
-  Task task;
-  task.inside = [this, attempt = std::move(attempt)](Instant) { journal_->add_try(attempt); };
-  task.after = [promise](const std::string& failure) {
-    if (failure.empty()) return promise->set_value();
-    promise->set_exception(std::make_exception_ptr(std::runtime_error(failure)));
-  };
-  if (!queue_.put(std::move(task)))
-    promise->set_exception(std::make_exception_ptr(std::runtime_error("the service is stopping")));
-  return future;
 }
 
 void Engine::run() noexcept {
@@ -321,11 +207,6 @@ MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Fin
   return outcome;
 }
 
-void Engine::record(const Finding& finding) {
-  journal_->add_finding(finding.at, to_string(finding.kind), subject_json(finding.subject),
-                        finding_json(finding));
-}
-
 void Engine::note_arrivals(const TakenIn& taken, Instant now) {
   for (const Event& event : taken.events) {
     arrivals_.add(event, now);
@@ -335,41 +216,18 @@ void Engine::note_arrivals(const TakenIn& taken, Instant now) {
   for (const CheckReading& reading : taken.censored) arrivals_.add(reading, now);
 }
 
-// What the clock, the disk and the endpoints say. A condition that goes on is told once.
-void Engine::watch(Instant now) {
-  if (now >= watched_at_ && now - watched_at_ < kLookEvery) return;
-  watched_at_ = now;
-  std::vector<Finding> findings = overdue_findings(*settings_, alert_policy_.overdue, arrivals_, now);
-  for (Finding& finding : inbox_findings(*settings_, inboxes_, queue_.inboxes(), now))
-    findings.push_back(std::move(finding));
-  if (const auto room = room_for(state_folder_))
-    if (auto finding = storage_finding(state_folder_, *room, least_free_mb_, now))
-      findings.push_back(std::move(*finding));
-  for (const Route& route : routes_)
-    if (auto finding = delivery_finding(route, journal_->failing(route.name), now))
-      findings.push_back(std::move(*finding));
-  for (const Finding& finding : findings) {
-    const auto transitions = book_->apply(finding, now);
-    if (transitions.empty()) continue;
-    record(finding);
-    tell(transitions, now);
+MonitorOutcome Engine::fold_all() {
+  const ChainHead head = journal_->head();
+  if (kept_fold_ && kept_fold_->head == head) {
+    monitor_ = kept_fold_->monitor;
+    return kept_fold_->outcome;
   }
-  tell(book_->tick(now), now);
-  tell_unacknowledged(now);
-  beat(now);
-}
-
-LonelyHalves::LacksPartner Engine::lacks_partner() const {
-  return [this](ComparisonIndex comparison, const SplitReading& result) {
-    return monitor_.lacks_partner(comparison, result);
-  };
-}
-
-void Engine::tell_lonely(Instant now) {
-  for (const Finding& finding : lonely_.due(now, lacks_partner())) {
-    record(finding);
-    tell(book_->apply(finding, now), now);
-  }
+  monitor_ = Monitor(settings_);
+  JournalHistory history(*journal_, *settings_);
+  MonitorOutcome outcome = monitor_.fold_all(history);
+  kept_fold_.reset();
+  if (!trouble_.empty()) kept_fold_.emplace(Folded{head, monitor_, outcome});
+  return outcome;
 }
 
 void Engine::remember_lonely() {
@@ -386,110 +244,6 @@ void Engine::remember_lonely() {
   lonely_.settle(lacks_partner());
   // Every batch tells of those that are due: these were told of then.
   (void)lonely_.due(*last_commit, lacks_partner());
-}
-
-void Engine::tell_unacknowledged(Instant now) {
-  const auto current = book_->current();
-  for (const Escalation& due : escalations(current, routes_, *settings_, now)) {
-    const Alert& alert = *due.alert;
-    const std::string& route = routes_[due.route].name;
-    if (!escalated_.insert({alert.id, alert.opened_at, due.route}).second) continue;
-    if (journal_->has_message(alert.id, route, alert.opened_at)) continue;
-    send(route, {AlertChange::opened, now, true, alert}, alert_json(alert, base_url_), now);
-  }
-}
-
-// While the newest sign of life still waits to be delivered, another would say nothing more.
-void Engine::beat(Instant now) {
-  for (const Route& route : routes_) {
-    if (!route.heartbeat) continue;
-    const auto last = journal_->last_message(route.name, kHeartbeat);
-    if (last && (last->waits || (last->created_at <= now && now - last->created_at < *route.heartbeat)))
-      continue;
-    const std::string id = make_webhook_id();
-    put_in_outbox(
-        route.name, id, kHeartbeat,
-        to_json(heartbeat_event(journal_->source(), id, settings_->site, chain_json(journal_->head()), now)),
-        0, now);
-  }
-}
-
-void Engine::explain(Finding& finding) const {
-  if (!has_cause(finding)) return;
-  for (std::uint32_t i = 0; i < settings_->comparisons.size(); ++i) {
-    if (settings_->comparisons[i].id != finding.subject.comparison) continue;
-    if (const auto change = monitor_.explain({i}))
-      add_cause(finding, change->diagnosis, change->look_back,
-                book_->find_current(finding.kind, finding.subject));
-  }
-}
-
-void Engine::tell_anew(ComparisonIndex comparison, Instant now) {
-  for (Finding& finding : monitor_.conditions(comparison)) {
-    if (!has_cause(finding) || book_->find_current(finding.kind, finding.subject) == nullptr) continue;
-    explain(finding);
-    tell(book_->apply(finding, now), now);
-  }
-}
-
-void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
-                       const std::string& reason, Instant now, bool news) {
-  std::vector<Finding> conditions;
-  const auto add = [&conditions](std::vector<Finding> more) {
-    conditions.insert(conditions.end(), std::make_move_iterator(more.begin()),
-                      std::make_move_iterator(more.end()));
-  };
-  for (const ChartIndex chart : outcome.charts_refolded) add(monitor_.conditions(chart));
-  for (const ComparisonIndex comparison : outcome.comparisons_refolded) {
-    add(monitor_.conditions(comparison));
-    tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
-  }
-  for (Finding& condition : conditions) explain(condition);
-  tell(book_->reconcile(conditions, subjects, reason, now, news), now);
-}
-
-void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) {
-  for (const AlertTransition& transition : transitions) {
-    const std::string body = alert_json(transition.alert, base_url_);
-    journal_->add_transition({transition.alert.id, transition.at, to_string(transition.change), body});
-    if (!transition.tell) continue;
-    for (const std::size_t position : routes_for(transition, routes_, *settings_))
-      send(routes_[position].name, transition, body, now);
-  }
-}
-
-void Engine::send(const std::string& route, const AlertTransition& transition, const std::string& body,
-                  Instant now) {
-  const std::string id = make_webhook_id();
-  put_in_outbox(route, id, event_type(transition.change),
-                to_json(alert_event(transition, journal_->source(), id, body)), transition.alert.id, now);
-}
-
-void Engine::put_in_outbox(const std::string& route, const std::string& id, std::string type,
-                           std::string body, std::int64_t alert, Instant now) {
-  OutboxMessage message;
-  message.webhook_id = id;
-  message.route = route;
-  message.type = std::move(type);
-  message.body = std::move(body);
-  message.alert = alert;
-  message.created_at = message.due_at = now;
-  journal_->add_message(message);
-  routes_with_news_.insert(route);
-}
-
-MonitorOutcome Engine::fold_all() {
-  const ChainHead head = journal_->head();
-  if (kept_fold_ && kept_fold_->head == head) {
-    monitor_ = kept_fold_->monitor;
-    return kept_fold_->outcome;
-  }
-  monitor_ = Monitor(settings_);
-  JournalHistory history(*journal_, *settings_);
-  MonitorOutcome outcome = monitor_.fold_all(history);
-  kept_fold_.reset();
-  if (!trouble_.empty()) kept_fold_.emplace(Folded{head, monitor_, outcome});
-  return outcome;
 }
 
 void Engine::fold_from_journal(Instant now) {
@@ -539,79 +293,6 @@ void Engine::fail(Work& work, const std::string& why) {
   for (QueuedPiece& queued : work.pieces) queued.answer.set_exception(error);
   for (const Task& task : work.tasks)
     if (task.after) task.after(why);
-}
-
-void Engine::refresh_views(const std::set<ChartIndex>& charts, const std::set<ComparisonIndex>& comparisons) {
-  for (const ChartIndex index : charts) {
-    const auto fold = std::make_shared<const Chart>(monitor_.chart(index));
-    next_.charts[index.value] =
-        LazyView<ChartView>([fold, settings = settings_, censored = censored_[index.value]] {
-          ChartView view = fold->view();
-          view.censored = censored;
-          return view;
-        });
-    next_.chart_states[index.value] = fold->state();
-  }
-  for (const ComparisonIndex index : comparisons) {
-    const auto fold = std::make_shared<const Comparison>(monitor_.comparison(index));
-    next_.comparisons[index.value] = LazyView<ComparisonView>(
-        [fold, settings = settings_, waiting = monitor_.waiting(index), change = monitor_.explain(index)] {
-          ComparisonView view = fold->view();
-          view.waiting = waiting;
-          if (change) {
-            view.diagnosis = change->diagnosis;
-            view.look_back = change->look_back;
-          }
-          return view;
-        });
-  }
-}
-
-std::vector<std::string> Engine::not_ready(const std::vector<InboxState>& inboxes) const {
-  std::vector<std::string> reasons;
-  if (!trouble_.empty()) reasons.push_back("journal: " + trouble_);
-  if (!folded_ && trouble_.empty()) reasons.emplace_back("the journal is being read");
-  for (std::size_t i = 0; i < inboxes.size(); ++i)
-    if (!inboxes[i].scanned_once && inboxes[i].reason.empty())
-      reasons.push_back("the inbox of " + settings_->analyzers[i].id + " has not been looked at yet");
-  return reasons;
-}
-
-void Engine::publish(Instant now) {
-  next_.at = now;
-  const auto inboxes = queue_.inboxes();
-  next_.not_ready = not_ready(inboxes);
-  next_.ready = next_.not_ready.empty();
-  next_.started = next_.started || next_.ready;
-  next_.pending_files = 0;
-  next_.remarks.clear();
-  for (std::size_t i = 0; i < inboxes.size(); ++i) {
-    next_.analyzers[i].inbox = inboxes[i];
-    next_.pending_files += inboxes[i].pending;
-    if (inboxes[i].unreachable_since)
-      next_.remarks.push_back("the inbox of " + settings_->analyzers[i].id + " cannot be reached since " +
-                              to_rfc3339(*inboxes[i].unreachable_since) + ": " + inboxes[i].reason);
-    next_.analyzers[i].last_reading_at = journal_->last_measured(settings_->analyzers[i].id);
-  }
-  if (const auto bytes = journal_->overlong_log_bytes())
-    next_.remarks.push_back("the journal's write-ahead log has grown to " +
-                            std::to_string(*bytes / 1'000'000) +
-                            " MB: another program keeps the journal open for reading; end it");
-  next_.totals = journal_->totals();
-  next_.chain = journal_->head();
-  if (book_) {
-    next_.alerts = book_->current();
-    next_.alerts_open = next_.alerts_acknowledged = next_.alerts_critical = 0;
-    next_.alerts_of_comparison.clear();
-    for (const SharedAlert& alert : next_.alerts) {
-      ++(alert->state == AlertState::open ? next_.alerts_open : next_.alerts_acknowledged);
-      if (alert->severity == Severity::critical && alert->state == AlertState::open) ++next_.alerts_critical;
-      if (!alert->subject.comparison.empty()) ++next_.alerts_of_comparison[alert->subject.comparison];
-    }
-  }
-  auto snapshot = std::make_shared<const Snapshot>(next_);
-  const std::lock_guard lock(snapshot_mutex_);
-  snapshot_ = std::move(snapshot);
 }
 
 }  // namespace agreed

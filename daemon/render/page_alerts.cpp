@@ -147,10 +147,6 @@ DataTable history_table(const std::vector<StoredTransition>& history) {
   return table;
 }
 
-struct Choice {
-  const char* state;
-  const char* words;
-};
 constexpr std::array<Choice, 5> kChoices = {{{"open,acknowledged", "Current"},
                                              {"open", "Not acknowledged"},
                                              {"acknowledged", "Acknowledged"},
@@ -160,14 +156,14 @@ constexpr std::array<Choice, 5> kChoices = {{{"open,acknowledged", "Current"},
 std::string choice_html(const AlertList& list) {
   std::string out = "<nav class=\"choice\" aria-label=\"Which alerts\"><ul>";
   for (const Choice& choice : kChoices)
-    out += std::string("<li><a href=\"/alerts?state=") + choice.state + "\"" +
-           (list.state == choice.state ? " aria-current=\"true\"" : "") + ">" + choice.words + "</a></li>";
+    out +=
+        choice_link(std::string("/alerts?state=") + choice.value, choice.words, list.state == choice.value);
   return out + "</ul></nav>";
 }
 
 std::string heading_of(const AlertList& list) {
   for (const Choice& choice : kChoices)
-    if (list.state == choice.state) return choice.words;
+    if (list.state == choice.value) return choice.words;
   return "Chosen";
 }
 

@@ -8,10 +8,6 @@
 namespace agreed {
 namespace {
 
-struct Choice {
-  const char* outcome;
-  const char* words;
-};
 constexpr std::array<Choice, 5> kChoices = {{{"", "All"},
                                              {"done", "Taken in"},
                                              {"rejected", "Rejected"},
@@ -25,15 +21,10 @@ std::string path_of(const std::string& outcome, const std::string& analyzer) {
   return query.empty() ? "/files" : "/files?" + query;
 }
 
-std::string choice_link(const std::string& path, const std::string& words, bool chosen) {
-  return "<li><a href=\"" + escaped(path) + "\"" + (chosen ? " aria-current=\"true\"" : "") + ">" +
-         escaped(words) + "</a></li>";
-}
-
 std::string choices_html(const PageInput& input, const FileList& list) {
   std::string out = "<nav class=\"choice\" aria-label=\"Which files\"><ul>";
   for (const Choice& choice : kChoices)
-    out += choice_link(path_of(choice.outcome, list.analyzer), choice.words, list.outcome == choice.outcome);
+    out += choice_link(path_of(choice.value, list.analyzer), choice.words, list.outcome == choice.value);
   out += "</ul></nav>";
   if (!input.snapshot.settings || input.snapshot.settings->analyzers.size() < 2) return out;
   out += "<nav class=\"choice\" aria-label=\"Of which analyzer\"><ul>" +

@@ -72,6 +72,11 @@ std::string link_html(const std::string& path, std::string_view words) {
   return "<a href=\"" + escaped(path) + "\">" + escaped(words) + "</a>";
 }
 
+std::string choice_link(const std::string& path, const std::string& words, bool chosen) {
+  return "<li><a href=\"" + escaped(path) + "\"" + (chosen ? " aria-current=\"true\"" : "") + ">" +
+         escaped(words) + "</a></li>";
+}
+
 std::string answer_html(const Answer& answer, bool foremost) {
   std::string out = "<div class=\"answer " + answer_css(answer.kind) + (foremost ? " foremost" : "") + "\">";
   out += "<p class=\"word\">" + icon(answer_icon(answer.kind)) + "<span>" + escaped(answer.word) +

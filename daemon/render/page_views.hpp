@@ -30,6 +30,14 @@ struct PageLife {
 [[nodiscard]] std::string sign_in_link_html(const PageInput& input, std::string_view words);
 
 [[nodiscard]] std::string link_html(const std::string& path, std::string_view words);
+
+/// One of the ways a list may be cut: what its parameter is, and what it is called.
+struct Choice {
+  const char* value;
+  const char* words;
+};
+/// As an item of a `nav.choice`.
+[[nodiscard]] std::string choice_link(const std::string& path, const std::string& words, bool chosen);
 /// The answer large, with its shape, since when, and its sentences.
 [[nodiscard]] std::string answer_html(const Answer& answer, bool foremost);
 /// That the service is starting, in the same form; empty when it has started.
