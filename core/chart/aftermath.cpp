@@ -9,8 +9,6 @@
 
 namespace agreed {
 namespace {
-// A score this far below its limit no longer confirms the signal.
-constexpr double kConfirmedWithin = 0.9;
 // Log-likelihood units within which lasting scatter explains as well as a shift that has ended.
 constexpr double kNearlyAsWell = 4;
 

@@ -9,6 +9,9 @@
 
 namespace agreed {
 
+/// A score this far below its limit no longer confirms what it told.
+inline constexpr double kConfirmedWithin = 0.9;
+
 /// Which rule ends the alert: that of a shift (or single reading) or that of scatter.
 enum class EndingRule { level, precision };
 

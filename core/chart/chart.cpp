@@ -14,8 +14,6 @@ namespace agreed {
 namespace {
 // Serial correlation is not estimated from fewer readings.
 constexpr std::int64_t kCorrelationFrom = 15;
-// A score this far below its limit takes back what it told.
-constexpr double kConfirmedWithin = 0.9;
 
 const char* name(InterventionKind kind) {
   switch (kind) {

@@ -9,7 +9,7 @@
 namespace agreed {
 namespace {
 constexpr int kSpentDegrees = 3;  // two means, one slope
-constexpr int kLeastDegrees = 3;
+constexpr int kLeastShiftDegrees = 3;
 
 // The scatter within both sides, as if of one lot of pairs with the degrees of freedom that are left.
 Moments within(const Moments& before, const Moments& after) {
@@ -33,7 +33,7 @@ double widened(double variance, int df) {
 std::optional<PairShift> pair_shift(const Moments& before, const Moments& after, double delta,
                                     double resolution) {
   const int df = before.n + after.n - kSpentDegrees;
-  if (before.n < 1 || after.n < 1 || df < kLeastDegrees) return std::nullopt;
+  if (before.n < 1 || after.n < 1 || df < kLeastShiftDegrees) return std::nullopt;
   const Moments both = within(before, after);
   const DemingLine line = deming_line(both, delta);
   const bool usable = line.exists() && line.slope > 0;
@@ -50,7 +50,7 @@ std::optional<PairShift> pair_shift(const Moments& before, const Moments& after,
 std::optional<PairShift> shift_from_line(const EstablishedLine& line, const Moments& after,
                                          double resolution) {
   const int df = after.n - 1;
-  if (df < kLeastDegrees) return std::nullopt;
+  if (df < kLeastShiftDegrees) return std::nullopt;
   const double s2 =
       std::max(scatter_along(after, line.slope) / df, least_variance(after, line.slope, resolution));
   const double shift = after.mean_difference() - line.intercept - (line.slope - 1) * after.mean_x();

@@ -7,7 +7,7 @@
 
 namespace agreed {
 namespace {
-constexpr std::size_t kLeastPairs = 40;
+constexpr std::size_t kLeastPairsForErrors = 40;
 constexpr double kLimit = 2.6;  // times 1/sqrt(n-1)
 
 std::vector<double> ranks_of(std::span<const double> values) {
@@ -36,7 +36,7 @@ double rank_correlation(std::span<const double> a, std::span<const double> b) {
 }
 
 bool error_grows_with_level(std::span<const Point> points, const WindowFit& fit) {
-  if (points.size() < kLeastPairs) return false;
+  if (points.size() < kLeastPairsForErrors) return false;
   std::vector<double> sizes, levels;
   for (const Point p : points) {
     sizes.push_back(std::abs(fit.residual(p)));

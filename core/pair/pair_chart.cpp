@@ -12,7 +12,7 @@
 
 namespace agreed {
 namespace {
-constexpr int kLeastPairs = 7;
+constexpr int kLeastPairsOnChart = 7;
 constexpr int kLeastBefore = 4;
 constexpr int kLeastAfter = 3;
 constexpr int kSpentDegrees = 5;
@@ -191,7 +191,7 @@ std::optional<PairChart::Line> PairChart::line(double delta) const {
 
 std::optional<PairChart::Scan> PairChart::scan(double delta) const {
   const int n = pairs();
-  if (n < kLeastPairs) return std::nullopt;
+  if (n < kLeastPairsOnChart) return std::nullopt;
   const auto line = this->line(delta);
   if (!line) return std::nullopt;
 

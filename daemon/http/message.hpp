@@ -18,6 +18,11 @@ struct HttpRequest {
   std::string body;
 };
 
+/// Whether it only looks: GET or HEAD.
+[[nodiscard]] inline bool reads(const HttpRequest& request) {
+  return request.method == "GET" || request.method == "HEAD";
+}
+
 struct HttpAnswer {
   int status = 200;
   std::string content_type;

@@ -19,10 +19,6 @@ constexpr std::string_view kAlert = "/alerts/", kAcknowledge = "/acknowledge";
 constexpr std::chrono::seconds kOperatorsTime = std::chrono::hours(12),
                                kReadersTime = std::chrono::hours(30 * 24);
 
-bool reads(const HttpRequest& request) {
-  return request.method == "GET" || request.method == "HEAD";
-}
-
 bool wants_html(const HttpRequest& request) {
   return request.accept.find("text/html") != std::string::npos;
 }

@@ -52,10 +52,6 @@ bool matches(std::string_view pattern, const std::vector<std::string>& segments)
   return pattern.empty();
 }
 
-bool reads(const HttpRequest& request) {
-  return request.method == "GET" || request.method == "HEAD";
-}
-
 bool begins(const Target& target, std::string_view first_segment) {
   return !target.segments.empty() && target.segments.front() == first_segment;
 }

@@ -10,13 +10,13 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kBlock = std::size_t{64} * 1024;
+constexpr std::size_t kGrowingBlock = std::size_t{64} * 1024;
 constexpr std::uint64_t kEnd = std::uint64_t{512} * 1024;
 
 /// Gives the bytes from `from` to `to` in blocks, fewer when the file ends before; the number given.
 std::uint64_t each_block_between(const FileContent& content, std::uint64_t from, std::uint64_t to,
                                  const std::function<void(std::string_view)>& take) {
-  std::vector<char> block(kBlock);
+  std::vector<char> block(kGrowingBlock);
   std::uint64_t at = from;
   while (at < to) {
     const auto most = static_cast<std::size_t>(std::min<std::uint64_t>(block.size(), to - at));
@@ -51,7 +51,7 @@ LineEnd line_end_of(const PlainContext& context, const FileContent& content) {
 /// none. In bounded memory.
 std::optional<std::uint64_t> behind_line_end(const FileContent& content, const LineEnd& line_end,
                                              std::uint64_t from) {
-  std::vector<char> block(kBlock);
+  std::vector<char> block(kGrowingBlock);
   for (std::uint64_t at = from;;) {
     const std::size_t got = content.read(at, block);
     if (const auto behind = line_end.behind_first({block.data(), got})) return at + *behind;
@@ -169,7 +169,7 @@ void GrowingFile::feed(std::string_view bytes) {
 
 /// Feeds whole lines until there are enough rows; false if there was none.
 bool GrowingFile::feed_lines(const FileContent& content, const LineEnd& line_end) {
-  std::vector<char> block(kBlock);
+  std::vector<char> block(kGrowingBlock);
   const std::uint64_t begin = taken_;
   const auto enough = [&] {
     return rows_->rows.size() + rows_->bad_rows.size() >= limits_.piece_rows || !reader_->unusable().empty();

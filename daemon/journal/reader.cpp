@@ -132,12 +132,12 @@ constexpr const char* kFiles =
 constexpr const char* kAnyOutcome = "LEFT JOIN file_outcomes o ON o.file = f.id WHERE f.id < ?1 ";
 constexpr const char* kOneOutcome =
     "JOIN file_outcomes o ON o.file = f.id WHERE f.id < ?1 AND o.file < ?1 AND o.outcome = ?3 ";
-constexpr const char* kOfAnalyzer = "AND f.analyzer = (SELECT id FROM names WHERE text = ?4) ";
+constexpr const char* kFilesOfAnalyzer = "AND f.analyzer = (SELECT id FROM names WHERE text = ?4) ";
 constexpr const char* kFilesPage = "ORDER BY f.id DESC LIMIT ?2";
 
 std::string sql_of(const FileQuery& query) {
   return std::string(kFiles) + (query.outcome.empty() ? kAnyOutcome : kOneOutcome) +
-         (query.analyzer.empty() ? "" : kOfAnalyzer) + kFilesPage;
+         (query.analyzer.empty() ? "" : kFilesOfAnalyzer) + kFilesPage;
 }
 
 }  // namespace

@@ -42,7 +42,7 @@ Json deliveries_of(const std::vector<DeliveryRow>& deliveries) {
   return list;
 }
 
-Json alert_of(const AlertRecord& record) {
+Json whole_alert(const AlertRecord& record) {
   Json alert = stored_alert(record.body);
   alert["history"] = history_of(record.history);
   alert["deliveries"] = deliveries_of(record.deliveries);
@@ -52,12 +52,12 @@ Json alert_of(const AlertRecord& record) {
 }  // namespace
 
 std::string alert_record_json(const AlertRecord& record) {
-  return json_text(alert_of(record));
+  return json_text(whole_alert(record));
 }
 
 std::string alert_records_json(const std::vector<AlertRecord>& records,
                                const std::optional<std::string>& next) {
-  return json_page("alerts", records, alert_of, next);
+  return json_page("alerts", records, whole_alert, next);
 }
 
 std::int64_t alert_record_id(const AlertRecord& record) {

@@ -9,7 +9,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kSmall = 120;
+constexpr std::size_t kSmallBiasFigure = 120;
 
 struct BiasRow {
   double at = 0, bias = 0, low = 0, high = 0;
@@ -72,8 +72,8 @@ void add_trend(Plot& plot, const std::vector<BiasRow>& rows, const std::optional
   flush();
 }
 
-std::string draw(const ComparisonScene& scene, const LevelView& level, const std::vector<BiasRow>& rows,
-                 const Figure& figure, const std::string& id, FigureSize size) {
+std::string draw_bias(const ComparisonScene& scene, const LevelView& level, const std::vector<BiasRow>& rows,
+                      const Figure& figure, const std::string& id, FigureSize size) {
   ExtentOf times;
   for (const BiasRow& row : rows) times.add(row.at);
   Plot plot(id, size, times.padded(0.02, kLeastTime), bias_extent(rows, level));
@@ -110,10 +110,10 @@ Figure bias_figure(const ComparisonScene& scene, std::size_t index, FigureDetail
   figure.heading = "Bias at " + shortest(level.level) + " " + scene.style.unit;
   figure.summary = level_words(scene, level);
   const bool full = detail == FigureDetail::full;
-  const auto rows = rows_of(scene.view, index, full ? scene.view.bias_history.size() : kSmall);
+  const auto rows = rows_of(scene.view, index, full ? scene.view.bias_history.size() : kSmallBiasFigure);
   if (rows.empty()) return figure;
-  figure.drawing = draw(scene, level, rows, figure, figure.id, {360, full ? 220.0 : 180.0});
-  if (full) figure.wide = draw(scene, level, rows, figure, figure.id + ".wide", {960, 300});
+  figure.drawing = draw_bias(scene, level, rows, figure, figure.id, {360, full ? 220.0 : 180.0});
+  if (full) figure.wide = draw_bias(scene, level, rows, figure, figure.id + ".wide", {960, 300});
   figure.legend = {{legend_line("trend"), "bias"}, {legend_area("interval"), "90 % interval"}};
   if (level.allowable) figure.legend.push_back({legend_area("allowed"), "allowable"});
   if (scene.view.pair_chart.started_at)

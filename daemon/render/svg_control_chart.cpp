@@ -10,7 +10,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kSmall = 60;
+constexpr std::size_t kSmallChartFigure = 60;
 
 struct SignalMark {
   Shape shape;
@@ -257,8 +257,8 @@ std::string draw_ranges(const ChartScene& scene, const Canvas& canvas, const std
       mean ? "Mean moving range " + with_unit(*mean, scene.style) + "." : "No mean moving range yet.");
 }
 
-std::string draw(const ChartScene& scene, const Canvas& canvas, const Figure& figure, const std::string& id,
-                 FigureSize size) {
+std::string draw_chart(const ChartScene& scene, const Canvas& canvas, const Figure& figure,
+                       const std::string& id, FigureSize size) {
   return draw_readings(scene, canvas, figure, id, size) +
          draw_ranges(scene, canvas, id + ".ranges", {size.width, 105});
 }
@@ -342,9 +342,9 @@ Figure control_chart_figure(const ChartScene& scene, FigureDetail detail) {
   figure.summary = chart_words(scene);
   if (scene.view.points.empty()) return figure;
   const bool full = detail == FigureDetail::full;
-  const Canvas canvas = canvas_of(scene.view, full ? scene.view.points.size() : kSmall);
-  figure.drawing = draw(scene, canvas, figure, figure.id, {360, full ? 220.0 : 190.0});
-  if (full) figure.wide = draw(scene, canvas, figure, figure.id + ".wide", {960, 320});
+  const Canvas canvas = canvas_of(scene.view, full ? scene.view.points.size() : kSmallChartFigure);
+  figure.drawing = draw_chart(scene, canvas, figure, figure.id, {360, full ? 220.0 : 190.0});
+  if (full) figure.wide = draw_chart(scene, canvas, figure, figure.id + ".wide", {960, 320});
   add_legend(figure, scene, canvas);
   add_table(figure, scene, canvas);
   if (!full) keep_newest(figure.table, kSmallTable);

@@ -32,7 +32,8 @@ void add_allowable(Plot& plot, const AllowableDifference& allowable, Extent x) {
   plot.line(lower, "allowed-edge");
 }
 
-std::string draw(const ComparisonScene& scene, const Figure& figure, const std::string& id, FigureSize size) {
+std::string draw_differences(const ComparisonScene& scene, const Figure& figure, const std::string& id,
+                             FigureSize size) {
   ExtentOf across, up;
   std::vector<PlotPoint> inside, before;
   for (const PairView& pair : scene.view.pairs) {
@@ -75,8 +76,9 @@ Figure differences_figure(const ComparisonScene& scene, FigureDetail detail) {
   figure.heading = "Differences";
   figure.summary = difference_words(scene);
   if (scene.view.pairs.empty()) return figure;
-  figure.drawing = draw(scene, figure, figure.id, {360, 240});
-  if (detail == FigureDetail::full) figure.wide = draw(scene, figure, figure.id + ".wide", {960, 320});
+  figure.drawing = draw_differences(scene, figure, figure.id, {360, 240});
+  if (detail == FigureDetail::full)
+    figure.wide = draw_differences(scene, figure, figure.id + ".wide", {960, 320});
   figure.legend = {{legend_dot("dots"), "pair"}};
   if (scene.view.difference) {
     figure.legend.push_back({legend_line("fitted"), "mean difference"});

@@ -8,7 +8,8 @@
 namespace agreed {
 namespace {
 
-std::string draw(const ComparisonScene& scene, const Figure& figure, const std::string& id, FigureSize size) {
+std::string draw_pair_chart(const ComparisonScene& scene, const Figure& figure, const std::string& id,
+                            FigureSize size) {
   ExtentOf times, residuals;
   std::vector<PlotPoint> inside, before;
   for (const PairView& pair : scene.view.pairs) {
@@ -52,9 +53,9 @@ Figure pair_chart_figure(const ComparisonScene& scene, FigureDetail detail) {
   figure.id = "pair-chart." + id_part(scene.asked.id);
   figure.heading = "Pair chart: did the relation change?";
   figure.summary = pair_chart_words(scene);
-  figure.drawing = draw(scene, figure, figure.id, {360, 210});
+  figure.drawing = draw_pair_chart(scene, figure, figure.id, {360, 210});
   if (detail == FigureDetail::full && !figure.drawing.empty())
-    figure.wide = draw(scene, figure, figure.id + ".wide", {960, 280});
+    figure.wide = draw_pair_chart(scene, figure, figure.id + ".wide", {960, 280});
   if (!figure.drawing.empty()) {
     figure.legend = {{legend_dot("dots"), "pair"}};
     if (chart.started_at) figure.legend.push_back({legend_line("begun"), "estimated start of the change"});

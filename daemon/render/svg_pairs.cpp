@@ -8,7 +8,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kSmall = 100;
+constexpr std::size_t kSmallPairsFigure = 100;
 constexpr const char* kDiamond = "M13 1L20 8L13 15L6 8Z";
 
 std::string pair_note(const PairView& pair) {
@@ -28,8 +28,8 @@ void add_corridor(Plot& plot, const AllowableDifference& allowable, Extent x) {
   plot.area(upper, lower, "allowed");
 }
 
-std::string draw(const ComparisonScene& scene, const std::vector<PairView>& pairs, const Figure& figure,
-                 FigureSize size) {
+std::string draw_pairs(const ComparisonScene& scene, const std::vector<PairView>& pairs, const Figure& figure,
+                       FigureSize size) {
   ExtentOf values;
   for (const PairView& pair : pairs) {
     values.add(pair.x);
@@ -83,9 +83,9 @@ Figure pairs_figure(const ComparisonScene& scene, FigureDetail detail) {
   figure.heading = "Pairs";
   figure.summary = pairs_words(scene);
   const bool full = detail == FigureDetail::full;
-  const auto pairs = newest(scene.view.pairs, full ? scene.view.pairs.size() : kSmall);
+  const auto pairs = newest(scene.view.pairs, full ? scene.view.pairs.size() : kSmallPairsFigure);
   if (pairs.empty()) return figure;
-  figure.drawing = draw(scene, pairs, figure, {360, full ? 340.0 : 330.0});
+  figure.drawing = draw_pairs(scene, pairs, figure, {360, full ? 340.0 : 330.0});
   add_legend(figure, scene, pairs);
   const int decimals = scene.style.decimals;
   figure.table = {"Pairs, newest first",

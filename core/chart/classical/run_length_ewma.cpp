@@ -10,15 +10,15 @@
 namespace agreed::classical {
 namespace {
 constexpr double kLeastWeight = 0.01;
-constexpr double kSettled = 1e-9;  // of (1 - w)^(2i)
-constexpr double kFarthest = 9;    // standard deviations beyond which a density counts for nothing
-constexpr int kLeastNodes = 40;
-constexpr double kNodesPerSd = 3;
+constexpr double kStartForgotten = 1e-9;  // of (1 - w)^(2i)
+constexpr double kFarthest = 9;           // standard deviations beyond which a density counts for nothing
+constexpr int kLeastEwmaNodes = 40;
+constexpr double kEwmaNodesPerSd = 3;
 
 struct Scheme {
   double weight, width, shift;
   double limit = width * std::sqrt(weight / (2 - weight));
-  int nodes = kLeastNodes + static_cast<int>(std::ceil(kNodesPerSd * 2 * limit / weight));
+  int nodes = kLeastEwmaNodes + static_cast<int>(std::ceil(kEwmaNodesPerSd * 2 * limit / weight));
 
   Scheme(double w, double wide, double off) : weight(w), width(wide), shift(off) {
     if (!(w >= kLeastWeight && w <= 1)) throw std::domain_error("weight: expected 0.01 to 1");
@@ -65,10 +65,10 @@ double ewma_run_length(double weight, double width, double shift) {
   std::vector<double> from = {0.0}, mass = {1.0};  // where E was, and with what chance
   double sum = 0;
   Ewma ewma;
-  while (ewma.forgotten > kSettled) {
+  while (ewma.forgotten > kStartForgotten) {
     for (const double part : mass) sum += part;
     ewma.take(0, weight);
-    const double limit = ewma.forgotten > kSettled ? ewma.limit(weight, width) : scheme.limit;
+    const double limit = ewma.forgotten > kStartForgotten ? ewma.limit(weight, width) : scheme.limit;
     std::vector<double> at(n), next(n, 0.0);
     for (std::size_t j = 0; j < n; ++j) {
       at[j] = limit * unit[j].x;
