@@ -38,6 +38,12 @@ struct RestoreCommand {
   std::filesystem::path config, file;
   bool json = false;
 };
+struct ReportCommand {
+  std::filesystem::path config, out;
+  Instant from{};
+  std::optional<Instant> to;  ///< none: now
+  bool json = false;
+};
 struct TokenCommand {
   std::filesystem::path config;
   Role role = Role::reader;
@@ -69,7 +75,7 @@ struct Say {
 
 using Command =
     std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand,
-                 TokenCommand, SendTestCommand, ResendCommand, StatusCommand, Say>;
+                 ReportCommand, TokenCommand, SendTestCommand, ResendCommand, StatusCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);
