@@ -155,7 +155,8 @@ void add_report(CLI::App& app, ReportCommand& report) {
   add_time(sub, "--from", "its beginning: a date, or a time with its offset", [&report](Instant at) {
     report.from = at;
   })->required();
-  add_time(sub, "--to", "its end, not included; else now", [&report](Instant at) { report.to = at; });
+  add_time(sub, "--to", "its end, not included; now if that is earlier, and without it",
+           [&report](Instant at) { report.to = at; });
   sub.add_option("--out", report.out, "the page, FILE.html; its tables are written beside it as .csv")
       ->required();
   add_json(sub, report.json);

@@ -1,5 +1,6 @@
 #include "daemon/cli/report.hpp"
 
+#include <algorithm>
 #include <fstream>
 #include <functional>
 
@@ -58,7 +59,7 @@ void write_whole(const fs::path& file, const std::function<void(std::ostream&)>&
 }
 
 ReportPeriod period_of(const ReportCommand& command, Instant now) {
-  const ReportPeriod period{command.from, command.to.value_or(now)};
+  const ReportPeriod period{command.from, std::min(command.to.value_or(now), now)};
   if (period.from >= period.to)
     throw WrongUse("The period is empty: it would end at " + to_rfc3339(period.to) + ", not after " +
                    to_rfc3339(period.from) + ".");

@@ -3,6 +3,7 @@
 
 #include "daemon/printable.hpp"
 #include "daemon/render/page_text.hpp"
+#include "daemon/render/page_words.hpp"
 #include "daemon/report/report_page.hpp"
 
 namespace agreed {
@@ -34,6 +35,13 @@ std::string end_words(const AlertThen& alert) {
   return out;
 }
 
+std::string opened_words(const Alert& alert) {
+  std::string out = time_words(alert.opened_at);
+  if (alert.started_at || alert.started_between)
+    out += "; begun " + beginning_words(alert.started_at, alert.started_between);
+  return out;
+}
+
 std::string first_line(const std::string& text) {
   return text.substr(0, text.find('\n'));
 }
@@ -56,7 +64,7 @@ DataTable alerts_table(const PeriodRecord& record) {
     const AlertThen alert = alert_at_end(stored, record.period);
     table.rows.push_back({std::to_string(alert.then.id), to_string(alert.then.kind),
                           subject_words(alert.then.subject), to_string(alert.then.severity),
-                          time_words(alert.then.opened_at), first_line(alert.then.text),
+                          opened_words(alert.then), first_line(alert.then.text),
                           acknowledged_words(alert.then), end_words(alert)});
   }
   return table;
