@@ -20,6 +20,7 @@ main { max-width: 62rem; }
 .scroll { max-height: none; overflow: visible; }
 .scroll th, .scroll td { white-space: normal; }
 table { width: 100%; font-size: .82rem; }
+.together figcaption { display: none; }  /* the words above say the same */
 .facts th { width: 14rem; }
 .sign { display: grid; grid-template-columns: 1fr 1fr; gap: 2.5rem 2rem; margin: 2.5rem 0 1rem; break-inside: avoid; }
 .sign p { border-top: 1px solid var(--frame); padding-top: .2rem; color: var(--quiet); font-size: .85rem; }
@@ -29,7 +30,11 @@ table { width: 100%; font-size: .82rem; }
   table { font-size: 8pt; } th, td { padding: .12rem .5rem .12rem 0; }
   thead { display: table-header-group; }
   details { display: none; }
-  svg text { font-size: 17px; } svg .tick, svg .axis, svg .side { font-size: 16px; }
+  .together { break-inside: avoid; } .together p { font-size: 9pt; margin: .15rem 0; max-width: none; }
+  figure svg[role] { max-width: 11cm; } .wide svg[role] { max-width: none; }
+  .together .wide svg[role] { max-width: 15cm; }
+  .wide svg text { font-size: 17px; } .wide svg .tick, .wide svg .axis, .wide svg .side { font-size: 16px; }
+  figcaption, .legend, .legend li { font-size: 8.5pt; }
 }
 )css";
 
@@ -161,7 +166,7 @@ std::string chart_section(const PeriodRecord& record, ChartIndex index) {
   const ChartScene scene = chart_scene(record.snapshot, index);
   const ChartCourse& course = record.course.charts[index.value];
   const ChartView part = of_period(course, record.period);
-  std::string out = "<section><h3>" + escaped(scene.name()) + "</h3>";
+  std::string out = "<section class=\"together\"><h3>" + escaped(scene.name()) + "</h3>";
   if (course.readings == 0) return out + paragraph("No reading in this period.") + "</section>";
   out += paragraph(counted(static_cast<double>(course.readings), "reading", "readings") + ". " +
                    chart_states(course));

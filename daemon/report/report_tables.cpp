@@ -56,16 +56,15 @@ std::string about_words(const JournalIntervention& done) {
 }  // namespace
 
 DataTable alerts_table(const PeriodRecord& record) {
-  DataTable table{
-      "Alerts, oldest first",
-      {"alert", "kind", "about", "severity", "opened", "what was told", "acknowledged", "resolved"},
-      {}};
+  DataTable table{"Alerts, oldest first",
+                  {"alert", "kind", "about", "opened", "what was told", "acknowledged", "resolved"},
+                  {}};
   for (const AlertRecord& stored : record.alerts) {
     const AlertThen alert = alert_at_end(stored, record.period);
-    table.rows.push_back({std::to_string(alert.then.id), to_string(alert.then.kind),
-                          subject_words(alert.then.subject), to_string(alert.then.severity),
-                          opened_words(alert.then), first_line(alert.then.text),
-                          acknowledged_words(alert.then), end_words(alert)});
+    table.rows.push_back({std::to_string(alert.then.id),
+                          spaced(to_string(alert.then.kind)) + ", " + to_string(alert.then.severity),
+                          subject_words(alert.then.subject), opened_words(alert.then),
+                          first_line(alert.then.text), acknowledged_words(alert.then), end_words(alert)});
   }
   return table;
 }
