@@ -1,7 +1,7 @@
 """Every example that is printed is run: those of each --help, and the shell blocks of README and deploy/*.md.
 
 They are taken from where they stand, so a new command or chapter is tested by being written. The places they name are given to
-a site made for them: /etc/agreed and the folder one is in are its folder, /backup a folder there, 127.0.0.1:7480 where its
+a site made for them: /etc/agreed and the folder one is in are its folder, /srv/agreed and /mnt/lab its inboxes, /backup a folder there, 127.0.0.1:7480 where its
 service answers. `agreed run` is ended once it is ready, as Ctrl-C would."""
 import json
 import os
@@ -123,6 +123,8 @@ class Examples(SiteTest):
     def given(self, command):
         """The command with this site's places in it."""
         command = command.replace("/etc/agreed/", f"{self.site.folder}/").replace("/backup/", f"{self.site.folder}/backup/")
+        for folder in ("/srv/agreed/", "/mnt/lab/"):
+            command = command.replace(folder, f"{self.site.folder}/drop/")
         command = command.replace("http://127.0.0.1:7480", self.site.base)
         command = command.replace("msg_0123456789abcdef0123456789abcdef", self.message)
         if "812:3f0c..." in command:
@@ -186,3 +188,17 @@ class Examples(SiteTest):
                         self.run_example(command, document.name)
         self.assertGreater(ran, 10)
         self.assertEqual(set(NOT_RUN) - used, set(), "these are in no document any more")
+
+    def test_every_alert_kind_has_its_chapter_and_there_is_none_besides(self):
+        source = (ROOT / "core" / "base" / "finding.cpp").read_text()
+        kinds = re.findall(r'"([a-z_]+)"', re.search(r"kKinds = \{(.*?)\}", source, re.S)[1])
+        chapters = re.findall(r"^### (\w+)\n((?:(?!^#).*\n)+)", (ROOT / "deploy" / "alerts.md").read_text(), re.M)
+        self.assertGreater(len(kinds), 10)
+        self.assertEqual(sorted(name for name, _ in chapters), sorted(kinds))
+        for name, text in chapters:
+            self.assertIn("**Do:**", text, name)
+
+    def test_every_document_that_is_linked_is_there(self):
+        for document in DOCUMENTS:
+            for link in re.findall(r"\]\(([^)#:]+)\)", document.read_text()):
+                self.assertTrue((document.parent / link).exists(), f"{document.name}: {link}")
