@@ -58,8 +58,8 @@ std::vector<Intervention> ReaderHistory::interventions() {
 std::vector<Event> ReaderHistory::events_from(Instant from) {
   std::vector<Event> events;
   for (std::uint32_t i = 0; i < settings_.charts.size(); ++i)
-    for (CheckReading& reading : checks(ChartIndex{i}))
-      if (reading.measured_at >= from) events.emplace_back(std::move(reading));
+    for (const CheckReading& reading : checks(ChartIndex{i}))
+      if (reading.measured_at >= from) events.emplace_back(reading);
   std::set<std::pair<AnalyzerIndex, MeasurandIndex>> sides;
   for (const ComparisonSettings& comparison : settings_.comparisons)
     for (const AnalyzerIndex analyzer : {comparison.x, comparison.y})
