@@ -10,18 +10,6 @@ int rank(const Event& event) {
   return std::holds_alternative<CheckReading>(event) ? 1 : 2;
 }
 
-Instant time_of(const Event& event) {
-  if (const auto* intervention = std::get_if<Intervention>(&event)) return intervention->at;
-  return std::visit(
-      [](const auto& e) {
-        if constexpr (requires { e.measured_at; })
-          return e.measured_at;
-        else
-          return e.at;
-      },
-      event);
-}
-
 bool before(const CheckReading& a, const CheckReading& b) {
   return std::tie(a.analyzer, a.standard, a.measurand, a.replicate) <
          std::tie(b.analyzer, b.standard, b.measurand, b.replicate);
@@ -40,6 +28,17 @@ AnalyzerIndex analyzer_of(const Event& event) {
 }
 
 }  // namespace
+
+Instant time_of(const Event& event) {
+  return std::visit(
+      [](const auto& e) {
+        if constexpr (requires { e.measured_at; })
+          return e.measured_at;
+        else
+          return e.at;
+      },
+      event);
+}
 
 bool happens_before(const Event& a, const Event& b) {
   const auto time_a = time_of(a), time_b = time_of(b);

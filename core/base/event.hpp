@@ -58,6 +58,9 @@ struct Intervention {
 
 using Event = std::variant<CheckReading, SplitReading, Intervention>;
 
+/// When it was measured or done.
+[[nodiscard]] Instant time_of(const Event& event);
+
 /// The fold order: time, then interventions before readings (what was done at a moment holds for what was
 /// measured at it), analyzer, checks before splits, item, measurand, replicate.
 [[nodiscard]] bool happens_before(const Event& a, const Event& b);

@@ -8,12 +8,6 @@
 namespace agreed {
 namespace {
 
-Instant time_of(const Event& event) {
-  if (const auto* check = std::get_if<CheckReading>(&event)) return check->measured_at;
-  if (const auto* split = std::get_if<SplitReading>(&event)) return split->measured_at;
-  return std::get<Intervention>(event).at;
-}
-
 Instant oldest_of(const SampleRows& rows) {
   Instant oldest{Duration::max()};
   if (!rows.x.empty()) oldest = std::min(oldest, rows.x.front().at);

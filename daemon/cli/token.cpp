@@ -14,7 +14,7 @@ void say_no_tokens_file(const std::filesystem::path& config) {
   fmt::print(stderr,
              "agreed: {} names no tokens file: set access.tokens_file, for example\n"
              "  access: {{tokens_file: tokens}}\n"
-             "and start the service anew; no token was made\n",
+             "and reload (SIGHUP) or start the service; no token was made\n",
              config.string());
 }
 

@@ -72,6 +72,14 @@ std::string places(std::size_t count) {
   return text;
 }
 
+/// A query whose two places are a period's ends.
+SQLite::Statement of_period(SQLite::Database& database, const std::string& sql, Instant from, Instant to) {
+  SQLite::Statement rows(database, sql);
+  rows.bind(1, milliseconds(from));
+  rows.bind(2, milliseconds(to));
+  return rows;
+}
+
 /// Alerts the query asks for, newest first, and the body of their newest transition.
 std::vector<std::pair<std::int64_t, std::string>> select_alerts(SQLite::Database& database,
                                                                 const AlertQuery& query) {
@@ -241,13 +249,12 @@ std::vector<FileRow> JournalReader::files(const FileQuery& query) {
 std::vector<AlertRecord> JournalReader::alerts_between(Instant from, Instant to) {
   return journal::translating(impl_->file, [&] {
     const Moment moment(*impl_->database);
-    SQLite::Statement rows(
+    SQLite::Statement rows = of_period(
         *impl_->database,
         "SELECT alert, body FROM alert_transitions t WHERE id = (SELECT max(id) FROM alert_transitions u "
         "WHERE u.alert = t.alert) AND (t.at >= ? OR t.state <> 'resolved') AND EXISTS (SELECT 1 FROM "
-        "alert_transitions v WHERE v.alert = t.alert AND v.at < ?) ORDER BY alert");
-    rows.bind(1, milliseconds(from));
-    rows.bind(2, milliseconds(to));
+        "alert_transitions v WHERE v.alert = t.alert AND v.at < ?) ORDER BY alert",
+        from, to);
     std::vector<AlertRecord> found;
     while (rows.executeStep())
       found.push_back(
@@ -259,11 +266,11 @@ std::vector<AlertRecord> JournalReader::alerts_between(Instant from, Instant to)
 std::vector<FileRow> JournalReader::files_between(Instant from, Instant to) {
   return journal::translating(impl_->file, [&] {
     const Moment moment(*impl_->database);
-    SQLite::Statement rows(*impl_->database, std::string(kFiles) +
-                                                 "LEFT JOIN file_outcomes o ON o.file = f.id WHERE "
-                                                 "b.committed_at >= ? AND b.committed_at < ? ORDER BY f.id");
-    rows.bind(1, milliseconds(from));
-    rows.bind(2, milliseconds(to));
+    SQLite::Statement rows = of_period(*impl_->database,
+                                       std::string(kFiles) +
+                                           "LEFT JOIN file_outcomes o ON o.file = f.id WHERE "
+                                           "b.committed_at >= ? AND b.committed_at < ? ORDER BY f.id",
+                                       from, to);
     std::vector<FileRow> found;
     while (rows.executeStep()) found.push_back(file_row(*impl_->database, rows));
     return found;
@@ -273,13 +280,12 @@ std::vector<FileRow> JournalReader::files_between(Instant from, Instant to) {
 void JournalReader::each_rejected_between(Instant from, Instant to,
                                           const std::function<void(RejectedRow&&)>& take) {
   journal::translating(impl_->file, [&] {
-    SQLite::Statement rows(
-        *impl_->database,
-        "SELECT r.file, r.line, r.field, r.text, r.reason FROM rejected_rows r JOIN files f "
-        "ON f.id = r.file JOIN batches b ON b.sequence = f.batch WHERE b.committed_at >= ? "
-        "AND b.committed_at < ? ORDER BY r.id");
-    rows.bind(1, milliseconds(from));
-    rows.bind(2, milliseconds(to));
+    SQLite::Statement rows =
+        of_period(*impl_->database,
+                  "SELECT r.file, r.line, r.field, r.text, r.reason FROM rejected_rows r JOIN files f "
+                  "ON f.id = r.file JOIN batches b ON b.sequence = f.batch WHERE b.committed_at >= ? "
+                  "AND b.committed_at < ? ORDER BY r.id",
+                  from, to);
     while (rows.executeStep()) take(rejected_row(rows));
   });
 }

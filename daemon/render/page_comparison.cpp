@@ -42,10 +42,6 @@ std::string robust_words(const ComparisonScene& scene) {
   return out + ".";
 }
 
-std::string paragraph(const std::string& words) {
-  return words.empty() ? words : "<p>" + flowing_html(words) + "</p>";
-}
-
 std::string look_back_words(const std::optional<LookBackView>& look_back) {
   if (!look_back) return {};
   std::string out =
@@ -85,17 +81,17 @@ DataTable level_table(const ComparisonScene& scene) {
 
 std::string change_html(const ComparisonView& view) {
   if (!view.diagnosis) return {};
-  return "<section><h2>Which one moved</h2>" + paragraph(view.diagnosis->evidence) +
-         paragraph(look_back_words(view.look_back)) + "</section>";
+  return "<section><h2>Which one moved</h2>" + paragraph_html(view.diagnosis->evidence) +
+         paragraph_html(look_back_words(view.look_back)) + "</section>";
 }
 
 std::string basis_html(const ComparisonScene& scene) {
-  return paragraph(error_words(scene)) + paragraph(scatter_words(scene)) + paragraph(range_words(scene)) +
-         paragraph(robust_words(scene));
+  return paragraph_html(error_words(scene)) + paragraph_html(scatter_words(scene)) +
+         paragraph_html(range_words(scene)) + paragraph_html(robust_words(scene));
 }
 
 std::string window_html(const ComparisonScene& scene) {
-  return paragraph(window_words(scene)) + warnings_html(scene.view.warnings);
+  return paragraph_html(window_words(scene)) + warnings_html(scene.view.warnings);
 }
 
 std::string comparison_html(const PageInput& input, ComparisonIndex index, const PageRange& range) {
@@ -108,8 +104,8 @@ std::string comparison_html(const PageInput& input, ComparisonIndex index, const
   subject.comparison = scene.asked.id;
   out += alerts_of_html(input, subject) + change_html(scene.view);
   out += "<section><h2>At the decision levels</h2>";
-  out +=
-      scene.view.levels.empty() ? paragraph("There is nothing to show yet.") : table_html(level_table(scene));
+  out += scene.view.levels.empty() ? paragraph_html("There is nothing to show yet.")
+                                   : table_html(level_table(scene));
   const std::vector<Instant> times = times_of(scene.view);
   const RangeCut cut = cut_of(times, range);
   out += range_html(comparison_path(scene.asked), "pairs", "pairs", times, range, cut);
@@ -134,9 +130,10 @@ std::string chart_html(const PageInput& input, ChartIndex index, const PageRange
   if (!fresh.words.empty())
     out += std::string("<p class=\"age") + (fresh.overdue ? " overdue" : "") + "\">" +
            flowing_html(fresh.words) + "</p>";
-  out += paragraph(chart_words(scene)) + paragraph(precision_words(scene)) +
-         paragraph(censored_words(scene)) + paragraph(replicates_words(scene)) +
-         paragraph(reference_words(scene)) + paragraph(effects_words(scene)) + warnings_html(warnings);
+  out += paragraph_html(chart_words(scene)) + paragraph_html(precision_words(scene)) +
+         paragraph_html(censored_words(scene)) + paragraph_html(replicates_words(scene)) +
+         paragraph_html(reference_words(scene)) + paragraph_html(effects_words(scene)) +
+         warnings_html(warnings);
   Subject subject;
   subject.analyzer = scene.analyzer;
   subject.standard = scene.standard;

@@ -30,10 +30,13 @@ void keep_newest(DataTable& table, std::size_t most) {
 std::string table_html(const DataTable& table) {
   // Tables that need more room than there is scroll by themselves; the focus lets the keyboard scroll them.
   std::string out = "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"" +
-                    escaped(table.caption) + "\"><table><caption>" + escaped(table.caption) +
-                    "</caption><thead><tr>";
-  for (const std::string& head : table.heads) out += "<th scope=\"col\">" + escaped(head) + "</th>";
-  out += "</tr></thead><tbody>";
+                    escaped(table.caption) + "\"><table><caption>" + escaped(table.caption) + "</caption>";
+  if (!table.heads.empty()) {
+    out += "<thead><tr>";
+    for (const std::string& head : table.heads) out += "<th scope=\"col\">" + escaped(head) + "</th>";
+    out += "</tr></thead>";
+  }
+  out += "<tbody>";
   for (const auto& row : table.rows) {
     out += "<tr>";
     for (std::size_t i = 0; i < row.size(); ++i)

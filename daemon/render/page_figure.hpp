@@ -5,7 +5,7 @@
 
 namespace agreed {
 
-/// Cells are plain text; the first column heads its row.
+/// Cells are plain text; the first column heads its row. `heads` may be empty: of facts, a row each.
 struct DataTable {
   std::string caption;
   std::vector<std::string> heads;

@@ -68,6 +68,10 @@ std::string_view severity_icon(Severity severity) {
 
 }  // namespace
 
+std::string paragraph_html(std::string_view words) {
+  return words.empty() ? std::string() : "<p>" + flowing_html(words) + "</p>";
+}
+
 std::string link_html(const std::string& path, std::string_view words) {
   return "<a href=\"" + escaped(path) + "\">" + escaped(words) + "</a>";
 }

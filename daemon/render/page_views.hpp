@@ -46,6 +46,8 @@ struct PageLife {
 /// Leads to signing in and from there back to where we are.
 [[nodiscard]] std::string sign_in_link_html(const PageInput& input, std::string_view words);
 
+/// Empty for no words.
+[[nodiscard]] std::string paragraph_html(std::string_view words);
 [[nodiscard]] std::string link_html(const std::string& path, std::string_view words);
 
 /// One of the ways a list may be cut: what its parameter is, and what it is called.

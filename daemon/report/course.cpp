@@ -13,17 +13,6 @@ namespace {
 // A view holds the newest 500 pairs; they are read off before that many new ones came.
 constexpr std::int64_t kReadOff = 400;
 
-Instant time_of(const Event& event) {
-  return std::visit(
-      [](const auto& e) {
-        if constexpr (requires { e.measured_at; })
-          return e.measured_at;
-        else
-          return e.at;
-      },
-      event);
-}
-
 template <class State>
 void go_on(std::vector<Spell<State>>& spells, State state, Instant at) {
   if (spells.back().state == state) return;

@@ -16,6 +16,10 @@ std::vector<RecordedConfiguration> in_use(std::vector<RecordedConfiguration> all
   auto first = all.end();
   while (first != all.begin() && (first == all.end() || first->at > period.from)) --first;
   all.erase(all.begin(), first);
+  const auto same = [](const RecordedConfiguration& a, const RecordedConfiguration& b) {
+    return a.sha256 == b.sha256;  // recorded at every start
+  };
+  all.erase(std::unique(all.begin(), all.end(), same), all.end());
   return all;
 }
 

@@ -38,16 +38,12 @@ table { width: 100%; font-size: .82rem; }
 }
 )css";
 
-std::string paragraph(const std::string& words) {
-  return words.empty() ? words : "<p>" + flowing_html(words) + "</p>";
-}
-
 std::string section(std::string_view heading, const std::string& contents) {
   return "<section><h2>" + escaped(heading) + "</h2>" + contents + "</section>";
 }
 
 std::string table_or(const DataTable& table, std::string_view without) {
-  return table.rows.empty() ? paragraph(std::string(without)) : table_html(table);
+  return table.rows.empty() ? paragraph_html(std::string(without)) : table_html(table);
 }
 
 std::string period_words(const ReportPeriod& period) {
@@ -64,7 +60,7 @@ std::string proof_words(const JournalProof& proof) {
 }
 
 std::string facts_html(const PeriodRecord& record, const std::vector<std::string>& tables) {
-  DataTable facts{"This record", {"", ""}, {}};
+  DataTable facts{"This record", {}, {}};
   const auto add = [&](std::string what, std::string is) {
     facts.rows.push_back({std::move(what), std::move(is)});
   };
@@ -77,10 +73,7 @@ std::string facts_html(const PeriodRecord& record, const std::vector<std::string
   std::string files;
   for (const std::string& name : tables) files += (files.empty() ? "" : ", ") + printable(name);
   add("Data", files);
-  std::string html = table_html(facts);
-  const std::string head = "<thead><tr><th scope=\"col\"></th><th scope=\"col\"></th></tr></thead>";
-  if (const auto at = html.find(head); at != std::string::npos) html.erase(at, head.size());
-  return "<div class=\"facts\">" + html + "</div>";
+  return "<div class=\"facts\">" + table_html(facts) + "</div>";
 }
 
 DataTable summary_table(const PeriodRecord& record) {
@@ -138,15 +131,16 @@ std::string comparison_section(const PeriodRecord& record, ComparisonIndex index
   out += table_or(level_table(scene), "No decision levels are configured.");
   out += "<div class=\"figures broad\">" + figure_html(verdicts_figure(scene, course, record.period), 3);
   if (course.pairs.empty()) {
-    out += "</div>" + paragraph("No pair was measured in this period.");
+    out += "</div>" + paragraph_html("No pair was measured in this period.");
     return out + change_html(scene.view) + "</section>";
   }
   for (std::size_t level = 0; level < part.levels.size(); ++level)
     out += figure_html(bias_figure(drawn, level, FigureDetail::full), 3);
   out += "</div><h3>The pairs</h3>" + window_html(scene);
   if (course.pairs.size() > part.pairs.size())
-    out += paragraph("Of " + std::to_string(course.pairs.size()) + " pairs of the period the newest " +
-                     std::to_string(part.pairs.size()) + " are drawn; the tables beside this page hold all.");
+    out += paragraph_html("Of " + std::to_string(course.pairs.size()) + " pairs of the period the newest " +
+                          std::to_string(part.pairs.size()) +
+                          " are drawn; the tables beside this page hold all.");
   out += "<div class=\"figures broad\">" + figure_html(pairs_figure(drawn, FigureDetail::full), 3) +
          figure_html(differences_figure(drawn, FigureDetail::full), 3) +
          figure_html(pair_chart_figure(drawn, FigureDetail::full), 3) + "</div>";
@@ -167,14 +161,14 @@ std::string chart_section(const PeriodRecord& record, ChartIndex index) {
   const ChartCourse& course = record.course.charts[index.value];
   const ChartView part = of_period(course, record.period);
   std::string out = "<section class=\"together\"><h3>" + escaped(scene.name()) + "</h3>";
-  if (course.readings == 0) return out + paragraph("No reading in this period.") + "</section>";
-  out += paragraph(counted(static_cast<double>(course.readings), "reading", "readings") + ". " +
-                   chart_states(course));
-  out += paragraph("At its end: " + chart_words(scene)) + paragraph(precision_words(scene)) +
-         paragraph(replicates_words(scene)) + paragraph(reference_words(scene)) +
-         paragraph(effects_words(scene)) + warnings_html(scene.view.warnings);
+  if (course.readings == 0) return out + paragraph_html("No reading in this period.") + "</section>";
+  out += paragraph_html(counted(static_cast<double>(course.readings), "reading", "readings") + ". " +
+                        chart_states(course));
+  out += paragraph_html("At its end: " + chart_words(scene)) + paragraph_html(precision_words(scene)) +
+         paragraph_html(replicates_words(scene)) + paragraph_html(reference_words(scene)) +
+         paragraph_html(effects_words(scene)) + warnings_html(scene.view.warnings);
   if (static_cast<std::size_t>(course.readings) > part.points.size() && part.points.size() >= 500)
-    out += paragraph("The newest " + std::to_string(part.points.size()) + " are drawn.");
+    out += paragraph_html("The newest " + std::to_string(part.points.size()) + " are drawn.");
   return out + "<div class=\"figures broad\">" +
          figure_html(control_chart_figure(with_view(scene, part), FigureDetail::full), 4) +
          "</div></section>";
@@ -197,7 +191,7 @@ std::string configurations_html(const PeriodRecord& record) {
   std::string out =
       table_or(configurations_table(record), "The service did not run before the period's end.");
   if (std::ranges::any_of(record.configurations, other))
-    out += paragraph(
+    out += paragraph_html(
         "Not all of them are the configuration this record was made with. Charts, fits and verdicts above "
         "show "
         "the history as that one sees it; the alerts stand as they were told then.");
@@ -231,9 +225,9 @@ std::string report_page(const PeriodRecord& record, const std::vector<std::strin
   for (std::uint32_t i = 0; i < record.course.charts.size(); ++i)
     charts += chart_section(record, ChartIndex{i});
   out += "<section class=\"fresh\"><h2>Check standards</h2>" +
-         (charts.empty() ? paragraph("None are configured.") : charts) + "</section>";
+         (charts.empty() ? paragraph_html("None are configured.") : charts) + "</section>";
   out += section("What was received",
-                 paragraph(intake_words(record)) +
+                 paragraph_html(intake_words(record)) +
                      table_or(rejected_files_table(record), "No row was rejected.") +
                      (record.rejected.empty() ? "" : table_html(rejected_rows_table(record))));
   out += section("Configurations", configurations_html(record));
