@@ -7,6 +7,7 @@
 #include <CLI/CLI.hpp>
 
 #include "config/nearest.hpp"
+#include "core/base/rfc3339.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/version.hpp"
 
@@ -214,6 +215,53 @@ void add_status(CLI::App& app, StatusCommand& status) {
       "Example:\n  agreed status /etc/agreed/agreed.yaml\n  agreed status http://127.0.0.1:7480 --json");
 }
 
+/// A date is the midnight in UTC with which it begins.
+Instant time_argument(const std::string& option, const std::string& text) {
+  constexpr std::size_t kDateLength = 10;
+  const auto parsed = parse_rfc3339(text.size() == kDateLength ? text + "T00:00:00Z" : text);
+  if (!parsed || !parsed->offset_given)
+    throw CLI::ValidationError(option,
+                               "expected a date (2026-01-05) or a time with its offset "
+                               "(2026-01-05T06:00:00Z), found '" +
+                                   text + "'");
+  return parsed->at;
+}
+
+Period period_argument(const std::string& option, const std::vector<std::string>& ends) {
+  const Period period{time_argument(option, ends.at(0)), time_argument(option, ends.at(1))};
+  if (period.first >= period.last)
+    throw CLI::ValidationError(option, "the first time must be before the second");
+  return period;
+}
+
+void add_replay(CLI::App& app, ReplayCommand& replay) {
+  CLI::App& sub = add_command(app, "replay",
+                              "runs old readings through this configuration: which alerts it would have "
+                              "raised, beside those raised then",
+                              replay.config);
+  sub.add_option("--from", replay.from,
+                 "a journal (a backup, a state folder), or a folder with drop files in a folder for each "
+                 "analyzer; else the journal of the configuration")
+      ->type_name("DIR_OR_DATABASE");
+  sub.add_option_function<std::vector<std::string>>(
+         "--between",
+         [&replay](const std::vector<std::string>& ends) {
+           replay.between = period_argument("--between", ends);
+         },
+         "only alerts opened from A on and before B; what was measured before A is learned from")
+      ->expected(2)
+      ->type_name("A B");
+  add_json(sub, replay.json);
+  sub.footer(
+      "Nothing is written; the service may run. Every reading counts as received when it was measured; what "
+      "was\n"
+      "taken back was never there. Two alerts of one kind and subject within a day of each other match.\n"
+      "Exit status: 0 done, 1 there was nothing to replay, 2 wrong use or configuration, 3 it could not be "
+      "read.\n"
+      "Example:\n  agreed replay trial.yaml --from /var/lib/agreed --between 2026-01-01 2026-04-01\n"
+      "  agreed replay trial.yaml --from drop-files-of-2025 --json");
+}
+
 }  // namespace
 
 Command parse_command_line(std::span<const std::string> arguments) {
@@ -248,6 +296,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_resend(app, resend);
   StatusCommand status;
   add_status(app, status);
+  ReplayCommand replay;
+  add_replay(app, replay);
 
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
@@ -275,6 +325,7 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("send-test")) return send_test;
   if (app.got_subcommand("resend")) return resend;
   if (app.got_subcommand("status")) return status;
+  if (app.got_subcommand("replay")) return replay;
   return example;
 }
 
