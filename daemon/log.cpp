@@ -5,15 +5,21 @@
 
 #include <spdlog/sinks/stdout_sinks.h>
 #include <spdlog/spdlog.h>
+#include <sys/stat.h>
+#include <unistd.h>
 
 #include "daemon/printable.hpp"
 
 namespace agreed {
 namespace {
 
-/// systemd reads "<priority>" at the start of a line and stamps it itself (sd-daemon(3)).
+/// systemd reads "<priority>" at the start of a line and stamps it itself (sd-daemon(3)), but only of the
+/// stream whose device and inode it names: the error output may have been led elsewhere (systemd.exec(5)).
 bool under_systemd() {
-  return std::getenv("JOURNAL_STREAM") != nullptr;  // NOLINT(concurrency-mt-unsafe): nobody here sets any
+  const char* named = std::getenv("JOURNAL_STREAM");  // NOLINT(concurrency-mt-unsafe): nobody here sets any
+  struct stat stream {};
+  if (named == nullptr || ::fstat(STDERR_FILENO, &stream) != 0) return false;
+  return named == fmt::format("{}:{}", stream.st_dev, stream.st_ino);
 }
 
 std::shared_ptr<spdlog::logger> make_logger() {

@@ -8,6 +8,7 @@
 #include "daemon/cli/example.hpp"
 #include "daemon/cli/journal_commands.hpp"
 #include "daemon/cli/replay.hpp"
+#include "daemon/cli/report.hpp"
 #include "daemon/cli/resend.hpp"
 #include "daemon/cli/run.hpp"
 #include "daemon/cli/send_test.hpp"
@@ -26,6 +27,7 @@ struct Doer {
   int operator()(const agreed::VerifyCommand& command) const { return agreed::verify_command(command); }
   int operator()(const agreed::BackupCommand& command) const { return agreed::backup_command(command); }
   int operator()(const agreed::RestoreCommand& command) const { return agreed::restore_command(command); }
+  int operator()(const agreed::ReportCommand& command) const { return agreed::report_command(command); }
   int operator()(const agreed::TokenCommand& command) const { return agreed::token_command(command); }
   int operator()(const agreed::SendTestCommand& command) const { return agreed::send_test_command(command); }
   int operator()(const agreed::ResendCommand& command) const { return agreed::resend_command(command); }

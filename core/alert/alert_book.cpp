@@ -94,6 +94,17 @@ std::vector<AlertTransition> AlertBook::reconcile(std::span<const Finding> condi
   return transitions;
 }
 
+std::vector<AlertTransition> AlertBook::drop_unwatched(
+    const std::function<bool(AlertKind, const Subject&)>& watched, std::string_view reason, Instant now) {
+  std::vector<AlertTransition> transitions;
+  for (auto& [id, alert] : alerts_) {
+    if (!is_current(alert) || folded_by_the_monitor(alert->kind) || resolves_on_acknowledgement(alert->kind))
+      continue;
+    if (!watched(alert->kind, alert->subject)) transitions.push_back(resolve(alert, reason, now));
+  }
+  return transitions;
+}
+
 std::vector<AlertTransition> AlertBook::admit_outliers(const std::string& comparison,
                                                        std::span<const std::string> still_set_aside,
                                                        Instant now) {

@@ -1,6 +1,7 @@
 #pragma once
 // The book of alerts: one alert per (kind, subject). Pure: findings, acknowledgements and the time in,
 // transitions out; whoever holds it stores and sends them.
+#include <functional>
 #include <map>
 #include <memory>
 #include <span>
@@ -44,6 +45,12 @@ class AlertBook {
                                                        std::span<const Subject> streams,
                                                        std::string_view reason, Instant now,
                                                        bool news = true);
+
+  /// After a change of the configuration: resolves with `reason` the alerts of what is no longer watched.
+  /// Only kinds that the clock, the disk and the endpoints open are asked for: the others are for reconcile,
+  /// or for whoever acknowledges them.
+  [[nodiscard]] std::vector<AlertTransition> drop_unwatched(
+      const std::function<bool(AlertKind, const Subject&)>& watched, std::string_view reason, Instant now);
 
   /// Resolves the pair_outlier alert of a comparison if none of its samples is still set aside (reason
   /// `late_data`).

@@ -53,6 +53,15 @@ Finding came(AlertKind kind, Subject subject, Instant at) {
   return {.kind = kind, .subject = std::move(subject), .holds = false, .at = at, .resolved_reason = kCame};
 }
 
+/// The position of the one with this id.
+template <class Index, class Item>
+std::optional<Index> place_of(const std::vector<Item>& items, const std::string& id) {
+  const auto found =
+      std::find_if(items.begin(), items.end(), [&](const Item& item) { return item.id == id; });
+  if (found == items.end()) return std::nullopt;
+  return Index{static_cast<std::uint32_t>(found - items.begin())};
+}
+
 struct Cadence {
   StandardIndex standard;
   Duration every;
@@ -97,6 +106,24 @@ Arrivals::Arrivals(const Settings& settings, Instant start)
       analyzers_(settings.analyzers.size(), {start, false}),
       comparisons_(settings.comparisons.size(), {start, false}) {}
 
+Arrivals::Arrivals(const Settings& settings, Instant start, const Arrivals& before, const Settings& then)
+    : Arrivals(settings, start) {
+  std::map<AnalyzerIndex, AnalyzerIndex> analyzers;  // then -> now
+  for (std::uint32_t i = 0; i < then.analyzers.size(); ++i)
+    if (const auto now = place_of<AnalyzerIndex>(settings.analyzers, then.analyzers[i].id)) {
+      analyzers_[now->value] = before.analyzers_.at(i);
+      analyzers[{i}] = *now;
+    }
+  for (std::uint32_t i = 0; i < then.comparisons.size(); ++i)
+    if (const auto now = place_of<ComparisonIndex>(settings.comparisons, then.comparisons[i].id))
+      comparisons_[now->value] = before.comparisons_.at(i);
+  for (const auto& [of, came] : before.standards_) {
+    const auto analyzer = analyzers.find(of.first);
+    const auto standard = place_of<StandardIndex>(settings.standards, then.of(of.second).id);
+    if (analyzer != analyzers.end() && standard) standards_[{analyzer->second, *standard}] = came;
+  }
+}
+
 void Arrivals::add(const Event& event, Instant now) {
   if (const auto* check = std::get_if<CheckReading>(&event)) {
     analyzers_.at(check->analyzer.value) = {now, true};
@@ -113,6 +140,17 @@ void Arrivals::add_pair(ComparisonIndex comparison, Instant now) {
 LastCame Arrivals::standard(AnalyzerIndex analyzer, StandardIndex standard) const {
   const auto found = standards_.find({analyzer, standard});
   return found == standards_.end() ? LastCame{start_, false} : found->second;
+}
+
+bool has_cadence(const Settings& settings, AlertKind kind, const Subject& subject) {
+  if (kind == AlertKind::pairs_overdue) {
+    const auto index = place_of<ComparisonIndex>(settings.comparisons, subject.comparison);
+    return index && settings.of(*index).overdue;
+  }
+  const auto analyzer = place_of<AnalyzerIndex>(settings.analyzers, subject.analyzer);
+  if (!analyzer) return false;
+  if (kind == AlertKind::check_overdue) return !cadences_of(settings, *analyzer).empty();
+  return kind == AlertKind::results_silent && shortest_cadence(settings, *analyzer).has_value();
 }
 
 std::vector<Finding> overdue_findings(const Settings& settings, const OverduePolicy& policy,

@@ -28,6 +28,9 @@ struct LastCame {
 class Arrivals {
  public:
   Arrivals(const Settings& settings, Instant start);
+  /// Those of `before`, kept under `then`, under other settings: what has the same id came when it did; what
+  /// is new counts from `start`.
+  Arrivals(const Settings& settings, Instant start, const Arrivals& before, const Settings& then);
   /// A reading was taken in at `now`.
   void add(const Event& event, Instant now);
   /// A pair of this comparison was made at `now`.
@@ -47,6 +50,10 @@ struct OverduePolicy {
   double patience = 1.5;  ///< times the cadence
   std::vector<QuietHours> quiet;
 };
+
+/// Whether anything of this kind can be found overdue about the subject: false once it, or its cadence, is no
+/// longer configured.
+[[nodiscard]] bool has_cadence(const Settings& settings, AlertKind kind, const Subject& subject);
 
 /// Of every subject with a cadence: what is overdue holds, what came again has ceased, and of what is
 /// neither there is nothing.

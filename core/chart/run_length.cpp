@@ -15,24 +15,19 @@ struct Entry {
 };
 
 // Mean readings (pairs) between false signals of normal readings, from tests/data/run_lengths.csv, which
-// holds the seeds, the program and the errors: 1 % where 10,000 signals were counted (the level everywhere),
-// 3 % at the last entries.
+// holds the seeds, the program and the errors: at least 10,000 signals an entry, so 1 % at most.
 constexpr Entry kLevel[] = {{2.6, 40.2},  {2.8, 65.91}, {3, 112.9},   {3.15, 171.9}, {3.3, 264.4},
                             {3.5, 491.6}, {3.7, 938.6}, {3.86, 1617}, {4, 2666},     {4.2, 5700},
                             {4.4, 12660}, {4.6, 29910}, {4.8, 72810}};
-constexpr Entry kPrecision[] = {{2.4, 92.53},  {2.6, 154.2}, {2.8, 264.1}, {3, 468.5},
-                                {3.15, 745.5}, {3.3, 1198},  {3.5, 2358},  {3.7, 4848},
-                                {3.86, 8860},  {4, 14830},   {4.2, 35620}, {4.4, 82910}};
-constexpr Entry kPairs[] = {{2.8, 114.6}, {3, 190.1},   {3.15, 279.4}, {3.3, 420.6},
-                            {3.5, 775.5}, {3.7, 1439},  {3.86, 2497},  {4, 4127},
-                            {4.2, 8735},  {4.4, 18620}, {4.6, 42420},  {4.8, 102600}};
-
-// Of pairs held against an established line: 6,000 streams an entry (2,500 the last), signals counted over
-// the pairs from the first to the signal or the 20,000th; standard error 1.3 to 1.6 %, 3 % at 4.6.
-// Standard normal v and uniform w, Mersenne Twister seeds 11 and (4.6) 21;
-// tests/core/pair/watch_simulation_test.cpp repeats the first entry with whole pairs.
-constexpr Entry kPairsEstablishedLine[] = {{3.5, 776},  {3.86, 2483}, {4.0, 3976},
-                                           {4.2, 8195}, {4.4, 18465}, {4.6, 41540}};
+constexpr Entry kPrecision[] = {{2.4, 93.78},  {2.6, 155.3}, {2.8, 262.2}, {3, 468.3},
+                                {3.15, 745.2}, {3.3, 1200},  {3.5, 2362},  {3.7, 4853},
+                                {3.86, 8888},  {4, 15220},   {4.2, 35580}, {4.4, 82320}};
+constexpr Entry kPairs[] = {{2.8, 113.3}, {3, 188},     {3.15, 278.8}, {3.3, 422.2},
+                            {3.5, 772.1}, {3.7, 1442},  {3.86, 2492},  {4, 4071},
+                            {4.2, 8447},  {4.4, 18670}, {4.6, 43370},  {4.8, 105400}};
+// Of pairs held against an established line.
+constexpr Entry kPairsEstablishedLine[] = {{3.5, 754.2}, {3.86, 2439}, {4, 3988},
+                                           {4.2, 8426},  {4.4, 19000}, {4.6, 43330}};
 
 // ln(run length) = h^2/2 - slope ln h + constant, fitted to the tables; it rises with h from sqrt(slope) on.
 struct Law {

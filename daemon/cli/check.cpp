@@ -1,5 +1,9 @@
 #include "daemon/cli/check.hpp"
 
+#include <cstdlib>
+#include <exception>
+#include <vector>
+
 #include <fmt/format.h>
 #include <nlohmann/json.hpp>
 
@@ -9,6 +13,7 @@
 #include "daemon/cli/print_json.hpp"
 #include "daemon/cli/say_problems.hpp"
 #include "daemon/exit_codes.hpp"
+#include "daemon/webhook/secrets.hpp"
 
 namespace agreed {
 namespace {
@@ -25,12 +30,29 @@ void print_result(const ConfigResult& result) {
   print_json(answer);
 }
 
+/// What would keep `run` from starting: secrets that cannot be used. A variable is the service's own, so one
+/// that is not set here is only doubtful.
+void add_secret_problems(ConfigResult& result) {
+  const std::vector<Route> routes = result.config->routes;
+  for (const Route& route : routes) {
+    try {
+      (void)load_signing_keys(route);
+    } catch (const std::exception& error) {
+      const bool unset = route.secret_env &&
+                         std::getenv(route.secret_env->c_str()) == nullptr;  // NOLINT(concurrency-mt-unsafe)
+      result.problems.push_back({.key = "alerts.routes", .message = error.what(), .warning = unset});
+      if (!unset) result.config.reset();
+    }
+  }
+}
+
 }  // namespace
 
 int check_configuration(const CheckCommand& command) {
   const std::filesystem::path& file = command.config;
   const bool json = command.json;
-  const ConfigResult result = read_config(file);
+  ConfigResult result = read_config(file);
+  if (result.config) add_secret_problems(result);
   const bool sample_wanted = !command.sample.empty() && result.config;
   if (sample_wanted) return check_sample(*result.config, command.sample, command.analyzer, json);
   if (json) {

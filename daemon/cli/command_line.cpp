@@ -7,7 +7,7 @@
 #include <CLI/CLI.hpp>
 
 #include "config/nearest.hpp"
-#include "core/base/rfc3339.hpp"
+#include "daemon/cli/time_argument.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/version.hpp"
 
@@ -136,6 +136,40 @@ void add_restore(CLI::App& app, RestoreCommand& restore) {
       "Example:\n  agreed restore /etc/agreed/agreed.yaml /backup/agreed-2026-01-05.sqlite");
 }
 
+/// An option that takes a time.
+template <class Take>
+CLI::Option* add_time(CLI::App& sub, const char* name, const char* what, const Take& take) {
+  const auto read = [name, take](const std::string& text) {
+    const auto at = time_argument(text);
+    if (!at)
+      throw CLI::ValidationError(name, "expected " + std::string(kTimeForms) + ", found '" + text + "'");
+    take(*at);
+  };
+  return sub.add_option_function<std::string>(name, read, what)->type_name("TIME");
+}
+
+void add_report(CLI::App& app, ReportCommand& report) {
+  CLI::App& sub = add_command(
+      app, "report", "writes the agreement record of a period: one page to print and keep, and its data",
+      report.config);
+  add_time(sub, "--from", "its beginning: a date, or a time with its offset", [&report](Instant at) {
+    report.from = at;
+  })->required();
+  add_time(sub, "--to", "its end, not included; now if that is earlier, and without it",
+           [&report](Instant at) { report.to = at; });
+  sub.add_option("--out", report.out, "the page, FILE.html; its tables are written beside it as .csv")
+      ->required();
+  add_json(sub, report.json);
+  sub.footer(
+      "May run while the service does. Verdicts over time, charts, fits, pairs, alerts and who acknowledged\n"
+      "them, interventions, rejected rows, configurations and the proof of the journal's chain. Nothing is\n"
+      "written over. Exit status: 0 done, 1 written, but the period holds nothing or the journal has "
+      "faults,\n"
+      "2 wrong use or configuration (a file exists, an empty period), 3 could not do it.\n"
+      "Example:\n  agreed report /etc/agreed/agreed.yaml --from 2026-01-01 --to 2026-02-01 --out "
+      "record.html");
+}
+
 void add_token(CLI::App& app, TokenCommand& token) {
   CLI::App& sub = add_command(
       app, "token", "makes a token for the HTTP side, shows it once and stores its hash", token.config);
@@ -215,23 +249,17 @@ void add_status(CLI::App& app, StatusCommand& status) {
       "Example:\n  agreed status /etc/agreed/agreed.yaml\n  agreed status http://127.0.0.1:7480 --json");
 }
 
-/// A date is the midnight in UTC with which it begins.
-Instant time_argument(const std::string& option, const std::string& text) {
-  constexpr std::size_t kDateLength = 10;
-  const auto parsed = parse_rfc3339(text.size() == kDateLength ? text + "T00:00:00Z" : text);
-  if (!parsed || !parsed->offset_given)
-    throw CLI::ValidationError(option,
-                               "expected a date (2026-01-05) or a time with its offset "
-                               "(2026-01-05T06:00:00Z), found '" +
-                                   text + "'");
-  return parsed->at;
-}
-
 Period period_argument(const std::string& option, const std::vector<std::string>& ends) {
-  const Period period{time_argument(option, ends.at(0)), time_argument(option, ends.at(1))};
-  if (period.first >= period.last)
+  std::vector<Instant> times;
+  for (const std::string& text : ends) {
+    const auto at = time_argument(text);
+    if (!at)
+      throw CLI::ValidationError(option, std::string("expected ") + kTimeForms + ", found '" + text + "'");
+    times.push_back(*at);
+  }
+  if (times.at(0) >= times.at(1))
     throw CLI::ValidationError(option, "the first time must be before the second");
-  return period;
+  return {times[0], times[1]};
 }
 
 void add_replay(CLI::App& app, ReplayCommand& replay) {
@@ -288,6 +316,8 @@ Command parse_command_line(std::span<const std::string> arguments) {
   add_backup(app, backup);
   RestoreCommand restore;
   add_restore(app, restore);
+  ReportCommand report;
+  add_report(app, report);
   TokenCommand token;
   add_token(app, token);
   SendTestCommand send_test;
@@ -321,6 +351,7 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("verify")) return verify;
   if (app.got_subcommand("backup")) return backup;
   if (app.got_subcommand("restore")) return restore;
+  if (app.got_subcommand("report")) return report;
   if (app.got_subcommand("token")) return token;
   if (app.got_subcommand("send-test")) return send_test;
   if (app.got_subcommand("resend")) return resend;

@@ -39,6 +39,12 @@ struct RestoreCommand {
   std::filesystem::path config, file;
   bool json = false;
 };
+struct ReportCommand {
+  std::filesystem::path config, out;
+  Instant from{};
+  std::optional<Instant> to;  ///< none: now
+  bool json = false;
+};
 struct TokenCommand {
   std::filesystem::path config;
   Role role = Role::reader;
@@ -74,9 +80,9 @@ struct Say {
   std::string text;
 };
 
-using Command =
-    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand,
-                 TokenCommand, SendTestCommand, ResendCommand, StatusCommand, ReplayCommand, Say>;
+using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand,
+                             RestoreCommand, ReportCommand, TokenCommand, SendTestCommand, ResendCommand,
+                             StatusCommand, ReplayCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

@@ -25,6 +25,22 @@ std::pair<AnalyzerIndex, std::string> file_of(const QueuedPiece& queued) {
 }  // namespace
 
 Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
+    : Engine(config, std::move(journal), Arrivals(*config.settings, now_utc())) {}
+
+Engine::Engine(const Config& config, Legacy legacy)
+    : Engine(config, std::move(legacy.journal),
+             Arrivals(*config.settings, now_utc(), legacy.arrivals, *legacy.settings)) {
+  if (!legacy.snapshot->started) return;
+  before_ = std::move(legacy.snapshot);
+  next_.started = true;
+  next_.started_at = before_->started_at;
+  for (std::uint32_t i = 0; i < inboxes_.size(); ++i)
+    if (const auto known = legacy.inboxes.find(inboxes_[i]); known != legacy.inboxes.end())
+      queue_.expect({i}, known->second);
+  publish(now_utc());
+}
+
+Engine::Engine(const Config& config, std::unique_ptr<Journal> journal, Arrivals arrivals)
     : settings_(config.settings),
       routes_(config.routes),
       alert_policy_(config.alert_policy),
@@ -38,7 +54,7 @@ Engine::Engine(const Config& config, std::unique_ptr<Journal> journal)
       monitor_(settings_),
       ledger_(settings_),
       censored_(settings_->charts.size()),
-      arrivals_(*settings_, now_utc()),
+      arrivals_(std::move(arrivals)),
       lonely_(*settings_) {
   for (const IntakeSettings& intake : config.intake) inboxes_.push_back(intake.inbox);
   next_.started_at = now_utc();
@@ -73,6 +89,21 @@ void Engine::stop() {
   if (thread_.joinable()) thread_.join();
 }
 
+Engine::Legacy Engine::leave() {
+  std::map<std::filesystem::path, InboxState> inboxes;
+  const auto states = queue_.inboxes();
+  for (std::size_t i = 0; i < states.size(); ++i) inboxes[inboxes_[i]] = states[i];
+  return {std::move(journal_), before_ ? before_ : snapshot(), std::move(inboxes), settings_, arrivals_};
+}
+
+void Engine::remark_on_configuration(std::string words) {
+  {
+    const std::lock_guard lock(snapshot_mutex_);
+    configuration_remark_ = std::move(words);
+  }
+  queue_.put(Task{});  // a turn, which publishes
+}
+
 void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) {
   JournalReader(state_folder_).each_grown(settings_->of(analyzer).id, [&take](JournalFile&& file) {
     take({std::move(file.name), file.size, file.mtime_ns, std::move(file.sha256)});
@@ -81,9 +112,15 @@ void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(Taken
 
 void Engine::run() noexcept {
   Work work{.pieces = {}, .tasks = {}, .tick = true, .stop = false};
+  const auto turned = [this] {
+    pulse_.rest();
+    if (!std::exchange(turned_once_, true)) turned_.set_value();
+  };
   while (!work.stop) {
     try {
+      pulse_.step();
       turn(std::move(work));
+      turned();
       work = queue_.take(trouble_.empty() ? kIdle : kTryAgain);
     } catch (const std::exception& error) {
       // No memory to tell of a batch: who waits for its answer hears that there is none and asks again.
@@ -92,6 +129,7 @@ void Engine::run() noexcept {
     }
   }
   fail(work, "the service is stopping");
+  turned();
 }
 
 void Engine::turn(Work work) {
@@ -180,7 +218,7 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
 
 MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
                                 Instant now) {
-  JournalHistory history(*journal_, *settings_);
+  JournalHistory history(*journal_, *settings_, &pulse_);
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
   const AfterFold after = after_fold();
   const auto tell_of = [&](Finding finding) {
@@ -216,7 +254,7 @@ MonitorOutcome Engine::fold_all() {
     return kept_fold_->outcome;
   }
   monitor_ = Monitor(settings_);
-  JournalHistory history(*journal_, *settings_);
+  JournalHistory history(*journal_, *settings_, &pulse_);
   MonitorOutcome outcome = monitor_.fold_all(history);
   kept_fold_.reset();
   if (!trouble_.empty()) kept_fold_.emplace(Folded{head, monitor_, outcome});
@@ -257,12 +295,15 @@ void Engine::fold_from_journal(Instant now) {
   if (!configuration_recorded_) journal_->add_configuration(config_text_, config_sha256_, now);
   // Of all subjects: what is no longer configured holds no longer.
   reconcile(outcome, {}, new_configuration ? "configuration_changed" : "late_data", now, new_configuration);
+  if (new_configuration) release_what_is_unwatched(now);
   tell_lonely(now);
   journal_->commit();
   refresh_views(outcome.charts_changed, outcome.comparisons_changed);
   journal_->release_memory();
   malloc_trim(0);  // a whole history went through memory; give it back
   configuration_recorded_ = folded_ = true;
+  next_.config_since = journal_->last_configuration_since();
+  before_.reset();
 }
 
 std::set<ChartIndex> Engine::charts_to_recount(const TakenIn& taken) const {

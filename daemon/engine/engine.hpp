@@ -3,6 +3,8 @@
 // reaches it through one queue; everything anyone sees of it is an immutable snapshot.
 #include <atomic>
 #include <functional>
+#include <future>
+#include <map>
 #include <memory>
 #include <mutex>
 #include <optional>
@@ -23,7 +25,18 @@ namespace agreed {
 
 class Engine final : public IntakeSink, public Service {
  public:
+  /// What a stopped engine leaves to the one that takes its place under another configuration.
+  struct Legacy {
+    std::unique_ptr<Journal> journal;
+    std::shared_ptr<const Snapshot> snapshot;
+    std::map<std::filesystem::path, InboxState> inboxes;
+    std::shared_ptr<const Settings> settings;
+    Arrivals arrivals;
+  };
+
   Engine(const Config& config, std::unique_ptr<Journal> journal);
+  /// Until the journal is folded its snapshot goes on showing what the engine before showed.
+  Engine(const Config& config, Legacy legacy);
   ~Engine() override;
 
   /// `base_url`: where the pages are, for links. `wake_sender(route)` is called after messages for it were
@@ -34,6 +47,14 @@ class Engine final : public IntakeSink, public Service {
       std::function<void(const std::string& route)> resume_sender = [](const std::string&) {});
   /// Ends after the batch in hand; nothing is taken from then on.
   void stop();
+  /// After stop: only snapshot() may be asked from then on.
+  [[nodiscard]] Legacy leave();
+  /// Ready when the journal was first folded, or could not be, or the engine has stopped before.
+  [[nodiscard]] std::shared_future<void> first_turn() const { return first_turn_; }
+  /// Since when it has been at one piece of work; nothing while it waits for some.
+  [[nodiscard]] std::optional<Pulse::Clock::time_point> busy_since() const { return pulse_.stepping_since(); }
+  /// What is wrong with the configuration file, among the remarks from now on; empty: nothing.
+  void remark_on_configuration(std::string words);
 
   std::future<PieceAnswer> submit(FilePiece piece) override { return queue_.put(std::move(piece)); }
   void each_portion(AnalyzerIndex analyzer, const std::function<void(TakenPortion&&)>& take) override;
@@ -62,6 +83,7 @@ class Engine final : public IntakeSink, public Service {
                                   std::function<void(const AskAnswer&)> after);
   [[nodiscard]] AskAnswer take_told(const Row& row, TakenIn& taken);
   [[nodiscard]] AskAnswer send_again(const std::string& message, Instant now);
+  Engine(const Config& config, std::unique_ptr<Journal> journal, Arrivals arrivals);
   void run() noexcept;
   void turn(Work work);
   void take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers);
@@ -98,6 +120,9 @@ class Engine final : public IntakeSink, public Service {
   void fail(Work& work, const std::string& why);
 
   void publish(Instant now);
+  /// As long as there is nothing of one's own to show.
+  [[nodiscard]] Snapshot as_before() const;
+  void release_what_is_unwatched(Instant now);
   void refresh_views(const std::set<ChartIndex>& charts, const std::set<ComparisonIndex>& comparisons);
   [[nodiscard]] std::vector<std::string> not_ready(const std::vector<InboxState>& inboxes) const;
 
@@ -138,9 +163,16 @@ class Engine final : public IntakeSink, public Service {
   std::optional<Folded> kept_fold_;
   bool configuration_recorded_ = false;
 
+  std::shared_ptr<const Snapshot> before_;  ///< of the engine before, until the journal is folded
+  Pulse pulse_;
+  std::promise<void> turned_;
+  std::shared_future<void> first_turn_ = turned_.get_future().share();
+  bool turned_once_ = false;
+
   Snapshot next_;  ///< the snapshot in the making
   mutable std::mutex snapshot_mutex_;
   std::shared_ptr<const Snapshot> snapshot_;
+  std::string configuration_remark_;  ///< by snapshot_mutex_ too
   std::thread thread_;
 };
 

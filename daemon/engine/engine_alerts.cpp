@@ -68,7 +68,7 @@ void Engine::tell_unacknowledged(Instant now) {
     const std::string& route = routes_[due.route].name;
     if (!escalated_.insert({alert.id, alert.opened_at, due.route}).second) continue;
     if (journal_->has_message(alert.id, route, alert.opened_at)) continue;
-    send(route, {AlertChange::opened, now, true, alert}, alert_json(alert, base_url_), now);
+    send(route, {AlertChange::opened, now, true, alert}, alert_json(alert, base_url_, config_sha256_), now);
   }
 }
 
@@ -97,9 +97,29 @@ void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>
                          [&](const std::vector<AlertTransition>& transitions) { tell(transitions, now); });
 }
 
+void Engine::release_what_is_unwatched(Instant now) {
+  const auto watched = [this](AlertKind kind, const Subject& subject) {
+    switch (kind) {
+      case AlertKind::check_overdue:
+      case AlertKind::pairs_overdue:
+      case AlertKind::results_silent:
+        return has_cadence(*settings_, kind, subject);
+      case AlertKind::inbox_unreachable:
+        return std::any_of(settings_->analyzers.begin(), settings_->analyzers.end(),
+                           [&](const Analyzer& analyzer) { return analyzer.id == subject.analyzer; });
+      case AlertKind::delivery_failing:
+        return std::any_of(routes_.begin(), routes_.end(),
+                           [&](const Route& route) { return route.name == subject.service; });
+      default:
+        return true;
+    }
+  };
+  tell(book_->drop_unwatched(watched, "configuration_changed", now), now);
+}
+
 void Engine::tell(const std::vector<AlertTransition>& transitions, Instant now) {
   for (const AlertTransition& transition : transitions) {
-    const std::string body = alert_json(transition.alert, base_url_);
+    const std::string body = alert_json(transition.alert, base_url_, config_sha256_);
     journal_->add_transition({transition.alert.id, transition.at, to_string(transition.change), body});
     if (!transition.tell) continue;
     for (const std::size_t position : routes_for(transition, routes_, *settings_))

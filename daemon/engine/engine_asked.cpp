@@ -5,6 +5,10 @@
 #include "daemon/engine/engine.hpp"
 
 namespace agreed {
+namespace {
+constexpr const char* kStopping =
+    "the service is stopping, or changing its configuration; ask again in a moment";
+}
 
 std::future<AskAnswer> Engine::ask(std::function<void(AskAnswer&, Instant)> inside,
                                    std::function<void(const AskAnswer&)> after) {
@@ -23,7 +27,7 @@ std::future<AskAnswer> Engine::answered(Task task, const std::shared_ptr<AskAnsw
     after(*answer);
     promise->set_value(*answer);
   };
-  if (!queue_.put(std::move(task))) promise->set_value({AskOutcome::unavailable, "the service is stopping"});
+  if (!queue_.put(std::move(task))) promise->set_value({AskOutcome::unavailable, kStopping});
   return future;
 }
 

@@ -45,7 +45,25 @@ std::vector<std::string> Engine::not_ready(const std::vector<InboxState>& inboxe
   return reasons;
 }
 
+Snapshot Engine::as_before() const {
+  Snapshot shown = *before_;
+  if (!trouble_.empty()) {
+    shown.ready = false;
+    shown.not_ready = {"journal: " + trouble_};
+  }
+  shown.remarks.emplace_back(
+      "a changed configuration is being taken in: until the journal is read under it, everything is shown as "
+      "before; results wait in their inboxes");
+  return shown;
+}
+
 void Engine::publish(Instant now) {
+  if (before_) {
+    auto snapshot = std::make_shared<const Snapshot>(as_before());
+    const std::lock_guard lock(snapshot_mutex_);
+    snapshot_ = std::move(snapshot);
+    return;
+  }
   next_.at = now;
   const auto inboxes = queue_.inboxes();
   next_.not_ready = not_ready(inboxes);
@@ -77,9 +95,9 @@ void Engine::publish(Instant now) {
       if (!alert->subject.comparison.empty()) ++next_.alerts_of_comparison[alert->subject.comparison];
     }
   }
-  auto snapshot = std::make_shared<const Snapshot>(next_);
   const std::lock_guard lock(snapshot_mutex_);
-  snapshot_ = std::move(snapshot);
+  if (!configuration_remark_.empty()) next_.remarks.push_back(configuration_remark_);
+  snapshot_ = std::make_shared<const Snapshot>(next_);
 }
 
 }  // namespace agreed

@@ -51,6 +51,7 @@ std::vector<CheckReading> JournalHistory::checks(ChartIndex chart) {
   std::vector<CheckReading> readings;
   journal_.each_check(settings_.of(of.analyzer).id, settings_.of(of.standard).id,
                       settings_.of(of.measurand).id, [&](Instant at, std::int32_t replicate, double value) {
+                        step();
                         readings.push_back({at, of.analyzer, of.standard, of.measurand, replicate, value});
                       });
   return readings;
@@ -62,6 +63,7 @@ std::vector<SplitReading> JournalHistory::splits(ComparisonIndex comparison) {
   for (const AnalyzerIndex analyzer : {of.x, of.y})
     journal_.each_split(settings_.of(analyzer).id, settings_.of(of.measurand).id,
                         [&](std::string_view sample, Instant at, std::int32_t replicate, double value) {
+                          step();
                           rows.push_back({at, analyzer, std::string(sample), of.measurand, replicate, value});
                         });
   std::stable_sort(rows.begin(), rows.end(),

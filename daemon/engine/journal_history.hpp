@@ -5,14 +5,16 @@
 
 #include "core/base/settings.hpp"
 #include "core/monitor/history.hpp"
+#include "daemon/intake/pulse.hpp"
 #include "daemon/journal/journal.hpp"
 
 namespace agreed {
 
 class JournalHistory final : public History {
  public:
-  /// Both outlive this.
-  JournalHistory(Journal& journal, const Settings& settings) : journal_(journal), settings_(settings) {}
+  /// All outlive this. `pulse` steps at every row, so that a long history is not taken for one that hangs.
+  JournalHistory(Journal& journal, const Settings& settings, Pulse* pulse = nullptr)
+      : journal_(journal), settings_(settings), pulse_(pulse) {}
 
   std::vector<CheckReading> checks(ChartIndex chart) override;
   std::vector<SplitReading> splits(ComparisonIndex comparison) override;
@@ -24,8 +26,13 @@ class JournalHistory final : public History {
                            const std::function<void(const SplitReading&, Instant received)>& take);
 
  private:
+  void step() const {
+    if (pulse_ != nullptr) pulse_->step();
+  }
+
   Journal& journal_;
   const Settings& settings_;
+  Pulse* const pulse_;
 };
 
 /// The kind of an intervention by its name; nothing for an unknown one.

@@ -28,10 +28,11 @@ struct Snapshot {
   Instant at{};
   Instant started_at{};
   std::string config_sha256;
-  bool started = false;                ///< the first fold and the first scans are done
-  bool ready = false;                  ///< and results can be taken in
-  std::vector<std::string> not_ready;  ///< why not, in words
-  std::vector<std::string> remarks;    ///< what is wrong although it is ready, in words
+  std::optional<Instant> config_since;  ///< nothing until the journal has it
+  bool started = false;                 ///< the first fold and the first scans are done
+  bool ready = false;                   ///< and results can be taken in
+  std::vector<std::string> not_ready;   ///< why not, in words
+  std::vector<std::string> remarks;     ///< what is wrong although it is ready, in words
   std::shared_ptr<const Settings> settings;
   std::vector<std::string> routes;  ///< configured, by name
   OverduePolicy overdue;            ///< when something with a cadence counts as overdue

@@ -74,6 +74,11 @@ void WorkQueue::report(AnalyzerIndex analyzer, const InboxState& state) {
   changed_.notify_one();
 }
 
+void WorkQueue::expect(AnalyzerIndex analyzer, const InboxState& state) {
+  const std::lock_guard lock(mutex_);
+  lanes_.at(analyzer.value).inbox = state;
+}
+
 void WorkQueue::still_waits(AnalyzerIndex analyzer) {
   const std::lock_guard lock(mutex_);
   InboxState& inbox = lanes_.at(analyzer.value).inbox;

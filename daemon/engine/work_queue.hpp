@@ -51,6 +51,8 @@ class WorkQueue {
   /// Never blocks. False once stopped.
   bool put(Task task);
   void report(AnalyzerIndex analyzer, const InboxState& state);
+  /// What is known of the inbox before its watcher's first report.
+  void expect(AnalyzerIndex analyzer, const InboxState& state);
   /// The analyzer's watcher, which reports at least once in `rescan` unless its folder holds it up: then
   /// inboxes() says so.
   void watch_over(AnalyzerIndex analyzer, std::shared_ptr<const Pulse> pulse, Duration rescan);

@@ -24,6 +24,8 @@ class HttpSide {
            AlertSource alerts, PageHook pages, std::function<void(const std::string&)> tell);
 
   void start() { server_->start(); }
+  /// Another tokens file from now on; sessions of tokens that are not in it are over.
+  void use_tokens(std::optional<std::filesystem::path> file) { tokens_.use(std::move(file)); }
   /// Within half a second, whoever is connected.
   void stop() noexcept { server_->stop(); }
   [[nodiscard]] int port() const { return server_->port(); }

@@ -32,6 +32,14 @@ std::int64_t nanoseconds(const timespec& time) {
 Tokens::Tokens(std::optional<std::filesystem::path> file, std::function<void(const std::string&)> tell)
     : file_(std::move(file)), tell_(std::move(tell)) {}
 
+void Tokens::use(std::optional<std::filesystem::path> file) {
+  const std::scoped_lock lock(mutex_);
+  if (file == file_) return;
+  file_ = std::move(file);
+  read_once_ = false;
+  entries_.clear();
+}
+
 std::optional<Role> Tokens::role_of(std::string_view token) {
   const auto holder = holder_of(sha256(token));
   return holder ? std::optional(holder->role) : std::nullopt;

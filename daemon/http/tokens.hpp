@@ -27,6 +27,9 @@ class Tokens {
   /// be read (then no token is known until it can); called at each reading of the file.
   Tokens(std::optional<std::filesystem::path> file, std::function<void(const std::string&)> tell);
 
+  /// Another file from now on.
+  void use(std::optional<std::filesystem::path> file);
+
   /// The role of a token; nothing if it is not known. The time it takes does not depend on which token comes
   /// near.
   [[nodiscard]] std::optional<Role> role_of(std::string_view token);
@@ -53,7 +56,7 @@ class Tokens {
   void read_file();
   [[nodiscard]] std::optional<Entry> entry_of(const std::string& line, std::size_t number) const;
 
-  const std::optional<std::filesystem::path> file_;
+  std::optional<std::filesystem::path> file_;
   const std::function<void(const std::string&)> tell_;
   std::mutex mutex_;
   std::optional<Stamp> stamp_;

@@ -49,6 +49,7 @@ void AnswerQueue::take_answer(const std::stop_token& stop) {
   try {
     answer = waiting.answer.get();
   } catch (const std::exception& failure) {
+    if (stop.stop_requested()) throw Stopping{};  // refused because of that: no failed commit
     error = failure.what();
     waiting.file->failed = true;
   }

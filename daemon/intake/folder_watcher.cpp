@@ -21,6 +21,10 @@ FolderWatcher::~FolderWatcher() {
   stop();
 }
 
+void FolderWatcher::follow(const FolderWatcher& before) {
+  impl_->loop.follow(before.impl_->loop);
+}
+
 void FolderWatcher::start() {
   if (impl_->thread.joinable()) return;
   impl_->running = true;

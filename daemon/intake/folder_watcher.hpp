@@ -29,6 +29,10 @@ class FolderWatcher {
   FolderWatcher(const FolderWatcher&) = delete;
   FolderWatcher& operator=(const FolderWatcher&) = delete;
 
+  /// Before start: goes on with what `before`, which watched the same folder and has stopped, knew of files
+  /// that were moved to done/ a moment ago, or could not be moved.
+  void follow(const FolderWatcher& before);
+
   void start();
   /// Asks the thread to end and does not wait. Safe from any thread.
   void request_stop();

@@ -55,6 +55,12 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
                                           }});
 }
 
+void WatchLoop::follow(const WatchLoop& before) {
+  if (growing_ || before.growing_) return;
+  moved_ = before.moved_;
+  unmoved_ = before.unmoved_;
+}
+
 void WatchLoop::run(const std::stop_token& stop) noexcept {
   while (!stop.stop_requested()) {
     try {

@@ -25,6 +25,8 @@ class WatchLoop {
   WatchLoop(const WatchLoop&) = delete;
   WatchLoop& operator=(const WatchLoop&) = delete;
 
+  /// As FolderWatcher::follow.
+  void follow(const WatchLoop& before);
   /// Until `stop`; never throws.
   void run(const std::stop_token& stop) noexcept;
   /// Ends a wait, from any thread.

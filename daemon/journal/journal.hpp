@@ -115,6 +115,8 @@ class Journal {
   [[nodiscard]] std::vector<StoredTransition> last_transitions();
   /// Of the newest configuration recorded; empty when there is none.
   [[nodiscard]] std::string last_configuration_sha256();
+  /// Since when the newest recorded one is in force, over restarts and reloads that did not change it.
+  [[nodiscard]] std::optional<Instant> last_configuration_since();
   /// Of the analyzer's newest accepted reading.
   [[nodiscard]] std::optional<Instant> last_measured(std::string_view analyzer);
 

@@ -200,4 +200,14 @@ std::string Journal::last_configuration_sha256() {
   });
 }
 
+std::optional<Instant> Journal::last_configuration_since() {
+  return journal::translating(impl_->file, [&]() -> std::optional<Instant> {
+    Query row = impl_->query(
+        "SELECT min(at) FROM configurations WHERE id > (SELECT coalesce(max(id), 0) FROM configurations "
+        "WHERE sha256 <> (SELECT sha256 FROM configurations ORDER BY id DESC LIMIT 1))");
+    if (!row->executeStep() || row->isColumnNull(0)) return std::nullopt;
+    return journal::instant(row->getColumn(0));
+  });
+}
+
 }  // namespace agreed

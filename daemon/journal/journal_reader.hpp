@@ -42,6 +42,12 @@ struct AlertRecord {
   std::vector<DeliveryRow> deliveries;
 };
 
+/// A configuration the service used from `at` on.
+struct RecordedConfiguration {
+  Instant at{};
+  std::string sha256;
+};
+
 struct RejectedRow {
   std::int64_t file = 0;
   std::uint32_t line = 0, column = 0;
@@ -120,6 +126,15 @@ class JournalReader {
   /// Every file of the analyzer with kGrownOutcome, oldest first.
   void each_grown(std::string_view analyzer, const std::function<void(JournalFile&&)>& take);
   [[nodiscard]] std::vector<ReadingRow> readings(const ReadingQuery& query);
+
+  // What a period had, oldest first; from <= time < to by our clock.
+  /// Alerts that were open or acknowledged at some time of it.
+  [[nodiscard]] std::vector<AlertRecord> alerts_between(Instant from, Instant to);
+  [[nodiscard]] std::vector<FileRow> files_between(Instant from, Instant to);
+  /// Every rejected row of those files.
+  void each_rejected_between(Instant from, Instant to, const std::function<void(RejectedRow&&)>& take);
+  /// In the order in which they were used, from the first start on.
+  [[nodiscard]] std::vector<RecordedConfiguration> configurations();
 
   // As in Journal, as of the last commit; for replay and report.
   void each_check(std::string_view analyzer, std::string_view item, std::string_view measurand,

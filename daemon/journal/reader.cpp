@@ -91,16 +91,18 @@ std::vector<std::pair<std::int64_t, std::string>> select_alerts(SQLite::Database
   return found;
 }
 
+RejectedRow rejected_row(SQLite::Statement& row) {
+  return {row.getColumn(0).getInt64(), row.getColumn(1).getUInt(), row.getColumn(2).getUInt(),
+          row.getColumn(3).getString(), row.getColumn(4).getString()};
+}
+
 std::vector<RejectedRow> rejected_rows_of(SQLite::Database& database, std::int64_t file) {
   std::vector<RejectedRow> rejected;
   SQLite::Statement rows(
       database,
       "SELECT file, line, field, text, reason FROM rejected_rows WHERE file = ? ORDER BY id LIMIT 20");
   rows.bind(1, file);
-  while (rows.executeStep())
-    rejected.push_back({rows.getColumn(0).getInt64(), rows.getColumn(1).getUInt(),
-                        rows.getColumn(2).getUInt(), rows.getColumn(3).getString(),
-                        rows.getColumn(4).getString()});
+  while (rows.executeStep()) rejected.push_back(rejected_row(rows));
   return rejected;
 }
 
@@ -242,6 +244,61 @@ std::vector<FileRow> JournalReader::files(const FileQuery& query) {
     if (!query.analyzer.empty()) rows.bind(4, query.analyzer);
     std::vector<FileRow> found;
     while (rows.executeStep()) found.push_back(file_row(*impl_->database, rows));
+    return found;
+  });
+}
+
+std::vector<AlertRecord> JournalReader::alerts_between(Instant from, Instant to) {
+  return journal::translating(impl_->file, [&] {
+    const Moment moment(*impl_->database);
+    SQLite::Statement rows(
+        *impl_->database,
+        "SELECT alert, body FROM alert_transitions t WHERE id = (SELECT max(id) FROM alert_transitions u "
+        "WHERE u.alert = t.alert) AND (t.at >= ? OR t.state <> 'resolved') AND EXISTS (SELECT 1 FROM "
+        "alert_transitions v WHERE v.alert = t.alert AND v.at < ?) ORDER BY alert");
+    rows.bind(1, milliseconds(from));
+    rows.bind(2, milliseconds(to));
+    std::vector<AlertRecord> found;
+    while (rows.executeStep())
+      found.push_back(
+          record_of(*impl_->database, rows.getColumn(0).getInt64(), rows.getColumn(1).getString()));
+    return found;
+  });
+}
+
+std::vector<FileRow> JournalReader::files_between(Instant from, Instant to) {
+  return journal::translating(impl_->file, [&] {
+    const Moment moment(*impl_->database);
+    SQLite::Statement rows(*impl_->database, std::string(kFiles) +
+                                                 "LEFT JOIN file_outcomes o ON o.file = f.id WHERE "
+                                                 "b.committed_at >= ? AND b.committed_at < ? ORDER BY f.id");
+    rows.bind(1, milliseconds(from));
+    rows.bind(2, milliseconds(to));
+    std::vector<FileRow> found;
+    while (rows.executeStep()) found.push_back(file_row(*impl_->database, rows));
+    return found;
+  });
+}
+
+void JournalReader::each_rejected_between(Instant from, Instant to,
+                                          const std::function<void(RejectedRow&&)>& take) {
+  journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(
+        *impl_->database,
+        "SELECT r.file, r.line, r.field, r.text, r.reason FROM rejected_rows r JOIN files f "
+        "ON f.id = r.file JOIN batches b ON b.sequence = f.batch WHERE b.committed_at >= ? "
+        "AND b.committed_at < ? ORDER BY r.id");
+    rows.bind(1, milliseconds(from));
+    rows.bind(2, milliseconds(to));
+    while (rows.executeStep()) take(rejected_row(rows));
+  });
+}
+
+std::vector<RecordedConfiguration> JournalReader::configurations() {
+  return journal::translating(impl_->file, [&] {
+    SQLite::Statement rows(*impl_->database, "SELECT at, sha256 FROM configurations ORDER BY id");
+    std::vector<RecordedConfiguration> found;
+    while (rows.executeStep()) found.push_back({instant(rows.getColumn(0)), rows.getColumn(1).getString()});
     return found;
   });
 }

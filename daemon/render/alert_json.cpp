@@ -148,7 +148,7 @@ Alert alert_of(const Json& json) {
 
 }  // namespace
 
-std::string alert_json(const Alert& alert, std::string_view base_url) {
+std::string alert_json(const Alert& alert, std::string_view base_url, std::string_view config_sha256) {
   Json json;
   json["id"] = std::to_string(alert.id);
   json["kind"] = to_string(alert.kind);
@@ -170,6 +170,7 @@ std::string alert_json(const Alert& alert, std::string_view base_url) {
   json["started_at"] = json_time(alert.started_at);
   json["told_at"] = to_rfc3339(alert.told_at);
   json["held"] = alert.held ? Json(to_string(*alert.held)) : Json(nullptr);
+  json["config_sha256"] = json_words(std::string(config_sha256));
   return json_text(json);
 }
 

@@ -12,7 +12,9 @@ namespace agreed {
 /// `url`: the page of the alert's chart or comparison, else its own page; `base_url`
 /// without a slash at the end. Bytes that are not UTF-8 are replaced; a number that is not finite becomes
 /// null.
-[[nodiscard]] std::string alert_json(const Alert& alert, std::string_view base_url);
+/// `config_sha256`: of the configuration under which this is said; empty: null.
+[[nodiscard]] std::string alert_json(const Alert& alert, std::string_view base_url,
+                                     std::string_view config_sha256 = {});
 
 /// Reads back what alert_json wrote (fields it does not know are passed over); throws std::invalid_argument
 /// naming the field that is missing or wrong.

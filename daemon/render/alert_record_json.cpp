@@ -19,7 +19,8 @@ Json history_of(const std::vector<StoredTransition>& transitions) {
   for (const StoredTransition& transition : transitions) {
     const Json then = stored_alert(transition.body);
     Json entry = {{"at", to_rfc3339(transition.at)}, {"change", transition.change}};
-    for (const char* field : {"state", "severity", "title", "acknowledged", "resolved_reason"})
+    for (const char* field :
+         {"state", "severity", "title", "acknowledged", "resolved_reason", "config_sha256"})
       entry[field] = then.contains(field) ? then.at(field) : Json(nullptr);
     list.push_back(std::move(entry));
   }

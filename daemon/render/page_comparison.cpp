@@ -8,29 +8,6 @@
 namespace agreed {
 namespace {
 
-DataTable level_table(const ComparisonScene& scene) {
-  DataTable table{"Decision levels, " + scene.style.unit,
-                  {"level", "verdict", "bias", "90 % interval", "allowable", "single samples within",
-                   "single results differ by"},
-                  {}};
-  const int decimals = scene.style.decimals;
-  for (const LevelView& level : scene.view.levels) {
-    const auto number = [&](const std::optional<double>& value) {
-      return value ? shown_signed(*value, decimals) : std::string("not yet");
-    };
-    table.rows.push_back(
-        {shortest(level.level),
-         verdict_words(level.verdict) + (level.reason.empty() ? "" : ", " + spaced(level.reason)),
-         number(level.bias),
-         level.low && level.high ? number(level.low) + " to " + number(level.high) : "not yet",
-         level.allowable ? "\u00b1" + shown(*level.allowable, decimals) : "not given",
-         level.single_result ? shown_share(level.single_result->share_within) : "not yet",
-         level.single_result ? number(level.single_result->low) + " to " + number(level.single_result->high)
-                             : "not yet"});
-  }
-  return table;
-}
-
 std::string window_words(const ComparisonScene& scene) {
   const WindowView& window = scene.view.window;
   std::string out = counted(window.pairs, "pair", "pairs") + " in the window of at most " +
@@ -81,14 +58,45 @@ std::string look_back_words(const std::optional<LookBackView>& look_back) {
   return out + ".";
 }
 
-/// What changed, which analyzer moved, which results are in doubt; empty when nothing is open.
+}  // namespace
+
+DataTable level_table(const ComparisonScene& scene) {
+  DataTable table{"Decision levels, " + scene.style.unit,
+                  {"level", "verdict", "bias", "90 % interval", "allowable", "single samples within",
+                   "single results differ by"},
+                  {}};
+  const int decimals = scene.style.decimals;
+  for (const LevelView& level : scene.view.levels) {
+    const auto number = [&](const std::optional<double>& value) {
+      return value ? shown_signed(*value, decimals) : std::string("not yet");
+    };
+    table.rows.push_back(
+        {shortest(level.level),
+         verdict_words(level.verdict) + (level.reason.empty() ? "" : ", " + spaced(level.reason)),
+         number(level.bias),
+         level.low && level.high ? number(level.low) + " to " + number(level.high) : "not yet",
+         level.allowable ? "\u00b1" + shown(*level.allowable, decimals) : "not given",
+         level.single_result ? shown_share(level.single_result->share_within) : "not yet",
+         level.single_result ? number(level.single_result->low) + " to " + number(level.single_result->high)
+                             : "not yet"});
+  }
+  return table;
+}
+
 std::string change_html(const ComparisonView& view) {
   if (!view.diagnosis) return {};
   return "<section><h2>Which one moved</h2>" + paragraph(view.diagnosis->evidence) +
          paragraph(look_back_words(view.look_back)) + "</section>";
 }
 
-}  // namespace
+std::string basis_html(const ComparisonScene& scene) {
+  return paragraph(error_words(scene)) + paragraph(scatter_words(scene)) + paragraph(range_words(scene)) +
+         paragraph(robust_words(scene));
+}
+
+std::string window_html(const ComparisonScene& scene) {
+  return paragraph(window_words(scene)) + warnings_html(scene.view.warnings);
+}
 
 std::string comparison_html(const PageInput& input, ComparisonIndex index, const PageRange& range) {
   const ComparisonScene scene = comparison_scene(input.snapshot, index);
@@ -110,14 +118,11 @@ std::string comparison_html(const PageInput& input, ComparisonIndex index, const
   out += "<div class=\"figures broad\">";
   for (std::size_t level = 0; level < scene.view.levels.size(); ++level)
     out += figure_html(bias_figure(drawn, level, FigureDetail::full), 3);
-  out += "</div></section><section><h2>The pairs</h2>" + paragraph(window_words(scene)) +
-         warnings_html(scene.view.warnings) + "<div class=\"figures broad\">" +
-         figure_html(pairs_figure(drawn, FigureDetail::full), 3) +
+  out += "</div></section><section><h2>The pairs</h2>" + window_html(scene) +
+         "<div class=\"figures broad\">" + figure_html(pairs_figure(drawn, FigureDetail::full), 3) +
          figure_html(differences_figure(drawn, FigureDetail::full), 3) +
          figure_html(pair_chart_figure(drawn, FigureDetail::full), 3) + "</div></section>";
-  out += "<section><h2>What the figures rest on</h2>" + paragraph(error_words(scene)) +
-         paragraph(scatter_words(scene)) + paragraph(range_words(scene)) + paragraph(robust_words(scene));
-  return out + "</section>";
+  return out + "<section><h2>What the figures rest on</h2>" + basis_html(scene) + "</section>";
 }
 
 std::string chart_html(const PageInput& input, ChartIndex index, const PageRange& range) {

@@ -53,12 +53,7 @@ std::string notice_html(const PageInput& input) {
 
 std::string foot_html(const PageInput& input, const std::string& as_of) {
   const Snapshot& snapshot = input.snapshot;
-  std::string out =
-      "<footer><p>Results are statistical evidence and not a release decision. Where a wrong result can hurt "
-      "someone "
-      "(clinical, drinking water, process safety, dosing), the local regulation, the accredited procedure "
-      "and the "
-      "licensed or responsible person decide; agreed is not a medical device and no safety interlock.</p>";
+  std::string out = "<footer><p>" + std::string(kCautions) + "</p>";
   out += "<p>As of <span id=\"as-of\">" + as_of + "</span>. agreed " + escaped(input.version);
   if (!snapshot.config_sha256.empty())
     out += ", configuration <code>" + escaped(snapshot.config_sha256.substr(0, 12)) + "</code>";

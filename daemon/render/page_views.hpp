@@ -5,6 +5,7 @@
 #include <string_view>
 
 #include "daemon/render/page.hpp"
+#include "daemon/render/page_figure.hpp"
 #include "daemon/render/page_range.hpp"
 #include "daemon/render/page_scene.hpp"
 #include "daemon/render/page_words.hpp"
@@ -16,6 +17,22 @@ namespace agreed {
 [[nodiscard]] std::string comparison_html(const PageInput& input, ComparisonIndex index,
                                           const PageRange& range);
 [[nodiscard]] std::string chart_html(const PageInput& input, ChartIndex index, const PageRange& range);
+
+/// What every page says at its foot.
+inline constexpr std::string_view kCautions =
+    "Results are statistical evidence and not a release decision. Where a wrong result can hurt someone "
+    "(clinical, drinking water, process safety, dosing), the local regulation, the accredited procedure and "
+    "the "
+    "licensed or responsible person decide; agreed is not a medical device and no safety interlock.";
+
+// Parts of one comparison's page.
+[[nodiscard]] DataTable level_table(const ComparisonScene& scene);
+/// Which pairs the fit goes through, and the warnings.
+[[nodiscard]] std::string window_html(const ComparisonScene& scene);
+/// What changed, which analyzer moved, which results are in doubt; empty when nothing is open.
+[[nodiscard]] std::string change_html(const ComparisonView& view);
+/// Errors, scatter, range, second opinion.
+[[nodiscard]] std::string basis_html(const ComparisonScene& scene);
 
 struct PageLife {
   int status = 200;

@@ -1,6 +1,7 @@
 #include "daemon/render/readings_text.hpp"
 
 #include <algorithm>
+#include <array>
 #include <string_view>
 
 #include "core/base/number_text.hpp"
@@ -80,23 +81,31 @@ std::string readings_json(const std::vector<ReadingRow>& readings, const std::op
   return json_page("readings", readings, reading_of, next);
 }
 
-std::string readings_csv(const std::vector<ReadingRow>& readings) {
-  std::string csv =
-      "kind,measured_at,measurand,item,value,replicate,operator,note,analyzer,censored,voided,corrected,"
-      "revision,clock_ambiguous,file,line,received_at\r\n";
-  const auto yes_no = [](bool yes) { return yes ? "true" : "false"; };
-  for (const ReadingRow& row : readings) {
-    std::string line;
-    for (const std::string& cell :
-         {std::string(kind_of(row)), to_rfc3339(row.measured_at), row.measurand, row.item, value_of(row),
-          std::to_string(row.replicate), row.by, row.note, row.analyzer, std::string(censoring_of(row)),
-          std::string(yes_no(row.voided)), std::string(yes_no(row.corrected)), std::to_string(row.revision),
-          std::string(yes_no(row.clock_ambiguous)), std::to_string(row.file), std::to_string(row.line),
-          to_rfc3339(row.received_at)})
-      line.append(line.empty() ? "" : ",").append(csv_cell(cell));
-    csv += line + "\r\n";
-  }
+std::string csv_line(std::span<const std::string> cells) {
+  std::string line;
+  for (const std::string& cell : cells) line.append(line.empty() ? "" : ",").append(csv_cell(cell));
+  return line + "\r\n";
+}
+
+std::string readings_csv_head() {
+  return "kind,measured_at,measurand,item,value,replicate,operator,note,analyzer,censored,voided,corrected,"
+         "revision,clock_ambiguous,file,line,received_at\r\n";
+}
+
+std::string readings_csv_lines(const std::vector<ReadingRow>& readings) {
+  std::string csv;
+  const auto yes_no = [](bool yes) { return std::string(yes ? "true" : "false"); };
+  for (const ReadingRow& row : readings)
+    csv += csv_line(std::array{
+        std::string(kind_of(row)), to_rfc3339(row.measured_at), row.measurand, row.item, value_of(row),
+        std::to_string(row.replicate), row.by, row.note, row.analyzer, std::string(censoring_of(row)),
+        yes_no(row.voided), yes_no(row.corrected), std::to_string(row.revision), yes_no(row.clock_ambiguous),
+        std::to_string(row.file), std::to_string(row.line), to_rfc3339(row.received_at)});
   return csv;
+}
+
+std::string readings_csv(const std::vector<ReadingRow>& readings) {
+  return readings_csv_head() + readings_csv_lines(readings);
 }
 
 }  // namespace agreed

@@ -1,6 +1,7 @@
 #pragma once
 // GET /api/readings: everything that came in, as JSON or as CSV.
 #include <optional>
+#include <span>
 #include <string>
 #include <vector>
 
@@ -17,6 +18,12 @@ namespace agreed {
 /// with = + - or @ and is no plain number gets an apostrophe before it, because spreadsheets would compute
 /// it.
 [[nodiscard]] std::string readings_csv(const std::vector<ReadingRow>& readings);
+/// Its header line, and the lines of some of them, for those who write them piece by piece.
+[[nodiscard]] std::string readings_csv_head();
+[[nodiscard]] std::string readings_csv_lines(const std::vector<ReadingRow>& readings);
+
+/// A line of such cells.
+[[nodiscard]] std::string csv_line(std::span<const std::string> cells);
 
 /// The cell of one text, made harmless and quoted where that is needed.
 [[nodiscard]] std::string csv_cell(const std::string& text);

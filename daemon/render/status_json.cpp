@@ -22,6 +22,7 @@ Json service_of(const Snapshot& snapshot) {
           {"started_at", to_rfc3339(snapshot.started_at)},
           {"uptime_s", std::chrono::floor<std::chrono::seconds>(snapshot.at - snapshot.started_at).count()},
           {"config_sha256", snapshot.config_sha256},
+          {"config_since", json_time(snapshot.config_since)},
           {"ready", snapshot.ready}};
 }
 

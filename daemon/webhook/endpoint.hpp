@@ -18,6 +18,8 @@ struct Endpoint {
   std::string url;
   std::optional<std::filesystem::path> ca_file;
   std::vector<SigningKey> keys;  ///< none: unsigned
+
+  bool operator==(const Endpoint&) const = default;
 };
 
 /// Reads the route's secrets; throws std::runtime_error as load_signing_keys does.

@@ -48,6 +48,7 @@ bool waited_in_vain(const AlertTransition& transition, Duration wait) {
 bool concerns(const Route& route, const Alert& alert, const Settings& settings) {
   if (!route.kinds.empty() && !contains(route.kinds, alert.kind)) return false;
   if (alert.severity < route.at_least) return false;
+  if (alert.kind == AlertKind::delivery_failing && alert.subject.service == route.name) return false;
   const AlertIds ids = ids_of(alert.subject, settings);
   return passes(route.analyzers, ids.analyzers) && passes(route.measurands, ids.measurands) &&
          passes(route.comparisons, ids.comparisons);

@@ -12,7 +12,7 @@ namespace agreed {
 /// True if the route's filters let this alert through: its kind, its severity, and for `analyzers`,
 /// `measurands` and `comparisons` one of the ids the alert is about. An alert about a comparison is about its
 /// two analyzers and its measurand too. A filter that is given lets nothing through that has no such part (an
-/// unreachable inbox has no measurand).
+/// unreachable inbox has no measurand). Nor does a route hear that it takes nothing itself.
 [[nodiscard]] bool concerns(const Route& route, const Alert& alert, const Settings& settings);
 
 /// Positions in `routes` of those that a transition goes to; none when it is not told. A route with

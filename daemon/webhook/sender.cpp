@@ -44,6 +44,7 @@ class WebhookSender::Lane {
   void join() {
     if (thread_.joinable()) thread_.join();
   }
+  [[nodiscard]] const Endpoint& endpoint() const { return endpoint_; }
   [[nodiscard]] const std::string& route() const { return endpoint_.route; }
   [[nodiscard]] bool ended() const { return ended_; }
 
@@ -166,35 +167,64 @@ class WebhookSender::Lane {
 };
 
 WebhookSender::WebhookSender(std::vector<Endpoint> endpoints, const Next& next, const Record& record,
-                             SenderOptions options) {
-  for (auto& endpoint : endpoints)
-    lanes_.push_back(std::make_unique<Lane>(std::move(endpoint), next, record, options));
+                             SenderOptions options)
+    : next_(next), record_(record), options_(options) {
+  change(std::move(endpoints));
 }
 
 WebhookSender::~WebhookSender() {
   stop();
 }
 
+WebhookSender::Lanes WebhookSender::lanes() const {
+  const std::lock_guard lock(mutex_);
+  return lanes_;
+}
+
+void WebhookSender::change(std::vector<Endpoint> endpoints) {
+  const Lanes before = lanes();
+  Lanes after;
+  const auto same = [](const Endpoint& endpoint) {
+    return [&endpoint](const std::shared_ptr<Lane>& lane) { return lane->endpoint() == endpoint; };
+  };
+  const auto goes_on = [&endpoints](const Lane& lane) {
+    return std::find(endpoints.begin(), endpoints.end(), lane.endpoint()) != endpoints.end();
+  };
+  // The old lane of a route ends before the new one begins: two would send its messages twice.
+  for (const auto& lane : before)
+    if (!goes_on(*lane)) lane->request_stop();
+  for (const auto& lane : before)
+    if (!goes_on(*lane)) lane->join();
+  for (auto& endpoint : endpoints) {
+    const auto kept = std::find_if(before.begin(), before.end(), same(endpoint));
+    after.push_back(
+        kept != before.end() ? *kept : std::make_shared<Lane>(std::move(endpoint), next_, record_, options_));
+  }
+  const std::lock_guard lock(mutex_);
+  lanes_ = std::move(after);
+}
+
 void WebhookSender::wake(const std::string& route) {
-  for (const auto& lane : lanes_)
+  for (const auto& lane : lanes())
     if (lane->route() == route) lane->wake();
 }
 
 void WebhookSender::resume(const std::string& route) {
-  for (const auto& lane : lanes_)
+  for (const auto& lane : lanes())
     if (lane->route() == route) lane->resume();
 }
 
 std::vector<std::string> WebhookSender::ended() const {
   std::vector<std::string> routes;
-  for (const auto& lane : lanes_)
+  for (const auto& lane : lanes())
     if (lane->ended()) routes.push_back(lane->route());
   return routes;
 }
 
 void WebhookSender::stop() {
-  for (const auto& lane : lanes_) lane->request_stop();
-  for (const auto& lane : lanes_) lane->join();
+  const Lanes all = lanes();
+  for (const auto& lane : all) lane->request_stop();
+  for (const auto& lane : all) lane->join();
 }
 
 }  // namespace agreed

@@ -5,6 +5,7 @@
 #include <functional>
 #include <future>
 #include <memory>
+#include <mutex>
 #include <optional>
 #include <string>
 #include <vector>
@@ -40,6 +41,10 @@ class WebhookSender {
   WebhookSender(const WebhookSender&) = delete;
   WebhookSender& operator=(const WebhookSender&) = delete;
 
+  /// Sends to these endpoints from now on. What goes to an endpoint that is the same goes on undisturbed; a
+  /// call to one that is gone is cut off and not recorded. Throws when a thread cannot be made.
+  void change(std::vector<Endpoint> endpoints);
+
   /// New messages of the route were committed. Any thread.
   void wake(const std::string& route);
 
@@ -57,7 +62,14 @@ class WebhookSender {
 
  private:
   class Lane;
-  std::vector<std::unique_ptr<Lane>> lanes_;
+  using Lanes = std::vector<std::shared_ptr<Lane>>;
+  [[nodiscard]] Lanes lanes() const;
+
+  const Next next_;
+  const Record record_;
+  const SenderOptions options_;
+  mutable std::mutex mutex_;
+  Lanes lanes_;
 };
 
 }  // namespace agreed

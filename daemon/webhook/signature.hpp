@@ -12,6 +12,8 @@ namespace agreed {
 /// The bytes a message is signed with. Kept apart from text so that it does not end in a log by accident.
 struct SigningKey {
   std::string bytes;
+
+  bool operator==(const SigningKey&) const = default;
 };
 
 /// A secret as a person writes it: `whsec_` and base64 of the key, or else the key's bytes as they are.

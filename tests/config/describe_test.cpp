@@ -60,7 +60,7 @@ TEST_CASE("run lengths stand with their limits") {
   CHECK(has(text, "    level                 3650 readings, h = 4.08\n"));
   CHECK(has(text, "    precision             3650 readings, h = 3.62\n"));
   CHECK(has(text, "    pair chart, warning   14600 pairs, h = 4.34\n"));
-  CHECK(has(text, "    pair chart, critical  146000 pairs, h = 4.88 (extrapolated)\n"));
+  CHECK(has(text, "    pair chart, critical  146000 pairs, h = 4.87 (extrapolated)\n"));
   CHECK(has(text, "    outliers              set_aside, a false one every 29200 pairs\n"));
 }
 

@@ -43,7 +43,7 @@ def first_limits():
 LATER_LIMITS = (2.6, 3.0, 3.5, 4.0, 4.4, 4.8)
 FIRST_LIMITS = first_limits()
 LEVEL, PRECISION, PAIRS = pooled("level"), pooled("precision"), pooled("pairs")
-PAIRS_ON_A_LINE = ([3.5, 3.86, 4.0, 4.2, 4.4, 4.6], [776, 2483, 3976, 8195, 18465, 41540])
+PAIRS_ON_A_LINE = pooled("pairs_established_line")
 PAIRS_LAW = 1.11  # beyond a table of pairs ln(run length) goes on as h^2/2 - 1.11 ln h
 NOT_CONFIRMED = 0.9  # a score so far below its limit takes the signal back
 WITHIN = 3.0         # log-likelihood by which a start may be worse than the best one

@@ -213,3 +213,48 @@ TEST_CASE("a note and an accepted level hold nothing") {
   const Finding unstable{.kind = AlertKind::check_standard_unstable, .subject = {.analyzer = "line1"}};
   CHECK(book.apply(unstable, at_hour(0)).at(0).tell);
 }
+
+TEST_CASE("a changed configuration does not set the clock of what it did not change") {
+  const Settings then = mill();
+  Arrivals before(then, at_hour(0));
+  before.add(Event{check(kLine2, kLow)}, at_hour(10));
+  before.add_pair(kProteinPairs, at_hour(11));
+
+  // line0 comes first now, line1 is gone, and so is the moisture comparison.
+  Settings now = then;
+  now.analyzers = {{"line0", ""}, {"line2", ""}};
+  now.comparisons.erase(now.comparisons.begin());
+  const Arrivals after(now, at_hour(20), before, then);
+  CHECK(after.analyzer({0}).at == at_hour(20));
+  CHECK_FALSE(after.analyzer({0}).came);
+  CHECK(after.analyzer({1}).at == at_hour(10));
+  CHECK(after.standard({1}, kLow).at == at_hour(10));
+  CHECK(after.standard({1}, kLow).came);
+  CHECK(after.standard({1}, kHigh).at == at_hour(20));
+  CHECK(after.comparison({0}).at == at_hour(11));
+}
+
+TEST_CASE("alerts of what is no longer watched end with the reason given; others are left alone") {
+  const auto settings = std::make_shared<const Settings>(mill());
+  AlertBook book(AlertPolicy{}, settings, {});
+  const auto open = [&](AlertKind kind, const Subject& subject) {
+    (void)book.apply({.kind = kind, .subject = subject, .at = at_hour(0)}, at_hour(0));
+  };
+  open(AlertKind::results_silent, {.analyzer = "line1"});
+  open(AlertKind::inbox_unreachable, {.analyzer = "line2"});
+  open(AlertKind::file_rejected, {.analyzer = "line1"});
+  open(AlertKind::check_standard_unstable, {"line1", "wheat-low", "protein", "", ""});
+  const auto gone = [](AlertKind, const Subject& subject) { return subject.analyzer != "line1"; };
+  const auto ended = book.drop_unwatched(gone, "configuration_changed", at_hour(1));
+  REQUIRE(ended.size() == 1);
+  CHECK(ended[0].alert.kind == AlertKind::results_silent);
+  CHECK(ended[0].alert.state == AlertState::resolved);
+  CHECK(ended[0].alert.resolved_reason == "configuration_changed");
+  CHECK(book.current().size() == 3);
+
+  CHECK(has_cadence(*settings, AlertKind::check_overdue, {.analyzer = "line1"}));
+  CHECK(has_cadence(*settings, AlertKind::results_silent, {.analyzer = "line1"}));
+  CHECK(has_cadence(*settings, AlertKind::pairs_overdue, {.comparison = "protein"}));
+  CHECK_FALSE(has_cadence(*settings, AlertKind::pairs_overdue, {.comparison = "moisture"}));
+  CHECK_FALSE(has_cadence(*settings, AlertKind::check_overdue, {.analyzer = "line3"}));
+}

@@ -37,6 +37,13 @@ Route route(const std::string& name) {
 
 }  // namespace
 
+TEST_CASE("a route does not hear that it takes nothing itself") {
+  const Subject failing{"", "", "", "", "shift"};
+  const std::vector<Route> routes = {route("shift"), route("engineer")};
+  CHECK(routed(transition(AlertKind::delivery_failing, failing, Severity::critical), routes) == "engineer ");
+  CHECK(routed(transition(AlertKind::storage_low, failing, Severity::critical), routes) == "shift engineer ");
+}
+
 TEST_CASE("routes choose by kind, severity, analyzer, measurand and comparison") {
   std::vector<Route> routes = {route("all"),     route("kinds"),        route("warning"), route("critical"),
                                route("line2"),   route("moisture"),     route("protein"), route("pair"),

@@ -1,0 +1,49 @@
+#include "daemon/cli/reloader.hpp"
+
+#include <exception>
+#include <utility>
+
+namespace agreed {
+
+Reloader::Reloader(Reload reload, std::function<void()> over)
+    : reload_(std::move(reload)),
+      over_(std::move(over)),
+      thread_([this](const std::stop_token& stop) { run(stop); }) {}
+
+void Reloader::ask() {
+  {
+    const std::lock_guard lock(mutex_);
+    asked_ = true;
+  }
+  asked_for_.notify_one();
+}
+
+void Reloader::stop() noexcept {
+  thread_.request_stop();
+  if (thread_.joinable()) thread_.join();
+}
+
+std::optional<std::string> Reloader::failure() const {
+  const std::lock_guard lock(mutex_);
+  return failure_;
+}
+
+void Reloader::run(const std::stop_token& stop) {
+  while (true) {
+    {
+      std::unique_lock lock(mutex_);
+      if (!asked_for_.wait(lock, stop, [this] { return asked_; })) return;
+      asked_ = false;
+    }
+    try {
+      reload_(stop);
+    } catch (const std::exception& error) {
+      const std::lock_guard lock(mutex_);
+      failure_ = error.what();
+      return;
+    }
+    if (!stop.stop_requested()) over_();
+  }
+}
+
+}  // namespace agreed
