@@ -46,11 +46,12 @@ class PageMaker {
         path_(ask.path),
         target_(take_apart("/?" + ask.query).value_or(Target{})),
         current_(copies_of(snapshot.alerts)),
-        input_{snapshot, current_, now_utc()} {
-    input_.visitor = ask.visitor;
-    input_.here = ask.path + (ask.query.empty() ? "" : "?" + ask.query);
-    input_.notice = ask.notice;
-  }
+        input_{.snapshot = snapshot,
+               .current = current_,
+               .now = now_utc(),
+               .visitor = ask.visitor,
+               .here = ask.path + (ask.query.empty() ? "" : "?" + ask.query),
+               .notice = ask.notice} {}
 
   std::optional<PageAnswer> make() {
     if (path_ == "/sign-in") {

@@ -4,7 +4,8 @@ include(GNUInstallDirs)
 install(TARGETS agreed RUNTIME)
 install(FILES deploy/systemd/agreed.service DESTINATION /lib/systemd/system)
 install(FILES deploy/debian/agreed.yaml DESTINATION /etc/agreed)
-install(FILES README.md deploy/installation.md config/reference.yaml deploy/nginx/agreed.conf DESTINATION ${CMAKE_INSTALL_DOCDIR})
+install(FILES README.md deploy/alerts.md deploy/choosing-limits.md deploy/first-day.md deploy/installation.md
+        deploy/reading-the-page.md deploy/windows-share.md config/reference.yaml deploy/nginx/agreed.conf DESTINATION ${CMAKE_INSTALL_DOCDIR})
 install(FILES deploy/debian/copyright DESTINATION ${CMAKE_INSTALL_DOCDIR})
 # -n: no time in it, so that two packages of one source are the same.
 set_property(DIRECTORY APPEND PROPERTY CMAKE_CONFIGURE_DEPENDS ${PROJECT_SOURCE_DIR}/deploy/debian/changelog)

@@ -6,7 +6,7 @@ packages="g++ cmake ninja-build ccache pkg-config git
   libyaml-cpp-dev libspdlog-dev libfmt-dev doctest-dev libeigen3-dev nlohmann-json3-dev libboost-dev
   libboost-math-dev libcli11-dev libcsv-dev libhowardhinnant-date-dev libsystemd-dev libre2-dev tzdata
   clang clang-format clang-tidy libclang-rt-14-dev python3 python3-numpy python3-scipy
-  python3-prometheus-client python3-jsonschema curl openssl procps wrk nginx chromium systemd"
+  python3-prometheus-client python3-jsonschema curl openssl procps man-db mandoc wrk nginx chromium systemd"
 missing=""
 for package in $packages; do
   dpkg-query -W -f='${db:Status-Status}' "$package" 2>/dev/null | grep -qx installed || missing="$missing $package"

@@ -7,6 +7,7 @@
 #include <CLI/CLI.hpp>
 
 #include "config/nearest.hpp"
+#include "daemon/cli/command_help.hpp"
 #include "daemon/cli/time_argument.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/version.hpp"
@@ -64,9 +65,11 @@ void add_check(CLI::App& app, CheckCommand& check) {
       check.config);
   add_json(sub, check.json);
   CLI::Option* const sample =
-      sub.add_option("--sample", check.sample, "show how this file would be read, row by row");
+      sub.add_option("--sample", check.sample, "show how this file would be read, row by row")
+          ->type_name("FILE");
   CLI::Option* const analyzer =
-      sub.add_option("--analyzer", check.analyzer, "whose file the sample is: an id of analyzers");
+      sub.add_option("--analyzer", check.analyzer, "whose file the sample is: an id of analyzers")
+          ->type_name("ID");
   sample->needs(analyzer);
   analyzer->needs(sample);
   sub.footer(
@@ -102,7 +105,8 @@ void add_verify(CLI::App& app, VerifyCommand& verify) {
          "shows only against one")
       ->type_name("SEQUENCE:SHA256");
   sub.add_option("--file", verify.file,
-                 "a backup, or a journal that was put aside, instead of the service's own");
+                 "a backup, or a journal that was put aside, instead of the service's own")
+      ->type_name("FILE");
   add_json(sub, verify.json);
   sub.footer(
       "May run while the service does. Exit status: 0 nothing was changed, 1 something was or is missing,\n"
@@ -158,6 +162,7 @@ void add_report(CLI::App& app, ReportCommand& report) {
   add_time(sub, "--to", "its end, not included; now if that is earlier, and without it",
            [&report](Instant at) { report.to = at; });
   sub.add_option("--out", report.out, "the page, FILE.html; its tables are written beside it as .csv")
+      ->type_name("FILE")
       ->required();
   add_json(sub, report.json);
   sub.footer(
@@ -184,9 +189,10 @@ void add_token(CLI::App& app, TokenCommand& token) {
          },
          "reader: may read where the service asks for a token; operator: may also acknowledge alerts, send\n"
          "messages again, ...")
-      ->type_name("ROLE")
+      ->type_name("reader|operator")
       ->required();
-  sub.add_option("--name", token.name, "whose it is, for the tokens file; else the role and a number");
+  sub.add_option("--name", token.name, "whose it is, for the tokens file; else the role and a number")
+      ->type_name("NAME");
   add_json(sub, token.json);
   sub.footer(
       "The tokens file is access.tokens_file of the configuration; it holds hashes only. The service reads "
@@ -211,7 +217,8 @@ void add_send_test(CLI::App& app, SendTestCommand& test) {
 }
 
 void add_token_file(CLI::App& sub, std::filesystem::path& file) {
-  sub.add_option("--token-file", file, "a file whose first line is the token; else AGREED_TOKEN is used");
+  sub.add_option("--token-file", file, "a file whose first line is the token; else AGREED_TOKEN is used")
+      ->type_name("FILE");
 }
 
 void add_resend(CLI::App& app, ResendCommand& resend) {
@@ -220,7 +227,8 @@ void add_resend(CLI::App& app, ResendCommand& resend) {
   sub.add_option("ID", resend.message, "the message: webhook-id, as deliveries of /api/alerts/{id} have it")
       ->required();
   add_token_file(sub, resend.token_file);
-  sub.add_option("--url", resend.url, "where the service is, if not where the configuration says it listens");
+  sub.add_option("--url", resend.url, "where the service is, if not where the configuration says it listens")
+      ->type_name("URL");
   add_json(sub, resend.json);
   sub.footer(
       "For a message that was given up (undeliverable), or one that arrived and was lost there. An endpoint\n"
@@ -286,13 +294,48 @@ void add_replay(CLI::App& app, ReplayCommand& replay) {
       "taken back was never there. Two alerts of one kind and subject within a day of each other match.\n"
       "Exit status: 0 done, 1 there was nothing to replay, 2 wrong use or configuration, 3 it could not be "
       "read.\n"
-      "Example:\n  agreed replay trial.yaml --from /var/lib/agreed --between 2026-01-01 2026-04-01\n"
-      "  agreed replay trial.yaml --from drop-files-of-2025 --json");
+      "Example:\n  agreed replay /etc/agreed/agreed.yaml --between 2026-01-01 2026-04-01\n"
+      "  agreed replay /etc/agreed/agreed.yaml --from /backup/agreed-2026-01-05.sqlite\n"
+      "  agreed replay /etc/agreed/agreed.yaml --from /srv/agreed/ --json");
 }
 
-}  // namespace
+/// Why a command line with an option that its command does not have was refused; CLI11 would rather speak of
+/// what is missing.
+std::optional<std::string> unknown_option(const CLI::App& command, std::span<const std::string> arguments) {
+  std::vector<std::string> names;
+  for (const CLI::Option* option : command.get_options())
+    for (const std::string& name : option->get_lnames()) names.push_back("--" + name);
+  for (const std::string& argument : arguments) {
+    if (argument == "--") break;
+    const std::string name = argument.substr(0, argument.find('='));
+    if (!name.starts_with("--") || std::find(names.begin(), names.end(), name) != names.end()) continue;
+    return "there is no option '" + name + "'" + settings_file::did_you_mean(name, names);
+  }
+  return std::nullopt;
+}
 
-Command parse_command_line(std::span<const std::string> arguments) {
+/// What an unfit command line is told.
+Say refusal(const CLI::App& app, std::span<const std::string> arguments, const std::string& error) {
+  const auto used = app.get_subcommands();
+  const CLI::App& command = used.empty() ? app : *used.front();
+  const std::string help = used.empty() ? "agreed --help" : "agreed " + command.get_name() + " --help";
+  return {kWrongUse,
+          "agreed: " + unknown_option(command, arguments).value_or(error) + "\nsee " + help + '\n'};
+}
+
+CommandHelp help_of(const CLI::App& command) {
+  CommandHelp help{command.get_name(), command.get_description(), {}, command.get_footer()};
+  for (const CLI::Option* option : command.get_options()) {
+    const bool is_option = option->nonpositional();
+    const bool takes = is_option && option->get_type_size() > 0;
+    help.arguments.push_back({option->get_name(!is_option), takes ? option->get_type_name() : "",
+                              option->get_description(), is_option, option->get_required()});
+  }
+  return help;
+}
+
+/// Reads a command line, or, where `help` asks for it, tells what there is to read: of one and the same tree.
+Command read_or_tell(std::span<const std::string> arguments, std::vector<CommandHelp>* help) {
   CLI::App app{
       "agreed keeps two production analyzers, whose results are used as one, true to each other:\n"
       "it watches their drop folders, charts their check standards, fits their split samples\n"
@@ -329,6 +372,11 @@ Command parse_command_line(std::span<const std::string> arguments) {
   ReplayCommand replay;
   add_replay(app, replay);
 
+  if (help != nullptr) {
+    help->push_back(help_of(app));
+    for (const CLI::App* command : app.get_subcommands({})) help->push_back(help_of(*command));
+    return Say{};
+  }
   if (!arguments.empty() && !arguments.front().starts_with('-')) {
     const auto names = names_of(app);
     if (std::find(names.begin(), names.end(), arguments.front()) == names.end())
@@ -341,10 +389,7 @@ Command parse_command_line(std::span<const std::string> arguments) {
   } catch (const CLI::CallForHelp&) {
     return Say{kDone, app.help()};
   } catch (const CLI::ParseError& error) {
-    const auto used = app.get_subcommands();
-    const std::string help =
-        used.empty() ? "agreed --help" : "agreed " + used.front()->get_name() + " --help";
-    return Say{kWrongUse, std::string("agreed: ") + error.what() + "\nsee " + help + '\n'};
+    return refusal(app, arguments, error.what());
   }
   if (app.got_subcommand("run")) return run;
   if (app.got_subcommand("check")) return check;
@@ -358,6 +403,18 @@ Command parse_command_line(std::span<const std::string> arguments) {
   if (app.got_subcommand("status")) return status;
   if (app.got_subcommand("replay")) return replay;
   return example;
+}
+
+}  // namespace
+
+Command parse_command_line(std::span<const std::string> arguments) {
+  return read_or_tell(arguments, nullptr);
+}
+
+std::vector<CommandHelp> command_help() {
+  std::vector<CommandHelp> help;
+  read_or_tell({}, &help);
+  return help;
 }
 
 }  // namespace agreed

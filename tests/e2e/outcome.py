@@ -2,7 +2,7 @@
 the clock on the wall."""
 import sqlite3
 
-MOMENTS = ("opened_at", "changed_at", "told_at", "resolved_at", "url")
+MOMENTS = ("opened_at", "changed_at", "told_at", "resolved_at", "url", "config_sha256")  # each site has ports of its own
 
 
 def told(alert):

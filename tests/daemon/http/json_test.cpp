@@ -55,7 +55,8 @@ TEST_CASE("the status in full, byte for byte") {
   json["service"]["version"] = "V";
   const std::string expected =
       R"({"site":"Harrow Mill","service":{"version":"V","started_at":"2026-01-05T09:00:00.000Z","uptime_s":3600,)"
-      R"("config_sha256":"cccccccccccccccccccccccccccccccccccccccccccccccccccccccccccccccc","ready":true},)"
+      R"("config_sha256":"cccccccccccccccccccccccccccccccccccccccccccccccccccccccccccccccc",)"
+      R"("config_since":null,"ready":true},)"
       R"("at":"2026-01-05T10:00:00.000Z","overall":"attention",)"
       R"("intake":{"pending_files":2,"files":{"done":3,"repeated":1,"rejected":0},)"
       R"("readings":{"accepted":120,"repeated":2,"rejected":1,"voided":1,"censored":1},)"

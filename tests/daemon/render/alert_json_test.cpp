@@ -78,7 +78,7 @@ TEST_CASE("fields stand in the order of the API") {
   const auto json = nlohmann::ordered_json::parse(alert_json(full_alert(), "http://h"));
   CHECK(key_order(json) ==
         "id kind subject severity state title text opened_at changed_at resolved_at resolved_reason "
-        "acknowledged started_between details url started_at told_at held ");
+        "acknowledged started_between details url started_at told_at held config_sha256 ");
   CHECK(json["id"] == "17");
   CHECK(json["opened_at"] == "2026-02-05T06:00:00.000Z");
   CHECK(key_order(json["subject"]) == "analyzer standard measurand ");
