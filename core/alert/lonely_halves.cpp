@@ -29,6 +29,11 @@ void LonelyHalves::settle(const LacksPartner& lacks_partner) {
   for (; waiting_.size() > kCapacity; waiting_.pop_front()) known_.erase(key_of(waiting_.front().result));
 }
 
+bool LonelyHalves::any_due(Instant now) const {
+  return std::any_of(waiting_.begin(), waiting_.end(),
+                     [now](const Waiting& half) { return half.last < now; });
+}
+
 void LonelyHalves::clear() {
   waiting_.clear();
   known_.clear();

@@ -35,6 +35,8 @@ class LonelyHalves {
   /// A finding for each analyzer with halves whose time has passed at `now`, their samples in
   /// `details.items`. They are forgotten, told or not.
   [[nodiscard]] std::vector<Finding> due(Instant now, const LacksPartner& lacks_partner);
+  /// Whether the time of any half has passed at `now`; its partner may have come since.
+  [[nodiscard]] bool any_due(Instant now) const;
   void clear();
 
  private:

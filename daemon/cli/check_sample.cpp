@@ -3,7 +3,6 @@
 #include <algorithm>
 #include <array>
 #include <fstream>
-#include <memory>
 #include <optional>
 #include <vector>
 
@@ -12,9 +11,8 @@
 
 #include "core/base/number_text.hpp"
 #include "core/base/rfc3339.hpp"
-#include "daemon/clock.hpp"
+#include "daemon/cli/intake_context.hpp"
 #include "daemon/exit_codes.hpp"
-#include "daemon/intake/file_names.hpp"
 #include "daemon/intake/nearest_known.hpp"
 #include "daemon/intake/plain_reader.hpp"
 #include "daemon/intake/text.hpp"
@@ -119,14 +117,6 @@ class Printer final : public RowTaker {
   bool first_ = true;
 };
 
-/// Why a file of that name would not be taken; empty if it would.
-std::string name_fault(const IntakeSettings& intake, const std::string& name) {
-  if (is_ignored_name(name)) return "a file of that name is taken for work in progress and left where it is";
-  if (intake.mapped && !is_wanted_name(intake.mapped->files, name))
-    return "format " + intake.format + " does not take files of that name (files, ignore)";
-  return "";
-}
-
 std::string read(PlainReader& reader, std::ifstream& file) {
   std::array<char, 65'536> block{};
   bool go_on = true;
@@ -136,18 +126,6 @@ std::string read(PlainReader& reader, std::ifstream& file) {
   }
   if (go_on) reader.finish(true);
   return reader.unusable();
-}
-
-PlainContext context_of(const Config& config, std::size_t analyzer) {
-  const IntakeSettings& intake = config.intake[analyzer];
-  const AnalyzerIndex index{static_cast<std::uint32_t>(analyzer)};
-  return {*config.settings,
-          index,
-          standards_of(*config.settings, index),
-          std::make_shared<LocalZone>(intake.zone),
-          intake.not_before,
-          now_utc(),
-          intake.mapped};
 }
 
 std::optional<std::size_t> position_of(const Config& config, const std::string& analyzer) {

@@ -257,6 +257,48 @@ void add_status(CLI::App& app, StatusCommand& status) {
       "Example:\n  agreed status /etc/agreed/agreed.yaml\n  agreed status http://127.0.0.1:7480 --json");
 }
 
+Period period_argument(const std::string& option, const std::vector<std::string>& ends) {
+  std::vector<Instant> times;
+  for (const std::string& text : ends) {
+    const auto at = time_argument(text);
+    if (!at)
+      throw CLI::ValidationError(option, std::string("expected ") + kTimeForms + ", found '" + text + "'");
+    times.push_back(*at);
+  }
+  if (times.at(0) >= times.at(1))
+    throw CLI::ValidationError(option, "the first time must be before the second");
+  return {times[0], times[1]};
+}
+
+void add_replay(CLI::App& app, ReplayCommand& replay) {
+  CLI::App& sub = add_command(app, "replay",
+                              "runs old readings through this configuration: which alerts it would have "
+                              "raised, beside those raised then",
+                              replay.config);
+  sub.add_option("--from", replay.from,
+                 "a journal (a backup, a state folder), or a folder with drop files in a folder for each "
+                 "analyzer; else the journal of the configuration")
+      ->type_name("DIR_OR_DATABASE");
+  sub.add_option_function<std::vector<std::string>>(
+         "--between",
+         [&replay](const std::vector<std::string>& ends) {
+           replay.between = period_argument("--between", ends);
+         },
+         "only alerts opened from A on and before B; what was measured before A is learned from")
+      ->expected(2)
+      ->type_name("A B");
+  add_json(sub, replay.json);
+  sub.footer(
+      "Nothing is written; the service may run. Every reading counts as received when it was measured; what "
+      "was\n"
+      "taken back was never there. Two alerts of one kind and subject within a day of each other match.\n"
+      "Exit status: 0 done, 1 there was nothing to replay, 2 wrong use or configuration, 3 it could not be "
+      "read.\n"
+      "Example:\n  agreed replay /etc/agreed/agreed.yaml --between 2026-01-01 2026-04-01\n"
+      "  agreed replay /etc/agreed/agreed.yaml --from /backup/agreed-2026-01-05.sqlite\n"
+      "  agreed replay /etc/agreed/agreed.yaml --from /srv/agreed/ --json");
+}
+
 /// Why a command line with an option that its command does not have was refused; CLI11 would rather speak of
 /// what is missing.
 std::optional<std::string> unknown_option(const CLI::App& command, std::span<const std::string> arguments) {
@@ -327,6 +369,8 @@ Command read_or_tell(std::span<const std::string> arguments, std::vector<Command
   add_resend(app, resend);
   StatusCommand status;
   add_status(app, status);
+  ReplayCommand replay;
+  add_replay(app, replay);
 
   if (help != nullptr) {
     help->push_back(help_of(app));
@@ -357,6 +401,7 @@ Command read_or_tell(std::span<const std::string> arguments, std::vector<Command
   if (app.got_subcommand("send-test")) return send_test;
   if (app.got_subcommand("resend")) return resend;
   if (app.got_subcommand("status")) return status;
+  if (app.got_subcommand("replay")) return replay;
   return example;
 }
 

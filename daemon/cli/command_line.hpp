@@ -7,6 +7,7 @@
 #include <variant>
 #include <vector>
 
+#include "core/base/finding.hpp"
 #include "daemon/http/tokens.hpp"
 #include "daemon/journal/journal_types.hpp"
 
@@ -67,15 +68,21 @@ struct StatusCommand {
   std::filesystem::path token_file;
   bool json = false;
 };
+struct ReplayCommand {
+  std::filesystem::path config;
+  std::filesystem::path from;     ///< a journal or a folder; empty: the configuration's own journal
+  std::optional<Period> between;  ///< alerts opened from `first` on and before `last`
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
   std::string text;
 };
 
-using Command =
-    std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand, RestoreCommand,
-                 ReportCommand, TokenCommand, SendTestCommand, ResendCommand, StatusCommand, Say>;
+using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand,
+                             RestoreCommand, ReportCommand, TokenCommand, SendTestCommand, ResendCommand,
+                             StatusCommand, ReplayCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

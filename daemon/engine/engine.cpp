@@ -216,31 +216,24 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
     if (task.after) answers.emplace_back([&task] { task.after(""); });
 }
 
-std::vector<Subject> Engine::refolded(const MonitorOutcome& outcome) const {
-  std::vector<Subject> subjects;
-  subjects.reserve(outcome.charts_refolded.size() + outcome.comparisons_refolded.size());
-  for (const ChartIndex chart : outcome.charts_refolded) subjects.push_back(subject_of(*settings_, chart));
-  for (const ComparisonIndex comparison : outcome.comparisons_refolded)
-    subjects.push_back(subject_of(*settings_, comparison));
-  return subjects;
-}
-
 MonitorOutcome Engine::conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
                                 Instant now) {
   JournalHistory history(*journal_, *settings_, &pulse_);
   MonitorOutcome outcome = monitor_.apply(std::move(events), history);
+  const AfterFold after = after_fold();
   const auto tell_of = [&](Finding finding) {
-    explain(finding);
+    after.explain(finding);
     record(finding);
     tell(book_->apply(finding, now), now);
   };
   std::for_each(outcome.findings.begin(), outcome.findings.end(), tell_of);
   std::for_each(intake_findings.begin(), intake_findings.end(), tell_of);
-  if (const auto subjects = refolded(outcome); !subjects.empty())
+  if (const auto subjects = after.refolded(outcome); !subjects.empty())
     reconcile(outcome, subjects, "late_data", now);
   for (const ComparisonIndex comparison : monitor_.explained_anew(outcome)) {
     outcome.comparisons_changed.insert(comparison);
-    tell_anew(comparison, now);
+    after.tell_anew(comparison, now,
+                    [&](const std::vector<AlertTransition>& transitions) { tell(transitions, now); });
   }
   return outcome;
 }

@@ -13,6 +13,7 @@
 #include <thread>
 
 #include "config/config.hpp"
+#include "core/alert/after_fold.hpp"
 #include "core/alert/alert_book.hpp"
 #include "core/alert/lonely_halves.hpp"
 #include "core/monitor/monitor.hpp"
@@ -88,11 +89,7 @@ class Engine final : public IntakeSink, public Service {
   void take_batch(Work& work, Instant now, std::vector<std::function<void()>>& answers);
   MonitorOutcome conclude(std::vector<Event> events, const std::vector<Finding>& intake_findings,
                           Instant now);
-  /// Adds the likely cause and what is in doubt to a finding of a lost or a changed agreement.
-  void explain(Finding& finding) const;
-  /// Brings the open alerts of a comparison up to what its diagnosis says now.
-  void tell_anew(ComparisonIndex comparison, Instant now);
-  [[nodiscard]] std::vector<Subject> refolded(const MonitorOutcome& outcome) const;
+  [[nodiscard]] AfterFold after_fold() const;
   /// Compares the alert book with what holds after a fold; `subjects` and `news` as in AlertBook::reconcile.
   void reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
                  const std::string& reason, Instant now, bool news = true);

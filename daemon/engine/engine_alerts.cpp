@@ -1,7 +1,6 @@
 // What is found goes into the alert book, and what that says to the routes: all within the open batch.
 #include <algorithm>
 
-#include "core/alert/cause.hpp"
 #include "daemon/engine/engine.hpp"
 #include "daemon/engine/journal_history.hpp"
 #include "daemon/engine/service_watch.hpp"
@@ -88,38 +87,14 @@ void Engine::beat(Instant now) {
   }
 }
 
-void Engine::explain(Finding& finding) const {
-  if (!has_cause(finding)) return;
-  for (std::uint32_t i = 0; i < settings_->comparisons.size(); ++i) {
-    if (settings_->comparisons[i].id != finding.subject.comparison) continue;
-    if (const auto change = monitor_.explain({i}))
-      add_cause(finding, change->diagnosis, change->look_back,
-                book_->find_current(finding.kind, finding.subject));
-  }
-}
-
-void Engine::tell_anew(ComparisonIndex comparison, Instant now) {
-  for (Finding& finding : monitor_.conditions(comparison)) {
-    if (!has_cause(finding) || book_->find_current(finding.kind, finding.subject) == nullptr) continue;
-    explain(finding);
-    tell(book_->apply(finding, now), now);
-  }
+AfterFold Engine::after_fold() const {
+  return {*settings_, monitor_, *book_};
 }
 
 void Engine::reconcile(const MonitorOutcome& outcome, const std::vector<Subject>& subjects,
                        const std::string& reason, Instant now, bool news) {
-  std::vector<Finding> conditions;
-  const auto add = [&conditions](std::vector<Finding> more) {
-    conditions.insert(conditions.end(), std::make_move_iterator(more.begin()),
-                      std::make_move_iterator(more.end()));
-  };
-  for (const ChartIndex chart : outcome.charts_refolded) add(monitor_.conditions(chart));
-  for (const ComparisonIndex comparison : outcome.comparisons_refolded) {
-    add(monitor_.conditions(comparison));
-    tell(book_->admit_outliers(settings_->of(comparison).id, outcome.set_aside.at(comparison), now), now);
-  }
-  for (Finding& condition : conditions) explain(condition);
-  tell(book_->reconcile(conditions, subjects, reason, now, news), now);
+  after_fold().reconcile(outcome, subjects, reason, now, news,
+                         [&](const std::vector<AlertTransition>& transitions) { tell(transitions, now); });
 }
 
 void Engine::release_what_is_unwatched(Instant now) {

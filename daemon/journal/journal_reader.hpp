@@ -99,9 +99,19 @@ struct ReadingQuery {
   std::optional<ReadingRow> after;  ///< the last row of the page before (its key)
 };
 
+/// A step of an alert as it was told, and what led to it.
+struct PastTransition {
+  StoredTransition transition;
+  /// The finding recorded just before it in the same batch; `kind` empty: none was.
+  std::string finding_kind, finding_subject;
+  Instant finding_at{};  ///< when what led to that finding was measured
+};
+
 class JournalReader {
  public:
   explicit JournalReader(const std::filesystem::path& folder);
+  /// Of a file that is a journal, whatever its name: a backup, one that was put aside.
+  [[nodiscard]] static JournalReader of_file(const std::filesystem::path& file);
   ~JournalReader();
   JournalReader(JournalReader&&) noexcept;
 
@@ -133,9 +143,14 @@ class JournalReader {
                   const std::function<void(std::string_view sample, Instant, std::int32_t replicate,
                                            double value)>& take);
   [[nodiscard]] std::vector<JournalIntervention> interventions();
+  /// Every step of every alert, in the order in which they were told.
+  void each_transition(const std::function<void(PastTransition&&)>& take);
+  /// Everything read within `work` is as of one moment, whatever is committed meanwhile.
+  void at_one_moment(const std::function<void()>& work);
 
  private:
   struct Impl;
+  explicit JournalReader(std::unique_ptr<Impl> impl);
   std::unique_ptr<Impl> impl_;
 };
 

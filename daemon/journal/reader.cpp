@@ -152,11 +152,21 @@ std::string sql_of(const FileQuery& query) {
 
 }  // namespace
 
-JournalReader::JournalReader(const std::filesystem::path& folder) {
-  journal::translating(journal::database_file(folder), [&] { impl_ = std::make_unique<Impl>(folder); });
+JournalReader::JournalReader(const std::filesystem::path& folder)
+    : JournalReader(of_file(journal::database_file(folder))) {}
+JournalReader::JournalReader(std::unique_ptr<Impl> impl) : impl_(std::move(impl)) {}
+JournalReader JournalReader::of_file(const std::filesystem::path& file) {
+  return JournalReader(journal::translating(file, [&] { return std::make_unique<Impl>(file); }));
 }
 JournalReader::~JournalReader() = default;
 JournalReader::JournalReader(JournalReader&&) noexcept = default;
+
+void JournalReader::at_one_moment(const std::function<void()>& work) {
+  journal::translating(impl_->file, [&] {
+    const Moment moment(*impl_->database);
+    work();
+  });
+}
 
 std::string JournalReader::source() {
   return journal::translating(impl_->file, [&]() -> std::string {

@@ -2,6 +2,7 @@
 // A read-only connection to a journal that may be used. Private to daemon/journal.
 #include <memory>
 #include <optional>
+#include <utility>
 
 #include "daemon/journal/connection.hpp"
 #include "daemon/journal/journal.hpp"
@@ -10,8 +11,8 @@
 namespace agreed {
 
 struct JournalReader::Impl {
-  explicit Impl(const std::filesystem::path& folder)
-      : file(journal::database_file(folder)), database(journal::open_reader(file)) {
+  explicit Impl(std::filesystem::path database_file)
+      : file(std::move(database_file)), database(journal::open_reader(file)) {
     journal::check_usable(*database, file);
   }
 

@@ -24,8 +24,8 @@ bool holds(const std::string& text, const std::string& part) {
   return text.find(part) != std::string::npos;
 }
 
-const std::vector<std::string> kCommands = {"run",     "check", "example",   "verify", "backup",
-                                            "restore", "token", "send-test", "resend", "status"};
+const std::vector<std::string> kCommands = {"run",   "check",     "example", "verify", "backup", "restore",
+                                            "token", "send-test", "resend",  "status", "replay"};
 
 }  // namespace
 
