@@ -3,12 +3,12 @@
 #include <filesystem>
 #include <fstream>
 #include <iterator>
-#include <regex>
 #include <set>
 #include <string>
 #include <vector>
 
 #include <doctest/doctest.h>
+#include <re2/re2.h>
 
 #include "config/schema.hpp"
 #include "daemon/cli/command_help.hpp"
@@ -39,6 +39,19 @@ std::string content(const fs::path& file) {
 
 std::string the_commands() {
   return manual::command_page(command_help(), "2026-01-05", "0.1.0");
+}
+
+/// A command's name as the page writes it: its hyphens are those that are typed.
+std::string written(std::string name) {
+  RE2::GlobalReplace(&name, "-", "\\\\-");
+  return name;
+}
+
+/// What the pattern's one group matched, each time it was found.
+void collect(const std::string& text, const RE2& pattern, std::set<std::string>& found) {
+  re2::StringPiece at(text);
+  std::string match;
+  while (RE2::FindAndConsume(&at, pattern, &match)) found.insert(match);
 }
 
 /// The part of the page below a command's heading.
@@ -78,7 +91,7 @@ TEST_CASE("every command has its chapter, with each of its options and an exampl
     const CommandHelp& command = commands[i];
     CAPTURE(command.name);
     const std::string text = chapter(page, command.name);
-    CHECK(has(text, ".EX\nagreed " + std::regex_replace(command.name, std::regex("-"), "\\-") + ' '));
+    CHECK(has(text, ".EX\nagreed " + written(command.name) + ' '));
     for (const ArgumentHelp& argument : command.arguments) {
       CAPTURE(argument.name);
       CHECK_FALSE(argument.what.empty());
@@ -97,9 +110,7 @@ TEST_CASE("what the page says of is what --help lists") {
     const Command parsed = parse_command_line(asked);
     const std::string help = std::get<Say>(parsed).text;
     std::set<std::string> listed, told;
-    const std::regex option("\n  (?:-h,)?(--[a-z-]+)");
-    for (auto at = std::sregex_iterator(help.begin(), help.end(), option); at != std::sregex_iterator(); ++at)
-      listed.insert((*at)[1]);
+    collect(help, "\n  (?:-h,)?(--[a-z-]+)", listed);
     for (const ArgumentHelp& argument : command.arguments)
       if (argument.is_option) told.insert(argument.name);
     CHECK(listed == told);
@@ -109,15 +120,11 @@ TEST_CASE("what the page says of is what --help lists") {
 
 TEST_CASE("every environment variable that the program reads is told") {
   const std::string page = the_commands();
-  const std::regex read("(?:getenv|variable)\\(\"([A-Z_]+)\"\\)");
   std::set<std::string> names;
   for (const fs::directory_entry& file :
        fs::recursive_directory_iterator(fs::path(AGREED_SOURCE_DIR) / "daemon")) {
     if (file.path().extension() != ".cpp") continue;
-    const std::string source = content(file.path());
-    for (auto at = std::sregex_iterator(source.begin(), source.end(), read); at != std::sregex_iterator();
-         ++at)
-      names.insert((*at)[1]);
+    collect(content(file.path()), "(?:getenv|variable)\\(\"([A-Z_]+)\"\\)", names);
   }
   CHECK(names.size() >= 4);
   for (const std::string& name : names) CHECK_MESSAGE(has(page, manual::bold(name)), name);
