@@ -58,6 +58,10 @@ struct Intervention {
 
 using Event = std::variant<CheckReading, SplitReading, Intervention>;
 
+[[nodiscard]] inline bool is_reading(const Event& event) {
+  return !std::holds_alternative<Intervention>(event);
+}
+
 /// When it was measured or done.
 [[nodiscard]] Instant time_of(const Event& event);
 

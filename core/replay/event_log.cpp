@@ -16,7 +16,7 @@ bool takes_split(const ComparisonSettings& comparison, const SplitReading& readi
 std::vector<Event> in_fold_order(std::vector<Event> events) {
   std::vector<std::pair<Instant, std::size_t>> order;
   order.reserve(events.size());
-  for (std::size_t i = 0; i < events.size(); ++i) order.emplace_back(time_of_event(events[i]), i);
+  for (std::size_t i = 0; i < events.size(); ++i) order.emplace_back(time_of(events[i]), i);
   std::sort(order.begin(), order.end(), [&events](const auto& a, const auto& b) {
     if (a.first != b.first) return a.first < b.first;
     return happens_before(events[a.second], events[b.second]);
@@ -28,12 +28,6 @@ std::vector<Event> in_fold_order(std::vector<Event> events) {
 }
 
 }  // namespace
-
-Instant time_of_event(const Event& event) {
-  if (const auto* check = std::get_if<CheckReading>(&event)) return check->measured_at;
-  if (const auto* split = std::get_if<SplitReading>(&event)) return split->measured_at;
-  return std::get<Intervention>(event).at;
-}
 
 EventLog::EventLog(std::shared_ptr<const Settings> settings, std::vector<Event> events)
     : settings_(std::move(settings)), events_(in_fold_order(std::move(events))) {}

@@ -35,7 +35,4 @@ class EventLog final : public History {
   std::unordered_map<std::string_view, std::vector<std::size_t>> by_sample_;
 };
 
-/// measured_at of a reading, the time of an intervention.
-[[nodiscard]] Instant time_of_event(const Event& event);
-
 }  // namespace agreed

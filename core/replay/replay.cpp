@@ -18,7 +18,7 @@ AlertPolicy without_reminders(AlertPolicy policy) {
 }
 
 Instant first_of(const std::vector<Event>& events) {
-  return events.empty() ? Instant{} : time_of_event(events.front());
+  return events.empty() ? Instant{} : time_of(events.front());
 }
 
 }  // namespace
@@ -38,7 +38,7 @@ Replay::Replay(std::shared_ptr<const Settings> settings, AlertPolicy policy, std
 bool Replay::step() {
   std::vector<Event> batch = next_batch();
   if (batch.empty()) return false;
-  const Instant first = time_of_event(batch.front()), last = time_of_event(batch.back());
+  const Instant first = time_of(batch.front()), last = time_of(batch.back());
   watch_until(first);
   note(batch);
   conclude(std::move(batch), last);
@@ -51,9 +51,9 @@ std::vector<Event> Replay::next_batch() {
   const auto& events = log_.events();
   if (next_ == events.size()) return {};
   const auto begin = events.begin() + static_cast<std::ptrdiff_t>(next_);
-  const Instant until = time_of_event(*begin) + kTogether;
+  const Instant until = time_of(*begin) + kTogether;
   const auto end =
-      std::find_if(begin, events.end(), [&](const Event& event) { return time_of_event(event) >= until; });
+      std::find_if(begin, events.end(), [&](const Event& event) { return time_of(event) >= until; });
   next_ = static_cast<std::size_t>(end - events.begin());
   log_.know(next_);
   return {begin, end};
@@ -61,7 +61,7 @@ std::vector<Event> Replay::next_batch() {
 
 void Replay::note(const std::vector<Event>& batch) {
   for (const Event& event : batch) {
-    arrivals_.add(event, time_of_event(event));
+    arrivals_.add(event, time_of(event));
     if (const auto* split = std::get_if<SplitReading>(&event)) lonely_.add(*split, split->measured_at);
     if (const auto* intervention = std::get_if<Intervention>(&event)) book_.hold(*intervention);
   }

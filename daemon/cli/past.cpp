@@ -6,7 +6,7 @@
 #include <utility>
 
 #include "daemon/cli/with_configuration.hpp"
-#include "daemon/engine/journal_history.hpp"
+#include "daemon/engine/journal_events.hpp"
 #include "daemon/journal/backup.hpp"
 #include "daemon/journal/journal_reader.hpp"
 #include "daemon/render/alert_json.hpp"
@@ -16,32 +16,6 @@ namespace agreed {
 namespace {
 
 namespace fs = std::filesystem;
-
-void read_checks(JournalReader& journal, const Settings& settings, Past& past) {
-  for (const ChartSettings& chart : settings.charts)
-    journal.each_check(settings.of(chart.analyzer).id, settings.of(chart.standard).id,
-                       settings.of(chart.measurand).id,
-                       [&](Instant at, std::int32_t replicate, double value) {
-                         past.events.emplace_back(CheckReading{at, chart.analyzer, chart.standard,
-                                                               chart.measurand, replicate, value});
-                       });
-}
-
-/// An analyzer may be part of several comparisons of a measurand; its results count once.
-void read_splits(JournalReader& journal, const Settings& settings, Past& past) {
-  std::set<std::pair<AnalyzerIndex, MeasurandIndex>> streams;
-  for (const ComparisonSettings& comparison : settings.comparisons) {
-    streams.emplace(comparison.x, comparison.measurand);
-    streams.emplace(comparison.y, comparison.measurand);
-  }
-  for (const auto& [analyzer, measurand] : streams)
-    journal.each_split(settings.of(analyzer).id, settings.of(measurand).id,
-                       [&, analyzer = analyzer, measurand = measurand](std::string_view sample, Instant at,
-                                                                       std::int32_t replicate, double value) {
-                         past.events.emplace_back(
-                             SplitReading{at, analyzer, std::string(sample), measurand, replicate, value});
-                       });
-}
 
 AlertChange change_from(const std::string& name) {
   constexpr std::array kChanges = {AlertChange::opened, AlertChange::changed, AlertChange::acknowledged,
@@ -80,12 +54,8 @@ Past read_journal(const Config& config, const fs::path& file) {
   past.from = file;
   past.is_journal = true;
   journal.at_one_moment([&] {
-    read_checks(journal, *config.settings, past);
-    read_splits(journal, *config.settings, past);
-    past.readings = static_cast<std::int64_t>(past.events.size());
-    for (const JournalIntervention& stored : journal.interventions())
-      if (const auto intervention = intervention_from(stored, *config.settings))
-        past.events.emplace_back(*intervention);
+    past.events = journal_events(journal, *config.settings);
+    past.readings = std::ranges::count_if(past.events, is_reading);
     read_alerts(journal, past);
   });
   return past;

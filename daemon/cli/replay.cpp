@@ -21,17 +21,13 @@ namespace {
 // Two alerts of the same kind and subject this near are the same matter.
 constexpr Duration kNear = std::chrono::hours(24);
 
-bool is_reading(const Event& event) {
-  return !std::holds_alternative<Intervention>(event);
-}
-
 bool within(const std::optional<Period>& asked, Instant at) {
   return !asked || (at >= asked->first && at < asked->last);
 }
 
 std::int64_t readings_within(const Past& past, const std::optional<Period>& asked) {
   return std::count_if(past.events.begin(), past.events.end(), [&](const Event& event) {
-    return is_reading(event) && within(asked, time_of_event(event));
+    return is_reading(event) && within(asked, time_of(event));
   });
 }
 
@@ -40,17 +36,15 @@ std::string why_nothing(const Past& past, const std::optional<Period>& asked) {
     return "There are no readings of what this configuration watches in " + past.from.string() + ".";
   const auto [first, last] =
       std::minmax_element(past.events.begin(), past.events.end(),
-                          [](const Event& a, const Event& b) { return time_of_event(a) < time_of_event(b); });
+                          [](const Event& a, const Event& b) { return time_of(a) < time_of(b); });
   return "There are no readings from " + to_rfc3339(asked->first) + " up to " + to_rfc3339(asked->last) +
-         "; there are some from " + to_rfc3339(time_of_event(*first)) + " to " +
-         to_rfc3339(time_of_event(*last)) + ".";
+         "; there are some from " + to_rfc3339(time_of(*first)) + " to " + to_rfc3339(time_of(*last)) + ".";
 }
 
 /// Everything is replayed up to the end of what was asked: what came before it is what the charts learned
 /// from.
 void forget_later(Past& past, const std::optional<Period>& asked) {
-  if (asked)
-    std::erase_if(past.events, [&](const Event& event) { return time_of_event(event) >= asked->last; });
+  if (asked) std::erase_if(past.events, [&](const Event& event) { return time_of(event) >= asked->last; });
 }
 
 std::vector<AlertEpisode> opened_within(std::vector<AlertEpisode> episodes,
@@ -81,8 +75,8 @@ int replay_past(const ReplayCommand& command, const Config& config, Past past) {
   forget_later(past, command.between);
   const auto [first, last] =
       std::minmax_element(past.events.begin(), past.events.end(),
-                          [](const Event& a, const Event& b) { return time_of_event(a) < time_of_event(b); });
-  const Period period{time_of_event(*first), time_of_event(*last)};
+                          [](const Event& a, const Event& b) { return time_of(a) < time_of(b); });
+  const Period period{time_of(*first), time_of(*last)};
   past.readings = std::count_if(past.events.begin(), past.events.end(), is_reading);
   Replay replay(config.settings, config.alert_policy, std::exchange(past.events, {}), past.acknowledgements);
   auto alerts = match_episodes(opened_within(run(replay), command.between),

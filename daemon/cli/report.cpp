@@ -115,9 +115,12 @@ int report_command(const ReportCommand& command) {
     must_be_free(files);
     if (!fs::exists(database_of(config.state)))
       throw JournalError("There is no journal " + database_of(config.state).string() + ".", false);
-    const PeriodRecord record = gather_record(config, period, now);
     JournalReader reader(config.state);
-    write_whole(files.readings, [&](std::ostream& out) { write_readings(out, reader, period); });
+    PeriodRecord record;
+    reader.at_one_moment([&] {
+      record = gather_record(reader, config, period, now);
+      write_whole(files.readings, [&](std::ostream& out) { write_readings(out, reader, period); });
+    });
     write_whole(files.pairs, [&](std::ostream& out) { write_pairs(out, record); });
     write_whole(files.rejected, [&](std::ostream& out) { write_rejected(out, record); });
     std::vector<std::string> names;

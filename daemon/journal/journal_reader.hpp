@@ -14,6 +14,8 @@
 
 namespace agreed {
 
+struct JournalProof;
+
 struct AlertQuery {
   std::vector<std::string> states;  ///< empty: all
   std::optional<Instant> since;     ///< changed at or after
@@ -145,6 +147,8 @@ class JournalReader {
   [[nodiscard]] std::vector<JournalIntervention> interventions();
   /// Every step of every alert, in the order in which they were told.
   void each_transition(const std::function<void(PastTransition&&)>& take);
+  /// As verify_database does.
+  [[nodiscard]] JournalProof prove();
   /// Everything read within `work` is as of one moment, whatever is committed meanwhile.
   void at_one_moment(const std::function<void()>& work);
 

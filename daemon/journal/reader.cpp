@@ -11,10 +11,11 @@ using journal::instant;
 using journal::milliseconds;
 
 /// One short read transaction: the queries in it see the same moment.
+/// Begins a transaction for reading, or is part of the one that runs.
 class Moment {
  public:
-  explicit Moment(SQLite::Database& database) : database_(database) { database_.exec("BEGIN"); }
-  ~Moment() { database_.tryExec("COMMIT"); }
+  explicit Moment(SQLite::Database& database) : database_(database) { database_.exec("SAVEPOINT moment"); }
+  ~Moment() { database_.tryExec("RELEASE moment"); }
   Moment(const Moment&) = delete;
   Moment& operator=(const Moment&) = delete;
 

@@ -3,6 +3,7 @@
 #include "daemon/journal/chain.hpp"
 #include "daemon/journal/history.hpp"
 #include "daemon/journal/journal_impl.hpp"
+#include "daemon/journal/reader_impl.hpp"
 #include "daemon/journal/schema.hpp"
 
 namespace agreed {
@@ -193,20 +194,29 @@ class Verifier {
   JournalProof proof_;
 };
 
-}  // namespace
-
-JournalProof verify_database(const std::filesystem::path& database, std::span<const ChainHead> kept) {
+template <class Prove>
+JournalProof damage_is_a_fault(const std::filesystem::path& database, const Prove& prove) {
   try {
-    return journal::translating(database, [&] {
-      const auto connection = journal::open_reader(database);
-      journal::check_usable(*connection, database);
-      connection->exec("BEGIN");
-      return Verifier(*connection, kept).run();
-    });
+    return journal::translating(database, prove);
   } catch (const JournalError& error) {
     if (!error.damaged) throw;
     return {.batches = 0, .rows = 0, .head = {}, .not_found = {}, .faults = {error.what()}};
   }
+}
+
+}  // namespace
+
+JournalProof verify_database(const std::filesystem::path& database, std::span<const ChainHead> kept) {
+  return damage_is_a_fault(database, [&] {
+    const auto connection = journal::open_reader(database);
+    journal::check_usable(*connection, database);
+    connection->exec("BEGIN");
+    return Verifier(*connection, kept).run();
+  });
+}
+
+JournalProof JournalReader::prove() {
+  return damage_is_a_fault(impl_->file, [&] { return Verifier(*impl_->database, {}).run(); });
 }
 
 std::filesystem::path database_of(const std::filesystem::path& folder) {

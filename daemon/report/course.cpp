@@ -5,7 +5,8 @@
 #include <utility>
 
 #include "core/monitor/monitor.hpp"
-#include "daemon/report/reader_history.hpp"
+#include "core/replay/event_log.hpp"
+#include "daemon/engine/journal_events.hpp"
 
 namespace agreed {
 namespace {
@@ -27,19 +28,24 @@ class PeriodFold {
   PeriodFold(JournalReader& reader, std::shared_ptr<const Settings> settings, const ReportPeriod& period)
       : settings_(std::move(settings)),
         period_(period),
-        history_(reader, *settings_, period.from),
+        history_(settings_, journal_events(reader, *settings_)),
         monitor_(settings_),
         read_off_(settings_->comparisons.size()) {}
 
   PeriodCourse run() {
+    const std::vector<Event>& events = history_.events();
+    const auto up_to = [&](auto from, Instant until) {
+      return std::find_if(from, events.end(),
+                          [until](const Event& event) { return time_of(event) >= until; });
+    };
+    auto first = up_to(events.begin(), period_.from);
+    history_.know(static_cast<std::size_t>(first - events.begin()));
     monitor_.fold_all(history_);
     begin();
-    history_.know_until(period_.to);
-    const std::vector<Event> events = history_.events_from(period_.from);
-    for (auto first = events.begin(); first != events.end();) {
+    for (const auto end = up_to(first, period_.to); first != end;) {
       const Instant at = time_of(*first);
-      const auto last =
-          std::find_if(first, events.end(), [at](const Event& event) { return time_of(event) != at; });
+      const auto last = up_to(first, at + Duration(1));
+      history_.know(static_cast<std::size_t>(last - events.begin()));
       take({first, last}, at);
       first = last;
     }
@@ -71,7 +77,6 @@ class PeriodFold {
       if (const auto* check = std::get_if<CheckReading>(&event))
         if (const auto chart = monitor_.find_chart(check->analyzer, check->standard, check->measurand))
           ++course_.charts[chart->value].readings;
-    history_.know_until(at + Duration(1));
     const MonitorOutcome outcome = monitor_.apply(std::move(moment), history_);
     for (const ChartIndex index : outcome.charts_changed)
       go_on(course_.charts[index.value].states, monitor_.chart(index).state(), at);
@@ -127,7 +132,7 @@ class PeriodFold {
 
   std::shared_ptr<const Settings> settings_;
   ReportPeriod period_;
-  ReaderHistory history_;
+  EventLog history_;
   Monitor monitor_;
   PeriodCourse course_;
   std::vector<ReadOff> read_off_;

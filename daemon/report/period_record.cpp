@@ -46,14 +46,14 @@ bool PeriodRecord::empty() const {
          std::ranges::none_of(course.comparisons, paired);
 }
 
-PeriodRecord gather_record(const Config& config, const ReportPeriod& period, Instant now) {
+PeriodRecord gather_record(JournalReader& reader, const Config& config, const ReportPeriod& period,
+                           Instant now) {
   PeriodRecord record;
   record.period = period;
   record.made_at = now;
   record.config_file = config.file.string();
   record.config_sha256 = sha256_hex(config.text);
-  record.proof = verify_journal(config.state);
-  JournalReader reader(config.state);
+  record.proof = reader.prove();
   record.source = reader.source();
   record.course = course_of(reader, config.settings, period);
   record.snapshot = snapshot_of(config, record.course, period);

@@ -30,7 +30,8 @@ struct PeriodRecord {
 };
 
 /// Throws JournalError.
-[[nodiscard]] PeriodRecord gather_record(const Config& config, const ReportPeriod& period, Instant now);
+[[nodiscard]] PeriodRecord gather_record(JournalReader& reader, const Config& config,
+                                         const ReportPeriod& period, Instant now);
 
 /// The alert as it stood at the end of the period (with what was known of it then), and as it stands now.
 struct AlertThen {
