@@ -6,10 +6,6 @@
 
 namespace agreed {
 namespace {
-constexpr double kSameReading = 1e-12;
-// So that sums stay finite; no unit makes a larger one a measurement.
-constexpr double kLargestDeviation = 1e120;
-
 double deviation_from(const CheckReading& first, const CheckReading& reading) {
   return std::clamp(reading.value - first.value, -kLargestDeviation, kLargestDeviation);
 }

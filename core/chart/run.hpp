@@ -8,6 +8,11 @@
 
 namespace agreed {
 
+/// Readings closer than this part of their size are the same: conversions of units leave such gaps.
+inline constexpr double kSameReading = 1e-12;
+/// So that sums stay finite; no unit makes a larger one a measurement.
+inline constexpr double kLargestDeviation = 1e120;
+
 /// A single reading is a run of one. Values in the measurand's unit.
 struct Run {
   Instant at{};

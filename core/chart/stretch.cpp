@@ -6,11 +6,6 @@
 
 namespace agreed {
 namespace {
-// Squares of deviations up to this can be summed without overflow; no unit makes a larger one a measurement.
-constexpr double kLargestDeviation = 1e120;
-// Readings closer than this part of their size are the same: conversions of units leave such gaps.
-constexpr double kSameReading = 1e-12;
-
 double held_in(double squares) {
   return std::min(squares, kLargestDeviation * kLargestDeviation);
 }

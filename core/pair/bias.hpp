@@ -14,6 +14,9 @@
 
 namespace agreed {
 
+/// Of each of the two one-sided tests.
+inline constexpr double kPlainTail = 0.05;
+
 struct Bias {
   double value = 0;  ///< of y - x at the level
   double se = 0;

@@ -15,7 +15,6 @@ namespace {
 constexpr std::size_t kRecentPairs = 500;
 constexpr std::size_t kOlderPairs = 500;
 constexpr std::size_t kBiasHistory = 500;
-constexpr double kPlainTail = 0.05;  // each of the two one-sided tests
 constexpr double kCurvedTail = 0.01;
 
 double resolution_of(const Measurand& measurand) {

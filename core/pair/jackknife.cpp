@@ -6,7 +6,7 @@
 namespace agreed {
 namespace {
 // Below this part of a sum of squares the difference S - n/(n-1) c^2 has lost too many digits.
-constexpr double kMostlyGone = 1e-3;
+constexpr double kNearlyAllLeft = 1e-3;
 
 double slope_refitted_without(std::span<const Point> points, std::size_t left_out, double delta) {
   std::vector<Point> others(points.begin(), points.end());
@@ -20,7 +20,7 @@ std::optional<LineCovariance> jackknife_covariance(std::span<const Point> points
                                                    const DemingLine& line) {
   const double n = m.n;
   const double weight = n / (n - 1);
-  const double least_sxx = kMostlyGone * m.sxx, least_syy = kMostlyGone * m.syy;
+  const double least_sxx = kNearlyAllLeft * m.sxx, least_syy = kNearlyAllLeft * m.syy;
   // Deviations from the estimates of all pairs: of the line at mean_x, and of the slope.
   double sum_a = 0, sum_b = 0, sum_aa = 0, sum_ab = 0, sum_bb = 0;
   for (std::size_t i = 0; i < points.size(); ++i) {

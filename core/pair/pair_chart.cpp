@@ -24,7 +24,7 @@ constexpr double kEndless = 1e300;
 constexpr double kLikelihoodDrop = 3;
 
 // Weighted sums of v and w over the pairs before a split; w is relative to its mean over all pairs.
-struct Sums {
+struct ResidualSums {
   double weight = 0, v = 0, w = 0, vw = 0, ww = 0, vv = 0;
 
   void add(double its_weight, double residual, double fitted) {
@@ -45,7 +45,7 @@ struct Prefixes {
   explicit Prefixes(std::size_t most) {
     for (auto* sums : {&weight, &v, &w, &vw, &ww}) sums->reserve(most);
   }
-  void push_back(const Sums& sums) {
+  void push_back(const ResidualSums& sums) {
     weight.push_back(sums.weight);
     v.push_back(sums.v);
     w.push_back(sums.w);
@@ -58,7 +58,7 @@ struct Prefixes {
 // `splits` ones. No branches, so that the loop runs in vectors: a side without spread gets an endless
 // denominator instead.
 AGREED_WIDE_VECTORS
-std::vector<double> gains_of(const Prefixes& before, const Sums& all, std::size_t splits) {
+std::vector<double> gains_of(const Prefixes& before, const ResidualSums& all, std::size_t splits) {
   const double least_spread = kNoSpread * all.ww;
   const double about_one_line = all.v * all.v / all.weight;
   std::vector<double> gains(splits);
@@ -75,7 +75,7 @@ std::vector<double> gains_of(const Prefixes& before, const Sums& all, std::size_
 }
 
 // The same of an own line after the split over the established line, on which v is zero.
-std::vector<double> gains_after(const Prefixes& before, const Sums& all, std::size_t splits) {
+std::vector<double> gains_after(const Prefixes& before, const ResidualSums& all, std::size_t splits) {
   const double least_spread = kNoSpread * all.ww;
   std::vector<double> gains(splits);
   for (std::size_t i = 0; i < splits; ++i) {
@@ -124,7 +124,7 @@ struct PairChart::Line {
   [[nodiscard]] double fitted(Point centred) const { return delta * centred.x + slope * centred.y; }
 
   // Sums of older pairs, which follow for any line since v and w are linear in x and y.
-  [[nodiscard]] Sums sums_of(const WeightedMoments& block, const Moments& all) const {
+  [[nodiscard]] ResidualSums sums_of(const WeightedMoments& block, const Moments& all) const {
     const Moments& m = block.moments;
     if (m.n == 0) return {};
     const Point c = all.centred({m.origin.x + m.mean.x, m.origin.y + m.mean.y});
@@ -199,7 +199,7 @@ std::optional<PairChart::Scan> PairChart::scan(double delta) const {
   const int least_before = own ? kLeastBefore : 0, older = block_.moments.n;
   Scan scan;
   scan.first = std::max(least_before, older);
-  Sums sums = line->sums_of(block_, all_.moments);
+  ResidualSums sums = line->sums_of(block_, all_.moments);
   Prefixes before(newest_.size());
   int k = older;
   for (const Entry& entry : newest_) {

@@ -10,7 +10,7 @@
 
 namespace agreed {
 namespace {
-constexpr double kRounding = 4 * std::numeric_limits<double>::epsilon();
+constexpr double kEqualWithin = 4 * std::numeric_limits<double>::epsilon();
 constexpr double kInfinite = std::numeric_limits<double>::infinity();
 
 // Calls `use` with every slope that counts.
@@ -20,8 +20,8 @@ void each_slope(std::span<const Point> points, Use use) {
     for (std::size_t j = i + 1; j < points.size(); ++j) {
       const Point a = points[i], b = points[j];
       const double dx = a.x - b.x, dy = a.y - b.y;
-      const double least_x = kRounding * (std::abs(a.x) + std::abs(b.x));
-      const double least_y = kRounding * (std::abs(a.y) + std::abs(b.y));
+      const double least_x = kEqualWithin * (std::abs(a.x) + std::abs(b.x));
+      const double least_y = kEqualWithin * (std::abs(a.y) + std::abs(b.y));
       if (std::abs(dx) <= least_x) {
         if (std::abs(dy) > least_y) use(dy > 0 ? kInfinite : -kInfinite);
       } else if (std::abs(dx + dy) > least_x + least_y) {

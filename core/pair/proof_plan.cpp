@@ -4,11 +4,11 @@
 #include <cmath>
 
 #include "core/base/distributions.hpp"
+#include "core/pair/bias.hpp"
 
 namespace agreed {
 namespace {
 constexpr double kChance = 0.8;
-constexpr double kPlainTail = 0.05;
 constexpr int kMostPairs = 100'000;
 
 // What is asked of one level: the tail of its interval, and what it is to show.

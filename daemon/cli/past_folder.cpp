@@ -19,7 +19,7 @@ namespace {
 
 namespace fs = std::filesystem;
 
-constexpr std::size_t kRejectedShown = 20;
+constexpr std::size_t kFirstRejected = 20;
 constexpr std::string_view kReasonEnd = ".reason.txt";
 
 /// The key of a result as the journal has it.
@@ -44,7 +44,7 @@ class StandingRows {
 
   void reject(const std::string& file, std::uint32_t line, const std::string& reason) {
     ++past_.rejected;
-    if (past_.first_rejected.size() < kRejectedShown) past_.first_rejected.push_back({file, line, reason});
+    if (past_.first_rejected.size() < kFirstRejected) past_.first_rejected.push_back({file, line, reason});
   }
 
   /// To be called once, when every file was read.

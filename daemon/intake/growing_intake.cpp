@@ -13,7 +13,7 @@ namespace {
 using Clock = std::chrono::steady_clock;
 constexpr std::size_t kMostRecent = 5'000;  // portions by which a renamed file is recognised
 constexpr std::size_t kMostOpen = 16;       // files whose reader is kept between two changes
-constexpr std::size_t kMostShown = 20;
+constexpr std::size_t kMostLinesShown = 20;
 
 }  // namespace
 
@@ -221,7 +221,7 @@ std::vector<GrowingState> GrowingIntake::states() const {
   for (const auto& [identity, followed] : files_) newest.push_back(&followed);
   std::sort(newest.begin(), newest.end(),
             [](const Followed* a, const Followed* b) { return a->seen.mtime_ns > b->seen.mtime_ns; });
-  if (newest.size() > kMostShown) newest.resize(kMostShown);
+  if (newest.size() > kMostLinesShown) newest.resize(kMostLinesShown);
   std::sort(newest.begin(), newest.end(),
             [](const Followed* a, const Followed* b) { return a->name < b->name; });
   std::vector<GrowingState> states;

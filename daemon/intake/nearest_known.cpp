@@ -7,7 +7,7 @@
 namespace agreed {
 namespace {
 
-constexpr std::size_t kMostShown = 10;
+constexpr std::size_t kMostNamesShown = 10;
 
 }  // namespace
 
@@ -16,9 +16,9 @@ std::string known_hint(std::string_view name, const std::vector<std::string_view
   const std::vector<std::string> names(known.begin(), known.end());
   if (const auto meant = settings_file::nearest(name, names)) return "did you mean \"" + *meant + "\"?";
   std::string hint = "there are: ";
-  for (std::size_t i = 0; i < std::min(known.size(), kMostShown); ++i)
+  for (std::size_t i = 0; i < std::min(known.size(), kMostNamesShown); ++i)
     hint.append(i == 0 ? "" : ", ").append(known[i]);
-  return known.size() > kMostShown ? hint + ", ..." : hint;
+  return known.size() > kMostNamesShown ? hint + ", ..." : hint;
 }
 
 }  // namespace agreed

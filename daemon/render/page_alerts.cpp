@@ -147,22 +147,22 @@ DataTable history_table(const std::vector<StoredTransition>& history) {
   return table;
 }
 
-constexpr std::array<Choice, 5> kChoices = {{{"open,acknowledged", "Current"},
-                                             {"open", "Not acknowledged"},
-                                             {"acknowledged", "Acknowledged"},
-                                             {"resolved", "Resolved"},
-                                             {"open,acknowledged,resolved", "All"}}};
+constexpr std::array<Choice, 5> kAlertChoices = {{{"open,acknowledged", "Current"},
+                                                  {"open", "Not acknowledged"},
+                                                  {"acknowledged", "Acknowledged"},
+                                                  {"resolved", "Resolved"},
+                                                  {"open,acknowledged,resolved", "All"}}};
 
 std::string choice_html(const AlertList& list) {
   std::string out = "<nav class=\"choice\" aria-label=\"Which alerts\"><ul>";
-  for (const Choice& choice : kChoices)
+  for (const Choice& choice : kAlertChoices)
     out +=
         choice_link(std::string("/alerts?state=") + choice.value, choice.words, list.state == choice.value);
   return out + "</ul></nav>";
 }
 
 std::string heading_of(const AlertList& list) {
-  for (const Choice& choice : kChoices)
+  for (const Choice& choice : kAlertChoices)
     if (list.state == choice.value) return choice.words;
   return "Chosen";
 }

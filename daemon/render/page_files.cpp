@@ -8,11 +8,11 @@
 namespace agreed {
 namespace {
 
-constexpr std::array<Choice, 5> kChoices = {{{"", "All"},
-                                             {"done", "Taken in"},
-                                             {"rejected", "Rejected"},
-                                             {"repeated", "Came before"},
-                                             {kGrownOutcome, "Growing"}}};
+constexpr std::array<Choice, 5> kFileChoices = {{{"", "All"},
+                                                 {"done", "Taken in"},
+                                                 {"rejected", "Rejected"},
+                                                 {"repeated", "Came before"},
+                                                 {kGrownOutcome, "Growing"}}};
 
 std::string path_of(const std::string& outcome, const std::string& analyzer) {
   std::string query;
@@ -23,7 +23,7 @@ std::string path_of(const std::string& outcome, const std::string& analyzer) {
 
 std::string choices_html(const PageInput& input, const FileList& list) {
   std::string out = "<nav class=\"choice\" aria-label=\"Which files\"><ul>";
-  for (const Choice& choice : kChoices)
+  for (const Choice& choice : kFileChoices)
     out += choice_link(path_of(choice.value, list.analyzer), choice.words, list.outcome == choice.value);
   out += "</ul></nav>";
   if (!input.snapshot.settings || input.snapshot.settings->analyzers.size() < 2) return out;

@@ -11,7 +11,7 @@ namespace agreed {
 namespace {
 
 constexpr int kMost = 500;
-constexpr std::array kSteps = {30, 60, 120, 250};
+constexpr std::array kCountSteps = {30, 60, 120, 250};
 
 std::optional<int> count_of(const std::string& text) {
   int number = 0;
@@ -111,7 +111,7 @@ ComparisonView cut_to(const ComparisonView& view, const RangeCut& cut) {
 
 std::string range_html(const std::string& path, const std::string& name, const std::string& things,
                        const std::vector<Instant>& times, const PageRange& range, const RangeCut& cut) {
-  if (times.size() <= static_cast<std::size_t>(kSteps.front()) && !range.most && !range.from) return {};
+  if (times.size() <= static_cast<std::size_t>(kCountSteps.front()) && !range.most && !range.from) return {};
   std::string words = "Drawn are ";
   if (cut.count == 0)
     words = "There are no " + things + " from " + time_words(range.from.value_or(Instant{})) + " on.";
@@ -128,7 +128,7 @@ std::string range_html(const std::string& path, const std::string& name, const s
   }
   if (const std::size_t end = cut.first + cut.count; cut.count > 0 && end < times.size())
     links += range_link(path, name, width, times[end], "Later");
-  for (const int step : kSteps)
+  for (const int step : kCountSteps)
     if (static_cast<std::size_t>(step) < times.size())
       links += range_link(path, name, static_cast<std::size_t>(step), {}, "Newest " + std::to_string(step));
   if (cut.count < times.size()) links += "<li><a href=\"" + escaped(path) + "#drawn\">All</a></li>";

@@ -16,7 +16,7 @@ constexpr std::array<const char*, 12> kMonths = {"Jan", "Feb", "Mar", "Apr", "Ma
                                                  "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"};
 
 // Round steps below a month, in minutes.
-constexpr std::array<std::int64_t, 16> kSteps = {1,   2,   5,   10,   15,   30,   60,    120,
+constexpr std::array<std::int64_t, 16> kMinuteSteps = {1,   2,   5,   10,   15,   30,   60,    120,
                                                  180, 360, 720, 1440, 2880, 5760, 10080, 20160};
 constexpr std::array<int, 7> kMonthSteps = {1, 2, 3, 6, 12, 24, 60};
 
@@ -86,7 +86,7 @@ std::vector<Tick> time_ticks(double low, double high, int most) {
   if (!(low < high) || std::abs(low) > kFarthest || std::abs(high) > kFarthest || most < 1) return {};
   const Instant from{Duration(static_cast<std::int64_t>(std::ceil(low)))};
   const Instant to{Duration(static_cast<std::int64_t>(std::floor(high)))};
-  for (const std::int64_t step_minutes : kSteps) {
+  for (const std::int64_t step_minutes : kMinuteSteps) {
     const std::int64_t step = step_minutes * 60'000;
     // Weeks begin on Mondays: 1970-01-05 was one.
     const std::int64_t origin = step_minutes % 10080 == 0 ? 4LL * 86'400'000 : 0;

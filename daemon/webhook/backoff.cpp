@@ -6,11 +6,9 @@
 namespace agreed {
 namespace {
 
-constexpr int kGone = 410;
-
 std::string status_words(int status) {
   std::string words = "the endpoint answered " + std::to_string(status);
-  if (status == kGone) return words + " (gone): it wants no more messages";
+  if (status == kHttpGone) return words + " (gone): it wants no more messages";
   if (status >= 300 && status < 400) return words + ": redirects are not followed";
   return words;
 }
@@ -38,7 +36,7 @@ DeliveryTry judge(const OutboxMessage& message, const CallOutcome& outcome, Inst
   attempt.error = !outcome.error.empty() ? outcome.error : status_words(outcome.status);
   const int tries = message.tries + 1;
   const Instant end = message.created_at + policy.give_up_after;
-  attempt.given_up = outcome.status == kGone || (now >= end && tries >= policy.least_tries);
+  attempt.given_up = outcome.status == kHttpGone || (now >= end && tries >= policy.least_tries);
   if (attempt.given_up) return attempt;
 
   const Duration asked = std::min(outcome.retry_after.value_or(Duration::zero()), policy.most);

@@ -7,6 +7,9 @@
 
 namespace agreed {
 
+/// "Gone" (RFC 9110, 15.5.11): the endpoint wants no more messages.
+inline constexpr int kHttpGone = 410;
+
 struct RetryPolicy {
   Duration first = std::chrono::seconds(1);
   Duration most = std::chrono::hours(1);

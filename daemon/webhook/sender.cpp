@@ -15,7 +15,6 @@ namespace {
 
 using Steady = std::chrono::steady_clock;
 
-constexpr int kGone = 410;
 /// How long a try that was made may still be recorded after stop was asked for.
 constexpr Duration kLastRecord = std::chrono::milliseconds(500);
 constexpr Duration kPoll = std::chrono::milliseconds(20);
@@ -94,7 +93,7 @@ class WebhookSender::Lane {
     const double chance = std::uniform_real_distribution<double>(0.0, 1.0)(random_);
     const DeliveryTry result = judge(message, outcome, now_utc(), chance, options_.retry);
     // Before it is recorded: whoever sees the message given up may ask for it again at once.
-    if (result.status == kGone) ended_ = true;
+    if (result.status == kHttpGone) ended_ = true;
     if (!record(result, stop)) return;
     if (result.next_due)
       set_due(*result.next_due - now_utc());

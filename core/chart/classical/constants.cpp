@@ -13,7 +13,7 @@ namespace {
 constexpr int kTabled = 25;
 // Beyond +-8.5 a normal density counts for nothing here, so no range exceeds twice that; the trapezoid rule
 // converges faster than any power of its step for such integrands.
-constexpr double kFarthest = 8.5, kStep = 0.125;
+constexpr double kRangeEnd = 8.5, kStep = 0.125;
 constexpr int kRangeNodes = 64;
 
 void need_two(int n) {
@@ -27,7 +27,7 @@ struct Column {
 const std::vector<Column>& columns() {
   static const std::vector<Column> all = [] {
     std::vector<Column> made;
-    for (double x = -kFarthest; x <= kFarthest; x += kStep)
+    for (double x = -kRangeEnd; x <= kRangeEnd; x += kStep)
       made.push_back({normal_density(x), normal_cdf(x)});
     return made;
   }();
@@ -36,7 +36,7 @@ const std::vector<Column>& columns() {
 
 /// P(W > w).
 double range_tail(int n, double w) {
-  double below = 0, x = -kFarthest;
+  double below = 0, x = -kRangeEnd;
   for (const Column& column : columns()) {
     below += column.density * std::pow(normal_cdf(x + w) - column.below, n - 1);
     x += kStep;
@@ -46,7 +46,7 @@ double range_tail(int n, double w) {
 
 RangeConstants computed(int n) {
   double mean = 0, square = 0;
-  for (const Node& node : legendre_nodes(kRangeNodes, 0, 2 * kFarthest)) {
+  for (const Node& node : legendre_nodes(kRangeNodes, 0, 2 * kRangeEnd)) {
     const double tail = range_tail(n, node.x);
     mean += node.weight * tail;
     square += node.weight * 2 * node.x * tail;
