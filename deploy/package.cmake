@@ -4,8 +4,14 @@ include(GNUInstallDirs)
 install(TARGETS agreed RUNTIME)
 install(FILES deploy/systemd/agreed.service DESTINATION /lib/systemd/system)
 install(FILES deploy/debian/agreed.yaml DESTINATION /etc/agreed)
-install(FILES README.md deploy/alerts.md deploy/choosing-limits.md deploy/first-day.md deploy/installation.md
-        deploy/reading-the-page.md deploy/windows-share.md config/reference.yaml deploy/nginx/agreed.conf DESTINATION ${CMAKE_INSTALL_DOCDIR})
+# The documents lie beside each other as in the source, so that what they link and name is where they say.
+install(FILES README.md DESTINATION ${CMAKE_INSTALL_DOCDIR})
+install(FILES deploy/alerts.md deploy/choosing-limits.md deploy/first-day.md deploy/installation.md
+        deploy/reading-the-page.md deploy/windows-share.md DESTINATION ${CMAKE_INSTALL_DOCDIR}/deploy)
+install(FILES deploy/nginx/agreed.conf DESTINATION ${CMAKE_INSTALL_DOCDIR}/deploy/nginx)
+install(FILES config/reference.yaml DESTINATION ${CMAKE_INSTALL_DOCDIR}/config)
+install(FILES examples/first.yaml DESTINATION ${CMAKE_INSTALL_DOCDIR}/examples)
+install(DIRECTORY examples/formats DESTINATION ${CMAKE_INSTALL_DOCDIR}/examples)
 install(FILES deploy/debian/copyright DESTINATION ${CMAKE_INSTALL_DOCDIR})
 # -n: no time in it, so that two packages of one source are the same.
 set_property(DIRECTORY APPEND PROPERTY CMAKE_CONFIGURE_DEPENDS ${PROJECT_SOURCE_DIR}/deploy/debian/changelog)

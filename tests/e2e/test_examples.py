@@ -10,6 +10,8 @@ import re
 import shutil
 import subprocess
 import sys
+import tempfile
+import unittest
 
 import harness
 from harness import SiteTest, free_port, wait_until
@@ -189,6 +191,8 @@ class Examples(SiteTest):
         self.assertGreater(ran, 10)
         self.assertEqual(set(NOT_RUN) - used, set(), "these are in no document any more")
 
+
+class Documents(unittest.TestCase):
     def test_every_alert_kind_has_its_chapter_and_there_is_none_besides(self):
         source = (ROOT / "core" / "base" / "finding.cpp").read_text()
         kinds = re.findall(r'"([a-z_]+)"', re.search(r"kKinds = \{(.*?)\}", source, re.S)[1])
@@ -200,5 +204,24 @@ class Examples(SiteTest):
 
     def test_every_document_that_is_linked_is_there(self):
         for document in DOCUMENTS:
-            for link in re.findall(r"\]\(([^)#:]+)\)", document.read_text()):
-                self.assertTrue((document.parent / link).exists(), f"{document.name}: {link}")
+            self.assert_links_lead_somewhere(document)
+
+    def test_the_installed_documents_are_all_there_and_lead_to_each_other(self):
+        where = pathlib.Path(tempfile.mkdtemp(prefix="agreed-e2e-"))
+        self.addCleanup(shutil.rmtree, where)
+        subprocess.run(["cmake", "--install", os.path.dirname(AGREED), "--prefix", "/usr"], check=True, capture_output=True,
+                       env={**os.environ, "DESTDIR": str(where)})
+        installed = where / "usr" / "share" / "doc" / "agreed"
+        for document in DOCUMENTS:
+            copy = installed / document.relative_to(ROOT)
+            self.assertTrue(copy.exists(), f"{document.name} is not installed")
+            self.assert_links_lead_somewhere(copy)
+        unit = (where / "lib" / "systemd" / "system" / "agreed.service").read_text()
+        named = re.findall(r"/usr/share/doc/agreed/[\w./-]*\w", unit + (where / "etc" / "agreed" / "agreed.yaml").read_text())
+        self.assertGreater(len(named), 1)
+        for file in named:
+            self.assertTrue((where / file.lstrip("/")).exists(), file)
+
+    def assert_links_lead_somewhere(self, document):
+        for link in re.findall(r"\]\(([^)#:]+)\)", document.read_text()):
+            self.assertTrue((document.parent / link).exists(), f"{document}: {link}")
