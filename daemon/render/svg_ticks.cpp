@@ -17,7 +17,7 @@ constexpr std::array<const char*, 12> kMonths = {"Jan", "Feb", "Mar", "Apr", "Ma
 
 // Round steps below a month, in minutes.
 constexpr std::array<std::int64_t, 16> kMinuteSteps = {1,   2,   5,   10,   15,   30,   60,    120,
-                                                 180, 360, 720, 1440, 2880, 5760, 10080, 20160};
+                                                       180, 360, 720, 1440, 2880, 5760, 10080, 20160};
 constexpr std::array<int, 7> kMonthSteps = {1, 2, 3, 6, 12, 24, 60};
 
 std::string month_name(month m) {
