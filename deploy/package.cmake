@@ -6,7 +6,7 @@ install(FILES deploy/systemd/agreed.service DESTINATION /lib/systemd/system)
 install(FILES deploy/debian/agreed.yaml DESTINATION /etc/agreed)
 # The documents lie beside each other as in the source, so that what they link and name is where they say.
 install(FILES README.md DESTINATION ${CMAKE_INSTALL_DOCDIR})
-install(FILES deploy/alerts.md deploy/choosing-limits.md deploy/first-day.md deploy/installation.md
+install(FILES deploy/alerts.md deploy/choosing-limits.md deploy/first-day.md deploy/installation.md deploy/moving.md
         deploy/reading-the-page.md deploy/windows-share.md DESTINATION ${CMAKE_INSTALL_DOCDIR}/deploy)
 install(FILES deploy/nginx/agreed.conf DESTINATION ${CMAKE_INSTALL_DOCDIR}/deploy/nginx)
 install(FILES config/reference.yaml DESTINATION ${CMAKE_INSTALL_DOCDIR}/config)

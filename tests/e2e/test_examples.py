@@ -26,9 +26,8 @@ NOT_RUN = {
     r"^sh (examples/demo|tests/run)\.sh": "tests of their own: the demo, and this suite",
     r"^sh deploy/(setup|build)\.sh": "installs packages and builds: what CI begins with",
     r"^(sudo )?apt\b": "installs: tests/package/run.sh does it in a Debian of its own",
-    r"^install -d -o agreed\b": "needs the package's user: tests/package/run.sh",
+    r"^install -d -o |^chown -R agreed:": "needs the package's user: tests/package/run.sh",
     r"^(sudo )?(systemctl|journalctl)\b": "needs systemd: tests/package/run.sh",
-    r"^agreed backup /etc/agreed/agreed\.yaml /somewhere/else/": "no such place; backup is run by the other examples",
     r"^sudo .*nginx\b|^sudoedit /etc/nginx/": "changes the machine's web server: test_proxy runs the same file",
 }
 # Where exit status 1 is an answer ("not everything agrees", "the period holds nothing") and not a failure.
@@ -127,12 +126,16 @@ class Examples(SiteTest):
         command = command.replace("/etc/agreed/", f"{self.site.folder}/").replace("/backup/", f"{self.site.folder}/backup/")
         for folder in ("/srv/agreed/", "/mnt/lab/"):
             command = command.replace(folder, f"{self.site.folder}/drop/")
+        command = command.replace("/done/2026-01-05/", f"/done/{self.day_with_files()}/")
         command = command.replace("http://127.0.0.1:7480", self.site.base)
         command = command.replace("msg_0123456789abcdef0123456789abcdef", self.message)
         if "812:3f0c..." in command:
             chain = self.site.get("/api/status")["chain"]
             command = command.replace("812:3f0c...", f"{chain['sequence']}:{chain['sha256']}")
         return command
+
+    def day_with_files(self):
+        return max(file.parent.name for file in (self.site.inbox("line2") / "done").glob("*/*"))
 
     def make_ready(self, command):
         """What the same example left the last time is out of the way, and what it reads is there."""
@@ -141,12 +144,13 @@ class Examples(SiteTest):
         if "agreed token" in command:
             tokens = self.site.folder / "secrets" / "tokens"
             tokens.write_text("".join(line + "\n" for line in tokens.read_text().splitlines() if " tests " in line))
-        for name in re.findall(r"(\S+\.sqlite)", command):
-            file = pathlib.Path(name)
-            if "agreed backup" in command:
-                file.unlink(missing_ok=True)
-            elif not file.exists():
-                self.real("backup", self.site.config, file)
+        if "agreed backup" in command:
+            for old in (self.site.folder / "backup").glob("*.sqlite"):
+                old.unlink()
+        else:
+            for file in map(pathlib.Path, re.findall(r"(\S+\.sqlite)", command)):
+                if not file.exists():
+                    self.real("backup", self.site.config, file)
         for page in re.findall(r"--out (\S+)\.html", command):
             for old in self.site.folder.glob(page + ".*"):
                 old.unlink()

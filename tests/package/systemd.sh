@@ -68,6 +68,27 @@ kill -STOP "$started"
 until_true '[ "$(systemctl show agreed -p NRestarts --value)" = 1 ]'
 until_true ready
 
+# To a machine that has nothing yet, step by step as deploy/moving.md says; what is dropped again there counts once.
+install -d -m 0700 /backup/ /etc/agreed/secrets
+systemctl disable --now agreed
+agreed backup /etc/agreed/agreed.yaml /backup/agreed-move.sqlite >/root/backed-up
+tar -czf /backup/agreed-move.tar.gz /etc/agreed/agreed.yaml /etc/agreed/secrets
+dpkg -P agreed
+rm -rf /var/lib/agreed
+dpkg -i /root/agreed_0.1.0_amd64.deb
+tar -xzf /backup/agreed-move.tar.gz -C /
+[ "$(stat -c '%U:%G %a' /etc/agreed/agreed.yaml)" = "root:agreed 640" ]
+agreed check /etc/agreed/agreed.yaml
+agreed restore /etc/agreed/agreed.yaml /backup/agreed-move.sqlite
+chown -R agreed:agreed /var/lib/agreed
+agreed verify /etc/agreed/agreed.yaml --head "$(sed -n 's/^head *//p' /root/backed-up)"
+systemctl enable --now agreed
+until_true ready
+mv /srv/agreed/line1/done/*/a.csv /srv/agreed/line1/again.csv
+until_true 'ls /srv/agreed/line1/done/*/again.csv'
+curl -s $api/api/status | grep -q 'Harrow Mill North'
+curl -s $api/api/status | grep -q '"accepted":1,'
+
 before=$(pid)
 dpkg -i /root/agreed_0.1.1_amd64.deb
 until_true ready
