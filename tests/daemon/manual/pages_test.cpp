@@ -130,6 +130,26 @@ TEST_CASE("every environment variable that the program reads is told") {
   for (const std::string& name : names) CHECK_MESSAGE(has(page, manual::bold(name)), name);
 }
 
+TEST_CASE("the signals told are those that the program waits for") {
+  std::set<std::string> waited_for, told;
+  for (const fs::directory_entry& file :
+       fs::recursive_directory_iterator(fs::path(AGREED_SOURCE_DIR) / "daemon")) {
+    if (file.path().extension() != ".cpp") continue;
+    std::set<std::string> lists;
+    collect(content(file.path()), "\\{(SIG[A-Z0-9]+(?:, SIG[A-Z0-9]+)*)\\}\\) sigaddset", lists);
+    for (const std::string& list : lists) collect(list, "(SIG[A-Z0-9]+)", waited_for);
+    collect(content(file.path()), "(?:signal|sigaction)\\((SIG[A-Z0-9]+), *[&a-z]", waited_for);
+  }
+  const std::string page = the_commands();
+  const std::size_t begin = page.find(".SH SIGNALS\n");
+  REQUIRE(begin != std::string::npos);
+  std::set<std::string> entries;
+  collect(page.substr(begin, page.find("\n.SH ", begin) - begin), "\\.TP\n\\\\fB([^\\\\]*)", entries);
+  for (const std::string& entry : entries) collect(entry, "(SIG[A-Z0-9]+)", told);
+  CHECK(waited_for.size() >= 3);
+  CHECK(told == waited_for);
+}
+
 TEST_CASE("what would be a request or an escape to man is only text") {
   CHECK(manual::prose(".so /etc/passwd") == "\\&.so /etc/passwd\n");
   CHECK(manual::prose("'quoted' a\\b ~ ^") == "\\(aqquoted\\(aq a\\eb \\(ti \\(ha\n");
