@@ -164,7 +164,7 @@ class Examples(SiteTest):
     def run_example(self, example, where):
         command = self.given(example)
         self.make_ready(command)
-        alone = re.search(r"agreed (restore|run) \S*agreed\.yaml", command) and "mill" not in command
+        alone = re.search(r"agreed (restore|run) \S*agreed\.yaml|^mv ", command) and "mill" not in command
         if alone:
             self.assertEqual(self.site.stop()[0], 0)
         done = subprocess.run(["bash", "-ec", command], cwd=self.site.folder, capture_output=True, text=True, timeout=120,
