@@ -57,6 +57,14 @@ std::string last_step(const Alert& alert) {
 
 }  // namespace
 
+std::string subject_words(const Subject& subject) {
+  std::string words;
+  for (const std::string* part :
+       {&subject.comparison, &subject.analyzer, &subject.standard, &subject.measurand, &subject.service})
+    if (!part->empty()) words += (words.empty() ? "" : ", ") + *part;
+  return words;
+}
+
 void write_words(Alert& alert, const Settings& settings) {
   AlertWords words = words_of(alert, settings);
   alert.title = std::move(words.title);

@@ -12,4 +12,7 @@ namespace agreed {
 /// next.
 void write_words(Alert& alert, const Settings& settings);
 
+/// Whom or what it is about, by ids: "protein", or "line2, wheat-low, protein".
+[[nodiscard]] std::string subject_words(const Subject& subject);
+
 }  // namespace agreed

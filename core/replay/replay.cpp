@@ -82,9 +82,7 @@ void Replay::conclude(std::vector<Event> batch, Instant now) {
   for (const ComparisonIndex comparison : monitor_.explained_anew(outcome))
     after.tell_anew(comparison, now, tell);
   for (const ComparisonIndex comparison : outcome.comparisons_paired) arrivals_.add_pair(comparison, now);
-  lonely_.settle([this](ComparisonIndex comparison, const SplitReading& result) {
-    return monitor_.lacks_partner(comparison, result);
-  });
+  lonely_.settle(lacks_partner());
 }
 
 // While nothing comes, what is overdue stays so: if nothing new is told at the end of a pause, nothing was in
@@ -113,13 +111,16 @@ bool Replay::anything_new(Instant now) {
   return false;
 }
 
+LonelyHalves::LacksPartner Replay::lacks_partner() const {
+  return [this](ComparisonIndex comparison, const SplitReading& result) {
+    return monitor_.lacks_partner(comparison, result);
+  };
+}
+
 void Replay::watch_at(Instant now) {
   watched_at_ = now;
   acknowledge_until(now);
-  const auto lacks = [this](ComparisonIndex comparison, const SplitReading& result) {
-    return monitor_.lacks_partner(comparison, result);
-  };
-  for (const Finding& finding : lonely_.due(now, lacks)) keep(book_.apply(finding, now));
+  for (const Finding& finding : lonely_.due(now, lacks_partner())) keep(book_.apply(finding, now));
   anything_missing_ = false;
   for (const Finding& finding : overdue_findings(*settings_, policy_.overdue, arrivals_, now)) {
     anything_missing_ = anything_missing_ || finding.holds;

@@ -53,6 +53,7 @@ class Replay {
   void watch_until(Instant now);
   void watch_at(Instant now);
   [[nodiscard]] bool anything_new(Instant now);
+  [[nodiscard]] LonelyHalves::LacksPartner lacks_partner() const;
   void acknowledge_until(Instant now);
   void keep(std::vector<AlertTransition> transitions);
 

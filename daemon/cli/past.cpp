@@ -5,7 +5,6 @@
 #include <set>
 #include <utility>
 
-#include "daemon/cli/with_configuration.hpp"
 #include "daemon/engine/journal_events.hpp"
 #include "daemon/journal/backup.hpp"
 #include "daemon/journal/journal_reader.hpp"

@@ -32,7 +32,7 @@ struct Past {
 };
 
 /// From a journal file, a state folder (it holds journal.sqlite) or a folder of drop files. Throws
-/// JournalError, WrongUse or std::runtime_error in words for people.
+/// JournalError or std::runtime_error in words for people.
 [[nodiscard]] Past read_past(const Config& config, const std::filesystem::path& from);
 
 /// Each file of `folder`/ANALYZER and below, in the order of their names, read as that analyzer's drop files

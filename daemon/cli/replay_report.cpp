@@ -8,6 +8,7 @@
 #include <fmt/format.h>
 #include <nlohmann/json.hpp>
 
+#include "core/alert/wording.hpp"
 #include "core/base/rfc3339.hpp"
 #include "daemon/printable.hpp"
 #include "daemon/render/finding_json.hpp"
@@ -39,14 +40,6 @@ const char* match_word(const MatchedEpisodes& row) {
 bool counts_from_receipt(AlertKind kind) {
   return kind == AlertKind::check_overdue || kind == AlertKind::pairs_overdue ||
          kind == AlertKind::results_silent || kind == AlertKind::unpaired_samples;
-}
-
-std::string subject_words(const Subject& subject) {
-  std::string words;
-  for (const std::string* part :
-       {&subject.analyzer, &subject.standard, &subject.measurand, &subject.comparison, &subject.service})
-    if (!part->empty()) words += (words.empty() ? "" : ", ") + *part;
-  return words;
 }
 
 /// "2026-02-05 06:00"; the heading says that all is UTC.

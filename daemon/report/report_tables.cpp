@@ -1,6 +1,7 @@
 // Alerts, interventions, files, rejected rows and configurations of a period.
 #include <map>
 
+#include "core/alert/wording.hpp"
 #include "daemon/printable.hpp"
 #include "daemon/render/page_text.hpp"
 #include "daemon/render/page_words.hpp"
@@ -10,14 +11,6 @@ namespace agreed {
 namespace {
 
 constexpr std::size_t kRejectedShown = 200;
-
-std::string subject_words(const Subject& subject) {
-  std::string out;
-  for (const std::string* part :
-       {&subject.comparison, &subject.analyzer, &subject.standard, &subject.measurand, &subject.service})
-    if (!part->empty()) out += (out.empty() ? "" : ", ") + *part;
-  return out;
-}
 
 std::string acknowledged_words(const Alert& alert) {
   if (!alert.acknowledged) return "";
