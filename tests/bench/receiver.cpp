@@ -1,6 +1,6 @@
-// A webhook endpoint as light as one can be, in a process of its own: takes one call after the other, and writes
-// for each the steady clock's nanoseconds at which its body was there, a line each. bench_receiver PORT; ends
-// when its standard input does.
+// A webhook endpoint as light as one can be, in a process of its own: takes one call after the other, and
+// writes for each the steady clock's nanoseconds at which its body was there, a line each. bench_receiver
+// PORT; ends when its standard input does.
 #include <algorithm>
 #include <cstdio>
 #include <cstdlib>
