@@ -6,6 +6,7 @@
 
 #include <nlohmann/json.hpp>
 
+#include "config/unreadable.hpp"
 #include "core/base/ascii.hpp"
 #include "daemon/cli/listen_url.hpp"
 #include "daemon/cli/with_configuration.hpp"
@@ -59,8 +60,9 @@ std::string url_of(const std::string& url, const Config& config) {
 std::string token_from(const std::filesystem::path& file) {
   if (!file.empty()) {
     std::ifstream in(file);
+    if (!in) throw WrongUse("the token file cannot be read: " + why_unreadable(file));
     std::string line;
-    if (!in || (!std::getline(in, line) && !in.eof()))
+    if (!std::getline(in, line) && !in.eof())
       throw WrongUse("the token file " + file.string() + " cannot be read");
     return checked(std::string(ascii::trimmed(line)), "the token file " + file.string());
   }
