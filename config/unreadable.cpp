@@ -49,7 +49,9 @@ std::string who_may_not(const fs::path& path) {
   fs::path folder;
   for (const fs::path& name : whole.parent_path()) {
     folder /= name;
-    if (!may_search(folder)) return this_user() + " may not search the folder " + folder.string();
+    if (!may_search(folder))
+      return this_user() + " may not search the folder " + folder.string() + " on the way to " +
+             whole.string();
   }
   return this_user() + " may not read " + whole.string();
 }

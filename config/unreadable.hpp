@@ -11,8 +11,8 @@ namespace agreed {
 [[nodiscard]] std::string why_unreadable(const std::filesystem::path& file);
 
 /// For a path at which permission is denied, who lacks which: "user agreed may not search the folder
-/// /etc/agreed/secrets", the first such folder on the way there, or "user agreed may not read
-/// /etc/agreed/secrets/hook".
+/// /etc/agreed/secrets on the way to /etc/agreed/secrets/hook", the first such folder, or "user agreed may
+/// not read /etc/agreed/secrets/hook".
 [[nodiscard]] std::string who_may_not(const std::filesystem::path& path);
 
 }  // namespace agreed

@@ -25,9 +25,9 @@ class Tokens {
  public:
   using Tell = std::function<void(const std::string&)>;
 
-  /// No file: no token is known. The file is looked at whenever a token or `trouble` is asked for. `tell` gets
-  /// a message per line that cannot be used, or when the file cannot be read (then no token is known until it
-  /// can), once until that changes; `tell_over` gets one when it is over.
+  /// No file: no token is known. The file is looked at whenever a token or `trouble` is asked for. `tell`
+  /// gets a message per line that cannot be used, or when the file cannot be read (then no token is known
+  /// until it can), once until that changes; `tell_over` gets one when it is over.
   Tokens(std::optional<std::filesystem::path> file, Tell tell, Tell tell_over = {});
 
   /// This file from now on. It is read at once, and what is wrong with it is told, even if it was before.

@@ -12,7 +12,8 @@
 
 namespace agreed {
 
-/// What the configuration does not set: waits and limits, which tests shorten, and what the machine is to have.
+/// What the configuration does not set: waits and limits, which tests shorten, and what the machine is to
+/// have.
 struct WatcherLimits {
   Duration unfinished = std::chrono::seconds(60);  ///< an empty, unclosed or incomplete file stands still
   ReadLimits read;

@@ -75,7 +75,8 @@ std::string Inbox::open() {
     forget_watch();
     if (no_link != 0 && is_symbolic_link(path_))
       return "a symbolic link has taken the place of the folder; it is not followed";
-    return "the folder cannot be opened: " + words(error) + (error == EACCES ? " (" + who_may_not(path_) + ")" : "");
+    return "the folder cannot be opened: " + words(error) +
+           (error == EACCES ? " (" + who_may_not(path_) + ")" : "");
   }
   if (!home_ || home_->device != status.st_dev) {
     const Home now{status.st_dev, levels_below_mount(folder_.get())};

@@ -73,8 +73,7 @@ std::optional<fs::path> missing_mount(int folder, const fs::path& table) {
   auto point = mount_point_of(path, table);
   const auto levels = point ? levels_below_mount(folder) : std::nullopt;
   if (!levels) return std::nullopt;
-  const auto between =
-      std::distance(path.begin(), path.end()) - std::distance(point->begin(), point->end());
+  const auto between = std::distance(path.begin(), path.end()) - std::distance(point->begin(), point->end());
   if (*levels <= between) return std::nullopt;
   return point;
 }

@@ -456,7 +456,8 @@ TEST_CASE("the tokens file is read again when it changes; bad lines are told wit
   CHECK(house.told.find("cannot be used: there is no file") != std::string::npos);
 }
 
-TEST_CASE("a tokens file that cannot be used is told once, to the log and by readiness, and when that is over") {
+TEST_CASE(
+    "a tokens file that cannot be used is told once, to the log and by readiness, and when that is over") {
   House house;
   const auto remarks = [&] { return json::parse(house.ask("/health/ready").body).at("remarks"); };
   const auto forget = [&] {

@@ -158,7 +158,8 @@ TEST_CASE("an empty share that is mounted where there was none is taken for the 
   CHECK(mount.told("is it mounted?"));
 }
 
-TEST_CASE("where the machine's table has a mount point, an empty folder without it is not taken for the inbox") {
+TEST_CASE(
+    "where the machine's table has a mount point, an empty folder without it is not taken for the inbox") {
   Mount mount;
   const auto table_has = [&](const fs::path& point, const std::string& options) {
     write_file(mount.limits.mount_table,
