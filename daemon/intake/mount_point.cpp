@@ -33,7 +33,7 @@ bool brings_a_file_system(const mntent& entry) {
 
 /// The deepest mount point of the table at `path` or above it, but not the root.
 std::optional<fs::path> mount_point_of(const fs::path& path, const fs::path& table) {
-  const std::unique_ptr<FILE, int (*)(FILE*)> file(::setmntent(table.c_str(), "re"), &::endmntent);
+  const std::unique_ptr<FILE, int (*)(FILE*)> file(::setmntent(table.c_str(), "r"), &::endmntent);
   if (!file) return std::nullopt;
   std::optional<fs::path> deepest;
   std::array<char, 8192> room{};

@@ -9,7 +9,7 @@ import subprocess
 from harness import AGREED, SiteTest, wait_until
 
 NOBODY = 65534
-TOKEN = "agreed_a token of this test".replace(" ", "_")
+TOKEN = "agreed_a_token_of_this_test"
 LINE = f"operator shift {hashlib.sha256(TOKEN.encode()).hexdigest()}\n"
 
 

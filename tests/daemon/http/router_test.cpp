@@ -460,6 +460,7 @@ TEST_CASE(
     "a tokens file that cannot be used is told once, to the log and by readiness, and when that is over") {
   House house;
   const auto remarks = [&] { return json::parse(house.ask("/health/ready").body).at("remarks"); };
+  const auto last_remark = [&] { return remarks().back().get<std::string>(); };
   const auto forget = [&] {
     house.told.clear();
     house.told_over.clear();
@@ -471,7 +472,7 @@ TEST_CASE(
   {
     const testing::AsNobody nobody;
     REQUIRE(remarks().size() == before.size() + 1);
-    const std::string remark = remarks().back();
+    const std::string remark = last_remark();
     CHECK(remark.find("permission denied: user ") != std::string::npos);
     CHECK(remark.find(" may not search the folder " + folder.string()) != std::string::npos);
     CHECK(house.told == remark + "\n");
@@ -488,8 +489,8 @@ TEST_CASE(
 
   forget();
   house.file.write("boss x " + sha256_hex("b") + "\nnobody\n");
-  CHECK(std::string(remarks().back()).find(":1: expected") != std::string::npos);
-  CHECK(std::string(remarks().back()).find("(and 1 more") != std::string::npos);
+  CHECK(last_remark().find(":1: expected") != std::string::npos);
+  CHECK(last_remark().find("(and 1 more") != std::string::npos);
   forget();
   house.tokens.use(house.file.path);  // a reload tells it again
   CHECK(house.told.find(":2: expected") != std::string::npos);
