@@ -16,6 +16,8 @@ namespace {
 
 using Hash = Sha256::Digest;
 
+constexpr std::size_t kMostTold = 20;  ///< lines of no use: a wrong file must not fill the log
+
 std::optional<Hash> hash_from_hex(const std::string& hex) {
   Hash hash{};
   if (hex.size() != 2 * hash.size() || hex.find_first_not_of("0123456789abcdefABCDEF") != std::string::npos)
@@ -116,15 +118,21 @@ Tokens::Content Tokens::read_file() const {
   Content content;
   std::ifstream in(*file_);
   std::string line;
+  std::size_t untold = 0;
   for (std::size_t number = 1; std::getline(in, line); ++number) {
     if (is_empty_or_remark(line)) continue;
     if (auto entry = entry_of(line))
       content.entries.push_back(std::move(*entry));
+    else if (content.faults.size() == kMostTold)
+      ++untold;
     else  // Not the line itself: someone may have put a token there.
       content.faults.push_back(
           "tokens file " + file_->string() + ":" + std::to_string(number) +
           ": expected `reader|operator NAME SHA256` (64 hexadecimal digits); the line is passed over");
   }
+  if (untold > 0)
+    content.faults.push_back("tokens file " + file_->string() + ": " + std::to_string(untold) +
+                             " further lines are passed over");
   if (!in.is_open() || in.bad()) return unreadable(file_->string() + " could not be read to its end");
   return content;
 }

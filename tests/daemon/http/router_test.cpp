@@ -1,6 +1,7 @@
 // What every path answers, to whom, and what it answers when asked wrongly.
 #include "daemon/http/router.hpp"
 
+#include <algorithm>
 #include <chrono>
 #include <filesystem>
 
@@ -494,6 +495,13 @@ TEST_CASE(
   forget();
   house.tokens.use(house.file.path);  // a reload tells it again
   CHECK(house.told.find(":2: expected") != std::string::npos);
+  forget();
+  std::string of_another_kind;
+  for (int i = 0; i < 1000; ++i) of_another_kind += "results, and no tokens\n";
+  house.file.write(of_another_kind);
+  CHECK(last_remark().find("(and 20 more") != std::string::npos);
+  CHECK(std::count(house.told.begin(), house.told.end(), '\n') < 25);
+  CHECK(house.told.find("980 further lines") != std::string::npos);
   house.file.write("reader x " + sha256_hex("b") + "\n");
   CHECK(remarks() == before);
   CHECK(house.told_over.find("every line") != std::string::npos);
