@@ -5,6 +5,7 @@
 #include <utility>
 
 #include "config/parts.hpp"
+#include "config/unreadable.hpp"
 #include "config/validate.hpp"
 #include "config/yaml_tree.hpp"
 
@@ -73,10 +74,11 @@ ConfigResult parse_config(std::string text, const std::filesystem::path& file) {
 
 ConfigResult read_config(const std::filesystem::path& file) {
   std::error_code error;
-  if (!fs::exists(file, error)) return failed("there is no such file; expected a configuration in YAML");
+  if (!fs::exists(file, error) && !error)
+    return failed("there is no such file; expected a configuration in YAML");
   if (fs::is_directory(file, error)) return failed("found a folder, expected a configuration file in YAML");
   std::ifstream stream(file, std::ios::binary);
-  if (!stream) return failed("cannot be opened; expected a file that this user may read");
+  if (!stream) return failed(why_unreadable(file) + "; expected a file that this user may read");
   std::string text(kLargestFile + 1, '\0');
   stream.read(text.data(), static_cast<std::streamsize>(text.size()));
   if (stream.bad()) return failed("could not be read to its end");

@@ -5,8 +5,10 @@
 #include <set>
 #include <sstream>
 #include <string_view>
+#include <utility>
 
 #include "config/parts.hpp"
+#include "config/unreadable.hpp"
 #include "config/url.hpp"
 
 namespace agreed::settings_file {
@@ -41,10 +43,7 @@ struct FileText {
   std::string trouble;
 };
 FileText text_of(const fs::path& file) {
-  std::error_code error;
-  // A pipe would make the reading wait for ever.
-  if (!fs::exists(file, error)) return {"", "there is no file " + file.string()};
-  if (!fs::is_regular_file(file, error)) return {"", file.string() + " is not a file"};
+  if (std::string trouble = why_unreadable(file); !trouble.empty()) return {"", std::move(trouble)};
   std::ifstream stream(file, std::ios::binary);
   std::string text(kMostRead, '\0');
   stream.read(text.data(), static_cast<std::streamsize>(text.size()));

@@ -13,6 +13,7 @@
 #include "daemon/cli/print_json.hpp"
 #include "daemon/cli/say_problems.hpp"
 #include "daemon/exit_codes.hpp"
+#include "daemon/http/tokens.hpp"
 #include "daemon/webhook/secrets.hpp"
 
 namespace agreed {
@@ -46,12 +47,21 @@ void add_secret_problems(ConfigResult& result) {
   }
 }
 
+/// Without tokens the service runs as ever but for who asks it.
+void add_token_problems(ConfigResult& result) {
+  const auto add = [&](const std::string& words) {
+    result.problems.push_back({.key = "access.tokens_file", .message = words, .warning = true});
+  };
+  (void)Tokens(result.config->tokens_file, add).trouble();
+}
+
 }  // namespace
 
 int check_configuration(const CheckCommand& command) {
   const std::filesystem::path& file = command.config;
   const bool json = command.json;
   ConfigResult result = read_config(file);
+  if (result.config) add_token_problems(result);
   if (result.config) add_secret_problems(result);
   const bool sample_wanted = !command.sample.empty() && result.config;
   if (sample_wanted) return check_sample(*result.config, command.sample, command.analyzer, json);

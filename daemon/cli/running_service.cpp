@@ -6,12 +6,13 @@
 
 #include <nlohmann/json.hpp>
 
+#include "config/unreadable.hpp"
 #include "core/base/ascii.hpp"
 #include "daemon/cli/listen_url.hpp"
 #include "daemon/cli/with_configuration.hpp"
 #include "daemon/exit_codes.hpp"
 #include "daemon/printable.hpp"
-#include "daemon/webhook/http_post.hpp"
+#include "daemon/webhook/http_call.hpp"
 
 namespace agreed {
 namespace {
@@ -30,7 +31,7 @@ bool lacks_token(int status) {
 }
 
 /// The detail of a problem document, else the status.
-std::string detail_of(const PostAnswer& answer) {
+std::string detail_of(const CallAnswer& answer) {
   const auto document = nlohmann::json::parse(answer.body, nullptr, false);
   if (document.is_object() && document.contains("detail") && document["detail"].is_string())
     return printable(document["detail"].get<std::string>());
@@ -59,8 +60,9 @@ std::string url_of(const std::string& url, const Config& config) {
 std::string token_from(const std::filesystem::path& file) {
   if (!file.empty()) {
     std::ifstream in(file);
+    if (!in) throw WrongUse("the token file cannot be read: " + why_unreadable(file));
     std::string line;
-    if (!in || (!std::getline(in, line) && !in.eof()))
+    if (!std::getline(in, line) && !in.eof())
       throw WrongUse("the token file " + file.string() + " cannot be read");
     return checked(std::string(ascii::trimmed(line)), "the token file " + file.string());
   }
@@ -70,7 +72,7 @@ std::string token_from(const std::filesystem::path& file) {
 }
 
 ServiceAnswer ask(const RunningService& service, const std::string& method, const std::string& path) {
-  PostRequest request;
+  CallRequest request;
   request.method = method;
   request.url = service.url + path;
   request.headers = {{"Accept", "application/json"}};
@@ -79,9 +81,9 @@ ServiceAnswer ask(const RunningService& service, const std::string& method, cons
     request.content_type = "application/json";
     request.body = "{}";
   }
-  PostLimits limits;
+  CallLimits limits;
   limits.answer = kLargestAnswer;
-  PostAnswer answer = http_post(request, limits, {});
+  CallAnswer answer = http_call(request, limits, {});
   if (answer.status == 0)
     return {0, "", "the service cannot be reached at " + printable(service.url) + ": " + answer.error};
   if (is_success(answer.status)) return {answer.status, std::move(answer.body), ""};

@@ -40,7 +40,7 @@ Tested test(const Endpoint& endpoint, const std::string& source, const std::stri
   Tested tested{.route = endpoint.route, .id = make_webhook_id(), .error = {}};
   const Instant now = now_utc();
   const auto begun = std::chrono::steady_clock::now();
-  const PostAnswer answer =
+  const CallAnswer answer =
       deliver(endpoint, tested.id, to_json(test_event(source, tested.id, site, now)), now, {}, {});
   tested.took_ms = std::chrono::round<Duration>(std::chrono::steady_clock::now() - begun).count();
   const DeliveryTry result = judge({}, {answer.status, answer.error, {}}, now, 0, {});

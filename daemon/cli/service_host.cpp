@@ -41,6 +41,10 @@ void tell_of_http(const std::string& trouble) {
   log_warning("http: {}", trouble);
 }
 
+void tell_http_is_well(const std::string& words) {
+  log_info("http: {}", words);
+}
+
 std::filesystem::path made(const std::filesystem::path& folder) {
   std::filesystem::create_directories(folder);
   return folder;
@@ -66,7 +70,8 @@ ServiceHost::ServiceHost(const Config& config)
       service_(with_engine(config, std::make_shared<Engine>(config, std::make_unique<Journal>(state_)))),
       present_(service_->engine),
       http_(listen_, config.tokens_file, present_, journal_alerts(state_),
-            pages_of(present_, journal_alerts(state_), journal_intake(state_)), tell_of_http),
+            pages_of(present_, journal_alerts(state_), journal_intake(state_)), tell_of_http,
+            tell_http_is_well),
       address_(listen_url(listen_.address, http_.port())),
       sender_(std::make_unique<WebhookSender>(
           endpoints_of(config), outbox_of(state_),
@@ -131,7 +136,7 @@ std::optional<Config> ServiceHost::usable_configuration() {
   if (result.config) {
     try {
       (void)endpoints_of(*result.config);
-      Tokens tokens(result.config->tokens_file, tell_of_http);
+      Tokens tokens(result.config->tokens_file, [](const std::string&) {});  // told once they are in use
       require_reader_token(listen_, tokens);
       return std::move(result.config);
     } catch (const std::exception& error) {

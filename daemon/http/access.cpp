@@ -32,10 +32,12 @@ bool reads_need_token(const Listen& listen) {
 
 void require_reader_token(const Listen& listen, Tokens& tokens) {
   if (!reads_need_token(listen) || tokens.any()) return;
-  throw std::runtime_error("listen.address " + listen.address + " can be reached by others" +
-                           (listen.behind_proxy ? " through the proxy (listen.behind_proxy)" : "") +
-                           ", and no reader token is there to ask for: make one"
-                           " (agreed token CONFIG --role reader), or set listen.open_to_network: true");
+  const std::string trouble = tokens.trouble();
+  throw std::runtime_error(
+      "listen.address " + listen.address + " can be reached by others" +
+      (listen.behind_proxy ? " through the proxy (listen.behind_proxy)" : "") +
+      ", and no reader token is there to ask for" + (trouble.empty() ? "" : " (" + trouble + ")") +
+      ": make one (agreed token CONFIG --role reader), or set listen.open_to_network: true");
 }
 
 std::optional<HttpAnswer> refused(const HttpRequest& request, Role needed, Tokens& tokens) {

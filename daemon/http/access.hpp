@@ -14,7 +14,7 @@ namespace agreed {
 [[nodiscard]] bool reads_need_token(const Listen& listen);
 
 /// Throws std::runtime_error, saying what to do, when `listen` would be reachable by others with nothing to
-/// tell readers by: no token and not open_to_network.
+/// tell readers by: no token (with what is wrong with their file, if anything) and not open_to_network.
 void require_reader_token(const Listen& listen, Tokens& tokens);
 
 /// Nothing when the request's token has the role; else the answer that refuses it: 401, or 403 for a known

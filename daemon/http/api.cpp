@@ -83,8 +83,10 @@ std::optional<ComparisonIndex> find_comparison(const Settings& settings, const s
 
 }  // namespace
 
-Api::Api(Service& service, AlertSource alerts, IntakeSource intake, std::function<bool()> stopping)
+Api::Api(Service& service, Tokens& tokens, AlertSource alerts, IntakeSource intake,
+         std::function<bool()> stopping)
     : service_(service),
+      tokens_(tokens),
       alerts_(std::move(alerts)),
       intake_(std::move(intake)),
       stopping_(std::move(stopping)) {}
@@ -273,7 +275,12 @@ HttpAnswer Api::live(const HttpRequest&, const Target&) {
 
 HttpAnswer Api::ready(const HttpRequest& request, const Target&) {
   const auto snapshot = service_.snapshot();
-  if (snapshot->ready) return json_answer(ready_json(snapshot->remarks));
+  if (snapshot->ready) {
+    // Without tokens results are taken in and alerts are sent as ever: no reason not to be ready.
+    std::vector<std::string> remarks = snapshot->remarks;
+    if (std::string trouble = tokens_.trouble(); !trouble.empty()) remarks.push_back(std::move(trouble));
+    return json_answer(ready_json(remarks));
+  }
   return {503, "application/problem+json", not_ready_json(snapshot->not_ready, request.target), "", {}};
 }
 

@@ -9,6 +9,7 @@
 #include "daemon/http/intake_source.hpp"
 #include "daemon/http/message.hpp"
 #include "daemon/http/target.hpp"
+#include "daemon/http/tokens.hpp"
 
 namespace agreed {
 
@@ -16,8 +17,10 @@ namespace agreed {
 /// parameters are looked at first. Thread-safe.
 class Api {
  public:
-  /// `service` outlives the Api. `stopping` tells a waiting acknowledgement to give up.
-  Api(Service& service, AlertSource alerts, IntakeSource intake, std::function<bool()> stopping);
+  /// `service` and `tokens`, of which /health/ready tells what is wrong, outlive the Api. `stopping` tells a
+  /// waiting acknowledgement to give up.
+  Api(Service& service, Tokens& tokens, AlertSource alerts, IntakeSource intake,
+      std::function<bool()> stopping);
 
   [[nodiscard]] HttpAnswer status(const HttpRequest& request, const Target& target);
   [[nodiscard]] HttpAnswer charts(const HttpRequest& request, const Target& target);
@@ -48,6 +51,7 @@ class Api {
   [[nodiscard]] std::optional<AskAnswer> wait_for(std::future<AskAnswer> asked) const;
 
   Service& service_;
+  Tokens& tokens_;
   const AlertSource alerts_;
   const IntakeSource intake_;
   const std::function<bool()> stopping_;

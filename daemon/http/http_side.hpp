@@ -17,14 +17,15 @@ namespace agreed {
 
 class HttpSide {
  public:
-  /// Listens, and answers from `start` on. `service` outlives it. `tell` is for the log; called from several
-  /// threads. Throws ListenError when the address cannot be had, std::runtime_error when it may not be used
-  /// (no reader token, not opened on purpose).
+  /// Listens, and answers from `start` on. `service` outlives it. `tell` is for the log, and `tell_over` for
+  /// what is no longer wrong; called from several threads. Throws ListenError when the address cannot be had,
+  /// std::runtime_error when it may not be used (no reader token, not opened on purpose).
   HttpSide(const Listen& listen, std::optional<std::filesystem::path> tokens_file, Service& service,
-           AlertSource alerts, PageHook pages, std::function<void(const std::string&)> tell);
+           AlertSource alerts, PageHook pages, Tokens::Tell tell, Tokens::Tell tell_over = {});
 
   void start() { server_->start(); }
-  /// Another tokens file from now on; sessions of tokens that are not in it are over.
+  /// This tokens file from now on, with what is wrong with it told again; sessions of tokens that are not in
+  /// it are over.
   void use_tokens(std::optional<std::filesystem::path> file) { tokens_.use(std::move(file)); }
   /// Within half a second, whoever is connected.
   void stop() noexcept { server_->stop(); }

@@ -82,7 +82,7 @@ HttpAnswer unless_known(const HttpRequest& request, HttpAnswer answer) {
 struct Router::Impl {
   explicit Impl(RouterParts given)
       : parts(std::move(given)),
-        api(parts.service, parts.alerts, parts.intake, parts.stopping),
+        api(parts.service, parts.tokens, parts.alerts, parts.intake, parts.stopping),
         pages(parts.pages, parts.tokens, parts.reads_need_token,
               [this](const std::string& alert, const std::string& by, const std::string& note) {
                 return acknowledge(alert, by, note);

@@ -23,12 +23,18 @@ struct TokenHolder {
 
 class Tokens {
  public:
-  /// No file: no token is known. `tell` gets a message per line that cannot be used, or when the file cannot
-  /// be read (then no token is known until it can); called at each reading of the file.
-  Tokens(std::optional<std::filesystem::path> file, std::function<void(const std::string&)> tell);
+  using Tell = std::function<void(const std::string&)>;
 
-  /// Another file from now on.
+  /// No file: no token is known. The file is looked at whenever a token or `trouble` is asked for. `tell`
+  /// gets a message per line that cannot be used, or when the file cannot be read (then no token is known
+  /// until it can), once until that changes; `tell_over` gets one when it is over.
+  Tokens(std::optional<std::filesystem::path> file, Tell tell, Tell tell_over = {});
+
+  /// This file from now on. It is read at once, and what is wrong with it is told, even if it was before.
   void use(std::optional<std::filesystem::path> file);
+
+  /// What is wrong with the file, the first of it; empty: nothing.
+  [[nodiscard]] std::string trouble();
 
   /// The role of a token; nothing if it is not known. The time it takes does not depend on which token comes
   /// near.
@@ -52,16 +58,24 @@ class Tokens {
     bool operator==(const Stamp&) const = default;
   };
 
+  /// What one reading of the file gave.
+  struct Content {
+    std::vector<Entry> entries;
+    bool readable = true;
+    std::vector<std::string> faults;  ///< in words
+  };
+
   void read_if_changed();
-  void read_file();
-  [[nodiscard]] std::optional<Entry> entry_of(const std::string& line, std::size_t number) const;
+  [[nodiscard]] Content read_file() const;
+  [[nodiscard]] static std::optional<Entry> entry_of(const std::string& line);
+  void tell_what_is_over(const Content& before) const;
 
   std::optional<std::filesystem::path> file_;
-  const std::function<void(const std::string&)> tell_;
+  const Tell tell_, tell_over_;
   std::mutex mutex_;
   std::optional<Stamp> stamp_;
   bool read_once_ = false;
-  std::vector<Entry> entries_;
+  Content content_;
 };
 
 }  // namespace agreed

@@ -1,6 +1,7 @@
 #pragma once
 // Takes in what lands in one analyzer's drop folder, in a thread of its own, so that a folder that hangs
 // blocks nothing else.
+#include <filesystem>
 #include <memory>
 
 #include "config/config.hpp"
@@ -11,11 +12,13 @@
 
 namespace agreed {
 
-/// The waits and limits that the configuration does not set; tests shorten them.
+/// What the configuration does not set: waits and limits, which tests shorten, and what the machine is to
+/// have.
 struct WatcherLimits {
   Duration unfinished = std::chrono::seconds(60);  ///< an empty, unclosed or incomplete file stands still
   ReadLimits read;
   QueueLimits queue;
+  std::filesystem::path mount_table = "/etc/fstab";  ///< which shares are to be mounted
 };
 
 class FolderWatcher {
@@ -30,7 +33,7 @@ class FolderWatcher {
   FolderWatcher& operator=(const FolderWatcher&) = delete;
 
   /// Before start: goes on with what `before`, which watched the same folder and has stopped, knew of files
-  /// that were moved to done/ a moment ago, or could not be moved.
+  /// that were moved to done/ a moment ago, or could not be moved, and of where its share was mounted.
   void follow(const FolderWatcher& before);
 
   void start();

@@ -13,6 +13,9 @@
 #include <sys/inotify.h>
 #include <sys/stat.h>
 
+#include "config/unreadable.hpp"
+#include "daemon/intake/mount_point.hpp"
+
 namespace agreed {
 namespace {
 
@@ -50,9 +53,10 @@ std::vector<std::string> names_in(int folder) {
 
 }  // namespace
 
-Inbox::Inbox(std::filesystem::path path, bool changes)
+Inbox::Inbox(std::filesystem::path path, bool changes, std::filesystem::path mount_table)
     // Without a slash at the end, with which a link in its place would be followed.
     : path_(path.has_filename() ? std::move(path) : path.parent_path()),
+      mount_table_(std::move(mount_table)),
       changes_(changes),
       wake_(::eventfd(0, EFD_NONBLOCK | EFD_CLOEXEC)),
       notify_(::inotify_init1(IN_NONBLOCK | IN_CLOEXEC)) {
@@ -71,14 +75,17 @@ std::string Inbox::open() {
     forget_watch();
     if (no_link != 0 && is_symbolic_link(path_))
       return "a symbolic link has taken the place of the folder; it is not followed";
-    return "the folder cannot be opened: " + words(error);
+    return "the folder cannot be opened: " + words(error) +
+           (error == EACCES ? " (" + who_may_not(path_) + ")" : "");
   }
-  // An empty folder on another device is what is left when a share is not mounted.
-  if (home_device_ && *home_device_ != status.st_dev && names_in(folder_.get()).empty()) {
-    close();
-    return "the folder is empty and on another device than before; is it mounted?";
+  if (!home_ || home_->device != status.st_dev) {
+    const Home now{status.st_dev, levels_below_mount(folder_.get())};
+    if (std::string why_not = why_not_home(now); !why_not.empty()) {
+      close();
+      return why_not;
+    }
+    home_ = now;
   }
-  home_device_ = status.st_dev;
   if (!is_link_) is_link_ = is_symbolic_link(path_);
   if (watch_ < 0 || device_ != status.st_dev || inode_ != status.st_ino) {
     forget_watch();
@@ -87,6 +94,16 @@ std::string Inbox::open() {
     watch();
   }
   return {};
+}
+
+// A device other than before is not enough: a share has another one each time it is mounted.
+std::string Inbox::why_not_home(const Home& now) const {
+  const bool share_is_gone = home_ && (!home_->levels || !now.levels || *now.levels > *home_->levels);
+  const auto missing = share_is_gone ? std::nullopt : missing_mount(folder_.get(), mount_table_);
+  if ((!share_is_gone && !missing) || !names_in(folder_.get()).empty()) return {};
+  if (share_is_gone) return "the folder is empty and on another device than before; is it mounted?";
+  return "the folder is empty and nothing is mounted at " + missing->string() + ", although " +
+         mount_table_.string() + " names a file system for it";
 }
 
 void Inbox::watch() {

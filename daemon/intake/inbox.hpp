@@ -24,12 +24,16 @@ struct InboxEvents {
 
 class Inbox {
  public:
-  /// `changes`: tell of every change of a file too, not only of its close. Throws std::system_error if the
-  /// process has no descriptors left.
-  explicit Inbox(std::filesystem::path path, bool changes = false);
+  /// `changes`: tell of every change of a file too, not only of its close. `mount_table`: which shares are to
+  /// be mounted, fstab(5). Throws std::system_error if the process has no descriptors left.
+  Inbox(std::filesystem::path path, bool changes, std::filesystem::path mount_table);
 
+  /// Before the first open: where the share was mounted is known from `before`, of the same path.
+  void remember(const Inbox& before) { home_ = before.home_; }
   /// Opens the folder that is at the path now, and watches it if it is another one than before; empty, or why
-  /// it cannot be used. The folder is never created.
+  /// it cannot be used. The folder is never created. An empty folder that is what is left when a share is not
+  /// mounted is not taken for the inbox: one on a file system that begins further up than before, or below a
+  /// mount point of the table at which nothing is mounted.
   [[nodiscard]] std::string open();
   /// Lets go of the folder, so that it can be unmounted; events still come.
   void close() { folder_.reset(); }
@@ -48,17 +52,24 @@ class Inbox {
   void wake() const;
 
  private:
+  /// Where the folder lay when it was last taken for the inbox.
+  struct Home {
+    std::uint64_t device = 0;
+    std::optional<int> levels;  ///< levels_below_mount
+  };
+
+  [[nodiscard]] std::string why_not_home(const Home& now) const;
   void watch();
   void forget_watch();
   void read_events(InboxEvents& events);
 
-  std::filesystem::path path_;
+  std::filesystem::path path_, mount_table_;
   bool changes_;
   Descriptor wake_, notify_, folder_;
   std::string no_events_;
   int watch_ = -1;
   std::uint64_t device_ = 0, inode_ = 0;  ///< of the watched folder
-  std::optional<std::uint64_t> home_device_;
+  std::optional<Home> home_;
   std::optional<bool> is_link_;  ///< whether the path was a symbolic link when it was first opened
 };
 

@@ -41,7 +41,7 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
       limits_(limits),
       zone_(std::make_shared<LocalZone>(intake.zone)),
       pulse_(std::make_shared<Pulse>()),
-      inbox_(intake.inbox, intake.mode == FileMode::growing),
+      inbox_(intake.inbox, intake.mode == FileMode::growing, limits.mount_table),
       waiting_(intake.settle, limits.unfinished),
       queue_(sink, limits.queue, *pulse_,
              [this](TakenFile& file, const PieceAnswer& answer, const std::string& error) {
@@ -56,6 +56,7 @@ WatchLoop::WatchLoop(const IntakeSettings& intake, const Settings& settings, Ana
 }
 
 void WatchLoop::follow(const WatchLoop& before) {
+  inbox_.remember(before.inbox_);
   if (growing_ || before.growing_) return;
   moved_ = before.moved_;
   unmoved_ = before.unmoved_;

@@ -14,14 +14,14 @@ namespace {
 namespace fs = std::filesystem;
 using journal::with_suffix;
 
-/// A whole, lasting copy of the journal `from` at `to`, which must not exist; nothing is left there if it
-/// fails.
-void copy_journal(const fs::path& from, const fs::path& to) {
+/// A whole, lasting copy of the journal `from` at `to`, which must not exist, for those who may read `like`;
+/// nothing is left there if it fails.
+void copy_journal(const fs::path& from, const fs::path& to, const fs::path& like) {
   try {
     journal::translating(from, [&] {
       const auto database = journal::open_reader(from);
       journal::check_usable(*database, from);
-      journal::copy_database(*database, to);
+      journal::copy_database(*database, to, like);
     });
   } catch (...) {
     std::error_code ignored;
@@ -68,7 +68,7 @@ JournalProof backup_journal(const fs::path& folder, const fs::path& target) {
   const fs::path whole = fs::absolute(target), part = unfinished(whole);
   return journal::translating(target, [&] {
     journal::remove_unfinished(part);
-    copy_journal(journal::database_file(folder), part);
+    copy_journal(journal::database_file(folder), part, journal::database_file(folder));
     journal::rename_to_free(part, whole);
     journal::make_lasting(whole.parent_path());
     return verify_database(whole);
@@ -84,7 +84,7 @@ Restored restore_journal(const fs::path& folder, const fs::path& backup) {
     if (!restored.proof.faults.empty()) return restored;
     const fs::path fresh = with_suffix(file, ".new"), next = journal::restoring_file(file);
     journal::remove_unfinished(fresh);
-    copy_journal(backup, fresh);
+    copy_journal(backup, fresh, fs::exists(file) ? file : backup);
     // From here until the last rename the service refuses to start: it would find a journal without its log,
     // or none.
     fs::rename(fresh, next);

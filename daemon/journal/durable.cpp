@@ -5,6 +5,7 @@
 #include <system_error>
 
 #include <fcntl.h>
+#include <sys/stat.h>
 #include <unistd.h>
 
 #include "daemon/journal/journal.hpp"
@@ -16,6 +17,19 @@ namespace fs = std::filesystem;
 fs::path with_suffix(fs::path file, std::string_view suffix) {
   file += suffix;
   return file;
+}
+
+void make_empty(const fs::path& file, const fs::path& like) {
+  constexpr mode_t may_read_and_write = 0666, owner = 0600;
+  const auto failed = [](const char* what, const fs::path& path) {
+    return fs::filesystem_error(what, path, std::error_code(errno, std::generic_category()));
+  };
+  struct stat status {};
+  if (::stat(like.c_str(), &status) != 0) throw failed("look at", like);
+  const mode_t mode = (status.st_mode & may_read_and_write) | owner;
+  const int descriptor = ::open(file.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, mode);
+  if (descriptor < 0) throw failed("create", file);
+  ::close(descriptor);
 }
 
 void make_lasting(const fs::path& path) {

@@ -8,6 +8,11 @@ namespace agreed::journal {
 /// `file` with more at the end of its name.
 [[nodiscard]] std::filesystem::path with_suffix(std::filesystem::path file, std::string_view suffix);
 
+/// An empty file that nobody may read who may not read `like`: its permissions, less those that the umask
+/// takes away, but for the owner always reading and writing. Throws std::filesystem::filesystem_error, also
+/// if something is there already.
+void make_empty(const std::filesystem::path& file, const std::filesystem::path& like);
+
 /// Makes what was written to `path` (a file or a folder) last; throws JournalError. Never for a database that
 /// is open in this process: closing it here would drop SQLite's locks.
 void make_lasting(const std::filesystem::path& path);

@@ -52,7 +52,7 @@ void copy_before(SQLite::Database& database, const fs::path& file, int schema) {
   const fs::path part = file.parent_path() / "journal.before-schema.unfinished";
   const std::string stem = "journal.before-schema-" + std::to_string(schema + 1);
   remove_unfinished(part);
-  copy_database(database, part);
+  copy_database(database, part, file);
   rename_to_free(part, free_name(file.parent_path() / stem, ".sqlite"));
   make_lasting(file.parent_path());
 }
@@ -100,7 +100,8 @@ void create_if_missing(const fs::path& file, Instant now) {
   make_lasting(file.parent_path());
 }
 
-void copy_database(SQLite::Database& database, const fs::path& copy) {
+void copy_database(SQLite::Database& database, const fs::path& copy, const fs::path& like) {
+  make_empty(copy, like);  // SQLite writes into an empty file, and would make one that everybody may read
   SQLite::Statement vacuum(database, "VACUUM INTO ?");
   vacuum.bind(1, copy.string());
   vacuum.exec();

@@ -27,8 +27,9 @@ void create_if_missing(const std::filesystem::path& file, Instant now);
 /// Where a restored journal waits while what it replaces is put aside. A service does not start beside it.
 [[nodiscard]] std::filesystem::path restoring_file(const std::filesystem::path& file);
 
-/// A consistent, lasting copy at `copy`, which must not exist.
-void copy_database(SQLite::Database& database, const std::filesystem::path& copy);
+/// A consistent, lasting copy at `copy`, which must not exist; nobody may read it who may not read `like`.
+void copy_database(SQLite::Database& database, const std::filesystem::path& copy,
+                   const std::filesystem::path& like);
 
 /// Throws JournalError unless the file is a journal of schema `schema` or older, with its newest batch
 /// readable. Cheap whatever the size.

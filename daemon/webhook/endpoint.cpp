@@ -10,9 +10,9 @@ Endpoint endpoint_of(const Route& route) {
   return {route.name, route.url, route.ca_file, load_signing_keys(route)};
 }
 
-PostAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::string_view body, Instant at,
-                   const PostLimits& limits, const std::stop_token& stop) {
-  PostRequest request;
+CallAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::string_view body, Instant at,
+                   const CallLimits& limits, const std::stop_token& stop) {
+  CallRequest request;
   request.url = endpoint.url;
   request.content_type = kCloudEventContentType;
   request.body = body;
@@ -22,7 +22,7 @@ PostAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::s
                      {"webhook-timestamp", webhook_timestamp(at)}};
   if (!endpoint.keys.empty())
     request.headers.emplace_back("webhook-signature", webhook_signature(webhook_id, at, body, endpoint.keys));
-  return http_post(request, limits, stop);
+  return http_call(request, limits, stop);
 }
 
 }  // namespace agreed

@@ -8,7 +8,7 @@
 #include <vector>
 
 #include "config/config.hpp"
-#include "daemon/webhook/http_post.hpp"
+#include "daemon/webhook/http_call.hpp"
 #include "daemon/webhook/signature.hpp"
 
 namespace agreed {
@@ -26,7 +26,7 @@ struct Endpoint {
 [[nodiscard]] Endpoint endpoint_of(const Route& route);
 
 /// Posts `body`, signed for the time of this attempt.
-[[nodiscard]] PostAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::string_view body,
-                                 Instant at, const PostLimits& limits, const std::stop_token& stop);
+[[nodiscard]] CallAnswer deliver(const Endpoint& endpoint, std::string_view webhook_id, std::string_view body,
+                                 Instant at, const CallLimits& limits, const std::stop_token& stop);
 
 }  // namespace agreed

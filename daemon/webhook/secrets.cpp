@@ -5,6 +5,7 @@
 #include <sstream>
 #include <stdexcept>
 
+#include "config/unreadable.hpp"
 #include "core/base/ascii.hpp"
 
 namespace agreed {
@@ -13,12 +14,13 @@ namespace {
 constexpr const char* kWhiteSpace = " \t\r\n\v\f";
 
 std::vector<std::string> lines_of(const std::filesystem::path& file) {
+  if (const std::string why = why_unreadable(file); !why.empty())
+    throw std::runtime_error("secret file: " + why);
   std::ifstream in(file);
-  if (!in) throw std::runtime_error("secret file " + file.string() + " cannot be read");
   std::vector<std::string> secrets;
   for (std::string line; std::getline(in, line);)
     if (const auto secret = ascii::trimmed(line, kWhiteSpace); !secret.empty()) secrets.emplace_back(secret);
-  if (in.bad()) throw std::runtime_error("secret file " + file.string() + " cannot be read");
+  if (!in.is_open() || in.bad()) throw std::runtime_error("secret file " + file.string() + " cannot be read");
   return secrets;
 }
 

@@ -103,7 +103,7 @@ class WebhookSender::Lane {
 
   CallOutcome call(const OutboxMessage& message, Instant at, const std::stop_token& stop) {
     try {
-      const PostAnswer answer =
+      const CallAnswer answer =
           deliver(endpoint_, message.webhook_id, message.body, at, options_.limits, stop);
       return {answer.status, answer.error, parse_retry_after(answer.retry_after, now_utc())};
     } catch (const std::exception& failure) {

@@ -17,7 +17,7 @@
 namespace agreed {
 
 struct SenderOptions {
-  PostLimits limits;
+  CallLimits limits;
   RetryPolicy retry;
   Duration longest_wait =
       std::chrono::hours(1);  ///< no due time is waited for longer, whatever the clock did

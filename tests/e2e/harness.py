@@ -142,11 +142,12 @@ class Site:
         self.base = None
         self.environment = {}  # what the service gets beside this process's own
 
-    def start(self, wait_ready=True, user=None):
+    def start(self, wait_ready=True, user=None, within=()):
+        """`within`: a command that ends in becoming the one it is given, the service."""
         if hasattr(self, "log"):
             self.log.close()
         self.log = open(self.folder / "log", "ab")
-        self.process = subprocess.Popen([AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log, user=user,
+        self.process = subprocess.Popen([*within, AGREED, "run", str(self.config)], stdout=subprocess.PIPE, stderr=self.log, user=user,
                                         env={**os.environ, **self.environment})
         line = self.process.stdout.readline().decode()
         if "http://" not in line:

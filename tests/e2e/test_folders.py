@@ -1,7 +1,9 @@
 """What becomes of drop folders that hang, vanish, are covered, replaced, closed to us or read-only. Most of it needs
 root, because it mounts; without it those tests are skipped and say so."""
+import hashlib
 import os
 import pathlib
+import re
 import signal
 import subprocess
 import sys
@@ -64,6 +66,27 @@ class Folders(SiteTest):
     def reachable(self, site):
         wait_until(lambda: self.inbox(site)["reachable"], "the inbox is reachable again")
         self.assertIsNone(self.inbox(site)["since"])
+
+    def stays(self, site, reachable, scans):
+        """Each look at a folder renews the time of the figures."""
+        seen = set()
+
+        def looked():
+            status = site.get("/api/status")
+            self.assertEqual(status["analyzers"][0]["inbox"]["reachable"], reachable, status["analyzers"][0]["inbox"])
+            seen.add(status["at"])
+            return len(seen) > 2 * scans  # two watchers report
+        wait_until(looked, f"the folder was looked at {scans} times")
+
+    def reload(self, site, remind_every="8h"):
+        """Until the configuration, with this changed in it, is in force."""
+        text = re.sub(r"remind_every: \w+", f"remind_every: {remind_every}", site.config.read_text())
+        before = (site.folder / "log").read_text().count("is in force")
+        site.config.write_text(text)
+        site.process.send_signal(signal.SIGHUP)
+        wait_until(lambda: (site.folder / "log").read_text().count("is in force") > before, "the configuration is in force")
+        sha256 = hashlib.sha256(text.encode()).hexdigest()
+        wait_until(lambda: site.get("/api/status")["service"]["config_sha256"] == sha256, "it is shown")
 
     def alerts(self, site, state):
         return [a for a in site.get(f"/api/alerts?state={state}")["alerts"] if a["kind"] == "inbox_unreachable"]
@@ -174,19 +197,91 @@ class Folders(SiteTest):
         self.reachable(site)
         wait_until(lambda: self.accepted(site) == 2, "what came meanwhile is taken in")
 
-    def test_a_folder_that_another_is_mounted_over(self):
+    def test_an_empty_share_mounted_after_the_start_is_taken_at_once(self):
         site = self.make_site().start()
         inbox = site.inbox("line1")
-        site.drop("line1", "a.csv", csv([check(0)]))
-        site.wait_taken()
         self.mounted("-t", "tmpfs", "tmpfs", inbox)
-        self.told(site, "another device")
-        (inbox / "b.csv").write_text(csv([check(1)]))  # it is meant, then
-        wait_until(lambda: self.accepted(site) == 2, "a file in the new folder is taken in")
+        self.stays(site, reachable=True, scans=4)
+        site.drop_into(inbox, "a.csv", csv([check(0)]))
+        wait_until(lambda: self.accepted(site) == 1, "a file on the share is taken in")
         subprocess.run(["umount", "-l", inbox], check=True)
-        site.drop("line1", "c.csv", csv([check(2)]))
-        wait_until(lambda: self.accepted(site) == 3, "the old one is read when it is back")
-        self.assertEqual(site.files_in("line1", "done"), ["a.csv", "c.csv"])
+        self.told(site, "another device")
+        self.reload(site)
+        self.stays(site, reachable=False, scans=3)  # what was known of the share is known after a reload
+        self.mounted("-t", "tmpfs", "tmpfs", inbox)  # empty, and on a new device as a network share is each time
+        self.reachable(site)
+        self.stays(site, reachable=True, scans=2)
+        subprocess.run(["umount", "-l", inbox], check=True)
+        self.told(site, "another device")
+        site.drop("line1", "b.csv", csv([check(1)]))  # it is meant, then
+        wait_until(lambda: self.accepted(site) == 2, "a file in the folder below is taken in")
+        self.assertEqual(site.files_in("line1", "done"), ["b.csv"])
+
+    def test_a_share_of_the_machines_table_that_is_not_mounted_at_the_start(self):
+        site = self.make_site()
+        inbox = site.inbox("line1")
+        table = site.folder / "fstab"
+        table.write_text(f"//line1-pc/export {inbox} cifs credentials=/etc/agreed/secrets/line1,_netdev,nofail 0 0\n")
+        # In a view of the files of its own, the machine's own table stays as it is.
+        enter = ["unshare", "-m", "--propagation", "private", "sh", "-c", 'mount --bind "$0" /etc/fstab && exec "$@"', str(table)]
+        if subprocess.run([*enter, "true"], capture_output=True, check=False).returncode != 0:
+            self.skipTest("nothing can be mounted here (root is needed)")
+        site.start(within=enter)
+        inside = ["nsenter", "-m", "-t", str(site.process.pid)]
+        self.told(site, f"nothing is mounted at {inbox}")
+        wait_until(lambda: self.alerts(site, "open"), "an alert is open")
+        subprocess.run([*inside, "mount", "-t", "tmpfs", "tmpfs", inbox], check=True)
+        self.reachable(site)
+        wait_until(lambda: self.alerts(site, "resolved"), "the alert is resolved")
+        self.assertTrue(self.inbox(site, 1)["reachable"])
+
+    def test_a_reload_while_a_folder_hangs(self):
+        site = self.make_site()
+        backing = site.folder / "backing"
+        backing.mkdir()
+        (backing / "a.csv").write_text(csv([check(0)]))
+        server = self.share_on(site.inbox("line1"), backing)
+        site.start()
+        wait_until(lambda: self.accepted(site) == 1, "the file on the share is taken in")
+        server.send_signal(signal.SIGSTOP)
+        self.told(site, "does not answer")
+        self.reload(site, remind_every="9h")
+        self.assertIn("its watcher of before the reload ends when it does", (site.folder / "log").read_text())
+        site.drop("line2", "b.csv", csv([check(1)]))
+        wait_until(lambda: self.accepted(site) == 2, "the other analyzer's file is taken in")
+        self.told(site, "does not answer")  # the new watcher hangs as the one before
+        self.assertTrue(self.inbox(site, 1)["reachable"])
+        (backing / "c.csv").write_text(csv([check(2)]))
+        server.send_signal(signal.SIGCONT)
+        self.reachable(site)
+        wait_until(lambda: self.accepted(site) == 3, "what came meanwhile is taken in")
+        wait_until(lambda: self.alerts(site, "resolved"), "the alert is resolved")
+        self.reload(site, remind_every="10h")
+        site.drop("line2", "d.csv", csv([check(3)]))
+        wait_until(lambda: self.accepted(site) == 4, "the other goes on")
+        wait_until(lambda: self.inbox(site)["pending"] == 0, "files that stay on the share are known")
+        readings = site.get("/api/status")["intake"]["readings"]
+        self.assertEqual((readings["accepted"], readings["repeated"]), (4, 0))
+        code, seconds = site.stop()
+        self.assertEqual(code, 0)
+        self.assertLess(seconds, HANG_LIMIT)
+
+    def test_the_service_ends_in_time_after_reloads_while_a_folder_hangs(self):
+        site = self.make_site()
+        backing = site.folder / "backing"
+        backing.mkdir()
+        server = self.share_on(site.inbox("line1"), backing)
+        site.start()
+        server.send_signal(signal.SIGSTOP)
+        self.told(site, "does not answer")
+        self.reload(site, remind_every="9h")
+        self.reload(site, remind_every="10h")
+        site.drop("line2", "b.csv", csv([check(1)]))
+        wait_until(lambda: self.accepted(site) == 1, "the other analyzer's file is taken in")
+        code, seconds = site.stop()
+        print(f"ended after {seconds:.2f} s")
+        self.assertEqual(code, 0)
+        self.assertLess(seconds, HANG_LIMIT)
 
     def test_a_link_in_the_place_of_the_folder_is_not_followed(self):
         site = self.make_site().start()

@@ -127,8 +127,10 @@ class Commands(SiteTest):
         before = outcome(self.site)
         backup = self.site.folder / "kept" / "mill.sqlite"
         backup.parent.mkdir()
+        os.chmod(self.journal, 0o640)
         done = self.agreed("backup", "--json", backup)
         self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(backup.stat().st_mode & 0o037, 0, "it can be read by nobody who may not read the journal")
         self.assertEqual([p.name for p in backup.parent.iterdir()], ["mill.sqlite"])
         self.assertEqual(self.verify("--file", backup)[0], 0)
         content = backup.read_bytes()
@@ -150,6 +152,7 @@ class Commands(SiteTest):
         for word in (str(kept), "inbox", "same ids"):
             self.assertIn(word, done.stdout)
         self.assertEqual(self.verify("--file", kept)[0], 0)
+        self.assertEqual(self.journal.stat().st_mode & 0o037, 0, "nor can what is put back")
         self.site.start()
         check_same(self, before, outcome(self.site))
         # What came after the backup is taken in again from done/; what the backup knows counts once.

@@ -1,16 +1,19 @@
 // What every path answers, to whom, and what it answers when asked wrongly.
 #include "daemon/http/router.hpp"
 
+#include <algorithm>
 #include <chrono>
 #include <filesystem>
 
 #include <doctest/doctest.h>
 #include <nlohmann/json.hpp>
+#include <unistd.h>
 
 #include "daemon/http/access.hpp"
 #include "daemon/http/etag.hpp"
 #include "daemon/sha256.hpp"
 #include "tests/daemon/http/mill_snapshot.hpp"
+#include "tests/support/as_nobody.hpp"
 #include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
@@ -94,8 +97,9 @@ struct House {
   bool stopping = false, journal_gone = false;
   AlertQuery asked;
   TokensFile file;
-  std::string told;
-  Tokens tokens{file.path, [this](const std::string& words) { told += words + "\n"; }};
+  std::string told, told_over;
+  Tokens tokens{file.path, [this](const std::string& words) { told += words + "\n"; },
+                [this](const std::string& words) { told_over += words + "\n"; }};
   FakeService service{full_snapshot()};
   Router router;
 };
@@ -450,13 +454,90 @@ TEST_CASE("the tokens file is read again when it changes; bad lines are told wit
   std::filesystem::remove(house.file.path);
   CHECK_FALSE(house.tokens.role_of("nnn"));
   CHECK_FALSE(house.tokens.any());
-  CHECK(house.told.find("cannot be read") != std::string::npos);
+  CHECK(house.told.find("cannot be used: there is no file") != std::string::npos);
+}
+
+TEST_CASE(
+    "a tokens file that cannot be used is told once, to the log and by readiness, and when that is over") {
+  House house;
+  const auto remarks = [&] { return json::parse(house.ask("/health/ready").body).at("remarks"); };
+  const auto last_remark = [&] { return remarks().back().get<std::string>(); };
+  const auto forget = [&] {
+    house.told.clear();
+    house.told_over.clear();
+  };
+  const json before = remarks();
+  CHECK(house.told.empty());
+  const std::filesystem::path folder = house.file.folder.path();
+  std::filesystem::permissions(folder, std::filesystem::perms::none);
+  {
+    const testing::AsNobody nobody;
+    REQUIRE(remarks().size() == before.size() + 1);
+    const std::string remark = last_remark();
+    CHECK(remark.find("permission denied: user ") != std::string::npos);
+    CHECK(remark.find(" may not search the folder " + folder.string()) != std::string::npos);
+    CHECK(house.told == remark + "\n");
+    CHECK(house.ask("/health/ready").status == 200);  // measuring goes on
+    CHECK_FALSE(house.tokens.any());
+    CHECK(house.told_over.empty());
+  }
+  std::filesystem::permissions(folder, std::filesystem::perms::owner_all);
+  forget();
+  CHECK(remarks() == before);
+  CHECK(house.tokens.any());
+  CHECK(house.told.empty());
+  CHECK(house.told_over.find("can be read again") != std::string::npos);
+
+  forget();
+  house.file.write("boss x " + sha256_hex("b") + "\nnobody\n");
+  CHECK(last_remark().find(":1: expected") != std::string::npos);
+  CHECK(last_remark().find("(and 1 more") != std::string::npos);
+  forget();
+  house.tokens.use(house.file.path);  // a reload tells it again
+  CHECK(house.told.find(":2: expected") != std::string::npos);
+  forget();
+  std::string of_another_kind;
+  for (int i = 0; i < 1000; ++i) of_another_kind += "results, and no tokens\n";
+  house.file.write(of_another_kind);
+  CHECK(last_remark().find("(and 20 more") != std::string::npos);
+  CHECK(std::count(house.told.begin(), house.told.end(), '\n') < 25);
+  CHECK(house.told.find("980 further lines") != std::string::npos);
+  house.file.write("reader x " + sha256_hex("b") + "\n");
+  CHECK(remarks() == before);
+  CHECK(house.told_over.find("every line") != std::string::npos);
+}
+
+TEST_CASE("what hindered the reading of the tokens file need not change the file to be over") {
+  if (::getuid() != 0) {
+    MESSAGE("skipped: only root can become somebody else, and a change of permissions changes the file");
+    return;
+  }
+  House house;
+  std::filesystem::permissions(house.file.folder.path(), std::filesystem::perms(0755));
+  std::filesystem::permissions(house.file.path, std::filesystem::perms(0600));
+  {
+    const testing::AsNobody nobody;
+    CHECK_FALSE(house.tokens.any());
+  }
+  CHECK(house.tokens.any());
 }
 
 TEST_CASE("no tokens file: every POST is 401") {
   Tokens none(std::nullopt, [](const std::string&) {});
   CHECK_FALSE(none.any());
   CHECK_FALSE(none.role_of("ooo"));
+}
+
+TEST_CASE("who is refused an open address hears what is wrong with the tokens file") {
+  Tokens gone("/nowhere/tokens", [](const std::string&) {});
+  std::string refusal;
+  try {
+    require_reader_token({"0.0.0.0", 7480, false}, gone);
+  } catch (const std::runtime_error& error) {
+    refusal = error.what();
+  }
+  CHECK(refusal.find("there is no file /nowhere/tokens") != std::string::npos);
+  CHECK(refusal.find("open_to_network") != std::string::npos);
 }
 
 TEST_CASE("an address others can reach needs a reader's token, or to be opened on purpose") {

@@ -102,19 +102,106 @@ TEST_CASE("a removed inbox is noticed by its event, long before the next scan") 
   CHECK(eventually([&] { return !folder.sink.state().reachable; }));
 }
 
-TEST_CASE("an empty folder on another device than before is taken for a share that is not mounted") {
-  WatchedFolder folder;
-  const TempFolder elsewhere("/dev/shm");
-  const fs::path& other = elsewhere.path();
-  folder.intake.inbox = folder.temp.path() / "mount";
-  fs::create_directory_symlink(folder.inbox, folder.intake.inbox);
-  folder.start_watching();
-  fs::remove(folder.intake.inbox);
-  fs::create_directory_symlink(other, folder.intake.inbox);
-  CHECK(eventually([&] { return folder.sink.state().reason.find("mounted") != std::string::npos; }));
-  fs::remove(folder.intake.inbox);
-  fs::create_directory_symlink(folder.inbox, folder.intake.inbox);
-  CHECK(eventually([&] { return folder.sink.state().reachable; }));
+namespace {
+
+/// An inbox that is a link, so that it can lie on a file system of its own or on that of the folders above.
+struct Mount : WatchedFolder {
+  Mount() {
+    intake.inbox = temp.path() / "mount";
+    limits.mount_table = temp.path() / "fstab";
+  }
+  void lies_at(const fs::path& place) const {
+    fs::remove(intake.inbox);
+    fs::create_directory_symlink(place, intake.inbox);
+  }
+  [[nodiscard]] bool told(const std::string& words) const {
+    return eventually([&] { return sink.state().reason.find(words) != std::string::npos; });
+  }
+
+  TempFolder share{"/dev/shm"};
+};
+
+}  // namespace
+
+TEST_CASE("an empty folder whose file system begins further up is taken for a share that is not mounted") {
+  Mount mount;
+  mount.lies_at(mount.share.path());
+  mount.start_watching();
+  mount.lies_at(mount.inbox);
+  CHECK(mount.told("is it mounted?"));
+  SUBCASE("until the share is back") {
+    mount.lies_at(mount.share.path());
+    CHECK(eventually([&] { return mount.sink.state().reachable; }));
+  }
+  SUBCASE("until it has a file") {
+    write_file(mount.inbox / "a.csv", csv("S-1"));
+    CHECK(mount.comes_to_done("a.csv"));
+  }
+  SUBCASE("also by the watcher after a reload") {
+    mount.watcher->stop();
+    FolderWatcher next(mount.intake, mount.settings, AnalyzerIndex{0}, mount.sink, mount.limits);
+    next.follow(*mount.watcher);
+    next.start();
+    CHECK(mount.scans_pass());
+    CHECK_FALSE(mount.sink.state().reachable);
+  }
+}
+
+TEST_CASE("an empty share that is mounted where there was none is taken for the inbox at once") {
+  Mount mount;
+  mount.lies_at(mount.inbox);
+  mount.start_watching();
+  mount.lies_at(mount.share.path());
+  CHECK(mount.scans_pass());
+  CHECK(mount.sink.state().reachable);
+  mount.lies_at(mount.inbox);
+  CHECK(mount.told("is it mounted?"));
+}
+
+TEST_CASE(
+    "where the machine's table has a mount point, an empty folder without it is not taken for the inbox") {
+  Mount mount;
+  const auto table_has = [&](const fs::path& point, const std::string& options) {
+    write_file(mount.limits.mount_table,
+               "# the shares\nUUID=1 / ext4 defaults 0 1\n\nUUID=2 none swap sw 0 0\n//pc/export " +
+                   fs::canonical(point).string() + " cifs " + options + " 0 0\n");
+  };
+  mount.lies_at(mount.inbox);
+  SUBCASE("at the folder") {
+    table_has(mount.inbox, "credentials=/etc/line1,_netdev,nofail");
+    mount.start();
+    CHECK(mount.told("nothing is mounted at " + fs::canonical(mount.inbox).string()));
+    CHECK_FALSE(mount.sink.state().reachable);
+    write_file(mount.inbox / "a.csv", csv("S-1"));
+    CHECK(mount.comes_to_done("a.csv"));
+  }
+  SUBCASE("above the folder") {
+    table_has(mount.temp.path(), "_netdev");
+    mount.start();
+    CHECK(mount.told("nothing is mounted at " + fs::canonical(mount.temp.path()).string()));
+    mount.lies_at(mount.share.path());
+    CHECK(eventually([&] { return mount.sink.state().reachable; }));
+  }
+  SUBCASE("but one that is there") {
+    mount.lies_at(mount.share.path());
+    table_has("/dev/shm", "nosuid");
+    mount.start_watching();
+    CHECK(mount.sink.state().reachable);
+  }
+  SUBCASE("but a folder that is mounted elsewhere as well") {
+    table_has(mount.inbox, "bind");
+    mount.start_watching();
+    CHECK(mount.sink.state().reachable);
+  }
+  SUBCASE("but another one") {
+    table_has("/dev/shm", "nosuid");
+    mount.start_watching();
+    CHECK(mount.sink.state().reachable);
+  }
+  SUBCASE("but a table that is not there") {
+    mount.start_watching();
+    CHECK(mount.sink.state().reachable);
+  }
 }
 
 TEST_CASE("a file that cannot be moved is not read again, and moved when that is possible") {

@@ -3,6 +3,7 @@
 #include <fstream>
 
 #include <doctest/doctest.h>
+#include <sys/stat.h>
 
 #include "daemon/journal/backup.hpp"
 #include "daemon/journal/connection.hpp"
@@ -28,6 +29,10 @@ ChainHead take_one(const fs::path& folder, const std::string& sha) {
 
 int schema_of(const fs::path& file) {
   return journal::open_reader(file)->execAndGet("PRAGMA user_version").getInt();
+}
+
+unsigned mode_of(const fs::path& file) {
+  return static_cast<unsigned>(fs::status(file).permissions());
 }
 
 }  // namespace
@@ -75,6 +80,35 @@ TEST_CASE("a backup made while the journal is open is the journal as of its last
   CHECK(Journal(other.path()).head().sha256 == head.sha256);
   CHECK(verify_journal(other.path()).faults.empty());
   CHECK_THROWS_AS(backup_journal(folder.path(), other.database()), JournalError);
+}
+
+TEST_CASE("nobody may read a copy of the journal who may not read the journal") {
+  const ScratchFolder folder, other;
+  take_one(folder.path(), "a");
+  const fs::path backup = other.path() / "backup.sqlite", wide = other.path() / "wide.sqlite";
+  const mode_t before = ::umask(022);
+  fs::permissions(folder.database(), fs::perms(0640));
+  backup_journal(folder.path(), backup);
+  CHECK(mode_of(backup) == 0640);
+  fs::permissions(folder.database(), fs::perms(0600));
+  static_cast<void>(restore_journal(folder.path(), backup));
+  CHECK(mode_of(folder.database()) == 0600);  // as narrow as what it replaces
+  fs::remove(folder.database());
+  static_cast<void>(restore_journal(folder.path(), backup));
+  CHECK(mode_of(folder.database()) == 0640);  // as the backup where there was nothing
+  ::umask(0077);
+  fs::permissions(folder.database(), fs::perms(0644));
+  backup_journal(folder.path(), wide);
+  CHECK(mode_of(wide) == 0600);  // the umask holds besides
+  {
+    const std::array<journal::Migration, 1> steps = {{{1, "CREATE TABLE later(x INTEGER) STRICT"}}};
+    ::umask(022);
+    fs::permissions(folder.database(), fs::perms(0640));
+    const auto database = journal::open_writer(folder.database());
+    journal::migrate(*database, folder.database(), steps, 2);
+  }
+  CHECK(mode_of(folder.path() / "journal.before-schema-2.sqlite") == 0640);
+  ::umask(before);
 }
 
 TEST_CASE("restore puts the backup in place and keeps what was there") {

@@ -71,7 +71,7 @@ TEST_CASE("a secret that is missing, malformed or one too many is refused withou
   Route gone;
   gone.name = "shift";
   gone.secret_file = "/nonexistent/secret";
-  CHECK(refusal(gone) == "route shift: secret file /nonexistent/secret cannot be read");
+  CHECK(refusal(gone) == "route shift: secret file: there is no file /nonexistent/secret");
   Route directory;
   directory.secret_file = std::filesystem::temp_directory_path();
   CHECK_FALSE(refusal(directory).empty());

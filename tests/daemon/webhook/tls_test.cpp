@@ -9,7 +9,7 @@
 #include <openssl/pem.h>
 #include <openssl/x509v3.h>
 
-#include "daemon/webhook/http_post.hpp"
+#include "daemon/webhook/http_call.hpp"
 #include "tests/support/temp_folder.hpp"
 
 using namespace agreed;
@@ -67,12 +67,12 @@ TEST_CASE("an endpoint's certificate must be signed by the CA given and name the
   std::thread serving([&] { server.listen_after_bind(); });
   while (!server.is_running()) std::this_thread::yield();
 
-  PostRequest request;
+  CallRequest request;
   request.content_type = "application/json";
   request.body = "{}";
   const auto post_to = [&](const std::string& host) {
     request.url = "https://" + host + ":" + std::to_string(port) + "/hook";
-    return http_post(request, {}, {});
+    return http_call(request, {}, {});
   };
   const auto unknown_ca = post_to("127.0.0.1");
   CHECK(unknown_ca.status == 0);

@@ -1,4 +1,4 @@
-#include "daemon/webhook/http_post.hpp"
+#include "daemon/webhook/http_call.hpp"
 
 #include <algorithm>
 #include <condition_variable>
@@ -83,7 +83,7 @@ class Call {
     return changed_.wait_until(lock, stop, std::chrono::steady_clock::now() + most, [&] { return done_; });
   }
 
-  [[nodiscard]] PostAnswer answer() const {
+  [[nodiscard]] CallAnswer answer() const {
     const std::lock_guard lock(mutex_);
     return answer_;
   }
@@ -106,7 +106,7 @@ class Call {
   std::condition_variable_any changed_;
   int socket_ = -1;
   bool aborted_ = false, done_ = false;
-  PostAnswer answer_;
+  CallAnswer answer_;
 };
 
 std::string words_for(httplib::Error error) {
@@ -131,26 +131,26 @@ std::string words_for(httplib::Error error) {
   }
 }
 
-httplib::Request library_request(const PostRequest& request, const std::string& path, std::size_t most,
+httplib::Request library_request(const CallRequest& request, const std::string& path, std::size_t most,
                                  const std::shared_ptr<Call>& call) {
-  httplib::Request posted;
-  posted.method = request.method;
-  posted.path = path;
-  posted.body = request.body;
-  for (const auto& [name, value] : request.headers) posted.headers.emplace(name, value);
-  if (!request.content_type.empty()) posted.headers.emplace("Content-Type", request.content_type);
-  posted.response_handler = [call](const httplib::Response& response) {
+  httplib::Request sent;
+  sent.method = request.method;
+  sent.path = path;
+  sent.body = request.body;
+  for (const auto& [name, value] : request.headers) sent.headers.emplace(name, value);
+  if (!request.content_type.empty()) sent.headers.emplace("Content-Type", request.content_type);
+  sent.response_handler = [call](const httplib::Response& response) {
     call->head(response.status, response.get_header_value("Retry-After"));
     return true;
   };
-  posted.content_receiver = [call, most](const char* bytes, std::size_t count, std::uint64_t, std::uint64_t) {
+  sent.content_receiver = [call, most](const char* bytes, std::size_t count, std::uint64_t, std::uint64_t) {
     return call->take(bytes, count, most);
   };
-  return posted;
+  return sent;
 }
 
 /// The call itself, to its end; the error in words, empty when an answer came.
-std::string make_call(const PostRequest& request, const PostLimits& limits,
+std::string make_call(const CallRequest& request, const CallLimits& limits,
                       const std::shared_ptr<Call>& call) {
   const auto url = split_url(request.url);
   if (!url) return "the URL is not a plain http:// or https:// one";
@@ -165,10 +165,10 @@ std::string make_call(const PostRequest& request, const PostLimits& limits,
   client.set_url_encode(false);
   client.set_socket_options([call](socket_t socket) { call->watch(socket); });
   if (request.ca_file) client.set_ca_cert_path(request.ca_file->string());
-  auto posted = library_request(request, url->path, limits.answer, call);
+  auto sent = library_request(request, url->path, limits.answer, call);
   httplib::Response response;
   auto error = httplib::Error::Success;
-  if (!client.send(posted, response, error)) return words_for(error);
+  if (!client.send(sent, response, error)) return words_for(error);
   // The library calls no response_handler for an answer without a body, such as 204.
   call->head(response.status, response.get_header_value("Retry-After"));
   return "";
@@ -176,7 +176,7 @@ std::string make_call(const PostRequest& request, const PostLimits& limits,
 
 }  // namespace
 
-PostAnswer http_post(const PostRequest& request, const PostLimits& limits, const std::stop_token& stop) {
+CallAnswer http_call(const CallRequest& request, const CallLimits& limits, const std::stop_token& stop) {
   const auto call = std::make_shared<Call>();
   // A thread of its own: a name look-up has no time limit and cannot be interrupted, so it may have to be
   // left behind. It holds copies only.
@@ -193,7 +193,7 @@ PostAnswer http_post(const PostRequest& request, const PostLimits& limits, const
       call->finish(std::move(error));
     }).detach();
   } catch (const std::system_error& failure) {
-    PostAnswer none;
+    CallAnswer none;
     none.error = std::string("no thread could be started for the call: ") + failure.what();
     return none;
   }
@@ -202,7 +202,7 @@ PostAnswer http_post(const PostRequest& request, const PostLimits& limits, const
     call->abort();
     (void)call->wait({}, kGrace);
   }
-  PostAnswer answer = call->answer();
+  CallAnswer answer = call->answer();
   if (answer.status != 0) {
     answer.error.clear();
   } else if (!in_time) {

@@ -1,4 +1,4 @@
-#include "daemon/webhook/http_post.hpp"
+#include "daemon/webhook/http_call.hpp"
 
 #include <algorithm>
 #include <chrono>
@@ -15,8 +15,8 @@ using test::Receiver;
 
 namespace {
 
-PostRequest to(const std::string& url) {
-  PostRequest request;
+CallRequest to(const std::string& url) {
+  CallRequest request;
   request.url = url;
   request.content_type = "application/cloudevents+json";
   request.body = std::string("{\"a\":\"\0\xff b\"}", 12);
@@ -24,21 +24,21 @@ PostRequest to(const std::string& url) {
   return request;
 }
 
-PostLimits quick() {
-  PostLimits limits;
+CallLimits quick() {
+  CallLimits limits;
   limits.whole = 400ms;
   limits.connect = 300ms;
   return limits;
 }
 
 struct Timed {
-  PostAnswer answer;
+  CallAnswer answer;
   Duration took{};
 };
 
-Timed timed(const PostRequest& request, const PostLimits& limits, const std::stop_token& stop = {}) {
+Timed timed(const CallRequest& request, const CallLimits& limits, const std::stop_token& stop = {}) {
   const auto start = std::chrono::steady_clock::now();
-  Timed result{http_post(request, limits, stop), {}};
+  Timed result{http_call(request, limits, stop), {}};
   result.took = std::chrono::duration_cast<Duration>(std::chrono::steady_clock::now() - start);
   return result;
 }
@@ -47,7 +47,7 @@ Timed timed(const PostRequest& request, const PostLimits& limits, const std::sto
 
 TEST_CASE("a post carries its headers and exactly its bytes") {
   Receiver receiver({answer(204)});
-  const auto result = http_post(to(receiver.url("/a/b?c=d%20e+f#g")), {}, {});
+  const auto result = http_call(to(receiver.url("/a/b?c=d%20e+f#g")), {}, {});
   CHECK(result.status == 204);
   CHECK(result.error.empty());
   const auto got = receiver.wait_for(1);
@@ -59,12 +59,27 @@ TEST_CASE("a post carries its headers and exactly its bytes") {
   CHECK(got[0].body == to("").body);
 }
 
+TEST_CASE("a get carries its headers and neither a body nor its type") {
+  Receiver receiver({answer(200)});
+  CallRequest request;
+  request.method = "GET";
+  request.url = receiver.url("/api/status");
+  request.headers = {{"Accept", "application/json"}};
+  CHECK(http_call(request, {}, {}).status == 200);
+  const auto got = receiver.wait_for(1);
+  REQUIRE(got.size() == 1);
+  CHECK(got[0].head.rfind("GET /api/status HTTP/1.1\r\n", 0) == 0);
+  CHECK(got[0].header("accept") == "application/json");
+  CHECK(got[0].header("content-type").empty());
+  CHECK(got[0].body.empty());
+}
+
 TEST_CASE("a redirect is an answer and is not followed") {
   Receiver elsewhere({answer(200)});
   Receiver receiver({answer(302, "Location: " + elsewhere.url() + "\r\n")});
-  CHECK(http_post(to(receiver.url()), {}, {}).status == 302);
+  CHECK(http_call(to(receiver.url()), {}, {}).status == 302);
   CHECK(receiver.wait_for(1).size() == 1);
-  CHECK(http_post(to(elsewhere.url("/mine")), {}, {}).status == 200);
+  CHECK(http_call(to(elsewhere.url("/mine")), {}, {}).status == 200);
   CHECK(elsewhere.wait_for(1).size() == 1);
 }
 
@@ -114,7 +129,7 @@ TEST_CASE("of an endless answer only the limit is read, and it is not decompress
       while (send(chunked ? "1000\r\n" + block + "\r\n" : block)) {
       }
     }});
-    PostLimits limits;
+    CallLimits limits;
     const auto result = timed(to(receiver.url()), limits);
     CHECK(result.answer.status == 200);
     CHECK(result.answer.body.size() == limits.answer);
@@ -140,9 +155,9 @@ TEST_CASE("a stop ends a hanging call at once and says that nothing is known") {
 TEST_CASE("Retry-After is handed on; an answer that is no HTTP is a failure") {
   Receiver receiver({answer(503, "Retry-After: 120\r\n"),
                      [](const auto& send) { send("220 smtp ready\r\n\r\n"); }, [](const auto&) {}});
-  CHECK(http_post(to(receiver.url()), {}, {}).retry_after == "120");
-  CHECK(http_post(to(receiver.url()), quick(), {}).status == 0);
-  const auto closed = http_post(to(receiver.url()), quick(), {});
+  CHECK(http_call(to(receiver.url()), {}, {}).retry_after == "120");
+  CHECK(http_call(to(receiver.url()), quick(), {}).status == 0);
+  const auto closed = http_call(to(receiver.url()), quick(), {});
   CHECK(closed.status == 0);
   CHECK_FALSE(closed.error.empty());
 }
