@@ -1,0 +1,18 @@
+#pragma once
+// Charts and comparisons as the alarm budget sees them, from settings alone.
+#include <vector>
+
+#include "core/base/alarm_budget.hpp"
+
+namespace agreed {
+
+/// As settings.charts: cadence, own run length, and the run length that a classical chart's limits give it
+/// (where `expected` is worked out).
+[[nodiscard]] std::vector<BudgetEntry> chart_entries(const Settings& settings);
+/// As settings.comparisons. Scatter is not tested where nothing is known of the size of the errors.
+[[nodiscard]] std::vector<BudgetEntry> comparison_entries(const Settings& settings);
+
+/// Puts run lengths and what is expected into the settings.
+void apply_budget(const BudgetShares& shares, Settings& settings);
+
+}  // namespace agreed
