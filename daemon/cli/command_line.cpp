@@ -311,9 +311,8 @@ GivenSd given_sd(const std::string& text) {
   if (slash != std::string::npos) given.analyzer = name.substr(0, slash);
   given.measurand = slash == std::string::npos ? name : name.substr(slash + 1);
   if (!sd || !(*sd > 0) || given.measurand.empty() || slash == 0)
-    throw CLI::ValidationError("--sd",
-                               "expected MEASURAND=SD or ANALYZER/MEASURAND=SD with an SD above 0, found '" + text +
-                                   "'");
+    throw CLI::ValidationError(
+        "--sd", "expected MEASURAND=SD or ANALYZER/MEASURAND=SD with an SD above 0, found '" + text + "'");
   given.sd = *sd;
   return given;
 }
@@ -334,17 +333,18 @@ void add_wishes(CLI::App& sub, PlanCommand& plan) {
                plan.false_alerts_per_year)
       ->type_name("N");
   CLI::Option* const notice =
-      add_positive(sub, "--notice", "a wish: a shift of one analyzer by this, in the unit of the measurand ...",
-                   plan.notice)
+      add_positive(sub, "--notice",
+                   "a wish: a shift of one analyzer by this, in the unit of the measurand ...", plan.notice)
           ->type_name("SIZE");
   const auto read_within = [&plan](const std::string& text) {
     plan.within = settings_file::duration_of(text);
     if (!plan.within || *plan.within <= Duration::zero())
-      throw CLI::ValidationError("--within", "expected a time such as 24h, 30min or 7d, found '" + text + "'");
+      throw CLI::ValidationError("--within",
+                                 "expected a time such as 24h, 30min or 7d, found '" + text + "'");
   };
-  CLI::Option* const within =
-      sub.add_option_function<std::string>("--within", read_within, "... is noticed within this time, as 24h or 7d")
-          ->type_name("DURATION");
+  CLI::Option* const within = sub.add_option_function<std::string>(
+                                     "--within", read_within, "... is noticed within this time, as 24h or 7d")
+                                  ->type_name("DURATION");
   CLI::Option* const measurand =
       sub.add_option("--measurand", plan.measurand, "... of this measurand; needed if there are several")
           ->type_name("MEASURAND");
@@ -358,8 +358,8 @@ void add_trials(CLI::App& sub, PlanCommand& plan) {
   const auto read = [&plan](const std::string& text) {
     const auto trials = settings_file::whole_number_of(text);
     if (!trials || *trials < kFewest || *trials > kMost)
-      throw CLI::ValidationError("--trials", "expected a whole number from " + std::to_string(kFewest) + " to " +
-                                                 std::to_string(kMost) + ", found '" + text + "'");
+      throw CLI::ValidationError("--trials", "expected a whole number from " + std::to_string(kFewest) +
+                                                 " to " + std::to_string(kMost) + ", found '" + text + "'");
     plan.trials = static_cast<int>(*trials);
   };
   sub.add_option_function<std::string>(
@@ -368,10 +368,11 @@ void add_trials(CLI::App& sub, PlanCommand& plan) {
 }
 
 void add_plan(CLI::App& app, PlanCommand& plan) {
-  CLI::App& sub = add_command(app, "plan",
-                              "what this configuration will do: its false alerts, how soon it notices a shift, how "
-                              "many pairs show agreement; and which setting meets a wish",
-                              plan.config);
+  CLI::App& sub =
+      add_command(app, "plan",
+                  "what this configuration will do: its false alerts, how soon it notices a shift, how "
+                  "many pairs show agreement; and which setting meets a wish",
+                  plan.config);
   sub.add_option_function<std::vector<std::string>>(
          "--sd",
          [&plan](const std::vector<std::string>& texts) {
@@ -385,7 +386,8 @@ void add_plan(CLI::App& app, PlanCommand& plan) {
   add_trials(sub, plan);
   add_json(sub, plan.json);
   sub.footer(
-      "Nothing is written; the service may run, and there need be no journal yet. The same input gives the same\n"
+      "Nothing is written; the service may run, and there need be no journal yet. The same input gives the "
+      "same\n"
       "figures; those that are simulated come with their error.\n"
       "Exit status: 0 done and every wish is met, 1 a wish is not met or nothing is configured to plan,\n"
       "2 wrong use or configuration, 3 the journal could not be read.\n"

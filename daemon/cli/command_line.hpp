@@ -84,10 +84,10 @@ struct PlanCommand {
   std::filesystem::path config;
   std::vector<GivenSd> sds;
   std::optional<double> false_alerts_per_year;  ///< a wish, > 0
-  std::optional<double> notice;                 ///< a wish: a shift of this size, > 0, in the measurand's unit
-  std::optional<Duration> within;               ///< ... is noticed within this, > 0
-  std::string measurand;                        ///< ... of this; empty: the only one there is
-  int trials = 1'000;                           ///< simulated for each figure
+  std::optional<double> notice;    ///< a wish: a shift of this size, > 0, in the measurand's unit
+  std::optional<Duration> within;  ///< ... is noticed within this, > 0
+  std::string measurand;           ///< ... of this; empty: the only one there is
+  int trials = 1'000;              ///< simulated for each figure
   bool json = false;
 };
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.

@@ -2,55 +2,94 @@
 
 #include <algorithm>
 #include <cmath>
+#include <utility>
 
 #include "core/monitor/monitor.hpp"
 #include "core/replay/event_log.hpp"
 #include "daemon/engine/journal_events.hpp"
-#include "daemon/journal/backup.hpp"
+#include "daemon/journal/verify.hpp"
 
-namespace agreed {
+namespace agreed::plan {
 namespace {
 
-SeenChart seen_of(const ChartView& view) {
+SeenChart seen_of(const Chart& chart) {
+  const ChartView view = chart.view();
   SeenChart seen;
   seen.readings = view.baseline.readings;
   seen.mean = view.baseline.center;
   seen.degrees_of_freedom = view.baseline.sd_degrees_of_freedom;
   if (view.baseline.sd && *view.baseline.sd > 0) seen.sd = view.baseline.sd;
+  seen.repeatability = chart.repeatability();
   seen.warnings = view.warnings;
   return seen;
 }
 
-/// Mean and sd of what was measured, less what the error of x adds to it.
-void add_true_values(const ComparisonView& view, SeenComparison& seen) {
-  constexpr int kLeastPairs = 3;
-  double n = 0, mean = 0, squares = 0, error = 0;
-  for (const PairView& pair : view.pairs) {
-    if (!pair.in_window) continue;
-    n += 1;
-    const double step = pair.x - mean;
-    mean += step / n;
-    squares += step * (pair.x - mean);
-    error += seen.sd_x.value_or(0) * seen.sd_x.value_or(0) / pair.x_replicates;
+std::vector<PairView> in_window(const ComparisonView& view) {
+  std::vector<PairView> pairs;
+  std::copy_if(view.pairs.begin(), view.pairs.end(), std::back_inserter(pairs),
+               [](const PairView& pair) { return pair.in_window; });
+  return pairs;
+}
+
+/// The results of x, drawn together about their mean until their variance is that of the true values.
+std::vector<double> true_values(const std::vector<PairView>& pairs, double reliability) {
+  double mean = 0;
+  for (const PairView& pair : pairs) mean += pair.x / static_cast<double>(pairs.size());
+  std::vector<double> values;
+  for (const PairView& pair : pairs) values.push_back(mean + std::sqrt(reliability) * (pair.x - mean));
+  return values;
+}
+
+int median_of(std::vector<int> numbers) {
+  const auto middle = numbers.begin() + static_cast<std::ptrdiff_t>(numbers.size() / 2);
+  std::nth_element(numbers.begin(), middle, numbers.end());
+  return *middle;
+}
+
+/// sd of the pairs about the line, where the comparison does not state it.
+std::optional<double> scatter_about(const FitView& fit, const std::vector<PairView>& pairs) {
+  constexpr std::size_t kLeastPairs = 4;
+  if (pairs.size() < kLeastPairs) return std::nullopt;
+  double squares = 0;
+  for (const PairView& pair : pairs) {
+    const double residual = pair.y - fit.intercept - fit.slope * pair.x;
+    squares += residual * residual;
   }
-  if (n < kLeastPairs) return;
-  seen.true_mean = mean;
-  seen.true_sd = std::sqrt(std::max(0.0, squares / (n - 1) - error / n));
+  if (!(squares > 0)) return std::nullopt;
+  return std::sqrt(squares / static_cast<double>(pairs.size() - 2));
+}
+
+ErrorVariance variance_of(const std::optional<double>& sd, const std::optional<double>& df) {
+  return sd && df ? ErrorVariance{*sd * *sd, *df} : ErrorVariance{};
 }
 
 SeenComparison seen_of(const ComparisonView& view) {
   SeenComparison seen;
   seen.pairs = view.window.pairs;
-  seen.sd_x = view.error.sd_x;
-  seen.sd_y = view.error.sd_y;
-  seen.lambda = view.error.lambda;
-  if (view.fit) seen.slope = view.fit->slope;
-  if (view.scatter && view.scatter->observed_sd > 0) seen.scatter = view.scatter->observed_sd;
-  add_true_values(view, seen);
+  seen.warnings = view.warnings;
+  if (view.error.source == "replicates") {
+    seen.x_replicate_errors = variance_of(view.error.sd_x, view.error.df_x);
+    seen.y_replicate_errors = variance_of(view.error.sd_y, view.error.df_y);
+  }
+  const std::vector<PairView> pairs = in_window(view);
+  if (pairs.empty() || !view.fit) return seen;
+  seen.slope = view.fit->slope;
+  seen.scatter = scatter_about(*view.fit, pairs);
+  if (view.scatter && view.scatter->observed_sd > 0 && view.scatter->expected_sd > 0) {
+    seen.scatter = view.scatter->observed_sd;
+    seen.expected_scatter = view.scatter->expected_sd;
+  }
+  seen.true_values = true_values(pairs, view.range ? view.range->reliability_ratio : 1);
+  std::vector<int> x_replicates, y_replicates;
+  for (const PairView& pair : pairs) {
+    x_replicates.push_back(pair.x_replicates);
+    y_replicates.push_back(pair.y_replicates);
+  }
+  seen.x_replicates = median_of(std::move(x_replicates));
+  seen.y_replicates = median_of(std::move(y_replicates));
   for (const LevelView& level : view.levels)
     if (level.bias && level.low && level.high)
       seen.biases.push_back({level.level, *level.bias, *level.low, *level.high});
-  seen.warnings = view.warnings;
   return seen;
 }
 
@@ -65,7 +104,7 @@ Seen fold(const Config& config) {
   Seen seen;
   seen.journal = true;
   for (std::uint32_t i = 0; i < config.settings->charts.size(); ++i)
-    seen.charts.push_back(seen_of(monitor.chart(ChartIndex{i}).view()));
+    seen.charts.push_back(seen_of(monitor.chart(ChartIndex{i})));
   for (std::uint32_t i = 0; i < config.settings->comparisons.size(); ++i)
     seen.comparisons.push_back(seen_of(monitor.comparison(ComparisonIndex{i}).view()));
   return seen;
@@ -81,4 +120,4 @@ Seen seen_in_journal(const Config& config) {
   return nothing;
 }
 
-}  // namespace agreed
+}  // namespace agreed::plan

@@ -6,37 +6,41 @@
 #include <vector>
 
 #include "config/config.hpp"
+#include "core/chart/repeatability.hpp"
+#include "core/pair/pair.hpp"
 
-namespace agreed {
+namespace agreed::plan {
 
-/// Of the present stretch of a chart; a point is a reading, or the mean of a run of replicates.
+/// Of the present stretch of a chart. A point is a reading, or the mean of a run of replicates.
 struct SeenChart {
-  std::int64_t readings = 0;           ///< points learned
-  std::optional<double> mean;          ///< in the measurand's unit; none without a reading
-  std::optional<double> sd;            ///< of a point; none below two readings
-  std::int64_t degrees_of_freedom = 0; ///< of that sd
-  std::vector<std::string> warnings;   ///< heavy_tails, serial_correlation, ...
+  std::int64_t readings = 0;            ///< points learned
+  std::optional<double> mean;           ///< none without a reading
+  std::optional<double> sd;             ///< of a point; none below two readings or without any scatter
+  std::int64_t degrees_of_freedom = 0;  ///< of that sd
+  Repeatability repeatability;          ///< as comparisons take it
+  std::vector<std::string> warnings;    ///< heavy_tails, serial_correlation, ...
 };
 
-/// What the bias at a decision level is by the pairs in the window.
+/// The bias at a decision level, with its 90 % interval.
 struct SeenBias {
-  double level = 0, bias = 0, low = 0, high = 0;  ///< 90 % interval; in the measurand's unit
+  double level = 0, bias = 0, low = 0, high = 0;
 };
 
 /// Of the pairs in the window of a comparison.
 struct SeenComparison {
   std::int64_t pairs = 0;
-  std::optional<double> sd_x, sd_y;  ///< of single results; in the measurand's unit
-  std::optional<double> lambda;      ///< var(x error) / var(y error)
-  std::optional<double> scatter;     ///< sd of the pairs about their line, in y; none without a fit
+  ErrorVariance x_replicate_errors, y_replicate_errors;  ///< of single results, where replicates tell them
   double slope = 1;
-  std::optional<double> true_mean, true_sd;  ///< of the samples' true values on x; none below three pairs
-  std::vector<SeenBias> biases;
+  std::optional<double> scatter;           ///< sd of the pairs about their line, in y; none without a fit
+  std::optional<double> expected_scatter;  ///< what repeatability alone would make of it
+  std::vector<double> true_values;  ///< of the samples, on x: as measured, less what the errors spread them
+  int x_replicates = 1, y_replicates = 1;  ///< results a side, the median
+  std::vector<SeenBias> biases;            ///< one per decision level, with a fit
   std::vector<std::string> warnings;
 };
 
 struct Seen {
-  bool journal = false;         ///< there is one
+  bool journal = false;                     ///< there is one
   std::vector<SeenChart> charts;            ///< as in the settings
   std::vector<SeenComparison> comparisons;  ///< likewise
 };
@@ -44,4 +48,4 @@ struct Seen {
 /// Folds the configuration's own journal; without one nothing has been seen. Throws JournalError.
 [[nodiscard]] Seen seen_in_journal(const Config& config);
 
-}  // namespace agreed
+}  // namespace agreed::plan

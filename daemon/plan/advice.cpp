@@ -1,0 +1,253 @@
+#include "daemon/plan/advice.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <utility>
+
+#include "config/value_text.hpp"
+#include "core/base/budget_entries.hpp"
+
+namespace agreed::plan {
+namespace {
+
+using settings_file::shown;
+
+constexpr double kUselessRunLength = 20;  // of which `agreed check` makes an error
+
+/// `whole` of the value counted in units of its third digit. A rounding error off a number of three digits is
+/// that number. Units above one are multiplied by and those below divided by, so that decimals stay short.
+template <class Whole>
+double to_three_digits(double value, Whole whole) {
+  const int place = static_cast<int>(std::floor(std::log10(value))) - 2;
+  const double unit = std::pow(10.0, std::abs(place));
+  return place >= 0 ? whole(value / unit) * unit : whole(value * unit) / unit;
+}
+constexpr double kRoundingError = 1e-6;  // of the third digit
+
+/// The settings that a change of the configuration would make; nothing if it would not be valid.
+std::optional<Settings> shared_anew(Settings settings, double allowance) {
+  const BudgetShares shares =
+      share_alarm_budget(allowance, chart_entries(settings), comparison_entries(settings));
+  if (shares.overspent) return std::nullopt;
+  apply_budget(shares, settings);
+  for (const ChartSettings& chart : settings.charts)
+    if (chart.method != ChartMethod::classical && chart.level_run_length < kUselessRunLength)
+      return std::nullopt;
+  for (const ComparisonSettings& comparison : settings.comparisons)
+    if (comparison.warning_run_length < kUselessRunLength ||
+        comparison.scatter_run_length <= comparison.window_pairs)
+      return std::nullopt;
+  return settings;
+}
+
+/// The charts that one check standard's one measurand has, on all analyzers: what its settings are for.
+std::vector<ChartIndex> siblings(const Settings& settings, ChartIndex chart) {
+  std::vector<ChartIndex> all;
+  for (std::uint32_t i = 0; i < settings.charts.size(); ++i)
+    if (settings.charts[i].standard == settings.of(chart).standard &&
+        settings.charts[i].measurand == settings.of(chart).measurand &&
+        settings.charts[i].method == settings.of(chart).method)
+      all.push_back({i});
+  return all;
+}
+
+std::string section_of(const Settings& settings, const Stream& stream) {
+  if (stream.comparison) return "comparisons." + settings.of(*stream.comparison).id;
+  return "check_standards." + settings.of(settings.of(*stream.chart).standard).id;
+}
+
+std::string run_length_key(const Settings& settings, const Stream& stream) {
+  const std::string section = section_of(settings, stream);
+  if (stream.comparison) return section + ".in_control_run_length";
+  return section + ".measurands." + settings.of(settings.of(*stream.chart).measurand).id +
+         ".charts.in_control_run_length";
+}
+
+void set_every(Settings& settings, const Stream& stream, Duration every) {
+  if (stream.comparison) {
+    settings.comparisons[stream.comparison->value].every = every;
+    return;
+  }
+  const StandardIndex standard = settings.of(*stream.chart).standard;
+  for (ChartSettings& chart : settings.charts)
+    if (chart.standard == standard) chart.every = every;
+}
+
+void set_run_length(Settings& settings, const Stream& stream, double readings) {
+  if (stream.comparison) {
+    settings.comparisons[stream.comparison->value].own_run_length = readings;
+    return;
+  }
+  for (const ChartIndex chart : siblings(settings, *stream.chart))
+    settings.charts[chart.value].own_run_length = readings;
+}
+
+std::optional<double> run_length_set(const Settings& settings, const Stream& stream) {
+  return stream.comparison ? settings.of(*stream.comparison).own_run_length
+                           : settings.of(*stream.chart).own_run_length;
+}
+
+/// False alerts a year that are taken off the allowance for a run length of the main score.
+double taken_by(Duration every, double run_length) {
+  constexpr double kPart = 0.5;  // of what is taken, for the main score: alarm_budget.hpp
+  const std::chrono::duration<double> year = std::chrono::hours(24 * 365);
+  return year / every / run_length / kPart;
+}
+
+/// The allowance with which everything else keeps the run lengths that it has.
+double allowance_beside(const Settings& before, const Settings& after, const Stream& stream) {
+  double more = 0;
+  if (stream.comparison) {
+    const auto i = stream.comparison->value;
+    const ComparisonSettings &old = before.comparisons[i], &changed = after.comparisons[i];
+    more = taken_by(changed.every, *changed.own_run_length) - taken_by(old.every, old.warning_run_length);
+  } else {
+    for (const ChartIndex chart : siblings(before, *stream.chart)) {
+      const ChartSettings &old = before.of(chart), &changed = after.of(chart);
+      more += taken_by(changed.every, *changed.own_run_length) - taken_by(old.every, old.level_run_length);
+    }
+  }
+  return before.alarm_budget.allowed_per_year + more;
+}
+
+SettingChange allowance_change(const Settings& settings, double value) {
+  return {"false_alerts_per_year", shown(value), shown(settings.alarm_budget.allowed_per_year)};
+}
+
+std::optional<Advice> more_often(const Settings& settings, const Stream& stream, const EveryRemedy& remedy) {
+  Settings changed = settings;
+  set_every(changed, stream, remedy.every);
+  Advice advice{.kind = "every",
+                .changes = {{section_of(settings, stream) + ".every", shown(remedy.every),
+                             shown(every_of(settings, stream))}},
+                .share = remedy.share};
+  const auto then = shared_anew(std::move(changed), settings.alarm_budget.allowed_per_year);
+  if (!then) return std::nullopt;
+  advice.false_alerts_per_year = then->alarm_budget.expected_per_year;
+  return advice;
+}
+
+/// A run length of its own, and so much more allowance that nothing else changes.
+std::optional<Advice> own_run_length(const Settings& settings, const Stream& stream,
+                                     const RunLengthRemedy& remedy) {
+  const double readings = rounded_down(remedy.in_control_run_length);
+  Settings changed = settings;
+  set_run_length(changed, stream, readings);
+  const double allowance = std::max(rounded_up(allowance_beside(settings, changed, stream)),
+                                    settings.alarm_budget.allowed_per_year);
+  const auto then = shared_anew(changed, allowance);
+  if (!then) return std::nullopt;
+  const auto now = run_length_set(settings, stream);
+  Advice advice{.kind = "in_control_run_length",
+                .changes = {{run_length_key(settings, stream), shown(readings), now ? shown(*now) : ""}},
+                .share = remedy.share,
+                .false_alerts_per_year = then->alarm_budget.expected_per_year,
+                .many_false_alerts = remedy.short_one};
+  if (allowance > settings.alarm_budget.allowed_per_year)
+    advice.changes.push_back(allowance_change(settings, allowance));
+  return advice;
+}
+
+std::optional<Advice> larger_allowance(const Settings& settings, const RunLengthRemedy& remedy) {
+  if (!remedy.false_alerts_per_year) return std::nullopt;
+  const double allowance = rounded_up(*remedy.false_alerts_per_year);
+  const auto then = shared_anew(settings, allowance);
+  if (!then) return std::nullopt;
+  return Advice{.kind = "false_alerts_per_year",
+                .changes = {allowance_change(settings, allowance)},
+                .share = remedy.share,
+                .false_alerts_per_year = then->alarm_budget.expected_per_year,
+                .many_false_alerts = remedy.short_one};
+}
+
+void put_first(std::vector<Advice>& all, FirstRemedy first) {
+  const auto is_first = [first](const Advice& advice) {
+    switch (first) {
+      case FirstRemedy::run_length:
+        return advice.kind == "in_control_run_length" || advice.kind == "false_alerts_per_year";
+      case FirstRemedy::every:
+        return advice.kind == "every";
+      case FirstRemedy::sd:
+        return advice.kind == "repeatability";
+      case FirstRemedy::not_needed:
+      case FirstRemedy::none:
+        return false;
+    }
+    return false;
+  };
+  std::stable_partition(all.begin(), all.end(), is_first);
+}
+
+}  // namespace
+
+std::string name_of(const Settings& settings, const Stream& stream) {
+  if (stream.comparison) return settings.of(*stream.comparison).id;
+  const ChartSettings& chart = settings.of(*stream.chart);
+  return settings.of(chart.analyzer).id + "/" + settings.of(chart.standard).id + "/" +
+         settings.of(chart.measurand).id;
+}
+
+Duration every_of(const Settings& settings, const Stream& stream) {
+  return stream.comparison ? settings.of(*stream.comparison).every : settings.of(*stream.chart).every;
+}
+
+double rounded_down(double value) {
+  return to_three_digits(value, [](double units) { return std::floor(units + kRoundingError); });
+}
+
+double rounded_up(double value) {
+  return to_three_digits(value, [](double units) { return std::ceil(units - kRoundingError); });
+}
+
+std::vector<Advice> advice_on_notice(const Settings& settings, const Stream& stream, const Notice& notice) {
+  std::vector<Advice> all;
+  const auto add = [&all](std::optional<Advice> advice) {
+    if (advice) all.push_back(*std::move(advice));
+  };
+  if (notice.every) add(more_often(settings, stream, *notice.every));
+  if (notice.run_length) {
+    add(own_run_length(settings, stream, *notice.run_length));
+    add(larger_allowance(settings, *notice.run_length));
+  }
+  if (notice.sd)
+    all.push_back({.kind = "repeatability",
+                   .sd_factor = rounded_down(notice.sd->factor),
+                   .share = notice.sd->share,
+                   .false_alerts_per_year = settings.alarm_budget.expected_per_year});
+  put_first(all, notice.first);
+  return all;
+}
+
+std::vector<Advice> advice_on_budget(const Settings& settings, const WishedBudget& budget) {
+  std::vector<Advice> all;
+  const auto add = [&](double allowance, std::vector<SettingChange> besides, Settings changed) {
+    const double value = rounded_down(allowance);
+    const auto then = shared_anew(std::move(changed), value);
+    if (!then) return;
+    besides.push_back(allowance_change(settings, value));
+    all.push_back({.kind = "false_alerts_per_year",
+                   .changes = std::move(besides),
+                   .false_alerts_per_year = then->alarm_budget.expected_per_year});
+  };
+  if (budget.false_alerts_per_year) {
+    add(*budget.false_alerts_per_year, {}, settings);
+    return all;
+  }
+  // Own run lengths alone use up more than is wished: each gets an even part of it, and so all is left.
+  if (!budget.without_own_run_lengths) return all;
+  Settings changed = settings;
+  std::vector<SettingChange> besides;
+  for (const FixedRate& rate : budget.fixed) {
+    if (rate.classical) continue;
+    const Stream stream{rate.chart, rate.comparison};
+    const std::string key = run_length_key(settings, stream);
+    const bool known = std::ranges::any_of(besides, [&](const SettingChange& one) { return one.key == key; });
+    if (!known) besides.push_back({key, "", shown(*run_length_set(settings, stream))});
+  }
+  for (ChartSettings& chart : changed.charts) chart.own_run_length.reset();
+  for (ComparisonSettings& comparison : changed.comparisons) comparison.own_run_length.reset();
+  add(*budget.without_own_run_lengths, std::move(besides), std::move(changed));
+  return all;
+}
+
+}  // namespace agreed::plan
