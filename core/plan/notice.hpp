@@ -11,14 +11,14 @@
 //               longer with the cadence, as in service. Readings stay independent, which very frequent ones
 //               may not be.
 //   run length  shorter, by an own in_control_run_length, or by a false_alerts_per_year that shortens all;
-//               never below 100. Not for classical charts: their limits are what was chosen.
+//               never below 100 nor, of a comparison, half its window. Not for classical charts: their
+//               limits are what was chosen.
 //   sd          a better repeatability: the errors times a factor, never below a twentieth.
 // While searching a simulation stops as soon as it is clear on which side of one half it lies; the value
-// found is confirmed with all trials and made stronger by a tenth until it holds (at most five times).
-#include <functional>
+// found is confirmed with all trials and made stronger step by step until it holds (at most five times).
+// Times of more than 5,000 readings are taken for 5,000.
 #include <memory>
 #include <optional>
-#include <variant>
 
 #include "core/base/settings.hpp"
 #include "core/plan/chart_waits.hpp"
@@ -41,6 +41,7 @@ struct RunLengthRemedy {
   double per_year = 0;                          ///< false alerts that it then has a year, of its main score
   std::optional<double> false_alerts_per_year;  ///< instead, for all; nothing where it has an own run length
   bool short_one = false;                       ///< below 1,000, which `agreed check` warns of
+  bool overspends = false;  ///< as an own setting it leaves the others no share of the allowance
   Simulated share;
 };
 struct SdRemedy {

@@ -14,7 +14,7 @@ namespace agreed::plan {
 struct PairConditions {
   SampleValues samples;
   double sd_x = 0, sd_y = 0;  ///< of the error of one result at the samples' mean value, > 0
-  /// lambda with its interval, known, as the comparison is given it with each pair. How the true errors go
+  /// lambda with its interval, known, as it is to be expected. How the true errors go
   /// with the level is taken from its models (`x_model`, `y_model`), how large they are from the sds above.
   ErrorRatio ratio;
   int x_replicates = 1, y_replicates = 1;  ///< results a side; errors of replicates are independent
@@ -31,6 +31,10 @@ struct PairConditions {
 
 /// Throws std::invalid_argument unless sds are positive and finite, lambda known, replicates >= 1.
 void require_valid(const PairConditions& conditions);
+
+/// The ratio as one service happens to know it: where it is an estimate, with the error of its degrees of
+/// freedom.
+[[nodiscard]] ErrorRatio ratio_as_known(const ErrorRatio& expected, RandomNormal& draw);
 
 /// One pair at `at`: y is `shift` above what `relation` makes of the true value. Rounded to `resolution` (0:
 /// not).

@@ -46,7 +46,6 @@ class PairWaits {
   Trials trials_;
   bool may_be_lost_ = false;
   Waits drifting_, lost_, either_;
-  int made_ = 0;
 };
 
 /// Pairs until agreement_drifting or agreement_lost, whichever comes first: what `notice.hpp` asks of a

@@ -35,7 +35,6 @@ class TrialRun {
   Trial trial_;
   Trials trials_;
   Waits waits_;
-  int made_ = 0;
 };
 
 }  // namespace agreed::plan

@@ -12,6 +12,10 @@ struct Simulated {
   bool operator==(const Simulated&) const = default;
 };
 
+/// `count` of `trials` >= 1. Binomial standard error after Agresti and Coull (Am. Stat. 52 (1998) 119), so
+/// that it is not 0 where it was all or none.
+[[nodiscard]] Simulated share_of(int count, int trials);
+
 class Waits {
  public:
   /// Waits up to `horizon` readings are counted, >= 1.
@@ -33,9 +37,7 @@ class Waits {
   [[nodiscard]] std::optional<Simulated> quantile(double share) const;
   [[nodiscard]] std::optional<Simulated> median() const { return quantile(0.5); }
 
-  /// The share told by at most `readings` readings after the change, held within 0 .. horizon. Binomial
-  /// standard error after Agresti and Coull (Am. Stat. 52 (1998) 119), so that it is not 0 where all or none
-  /// were told. Needs trials.
+  /// The share told by at most `readings` readings after the change, held within 0 .. horizon. Needs trials.
   [[nodiscard]] Simulated noticed_within(int readings) const;
 
  private:
