@@ -130,7 +130,7 @@ std::optional<Advice> more_often(const Settings& settings, const Stream& stream,
 /// A run length of its own, and so much more allowance that nothing else changes.
 std::optional<Advice> own_run_length(const Settings& settings, const Stream& stream,
                                      const RunLengthRemedy& remedy) {
-  const double readings = rounded_down(remedy.in_control_run_length);
+  const double readings = remedy.in_control_run_length;
   Settings changed = settings;
   set_run_length(changed, stream, readings);
   const double allowance = std::max(rounded_up(allowance_beside(settings, changed, stream)),
@@ -158,6 +158,17 @@ std::optional<Advice> larger_allowance(const Settings& settings, const RunLength
                 .share = remedy.share,
                 .false_alerts_per_year = then->alarm_budget.expected_per_year,
                 .many_false_alerts = remedy.short_one};
+}
+
+/// Gives a stream with an own run length a longer one, told once for all that one setting is for.
+void lengthen(const Settings& settings, const Stream& stream, double readings, Settings& changed,
+              Advice& advice) {
+  const std::string key = run_length_key(settings, stream);
+  if (std::ranges::any_of(advice.changes, [&](const SettingChange& one) { return one.key == key; })) return;
+  const double longer = rounded_up(readings);
+  set_run_length(changed, stream, longer);
+  const auto now = run_length_set(settings, stream);
+  advice.changes.push_back({key, shown(longer), now ? shown(*now) : ""});
 }
 
 void put_first(std::vector<Advice>& all, FirstRemedy first) {
@@ -219,35 +230,23 @@ std::vector<Advice> advice_on_notice(const Settings& settings, const Stream& str
 }
 
 std::vector<Advice> advice_on_budget(const Settings& settings, const WishedBudget& budget) {
-  std::vector<Advice> all;
-  const auto add = [&](double allowance, std::vector<SettingChange> besides, Settings changed) {
-    const double value = rounded_down(allowance);
-    const auto then = shared_anew(std::move(changed), value);
-    if (!then) return;
-    besides.push_back(allowance_change(settings, value));
-    all.push_back({.kind = "false_alerts_per_year",
-                   .changes = std::move(besides),
-                   .false_alerts_per_year = then->alarm_budget.expected_per_year});
-  };
-  if (budget.false_alerts_per_year) {
-    add(*budget.false_alerts_per_year, {}, settings);
-    return all;
-  }
-  // Own run lengths alone use up more than is wished: each gets an even part of it, and so all is left.
-  if (!budget.without_own_run_lengths) return all;
+  const double allowance = rounded_down(budget.false_alerts_per_year.value_or(budget.wished));
   Settings changed = settings;
-  std::vector<SettingChange> besides;
-  for (const FixedRate& rate : budget.fixed) {
-    if (rate.classical) continue;
-    const Stream stream{rate.chart, rate.comparison};
-    const std::string key = run_length_key(settings, stream);
-    const bool known = std::ranges::any_of(besides, [&](const SettingChange& one) { return one.key == key; });
-    if (!known) besides.push_back({key, "", shown(*run_length_set(settings, stream))});
+  Advice advice{.kind = "false_alerts_per_year"};
+  if (!budget.false_alerts_per_year) {
+    // Own run lengths alone use up what is wished: each is left an even share of it.
+    advice.kind = "in_control_run_length";
+    for (const FixedRate& rate : budget.fixed)
+      if (!rate.classical)
+        lengthen(settings, {rate.chart, rate.comparison}, rate.even_run_length, changed, advice);
   }
-  for (ChartSettings& chart : changed.charts) chart.own_run_length.reset();
-  for (ComparisonSettings& comparison : changed.comparisons) comparison.own_run_length.reset();
-  add(*budget.without_own_run_lengths, std::move(besides), std::move(changed));
-  return all;
+  const auto then = shared_anew(std::move(changed), allowance);
+  constexpr double kNoMore = 1 + 1e-6;
+  if (!then || then->alarm_budget.expected_per_year > budget.wished * kNoMore) return {};
+  if (allowance != settings.alarm_budget.allowed_per_year)
+    advice.changes.push_back(allowance_change(settings, allowance));
+  advice.false_alerts_per_year = then->alarm_budget.expected_per_year;
+  return {std::move(advice)};
 }
 
 }  // namespace agreed::plan

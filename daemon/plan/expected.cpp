@@ -10,8 +10,8 @@
 namespace agreed::plan {
 namespace {
 
-constexpr double kLeastDegrees = 5;
-constexpr std::int64_t kLeastPairs = 20;
+constexpr double kDegreesToTrust = 5;
+constexpr std::int64_t kPairsToTrust = 20;
 constexpr double kExactly = 1e6;  // degrees of freedom of an sd that was given
 
 /// One comparison as it is worked out.
@@ -79,7 +79,7 @@ class Expectation {
     if (source.source == ErrorSource::replicates)
       return ratio_of(seen_.x_replicate_errors, seen_.y_replicate_errors);
     const auto x = standards_of(comparison_.x), y = standards_of(comparison_.y);
-    if (std::min(most_degrees(x), most_degrees(y)) < kLeastDegrees) return {};
+    if (std::min(most_degrees(x), most_degrees(y)) < kDegreesToTrust) return {};
     ErrorRatio ratio = ratio_from_standards(x, y, comparison_.error_growth, "", "", "");
     return ratio.known ? ratio : ratio_of(pooled(x), pooled(y));
   }
@@ -111,7 +111,7 @@ class Expectation {
       };
       expected.x = side(ratio.x, ratio.x_model);
       expected.y = side(ratio.y, ratio.y_model);
-    } else if (ratio.known && seen_.scatter && seen_.pairs >= kLeastPairs) {
+    } else if (ratio.known && seen_.scatter && seen_.pairs >= kPairsToTrust) {
       // A bare lambda: how large the errors are is told by the pairs alone.
       const double of_y = *seen_.scatter / std::sqrt(1 + seen_.slope * seen_.slope * ratio.lambda);
       expected.y = {Source::seen, of_y, static_cast<double>(seen_.pairs - 2)};
@@ -128,14 +128,14 @@ class Expectation {
     for (auto [analyzer, sd] :
          {std::pair(comparison_.x, &expected.x), std::pair(comparison_.y, &expected.y)}) {
       const ErrorVariance known = pooled(standards_of(analyzer));
-      if (known.variance > 0 && known.degrees_of_freedom >= kLeastDegrees)
+      if (known.variance > 0 && known.degrees_of_freedom >= kDegreesToTrust)
         *sd = {Source::seen, std::sqrt(known.variance), known.degrees_of_freedom};
     }
   }
 
   void scale_to_scatter(ExpectedPairs& expected) const {
     if (expected.x.source != Source::seen || expected.y.source != Source::seen) return;
-    if (!seen_.scatter || !seen_.expected_scatter || seen_.pairs < kLeastPairs) return;
+    if (!seen_.scatter || !seen_.expected_scatter || seen_.pairs < kPairsToTrust) return;
     const double factor = *seen_.scatter / *seen_.expected_scatter;
     expected.x.value *= factor;
     expected.y.value *= factor;
@@ -143,7 +143,7 @@ class Expectation {
   }
 
   [[nodiscard]] std::optional<SampleValues> samples_seen() const {
-    if (seen_.pairs < kLeastPairs || seen_.true_values.empty()) return std::nullopt;
+    if (seen_.pairs < kPairsToTrust || seen_.true_values.empty()) return std::nullopt;
     const auto [low, high] = std::ranges::minmax(seen_.true_values);
     return low < high ? std::optional(SampleValues(seen_.true_values)) : std::nullopt;
   }
@@ -192,7 +192,7 @@ ExpectedSd expected_sd(const Settings& settings, ChartIndex chart, const Wishes&
   const ChartSettings& of = settings.of(chart);
   if (const auto sd = wishes.sd_of(of.analyzer, of.measurand)) return {Source::given, *sd, 0};
   const SeenChart& known = seen.charts.at(chart.value);
-  if (known.sd && static_cast<double>(known.degrees_of_freedom) >= kLeastDegrees)
+  if (known.sd && static_cast<double>(known.degrees_of_freedom) >= kDegreesToTrust)
     return {Source::seen, *known.sd, static_cast<double>(known.degrees_of_freedom)};
   if (of.classical.sigma) return {Source::configured, *of.classical.sigma, 0};
   return {};

@@ -142,10 +142,10 @@ class Planner {
 
   void judge_budget() {
     if (!wishes_.false_alerts_per_year) return;
-    constexpr double kRoundingError = 1e-6;
+    constexpr double kRounding = 1e-6;
     BudgetAnswer answer{.wished = *wishes_.false_alerts_per_year,
                         .expected = plan_.false_alerts.per_year.value};
-    answer.met = answer.expected <= answer.wished * (1 + kRoundingError);
+    answer.met = answer.expected <= answer.wished * (1 + kRounding);
     answer.budget = budget_for(settings_, answer.wished);
     if (!answer.met) answer.advice = advice_on_budget(settings_, answer.budget);
     plan_.budget = std::move(answer);

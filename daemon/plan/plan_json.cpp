@@ -161,7 +161,7 @@ Json advice_json(const std::vector<Advice>& advice) {
     Json changes = Json::array();
     for (const SettingChange& change : one.changes)
       changes.push_back({{"key", change.key},
-                         {"value", change.value.empty() ? Json(nullptr) : Json(change.value)},
+                         {"value", change.value},
                          {"now", change.now.empty() ? Json(nullptr) : Json(change.now)}});
     Json json{{"kind", one.kind}, {"changes", std::move(changes)}, {"sd_factor", or_null(one.sd_factor)}};
     put(json, "share_in_time", one.share);

@@ -13,7 +13,6 @@ namespace {
 using settings_file::shown;
 
 std::string change_words(const SettingChange& change) {
-  if (change.value.empty()) return change.key + " taken away (now " + change.now + ")";
   return change.key + ": " + change.value + (change.now.empty() ? "" : " (now " + change.now + ")");
 }
 
