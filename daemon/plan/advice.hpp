@@ -29,11 +29,11 @@ struct SettingChange {
 
 struct Advice {
   std::string kind;  ///< every, in_control_run_length, false_alerts_per_year or repeatability
-  std::vector<SettingChange> changes;  ///< all of them together; empty for repeatability
-  std::optional<double> sd_factor;     ///< repeatability: what the sd is to be multiplied by
-  std::optional<Simulated> share;      ///< noticed in the time wished, then
-  double false_alerts_per_year = 0;    ///< of the whole service, then
-  bool many_false_alerts = false;      ///< a run length below 1,000, of which `agreed check` warns
+  std::vector<SettingChange> changes{};  ///< all of them together; empty for repeatability
+  std::optional<double> sd_factor{};     ///< repeatability: what the sd is to be multiplied by
+  std::optional<Simulated> share{};      ///< noticed in the time wished, then
+  double false_alerts_per_year = 0;      ///< of the whole service, then
+  bool many_false_alerts = false;        ///< a run length below 1,000, of which `agreed check` warns
 };
 
 /// What would make a stream notice, what costs least first.

@@ -28,12 +28,13 @@ inline constexpr double kProofPower = 0.9;
 /// How long a step takes to be noticed. Readings (pairs) with their Monte Carlo errors; nothing: not within
 /// `horizon` of them.
 struct StepWaits {
-  double in_sds = 0;           ///< of one reading, of one pair
-  std::optional<double> size;  ///< in the measurand's unit; none while the sd is not known
-  bool allowable = false;      ///< its size is the allowable difference
+  double in_sds = 0;             ///< of one reading, of one pair
+  std::optional<double> size{};  ///< in the measurand's unit; none while the sd is not known
+  bool allowable = false;        ///< its size is the allowable difference
   int horizon = 0;
-  std::optional<Simulated> half, nine_in_ten;
-  std::optional<Simulated> half_drifting, half_lost;  ///< of a comparison: by agreement_drifting alone, ...
+  std::optional<Simulated> half{}, nine_in_ten{};
+  std::optional<Simulated> half_drifting{},
+      half_lost{};  ///< of a comparison: by agreement_drifting alone, ...
 };
 
 struct ChartLaw {
@@ -65,29 +66,29 @@ struct ComparisonPlan {
 struct BudgetAnswer {
   double wished = 0, expected = 0;
   bool met = false;
-  WishedBudget budget;
-  std::vector<Advice> advice;
+  WishedBudget budget{};
+  std::vector<Advice> advice{};
 };
 
 struct StreamNotice {
   Stream stream;
-  std::optional<Notice> notice;  ///< none: an sd is not known
-  std::string missing;           ///< which
-  double sd = 0;                 ///< of one point, of one pair, where known
-  std::vector<Advice> advice;    ///< of one that does not notice in time
+  std::optional<Notice> notice{};  ///< none: an sd is not known
+  std::string missing{};           ///< which
+  double sd = 0;                   ///< of one point, of one pair, where known
+  std::vector<Advice> advice{};    ///< of one that does not notice in time
 };
 
 /// A shift of one analyzer is noticed in time if one of its charts and comparisons does so.
 struct AnalyzerNotice {
   AnalyzerIndex analyzer;
-  std::vector<std::size_t> streams;  ///< places among NoticeAnswer::streams
+  std::vector<std::size_t> streams{};  ///< places among NoticeAnswer::streams
   bool met = false;
 };
 
 struct NoticeAnswer {
   MeasurandNotice wish;
-  std::vector<StreamNotice> streams;  ///< everything that watches the measurand
-  std::vector<AnalyzerNotice> analyzers;
+  std::vector<StreamNotice> streams{};  ///< everything that watches the measurand
+  std::vector<AnalyzerNotice> analyzers{};
   [[nodiscard]] bool met() const;
 };
 
