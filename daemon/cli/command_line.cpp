@@ -303,17 +303,15 @@ void add_replay(CLI::App& app, ReplayCommand& replay) {
 /// "line1/protein=0.02" or "protein=0.02".
 GivenSd given_sd(const std::string& text) {
   GivenSd given;
-  const std::size_t equals = text.find('=');
-  const auto sd = equals == std::string::npos ? std::optional<double>()
-                                              : settings_file::number_of(text.substr(equals + 1));
-  const std::string name = text.substr(0, equals);
-  const std::size_t slash = name.find('/');
-  if (slash != std::string::npos) given.analyzer = name.substr(0, slash);
-  given.measurand = slash == std::string::npos ? name : name.substr(slash + 1);
-  if (!sd || !(*sd > 0) || given.measurand.empty() || slash == 0)
+  const std::size_t equals = std::min(text.find('='), text.size()), slash = text.substr(0, equals).find('/');
+  const bool of_one = slash != std::string::npos;
+  if (of_one) given.analyzer = text.substr(0, slash);
+  const std::size_t name = of_one ? slash + 1 : 0;
+  given.measurand = text.substr(name, equals - name);
+  given.sd = settings_file::number_of(text.substr(std::min(equals + 1, text.size()))).value_or(0);
+  if (!(given.sd > 0) || given.measurand.empty() || slash == 0)
     throw CLI::ValidationError(
         "--sd", "expected MEASURAND=SD or ANALYZER/MEASURAND=SD with an SD above 0, found '" + text + "'");
-  given.sd = *sd;
   return given;
 }
 

@@ -89,9 +89,9 @@ std::optional<double> run_length_set(const Settings& settings, const Stream& str
 
 /// False alerts a year that are taken off the allowance for a run length of the main score.
 double taken_by(Duration every, double run_length) {
-  constexpr double kPart = 0.5;  // of what is taken, for the main score: alarm_budget.hpp
+  static_assert(score_part == warning_part);
   const std::chrono::duration<double> year = std::chrono::hours(24 * 365);
-  return year / every / run_length / kPart;
+  return year / every / run_length / score_part;
 }
 
 /// The allowance with which everything else keeps the run lengths that it has.
