@@ -120,7 +120,8 @@ std::optional<Advice> more_often(const Settings& settings, const Stream& stream,
   Advice advice{.kind = "every",
                 .changes = {{section_of(settings, stream) + ".every", shown(remedy.every),
                              shown(every_of(settings, stream))}},
-                .share = remedy.share};
+                .share = remedy.share,
+                .demand = 1 / std::chrono::duration<double>(remedy.every).count()};
   const auto then = shared_anew(std::move(changed), settings.alarm_budget.allowed_per_year);
   if (!then) return std::nullopt;
   advice.false_alerts_per_year = then->alarm_budget.expected_per_year;
@@ -142,6 +143,7 @@ std::optional<Advice> own_run_length(const Settings& settings, const Stream& str
                 .changes = {{run_length_key(settings, stream), shown(readings), now ? shown(*now) : ""}},
                 .share = remedy.share,
                 .false_alerts_per_year = then->alarm_budget.expected_per_year,
+                .demand = 1 / readings,
                 .many_false_alerts = remedy.short_one};
   if (allowance > settings.alarm_budget.allowed_per_year)
     advice.changes.push_back(allowance_change(settings, allowance));
@@ -157,6 +159,7 @@ std::optional<Advice> larger_allowance(const Settings& settings, const RunLength
                 .changes = {allowance_change(settings, allowance)},
                 .share = remedy.share,
                 .false_alerts_per_year = then->alarm_budget.expected_per_year,
+                .demand = allowance,
                 .many_false_alerts = remedy.short_one};
 }
 
@@ -224,7 +227,8 @@ std::vector<Advice> advice_on_notice(const Settings& settings, const Stream& str
     all.push_back({.kind = "repeatability",
                    .sd_factor = rounded_down(notice.sd->factor),
                    .share = notice.sd->share,
-                   .false_alerts_per_year = settings.alarm_budget.expected_per_year});
+                   .false_alerts_per_year = settings.alarm_budget.expected_per_year,
+                   .demand = 1 / notice.sd->factor});
   put_first(all, notice.first);
   return all;
 }

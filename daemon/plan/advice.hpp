@@ -33,6 +33,7 @@ struct Advice {
   std::optional<double> sd_factor{};     ///< repeatability: what the sd is to be multiplied by
   std::optional<Simulated> share{};      ///< noticed in the time wished, then
   double false_alerts_per_year = 0;      ///< of the whole service, then
+  double demand = 0;                     ///< larger: asks more, among those of one kind and the same keys
   bool many_false_alerts = false;        ///< a run length below 1,000, of which `agreed check` warns
 };
 

@@ -59,8 +59,7 @@ class Planner {
     for (std::size_t i = 0; i < plan_.laws.size(); ++i) add_law(i);
     for (std::uint32_t i = 0; i < plan_.charts.size(); ++i) add_allowable({i});
     for (std::uint32_t i = 0; i < plan_.comparisons.size(); ++i) add_comparison({i});
-    if (plan_.notice)
-      for (StreamNotice& stream : plan_.notice->streams) add_notice(stream);
+    if (plan_.notice) add_notices(plan_.notice->streams);
     do_all(pieces_, tell);
     if (plan_.notice) conclude(*plan_.notice);
     return std::move(plan_);
@@ -255,7 +254,27 @@ class Planner {
     });
   }
 
+  /// Those of charts alike are searched once.
+  void add_notices(std::vector<StreamNotice>& streams) {
+    same_as_.resize(streams.size());
+    for (std::size_t i = 0; i < streams.size(); ++i) {
+      std::size_t& same = same_as_[i];
+      while (same < i && !alike(streams[same], streams[i])) ++same;
+      if (same == i) add_notice(streams[i]);
+    }
+  }
+
+  [[nodiscard]] bool alike(const StreamNotice& a, const StreamNotice& b) const {
+    if (!a.stream.chart || !b.stream.chart || !a.missing.empty() || !b.missing.empty()) return false;
+    const ChartIndex one = *a.stream.chart, other = *b.stream.chart;
+    return plan_.charts[one.value].law == plan_.charts[other.value].law &&
+           models_[plan_.charts[one.value].law].in_sds &&
+           settings_.of(one).own_run_length == settings_.of(other).own_run_length && a.sd == b.sd;
+  }
+
   void conclude(NoticeAnswer& answer) const {
+    for (std::size_t i = 0; i < answer.streams.size(); ++i)
+      if (same_as_[i] != i) answer.streams[i].notice = answer.streams[same_as_[i]].notice;
     for (StreamNotice& stream : answer.streams)
       if (stream.notice && !stream.notice->met)
         stream.advice = advice_on_notice(settings_, stream.stream, *stream.notice);
@@ -269,7 +288,8 @@ class Planner {
   const Wishes& wishes_;
   Trials trials_;
   Plan plan_;
-  std::vector<LawModel> models_;  ///< as plan_.laws
+  std::vector<LawModel> models_;      ///< as plan_.laws
+  std::vector<std::size_t> same_as_;  ///< of each stream of the notice: the first one like it
   std::vector<Piece> pieces_;
 };
 

@@ -101,9 +101,8 @@ void show_chart(Paper& paper, const Plan& plan, const Settings& settings, ChartI
     text += "sd " + in_unit(planned.sd.value, measurand) + source_words(planned.sd);
     if (planned.sd.source == Source::seen) text += fmt::format(", seen in {} readings", seen.readings);
     if (const auto& step = planned.allowable; step && step->half)
-      text += fmt::format("; the allowable {} is {} sd: half by {} ({})", in_unit(*step->size, measurand),
-                          significant(step->in_sds, 3), with_error(*step->half),
-                          span_words(step->half->value, chart.every));
+      text += fmt::format("; the allowable {} is {} sd: half noticed in {}", significant(*step->size, 3),
+                          significant(step->in_sds, 3), span_words(step->half->value, chart.every));
   }
   paper.row("  for", text);
   for (const std::string& warning : seen.warnings)
@@ -136,6 +135,10 @@ void show_proof(Paper& paper, const ProofPlanned& proof, const ComparisonSetting
     text = fmt::format("{} pairs ({}) show it with {} % power {}: {}", *needs.pairs,
                        span_words(*needs.pairs, comparison.every), kProofPower * 100, bias,
                        percent_with_error(needs.power));
+    // One look at the bias alone would do with fewer: what is missing are samples on both sides of a level.
+    constexpr double kWouldDo = 0.05;
+    if (needs.closed_form > needs.power.value + kWouldDo)
+      text += "; fewer would do if more samples lay beyond the decision levels";
   } else if (needs.reason == no_proof::bias_as_large_as_allowable) {
     text = "cannot be shown " + bias + ": it is as large as what is allowable";
   } else if (needs.reason == no_proof::not_covered) {

@@ -13,7 +13,6 @@ namespace {
 
 /// Decimals that an error bears: its first digit, or its second where the first is a 1.
 int decimals_for(double error) {
-  if (!(error > 0)) return 0;
   return std::clamp(-static_cast<int>(std::floor(std::log10(error / 1.95))), 0, 6);
 }
 
@@ -49,9 +48,9 @@ std::string of_unit(double count, const char* one, const char* many) {
 }  // namespace
 
 std::string with_error(const Simulated& figure) {
+  if (!(figure.standard_error > 0)) return significant(figure.value, 3);
   const int decimals = decimals_for(figure.standard_error);
-  const std::string value = fixed(figure.value, decimals);
-  return figure.standard_error > 0 ? value + " +- " + fixed(figure.standard_error, decimals) : value;
+  return fixed(figure.value, decimals) + " +- " + fixed(figure.standard_error, decimals);
 }
 
 std::string percent_with_error(const Simulated& share) {

@@ -27,51 +27,112 @@ std::string false_alerts_words(const Advice& advice) {
 }
 
 /// One of several ways to meet a wish to notice.
-std::string way(const Advice& advice, const StreamNotice& stream, const BudgetAnswer* wish,
-                const Measurand& measurand) {
+struct Way {
+  Advice advice;
+  const StreamNotice* stream;            ///< whose advice it is
+  std::string key;                       ///< the same for advices that differ in their value alone
+  std::vector<AnalyzerIndex> analyzers;  ///< whose shifts are noticed then
+};
+
+/// The least demanding of each key among the streams of one analyzer: one that notices is enough.
+std::vector<Way> ways_of(const NoticeAnswer& answer, const AnalyzerNotice& analyzer,
+                         const Settings& settings) {
+  std::vector<Way> ways;
+  for (const std::size_t i : analyzer.streams) {
+    const StreamNotice& stream = answer.streams[i];
+    for (const Advice& advice : stream.advice) {
+      std::string key = advice.kind;
+      for (const SettingChange& change : advice.changes) key += " " + change.key;
+      if (advice.sd_factor)
+        key += " " +
+               (stream.stream.chart ? settings.of(analyzer.analyzer).id : name_of(settings, stream.stream));
+      const auto same = std::ranges::find(ways, key, &Way::key);
+      if (same == ways.end())
+        ways.push_back({advice, &stream, key, {analyzer.analyzer}});
+      else if (advice.demand < same->advice.demand)
+        *same = {advice, &stream, key, {analyzer.analyzer}};
+    }
+  }
+  return ways;
+}
+
+/// The most demanding of each key among the analyzers: it must do for all of them.
+std::vector<Way> ways_of(const NoticeAnswer& answer, const Settings& settings) {
+  std::vector<Way> ways;
+  for (const AnalyzerNotice& analyzer : answer.analyzers) {
+    if (analyzer.met) continue;
+    for (Way& way : ways_of(answer, analyzer, settings)) {
+      const auto same = std::ranges::find(ways, way.key, &Way::key);
+      if (same == ways.end()) {
+        ways.push_back(std::move(way));
+        continue;
+      }
+      std::vector<AnalyzerIndex> all = same->analyzers;
+      all.push_back(analyzer.analyzer);
+      if (way.advice.demand > same->advice.demand) *same = std::move(way);
+      same->analyzers = std::move(all);
+    }
+  }
+  return ways;
+}
+
+std::string names_of(const std::vector<AnalyzerIndex>& analyzers, const Settings& settings) {
   std::string text;
-  if (advice.sd_factor)
-    text = "a better repeatability: sd of a " + std::string(stream.stream.chart ? "reading" : "pair") + " " +
-           significant(rounded_down(*advice.sd_factor * stream.sd), 3) + " " + measurand.unit + " (now " +
-           significant(stream.sd, 3) + ")";
-  else
-    text = changes_words(advice.changes);
-  if (advice.share) text += "; " + percent_with_error(*advice.share) + " are noticed in time then";
-  if (!advice.changes.empty()) text += ", with " + false_alerts_words(advice);
-  if (wish != nullptr && advice.false_alerts_per_year > wish->wished) text += ", more than wished";
-  if (advice.many_false_alerts) text += "; so many have to be answered by hand";
+  for (const AnalyzerIndex analyzer : analyzers)
+    text += (text.empty() ? "" : ", ") + settings.of(analyzer).id;
   return text;
 }
 
-std::string state_of(const StreamNotice& stream, const Settings& settings, const char* what) {
-  if (!stream.notice) return "not known: give --sd for " + stream.missing;
-  const Notice& notice = *stream.notice;
-  const Duration every = every_of(settings, stream.stream);
-  if (!notice.median) return "half of them are not noticed at all";
-  return "half noticed by " + with_error(*notice.median) + " " + what + ", " +
-         span_words(notice.median->value, every) + "; in time " + percent_with_error(notice.share);
+std::string words_of(const Way& way, const BudgetAnswer* wish, std::size_t not_met, const Settings& settings,
+                     const Measurand& measurand) {
+  const Advice& advice = way.advice;
+  std::string text = changes_words(advice.changes);
+  if (advice.sd_factor) {
+    text = "a better repeatability: sd of a ";
+    text += way.stream->stream.chart ? "reading on " + names_of(way.analyzers, settings)
+                                     : "pair of " + name_of(settings, way.stream->stream);
+    text += " " + significant(rounded_down(*advice.sd_factor * way.stream->sd), 3) + " " + measurand.unit +
+            " (now " + significant(way.stream->sd, 3) + ")";
+  } else if (way.analyzers.size() < not_met) {
+    text += ", for shifts of " + names_of(way.analyzers, settings);
+  }
+  if (advice.share) text += "; " + percent_with_error(*advice.share) + " are noticed in time then";
+  constexpr double kMore = 1.001;
+  if (advice.false_alerts_per_year > kMore * settings.alarm_budget.expected_per_year) {
+    text += ", with " + false_alerts_words(advice);
+    if (wish != nullptr && advice.false_alerts_per_year > wish->wished) text += ", more than wished";
+    if (advice.many_false_alerts) text += ", which have to be answered by hand";
+  }
+  return text;
 }
 
-void show_stream(Paper& paper, const StreamNotice& stream, const BudgetAnswer* wish, const Settings& settings,
-                 const Measurand& measurand, bool needed) {
-  const char* const what = stream.stream.chart ? "readings" : "pairs";
-  const bool met = stream.notice && stream.notice->met;
-  paper.row(met ? "  met by" : "  not by", std::string(stream.stream.chart ? "chart " : "comparison ") +
-                                               name_of(settings, stream.stream) + ": " +
-                                               state_of(stream, settings, what));
-  if (!needed || !stream.notice) return;
-  const char* label = "  change";
-  for (const Advice& advice : stream.advice) {
-    paper.row(label, way(advice, stream, wish, measurand));
-    label = "  or";
-  }
-  if (stream.notice->shift)
-    paper.row("", "As it is, the least shift noticed in time is " +
-                      significant(rounded_up(*stream.notice->shift), 3) + " " + measurand.unit + ".");
-  else if (stream.advice.empty())
+std::string state_of(const StreamNotice& stream, const Settings& settings) {
+  if (!stream.notice) return "not known: give --sd for " + stream.missing;
+  const Notice& notice = *stream.notice;
+  if (!notice.median) return "half of such shifts are not noticed at all";
+  return "half noticed by " + with_error(*notice.median) +
+         (stream.stream.chart ? " readings, " : " pairs, ") +
+         span_words(notice.median->value, every_of(settings, stream.stream)) + "; in time " +
+         percent_with_error(notice.share);
+}
+
+void show_analyzer(Paper& paper, const AnalyzerNotice& analyzer, const NoticeAnswer& answer,
+                   const Settings& settings, const Measurand& measurand) {
+  std::optional<double> least;
+  for (const std::size_t i : analyzer.streams)
+    if (const auto& notice = answer.streams[i].notice; notice && notice->shift)
+      least = least ? std::min(*least, *notice->shift) : *notice->shift;
+  std::string text = "of " + settings.of(analyzer.analyzer).id;
+  if (least)
+    text +=
+        "; the least shift noticed in time is " + significant(rounded_up(*least), 3) + " " + measurand.unit;
+  paper.row(analyzer.met ? "  met" : "  NOT MET", text);
+  for (const std::size_t i : analyzer.streams) {
+    const StreamNotice& stream = answer.streams[i];
     paper.row("",
-              "No one change makes it notice in time: allow more time, or combine more frequent "
-              "readings with a better repeatability.");
+              std::string(stream.stream.chart ? "chart " : "comparison ") + name_of(settings, stream.stream) +
+                  (stream.notice && stream.notice->met ? ", in time: " : ": ") + state_of(stream, settings));
+  }
 }
 
 }  // namespace
@@ -105,15 +166,22 @@ void show_notice_wish(Paper& paper, const NoticeAnswer& answer, const BudgetAnsw
                 ", in half of the cases");
   if (answer.analyzers.empty())
     paper.row("  NOT MET", "no check standard and no comparison has " + measurand.id);
-  std::vector<bool> shown_already(answer.streams.size(), false);
+  std::size_t not_met = 0;
   for (const AnalyzerNotice& analyzer : answer.analyzers) {
-    paper.row(analyzer.met ? "  met" : "  NOT MET", "of " + settings.of(analyzer.analyzer).id);
-    for (const std::size_t i : analyzer.streams) {
-      // A comparison watches two analyzers: what to change is told once.
-      show_stream(paper, answer.streams[i], wish, settings, measurand, !analyzer.met && !shown_already[i]);
-      shown_already[i] = true;
-    }
+    show_analyzer(paper, analyzer, answer, settings, measurand);
+    if (!analyzer.met) ++not_met;
   }
+  if (not_met == 0) return;
+  const std::vector<Way> ways = ways_of(answer, settings);
+  const char* label = "  change";
+  for (const Way& way : ways) {
+    paper.row(label, words_of(way, wish, not_met, settings, measurand));
+    label = "  or";
+  }
+  if (ways.empty() && !answer.analyzers.empty())
+    paper.row("",
+              "No one change does it: allow more time, or combine more frequent readings with a better "
+              "repeatability.");
 }
 
 }  // namespace agreed::plan

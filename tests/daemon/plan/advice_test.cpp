@@ -36,6 +36,13 @@ Settings mill() {
   return settings;
 }
 
+RunLengthRemedy run_length(double readings, std::optional<double> allowance) {
+  RunLengthRemedy remedy;
+  remedy.in_control_run_length = readings;
+  remedy.false_alerts_per_year = allowance;
+  return remedy;
+}
+
 double number(const std::string& text) {
   return std::stod(text);
 }
@@ -61,7 +68,7 @@ TEST_CASE("a chart's own run length comes with an allowance that leaves the othe
                warning = settings.comparisons[0].warning_run_length;
   CHECK(level == doctest::Approx(1825));
   Notice notice;
-  notice.run_length = RunLengthRemedy{.in_control_run_length = 400};
+  notice.run_length = run_length(400, std::nullopt);
   notice.first = FirstRemedy::run_length;
   const auto advice = advice_on_notice(settings, {ChartIndex{1}, std::nullopt}, notice);
   REQUIRE(advice.size() == 1);
@@ -88,10 +95,9 @@ TEST_CASE("a chart's own run length comes with an allowance that leaves the othe
 TEST_CASE("what costs least comes first, and what would not be valid is not advised") {
   const Settings settings = mill();
   Notice notice;
-  notice.every = EveryRemedy{.every = 2h};
-  notice.run_length =
-      RunLengthRemedy{.in_control_run_length = 150, .false_alerts_per_year = 73, .short_one = true};
-  notice.sd = SdRemedy{.factor = 0.5};
+  notice.every = EveryRemedy{2h, {}};
+  notice.run_length = run_length(150, 73);
+  notice.sd = SdRemedy{0.5, {}};
   notice.first = FirstRemedy::every;
   const Stream chart{ChartIndex{0}, std::nullopt};
   auto advice = advice_on_notice(settings, chart, notice);

@@ -24,7 +24,7 @@ Settings mill() {
   settings.measurands.resize(1);
   settings.measurands[0].id = "protein";
   settings.measurands[0].decision_levels = {10, 14};
-  settings.measurands[0].allowable = AllowableDifference{.absolute = 0.2, .percent = std::nullopt};
+  settings.measurands[0].allowable = AllowableDifference{0.2, std::nullopt};
   settings.standards = {{"wheat", ""}};
   settings.charts.resize(2);
   settings.charts[1].analyzer = kY;

@@ -16,6 +16,7 @@ TEST_CASE("a figure has as many decimals as its error bears") {
   CHECK(with_error({6, 0.034}) == "6.00 +- 0.03");
   CHECK(with_error({1234, 56}) == "1234 +- 56");
   CHECK(with_error({2, 0}) == "2");
+  CHECK(with_error({0.3, 0}) == "0.3");
   CHECK(percent_with_error({0.9213, 0.0091}) == "92.1 +- 0.9 %");
 }
 
