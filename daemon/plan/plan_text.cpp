@@ -132,7 +132,7 @@ void show_proof(Paper& paper, const ProofPlanned& proof, const ComparisonSetting
                                            : std::string("if there is no bias");
   std::string text;
   if (needs.pairs) {
-    text = fmt::format("{} pairs ({}) show it with {} % power {}: {}", *needs.pairs,
+    text = fmt::format("{} pairs ({}) show agreement with {} % power {}: {}", *needs.pairs,
                        span_words(*needs.pairs, comparison.every), kProofPower * 100, bias,
                        percent_with_error(needs.power));
     // One look at the bias alone would do with fewer: what is missing are samples on both sides of a level.
@@ -140,13 +140,14 @@ void show_proof(Paper& paper, const ProofPlanned& proof, const ComparisonSetting
     if (needs.closed_form > needs.power.value + kWouldDo)
       text += "; fewer would do if more samples lay beyond the decision levels";
   } else if (needs.reason == no_proof::bias_as_large_as_allowable) {
-    text = "cannot be shown " + bias + ": it is as large as what is allowable";
+    text = "agreement cannot be shown " + bias + ": it is as large as what is allowable";
   } else if (needs.reason == no_proof::not_covered) {
-    text = "seldom shown: too few samples reach the decision level" +
+    text = "agreement is seldom shown: too few samples reach the decision level" +
            (needs.level ? " " + shown(*needs.level) : std::string());
   } else {
-    text = fmt::format("not shown with {} % power {}: the {} pairs that the window holds have {}",
-                       kProofPower * 100, bias, needs.capacity, percent_with_error(needs.power));
+    text =
+        fmt::format("agreement is not shown with {} % power {}: the {} pairs that the window holds have {}",
+                    kProofPower * 100, bias, needs.capacity, percent_with_error(needs.power));
     if (needs.pairs_in_larger_window)
       text += fmt::format("; it takes a window of {} pairs", *needs.pairs_in_larger_window);
     if (needs.sd_factor)
@@ -156,7 +157,7 @@ void show_proof(Paper& paper, const ProofPlanned& proof, const ComparisonSetting
       text += fmt::format("; or {} times the allowable difference",
                           significant(rounded_up(*needs.allowable_factor), 3));
   }
-  paper.row("  agreement", text);
+  paper.row("  proof", text);
 }
 
 void show_errors(Paper& paper, const ComparisonPlan& planned, const SeenComparison& seen,
@@ -204,9 +205,9 @@ void show_comparison(Paper& paper, const Plan& plan, const Settings& settings, C
   show_errors(paper, planned, plan.seen.comparisons[index.value], settings, comparison);
   for (const ProofPlanned& proof : planned.proofs) show_proof(paper, proof, comparison, measurand);
   if (planned.no_proof == no_proof::no_decision_levels)
-    paper.row("  agreement", "is not judged: " + measurand.id + " has no decision_levels");
+    paper.row("  proof", "agreement is not judged: " + measurand.id + " has no decision_levels");
   else if (planned.no_proof == no_proof::no_allowable_difference)
-    paper.row("  agreement", "is not judged: " + measurand.id + " has no allowable_difference");
+    paper.row("  proof", "agreement is not judged: " + measurand.id + " has no allowable_difference");
 }
 
 }  // namespace

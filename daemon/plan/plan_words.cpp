@@ -76,8 +76,9 @@ void Paper::heading(const std::string& text) {
 
 void Paper::row(const std::string& label, const std::string& text) {
   std::string front = label;
-  for (const std::string& line : flowing(text, kWidth - kLabel)) {
-    front.resize(std::max(front.size() + 1, kLabel), ' ');
+  const std::size_t margin = std::max(label.size() + 1, kLabel);
+  for (const std::string& line : flowing(text, kWidth - margin)) {
+    front.resize(margin, ' ');
     text_ += front + line + '\n';
     front.clear();
   }

@@ -32,7 +32,17 @@ struct Way {
   const StreamNotice* stream;            ///< whose advice it is
   std::string key;                       ///< the same for advices that differ in their value alone
   std::vector<AnalyzerIndex> analyzers;  ///< whose shifts are noticed then
+  std::string sds;                       ///< of a better repeatability: which sds
 };
+
+std::string sd_words(const Advice& advice, const StreamNotice& stream, const Settings& settings) {
+  if (!advice.sd_factor) return "";
+  const std::string whose = stream.stream.chart
+                                ? " on " + settings.of(settings.of(*stream.stream.chart).analyzer).id
+                                : " of a pair of " + name_of(settings, stream.stream);
+  return significant(rounded_down(*advice.sd_factor * stream.sd), 3) + whose + " (now " +
+         significant(stream.sd, 3) + ")";
+}
 
 /// The least demanding of each key among the streams of one analyzer: one that notices is enough.
 std::vector<Way> ways_of(const NoticeAnswer& answer, const AnalyzerNotice& analyzer,
@@ -43,14 +53,13 @@ std::vector<Way> ways_of(const NoticeAnswer& answer, const AnalyzerNotice& analy
     for (const Advice& advice : stream.advice) {
       std::string key = advice.kind;
       for (const SettingChange& change : advice.changes) key += " " + change.key;
-      if (advice.sd_factor)
-        key += " " +
-               (stream.stream.chart ? settings.of(analyzer.analyzer).id : name_of(settings, stream.stream));
+      if (advice.sd_factor && stream.stream.comparison) key += " " + name_of(settings, stream.stream);
+      Way way{advice, &stream, key, {analyzer.analyzer}, sd_words(advice, stream, settings)};
       const auto same = std::ranges::find(ways, key, &Way::key);
       if (same == ways.end())
-        ways.push_back({advice, &stream, key, {analyzer.analyzer}});
+        ways.push_back(std::move(way));
       else if (advice.demand < same->advice.demand)
-        *same = {advice, &stream, key, {analyzer.analyzer}};
+        *same = std::move(way);
     }
   }
   return ways;
@@ -69,10 +78,13 @@ std::vector<Way> ways_of(const NoticeAnswer& answer, const Settings& settings) {
       }
       std::vector<AnalyzerIndex> all = same->analyzers;
       all.push_back(analyzer.analyzer);
+      const std::string sds = way.stream->stream.chart ? same->sds + " and " + way.sds : way.sds;
       if (way.advice.demand > same->advice.demand) *same = std::move(way);
       same->analyzers = std::move(all);
+      same->sds = sds;
     }
   }
+  std::ranges::stable_partition(ways, [](const Way& way) { return !way.advice.sd_factor; });
   return ways;
 }
 
@@ -88,11 +100,8 @@ std::string words_of(const Way& way, const BudgetAnswer* wish, std::size_t not_m
   const Advice& advice = way.advice;
   std::string text = changes_words(advice.changes);
   if (advice.sd_factor) {
-    text = "a better repeatability: sd of a ";
-    text += way.stream->stream.chart ? "reading on " + names_of(way.analyzers, settings)
-                                     : "pair of " + name_of(settings, way.stream->stream);
-    text += " " + significant(rounded_down(*advice.sd_factor * way.stream->sd), 3) + " " + measurand.unit +
-            " (now " + significant(way.stream->sd, 3) + ")";
+    text = "a better repeatability: sd " + way.sds + " in " + measurand.unit;
+    if (way.analyzers.size() < not_met) text += ", for shifts of " + names_of(way.analyzers, settings);
   } else if (way.analyzers.size() < not_met) {
     text += ", for shifts of " + names_of(way.analyzers, settings);
   }
