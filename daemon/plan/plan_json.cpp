@@ -1,6 +1,6 @@
 #include "daemon/plan/plan_json.hpp"
 
-#include <cmath>
+#include <algorithm>
 
 #include <nlohmann/json.hpp>
 
@@ -91,7 +91,7 @@ Json proof_json(const ProofPlanned& proof, Duration every) {
             {"pairs", or_null(needs.pairs)},
             {"hours", needs.pairs ? Json(*needs.pairs * hours(every)) : Json(nullptr)}};
   put(json, "power", needs.power);
-  json["power_of_one_look"] = needs.closed_form;
+  json["power_of_one_look"] = std::min(1.0, needs.closed_form);  // a rounding error above it
   json["window_holds"] = needs.capacity;
   json["reason"] = std::string(needs.reason);
   json["level"] = or_null(needs.level);

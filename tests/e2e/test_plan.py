@@ -8,7 +8,7 @@ import unittest
 from harness import AGREED, SiteTest
 from plant import Plant, csv
 
-TRIALS = ("--trials", "400")
+TRIALS = ("--trials", "200")
 
 
 def configuration(**changes):
@@ -146,7 +146,7 @@ class Given(PlanTest):
         self.assertEqual(plan(site, *arguments), (code, out, err))
         self.assertNotIn("\033", out)
         for line in out.splitlines():
-            if not line.startswith(("plan", "seen")) and str(site.folder) not in line:
+            if not line.startswith(("plan", "seen")) and max(map(len, line.split(" "))) <= 60:  # paths and long keys aside
                 self.assertLessEqual(len(line), 80, line)
             self.assertEqual(line, line.rstrip())
         for words in ("line1/wheat-low/protein: sd 0.02 g/100 g (given)", "+-", "nine in ten", "NOT MET", "90 % power",
@@ -210,7 +210,7 @@ class Wishes(PlanTest):
             self.assertNotIn("every", [advice["kind"] for advice in stream["advice"]])
         code, out, _ = plan(site, "--sd", "protein=0.02", "--notice", "0.0001", "--within", "2h", *TRIALS)
         self.assertEqual(code, 1)
-        self.assertIn("least shift noticed in time is", out)
+        self.assertIn("No one change does it", out)
 
     def test_fewer_false_alerts_when_the_advice_is_followed(self):
         config = configuration()
