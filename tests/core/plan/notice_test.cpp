@@ -112,6 +112,13 @@ TEST_CASE("a chart with its own run length: the allowance does not move it") {
   const Notice notice = notice_of_chart(settings, 0.2, hours(40));
   REQUIRE(notice.run_length);
   CHECK_FALSE(notice.run_length->false_alerts_per_year);
+  REQUIRE(notice.every);
+  CHECK_FALSE(notice.every->overspends);
+  // With hardly more allowed than its own run length uses up, checks more often use up too much.
+  settings = shared(settings, 2 * 1095 / 20'000.0 + 0.01);
+  const Notice tight = notice_of_chart(settings, 0.2, hours(40));
+  REQUIRE(tight.every);
+  CHECK(tight.every->overspends);
 }
 
 TEST_CASE("a classical chart keeps its limits") {
