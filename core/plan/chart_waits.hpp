@@ -6,9 +6,9 @@
 // One life: `before` readings in control, independent and normal, rounded to the configured decimals (where
 // the level lies between two roundings is drawn anew each time); then further ones until no alert is open;
 // then the step, and readings until an alert opens. So a false alert before the step counts for nothing, but
-// what it set aside is gone, as in service. A chart that is not calm after ten times `before` (at least 100)
-// readings more would not tell a step at all: not noticed. The wait is counted from a step just after a
-// reading: wait x `every` is the longest time it can have lasted.
+// what it set aside is gone, as in service; one after it counts as telling it. A chart that is not calm after
+// ten times `before` (at least 100) readings more would not tell a step at all: not noticed. The wait is
+// counted from a step just after a reading: wait x `every` is the longest time it can have lasted.
 //
 // Each reading is a run of one; for runs of replicates `sd` is that of a run's mean. Lots and reference
 // values play no part. Cost: about 3 us a reading, most of it for the splits remembered.

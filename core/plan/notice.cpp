@@ -41,7 +41,7 @@ struct Watched {
   bool own = false, adjustable = true;
   double least_run_length = kLeastRunLength;
   std::function<Trial(const Change&)> trial;
-  std::function<bool(double)> overspends;  ///< whether an own run length leaves the others no share
+  std::function<bool(const Change&)> overspends;  ///< whether others are left no share of the allowance
 };
 
 int readings_within(Duration within, Duration every) {
@@ -54,23 +54,28 @@ BudgetShares shares_of(const Settings& settings) {
 }
 
 template <class Item>
-bool overspends(Settings settings, std::vector<Item> Settings::*items, std::size_t index, double own) {
-  (settings.*items).at(index).own_run_length = own;
-  return shares_of(settings).overspent;
+bool overspends(const Settings& settings, std::vector<Item> Settings::*items, std::size_t index,
+                const Change& change) {
+  Settings changed = settings;
+  Item& item = (changed.*items).at(index);
+  if (change.every) item.every = *change.every;
+  if (change.run_length) item.own_run_length = change.run_length;
+  return shares_of(changed).overspent;
 }
 
 /// The settings of an item as a change leaves them: at another cadence a share makes another run length.
 template <class Item>
-Settings changed_settings(Settings settings, std::vector<Item> Settings::*items, std::size_t index,
+Settings changed_settings(const Settings& settings, std::vector<Item> Settings::*items, std::size_t index,
                           const Change& change) {
-  Item& item = (settings.*items).at(index);
+  Settings changed = settings;
+  Item& item = (changed.*items).at(index);
   if (change.every) item.every = *change.every;
   const bool shared = change.every && !item.own_run_length;
   if (change.run_length) item.own_run_length = change.run_length;
-  if (!shared && !change.run_length) return settings;
+  if (!shared && !change.run_length) return changed;
   // What becomes of the others does not matter here: only this item is simulated.
-  apply_budget(shares_of(settings), settings);
-  return settings;
+  apply_budget(shares_of(changed), changed);
+  return changed;
 }
 
 Watched watched_chart(const Settings& settings, ChartIndex index, double sd, int before, double shift) {
@@ -84,7 +89,9 @@ Watched watched_chart(const Settings& settings, ChartIndex index, double sd, int
     return chart_trial(changed_settings(settings, &Settings::charts, index.value, change), index,
                        {shift * change.shift_factor, sd * change.sd_factor, before});
   };
-  watched.overspends = [=](double own) { return overspends(settings, &Settings::charts, index.value, own); };
+  watched.overspends = [=](const Change& change) {
+    return overspends(settings, &Settings::charts, index.value, change);
+  };
   return watched;
 }
 
@@ -101,8 +108,8 @@ Watched watched_comparison(const Settings& settings, ComparisonIndex index, cons
     return pair_trial(changed_settings(settings, &Settings::comparisons, index.value, change), index,
                       conditions.with_errors(change.sd_factor), {shift * change.shift_factor, before});
   };
-  watched.overspends = [=](double own) {
-    return overspends(settings, &Settings::comparisons, index.value, own);
+  watched.overspends = [=](const Change& change) {
+    return overspends(settings, &Settings::comparisons, index.value, change);
   };
   return watched;
 }
@@ -204,6 +211,7 @@ struct NoticeSearch::State {
     const std::vector<double> factors =
         notice.met ? grid(1 / kWidestShift, 1, kLargerShift) : grid(1, kWidestShift, kLargerShift);
     std::vector<Change> changes;
+    changes.reserve(factors.size());
     for (const double factor : factors) changes.push_back({{}, {}, 1, factor});
     return {among(std::move(changes)), [this, factors](int i, Simulated) {
               notice.shift = std::abs(wish.shift) * factors[static_cast<std::size_t>(i)];
@@ -219,7 +227,8 @@ struct NoticeSearch::State {
         changes.push_back({every, {}, 1, 1});
       }
     return {among(std::move(changes)), [this, intervals](int i, Simulated share) {
-              notice.every = EveryRemedy{intervals[static_cast<std::size_t>(i)], share};
+              const Duration every = intervals[static_cast<std::size_t>(i)];
+              notice.every = EveryRemedy{every, share, watched.overspends({every, {}, 1, 1})};
             }};
   }
 
@@ -229,6 +238,7 @@ struct NoticeSearch::State {
       for (const double factor : grid(1, watched.run_length / watched.least_run_length, kStronger))
         if (factor > 1) lengths.push_back(std::floor(watched.run_length / factor));
     std::vector<Change> changes;
+    changes.reserve(lengths.size());
     for (const double length : lengths) changes.push_back({{}, length, 1, 1});
     return {among(std::move(changes)), [this, lengths](int i, Simulated share) {
               notice.run_length = remedy_of(lengths[static_cast<std::size_t>(i)], share);
@@ -254,7 +264,7 @@ struct NoticeSearch::State {
     remedy.short_one = length < kShortRunLength;
     remedy.share = share;
     const double allowed = settings.alarm_budget.allowed_per_year;
-    remedy.overspends = watched.overspends(length);
+    remedy.overspends = watched.overspends({{}, length, 1, 1});
     if (watched.own) return remedy;
     const double taken = shares_of(settings).taken_per_year;
     // The share grows as the run length shrinks: both parts of a share that matter here are one half.

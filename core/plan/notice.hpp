@@ -35,6 +35,7 @@ struct NoticeWish {
 struct EveryRemedy {
   Duration every{};
   Simulated share;
+  bool overspends = false;  ///< with its own run length it then leaves the others no share of the allowance
 };
 struct RunLengthRemedy {
   double in_control_run_length = 0;             ///< as an own setting of this chart or comparison

@@ -32,6 +32,7 @@ SampleValues SampleValues::evenly(double low, double high) {
   if (!(std::isfinite(low) && std::isfinite(high) && low < high))
     throw std::invalid_argument("low, high: expected finite values, low below high");
   std::vector<double> values;
+  values.reserve(kEvenly);
   for (int i = 0; i < kEvenly; ++i) values.push_back(std::lerp(low, high, i / (kEvenly - 1.0)));
   return SampleValues(std::move(values));
 }

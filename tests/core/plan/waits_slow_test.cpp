@@ -13,9 +13,8 @@ using namespace agreed::plan;
 using namespace agreed::test;
 
 TEST_CASE("agreement is lost after a step from 0 to 2 A as stated") {
-  // 3-statistics 3.4: the window's verdict alone tells it after 66 / 26 / 15 pairs (A = 0.5 / 1 / 2 sd of a
-  // pair); in a comparison the critical signal of the pair chart restarts the window, so that it is told
-  // sooner.
+  // 3-statistics 3.4: the window's verdict tells it after 66 / 26 / 15 pairs (A = 0.5 / 1 / 2 sd of a pair);
+  // a whole comparison restarts its window at a critical signal of the pair chart, and takes about as long.
   struct Row {
     double allowable;
     int alone;
