@@ -94,20 +94,26 @@ double taken_by(Duration every, double run_length) {
   return year / every / run_length / score_part;
 }
 
-/// The allowance with which everything else keeps the run lengths that it has.
-double allowance_beside(const Settings& before, const Settings& after, const Stream& stream) {
-  double more = 0;
-  if (stream.comparison) {
-    const auto i = stream.comparison->value;
-    const ComparisonSettings &old = before.comparisons[i], &changed = after.comparisons[i];
-    more = taken_by(changed.every, *changed.own_run_length) - taken_by(old.every, old.warning_run_length);
-  } else {
-    for (const ChartIndex chart : siblings(before, *stream.chart)) {
-      const ChartSettings &old = before.of(chart), &changed = after.of(chart);
-      more += taken_by(changed.every, *changed.own_run_length) - taken_by(old.every, old.level_run_length);
-    }
+/// By how much more an own run length uses up than what was used up before.
+double more_taken(Duration every, double run_length, Duration every_before, double run_length_before) {
+  return taken_by(every, run_length) - taken_by(every_before, run_length_before);
+}
+
+/// The allowance with which everything that lives on a share keeps the share that it has.
+double allowance_beside(const Settings& before, const Settings& after) {
+  double allowance = before.alarm_budget.allowed_per_year;
+  for (std::size_t i = 0; i < after.charts.size(); ++i) {
+    const ChartSettings &old = before.charts[i], &changed = after.charts[i];
+    if (changed.own_run_length)
+      allowance += more_taken(changed.every, *changed.own_run_length, old.every, old.level_run_length);
   }
-  return before.alarm_budget.allowed_per_year + more;
+  for (std::size_t i = 0; i < after.comparisons.size(); ++i) {
+    const ComparisonSettings &old = before.comparisons[i], &changed = after.comparisons[i];
+    if (changed.own_run_length)
+      allowance += more_taken(changed.every, *changed.own_run_length, old.every, old.warning_run_length);
+  }
+  const double allowed = before.alarm_budget.allowed_per_year;
+  return allowance > allowed * (1 + kRoundingError) ? rounded_up(allowance) : allowed;
 }
 
 SettingChange allowance_change(const Settings& settings, double value) {
@@ -117,14 +123,17 @@ SettingChange allowance_change(const Settings& settings, double value) {
 std::optional<Advice> more_often(const Settings& settings, const Stream& stream, const EveryRemedy& remedy) {
   Settings changed = settings;
   set_every(changed, stream, remedy.every);
+  const double allowance = allowance_beside(settings, changed);
+  const auto then = shared_anew(std::move(changed), allowance);
+  if (!then) return std::nullopt;
   Advice advice{.kind = "every",
                 .changes = {{section_of(settings, stream) + ".every", shown(remedy.every),
                              shown(every_of(settings, stream))}},
                 .share = remedy.share,
+                .false_alerts_per_year = then->alarm_budget.expected_per_year,
                 .demand = 1 / std::chrono::duration<double>(remedy.every).count()};
-  const auto then = shared_anew(std::move(changed), settings.alarm_budget.allowed_per_year);
-  if (!then) return std::nullopt;
-  advice.false_alerts_per_year = then->alarm_budget.expected_per_year;
+  if (allowance > settings.alarm_budget.allowed_per_year)
+    advice.changes.push_back(allowance_change(settings, allowance));
   return advice;
 }
 
@@ -134,8 +143,7 @@ std::optional<Advice> own_run_length(const Settings& settings, const Stream& str
   const double readings = remedy.in_control_run_length;
   Settings changed = settings;
   set_run_length(changed, stream, readings);
-  const double allowance = std::max(rounded_up(allowance_beside(settings, changed, stream)),
-                                    settings.alarm_budget.allowed_per_year);
+  const double allowance = allowance_beside(settings, changed);
   const auto then = shared_anew(changed, allowance);
   if (!then) return std::nullopt;
   const auto now = run_length_set(settings, stream);

@@ -84,7 +84,7 @@ std::vector<Way> ways_of(const NoticeAnswer& answer, const Settings& settings) {
       same->sds = sds;
     }
   }
-  std::ranges::stable_partition(ways, [](const Way& way) { return !way.advice.sd_factor; });
+  std::stable_partition(ways.begin(), ways.end(), [](const Way& way) { return !way.advice.sd_factor; });
   return ways;
 }
 
