@@ -17,6 +17,8 @@
 // While searching a simulation stops as soon as it is clear on which side of one half it lies; the value
 // found is confirmed with all trials and made stronger step by step until it holds (at most five times).
 // Times of more than 5,000 readings are taken for 5,000.
+//
+// Cost: with 300 trials one to two seconds each, with 1,000 three to four, shifts that nothing helps one.
 #include <memory>
 #include <optional>
 

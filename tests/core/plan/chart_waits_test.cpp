@@ -47,7 +47,7 @@ TEST_CASE("a change-point chart: medians of 73, 16 and 4 readings at 0.5, 1 and 
   };
   for (const Row& row : {Row{0.5, 73, 7}, Row{1, 16, 1.1}, Row{2, 4, 1}, Row{-1, 16, 1.1}}) {
     const Waits waits =
-        waits_of(chart_trial(with_run_length(1800), {0}, {0.3 * row.size, 0.3, 103}), 600, 400);
+        waits_of(chart_trial(with_run_length(1800), {0}, {0.3 * row.size, 0.3, 103}), 400, 200);
     REQUIRE(waits.median());
     MESSAGE(row.size << " sd: " << waits.median()->value << " +- " << waits.median()->standard_error
                      << ", promised " << row.median);
