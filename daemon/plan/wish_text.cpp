@@ -119,8 +119,9 @@ std::string state_of(const StreamNotice& stream, const Settings& settings) {
   if (!stream.notice) return "not known: give --sd for " + stream.missing;
   const Notice& notice = *stream.notice;
   if (!notice.median) return "half of such shifts are not noticed at all";
-  return "half noticed by " + with_error(*notice.median) +
-         (stream.stream.chart ? " readings, " : " pairs, ") +
+  const std::string number = with_error(*notice.median);
+  const std::string what = stream.stream.chart ? "reading" : "pair";
+  return "half noticed by " + number + " " + what + (number == "1" ? "" : "s") + ", " +
          span_words(notice.median->value, every_of(settings, stream.stream)) + "; in time " +
          percent_with_error(notice.share);
 }
@@ -131,16 +132,15 @@ void show_analyzer(Paper& paper, const AnalyzerNotice& analyzer, const NoticeAns
   for (const std::size_t i : analyzer.streams)
     if (const auto& notice = answer.streams[i].notice; notice && notice->shift)
       least = least ? std::min(*least, *notice->shift) : *notice->shift;
-  std::string text = "of " + settings.of(analyzer.analyzer).id;
+  std::string text = "for " + settings.of(analyzer.analyzer).id;
   if (least)
     text +=
         "; the least shift noticed in time is " + significant(rounded_up(*least), 3) + " " + measurand.unit;
   paper.row(analyzer.met ? "  met" : "  NOT MET", text);
   for (const std::size_t i : analyzer.streams) {
     const StreamNotice& stream = answer.streams[i];
-    paper.row("",
-              std::string(stream.stream.chart ? "chart " : "comparison ") + name_of(settings, stream.stream) +
-                  (stream.notice && stream.notice->met ? ", in time: " : ": ") + state_of(stream, settings));
+    paper.row("", std::string(stream.stream.chart ? "chart " : "comparison ") +
+                      name_of(settings, stream.stream) + ": " + state_of(stream, settings));
   }
 }
 
