@@ -1,6 +1,6 @@
 #include "daemon/plan/plan_text.hpp"
 
-#include <algorithm>
+#include <map>
 
 #include <fmt/format.h>
 
@@ -82,11 +82,17 @@ std::string chart_name(const Settings& settings, ChartIndex chart) {
   return name_of(settings, {chart, std::nullopt});
 }
 
-/// What is not known, and how to give it.
-std::string unknown_words(std::int64_t seen, const char* of_what, const std::string& give) {
-  const std::string why =
-      seen == 0 ? std::string("nothing seen yet") : counted(seen, "reading", of_what) + " seen";
-  return "sd not known (" + why + "): give --sd " + give + "=SD";
+/// Of charts whose sd is not known: those that one --sd is for together.
+void show_unknown(Paper& paper, const Plan& plan, const Settings& settings, const ChartLaw& law) {
+  std::map<std::string, std::string> names;
+  for (const ChartIndex index : law.charts) {
+    if (plan.charts[index.value].sd.source != Source::unknown) continue;
+    const ChartSettings& chart = settings.of(index);
+    std::string& list = names[settings.of(chart.analyzer).id + "/" + settings.of(chart.measurand).id];
+    list += (list.empty() ? "" : ", ") + chart_name(settings, index);
+  }
+  for (const auto& [give, list] : names)
+    paper.row("  for", list + ": sd not known, too few readings seen; give --sd " + give + "=SD");
 }
 
 void show_chart(Paper& paper, const Plan& plan, const Settings& settings, ChartIndex index) {
@@ -95,15 +101,11 @@ void show_chart(Paper& paper, const Plan& plan, const Settings& settings, ChartI
   const SeenChart& seen = plan.seen.charts[index.value];
   const Measurand& measurand = settings.of(chart.measurand);
   std::string text = chart_name(settings, index) + ": ";
-  if (planned.sd.source == Source::unknown) {
-    text += unknown_words(seen.readings, "readings", settings.of(chart.analyzer).id + "/" + measurand.id);
-  } else {
-    text += "sd " + in_unit(planned.sd.value, measurand) + source_words(planned.sd);
-    if (planned.sd.source == Source::seen) text += fmt::format(", seen in {} readings", seen.readings);
-    if (const auto& step = planned.allowable; step && step->half)
-      text += fmt::format("; the allowable {} is {} sd: half noticed in {}", significant(*step->size, 3),
-                          significant(step->in_sds, 3), span_words(step->half->value, chart.every));
-  }
+  text += "sd " + in_unit(planned.sd.value, measurand) + source_words(planned.sd);
+  if (planned.sd.source == Source::seen) text += fmt::format(", seen in {} readings", seen.readings);
+  if (const auto& step = planned.allowable; step && step->half)
+    text += fmt::format("; the allowable {} is {} sd: half noticed in {}", significant(*step->size, 3),
+                        significant(step->in_sds, 3), span_words(step->half->value, chart.every));
   paper.row("  for", text);
   for (const std::string& warning : seen.warnings)
     if (warning == "heavy_tails" || warning == "serial_correlation")
@@ -122,7 +124,9 @@ void show_law(Paper& paper, const Plan& plan, const Settings& settings, const Ch
   show_table_head(paper, "readings");
   for (const StepWaits& step : law.steps)
     show_step(paper, significant(step.in_sds, 3) + " sd", step, chart.every);
-  for (const ChartIndex index : law.charts) show_chart(paper, plan, settings, index);
+  for (const ChartIndex index : law.charts)
+    if (plan.charts[index.value].sd.source != Source::unknown) show_chart(paper, plan, settings, index);
+  show_unknown(paper, plan, settings, law);
 }
 
 void show_proof(Paper& paper, const ProofPlanned& proof, const ComparisonSettings& comparison,
