@@ -16,9 +16,7 @@ namespace agreed::settings_file {
 struct Draft {
   Config config;
   Settings settings;
-  std::vector<std::optional<double>> chart_run_lengths;  ///< own ones, as settings.charts
   std::vector<std::optional<Section>> chart_methods;  ///< as settings.charts: where a classical one says so
-  std::vector<std::optional<double>> comparison_run_lengths;  ///< likewise
 };
 
 // In this order.

@@ -7,21 +7,13 @@
 
 #include "config/parts.hpp"
 #include "config/value_text.hpp"
-#include "core/base/alarm_budget.hpp"
+#include "core/base/budget_entries.hpp"
 #include "core/chart/classical/expected_run_length.hpp"
 
 namespace agreed::settings_file {
 namespace {
 
 constexpr double kUselessRunLength = 20;  // no limit that means anything has so short a run length
-
-template <class Item>
-std::vector<BudgetEntry> entries_of(const std::vector<Item>& items,
-                                    const std::vector<std::optional<double>>& own) {
-  std::vector<BudgetEntry> entries;
-  for (std::size_t i = 0; i < items.size(); ++i) entries.push_back({items[i].every, own.at(i)});
-  return entries;
-}
 
 /// Charts of which the same was chosen have the same run length; where centre and sigma lie does not matter.
 bool same_run_length(const ChartSettings& a, const ChartSettings& b) {
@@ -45,14 +37,6 @@ void find_run_lengths_of_limits(std::vector<ChartSettings>& charts) {
                              ? known->expected
                              : classical::expected_run_length(charts[i].classical, charts[i].baseline);
   }
-}
-
-std::vector<BudgetEntry> chart_entries(const Draft& draft) {
-  std::vector<BudgetEntry> entries = entries_of(draft.settings.charts, draft.chart_run_lengths);
-  for (std::size_t i = 0; i < entries.size(); ++i)
-    if (const ChartSettings& chart = draft.settings.charts[i]; chart.expected.readings > 0)
-      entries[i].run_length_of_limits = chart.expected.readings;
-  return entries;
 }
 
 std::string about(double value) {
@@ -93,30 +77,6 @@ void judge_all_limits(const Draft& draft) {
   }
 }
 
-std::vector<BudgetEntry> comparison_entries(const Draft& draft) {
-  auto entries = entries_of(draft.settings.comparisons, draft.comparison_run_lengths);
-  for (std::size_t i = 0; i < entries.size(); ++i) {
-    const ComparisonSettings& comparison = draft.settings.comparisons[i];
-    entries[i].tests_outliers = comparison.set_outliers_aside;
-    // A bare lambda says nothing of the size of the errors, so scatter cannot be held against it.
-    entries[i].tests_scatter = comparison.error_ratio.source != ErrorSource::given_lambda;
-  }
-  return entries;
-}
-
-void put_into(Settings& settings, const BudgetShares& shares) {
-  settings.alarm_budget = shares.budget;
-  for (std::size_t i = 0; i < settings.charts.size(); ++i) {
-    settings.charts[i].level_run_length = shares.charts[i].level;
-    settings.charts[i].precision_run_length = shares.charts[i].precision;
-  }
-  for (std::size_t i = 0; i < settings.comparisons.size(); ++i) {
-    settings.comparisons[i].warning_run_length = shares.comparisons[i].warning;
-    settings.comparisons[i].outlier_run_length = shares.comparisons[i].outlier;
-    settings.comparisons[i].scatter_run_length = shares.comparisons[i].scatter;
-  }
-}
-
 struct Shortest {
   double run_length = std::numeric_limits<double>::infinity();
   std::string whose;
@@ -133,13 +93,13 @@ Shortest shortest_share(const Draft& draft) {
   const Settings& all = draft.settings;
   for (std::size_t i = 0; i < all.charts.size(); ++i) {
     const ChartSettings& chart = all.charts[i];
-    if (!draft.chart_run_lengths[i] && chart.method != ChartMethod::classical)
+    if (!chart.own_run_length && chart.method != ChartMethod::classical)
       shortest.offer(chart.level_run_length, "chart " + all.of(chart.analyzer).id + '/' +
                                                  all.of(chart.standard).id + '/' +
                                                  all.of(chart.measurand).id);
   }
   for (std::size_t i = 0; i < all.comparisons.size(); ++i)
-    if (!draft.comparison_run_lengths[i])
+    if (!all.comparisons[i].own_run_length)
       shortest.offer(all.comparisons[i].warning_run_length, "comparison " + all.comparisons[i].id);
   return shortest;
 }
@@ -183,8 +143,9 @@ void check_scatter(const Section& comparison, const ComparisonSettings& settings
 void spend_alarm_budget(const Section& top, bool judge, Draft& draft) {
   const double allowed = top.number("false_alerts_per_year").value_or(AlarmBudget{}.allowed_per_year);
   if (judge) find_run_lengths_of_limits(draft.settings.charts);
-  const BudgetShares shares = share_alarm_budget(allowed, chart_entries(draft), comparison_entries(draft));
-  put_into(draft.settings, shares);
+  const BudgetShares shares =
+      share_alarm_budget(allowed, chart_entries(draft.settings), comparison_entries(draft.settings));
+  apply_budget(shares, draft.settings);
   if (shares.overspent) {
     top.error("false_alerts_per_year",
               "found " + shown(allowed) + ", of which own in_control_run_length settings use up " +

@@ -158,8 +158,8 @@ void add_comparison(const Section& section, Draft& draft) {
     settings.y = *y;
     warn_of_gaps(section, settings, draft.settings);
   }
+  settings.own_run_length = section.number("in_control_run_length");
   draft.settings.comparisons.push_back(std::move(settings));
-  draft.comparison_run_lengths.push_back(section.number("in_control_run_length"));
 }
 
 }  // namespace

@@ -119,6 +119,7 @@ ChartSettings chart_from(const Section& standard, const ChartLayers& defaults) {
   chart.baseline = defaults.whole_number("baseline", chart.baseline);
   chart.split_memory = defaults.whole_number("split_memory", chart.split_memory);
   chart.clear_after = defaults.whole_number("clear_after", chart.clear_after);
+  chart.own_run_length = defaults.run_length();
   chart.overdue = standard.usable("every");
   chart.every = standard.duration("every").value_or(kEveryIfNotGiven);
   return chart;
@@ -126,15 +127,14 @@ ChartSettings chart_from(const Section& standard, const ChartLayers& defaults) {
 
 struct ChartDraft {
   ChartSettings chart;
-  std::optional<double> own_run_length;
   std::optional<Section> method;  ///< where a classical one says so
 };
 
 ChartDraft draft_of(const Section& standard, const ChartLayers& layers) {
-  ChartDraft draft{chart_from(standard, layers), layers.run_length(), std::nullopt};
+  ChartDraft draft{chart_from(standard, layers), std::nullopt};
   if (draft.chart.method == ChartMethod::classical) {
     draft.chart.classical = read_classical(layers);
-    draft.own_run_length.reset();
+    draft.chart.own_run_length.reset();
     draft.method = layers.from("method");
   }
   return draft;
@@ -157,7 +157,7 @@ void add_charts(const Section& top, const Section& standard, const Section& gene
       chart.measurand = index_of<MeasurandIndex>(settings.measurands, measurand.id()).value();
       chart.smallest_shift = measurand.number("smallest_shift");
       chart.lots = lots_for(lots, measurand.id());
-      charts.push_back({std::move(chart), draft.own_run_length, draft.method});
+      charts.push_back({std::move(chart), draft.method});
     }
   }
 }
@@ -184,7 +184,6 @@ void read_standards(const Section& top, Draft& draft) {
   });
   for (ChartDraft& chart : charts) {
     draft.settings.charts.push_back(std::move(chart.chart));
-    draft.chart_run_lengths.push_back(chart.own_run_length);
     draft.chart_methods.push_back(std::move(chart.method));
   }
 }

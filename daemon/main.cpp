@@ -7,6 +7,7 @@
 #include "daemon/cli/command_line.hpp"
 #include "daemon/cli/example.hpp"
 #include "daemon/cli/journal_commands.hpp"
+#include "daemon/cli/plan.hpp"
 #include "daemon/cli/replay.hpp"
 #include "daemon/cli/report.hpp"
 #include "daemon/cli/resend.hpp"
@@ -33,6 +34,7 @@ struct Doer {
   int operator()(const agreed::ResendCommand& command) const { return agreed::resend_command(command); }
   int operator()(const agreed::StatusCommand& command) const { return agreed::status_command(command); }
   int operator()(const agreed::ReplayCommand& command) const { return agreed::replay_command(command); }
+  int operator()(const agreed::PlanCommand& command) const { return agreed::plan_command(command); }
   int operator()(const agreed::Say& say) const {
     std::fputs(say.text.c_str(), say.code == agreed::kDone ? stdout : stderr);
     return say.code;

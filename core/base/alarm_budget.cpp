@@ -10,18 +10,10 @@ namespace agreed {
 namespace {
 
 constexpr Duration kYear = std::chrono::hours(24 * 365);
-// What a test of a comparison may use up, as a part of the comparison's share.
-constexpr double kWarningPart = 0.5, kOutlierPart = 0.25, kScatterPart = 0.25;
-constexpr double kScorePart = 0.5;  // of a chart's share, for each of its two scores
 
 void require_positive(double value, const char* what) {
   if (!(std::isfinite(value) && value > 0))
     throw std::invalid_argument(std::string("share_alarm_budget: ") + what + " must be positive and finite");
-}
-
-double readings_per_year(const BudgetEntry& entry) {
-  require_positive(static_cast<double>(entry.every.count()), "every");
-  return static_cast<double>(kYear.count()) / static_cast<double>(entry.every.count());
 }
 
 /// False alerts a year of everything that has a run length of its own. `part` is that of the test whose run
@@ -29,7 +21,7 @@ double readings_per_year(const BudgetEntry& entry) {
 double taken(const std::vector<BudgetEntry>& entries, double part) {
   double sum = 0;
   for (const auto& entry : entries) {
-    const double per_year = readings_per_year(entry);
+    const double per_year = readings_per_year(entry.every);
     if (!entry.run_length) continue;
     require_positive(*entry.run_length, "a run length");
     sum += per_year / *entry.run_length / part;
@@ -45,24 +37,24 @@ std::size_t without_own(const std::vector<BudgetEntry>& entries) {
 
 /// The run length of the test that gets `part` of the share.
 double from_share(const BudgetEntry& entry, double share, double part) {
-  return share > 0 ? readings_per_year(entry) / (share * part) : 0.0;
+  return share > 0 ? readings_per_year(entry.every) / (share * part) : 0.0;
 }
 
 ChartRunLengths chart_run_lengths(const BudgetEntry& chart, double share) {
-  const double each = chart.run_length.value_or(from_share(chart, share, kScorePart));
+  const double each = chart.run_length.value_or(from_share(chart, share, score_part));
   return {each, each};
 }
 
 ComparisonRunLengths comparison_run_lengths(const BudgetEntry& comparison, double share) {
   if (comparison.run_length)
     return {*comparison.run_length, 2 * *comparison.run_length, 2 * *comparison.run_length};
-  return {from_share(comparison, share, kWarningPart), from_share(comparison, share, kOutlierPart),
-          from_share(comparison, share, kScatterPart)};
+  return {from_share(comparison, share, warning_part), from_share(comparison, share, outlier_part),
+          from_share(comparison, share, scatter_part)};
 }
 
 void expect(AlarmBudget& budget, AlertKind kind, const BudgetEntry& entry, double run_length) {
   if (!(run_length > 0)) return;
-  const double per_year = readings_per_year(entry) / run_length;
+  const double per_year = readings_per_year(entry.every) / run_length;
   budget.by_kind[to_string(kind)] += per_year;
   budget.expected_per_year += per_year;
 }
@@ -89,12 +81,17 @@ void add_expectations(BudgetShares& shares, const std::vector<BudgetEntry>& char
 
 }  // namespace
 
+double readings_per_year(Duration every) {
+  require_positive(static_cast<double>(every.count()), "every");
+  return static_cast<double>(kYear.count()) / static_cast<double>(every.count());
+}
+
 BudgetShares share_alarm_budget(double false_alerts_per_year, const std::vector<BudgetEntry>& charts,
                                 const std::vector<BudgetEntry>& comparisons) {
   require_positive(false_alerts_per_year, "the allowance");
   BudgetShares shares;
   shares.budget.allowed_per_year = false_alerts_per_year;
-  shares.taken_per_year = taken(charts, kScorePart) + taken(comparisons, kWarningPart);
+  shares.taken_per_year = taken(charts, score_part) + taken(comparisons, warning_part);
   const double left = false_alerts_per_year - shares.taken_per_year;
   const std::size_t sharing = without_own(charts) + without_own(comparisons);
   // Own run lengths worked out from the very allowance must not fail for a last digit.

@@ -10,6 +10,13 @@
 
 namespace agreed {
 
+/// Readings (pairs) a year, one `every` > 0; else std::invalid_argument.
+[[nodiscard]] double readings_per_year(Duration every);
+
+/// What a test of a comparison may use up, as a part of the comparison's share; of a chart's share, each of
+/// its two scores.
+inline constexpr double warning_part = 0.5, outlier_part = 0.25, scatter_part = 0.25, score_part = 0.5;
+
 /// A chart or a comparison as the budget sees it.
 struct BudgetEntry {
   Duration every{};                  ///< mean time between its readings (pairs), > 0

@@ -56,6 +56,9 @@ double beta_quantile(double p, double a, double b) {
 double gamma_half_step(double x) {
   return 1 / bm::tgamma_delta_ratio(x, 0.5, InDouble());
 }
+double log_gamma(double x) {
+  return bm::lgamma(x, InDouble());
+}
 double trigamma(double x) {
   return bm::trigamma(x, InDouble());
 }

@@ -24,6 +24,8 @@ namespace agreed {
 [[nodiscard]] double beta_quantile(double p, double a, double b);
 /// Gamma(x + 1/2) / Gamma(x), x > 0.
 [[nodiscard]] double gamma_half_step(double x);
+/// ln Gamma(x), x > 0.
+[[nodiscard]] double log_gamma(double x);
 /// Second derivative of ln Gamma, x > 0.
 [[nodiscard]] double trigamma(double x);
 

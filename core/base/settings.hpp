@@ -101,8 +101,9 @@ struct ChartSettings {
   int baseline = 30;       ///< readings until `learning` ends
   int split_memory = 400;  ///< newest readings that may be the start of a change
   int clear_after = 3;
-  double level_run_length = 0;      ///< in-control run length of the level score, readings
-  double precision_run_length = 0;  ///< the same of the precision score
+  std::optional<double> own_run_length;  ///< as configured, of each score; none: its share decides
+  double level_run_length = 0;           ///< in-control run length of the level score, readings
+  double precision_run_length = 0;       ///< the same of the precision score
   std::optional<double> smallest_shift;
   Duration every{};       ///< for the alarm budget
   bool overdue = false;   ///< `every` was given, so a missing reading may be called overdue
@@ -150,6 +151,7 @@ struct ComparisonSettings {
   bool overdue = false;
   bool set_outliers_aside = true;
   int split_memory = 400;
+  std::optional<double> own_run_length;  ///< as configured, of the warning; none: its share decides
   double warning_run_length = 0;  ///< of the pair chart's warning, pairs; critical is ten times as long
   double outlier_run_length = 0;  ///< pairs between false outliers
   double scatter_run_length = 0;  ///< pairs between false `sample_scatter`

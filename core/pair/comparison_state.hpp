@@ -21,9 +21,6 @@
 
 namespace agreed {
 
-/// In-control run length of the pair chart's `critical` over that of its `warning`.
-inline constexpr double critical_factor = 10;
-
 /// What one decision level says at the newest pair.
 struct LevelNow {
   double level = 0;

@@ -22,6 +22,9 @@ namespace agreed {
   return comparison.relation ? Score::pairs_established_line : Score::pairs;
 }
 
+/// In-control run length of the pair chart's `critical` over that of its `warning`.
+inline constexpr double critical_factor = 10;
+
 /// Limits of the score, in normal standard deviations.
 struct DriftLimits {
   double warning = 0, critical = 0;

@@ -7,6 +7,7 @@
 #include <CLI/CLI.hpp>
 
 #include "config/nearest.hpp"
+#include "config/value_text.hpp"
 #include "daemon/cli/command_help.hpp"
 #include "daemon/cli/time_argument.hpp"
 #include "daemon/exit_codes.hpp"
@@ -299,6 +300,101 @@ void add_replay(CLI::App& app, ReplayCommand& replay) {
       "  agreed replay /etc/agreed/agreed.yaml --from /srv/agreed/ --json");
 }
 
+/// "line1/protein=0.02" or "protein=0.02".
+GivenSd given_sd(const std::string& text) {
+  GivenSd given;
+  const std::size_t equals = std::min(text.find('='), text.size()), slash = text.substr(0, equals).find('/');
+  const bool of_one = slash != std::string::npos;
+  if (of_one) given.analyzer = text.substr(0, slash);
+  const std::size_t name = of_one ? slash + 1 : 0;
+  given.measurand = text.substr(name, equals - name);
+  given.sd = settings_file::number_of(text.substr(std::min(equals + 1, text.size()))).value_or(0);
+  if (!(given.sd > 0) || given.measurand.empty() || slash == 0)
+    throw CLI::ValidationError(
+        "--sd", "expected MEASURAND=SD or ANALYZER/MEASURAND=SD with an SD above 0, found '" + text + "'");
+  return given;
+}
+
+/// An option that takes a number above 0.
+CLI::Option* add_positive(CLI::App& sub, const char* name, const char* what, std::optional<double>& value) {
+  const auto read = [name, &value](const std::string& text) {
+    value = settings_file::number_of(text);
+    if (!value || !(*value > 0))
+      throw CLI::ValidationError(name, "expected a number above 0, found '" + text + "'");
+  };
+  return sub.add_option_function<std::string>(name, read, what);
+}
+
+/// What people wish that a configuration did.
+void add_wishes(CLI::App& sub, PlanCommand& plan) {
+  add_positive(sub, "--false-alerts-per-year", "a wish: no more false alerts a year than this",
+               plan.false_alerts_per_year)
+      ->type_name("N");
+  CLI::Option* const notice =
+      add_positive(sub, "--notice",
+                   "a wish: a shift of one analyzer by this, in the unit of the measurand ...", plan.notice)
+          ->type_name("SIZE");
+  const auto read_within = [&plan](const std::string& text) {
+    plan.within = settings_file::duration_of(text);
+    if (!plan.within || *plan.within <= Duration::zero())
+      throw CLI::ValidationError("--within",
+                                 "expected a time such as 24h, 30min or 7d, found '" + text + "'");
+  };
+  CLI::Option* const within = sub.add_option_function<std::string>(
+                                     "--within", read_within, "... is noticed within this time, as 24h or 7d")
+                                  ->type_name("DURATION");
+  CLI::Option* const measurand =
+      sub.add_option("--measurand", plan.measurand, "... of this measurand; needed if there are several")
+          ->type_name("MEASURAND");
+  notice->needs(within);
+  within->needs(notice);
+  measurand->needs(notice);
+}
+
+void add_trials(CLI::App& sub, PlanCommand& plan) {
+  constexpr long long kFewest = 100, kMost = 100'000;
+  const auto read = [&plan](const std::string& text) {
+    const auto trials = settings_file::whole_number_of(text);
+    if (!trials || *trials < kFewest || *trials > kMost)
+      throw CLI::ValidationError("--trials", "expected a whole number from " + std::to_string(kFewest) +
+                                                 " to " + std::to_string(kMost) + ", found '" + text + "'");
+    plan.trials = static_cast<int>(*trials);
+  };
+  sub.add_option_function<std::string>(
+         "--trials", read, "simulated for each figure, 1000 without it; four times as many halve its error")
+      ->type_name("N");
+}
+
+void add_plan(CLI::App& app, PlanCommand& plan) {
+  CLI::App& sub =
+      add_command(app, "plan",
+                  "what this configuration will do: its false alerts, how soon it notices a shift, how "
+                  "many pairs show agreement; and which setting meets a wish",
+                  plan.config);
+  sub.add_option_function<std::vector<std::string>>(
+         "--sd",
+         [&plan](const std::vector<std::string>& texts) {
+           for (const std::string& text : texts) plan.sds.push_back(given_sd(text));
+         },
+         "the sd of one reading, of a measurand on one analyzer (line1/protein=0.02) or on every one "
+         "(protein=0.02); instead of what the journal has seen")
+      ->type_name("NAME=SD")
+      ->allow_extra_args(false);
+  add_wishes(sub, plan);
+  add_trials(sub, plan);
+  add_json(sub, plan.json);
+  sub.footer(
+      "Nothing is written; the service may run, and there need be no journal yet. The same input gives the "
+      "same\n"
+      "figures; those that are simulated come with their error.\n"
+      "Exit status: 0 done and every wish is met, 1 a wish is not met or nothing is configured to plan,\n"
+      "2 wrong use or configuration, 3 the journal could not be read.\n"
+      "Example:\n  agreed plan /etc/agreed/agreed.yaml\n"
+      "  agreed plan /etc/agreed/agreed.yaml --sd protein=0.02 --sd line2/protein=0.025\n"
+      "  agreed plan /etc/agreed/agreed.yaml --false-alerts-per-year 2 --notice 0.1 --within 24h "
+      "--measurand protein");
+}
+
 /// Why a command line with an option that its command does not have was refused; CLI11 would rather speak of
 /// what is missing.
 std::optional<std::string> unknown_option(const CLI::App& command, std::span<const std::string> arguments) {
@@ -371,6 +467,8 @@ Command read_or_tell(std::span<const std::string> arguments, std::vector<Command
   add_status(app, status);
   ReplayCommand replay;
   add_replay(app, replay);
+  PlanCommand plan;
+  add_plan(app, plan);
 
   if (help != nullptr) {
     help->push_back(help_of(app));
@@ -402,6 +500,7 @@ Command read_or_tell(std::span<const std::string> arguments, std::vector<Command
   if (app.got_subcommand("resend")) return resend;
   if (app.got_subcommand("status")) return status;
   if (app.got_subcommand("replay")) return replay;
+  if (app.got_subcommand("plan")) return plan;
   return example;
 }
 

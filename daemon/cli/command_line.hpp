@@ -74,6 +74,22 @@ struct ReplayCommand {
   std::optional<Period> between;  ///< alerts opened from `first` on and before `last`
   bool json = false;
 };
+/// "NAME=SD": the sd of one reading of a measurand, on one analyzer or on every one.
+struct GivenSd {
+  std::string analyzer;  ///< empty: every one
+  std::string measurand;
+  double sd = 0;  ///< in the measurand's unit, > 0
+};
+struct PlanCommand {
+  std::filesystem::path config;
+  std::vector<GivenSd> sds;
+  std::optional<double> false_alerts_per_year;  ///< a wish, > 0
+  std::optional<double> notice;    ///< a wish: a shift of this size, > 0, in the measurand's unit
+  std::optional<Duration> within;  ///< ... is noticed within this, > 0
+  std::string measurand;           ///< ... of this; empty: the only one there is
+  int trials = 1'000;              ///< simulated for each figure
+  bool json = false;
+};
 /// Nothing to do but print `text` (on standard error if `code` is not 0) and end.
 struct Say {
   int code = 0;
@@ -82,7 +98,7 @@ struct Say {
 
 using Command = std::variant<RunCommand, CheckCommand, ExampleCommand, VerifyCommand, BackupCommand,
                              RestoreCommand, ReportCommand, TokenCommand, SendTestCommand, ResendCommand,
-                             StatusCommand, ReplayCommand, Say>;
+                             StatusCommand, ReplayCommand, PlanCommand, Say>;
 
 /// `arguments` without the program's name.
 [[nodiscard]] Command parse_command_line(std::span<const std::string> arguments);

@@ -81,6 +81,7 @@ TEST_CASE("the alarm budget counts a classical chart by what its limits cost, th
   const Settings& settings = *result.config->settings;
   CHECK(settings.charts[1].expected.readings == Approx(105.33).epsilon(1e-4));
   CHECK(settings.charts[0].level_run_length == Approx(1095 / (6.0 / 4 / 2)));
+  CHECK_FALSE(settings.charts[1].own_run_length);
   CHECK(settings.alarm_budget.expected_per_year == Approx(2 * 6.0 / 4 + 2 * 1095 / 105.33).epsilon(1e-4));
 }
 

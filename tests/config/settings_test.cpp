@@ -83,6 +83,9 @@ TEST_CASE("a check standard's own chart settings win over those for all") {
   CHECK(own.baseline == 40);
   CHECK(own.clear_after == 4);
   CHECK(own.level_run_length == Approx(7300));
+  REQUIRE(own.own_run_length);
+  CHECK(*own.own_run_length == Approx(7300));
+  CHECK_FALSE(general.own_run_length);
   CHECK(general.smallest_shift.value() == Approx(0.05));
   CHECK_FALSE(own.smallest_shift.has_value());
 }
@@ -137,6 +140,14 @@ TEST_CASE("run lengths follow from the shares that own ones leave") {
   CHECK(settings.comparisons[0].outlier_run_length == Approx(4380 / (5.7 / 5 / 4)).epsilon(1e-12));
   CHECK(settings.comparisons[0].scatter_run_length == Approx(4380 / (5.7 / 5 / 4)).epsilon(1e-12));
   CHECK(settings.alarm_budget.expected_per_year == Approx(6).epsilon(1e-12));
+  CHECK_FALSE(settings.comparisons[0].own_run_length);
+  std::string text = kMill;
+  const std::string comparison = "y: line2";
+  text.replace(text.find(comparison), comparison.size(), comparison + ", in_control_run_length: 9000");
+  const Settings with_own = *parsed(text).settings;
+  REQUIRE(with_own.comparisons[0].own_run_length);
+  CHECK(*with_own.comparisons[0].own_run_length == Approx(9000));
+  CHECK(with_own.comparisons[0].warning_run_length == Approx(9000));
 }
 
 TEST_CASE("windows: 90 days also when only pairs is given, none when none is asked for") {

@@ -3,9 +3,9 @@
 #include <algorithm>
 #include <cmath>
 
+#include "core/base/random_normal.hpp"
 #include "core/chart/classical/constants.hpp"
 #include "core/chart/classical/level_tests.hpp"
-#include "core/chart/classical/random_normal.hpp"
 #include "core/chart/classical/run_length.hpp"
 #include "core/chart/moving_range.hpp"
 

@@ -25,7 +25,7 @@ bool holds(const std::string& text, const std::string& part) {
 }
 
 const std::vector<std::string> kCommands = {"run",   "check",     "example", "verify", "backup", "restore",
-                                            "token", "send-test", "resend",  "status", "replay"};
+                                            "token", "send-test", "resend",  "status", "replay", "plan"};
 
 }  // namespace
 

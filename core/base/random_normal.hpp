@@ -5,11 +5,15 @@
 #include <cmath>
 #include <cstdint>
 
-namespace agreed::classical {
+namespace agreed {
 
 class RandomNormal {
  public:
   explicit RandomNormal(std::uint64_t seed) : state_(seed) {}
+
+  /// The `trial`-th of the streams that belong to a seed: a trial draws the same numbers however many the
+  /// trials before it took.
+  RandomNormal(std::uint64_t seed, std::uint64_t trial) : state_(mixed(mixed(seed) + trial)) {}
 
   /// Uniform on (0, 1).
   double uniform() { return (static_cast<double>(bits() >> 11) + 0.5) * 0x1p-53; }
@@ -45,12 +49,15 @@ class RandomNormal {
   }
 
  private:
-  std::uint64_t bits() {
-    state_ += 0x9e3779b97f4a7c15U;
-    std::uint64_t z = state_;
+  static std::uint64_t mixed(std::uint64_t z) {
     z = (z ^ (z >> 30)) * 0xbf58476d1ce4e5b9U;
     z = (z ^ (z >> 27)) * 0x94d049bb133111ebU;
     return z ^ (z >> 31);
+  }
+
+  std::uint64_t bits() {
+    state_ += 0x9e3779b97f4a7c15U;
+    return mixed(state_);
   }
 
   std::uint64_t state_;
@@ -58,4 +65,4 @@ class RandomNormal {
   double spare_ = 0;
 };
 
-}  // namespace agreed::classical
+}  // namespace agreed
