@@ -80,7 +80,7 @@ class Planner {
       const auto size = allowable_of(settings_, settings_.of(chart), plan_.seen.charts[i]);
       if (known && size && *size > 0)
         planned.allowable = StepWaits{.in_sds = *size / planned.sd.value, .size = size, .allowable = true};
-      plan_.charts.push_back(std::move(planned));
+      plan_.charts.push_back(planned);
     }
   }
 

@@ -14,6 +14,7 @@ namespace {
 template <class Item>
 std::vector<std::string> ids(const std::vector<Item>& items) {
   std::vector<std::string> names;
+  names.reserve(items.size());
   for (const Item& item : items) names.push_back(item.id);
   return names;
 }

@@ -36,6 +36,7 @@ std::vector<double> true_values(const std::vector<PairView>& pairs, double relia
   double mean = 0;
   for (const PairView& pair : pairs) mean += pair.x / static_cast<double>(pairs.size());
   std::vector<double> values;
+  values.reserve(pairs.size());
   for (const PairView& pair : pairs) values.push_back(mean + std::sqrt(reliability) * (pair.x - mean));
   return values;
 }
