@@ -3,6 +3,8 @@
 #include <exception>
 #include <utility>
 
+#include "daemon/thread_name.hpp"
+
 namespace agreed {
 
 Reloader::Reloader(Reload reload, std::function<void()> over)
@@ -29,6 +31,7 @@ std::optional<std::string> Reloader::failure() const {
 }
 
 void Reloader::run(const std::stop_token& stop) {
+  name_this_thread("reload");
   while (true) {
     {
       std::unique_lock lock(mutex_);

@@ -9,6 +9,7 @@
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/sha256.hpp"
+#include "daemon/thread_name.hpp"
 
 namespace agreed {
 namespace {
@@ -111,6 +112,7 @@ void Engine::each_portion(AnalyzerIndex analyzer, const std::function<void(Taken
 }
 
 void Engine::run() noexcept {
+  name_this_thread("engine");
   Work work{.pieces = {}, .tasks = {}, .tick = true, .stop = false};
   const auto turned = [this] {
     pulse_.rest();
@@ -155,7 +157,7 @@ void Engine::undo(const Work& work, const std::string& why) {
   for (const QueuedPiece& queued : work.pieces) {
     refused_.insert(file_of(queued));
     queue_.still_waits(queued.piece.file.analyzer);
-    queue_.refuse_waiting(queued.piece.file.analyzer, why);
+    queue_.refuse_round(queued.piece.file.analyzer, queued.piece.round, why);
   }
   folded_ = false;
   book_.reset();  // what it says was not committed; the snapshot keeps what was

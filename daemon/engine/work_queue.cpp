@@ -37,6 +37,12 @@ Instant oldest_of(const FilePiece& piece) {
   return piece.rows.empty() ? Instant{Duration::min()} : oldest;
 }
 
+std::future<PieceAnswer> refused(const std::exception_ptr& why) {
+  std::promise<PieceAnswer> answer;
+  answer.set_exception(why);
+  return answer.get_future();
+}
+
 }  // namespace
 
 WorkQueue::WorkQueue(std::size_t analyzers) : lanes_(analyzers) {}
@@ -48,6 +54,7 @@ std::future<PieceAnswer> WorkQueue::put(FilePiece piece) {
     return stop_ || lane.waiting.empty() || (lane.rows < kLaneRows && lane.waiting.size() < kLanePieces);
   });
   if (stop_) throw std::runtime_error("the service is stopping");
+  if (piece.round != 0 && piece.round == lane.refused_round) return refused(lane.refused_why);
   lane.rows += piece.rows.size();
   const Instant oldest = oldest_of(piece);
   lane.waiting.push_back({std::move(piece), oldest, {}});
@@ -85,16 +92,18 @@ void WorkQueue::still_waits(AnalyzerIndex analyzer) {
   inbox.pending = std::max(inbox.pending, decltype(inbox.pending){1});
 }
 
-void WorkQueue::refuse_waiting(AnalyzerIndex analyzer, const std::string& why) {
+void WorkQueue::refuse_round(AnalyzerIndex analyzer, std::uint64_t round, const std::string& why) {
+  const auto error = std::make_exception_ptr(std::runtime_error(why));
   std::deque<QueuedPiece> refused;
   {
     const std::lock_guard lock(mutex_);
     Lane& lane = lanes_.at(analyzer.value);
     refused.swap(lane.waiting);
     lane.rows = 0;
+    lane.refused_round = round;
+    lane.refused_why = error;
     has_room_.notify_all();
   }
-  const auto error = std::make_exception_ptr(std::runtime_error(why));
   for (QueuedPiece& queued : refused) queued.answer.set_exception(error);
 }
 

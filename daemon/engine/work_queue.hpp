@@ -2,7 +2,9 @@
 // What waits for the engine: pieces of files, by analyzer, and other tasks. Bounded; filled by many threads,
 // emptied by one.
 #include <condition_variable>
+#include <cstdint>
 #include <deque>
+#include <exception>
 #include <functional>
 #include <future>
 #include <memory>
@@ -59,8 +61,9 @@ class WorkQueue {
   /// What was taken of the analyzer could not be committed: at least one file of it waits, until its next
   /// report.
   void still_waits(AnalyzerIndex analyzer);
-  /// What waits of the analyzer fails too: nothing may be committed before what came earlier.
-  void refuse_waiting(AnalyzerIndex analyzer, const std::string& why);
+  /// What waits of the analyzer fails too, and what is still to come of that round of its watcher: nothing may be
+  /// committed before what came earlier.
+  void refuse_round(AnalyzerIndex analyzer, std::uint64_t round, const std::string& why);
   /// Refuses whatever comes from now on, and what waits.
   void stop();
 
@@ -74,6 +77,8 @@ class WorkQueue {
   struct Lane {
     std::deque<QueuedPiece> waiting;
     std::size_t rows = 0;
+    std::uint64_t refused_round = 0;
+    std::exception_ptr refused_why;
     InboxState inbox;
     std::shared_ptr<const Pulse> pulse;
     Duration rescan{};

@@ -16,6 +16,7 @@
 #include "daemon/descriptor.hpp"
 #include "daemon/http/connection.hpp"
 #include "daemon/http/exchange.hpp"
+#include "daemon/thread_name.hpp"
 
 namespace agreed {
 namespace {
@@ -64,6 +65,7 @@ class HttpServer::Workers {
 
  private:
   void work() noexcept {
+    name_this_thread("http");
     try {
       Responder responder(handler_, tell_, std::chrono::floor<std::chrono::seconds>(limits_.idle),
                           limits_.requests_per_connection);

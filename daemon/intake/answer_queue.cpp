@@ -16,6 +16,7 @@ bool AnswerQueue::submit(const std::shared_ptr<TakenFile>& file, FilePiece&& pie
   if (file->failed) return false;
   if (stop.stop_requested()) throw Stopping{};
   Waiting waiting{file, {}, rows, piece.last};
+  piece.round = round_;
   pulse_.rest();
   try {
     waiting.answer = sink_.submit(std::move(piece));
@@ -33,6 +34,7 @@ bool AnswerQueue::submit(const std::shared_ptr<TakenFile>& file, FilePiece&& pie
 
 void AnswerQueue::drain(const std::stop_token& stop) {
   while (!waiting_.empty()) take_answer(stop);
+  ++round_;
 }
 
 void AnswerQueue::take_answer(const std::stop_token& stop) {

@@ -1,6 +1,7 @@
 #pragma once
 // Pieces handed to the engine whose answers have not come yet. Many small files wait together, so that they
 // share one commit; answers are taken in the order of the pieces.
+#include <cstdint>
 #include <deque>
 #include <exception>
 #include <functional>
@@ -68,6 +69,7 @@ class AnswerQueue {
   Settle settle_;
   std::deque<Waiting> waiting_;
   std::size_t rows_ = 0;
+  std::uint64_t round_ = 1;  ///< from one drain() to the next
 };
 
 }  // namespace agreed

@@ -1,13 +1,16 @@
 #include "daemon/intake/folder_watcher.hpp"
 
 #include <atomic>
+#include <string>
 #include <thread>
 
 #include "daemon/intake/watch_loop.hpp"
+#include "daemon/thread_name.hpp"
 
 namespace agreed {
 
 struct FolderWatcher::Impl {
+  std::string name;  // of the thread
   WatchLoop loop;
   std::atomic<bool> running = false;
   std::jthread thread;
@@ -15,7 +18,7 @@ struct FolderWatcher::Impl {
 
 FolderWatcher::FolderWatcher(const IntakeSettings& intake, const Settings& settings, AnalyzerIndex analyzer,
                              IntakeSink& sink, const WatcherLimits& limits)
-    : impl_(new Impl{{intake, settings, analyzer, sink, limits}, false, {}}) {}
+    : impl_(new Impl{"inbox " + settings.analyzers[analyzer.value].id, {intake, settings, analyzer, sink, limits}, false, {}}) {}
 
 FolderWatcher::~FolderWatcher() {
   stop();
@@ -29,6 +32,7 @@ void FolderWatcher::start() {
   if (impl_->thread.joinable()) return;
   impl_->running = true;
   impl_->thread = std::jthread([impl = impl_.get()](const std::stop_token& stop) {
+    name_this_thread(impl->name);
     impl->loop.run(stop);
     impl->running = false;
   });

@@ -8,6 +8,7 @@
 #include <thread>
 
 #include "daemon/clock.hpp"
+#include "daemon/thread_name.hpp"
 #include "daemon/webhook/retry_after.hpp"
 
 namespace agreed {
@@ -49,6 +50,7 @@ class WebhookSender::Lane {
 
  private:
   void run(const std::stop_token& stop) {
+    name_this_thread("send " + endpoint_.route);
     Duration trouble = options_.after_trouble;
     while (!stop.stop_requested()) {
       try {

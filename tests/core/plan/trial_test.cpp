@@ -8,7 +8,6 @@
 
 using namespace agreed;
 using namespace agreed::plan;
-using doctest::Approx;
 
 TEST_CASE("each trial draws the same numbers, however many the one before it took") {
   std::vector<double> little, much;

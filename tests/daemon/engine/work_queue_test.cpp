@@ -80,8 +80,21 @@ TEST_CASE("what waits behind a piece that failed fails too, of that analyzer onl
   WorkQueue queue(2);
   auto later = queue.put(piece(0, 2h));
   auto other = queue.put(piece(1, 3h));
-  queue.refuse_waiting({0}, "disk full");
+  queue.refuse_round({0}, 7, "disk full");
   CHECK_THROWS_WITH((void)later.get(), "disk full");
   CHECK(other.wait_for(0s) == std::future_status::timeout);
   CHECK(queue.take(1s).pieces.size() == 1);
+}
+
+TEST_CASE("what comes later in the round of a piece that failed fails too, the next round goes on") {
+  WorkQueue queue(2);
+  const auto put = [&queue](std::uint32_t analyzer, std::uint64_t round) {
+    FilePiece made = piece(analyzer, 2h);
+    made.round = round;
+    return queue.put(std::move(made));
+  };
+  queue.refuse_round({0}, 7, "disk full");
+  CHECK_THROWS_WITH((void)put(0, 7).get(), "disk full");
+  const auto other = put(1, 7), next = put(0, 8), alone = put(0, 0);
+  CHECK(queue.take(1s).pieces.size() == 3);
 }

@@ -375,8 +375,9 @@ TEST_CASE("an intervention told by an operator is stored, or its field at fault 
            {R"({"analyzer":"line1","kind":"noted","by":null})", "by"},
            {begin + R"("note":{"a":{"b":[]}}})", ""},
            {begin + "\"note\":\"\xff\"}", ""}}) {
-    CAPTURE(wrong);
-    const HttpAnswer answer = tell(wrong);
+    const std::string& told = wrong;
+    CAPTURE(told);
+    const HttpAnswer answer = tell(told);
     check_problem(answer, 400);
     CHECK(answer.body.find("Expected") != std::string::npos);
     CHECK(json::parse(answer.body).value("field", "") == field);
