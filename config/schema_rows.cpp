@@ -236,7 +236,8 @@ Rows chart_rows() {
           .within(4, 100),
       row("charts.run_rules[].near_centre", T::whole_number, "", "so many in a row within 1 sd")
           .within(4, 100),
-      row("charts.run_rules[].away_from_centre", T::whole_number, "", "so many in a row beyond 1 sd")
+      row("charts.run_rules[].away_from_centre", T::whole_number, "",
+          "so many in a row beyond 1 sd, on both sides")
           .within(2, 100),
   };
 }

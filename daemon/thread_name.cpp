@@ -1,9 +1,9 @@
 #include "daemon/thread_name.hpp"
 
-#include <pthread.h>
-
 #include <algorithm>
 #include <array>
+
+#include <pthread.h>
 
 namespace agreed {
 

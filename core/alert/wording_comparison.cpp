@@ -85,7 +85,7 @@ std::string line_words(const ComparisonAlert& pair) {
   std::string text;
   if (slope && intercept)
     text = " The fitted line" + fit_words(pair) + " is " + pair.y + " = " + pair.numbers.mean(*intercept) +
-           " + " + fixed(*slope, 4) + " x " + pair.x;
+           " + " + fixed(*slope, 4) + " \u00d7 " + pair.x;
   if (pairs) text += (text.empty() ? " It rests on " : ", from ") + counted(*pairs, "pair", "pairs");
   return text.empty() ? text : text + ".";
 }
@@ -150,7 +150,7 @@ std::string changed_words(const ComparisonAlert& pair) {
   if (intercept && slope)
     return ": the " + (after ? "newest " + counted(*after, "pair", "pairs") : std::string("newest pairs")) +
            " do not lie on the established line " + pair.y + " = " + pair.numbers.mean(*intercept) + " + " +
-           fixed(*slope, 4) + " x " + pair.x;
+           fixed(*slope, 4) + " \u00d7 " + pair.x;
   return ": two lines, one before and one after some moment, describe the " +
          (pairs ? counted(*pairs, "pair", "pairs") : std::string("pairs")) + " better than one";
 }
@@ -252,7 +252,7 @@ std::string proof_words(const ComparisonAlert& pair) {
   if (*more < 1) return text + " The pairs that are there are enough to decide it any time.";
   const bool disagreement = text_in(pair.alert.details, "aim") == "disagreement_shown";
   text += " If the bias stays so, about " + counted(*more, "more pair", "more pairs") + " would show " +
-          (disagreement ? "that the analyzers disagree" : "that they agree") + " (chance 80 %)";
+          (disagreement ? "that the analyzers disagree" : "that they agree") + " (with 90 % power)";
   if (pairs && room && *pairs + *more > *room)
     text += "; the window holds only " + counted(*room, "pair", "pairs") + ", so it would have to be larger";
   text += ".";

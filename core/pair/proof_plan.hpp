@@ -5,7 +5,7 @@
 //   they rest on; the confidence of the interval that has to lie outside before disagreement is shown.
 // Method: own planning by the half width of the interval. The standard error is taken to shrink with
 //   1/sqrt(pairs) and the bias to stay what it is; the number is the least for which the decision has a
-//   chance of 80 % at one look: Phi((A-|D|)/se - t) - Phi(t - (A+|D|)/se) for agreement with t of the 90 %
+//   chance of 90 % at one look: Phi((A-|D|)/se - t) - Phi(t - (A+|D|)/se) for agreement with t of the 90 %
 //   interval, Phi((|D|-A)/se - t) for disagreement with t of the alert interval (normal form of the power of
 //   two one-sided tests, D. J. Schuirmann, J. Pharmacokin. Biopharm. 15 (1987) 657). Agreement needs every
 //   level, so the slowest one counts; disagreement needs one, so the fastest does.

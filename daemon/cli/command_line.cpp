@@ -212,7 +212,7 @@ void add_send_test(CLI::App& app, SendTestCommand& test) {
   sub.footer(
       "One event of type agreed.test, signed and sent as alerts are: redirects are not followed, "
       "certificates\n"
-      "are verified, 10 s at most. It is not journaled and not tried again; the service need not run.\n"
+      "are verified, 10 s at most. It is not journalled and not tried again; the service need not run.\n"
       "Exit status: 0 delivered (answered 2xx), 1 not, 2 no such route, wrong use or configuration.\n"
       "Example:\n  agreed send-test /etc/agreed/agreed.yaml engineer");
 }

@@ -7,9 +7,9 @@
 
 namespace agreed {
 
-Reloader::Reloader(Reload reload, std::function<void()> over)
+Reloader::Reloader(Reload reload, Then then)
     : reload_(std::move(reload)),
-      over_(std::move(over)),
+      then_(std::move(then)),
       thread_([this](const std::stop_token& stop) { run(stop); }) {}
 
 void Reloader::ask() {
@@ -41,11 +41,13 @@ void Reloader::run(const std::stop_token& stop) {
     try {
       reload_(stop);
     } catch (const std::exception& error) {
-      const std::lock_guard lock(mutex_);
-      failure_ = error.what();
-      return;
+      {
+        const std::lock_guard lock(mutex_);
+        failure_ = error.what();
+      }
+      return then_.failed();
     }
-    if (!stop.stop_requested()) over_();
+    if (!stop.stop_requested()) then_.over();
   }
 }
 

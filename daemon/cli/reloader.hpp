@@ -14,8 +14,14 @@ class Reloader {
  public:
   using Reload = std::function<void(const std::stop_token& stop)>;
 
-  /// `reload` is called in the thread, `over` after each call that came to its end.
-  Reloader(Reload reload, std::function<void()> over);
+  /// What is called after a reload, in the thread: `over` when it came to its end, `failed` when failure()
+  /// says why not.
+  struct Then {
+    std::function<void()> over, failed;
+  };
+
+  /// `reload` is called in the thread.
+  Reloader(Reload reload, Then then);
   /// Ends; waits for a reload to give up.
   ~Reloader() { stop(); }
   Reloader(const Reloader&) = delete;
@@ -32,7 +38,7 @@ class Reloader {
   void run(const std::stop_token& stop);
 
   const Reload reload_;
-  const std::function<void()> over_;
+  const Then then_;
   mutable std::mutex mutex_;
   std::condition_variable_any asked_for_;
   bool asked_ = false;

@@ -7,6 +7,7 @@
 #include <csignal>
 #include <cstdio>
 #include <mutex>
+#include <optional>
 #include <stdexcept>
 #include <thread>
 
@@ -28,8 +29,8 @@ namespace {
 
 // SIGTERM has to end the service within two seconds, whatever a dead network mount holds on to.
 constexpr std::chrono::milliseconds kGrace{1'700};
-/// How often it is looked whether a reload failed for good.
-constexpr std::chrono::milliseconds kLook{500};
+/// From one thread of ours to the one that waits: look around.
+constexpr int kNudge = SIGUSR1;
 
 /// SIGTERM, SIGINT and SIGHUP as something to wait for. Blocks them in this thread and all that it starts.
 class Signals {
@@ -38,18 +39,22 @@ class Signals {
     std::signal(SIGPIPE, SIG_IGN);
     sigemptyset(&signals_);
     for (const int signal : {SIGTERM, SIGINT, SIGHUP}) sigaddset(&signals_, signal);
+    sigaddset(&signals_, kNudge);
     pthread_sigmask(SIG_BLOCK, &signals_, nullptr);
   }
 
-  /// The next one, or 0 when none came in `most`.
-  [[nodiscard]] int wait(std::chrono::milliseconds most) const {
-    const timespec patience{most.count() / 1000, most.count() % 1000 * 1'000'000};
-    const int signal = sigtimedwait(&signals_, nullptr, &patience);
-    return std::max(signal, 0);
+  /// The next one, or 0 when none came in `most`, if that is given.
+  [[nodiscard]] int wait(std::optional<std::chrono::milliseconds> most) const {
+    if (!most) return std::max(sigwaitinfo(&signals_, nullptr), 0);
+    const timespec patience{most->count() / 1000, most->count() % 1000 * 1'000'000};
+    return std::max(sigtimedwait(&signals_, nullptr, &patience), 0);
   }
+  /// Ends a wait, from any thread.
+  void nudge() const noexcept { pthread_kill(waiting_, kNudge); }
 
  private:
   sigset_t signals_{};
+  pthread_t waiting_ = pthread_self();
 };
 
 /// Ends the process if the orderly end takes too long. Everything that counts is committed at any moment.
@@ -88,7 +93,7 @@ int attend(const ServiceHost& host, Reloader& reloader, const Signals& signals) 
   const auto sign_of_life = service_manager::sign_of_life_every();
   auto next_sign = std::chrono::steady_clock::now();
   while (true) {
-    const int signal = signals.wait(sign_of_life ? std::min(kLook, *sign_of_life) : kLook);
+    const int signal = signals.wait(sign_of_life);
     if (signal == SIGTERM || signal == SIGINT) return kDone;
     if (const auto failure = reloader.failure()) {
       log_error("the service cannot go on after a reload: {}", *failure);
@@ -115,8 +120,9 @@ int serve(const Config& config, const Signals& signals) {
   host.start();
   service_manager::tell_ready(state_of(host));
 
-  Reloader reloader([&host](const std::stop_token& stop) { host.reload(stop); },
-                    [&host] { service_manager::tell_ready(state_of(host)); });
+  Reloader reloader(
+      [&host](const std::stop_token& stop) { host.reload(stop); },
+      {[&host] { service_manager::tell_ready(state_of(host)); }, [&signals] { signals.nudge(); }});
   const int code = attend(host, reloader, signals);
   service_manager::tell_stopping();
   log_info("stopping");

@@ -189,7 +189,7 @@ std::optional<HttpAnswer> Api::refused_by(const HttpRequest& request,
                                           const std::function<std::future<AskAnswer>()>& ask,
                                           AskAnswer& answer) {
   if (!waiting_places_.try_acquire())
-    return unavailable(request, "Other wishes are still waiting to be stored; try again.");
+    return unavailable(request, "Other requests are still waiting to be stored; try again.");
   std::optional<AskAnswer> asked;
   try {
     asked = wait_for(ask());

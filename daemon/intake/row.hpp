@@ -59,7 +59,8 @@ struct FilePiece {
   std::vector<Row> rows;
   std::vector<BadRow> bad;
   std::string unusable;
-  /// Of its watcher; when a piece cannot be committed, none that comes later in its round may be. 0: stands alone.
+  /// Of its watcher; when a piece cannot be committed, none that comes later in its round may be. 0: stands
+  /// alone.
   std::uint64_t round = 0;
   bool growing = false;  ///< further lines of a file that stays; `file` describes its bytes up to their end
 };

@@ -53,18 +53,21 @@ void tell_service(OpenMetrics& out, const Snapshot& snapshot) {
 
 void tell_intake(OpenMetrics& out, const Snapshot& snapshot) {
   const IntakeTotals& totals = snapshot.totals;
-  out.begin({"agreed_intake_files", counter, "files", "Files taken in since the journal began, by outcome."});
+  out.begin({"agreed_intake_files", counter, "files",
+             "Files that came since the journal began, by outcome; exports that grow are not among them."});
   out.sample({{"outcome", "done"}}, count(totals.files_done));
   out.sample({{"outcome", "repeated"}}, count(totals.files_repeated));
   out.sample({{"outcome", "rejected"}}, count(totals.files_rejected));
-  out.begin({"agreed_intake_readings", counter, "readings",
-             "Rows taken in since the journal began, by what became of them (voided and censored ones were "
-             "accepted)."});
-  out.sample({{"fate", "accepted"}}, count(totals.readings_accepted));
-  out.sample({{"fate", "repeated"}}, count(totals.readings_repeated));
-  out.sample({{"fate", "rejected"}}, count(totals.readings_rejected));
-  out.sample({{"fate", "voided"}}, count(totals.readings_voided));
-  out.sample({{"fate", "censored"}}, count(totals.readings_censored));
+  out.begin(
+      {"agreed_intake_readings", counter, "readings", "Rows that came since the journal began, by outcome."});
+  out.sample({{"outcome", "accepted"}}, count(totals.readings_accepted));
+  out.sample({{"outcome", "repeated"}}, count(totals.readings_repeated));
+  out.sample({{"outcome", "rejected"}}, count(totals.readings_rejected));
+  out.begin({"agreed_intake_readings_voided", counter, "", "Accepted readings that were taken back later."});
+  out.sample({}, count(totals.readings_voided));
+  out.begin(
+      {"agreed_intake_readings_censored", counter, "", "Accepted readings that only say below or above."});
+  out.sample({}, count(totals.readings_censored));
   out.begin({"agreed_intake_pending_files", gauge, "files", "Files noticed and not yet committed."});
   out.sample({}, count(snapshot.pending_files));
   out.begin({"agreed_intake_last_commit_time_seconds", gauge, "seconds",

@@ -186,8 +186,7 @@ std::string alerts_of_html(const PageInput& input, const Subject& subject) {
 PageAnswer render_alerts(const PageInput& input, const AlertList& list) {
   std::string out = "<h1>Alerts</h1>" + starting_html(input) + choice_html(list) + "<section><h2>" +
                     heading_of(list) + "</h2>";
-  if (list.records.empty())
-    out += list.after.empty() ? "<p>There is no such alert.</p>" : "<p>There are no older ones.</p>";
+  if (list.records.empty()) out += list.after.empty() ? "<p>None.</p>" : "<p>There are no older ones.</p>";
   for (const AlertRecord& record : list.records) {
     const Alert alert = alert_from_json(record.body);
     out += article_html(input, alert, 3, "<p>" + delivered_words(record.deliveries) + "</p>");

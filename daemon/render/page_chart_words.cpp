@@ -114,9 +114,10 @@ std::string precision_words(const ChartScene& scene) {
   if (!view.classical)
     out = "Precision score " + score_words(view.precision.score, view.precision.limit) + ".";
   else if (view.classical->moving_range_upper)
-    out = "Moving ranges up to " + with_unit(*view.classical->moving_range_upper, scene.style) + ".";
+    out = "Moving ranges up to " + with_unit(*view.classical->moving_range_upper, scene.style) +
+          " are within their limit.";
   if (view.baseline.sigma)
-    out += " Repeatability sigma " + with_unit(*view.baseline.sigma, scene.style) +
+    out += " Short-term sigma " + with_unit(*view.baseline.sigma, scene.style) +
            " from the mean moving range" +
            (view.baseline.sigma_degrees_of_freedom
                 ? " on " + shown(*view.baseline.sigma_degrees_of_freedom, 1) + " degrees of freedom."
@@ -169,7 +170,7 @@ std::string effects_words(const ChartScene& scene) {
   std::string out;
   if (const auto& effect = scene.view.intervention_effect)
     out = "Since " + spaced(effect->what) + " (" + time_words(effect->at) + ") the mean is " +
-          difference(*effect) + " from what it was before, of " +
+          difference(*effect) + " from the mean before it, over " +
           counted(static_cast<int>(effect->readings_after), "reading", "readings") + beside(*effect);
   if (const auto& first = scene.view.since_first)
     out += (out.empty() ? "" : " ") +

@@ -23,7 +23,7 @@ std::string legend_html(const std::vector<LegendEntry>& legend) {
 void keep_newest(DataTable& table, std::size_t most) {
   if (table.rows.size() <= most) return;
   table.caption += " (" + std::to_string(most) + " of " + std::to_string(table.rows.size()) +
-                   ", the others are on the page of their own)";
+                   ", the others are on its own page)";
   table.rows.resize(most);
 }
 

@@ -96,7 +96,8 @@ std::string pair_chart_words(const ComparisonScene& scene) {
 std::string error_words(const ComparisonScene& scene) {
   const ErrorView& error = scene.view.error;
   if (!error.lambda)
-    return "The error variance ratio is not known" + (error.reason.empty() ? "." : ": " + error.reason);
+    return "The error variance ratio is not known" +
+           (error.reason.empty() ? "." : ": " + spaced(error.reason) + ".");
   std::string out = "Error variance ratio lambda = var(error of " + scene.x + ") / var(error of " + scene.y +
                     ") = " + shown(*error.lambda, 2);
   if (error.low && error.high)

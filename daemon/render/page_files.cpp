@@ -36,7 +36,7 @@ std::string choices_html(const PageInput& input, const FileList& list) {
 
 std::string rows_words(const FileRow& file) {
   std::string out = counted(file.accepted, "row", "rows") + " taken";
-  if (file.repeated > 0) out += ", " + std::to_string(file.repeated) + " known already";
+  if (file.repeated > 0) out += ", " + std::to_string(file.repeated) + " came before";
   if (file.rejected > 0) out += ", " + std::to_string(file.rejected) + " rejected";
   return out;
 }
@@ -87,7 +87,7 @@ PageAnswer render_files(const PageInput& input, const FileList& list) {
   if (!list.files.empty())
     out += table_html(list);
   else
-    out += list.after.empty() ? "<p>There is no such file.</p>" : "<p>There are no older ones.</p>";
+    out += list.after.empty() ? "<p>None yet.</p>" : "<p>There are no older ones.</p>";
   const std::string of = path_of(list.outcome, list.analyzer);
   std::string ways;
   if (!list.after.empty()) ways += "<li>" + link_html(of, "Newest") + "</li>";

@@ -189,6 +189,8 @@ std::string reason_words(const std::string& reason) {
            "then.";
   if (reason == "not_covered")
     return "Not every decision level lies within the range of the samples, so nothing is said there.";
+  if (reason == "not_decided") return "The interval reaches across a limit of the allowable difference.";
+  if (reason == "not_confirmed") return "It holds now, but not yet on enough pairs in a row.";
   return reason.find(' ') == std::string::npos ? "Reason: " + spaced(reason) + "." : reason;
 }
 

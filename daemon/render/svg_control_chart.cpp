@@ -10,6 +10,11 @@
 namespace agreed {
 namespace {
 
+/// A lot keeps its name as it is written; an intervention is a word of ours.
+std::string mark_words(const std::string& what) {
+  return what.starts_with("lot ") ? what : spaced(what);
+}
+
 constexpr std::size_t kSmallChartFigure = 60;
 
 struct SignalMark {
@@ -288,9 +293,9 @@ void add_legend(Figure& figure, const ChartScene& scene, const Canvas& canvas) {
   if (view.reference) figure.legend.push_back({legend_line("reference"), "reference value"});
   for (std::size_t i = 0; i < view.marks.size(); ++i)
     if (on_axis(view.marks[i].at) >= canvas.time.low)
-      figure.legend.push_back(
-          {legend_line("event"),
-           std::to_string(i + 1) + ": " + spaced(view.marks[i].what) + ", " + time_words(view.marks[i].at)});
+      figure.legend.push_back({legend_line("event"), std::to_string(i + 1) + ": " +
+                                                         mark_words(view.marks[i].what) + ", " +
+                                                         time_words(view.marks[i].at)});
 }
 
 std::string reading_words(const ChartPoint& point, int decimals) {

@@ -59,7 +59,7 @@ Figure pair_chart_figure(const ComparisonScene& scene, FigureDetail detail) {
   if (!figure.drawing.empty()) {
     figure.legend = {{legend_dot("dots"), "pair"}};
     if (chart.started_at) figure.legend.push_back({legend_line("begun"), "estimated start of the change"});
-    if (chart.started_between) figure.legend.push_back({legend_area("doubt"), "start lies within"});
+    if (chart.started_between) figure.legend.push_back({legend_area("doubt"), "the change began within"});
     if (scene.view.window.since_intervention)
       figure.legend.push_back({legend_line("event"), "the comparison began anew"});
   }

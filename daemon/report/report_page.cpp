@@ -183,7 +183,7 @@ std::string intake_words(const PeriodRecord& record) {
   }
   return counted(static_cast<double>(record.files.size()), "file", "files") +
          " received: " + counted(static_cast<double>(accepted), "row", "rows") + " taken, " +
-         std::to_string(repeated) + " known already, " + std::to_string(rejected) + " rejected.";
+         std::to_string(repeated) + " that came before, " + std::to_string(rejected) + " rejected.";
 }
 
 std::string configurations_html(const PeriodRecord& record) {

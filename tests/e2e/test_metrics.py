@@ -37,7 +37,7 @@ class Metrics(SiteTest):
         site = self.make_site(config=config).start()
         empty = self.scrape(site)
         self.assertEqual(self.value(empty, "agreed_messages", route="night", state="waiting"), 0)
-        self.assertEqual(self.value(empty, "agreed_intake_readings", fate="accepted"), 0)
+        self.assertEqual(self.value(empty, "agreed_intake_readings", outcome="accepted"), 0)
 
         plant = Plant(seed=14, drift=lambda hours: 0.5 if hours > 15 * 24 else 0.0)
         checks, splits = plant.checks(0, 60), plant.splits(0, 240)
@@ -61,9 +61,12 @@ class Metrics(SiteTest):
         self.assertEqual({s.labels["agreed_overall"] for s in families["agreed_overall"].samples if s.value == 1}, {status["overall"]})
         for outcome, count in status["intake"]["files"].items():
             self.assertEqual(value("agreed_intake_files", outcome=outcome), count)
-        for fate, count in status["intake"]["readings"].items():
-            self.assertEqual(value("agreed_intake_readings", fate=fate), count)
-        self.assertEqual(value("agreed_intake_readings", fate="accepted"), 60 * 4 + 240 * 2)
+        for outcome, count in status["intake"]["readings"].items():
+            if outcome in ("voided", "censored"):
+                self.assertEqual(value(f"agreed_intake_readings_{outcome}"), count)
+            else:
+                self.assertEqual(value("agreed_intake_readings", outcome=outcome), count)
+        self.assertEqual(value("agreed_intake_readings", outcome="accepted"), 60 * 4 + 240 * 2)
         self.assertEqual(value("agreed_intake_pending_files"), status["intake"]["pending_files"])
         for name, at in (("agreed_start_time_seconds", status["service"]["started_at"]), ("agreed_snapshot_time_seconds", status["at"]),
                          ("agreed_intake_last_commit_time_seconds", status["intake"]["last_commit_at"])):

@@ -185,7 +185,7 @@ TEST_CASE("the words of agreement lost, nobody knows yet who moved") {
                         {"intercept", 0.1904},
                         {"pairs", 40.0}})) ==
       R"(line1 and line2 no longer agree for protein: line2 reads 0.350 g/100 g higher than line1 at 13.00 g/100 g
-Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: line2 reads 0.350 g/100 g higher than line1 at 13.00 g/100 g; the 99.9 % interval of the difference line2 - line1 is 0.250 to 0.450 g/100 g; allowable is 0.200 g/100 g either way. The fitted line is line2 = 0.190 g/100 g + 1.0123 x line1, from 40 pairs.
+Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: line2 reads 0.350 g/100 g higher than line1 at 13.00 g/100 g; the 99.9 % interval of the difference line2 - line1 is 0.250 to 0.450 g/100 g; allowable is 0.200 g/100 g either way. The fitted line is line2 = 0.190 g/100 g + 1.0123 × line1, from 40 pairs.
 Likely cause: not decided; split samples alone cannot tell which of the two moved. The check standards of line1 and line2 do: more readings of them will decide it.
 In doubt: protein results of both analyzers near 13.00 g/100 g, and decisions that took them as one.
 Next: 1. Do not use line1 and line2 as one for protein; hold the results in doubt. 2. Run the check standards on line1 and line2 now, to see which one moved. 3. Look at what was last done to line1 and line2 and what is due on them: parts changed, cleaning, calibration, sample cell, surroundings. 4. After a repair or a recalibration record it as an intervention and run split samples until agreement is shown again. 5. Acknowledge this alert.
@@ -245,7 +245,7 @@ TEST_CASE("the words of pairs off an established line") {
                                              {"relation_slope", 1.02}}));
   CHECK(
       text.find(
-          "protein: the newest 12 pairs do not lie on the established line line2 = -0.100 g/100 g + 1.0200 x "
+          "protein: the newest 12 pairs do not lie on the established line line2 = -0.100 g/100 g + 1.0200 × "
           "line1 (change score 4.50, limit 4.30). Since then line2 reads 0.050 g/100 g higher") !=
       std::string::npos);
 }
@@ -279,17 +279,19 @@ TEST_CASE("the words of agreement unproven: pairs that would decide it, or why n
   decided.insert(decided.end(), {{"pairs_needed", 24.0}, {"sd_needed", 0.02}});
   CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, decided)) ==
         R"(Agreement of line1 and line2 for protein is still unproven
-Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: the 46 pairs of the window show neither agreement nor disagreement. It hangs on 13.00 g/100 g, where line2 reads 0.120 g/100 g higher than line1 and 0.200 g/100 g is allowable. If the bias stays so, about 24 more pairs would show that they agree (chance 80 %). With the pairs of now it takes a scatter about the line of 0.020 g/100 g instead of 0.030 g/100 g, as from means of 3 replicates on both analyzers.
+Analyzers line1 (NIR analyzer, packing line 1) and line2 (NIR analyzer, packing line 2), protein: the 46 pairs of the window show neither agreement nor disagreement. It hangs on 13.00 g/100 g, where line2 reads 0.120 g/100 g higher than line1 and 0.200 g/100 g is allowable. If the bias stays so, about 24 more pairs would show that they agree (with 90 % power). With the pairs of now it takes a scatter about the line of 0.020 g/100 g instead of 0.030 g/100 g, as from means of 3 replicates on both analyzers.
 Since: inconclusive since 2026-02-05 06:00 UTC.
 In doubt: protein results of both analyzers used as one: nothing shows that they may be.
 Next: 1. Run more split samples, at the decision levels above all, or each of them in replicate. 2. Acknowledge this alert.
 )");
   Details large = decided, edge = known, uncovered = known;
   set_detail(large, "pairs_needed", 300.0);
-  CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, large))
-            .find("about 300 more pairs would show that they agree (chance 80 %); the window holds only 200 "
-                  "pairs, so it "
-                  "would have to be larger.") != std::string::npos);
+  CHECK(
+      words(pair_alert(AlertKind::agreement_unproven, Severity::notice, large))
+          .find(
+              "about 300 more pairs would show that they agree (with 90 % power); the window holds only 200 "
+              "pairs, so it "
+              "would have to be larger.") != std::string::npos);
   edge.push_back({"reason", "bias_as_large_as_allowable"});
   CHECK(words(pair_alert(AlertKind::agreement_unproven, Severity::notice, edge))
             .find("about as large as what is allowable, so more pairs will not decide it.") !=

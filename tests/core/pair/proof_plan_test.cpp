@@ -19,9 +19,9 @@ TEST_CASE("pairs and scatter that decide it, against a search with scipy") {
   };
   // scipy.stats.t and norm, every number of pairs tried one by one; the factor by scipy.optimize.brentq.
   for (const Row& row :
-       {Row{0, 0.1, 0.05, 20, 44, 0.6632145966310546}, Row{0.04, 0.1, 0.03, 40, 64, 0.7912578876722491},
-        Row{-0.04, 0.1, 0.03, 40, 64, 0.7912578876722491}, Row{0.09, 0.1, 0.01, 100, 620, 0.3996527096897045},
-        Row{0.15, 0.1, 0.02, 30, 87, 0.5536451556779853}}) {
+       {Row{0, 0.1, 0.05, 20, 56, 0.5919055903856776}, Row{0.04, 0.1, 0.03, 40, 87, 0.6739665136531485},
+        Row{-0.04, 0.1, 0.03, 40, 87, 0.6739665136531485}, Row{0.09, 0.1, 0.01, 100, 858, 0.3398929520466058},
+        Row{0.15, 0.1, 0.02, 30, 105, 0.5044942399012116}}) {
     CAPTURE(row.bias);
     const ProofPlan found = plan({{12, row.bias, row.se, row.allowable}}, row.pairs);
     CHECK(found.reason.empty());

@@ -39,7 +39,7 @@ TEST_CASE("the samples say what the snapshot says") {
   CHECK(value(R"(agreed_overall{agreed_overall="alert"})") == "0");
   CHECK(value(R"(agreed_overall{agreed_overall="attention"})") == "1");
   CHECK(value(R"(agreed_intake_files_total{outcome="done"})") == "3");
-  CHECK(value(R"(agreed_intake_readings_total{fate="accepted"})") == "120");
+  CHECK(value(R"(agreed_intake_readings_total{outcome="accepted"})") == "120");
   CHECK(value("agreed_intake_pending_files") == "2");
   CHECK(value("agreed_intake_last_commit_time_seconds") == "1767603600");
   CHECK(value(R"(agreed_inbox_reachable{analyzer="line2"})") == "0");
