@@ -61,8 +61,8 @@ class WorkQueue {
   /// What was taken of the analyzer could not be committed: at least one file of it waits, until its next
   /// report.
   void still_waits(AnalyzerIndex analyzer);
-  /// What waits of the analyzer fails too, and what is still to come of that round of its watcher: nothing may be
-  /// committed before what came earlier.
+  /// What waits of the analyzer fails too, and what is still to come of that round of its watcher: nothing
+  /// may be committed before what came earlier.
   void refuse_round(AnalyzerIndex analyzer, std::uint64_t round, const std::string& why);
   /// Refuses whatever comes from now on, and what waits.
   void stop();

@@ -18,7 +18,10 @@ struct FolderWatcher::Impl {
 
 FolderWatcher::FolderWatcher(const IntakeSettings& intake, const Settings& settings, AnalyzerIndex analyzer,
                              IntakeSink& sink, const WatcherLimits& limits)
-    : impl_(new Impl{"inbox " + settings.analyzers[analyzer.value].id, {intake, settings, analyzer, sink, limits}, false, {}}) {}
+    : impl_(new Impl{"inbox " + settings.analyzers[analyzer.value].id,
+                     {intake, settings, analyzer, sink, limits},
+                     false,
+                     {}}) {}
 
 FolderWatcher::~FolderWatcher() {
   stop();
