@@ -43,6 +43,7 @@ say "a Debian 12"
 mkdir -p "$place"
 bootstrapped() {
   [ -f "$place/debian.tar" ] || {
+    command -v debootstrap >/dev/null || fail "debootstrap is missing; Debian has it in a package of that name"
     rm -rf "$root"
     debootstrap --variant=minbase bookworm "$root" "$mirror" >"$place/debootstrap.log" || fail "debootstrap, see $place/debootstrap.log"
     tar -cf "$place/debian.tar" -C "$root" .

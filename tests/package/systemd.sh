@@ -9,6 +9,7 @@ place=${2:-/var/tmp/agreed-package-test}
 base=$place/systemd.tar root=$place/systemd
 
 [ -f "$place/debian.tar" ] || { echo "run tests/package/run.sh first" >&2; exit 1; }
+command -v systemd-nspawn >/dev/null || { echo "systemd-nspawn is missing; Debian has it in systemd-container" >&2; exit 1; }
 [ -f "$base" ] || {
   rm -rf "$root"; mkdir -p "$root"; tar -xf "$place/base.tar" -C "$root"
   chroot "$root" env DEBIAN_FRONTEND=noninteractive apt-get install -y -qq --no-install-recommends systemd systemd-sysv dbus curl >/dev/null
