@@ -6,6 +6,7 @@
 
 #include "daemon/clock.hpp"
 #include "daemon/engine/journal_history.hpp"
+#include "daemon/give_way.hpp"
 #include "daemon/log.hpp"
 #include "daemon/render/alert_json.hpp"
 #include "daemon/sha256.hpp"
@@ -188,6 +189,7 @@ void Engine::take_batch(Work& work, Instant now, std::vector<std::function<void(
   journal_->begin(now);
   TakenIn taken;
   for (QueuedPiece& queued : work.pieces) {
+    give_way();
     try {
       const PieceAnswer answer = ledger_.take(queued.piece, now, *journal_, monitor_, taken);
       answers.emplace_back([&queued, answer] { queued.answer.set_value(answer); });

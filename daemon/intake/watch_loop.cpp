@@ -4,6 +4,7 @@
 #include <system_error>
 
 #include "daemon/clock.hpp"
+#include "daemon/give_way.hpp"
 #include "daemon/intake/archive.hpp"
 #include "daemon/intake/file_names.hpp"
 #include "daemon/intake/text.hpp"
@@ -180,6 +181,7 @@ void WatchLoop::take_due(const std::stop_token& stop) {
   if (!due.empty() && !inbox_.is_open()) reachable(inbox_.open());
   for (const auto& [name, waiting] : due) {
     if (stop.stop_requested()) throw Stopping{};
+    give_way();
     try {
       if (state_.reachable && !commit_failed_)
         take(name, waiting, stop);
@@ -267,6 +269,7 @@ void WatchLoop::settle(TakenFile& file, const PieceAnswer& answer, const std::st
     return;
   }
   told_.erase("commit");
+  give_way();
   if (growing_) return;
   if (!in_inbox) return moved_.read_again(file.moved_path, file.stamp);
   try {

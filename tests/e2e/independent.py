@@ -168,7 +168,7 @@ def pairs_to_agreement(levels, pairs):
     """More pairs for a chance of 80 % at every level, each number tried in turn."""
     needed = pairs
     for level in levels:
-        while chance_of_agreement(level, math.sqrt(pairs / needed), needed) < 0.8:
+        while chance_of_agreement(level, math.sqrt(pairs / needed), needed) < 0.9:
             needed += 1
     return needed - pairs
 

@@ -326,7 +326,7 @@ class Independent(SiteTest):
         self.assertEqual(proof["more_pairs"], independent.pairs_to_agreement(levels, PAIRS))
         level = next(v for v in levels if v["level"] == proof["level"])
         factor = proof["sd_needed"] / proof["residual_sd"]
-        self.assertAlmostEqual(independent.chance_of_agreement(level, factor, PAIRS), 0.8, delta=1e-7)
+        self.assertAlmostEqual(independent.chance_of_agreement(level, factor, PAIRS), 0.9, delta=1e-7)
 
     def test_one_gross_pair(self):
         _, comparison = self.follow(Mill(seed=8, pair=lambda i: 1.5 if i == 25 else 0.0))
