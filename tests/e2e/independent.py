@@ -165,7 +165,7 @@ def chance_of_agreement(level, scale, pairs):
 
 
 def pairs_to_agreement(levels, pairs):
-    """More pairs for a chance of 80 % at every level, each number tried in turn."""
+    """More pairs for a chance of 90 % at every level, each number tried in turn."""
     needed = pairs
     for level in levels:
         while chance_of_agreement(level, math.sqrt(pairs / needed), needed) < 0.9:
